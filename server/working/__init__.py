@@ -1,0 +1,1 @@
+"""The working: a formula's text -> its value and its printed step."""
