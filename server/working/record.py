@@ -1,0 +1,333 @@
+"""The working: steps recorded while a check runs, and a recorded step shown to people.
+
+A formula is written once. ``Working.step`` evaluates that text and keeps the step as plain data; ``mathml``,
+``typst_math`` and ``plain`` draw it again from the stored step alone, in SI or in inch-pound units, so an old sheet
+can be shown without its document and without the mechanics that made it.
+
+The numbers of a line have as many digits as it takes: whoever types the printed line into a pocket calculator gets
+the printed value.
+"""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+from server.errors import InputError
+from server.working import mathml as _mathml
+from server.working import names, numbers
+from server.working import plain as _plain
+from server.working.formula import Formula, formula, len_of
+from server.working.grammar import FormulaError
+from server.working.layout import Layout, number, spread, symbol, symbolic, with_numbers
+
+Step = dict[str, Any]
+Given = tuple[float | Sequence[float] | NDArray[np.float64], str]
+_NO_LISTS: frozenset[str] = frozenset()
+
+
+class Working:
+    """Collects the steps of one check, in the order in which they are made.
+
+    Examples
+    --------
+    >>> w = Working()
+    >>> given = {"V": (14600.0, "N"), "S": (1.04e6, "mm3"), "I": (4.27e8, "mm4")}
+    >>> w.step("Shear flow", "q", "V * S / I", given, "N/mm")
+    35.55971896955504
+    >>> w.steps[0]["substituted"]
+    '14600 * 1.04e6 / 4.27e8'
+    """
+
+    def __init__(self) -> None:
+        self.steps: list[Step] = []
+        self.group = ""
+
+    def begin(self, group: str) -> None:
+        """Put the steps that follow under this heading, unless they name their own."""
+        self.group = group
+
+    def step(
+        self,
+        title: str,
+        symbol: str,
+        text: str,
+        values: Mapping[str, Given],
+        unit: str = "",
+        source: str = "",
+        group: str | None = None,
+        note: str = "",
+    ) -> float:
+        """Evaluate a formula, record the step and return the value.
+
+        Raises
+        ------
+        FormulaError
+            If the formula's quantities and ``values`` do not match: a mistake in the program.
+        InputError
+            If a value is not a finite number, or the numbers have no answer; it carries the symbol.
+        """
+        known = formula(text)
+        if values.keys() != known.names:
+            _mismatch(known, values)
+        plain_values: dict[str, float | list[float]] = {}
+        lists = _NO_LISTS
+        for name, (given, _) in values.items():
+            if isinstance(given, float | int):
+                plain_values[name] = float(given)
+                if not math.isfinite(given):
+                    raise InputError(name, _not_finite(name, given, title))
+            else:
+                taken = _listed(name, given, title)
+                plain_values[name] = taken
+                if isinstance(taken, list):
+                    lists = lists | {name}
+        value = _evaluate(known, plain_values, lists, symbol, title)
+        texts = _texts(known, plain_values, lists, value)[1]
+        self.steps.append(
+            {
+                "title": title,
+                "symbol": symbol,
+                "formula": known.text,
+                "substituted": known.substituted(texts, lists, len_of(plain_values, lists)),
+                "value": value,
+                "unit": unit,
+                "source": source,
+                "group": self.group if group is None else group,
+                "values": {name: {"value": plain_values[name], "unit": values[name][1]} for name in values},
+                "note": note,
+            }
+        )
+        return value
+
+    def note(
+        self,
+        title: str,
+        text: str,
+        value: float | None = None,
+        unit: str = "",
+        source: str = "",
+        group: str | None = None,
+        symbol: str = "",
+    ) -> None:
+        """Record what a numerical method did, in words, with the value it gave."""
+        if value is not None and not math.isfinite(value):
+            raise InputError(symbol or title, _not_finite(symbol or title, value, title))
+        self.steps.append(
+            {
+                "title": title,
+                "symbol": symbol,
+                "formula": "",
+                "substituted": "",
+                "value": None if value is None else float(value),
+                "unit": unit,
+                "source": source,
+                "group": self.group if group is None else group,
+                "values": {},
+                "note": text,
+            }
+        )
+
+
+def _mismatch(known: Formula, values: Mapping[str, Given]) -> None:
+    missing, extra = sorted(known.names - values.keys()), sorted(values.keys() - known.names)
+    raise FormulaError(f"The formula {known.text!r} lacks values for {missing} and has no use for {extra}.")
+
+
+def _not_finite(name: str, value: object, title: str) -> str:
+    return f"{names.plain(name)} is {value} in “{title}”; a finite number is needed. Check the values it is made from."
+
+
+def _listed(name: str, given: Any, title: str) -> float | list[float]:
+    """A numpy scalar, a sequence or an array as plain numbers, all finite."""
+    if np.ndim(given) == 0:
+        scalar = float(given)
+        if not math.isfinite(scalar):
+            raise InputError(name, _not_finite(name, scalar, title))
+        return scalar
+    taken = [float(each) for each in given]
+    for position, each in enumerate(taken):
+        if not math.isfinite(each):
+            raise InputError(name, _not_finite(f"{name}_{position + 1}", each, title))
+    return taken
+
+
+def _evaluate(
+    known: Formula, values: Mapping[str, float | list[float]], lists: frozenset[str], symbol: str, title: str
+) -> float:
+    if lists:
+        len_of(values, lists)
+    try:
+        value = known.value(values, lists)
+    except ZeroDivisionError:
+        raise InputError(symbol, _no_answer(known, symbol, title, "divides by zero")) from None
+    except (ValueError, OverflowError):
+        raise InputError(symbol, _no_answer(known, symbol, title, "has no real answer")) from None
+    if isinstance(value, complex) or not math.isfinite(value):
+        raise InputError(symbol, _no_answer(known, symbol, title, "has no finite real answer"))
+    return float(value)
+
+
+def _no_answer(known: Formula, symbol: str, title: str, why: str) -> str:
+    return (
+        f"{names.plain(symbol)} in “{title}” {why}: {_plain.line(symbolic(known.tree, _NO_LISTS))}. "
+        "Every quantity must keep it finite; check the values it is made from."
+    )
+
+
+Texts = dict[str, str | list[str]]
+
+
+def _texts(
+    known: Formula, values: Mapping[str, float | list[float]], lists: frozenset[str], value: float
+) -> tuple[int, Texts]:
+    """How many digits the numbers must show so that the printed line gives the printed value, and the numbers so."""
+    form = numbers.canonical
+    target = form(value)
+    texts: Texts = {}
+    for digits in numbers.LADDER:
+        rounded: dict[str, float | list[float]] = {}
+        for name, each in values.items():
+            if isinstance(each, list):
+                written = [form(item, digits) for item in each]
+                texts[name], rounded[name] = written, [float(text) for text in written]
+            else:
+                texts[name] = text = form(each, digits)
+                rounded[name] = float(text)
+        if rounded == values:
+            return digits, texts
+        try:
+            if form(known.value(rounded, lists)) == target:
+                return digits, texts
+        except (ArithmeticError, ValueError, TypeError):
+            continue
+    return numbers.LADDER[-1], texts
+
+
+# --- a stored step, shown ---------------------------------------------------------------------------------------------
+
+
+@dataclass(frozen=True)
+class Shown:
+    """One step laid out: any part but the value's may be None."""
+
+    symbol: Layout | None
+    formula: Layout | None
+    numbers: Layout | None
+    value: Layout | None
+    unit: str
+
+
+def shown(step: Mapping[str, Any], display: str = "SI") -> Shown:
+    """Lay out a stored step, its numbers in the units of ``display``.
+
+    A formula that only balances in the units it was written in (one with a dimensional constant) stays in those.
+    """
+    head = symbol(step["symbol"]) if step["symbol"] else None
+    if not step["formula"]:
+        unit, factor = _display_unit(step["unit"], display)
+        found = None if step["value"] is None else number(step["value"] * factor)
+        return Shown(head, None, None, found, numbers.readable_unit(unit))
+    known = formula(step["formula"])
+    lists = frozenset(name for name, each in step["values"].items() if isinstance(each["value"], list))
+    values, value, unit = _in_units(step, known, lists, display)
+    digits = _texts(known, values, lists, value)[0]
+    count = len_of(values, lists)
+    with_values = with_numbers(known.tree, values, lists, count, digits)
+    repeats = with_values == number(value)
+    return Shown(
+        head,
+        None if known.names <= {step["symbol"]} and known.trivial else symbolic(known.tree, lists),
+        None if repeats else with_values,
+        number(value),
+        numbers.readable_unit(unit),
+    )
+
+
+def _display_unit(unit: str, display: str) -> tuple[str, float]:
+    if display == "SI" or not unit:
+        return unit, 1.0
+    from server import units
+
+    shown_unit, factor = units.display_unit(unit, display)
+    return shown_unit, factor
+
+
+def _in_units(
+    step: Mapping[str, Any], known: Formula, lists: frozenset[str], display: str
+) -> tuple[dict[str, float | list[float]], float, str]:
+    stored: dict[str, float | list[float]] = {name: each["value"] for name, each in step["values"].items()}
+    value: float = step["value"]
+    if display == "SI":
+        return stored, value, step["unit"]
+    unit, factor = _display_unit(step["unit"], display)
+    converted: dict[str, float | list[float]] = {}
+    for name, each in step["values"].items():
+        own = _display_unit(each["unit"], display)[1]
+        given = each["value"]
+        converted[name] = [item * own for item in given] if isinstance(given, list) else given * own
+    try:
+        balances = math.isclose(known.value(converted, lists), value * factor, rel_tol=1e-6, abs_tol=1e-300)
+    except (ArithmeticError, ValueError, TypeError):
+        balances = False
+    return (converted, value * factor, unit) if balances else (stored, value, step["unit"])
+
+
+def mathml(step: Mapping[str, Any], display: str = "SI") -> str:
+    """The step's line for the page: several ``<math>`` elements, between which the line may break."""
+    parts = shown(step, display)
+    equals: Layout = ["sign", "="]
+    out = []
+    if parts.symbol:
+        out.append(_mathml.math(parts.symbol, kind="working-symbol"))
+    if parts.formula:
+        out.append(_mathml.math(equals, parts.formula, kind="working-formula"))
+    if parts.numbers:
+        first, *others = _breakable(parts.numbers)
+        out.append(_mathml.math(equals, *first, kind="working-numbers"))
+        out += [_mathml.math(*each, kind="working-numbers") for each in others]
+    if parts.value:
+        unit = [["word", "\u2009" + parts.unit]] if parts.unit else []
+        head = [equals] if out else []
+        out.append(_mathml.math(*head, parts.value, *unit, kind="working-value"))
+    return " ".join(out)
+
+
+def _breakable(layout: Layout) -> list[list[Layout]]:
+    """Split a long sum before its plus and minus signs."""
+    groups: list[list[Layout]] = [[]]
+    pieces = spread(layout)
+    for each in pieces:
+        if len(pieces) > 6 and groups[-1] and each in (["sign", "+"], ["sign", "−"]):
+            groups.append([])
+        groups[-1].append(each)
+    return groups
+
+
+def typst_math(step: Mapping[str, Any], display: str = "SI") -> dict[str, Any]:
+    """The step's line for print: layouts (JSON) under ``symbol``, ``formula``, ``numbers``, ``value``, and ``unit``."""
+    parts = shown(step, display)
+    return {
+        "symbol": parts.symbol,
+        "formula": parts.formula,
+        "numbers": parts.numbers,
+        "value": parts.value,
+        "unit": parts.unit,
+    }
+
+
+def plain(step: Mapping[str, Any], display: str = "SI") -> list[str]:
+    """The step in plain characters: ``q = V ⋅ S / I``, ``= 14 600 ⋅ …``, ``= 35.56 N/mm``; one entry a part."""
+    parts = shown(step, display)
+    lines = [_plain.line(each) for each in (parts.formula, parts.numbers) if each]
+    if parts.value:
+        lines.append(f"{_plain.line(parts.value)} {parts.unit}".rstrip())
+    head = _plain.line(parts.symbol) if parts.symbol else ""
+    return (
+        [f"{head if not position else ''} = {each}".strip() for position, each in enumerate(lines)] if head else lines
+    )
