@@ -1,0 +1,24 @@
+"""The record book on disk: engine and sessions, migrations, the trail, search terms, backup."""
+
+from server.storage.backup import backup, check_whole, restore
+from server.storage.engine import Session, StorageError, engine, plain_words, reading, write, writing
+from server.storage.migrate import migrate
+from server.storage.trail import TrailLine, lines, note, utc_text
+
+__all__ = [
+    "Session",
+    "StorageError",
+    "TrailLine",
+    "backup",
+    "check_whole",
+    "engine",
+    "lines",
+    "migrate",
+    "note",
+    "plain_words",
+    "reading",
+    "restore",
+    "utc_text",
+    "write",
+    "writing",
+]
