@@ -1,9 +1,9 @@
 """The record book on disk: engine and sessions, migrations, the trail, search terms, backup."""
 
-from server.storage.backup import backup, check_whole, restore
-from server.storage.engine import Session, StorageError, engine, plain_words, reading, write, writing
-from server.storage.migrate import migrate
+from server.storage.copies import backup, check_whole, restore
+from server.storage.sessions import Session, StorageError, engine, plain_words, reading, write, writing
 from server.storage.trail import TrailLine, lines, note, utc_text
+from server.storage.upgrade import migrate
 
 __all__ = [
     "Session",

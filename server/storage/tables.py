@@ -9,7 +9,7 @@ from __future__ import annotations
 import json
 from typing import Any
 
-from sqlalchemy import Dialect, ForeignKey, Index, LargeBinary, MetaData, Text, TypeDecorator, UniqueConstraint
+from sqlalchemy import REAL, Dialect, ForeignKey, Index, LargeBinary, MetaData, Text, TypeDecorator, UniqueConstraint
 from sqlalchemy.orm import DeclarativeBase, Mapped, mapped_column
 
 NOCASE = Text(collation="NOCASE")
@@ -92,7 +92,7 @@ class CheckRevision(Base):
     kind: Mapped[str] = mapped_column(Text)
     title: Mapped[str] = mapped_column(Text)
     verdict: Mapped[str] = mapped_column(Text)
-    utilisation: Mapped[float | None]
+    utilisation: Mapped[float | None] = mapped_column(REAL)
     heading: Mapped[dict[str, Any]] = mapped_column(Json)
     document: Mapped[dict[str, Any]] = mapped_column(Json)
     values_used: Mapped[dict[str, Any]] = mapped_column(Json)

@@ -9,7 +9,7 @@ from typing import Any
 
 from sqlalchemy import select
 
-from server.storage.engine import Session
+from server.storage.sessions import Session
 from server.storage.tables import TrailEntry
 
 

@@ -10,7 +10,7 @@ from alembic.runtime.migration import MigrationContext
 from alembic.script import ScriptDirectory
 from sqlalchemy import Engine
 
-from server.storage.engine import StorageError, writing
+from server.storage.sessions import StorageError, writing
 
 # Beside this file both in a checkout and in an installed wheel.
 _SCRIPTS = Path(__file__).parent / "migrations"

@@ -10,7 +10,7 @@ from pathlib import Path
 
 from sqlalchemy import Engine
 
-from server.storage.engine import BUSY_SECONDS, StorageError
+from server.storage.sessions import BUSY_SECONDS, StorageError
 
 _TABLES_OF_OURS = {"jobs", "checks", "check_revisions", "records", "record_revisions", "trail"}
 
