@@ -1,0 +1,225 @@
+"""The equations of the member: what each part between two key places does, and what holds at those places.
+
+Key places are the member's ends, its supports and its hinges. The unknowns are the deflection y, the rotation psi of
+the section, the moment M and the shear V just right of each key place. Displacements and forces stand side by side,
+so stiffness enters only as flexibility 1/EI and 1/GA: a very stiff part, a very soft one or a stiff spring loses no
+digits to its neighbours, as it would in a matrix of stiffnesses. Units: N, mm.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from server.errors import InputError
+from server.mechanics.beam_loads import Grid
+
+Array = NDArray[np.float64]
+BANDED_FROM = 48  # unknowns from which a banded solution pays for its import
+BAND = 5
+
+# What holds at a key place: factors on the state just left of it and just right of it, rows y, psi, M, V.
+_FREE, _PIN, _FIXED, _SPRING, _HINGE, _HINGED_PIN, _HINGED_SPRING = range(7)
+_LEFT, _RIGHT = np.zeros((7, 4, 4)), np.zeros((7, 4, 4))
+_LEFT[:], _RIGHT[:] = -np.eye(4), np.eye(4)  # nothing there: the state passes through
+for _kind in (_HINGE, _HINGED_PIN, _HINGED_SPRING):  # psi may jump; M is zero on both sides
+    _LEFT[_kind, 1], _RIGHT[_kind, 1] = [0, 0, 1, 0], 0
+    _LEFT[_kind, 2], _RIGHT[_kind, 2] = 0, [0, 0, 1, 0]
+_LEFT[_FIXED, 1], _RIGHT[_FIXED, 1] = [0, 1, 0, 0], 0  # psi is zero on both sides; M may jump
+_LEFT[_FIXED, 2], _RIGHT[_FIXED, 2] = 0, [0, 1, 0, 0]
+for _kind in (_PIN, _FIXED, _HINGED_PIN):  # y is zero; V may jump
+    _LEFT[_kind, 3], _RIGHT[_kind, 3] = 0, [1, 0, 0, 0]
+
+
+@dataclass(frozen=True)
+class Sweep:
+    """Running integrals of the loads from each key place on, with unit M and unit V as two further rows.
+
+    Parameters
+    ----------
+    start : numpy.ndarray
+        V, M, psi, y just right of each break, counted from the key place before it, shape (4, c + 2, m)
+        [N, N*mm, -, mm]; row c belongs to M = 1 at the key place, row c + 1 to V = 1.
+    end : numpy.ndarray
+        The same just left of the next key place, shape (4, c + 2, parts).
+    """
+
+    start: Array
+    end: Array
+
+
+def sweep(grid: Grid) -> Sweep:
+    """Integrate load to shear, moment, rotation and deflection over every part between key places.
+
+    Parameters
+    ----------
+    grid : Grid
+        Breaks, stiffness and loads [N, mm].
+
+    Returns
+    -------
+    Sweep
+        Running integrals.
+
+    Notes
+    -----
+    dV/dx = -w, dM/dx = V, dpsi/dx = -M/EI, dy/dx = psi + V/GA.
+
+    References
+    ----------
+    .. [1] S. P. Timoshenko, "Strength of Materials", part I, 3rd ed. (1955), articles 32 and 39.
+    """
+    d, f, g = grid.width, grid.bending, grid.shear
+    cases, m = grid.load.shape
+    a, b = np.zeros((cases + 2, m)), np.zeros((cases + 2, m))
+    a[:cases], b[:cases] = grid.load, grid.load_slope
+    drop, turn = np.zeros((cases + 2, m)), np.zeros((cases + 2, m))
+    drop[:cases, :-1], turn[:cases, :-1] = grid.force[:, 1:-1], grid.couple[:, 1:-1]  # at each interval's right end
+    d2, d3 = d * d / 2, d * d * d / 6
+    d4, d5 = d2 * d2 / 6, d2 * d3 / 10
+    ad2, bd3 = a * d2, b * d3
+    start, end = np.zeros((4, cases + 2, m)), np.empty((4, cases + 2, len(grid.first)))
+    V, M, psi, y = start
+
+    def run(level: int, change: Array, jump: Array | None) -> None:
+        passed = change if jump is None else change - jump
+        for part, (low, high) in enumerate(zip(grid.first, grid.stop, strict=True)):
+            if high - low > 1:
+                passed[:, low : high - 1].cumsum(1, out=start[level, :, low + 1 : high])
+            end[level, :, part] = start[level, :, high - 1] + change[:, high - 1]
+
+    run(0, -(a * d + b * d2), drop)
+    V[-1] += 1
+    end[0, -1] += 1
+    run(1, V * d - ad2 - bd3, turn)
+    M[-2] += 1
+    end[1, -2] += 1
+    run(2, (a * d3 + b * d4 - M * d - V * d2) * f, None)
+    run(3, psi * d + (a * d4 + b * d5 - M * d2 - V * d3) * f + (V * d - ad2 - bd3) * g, None)
+    return Sweep(start, end)
+
+
+def assemble(grid: Grid, swept: Sweep) -> tuple[Array, Array, Array]:
+    """Return the matrix, the right-hand sides and the scale of the unknowns.
+
+    Parameters
+    ----------
+    grid : Grid
+        Breaks, stiffness, supports and loads [N, mm].
+    swept : Sweep
+        Running integrals of the loads.
+
+    Returns
+    -------
+    tuple of numpy.ndarray
+        Matrix (4 K, 4 K), right-hand sides (4 K, c), and the units of y, psi, M, V per newton.
+
+    References
+    ----------
+    .. [1] S. P. Timoshenko, "Strength of Materials", part II, 3rd ed. (1956), chapter 1 (initial parameters).
+    """
+    K, cases = len(grid.key), grid.load.shape[0]
+    reach = grid.breaks[-1] / (K - 1)
+    softness = float(grid.bending @ grid.width) / grid.breaks[-1]
+    scale = np.array([reach**3 * softness, reach**2 * softness, reach, 1.0])
+    T = np.zeros((K - 1, 4, 4))
+    V, M, psi, y = swept.end
+    T[:] = np.eye(4)
+    T[:, 0, 1] = T[:, 2, 3] = np.diff(grid.breaks[grid.key])
+    T[:, 0, 2], T[:, 0, 3] = y[cases], y[cases + 1]
+    T[:, 1, 2], T[:, 1, 3] = psi[cases], psi[cases + 1]
+    T *= scale / scale[:, None]
+    kind = grid.kind
+    right, left = _RIGHT[kind], _LEFT[kind]
+    loads = np.empty((K, 4, cases))
+    loads[:, :2] = 0
+    loads[:, 2], loads[:, 3] = -grid.couple[:, grid.key].T / scale[2], -grid.force[:, grid.key].T
+    carried = left[1:] @ T
+    arriving = np.array([y[:cases], psi[:cases], M[:cases], V[:cases]]).transpose(2, 0, 1) / scale[:, None]
+    loads[:, 2][(kind == _FIXED)] = 0
+    loads[:, 3][(kind == _PIN) | (kind == _FIXED) | (kind == _HINGED_PIN)] = 0
+    loads[1:] -= left[1:] @ arriving
+    for place, stiffness in grid.springs:  # V jumps by k y; divided so that neither a soft nor a stiff spring swamps
+        k = stiffness * scale[0]
+        right[place, 3, 0] = -k
+        right[place, 3] /= 1 + k
+        loads[place, 3] /= 1 + k
+        if place:
+            carried[place - 1, 3] /= 1 + k
+    A = np.zeros((4 * K, 4 * K))
+    A[:2, :4] = right[0, 2:]
+    for n in range(1, K):
+        A[4 * n - 2 : 4 * n + 2, 4 * n - 4 : 4 * n] = carried[n - 1]
+        A[4 * n - 2 : 4 * n + 2, 4 * n : 4 * n + 4] = right[n]
+    A[-2, -2] = A[-1, -1] = 1  # no moment and no shear beyond the right end
+    rhs = np.zeros((4 * K, cases))
+    rhs[:-2] = loads.reshape(4 * K, cases)[2:]
+    rows = 1 / np.abs(A).max(1)[:, None]
+    return A * rows, rhs * rows, scale
+
+
+def solve_system(A: Array, rhs: Array) -> Array:
+    """Return the solution of the member's equations, refined once.
+
+    Parameters
+    ----------
+    A : numpy.ndarray
+        Matrix, entries only within 5 places of the diagonal [-].
+    rhs : numpy.ndarray
+        Right-hand sides, one a column [N].
+
+    Returns
+    -------
+    numpy.ndarray
+        Solution, one column a right-hand side [N].
+
+    Raises
+    ------
+    InputError
+        If the equations cannot be solved in floating point.
+
+    Notes
+    -----
+    One step of refinement in working precision makes the result as good as the rounding of each single entry
+    allows, whatever the scale of its row or column.
+
+    References
+    ----------
+    .. [1] R. D. Skeel, "Iterative refinement implies numerical stability for Gaussian elimination",
+       Math. Comp. 35 (1980), 817-832.
+    """
+    try:
+        if len(A) < BANDED_FROM:
+            x = np.linalg.solve(A, rhs)
+            x += np.linalg.solve(A, rhs - A @ x)
+        else:
+            x = _solve_banded(A, rhs)
+    except np.linalg.LinAlgError:
+        x = np.full_like(rhs, np.nan)
+    if not np.isfinite(x).all():
+        raise InputError(
+            "supports",
+            "the member's equations cannot be solved: its stiffnesses, springs or loads differ too much in size; bring"
+            " them closer together.",
+        )
+    return x
+
+
+def _solve_banded(A: Array, rhs: Array) -> Array:
+    from scipy.linalg import LinAlgError, get_lapack_funcs
+
+    n = len(A)
+    band = np.zeros((3 * BAND + 1, n))
+    for offset in range(-BAND, BAND + 1):
+        diagonal = np.diagonal(A, offset)
+        band[2 * BAND - offset, max(offset, 0) : max(offset, 0) + len(diagonal)] = diagonal
+    factor, apply = get_lapack_funcs(("gbtrf", "gbtrs"), (A, rhs))
+    lu, pivots, info = factor(band, BAND, BAND)
+    if info:
+        raise LinAlgError
+    x, _ = apply(lu, BAND, BAND, rhs, pivots)
+    correction, _ = apply(lu, BAND, BAND, rhs - A @ x, pivots)
+    result: Array = x + correction
+    return result
