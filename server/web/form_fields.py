@@ -1,0 +1,391 @@
+"""What the check form asks: every box with its label, its unit and the place in the document it feeds.
+
+The form's groups of rows mirror contract.md: one table here serves reading, writing back, fault placing and the
+templates, so that a box cannot be on the page without being read. Units: a box is marked with a unit for people
+(``UNITS``); a bare number typed into it means that unit and is handed on with it.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+SYSTEMS = ("SI", "US")
+
+UNITS: dict[str, tuple[str, str]] = {
+    # what a bare number means in a box: (SI, US), in the spelling that units.parse reads
+    "size": ("mm", "in"),
+    "position": ("m", "ft"),
+    "force": ("kN", "lbf"),
+    "line_load": ("kN/m", "lbf/ft"),
+    "couple": ("kN*m", "lbf*ft"),
+    "area_load": ("kN/m2", "psf"),
+    "stress": ("MPa", "psi"),
+    "fastener_force": ("N", "lbf"),
+    "slip": ("N/mm", "lbf/in"),
+    "density": ("kg/m3", "lb/ft3"),
+    "temperature": ("degC", "degF"),
+    "expansion": ("1/K", "1/K"),
+    "angle": ("deg", "deg"),
+}
+# What a plain number means in a document (contract.md), for documents written by hand or by a program.
+PLAIN_UNITS: dict[str, str] = {
+    "size": "mm",
+    "position": "mm",
+    "force": "N",
+    "line_load": "N/mm",
+    "couple": "N*mm",
+    "area_load": "MPa",
+    "stress": "MPa",
+    "fastener_force": "N",
+    "slip": "N/mm",
+    "density": "kg/m3",
+    "temperature": "degC",
+    "expansion": "1/K",
+    "angle": "deg",
+}
+_SHOWN = str.maketrans({"*": "·", "2": "²", "3": "³"})
+
+
+def shown_unit(unit: str, system: str) -> str:
+    """Return the unit beside a box as people read it: ``kN·m``, ``°C``, ``lbf/ft``."""
+    if not unit:
+        return ""
+    return UNITS[unit][system == "US"].translate(_SHOWN).replace("deg", "°" if unit == "temperature" else "deg")
+
+
+@dataclass(frozen=True)
+class Box:
+    """One box of the form: its name in the row, its label, unit, place in the document entry, and help."""
+
+    name: str
+    label: str
+    unit: str = ""
+    path: str = ""
+    choices: tuple[tuple[str, str], ...] = ()
+    names: str = ""  # the group whose names are offered while typing
+    hint: str = ""
+    more: bool = False  # seldom needed: folded away in its row
+    wide: bool = False
+    whole: bool = False  # a whole number
+
+    @property
+    def place(self) -> str:
+        """Where the box's value stands in the document's entry."""
+        return self.path or self.name
+
+
+@dataclass(frozen=True)
+class Group:
+    """Rows of one sort: what one is called, its boxes, and how many a form takes."""
+
+    name: str
+    one: str
+    boxes: tuple[Box, ...]
+    limit: int
+    path: str
+
+    def box(self, name: str) -> Box:
+        """Return the box called ``name``."""
+        return next(box for box in self.boxes if box.name == name)
+
+
+_YES_NO = (("", ""), ("yes", "yes"), ("no", "no"))
+_SOURCE = (
+    Box("source", "Source", hint="test, standard or supplier's paper the numbers come from", more=True, wide=True),
+    Box("note", "Note", more=True, wide=True),
+)
+_STATUS = Box(
+    "status",
+    "Status",
+    choices=(
+        ("", "not stated"),
+        *((s, s) for s in ("approved", "provisional", "indicative", "draft", "on hold", "withdrawn", "superseded")),
+    ),
+    more=True,
+)
+_FACTORS = (
+    Box("duration_factors", "Duration factors", hint="permanent 0.6, medium-term 0.8", more=True, wide=True),
+    Box("factors", "Other factors", hint="wet 0.8, workmanship 0.9", more=True, wide=True),
+)
+
+PIECES = Group(
+    "pieces",
+    "piece",
+    (
+        Box("name", "Name"),
+        Box("width", "Width", "size"),
+        Box("depth", "Depth", "size"),
+        Box("across", "Across", "size", "at[0]", hint="left edge, from any origin"),
+        Box("up", "Up", "size", "at[1]", hint="lower edge"),
+        Box("material", "Material", names="materials"),
+        Box(
+            "grain",
+            "Grain",
+            choices=(("", "along the member"), ("along", "along the member (stated)"), ("across", "across")),
+            more=True,
+        ),
+        Box("turn", "Turned", "angle", hint="anticlockwise", more=True),
+        Box("from", "Starts at", "position", hint="blank: left end", more=True),
+        Box("to", "Stops at", "position", hint="blank: right end", more=True),
+        Box(
+            "shape",
+            "Shape",
+            choices=(
+                ("rectangle", "rectangle"),
+                ("polygon", "polygon"),
+                ("round", "round bar or pipe"),
+                ("tube", "rectangular tube"),
+                ("angle", "angle"),
+                ("channel", "channel"),
+                ("i", "I profile"),
+                ("tee", "T profile"),
+            ),
+            more=True,
+        ),
+        Box("diameter", "Diameter", "size", more=True),
+        Box("wall", "Wall", "size", more=True),
+        Box("web", "Web", "size", more=True),
+        Box("flange", "Flange", "size", more=True),
+        Box("points", "Points", hint="across, up; across, up; ...", more=True, wide=True),
+        Box("holes", "Holes", hint="as points, | between holes", more=True, wide=True),
+    ),
+    40,
+    "section.pieces",
+)
+JOINTS = Group(
+    "joints",
+    "joint",
+    (
+        Box("first", "Piece", path="between[0]", names="pieces"),
+        Box("second", "to piece", path="between[1]", names="pieces"),
+        Box("adhesive", "Adhesive", names="adhesives", hint="blank: none"),
+        Box("fastener", "Fastener", names="fasteners", hint="blank: none"),
+        Box("spacing", "Spacing", "size", hint="or 0 to 1 m: 75; 1 m to 3 m: 150"),
+        Box("rows", "Rows", whole=True),
+        Box(
+            "role",
+            "Fasteners are for",
+            choices=(
+                ("", "not stated"),
+                ("sole", "carrying alone"),
+                ("fall-back", "fall-back"),
+                ("peel-stop", "stopping peel"),
+                ("press", "pressing"),
+            ),
+        ),
+        Box("coverage", "Glued share", hint="1 = all of it", more=True),
+        Box("width", "Glued width", "size", hint="blank: all that touches", more=True),
+        Box("segment", "Which contact", hint="1 = lowest, leftmost", more=True, whole=True),
+    ),
+    60,
+    "section.joints",
+)
+SUPPORTS = Group(
+    "supports",
+    "support",
+    (
+        Box("at", "At", "position"),
+        Box("kind", "Kind", choices=(("pin", "pin"), ("fixed", "fixed"), ("spring", "spring"))),
+        Box("stiffness", "Spring stiffness", "slip", hint="springs only"),
+    ),
+    25,
+    "member.supports",
+)
+HINGES = Group("hinges", "hinge", (Box("at", "At", "position", path="."),), 20, "member.hinges")
+LOADS = Group(
+    "loads",
+    "load",
+    (
+        Box("case", "Case", path="."),
+        Box(
+            "kind",
+            "Kind",
+            choices=(
+                ("line", "line load"),
+                ("point", "point load"),
+                ("couple", "couple"),
+                ("area", "load on an area"),
+                ("self-weight", "self-weight"),
+                ("moving", "moving axles"),
+            ),
+        ),
+        Box("at", "At", "position", hint="point load, couple"),
+        Box("from", "From", "position"),
+        Box("to", "To", "position"),
+        Box("value", "Value", "value"),
+        Box("value2", "Value at its end", "value", path="value[1]", hint="line load that varies"),
+        Box("width", "Strip width", "position", hint="load on an area"),
+        Box("lateral", "Sideways part", "value", hint="positive to the right", more=True),
+        Box("offset", "Off the shear centre", "size", more=True),
+        Box("axles", "Axles", hint="offset, force; offset, force", more=True, wide=True),
+    ),
+    200,
+    "loads",
+)
+COMBINATIONS = Group(
+    "combinations",
+    "combination",
+    (
+        Box("name", "Name"),
+        Box("factors", "Factor for each case", hint="dead 1.35, snow 1.5; blank: every case 1.0", wide=True),
+        Box("duration", "Duration", names="durations", hint="blank: none, factor 1.0"),
+        Box(
+            "for",
+            "Judges",
+            choices=(("", "strength and deflection"), ("strength", "strength"), ("deflection", "deflection")),
+        ),
+        Box("sustained", "Lasting share of a case", hint="snow 0.2, imposed 0.3", more=True, wide=True),
+    ),
+    40,
+    "combinations",
+)
+MATERIALS = Group(
+    "materials",
+    "material",
+    (
+        Box("name", "Name"),
+        Box("record", "From the library"),
+        Box("revision", "Revision", hint="blank: newest approved", whole=True),
+        Box(
+            "kind",
+            "Drawn as",
+            choices=(
+                ("", "not stated"),
+                *((k, k) for k in ("timber", "plywood", "steel", "aluminium", "GFRP", "foam", "other")),
+            ),
+        ),
+        Box("E", "E", "stress", hint="along the grain"),
+        Box("G", "G", "stress"),
+        Box("bending", "Bending strength", "stress", "strengths.bending"),
+        Box("shear", "Shear strength", "stress", "strengths.shear"),
+        Box("rolling_shear", "Rolling shear strength", "stress", "strengths.rolling_shear"),
+        Box("tension", "Tension strength", "stress", "strengths.tension"),
+        Box("compression", "Compression strength", "stress", "strengths.compression"),
+        Box("density", "Density", "density"),
+        Box("layered", "Layered (plywood)", choices=_YES_NO),
+        Box("tension_across", "Tension across", "stress", "strengths.tension_across", more=True),
+        Box("bearing", "Bearing strength", "stress", "strengths.bearing", more=True),
+        Box("G_rolling", "G, rolling shear", "stress", more=True),
+        Box("nu", "Poisson's ratio", more=True),
+        Box("expansion", "Expansion", "expansion", more=True),
+        Box("yield", "Yield strength", "stress", more=True),
+        Box("creep", "Creep factor", more=True),
+        _STATUS,
+        *_FACTORS,
+        *_SOURCE,
+    ),
+    20,
+    "materials",
+)
+ADHESIVES = Group(
+    "adhesives",
+    "adhesive",
+    (
+        Box("name", "Name"),
+        Box("record", "From the library"),
+        Box("revision", "Revision", hint="blank: newest approved", whole=True),
+        Box("shear_strength", "Shear strength", "stress", hint="characteristic; blank: told what to ask for"),
+        Box("thickness", "Bond line", "size"),
+        Box("shear_modulus", "Shear modulus", "stress"),
+        Box("peel_strength", "Tension across bond", "stress", hint="pull-off, not a peel test", more=True),
+        Box("E", "E", "stress", more=True),
+        Box("shear_yield", "Shear yield", "stress", more=True),
+        Box("shear_strain_limit", "Shear strain limit", more=True),
+        _STATUS,
+        *_FACTORS,
+        *_SOURCE,
+    ),
+    20,
+    "adhesives",
+)
+FASTENERS = Group(
+    "fasteners",
+    "fastener",
+    (
+        Box("name", "Name"),
+        Box("record", "From the library"),
+        Box("revision", "Revision", hint="blank: newest approved", whole=True),
+        Box("shear_resistance", "Shear resistance", "fastener_force", hint="one fastener, characteristic"),
+        Box("slip_modulus", "Slip modulus", "slip"),
+        Box("diameter", "Diameter", "size"),
+        Box("spacing_min", "Least spacing", "size", more=True),
+        Box("spacing_max", "Greatest spacing", "size", more=True),
+        Box("creep", "Creep factor", more=True),
+        _STATUS,
+        *_FACTORS,
+        *_SOURCE,
+    ),
+    20,
+    "fasteners",
+)
+GROUPS: dict[str, Group] = {
+    group.name: group
+    for group in (
+        PIECES,
+        JOINTS,
+        SUPPORTS,
+        HINGES,
+        LOADS,
+        COMBINATIONS,
+        MATERIALS,
+        ADHESIVES,
+        FASTENERS,
+    )
+}
+LOAD_UNITS = {"point": "force", "line": "line_load", "couple": "couple", "area": "area_load"}
+VALUE_GROUPS = ("materials", "adhesives", "fasteners")
+
+SINGLES: dict[str, Box] = {
+    # boxes that stand once on the page, by their field name
+    box.name: box
+    for box in (
+        Box("title", "What is it?", path="title"),
+        Box("note", "Note", path="note", wide=True),
+        Box("display", "Units of the sheet", path="display", choices=(("SI", "SI"), ("US", "US customary"))),
+        Box("span", "Span", "position", path="member.length"),
+        Box("load", "Load, uniform over the whole length", "line_load"),
+        Box("load_case", "Case of that load"),
+        Box(
+            "basis.method",
+            "Method",
+            path="basis.method",
+            choices=(("allowable", "allowable stress"), ("limit-state", "limit state")),
+        ),
+        Box("basis.adhesive", "Factor on adhesives"),
+        Box("basis.fastener", "Factor on fasteners"),
+        Box("basis.material", "Factor on materials", hint="one number, or NAME 3, NAME 2.5"),
+        Box(
+            "basis.fall_back_factor", "Factor on fall-backs", path="basis.fall_back_factor", hint="blank: as fasteners"
+        ),
+        Box(
+            "held_sideways",
+            "Held sideways",
+            path="member.held_sideways",
+            choices=(("yes", "yes, along its length"), ("no", "no, at its supports only")),
+        ),
+        Box("deflection_limit", "Deflection limit", path="member.deflection_limit", hint="span over; blank: none"),
+        Box(
+            "slip",
+            "Joints slip",
+            path="analysis.slip",
+            choices=(("auto", "where fasteners alone carry"), ("yes", "yes"), ("no", "no")),
+        ),
+        Box(
+            "shear_deformation",
+            "Shear deformation",
+            path="analysis.shear_deformation",
+            choices=(("yes", "counted"), ("no", "left out")),
+        ),
+        Box(
+            "field",
+            "Field method",
+            path="analysis.field",
+            choices=(("auto", "where needed"), ("always", "always"), ("never", "never")),
+        ),
+        Box("rules", "Rules applied", path="analysis.rules", hint="EN 1995-1-1 9.1.1, ...", wide=True),
+        Box("lowest", "Lowest temperature", "temperature", path="service.temperature[0]"),
+        Box("highest", "Highest temperature", "temperature", path="service.temperature[1]"),
+        Box("cure", "Cured at", "temperature", path="service.cure_temperature"),
+        Box("moisture", "Moisture change", path="service.moisture_change", hint="MATERIAL 6 %, MATERIAL 4 %"),
+    )
+}
