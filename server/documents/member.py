@@ -1,0 +1,247 @@
+"""Kind "member": a built-up member in bending."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from typing import Annotated, Any, Literal
+
+from pydantic import BeforeValidator, Field, Tag
+from pydantic_core import PydanticCustomError
+
+from server.documents.common import MARK, Basis, Document, Model, Number, number_or, tag_of
+from server.documents.quantities import (
+    Angle,
+    AreaForce,
+    Coverage,
+    Force,
+    Length,
+    Line,
+    LineForce,
+    LoadFactor,
+    Moisture,
+    Moment,
+    Name,
+    Place,
+    Rows,
+    Segment,
+    Share,
+    Size,
+    SpanOver,
+    Stiffness,
+    Temperature,
+)
+
+Role = Literal["sole", "fall-back", "peel-stop", "press"]
+
+
+class _Piece(Model):
+    """What pieces of every shape have in common."""
+
+    at: tuple[Length, Length]
+    material: Name
+    grain: Literal["along", "across"] = "along"
+    turn: Angle = 0.0
+    from_: Place | None = Field(default=None, alias="from")
+    to: Place | None = None
+
+
+class Rectangle(_Piece):
+    """A rectangular piece; ``at`` is the lower left corner of its bounding box after turning."""
+
+    shape: Literal["rectangle"]
+    width: Size
+    depth: Size
+
+
+SHAPES = frozenset(("rectangle",))
+SHAPES_TO_COME = frozenset(("polygon", "round", "tube", "angle", "channel", "i", "tee"))
+
+
+def _known_shape(value: object) -> object:
+    if isinstance(value, Mapping) and value.get("shape") not in SHAPES:
+        raise PydanticCustomError("choice", "not a known shape", {"field": "shape", "known": ", ".join(sorted(SHAPES))})
+    return value
+
+
+# A further shape is one class, its name moved into SHAPES, and one arm of a union under tag_of("shape", SHAPES),
+# as loads have; a union of one arm is not a union to pydantic, hence the plain check for now.
+Piece = Rectangle
+PieceEntry = Annotated[Rectangle, BeforeValidator(_known_shape)]
+
+
+class SpacingZone(Model):
+    """Fastener spacing over a part of the member."""
+
+    from_: Place = Field(alias="from")
+    to: Place
+    spacing: Size
+
+
+Spacing = Annotated[
+    Annotated[Size, Number] | Annotated[list[SpacingZone], Field(min_length=1, max_length=100), Tag(MARK + "zones")],
+    number_or(list, "zones"),
+]
+
+
+class Joint(Model):
+    """Where two pieces touch: an adhesive, fasteners, or both."""
+
+    between: tuple[Name, Name]
+    adhesive: Name | None = None
+    coverage: Coverage = 1.0
+    width: Size | None = None
+    fastener: Name | None = None
+    spacing: Spacing | None = None
+    rows: Rows = 1
+    role: Role | None = None
+    segment: Segment = 1
+
+    @property
+    def id(self) -> str:
+        """'web/flange', with '#2' for a further contact segment of the pair."""
+        return "/".join(self.between) + (f"#{self.segment}" if self.segment > 1 else "")
+
+    @property
+    def effective_role(self) -> Role | None:
+        """What the fasteners are for: as given, else 'sole' without adhesive and 'press' beside one; None without."""
+        if self.fastener is None:
+            return None
+        return self.role or ("press" if self.adhesive is not None else "sole")
+
+
+class Section(Model):
+    """The pieces of a cut and the joints between them."""
+
+    pieces: dict[Name, PieceEntry] = Field(min_length=1, max_length=200)
+    joints: list[Joint] = Field(default_factory=list, max_length=400)
+
+
+class Support(Model):
+    """A support: 'pin' carries a force, 'fixed' also a couple, 'spring' gives way by force / stiffness."""
+
+    at: Place
+    kind: Literal["pin", "fixed", "spring"]
+    stiffness: Stiffness | None = None
+
+
+class Member(Model):
+    """The member's length and how it is held."""
+
+    length: Size
+    supports: list[Support] = Field(min_length=1, max_length=100)
+    hinges: list[Place] = Field(default_factory=list, max_length=100)
+    held_sideways: bool = Field(default=True, strict=True)
+    deflection_limit: SpanOver | None = None
+
+
+class PointLoad(Model):
+    """A force at a place; ``offset`` is its distance across from the shear centre."""
+
+    kind: Literal["point"]
+    at: Place
+    value: Force
+    lateral: Force = 0.0
+    offset: Length = 0.0
+
+
+LineValue = Annotated[
+    Annotated[LineForce, Number] | Annotated[tuple[LineForce, LineForce], Tag(MARK + "pair")],
+    number_or((list, tuple), "pair"),
+]
+
+
+class LineLoad(Model):
+    """A force per length, constant or running from one value to another."""
+
+    kind: Literal["line"]
+    from_: Place = Field(alias="from")
+    to: Place
+    value: LineValue
+    lateral: LineForce = 0.0
+    offset: Length = 0.0
+
+    @property
+    def ends(self) -> tuple[float, float]:
+        """The value at ``from`` and at ``to`` [N/mm]."""
+        return self.value if isinstance(self.value, tuple) else (self.value, self.value)
+
+
+class CoupleLoad(Model):
+    """A couple at a place, positive anticlockwise."""
+
+    kind: Literal["couple"]
+    at: Place
+    value: Moment
+
+
+class AreaLoad(Model):
+    """A force per area on a loaded width."""
+
+    kind: Literal["area"]
+    from_: Place = Field(alias="from")
+    to: Place
+    value: AreaForce
+    width: Size
+
+
+class SelfWeight(Model):
+    """The pieces' own weight, from their densities."""
+
+    kind: Literal["self-weight"]
+
+
+LOADS = frozenset(("point", "line", "couple", "area", "self-weight"))
+LOADS_TO_COME = frozenset(("moving",))
+Load = PointLoad | LineLoad | CoupleLoad | AreaLoad | SelfWeight
+LoadEntry = Annotated[
+    Annotated[PointLoad, Tag(MARK + "point")]
+    | Annotated[LineLoad, Tag(MARK + "line")]
+    | Annotated[CoupleLoad, Tag(MARK + "couple")]
+    | Annotated[AreaLoad, Tag(MARK + "area")]
+    | Annotated[SelfWeight, Tag(MARK + "self-weight")],
+    tag_of("kind", LOADS),
+]
+
+
+class Combination(Model):
+    """Cases with their factors, what they serve for, and how much of each case stays."""
+
+    factors: dict[Name, LoadFactor] = Field(min_length=1, max_length=100)
+    duration: Name | None = None
+    for_: Literal["both", "strength", "deflection"] = Field(default="both", alias="for")
+    sustained: dict[Name, Share] = Field(default_factory=dict, max_length=100)
+
+
+class Analysis(Model):
+    """How the member is reckoned."""
+
+    slip: bool = Field(default=False, strict=True)
+    shear_deformation: bool = Field(default=True, strict=True)
+    field: Literal["auto", "always", "never"] = "auto"
+    rules: list[Line] = Field(default_factory=list, max_length=50)
+
+
+class Service(Model):
+    """Service conditions; they only ever add cautions."""
+
+    temperature: tuple[Temperature, Temperature] | None = None
+    cure_temperature: Temperature | None = None
+    moisture_change: dict[Name, Moisture] = Field(default_factory=dict, max_length=100)
+
+
+def _all_cases(data: dict[str, Any]) -> dict[str, Combination]:
+    """The combination that stands where none is given: all cases x 1.0, without a duration."""
+    return {"all": Combination(factors=dict.fromkeys(data.get("loads", {}), 1.0))}
+
+
+class MemberDocument(Document):
+    """A check of kind "member"."""
+
+    kind: Literal["member"]
+    basis: Basis
+    section: Section
+    member: Member
+    loads: dict[Name, Annotated[list[LoadEntry], Field(max_length=1000)]] = Field(min_length=1, max_length=100)
+    combinations: dict[Name, Combination] = Field(default_factory=_all_cases, min_length=1, max_length=100)
+    analysis: Analysis = Field(default_factory=Analysis)
+    service: Service | None = None
