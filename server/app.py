@@ -1,0 +1,57 @@
+"""The application: settings in, FastAPI out."""
+
+from __future__ import annotations
+
+from collections.abc import AsyncIterator
+from contextlib import asynccontextmanager
+
+from anyio import to_thread
+from fastapi import FastAPI
+from fastapi.responses import RedirectResponse
+from fastapi.staticfiles import StaticFiles
+
+from server import ENGINE
+from server.paths import data_folder
+from server.settings import Settings
+from server.web import api, errors, jobs, library, security, shop
+from server.web.records import Records
+
+_NO_TELEMETRY = {"tracing": False, "metrics": False, "logs": False, "operation_spans": False, "auto_configure": False}
+
+
+def create_app(settings: Settings) -> FastAPI:
+    """Build the application that ``settings`` describes.
+
+    The record book is opened when the server starts, or by the first request where nothing starts it (in tests).
+    """
+    records = Records(settings.records)
+
+    @asynccontextmanager
+    async def lifespan(_: FastAPI) -> AsyncIterator[None]:
+        await to_thread.run_sync(lambda: records.engine)
+        yield
+        records.close()
+
+    app = FastAPI(
+        title="Bondwright",
+        summary="Checks the joints of built-up members from the shop's own tested values.",
+        version=ENGINE.split()[-1],
+        telemetry=_NO_TELEMETRY,
+        docs_url=None,
+        redoc_url=None,
+        openapi_url="/openapi.json",
+        lifespan=lifespan,
+    )
+    app.state.settings, app.state.records = settings, records
+    errors.install(app)
+    app.add_middleware(security.Guard, settings=settings)
+    app.mount("/static", StaticFiles(directory=data_folder("static")), name="static")
+    app.add_api_route("/", _start, name="start", include_in_schema=False)
+    for room in (jobs, library, shop, api):
+        app.include_router(room.router)
+    return app
+
+
+def _start() -> RedirectResponse:
+    """The first page is the list of jobs."""
+    return RedirectResponse("/jobs", status_code=303)

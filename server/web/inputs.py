@@ -1,0 +1,58 @@
+"""What a handler asks for: the form as typed, the body as sent, a session to read or to write."""
+
+from __future__ import annotations
+
+import re
+from collections.abc import Iterator
+from typing import Annotated
+
+from fastapi import Depends, Path, Request
+from starlette.datastructures import ImmutableMultiDict
+
+from server import storage
+from server.settings import Settings
+from server.web.records import Records
+
+_CONTROLS = re.compile(r"[\x00-\x08\x0b\x0c\x0e-\x1f\x7f]")
+
+Id = Annotated[int, Path(ge=1, le=2**53)]
+"""A row's number in an address; anything else is answered as missing."""
+
+
+def settings_of(request: Request) -> Settings:
+    """Return the settings the application was made with."""
+    settings = request.app.state.settings
+    assert isinstance(settings, Settings)
+    return settings
+
+
+def open_session(request: Request) -> Iterator[storage.Session]:
+    """Open a session for one request. Rooms below save inside ``storage.write``, which is on disk when it returns."""
+    records = request.app.state.records
+    assert isinstance(records, Records)
+    with storage.reading(records.engine) as session:
+        yield session
+
+
+async def read_form(request: Request) -> ImmutableMultiDict[str, str]:
+    """Return the form's boxes exactly as typed (line ends as ``\\n``; characters nobody can type are dropped)."""
+    limits = settings_of(request)
+    async with request.form(max_files=0, max_fields=limits.max_fields, max_part_size=limits.max_body) as form:
+        return ImmutableMultiDict(
+            [(name, clean(value)) for name, value in form.multi_items() if isinstance(value, str)]
+        )
+
+
+async def read_body(request: Request) -> bytes:
+    """Return the body as sent; the size was limited on the way in."""
+    return await request.body()
+
+
+def clean(text: str) -> str:
+    """Return typed text with plain line ends and without control characters."""
+    return _CONTROLS.sub("", text.replace("\r\n", "\n").replace("\r", "\n"))
+
+
+FormValues = Annotated[ImmutableMultiDict[str, str], Depends(read_form)]
+Body = Annotated[bytes, Depends(read_body)]
+DbSession = Annotated[storage.Session, Depends(open_session)]
