@@ -12,6 +12,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
+from server.errors import InputError
 from server.mechanics.polygon import Array, Edges, Indices, Outline, edges_of, moments
 from server.mechanics.sweep import common_region
 
@@ -53,7 +54,7 @@ def contacts(outlines: Sequence[Outline], reach: Array) -> list[Contact]:
     Raises
     ------
     InputError
-        If there is no outline, or one has fewer than three points.
+        If there is no outline, one has fewer than three points, or ``reach`` has the wrong shape.
 
     Notes
     -----
@@ -74,11 +75,14 @@ def contacts(outlines: Sequence[Outline], reach: Array) -> list[Contact]:
     """
     edges = edges_of(outlines)
     reach = np.asarray(reach, dtype=float)
-    one, other = _near_edges(edges, np.maximum(reach, reach.T))
+    if reach.shape != (len(outlines), len(outlines)):
+        raise InputError("reach", f"reach has the shape {reach.shape}; give one number for every pair of pieces.")
+    reach = np.maximum(reach, reach.T)
+    one, other = _near_edges(edges, reach)
     if not one.size:
         return []
     faces = _facing(edges, one, other)
-    allowed = np.maximum(reach, reach.T)[edges.owner[faces.one], edges.owner[faces.other]]
+    allowed = reach[edges.owner[faces.one], edges.owner[faces.other]]
     kept = faces.high_gap <= allowed + 1e-9
     found: list[Contact] = []
     for index in np.flatnonzero(kept).tolist():

@@ -158,3 +158,26 @@ def moments(edges: Edges) -> tuple[Array, Array, Array]:
     cx, cy = sx / area, sy / area
     inertia = np.stack((iyy - cy * sy, ixx - cx * sx, ixy - cx * sy), axis=1)
     return area, origin + np.stack((cx, cy), axis=1), inertia
+
+
+def straightened(edges: Edges) -> Edges:
+    """The same polygons without corners in the middle of a straight side."""
+    along = edges.end - edges.start
+    after = along[edges.next]
+    length = np.sqrt(along[:, 0] ** 2 + along[:, 1] ** 2)
+    turn = np.abs(along[:, 0] * after[:, 1] - along[:, 1] * after[:, 0])
+    ahead = along[:, 0] * after[:, 0] + along[:, 1] * after[:, 1] > 0
+    flat = ahead & (turn <= 1e-9 * length * length[edges.next])
+    if not flat.any():
+        return edges
+    keep = np.ones(len(along), dtype=bool)
+    keep[edges.next[flat]] = False
+    ends_ring = edges.next != np.arange(1, len(along) + 1)
+    ring = np.concatenate(([0], ends_ring[:-1].cumsum()))
+    counts = np.bincount(ring[keep], minlength=int(ring[-1]) + 1)
+    last = counts.cumsum() - 1
+    following = np.arange(1, int(keep.sum()) + 1)
+    following[last] = last - counts + 1
+    start, owner = edges.start[keep], edges.owner[keep]
+    first = np.searchsorted(owner, np.arange(len(edges.first)))
+    return Edges(start, start[following], owner, first, following)
