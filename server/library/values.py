@@ -1,0 +1,30 @@
+"""A record's values are checked by the same models as a document's, so a fault reads the same in both."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from typing import Any
+
+from server import documents
+from server.errors import DocumentError, Fault
+from server.library.groups import Group
+from server.storage.tables import compact
+
+MOST_CHARACTERS = 50_000
+# These belong to the record, not to its values.
+_RECORDS_OWN = ("status", "source", "note", "record", "revision")
+
+
+def check_entry(faults: list[Fault], group: Group, values: Mapping[str, Any]) -> dict[str, Any]:
+    """Return ``values`` as typed; faults as ``values.shear_strength`` where the models refuse them."""
+    own = [name for name in _RECORDS_OWN if name in values]
+    faults += [Fault(f"values.{name}", f"{name} belongs to the record itself; leave it out here.") for name in own]
+    typed = {name: value for name, value in values.items() if name not in _RECORDS_OWN}
+    try:
+        documents.read_values(group.section, typed)
+    except DocumentError as error:
+        faults += [Fault(f"values.{fault.path}" if fault.path else "values", fault.message) for fault in error.faults]
+        return typed
+    if (length := len(compact(typed))) > MOST_CHARACTERS:
+        faults.append(Fault("values", f"The values have {length} characters; shorten them to {MOST_CHARACTERS}."))
+    return typed
