@@ -18,7 +18,7 @@ from server.errors import InputError
 from server.mechanics.beam_loads import Grid, lay_out
 from server.mechanics.beam_model import Beam, Couple, LineLoad, Load, PointLoad, Stretch, Support, span_ends
 from server.mechanics.beam_stability import require_stable
-from server.mechanics.beam_system import Sweep, assemble, solve_system, sweep
+from server.mechanics.beam_system import FIXED, Sweep, assemble, solve_system, sweep
 from server.mechanics.piecewise import Candidates, Extremes, candidates, evaluate, extremes, restrict
 
 __all__ = [
@@ -41,6 +41,8 @@ __all__ = [
 ]
 
 Array = NDArray[np.float64]
+_1_2_3 = np.array([1.0, 2.0, 3.0])  # shear's coefficients over these: moment's
+_TWICE = np.array([-2.0, -6.0, -12.0, -20.0])  # moment's over EI and these: deflection's
 
 
 @dataclass(frozen=True)
@@ -103,19 +105,16 @@ class Response:
             self.reaction_couple + other.reaction_couple,
         )
 
-    def candidates(self) -> tuple[Candidates, Candidates, Candidates]:
-        """Return all places of possible extremes of shear, moment and deflection, found in one go."""
+    def candidates(self) -> Candidates:
+        """Return all places of possible extremes of shear, moment and deflection, shape (3, c, m, q)."""
         c, m, d = self.deflection.shape
         curves = np.zeros((3, c, m, d))
         curves[0, ..., :3], curves[1, ..., :4], curves[2] = self.shear, self.moment, self.deflection
-        found = candidates(self.breaks, curves)
-        shear, moment, deflection = (Candidates(found.values[i], found.at[i]) for i in range(3))
-        return shear, moment, deflection
+        return candidates(self.breaks, curves)
 
-    def extremes(self) -> tuple[Extremes, Extremes, Extremes]:
-        """Return the extremes of shear [N], moment [N*mm] and deflection [mm] over the whole member."""
-        shear, moment, deflection = self.candidates()
-        return shear.over(), moment.over(), deflection.over()
+    def extremes(self) -> Extremes:
+        """Return the extremes over the whole member: rows shear [N], moment [N*mm], deflection [mm], (3, c)."""
+        return self.candidates().over()
 
 
 def solve(beam: Beam, cases: Sequence[Sequence[Load]]) -> Response:
@@ -154,9 +153,10 @@ def solve(beam: Beam, cases: Sequence[Sequence[Load]]) -> Response:
     Examples
     --------
     >>> floor = Beam(4000, [Support(0, "pin"), Support(4000, "pin")], [], [Stretch(0, 4000, 4.5e11)])
-    >>> shear, moment, deflection = solve(floor, [[LineLoad(0, 4000, 5, 5)]]).extremes()
-    >>> round(float(moment.max[0])), round(float(moment.at_max[0])), round(float(deflection.max[0]), 6)
-    (10000000, 2000, 37.037037)
+    >>> response = solve(floor, [[LineLoad(0, 4000, 5, 5)]])
+    >>> found = extremes(response.breaks, response.moment)
+    >>> round(float(found.max[0])), round(float(found.at_max[0]))
+    (10000000, 2000)
     """
     require_stable(beam)
     grid = lay_out(beam, cases)
@@ -168,29 +168,26 @@ def solve(beam: Beam, cases: Sequence[Sequence[Load]]) -> Response:
 
 def _curves(grid: Grid, swept: Sweep, states: Array) -> Response:
     """Return the polynomials and reactions from the states just right of the key places, (K, 4, c): y, psi, M, V."""
-    cases, m = grid.load.shape
-    y, psi, M, V = states.transpose(1, 2, 0)  # each (c, K)
+    _, cases, m = grid.load.shape
     start, end = swept.start, swept.end
     own = np.repeat(np.arange(len(grid.first)), np.subtract(grid.stop, grid.first))
-    V0, M0, psi0, y0 = start[:, :cases]
+    y, psi, M, V = states[own].transpose(1, 2, 0)  # each (c, m): just right of the key place before the interval
     unit_M, unit_V = start[:, cases], start[:, cases + 1]
-    Mj, Vj, psij = M[:, own], V[:, own], psi[:, own]
-    a, b, f, g = grid.load, grid.load_slope, grid.bending, grid.shear
-    V0 = V0 + Vj
-    M0 = M0 + Mj + Vj * unit_V[1]
-    psi0 = psi0 + psij + Mj * unit_M[2] + Vj * unit_V[2]
-    y0 = y0 + y[:, own] + psij * unit_V[1] + Mj * unit_M[3] + Vj * unit_V[3]
+    along = unit_V[1]  # distance from the key place
+    V0, M0, psi0, y0 = start[:, :cases] + V * unit_V[:, None] + M * unit_M[:, None]
+    psi0 += psi
+    y0 += y + psi * along
+    a, b = grid.load
     shear, moment, deflection = np.empty((cases, m, 3)), np.empty((cases, m, 4)), np.empty((cases, m, 6))
     shear[..., 0], shear[..., 1], shear[..., 2] = V0, -a, b / -2
     moment[..., 0] = M0
-    moment[..., 1:] = shear / [1, 2, 3]
+    np.divide(shear, _1_2_3, out=moment[..., 1:])
     deflection[..., 0], deflection[..., 1] = y0, psi0
-    deflection[..., 2:] = moment * f[:, None] / [-2, -6, -12, -20]
-    deflection[..., 1:4] += moment[..., 1:] * g[:, None]
-    arriving_V, arriving_M = np.zeros_like(V), np.zeros_like(M)
-    arriving_V[:, 1:] = V[:, :-1] + end[0, :cases]
-    arriving_M[:, 1:] = M[:, :-1] + V[:, :-1] * end[1, cases + 1] + end[1, :cases]
+    np.multiply(moment, grid.bending[:, None] / _TWICE, out=deflection[..., 2:])
+    deflection[..., 1:4] += moment[..., 1:] * grid.shear[:, None]
+    y, psi, M, V = states.transpose(1, 2, 0)  # each (c, K)
+    jump_V, jump_M = grid.force[:, grid.key] + V, -grid.couple[:, grid.key] - M
+    jump_V[:, 1:] -= V[:, :-1] + end[0, :cases]
+    jump_M[:, 1:] += M[:, :-1] + V[:, :-1] * end[1, cases + 1] + end[1, :cases]
     at = grid.support
-    force = (V - arriving_V + grid.force[:, grid.key])[:, at]
-    couple = (arriving_M - M - grid.couple[:, grid.key])[:, at]
-    return Response(grid.breaks, shear, moment, deflection, force, np.where(grid.kind[at] == 2, couple, 0.0))
+    return Response(grid.breaks, shear, moment, deflection, jump_V[:, at], jump_M[:, at] * (grid.kind[at] == FIXED))

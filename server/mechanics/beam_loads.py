@@ -5,6 +5,7 @@ Units: N, mm, N/mm, N*mm.
 
 from __future__ import annotations
 
+import math
 from collections.abc import Sequence
 from dataclasses import dataclass
 
@@ -30,8 +31,8 @@ class Grid:
         Places (m + 1,) and lengths (m,) of the intervals [mm].
     bending, shear : numpy.ndarray
         1/EI [1/(N*mm2)] and 1/GA [1/N] of each interval.
-    load, load_slope : numpy.ndarray
-        Line load at each interval's start [N/mm] and its slope [N/mm2], shape (c, m).
+    load : numpy.ndarray
+        Line load at each interval's start [N/mm] and its slope [N/mm2], shape (2, c, m).
     force, couple : numpy.ndarray
         Force [N] and couple [N*mm] at each break, shape (c, m + 1).
     key, kind : numpy.ndarray
@@ -49,7 +50,6 @@ class Grid:
     bending: Array
     shear: Array
     load: Array
-    load_slope: Array
     force: Array
     couple: Array
     key: Indices
@@ -67,6 +67,10 @@ class _Gathered:
     points: list[tuple[int, float, float]]
     couples: list[tuple[int, float, float]]
     lines: list[tuple[int, float, float, float, float]]
+
+    def usable(self) -> bool:
+        """Return whether all numbers are finite (a sum is not, once one of its terms is not)."""
+        return math.isfinite(sum(map(sum, self.points)) + sum(map(sum, self.couples)) + sum(map(sum, self.lines)))
 
 
 def _gather(cases: Sequence[Sequence[Load]]) -> _Gathered:
@@ -140,104 +144,97 @@ def lay_out(beam: Beam, cases: Sequence[Sequence[Load]]) -> Grid:
     .. [1] None needed: bookkeeping.
     """
     loads = _gather(cases)
-    points = np.array(loads.points + loads.couples, dtype=float).reshape(-1, 3)
-    lines = np.array(loads.lines, dtype=float).reshape(-1, 5)
-    stretches = beam.stretches
-    places = np.array(
-        [0.0, beam.length, *(s.at for s in beam.supports), *beam.hinges, *(s.start for s in stretches)]
-        + [row[1] for row in loads.points]
-        + [row[1] for row in loads.couples]
-        + [row[1] for row in loads.lines]
-        + [row[2] for row in loads.lines]
-    )
-    slack = beam.same_place
-    order = places.argsort(kind="stable")
-    ascending = places[order]
-    new = np.empty(len(places), dtype=bool)
-    new[0] = True
-    np.greater(ascending[1:] - ascending[:-1], slack, out=new[1:])
-    index = np.empty(len(places), dtype=np.intp)
-    index[order] = new.cumsum() - 1
-    breaks = ascending[new]
-    breaks[0], breaks[-1] = 0.0, beam.length
-    where = iter(np.split(index, np.cumsum([2, len(beam.supports), len(beam.hinges), len(stretches)])))
-    _, support, hinge, stretch_first = next(where), next(where), next(where), next(where)
-    rest = next(where)
-    at, starts, ends = rest[: len(points)], rest[len(points) : len(points) + len(lines)], rest[len(points) + len(lines) :]
-    m, c = len(breaks) - 1, len(cases)
-    if not (
-        np.isfinite(places).all()
-        and ascending[0] >= -slack
-        and ascending[-1] <= beam.length + slack
-        and np.isfinite(points).all()
-        and np.isfinite(lines).all()
-        and (starts < ends).all()
-        and not (beam.hinges and loads.couples and np.isin(at[len(loads.points) :], hinge).any())
+    if not loads.usable():
+        _check_loads(beam, cases)
+    places = {0.0, beam.length, *(s.at for s in beam.supports), *beam.hinges, *(s.start for s in beam.stretches)}
+    for rows in (loads.points, loads.couples, loads.lines):
+        places.update(row[1] for row in rows)
+    places.update(row[2] for row in loads.lines)
+    breaks, number = _cut(beam, places)
+    hinges = {number[at] for at in beam.hinges}
+    if (
+        min(places) < -beam.same_place
+        or max(places) > beam.length + beam.same_place
+        or not all(number[row[1]] < number[row[2]] for row in loads.lines)
+        or not hinges.isdisjoint([number[row[1]] for row in loads.couples])
     ):
         _check_loads(beam, cases)
-    width = breaks[1:] - breaks[:-1]
-    span = np.zeros(m + 1, dtype=np.intp)
-    span[stretch_first[1:]] = 1
-    of_stretch = span[:-1].cumsum()
-    flexibility = np.array([(1 / s.EI, 1 / s.GA) for s in stretches])[of_stretch]
-    forces = np.zeros((2, c, m + 1))
-    if len(points):
-        kind = np.zeros(len(points), dtype=np.intp)
-        kind[len(loads.points) :] = 1
-        flat = (kind * c + points[:, 0].astype(np.intp)) * (m + 1) + at
-        forces = np.bincount(flat, points[:, 2], 2 * c * (m + 1)).reshape(2, c, m + 1)
-    load, load_slope = _spread(lines, starts, ends, breaks, c)
-    key, key_support, kinds, springs = _key_places(beam, support, hinge, m)
-    bounds = key.tolist()
+    m = len(breaks) - 1
+    bounds = [number[stretch.start] for stretch in beam.stretches]
+    flexibility = np.repeat(
+        np.array([[1 / s.EI for s in beam.stretches], [1 / s.GA for s in beam.stretches]]),
+        np.diff(bounds, append=m),
+        axis=1,
+    )
+    force, couple = np.zeros((2, len(cases), m + 1))
+    for target, rows in ((force, loads.points), (couple, loads.couples)):
+        for case, at, value in rows:
+            target[case, number[at]] += value
+    supports = [number[support.at] for support in beam.supports]
+    key = sorted({0, m, *supports, *hinges})
+    position = {place: order for order, place in enumerate(key)}
+    kind, springs = _what_holds(beam, [position[at] for at in supports], [position[at] for at in hinges], len(key))
     return Grid(
-        breaks,
-        width,
-        flexibility[:, 0],
-        flexibility[:, 1],
-        load,
-        load_slope,
-        forces[0],
-        forces[1],
-        key,
-        kinds,
-        springs,
-        key_support,
-        bounds[:-1],
-        bounds[1:],
+        breaks=breaks,
+        width=breaks[1:] - breaks[:-1],
+        bending=flexibility[0],
+        shear=flexibility[1],
+        load=_spread(loads.lines, number, breaks, len(cases)),
+        force=force,
+        couple=couple,
+        key=np.array(key),
+        kind=np.array(kind),
+        springs=springs,
+        support=np.array([position[at] for at in supports]),
+        first=key[:-1],
+        stop=key[1:],
     )
 
 
-def _spread(lines: Array, starts: Indices, ends: Indices, breaks: Array, c: int) -> tuple[Array, Array]:
-    """Return the line load at each interval's start and its slope, for each case."""
+def _cut(beam: Beam, places: set[float]) -> tuple[Array, dict[float, int]]:
+    """Return the breaks, and the number of the break at each place; places too close to tell apart share one."""
+    breaks: list[float] = []
+    number: dict[float, int] = {}
+    last = -np.inf
+    for place in sorted(places):
+        if place - last > beam.same_place:
+            breaks.append(place)
+        last = place
+        number[place] = len(breaks) - 1
+    breaks[0], breaks[-1] = 0.0, beam.length
+    return np.array(breaks, dtype=float), number
+
+
+def _spread(
+    lines: list[tuple[int, float, float, float, float]], number: dict[float, int], breaks: Array, cases: int
+) -> Array:
+    """Return the line load at each interval's start and its slope, (2, cases, m)."""
     m = len(breaks) - 1
-    if not len(lines):
-        return np.zeros((c, m)), np.zeros((c, m))
-    number = np.arange(m)
-    inside = (number >= starts[:, None]) & (number < ends[:, None])
-    low, high, first, last = lines[:, 1:].T[:, :, None]
-    slope = (last - first) / (high - low)
-    both = np.empty((len(lines), 2, m))
-    np.multiply(first + slope * (breaks[:-1] - low), inside, out=both[:, 0])
-    np.multiply(slope, inside, out=both[:, 1])
-    owner = (lines[:, 0] == np.arange(c)[:, None]).astype(float)
-    total = (owner @ both.reshape(len(lines), 2 * m)).reshape(c, 2, m)
-    return total[:, 0], total[:, 1]
+    if not lines:
+        return np.zeros((2, cases, m))
+    start = np.array([number[row[1]] for row in lines])
+    covers = np.array([number[row[2]] for row in lines]) - start  # intervals under each load
+    owner = np.repeat(np.arange(len(lines)), covers)
+    interval = np.arange(len(owner)) + np.repeat(start - covers.cumsum() + covers, covers)
+    table = np.array(lines)
+    slope = (table[:, 4] - table[:, 3]) / (table[:, 2] - table[:, 1])
+    at_zero = table[:, 3] - slope * (table[:, 1] - breaks[start])
+    slopes = slope[owner]
+    values = at_zero[owner] + slopes * (breaks[interval] - breaks[start][owner])
+    place = table[:, 0].astype(np.intp)[owner] * m + interval
+    return np.array([np.bincount(place, part, cases * m) for part in (values, slopes)]).reshape(2, cases, m)
 
 
-def _key_places(
-    beam: Beam, support: Indices, hinge: Indices, m: int
-) -> tuple[Indices, Indices, Indices, list[tuple[int, float]]]:
-    """Return the key places' breaks, each support's key place, what holds at each, and the springs."""
-    at_support, at_hinge = support.tolist(), hinge.tolist()
-    ordered = sorted({0, m, *at_support, *at_hinge})
-    number = {place: position for position, place in enumerate(ordered)}
-    kinds = [0] * len(ordered)
+def _what_holds(
+    beam: Beam, supports: list[int], hinges: list[int], count: int
+) -> tuple[list[int], list[tuple[int, float]]]:
+    """Return what holds at each of the key places, and the springs."""
+    kind = [0] * count
     springs: list[tuple[int, float]] = []
-    for held, place in zip(beam.supports, at_support, strict=True):
-        kinds[number[place]] = _KIND[held.kind]
-        if held.kind == "spring":
-            springs.append((number[place], held.stiffness))
-    for place in at_hinge:
-        kinds[number[place]] = _HINGED[kinds[number[place]]]
-    key_support = np.array([number[place] for place in at_support], dtype=np.intp)
-    return np.array(ordered, dtype=np.intp), key_support, np.array(kinds, dtype=np.intp), springs
+    for support, place in zip(beam.supports, supports, strict=True):
+        kind[place] = _KIND[support.kind]
+        if support.kind == "spring":
+            springs.append((place, support.stiffness))
+    for place in hinges:
+        kind[place] = _HINGED[kind[place]]
+    return kind, springs

@@ -21,16 +21,18 @@ BANDED_FROM = 48  # unknowns from which a banded solution pays for its import
 BAND = 5
 
 # What holds at a key place: factors on the state just left of it and just right of it, rows y, psi, M, V.
-_FREE, _PIN, _FIXED, _SPRING, _HINGE, _HINGED_PIN, _HINGED_SPRING = range(7)
+_FREE, _PIN, FIXED, _SPRING, _HINGE, _HINGED_PIN, _HINGED_SPRING = range(7)
 _LEFT, _RIGHT = np.zeros((7, 4, 4)), np.zeros((7, 4, 4))
 _LEFT[:], _RIGHT[:] = -np.eye(4), np.eye(4)  # nothing there: the state passes through
 for _kind in (_HINGE, _HINGED_PIN, _HINGED_SPRING):  # psi may jump; M is zero on both sides
     _LEFT[_kind, 1], _RIGHT[_kind, 1] = [0, 0, 1, 0], 0
     _LEFT[_kind, 2], _RIGHT[_kind, 2] = 0, [0, 0, 1, 0]
-_LEFT[_FIXED, 1], _RIGHT[_FIXED, 1] = [0, 1, 0, 0], 0  # psi is zero on both sides; M may jump
-_LEFT[_FIXED, 2], _RIGHT[_FIXED, 2] = 0, [0, 1, 0, 0]
-for _kind in (_PIN, _FIXED, _HINGED_PIN):  # y is zero; V may jump
+_LEFT[FIXED, 1], _RIGHT[FIXED, 1] = [0, 1, 0, 0], 0  # psi is zero on both sides; M may jump
+_LEFT[FIXED, 2], _RIGHT[FIXED, 2] = 0, [0, 1, 0, 0]
+for _kind in (_PIN, FIXED, _HINGED_PIN):  # y is zero; V may jump
     _LEFT[_kind, 3], _RIGHT[_kind, 3] = 0, [1, 0, 0, 0]
+_LOADED = np.ones((7, 4, 1))  # a load on a support or a couple on a fixed one goes straight into the reaction
+_LOADED[[_PIN, FIXED, _HINGED_PIN], 3] = _LOADED[FIXED, 2] = 0
 
 
 @dataclass(frozen=True)
@@ -72,33 +74,48 @@ def sweep(grid: Grid) -> Sweep:
     .. [1] S. P. Timoshenko, "Strength of Materials", part I, 3rd ed. (1955), articles 32 and 39.
     """
     d, f, g = grid.width, grid.bending, grid.shear
-    cases, m = grid.load.shape
-    a, b = np.zeros((cases + 2, m)), np.zeros((cases + 2, m))
-    a[:cases], b[:cases] = grid.load, grid.load_slope
-    drop, turn = np.zeros((cases + 2, m)), np.zeros((cases + 2, m))
-    drop[:cases, :-1], turn[:cases, :-1] = grid.force[:, 1:-1], grid.couple[:, 1:-1]  # at each interval's right end
-    d2, d3 = d * d / 2, d * d * d / 6
-    d4, d5 = d2 * d2 / 6, d2 * d3 / 10
-    ad2, bd3 = a * d2, b * d3
-    start, end = np.zeros((4, cases + 2, m)), np.empty((4, cases + 2, len(grid.first)))
-    V, M, psi, y = start
+    _, cases, m = grid.load.shape
+    d2 = d * d / 2
+    d3 = d2 * d / 3
+    d4 = d3 * d / 4
+    d5 = d4 * d / 5
+    start, change = np.zeros((4, cases + 2, m)), np.zeros((4, cases + 2, m))
+    V, M, psi, _ = start
+    dV, dM, dpsi, dy = change
+    ends = list(zip(grid.first, grid.stop, strict=True))
 
-    def run(level: int, change: Array, jump: Array | None) -> None:
-        passed = change if jump is None else change - jump
-        for part, (low, high) in enumerate(zip(grid.first, grid.stop, strict=True)):
+    def add_up(level: Array, steps: Array) -> None:
+        for low, high in ends:
             if high - low > 1:
-                passed[:, low : high - 1].cumsum(1, out=start[level, :, low + 1 : high])
-            end[level, :, part] = start[level, :, high - 1] + change[:, high - 1]
+                steps[:, low : high - 1].cumsum(1, out=level[:, low + 1 : high])
 
-    run(0, -(a * d + b * d2), drop)
+    # Integrals of the line load alone over each interval, one for each of V, M, psi, y.
+    spread = (grid.load[0] * np.array([d, d2, d3, d4])[:, None]) + (grid.load[1] * np.array([d2, d3, d4, d5])[:, None])
+    dV[:cases] = -spread[0]
+    steps = dV.copy()
+    steps[:cases, :-1] -= grid.force[:, 1:-1]
+    add_up(V, steps)
     V[-1] += 1
-    end[0, -1] += 1
-    run(1, V * d - ad2 - bd3, turn)
+    np.multiply(V, d, out=dM)
+    dM[:cases] -= spread[1]
+    steps = dM.copy()
+    steps[:cases, :-1] -= grid.couple[:, 1:-1]
+    add_up(M, steps)
     M[-2] += 1
-    end[1, -2] += 1
-    run(2, (a * d3 + b * d4 - M * d - V * d2) * f, None)
-    run(3, psi * d + (a * d4 + b * d5 - M * d2 - V * d3) * f + (V * d - ad2 - bd3) * g, None)
-    return Sweep(start, end)
+    np.multiply(M, -d, out=dpsi)
+    dpsi -= V * d2
+    dpsi[:cases] += spread[2]
+    dpsi *= f
+    add_up(psi, dpsi)
+    np.multiply(M, -d2, out=dy)
+    dy -= V * d3
+    dy[:cases] += spread[3]
+    dy *= f
+    dy += psi * d
+    dy += dM * g
+    add_up(start[3], dy)
+    last = np.subtract(grid.stop, 1)
+    return Sweep(start, start[:, :, last] + change[:, :, last])
 
 
 def assemble(grid: Grid, swept: Sweep) -> tuple[Array, Array, Array]:
@@ -120,27 +137,23 @@ def assemble(grid: Grid, swept: Sweep) -> tuple[Array, Array, Array]:
     ----------
     .. [1] S. P. Timoshenko, "Strength of Materials", part II, 3rd ed. (1956), chapter 1 (initial parameters).
     """
-    K, cases = len(grid.key), grid.load.shape[0]
-    reach = grid.breaks[-1] / (K - 1)
-    softness = float(grid.bending @ grid.width) / grid.breaks[-1]
+    K, cases = len(grid.key), grid.load.shape[1]
+    length = float(grid.breaks[-1])
+    reach = length / (K - 1)
+    softness = float(grid.bending @ grid.width) / length
     scale = np.array([reach**3 * softness, reach**2 * softness, reach, 1.0])
+    end = swept.end[::-1].transpose(2, 0, 1) / scale[:, None]  # (parts, y psi M V, rows)
     T = np.zeros((K - 1, 4, 4))
-    V, M, psi, y = swept.end
-    T[:] = np.eye(4)
-    T[:, 0, 1] = T[:, 2, 3] = np.diff(grid.breaks[grid.key])
-    T[:, 0, 2], T[:, 0, 3] = y[cases], y[cases + 1]
-    T[:, 1, 2], T[:, 1, 3] = psi[cases], psi[cases + 1]
-    T *= scale / scale[:, None]
-    kind = grid.kind
-    right, left = _RIGHT[kind], _LEFT[kind]
-    loads = np.empty((K, 4, cases))
-    loads[:, :2] = 0
-    loads[:, 2], loads[:, 3] = -grid.couple[:, grid.key].T / scale[2], -grid.force[:, grid.key].T
+    T[:, :, 2:] = end[:, :, cases:] * scale[2:]
+    T[:, 0, 0] = T[:, 1, 1] = 1
+    T[:, 0, 1] = T[:, 2, 3]  # the length of the part
+    right, left = _RIGHT[grid.kind], _LEFT[grid.kind]
+    loads = np.zeros((K, 4, cases))
+    loads[:, 2] = grid.couple[:, grid.key].T / -scale[2]
+    loads[:, 3] = -grid.force[:, grid.key].T
+    loads *= _LOADED[grid.kind]
     carried = left[1:] @ T
-    arriving = np.array([y[:cases], psi[:cases], M[:cases], V[:cases]]).transpose(2, 0, 1) / scale[:, None]
-    loads[:, 2][(kind == _FIXED)] = 0
-    loads[:, 3][(kind == _PIN) | (kind == _FIXED) | (kind == _HINGED_PIN)] = 0
-    loads[1:] -= left[1:] @ arriving
+    loads[1:] -= left[1:] @ end[:, :, :cases]
     for place, stiffness in grid.springs:  # V jumps by k y; divided so that neither a soft nor a stiff spring swamps
         k = stiffness * scale[0]
         right[place, 3, 0] = -k
@@ -156,8 +169,10 @@ def assemble(grid: Grid, swept: Sweep) -> tuple[Array, Array, Array]:
     A[-2, -2] = A[-1, -1] = 1  # no moment and no shear beyond the right end
     rhs = np.zeros((4 * K, cases))
     rhs[:-2] = loads.reshape(4 * K, cases)[2:]
-    rows = 1 / np.abs(A).max(1)[:, None]
-    return A * rows, rhs * rows, scale
+    rows = np.abs(A).max(1)[:, None]
+    A /= rows
+    rhs /= rows
+    return A, rhs, scale
 
 
 def solve_system(A: Array, rhs: Array) -> Array:

@@ -20,6 +20,7 @@ from server.errors import InputError
 Array = NDArray[np.float64]
 TIE = 1e-9  # share of the greatest absolute value within which two places tie
 NOISE = 1e-14  # share of the greatest absolute value below which a slope is rounding
+SETTLED = 1e-8  # Newton's last step; the error after it is of the order of its square
 EDGE = 1e-9  # a turning point this near an interval's end (share of the interval) is the end itself
 
 
@@ -55,7 +56,8 @@ class Candidates:
     Parameters
     ----------
     values, at : numpy.ndarray
-        Value [unit of the curve] and place [mm], shape (..., m, q); unused places repeat the interval's start.
+        Value [unit of the curve] and place [mm], shape (..., m, q), places ascending; unused places repeat the
+        interval's start.
     """
 
     values: Array
@@ -73,11 +75,16 @@ class Candidates:
 
 
 def _pick(values: Array, at: Array) -> Extremes:
-    high, low = values.max(-1, keepdims=True), values.min(-1, keepdims=True)
+    """Return the extremes along the last axis, where ``at`` ascends."""
+    lead, n = values.shape[:-1], values.shape[-1]
+    values, at = values.reshape(-1, n), at.reshape(-1, n)
+    high, low = values.max(1), values.min(1)
     slack = TIE * np.maximum(np.abs(high), np.abs(low))
-    top = np.where(values >= high - slack, at, np.inf).argmin(-1)[..., None]
-    bottom = np.where(values <= low + slack, at, np.inf).argmin(-1)[..., None]
-    return Extremes(*(np.take_along_axis(a, k, -1)[..., 0] for k in (top, bottom) for a in (values, at)))
+    row = np.arange(len(values))
+    top = (values >= (high - slack)[:, None]).argmax(1)
+    bottom = (values <= (low + slack)[:, None]).argmax(1)
+    found = (values[row, top], at[row, top], values[row, bottom], at[row, bottom])
+    return Extremes(*(part.reshape(lead) for part in found))
 
 
 def candidates(breaks: ArrayLike, coefficients: ArrayLike) -> Candidates:
@@ -107,38 +114,39 @@ def candidates(breaks: ArrayLike, coefficients: ArrayLike) -> Candidates:
        diminishing property, subdivision).
     """
     x, c = np.asarray(breaks, dtype=float), np.asarray(coefficients, dtype=float)
-    m, d = c.shape[-2:]
-    lead = c.shape[:-2]
+    *lead, m, d = c.shape
     width = x[1:] - x[:-1]
-    pieces = (c * width[:, None] ** np.arange(d)).reshape(-1, m, d)  # in t = s / width, 0 to 1
-    ends = np.empty((*pieces.shape[:2], 2))
-    ends[..., 0] = pieces[..., 0]
-    pieces.sum(-1, out=ends[..., 1])
-    at = np.empty_like(ends)
+    powers = np.empty((m, d))
+    powers[:, 0], powers[:, 1:] = 1, width[:, None]
+    pieces = (c * np.multiply.accumulate(powers, axis=1)).reshape(-1, d)  # in t = s / width, 0 to 1
+    ends = np.empty((len(pieces), 2))
+    ends[:, 0] = pieces[:, 0]
+    pieces.sum(1, out=ends[:, 1])
+    at = np.empty((len(pieces) // m, m, 2))
     at[..., 0], at[..., 1] = x[:-1], x[1:]
-    if d > 2 and ends.size:
-        slope = pieces[..., 1:] * np.arange(1, d)
+    at = at.reshape(-1, 2)
+    if d > 2 and pieces.size:
+        slope = pieces[:, 1:] * np.arange(1.0, d)
         hull = slope @ _bernstein(d - 1)
-        noise = NOISE * np.abs(pieces).max((1, 2))[:, None]
-        turning = (hull.min(-1) < -noise) & (hull.max(-1) > noise)
-        item = turning.ravel().nonzero()[0]
+        noise = np.repeat(NOISE * np.abs(ends).reshape(-1, 2 * m).max(1), m)
+        item = ((hull.min(1) < -noise) & (hull.max(1) > noise)).nonzero()[0]
         if item.size:
-            item, t = _roots(item, slope.reshape(-1, d - 1)[item], hull.reshape(-1, d - 1)[item])
-            slot = np.arange(item.size) - np.searchsorted(item, item)
-            extra = int(slot.max(initial=-1)) + 1
-            value = _powers_dot(pieces.reshape(-1, d)[item], t)
-            ends = _with_slots(ends, extra, item, slot, value)
-            at = _with_slots(at, extra, item, slot, x[item % m] + t * width[item % m])
-    return Candidates(ends.reshape(*lead, m, -1), at.reshape(*lead, m, -1))
+            item, t = _roots(item, slope[item], hull[item], noise[item])
+        if item.size:
+            back = np.searchsorted(item, item, "right") - np.arange(item.size)  # 1 for an interval's last root
+            of = item % m
+            ends = _with_slots(ends, item, back, _horner(pieces[item].T, t))
+            at = _with_slots(at, item, back, x[of] + t * width[of])
+    shape = (*lead, m, ends.shape[1])
+    return Candidates(ends.reshape(shape), at.reshape(shape))
 
 
-def _with_slots(ends: Array, extra: int, item: NDArray[np.intp], slot: NDArray[np.intp], value: Array) -> Array:
-    """Widen the last axis by ``extra`` columns that repeat the first, and put ``value`` where it belongs."""
-    rows, m, _ = ends.shape
-    wide = np.empty((rows, m, 2 + extra))
-    wide[..., :2] = ends
-    wide[..., 2:] = ends[..., :1]
-    wide.reshape(rows * m, 2 + extra)[item, 2 + slot] = value
+def _with_slots(ends: Array, item: NDArray[np.intp], back: NDArray[np.intp], value: Array) -> Array:
+    """Put columns between the two ends, the last ones holding ``value``, the others the left end."""
+    wide = np.empty((len(ends), 2 + int(back.max())))
+    wide[:, :-1] = ends[:, :1]
+    wide[:, -1] = ends[:, 1]
+    wide[item, -1 - back] = value
     return wide
 
 
@@ -272,11 +280,13 @@ def evaluate(
     return value
 
 
-def _powers_dot(c: Array, t: Array) -> Array:
-    """Return the value of each polynomial (ascending coefficients in a row) at its own t."""
-    value = c[:, -1]
-    for power in range(c.shape[1] - 2, -1, -1):
-        value = value * t + c[:, power]
+def _horner(c: Array, t: Array) -> Array:
+    """Return polynomials at t; the first axis of ``c`` holds the ascending coefficients."""
+    value = c[-1] * t
+    for coefficient in c[-2:0:-1]:
+        value += coefficient
+        value *= t
+    value += c[0]
     return value
 
 
@@ -294,14 +304,27 @@ def _halves(n: int) -> tuple[Array, Array]:
     return left, left[::-1, ::-1].copy()
 
 
-def _roots(item: NDArray[np.intp], slope: Array, hull: Array) -> tuple[NDArray[np.intp], Array]:
+def _roots(item: NDArray[np.intp], slope: Array, hull: Array, noise: Array) -> tuple[NDArray[np.intp], Array]:
     """Return the sign changes of each slope inside 0..1: the owner's number (ascending) and t."""
-    low, high = np.zeros(item.size), np.ones(item.size)
-    rising = hull[:, -1] > 0
-    changes = _changes(hull)
-    if changes.max() > 1:
-        item, slope, low, high, rising = _isolate(item, slope, hull, changes)
-    t = _polish(slope, low, high, rising)
+    # A slope of nothing but rounding at an end takes its neighbour's sign: the end is a candidate in any case.
+    for end, inner in ((0, 1), (-1, -2)):
+        flat = np.abs(hull[:, end]) <= noise
+        if flat.any():
+            hull[flat, end] = hull[flat, inner]
+    above = hull > 0
+    turn = above[:, 1:] != above[:, :-1]
+    if (turn.sum(1) == 1).all():
+        rising = above[:, -1]
+        low, high = np.zeros(item.size), np.ones(item.size)
+        # Where the control polygon crosses zero: exact for a straight slope, near enough for Newton otherwise.
+        left = turn.argmax(1)
+        row = np.arange(item.size)
+        before, after = hull[row, left], hull[row, left + 1]
+        t = (left + before / (before - after)) / turn.shape[1]
+    else:
+        item, slope, low, high, rising = _isolate(item, slope, hull, turn.sum(1))
+        t = 0.5 * (low + high)
+    t = _polish(slope.T, t, low, high, rising)
     inside = (t > EDGE) & (t < 1 - EDGE)
     return (item, t) if inside.all() else (item[inside], t[inside])
 
@@ -318,44 +341,58 @@ def _isolate(
 
     Twenty-four halvings separate all but double roots, where the curve has no extreme anyway.
     """
-    left, right = _halves(hull.shape[1])
+    to_left, to_right = _halves(hull.shape[1])
     which, low, size = np.arange(item.size), np.zeros(item.size), 1.0
     found: list[tuple[NDArray[np.intp], Array, Array, NDArray[np.bool_]]] = []
     for _ in range(24):
-        single = changes == 1
+        single, many = changes == 1, changes > 1
         found.append((which[single], low[single], low[single] + size, hull[single, -1] > 0))
-        many = changes > 1
         if not many.any():
             break
         size /= 2
         which = np.concatenate([which[many], which[many]])
         low = np.concatenate([low[many], low[many] + size])
-        hull = np.concatenate([hull[many] @ left, hull[many] @ right])
+        left, right = hull[many] @ to_left, hull[many] @ to_right
+        right[:, 0] = left[:, -1]  # one value at the shared end, so that a root there is found once
+        hull = np.concatenate([left, right])
         changes = _changes(hull)
     which, low, high, rising = (np.concatenate(parts) for parts in zip(*found, strict=True))
-    order = np.argsort(which, kind="stable")
+    order = np.lexsort((low, which))
     which = which[order]
     return item[which], slope[which], low[order], high[order], rising[order]
 
 
-def _polish(slope: Array, low: Array, high: Array, rising: NDArray[np.bool_]) -> Array:
-    """Newton's method kept inside its bracket; plain halving should it not settle in 12 steps."""
-    bend = slope[:, 1:] * np.arange(1, slope.shape[1])
-    t = 0.5 * (low + high)
+def _polish(slope: Array, t: Array, low: Array, high: Array, rising: NDArray[np.bool_]) -> Array:
+    """Return the root in each bracket: Newton's method, and inside the brackets where that strays."""
+    both = np.zeros((len(slope), 2, t.size))  # slope and its derivative, evaluated together
+    both[:, 0] = slope
+    np.multiply(slope[1:], np.arange(1.0, len(slope))[:, None], out=both[:-1, 1])
+    first = t
     with np.errstate(divide="ignore", invalid="ignore"):
-        for count in range(70):
-            value = _powers_dot(slope, t)
-            past = (value > 0) == rising
-            high, low = np.where(past, t, high), np.where(past, low, t)
-            after = t - value / _powers_dot(bend, t)
-            if count < 12:
-                outside = ~((after >= low) & (after <= high))
-                if outside.any():
-                    after = np.where(outside, 0.5 * (low + high), after)
-            else:
-                after = 0.5 * (low + high)
-            step = np.abs(after - t).max(initial=0.0)
-            t = after
-            if step < 1e-9:
+        for _ in range(8):
+            value, bend = _horner(both, t)
+            step = value / bend
+            t = t - step
+            if not np.abs(step).max(initial=0.0) >= SETTLED:
                 break
+        if not ((t >= low) & (t <= high) & (np.abs(step) < SETTLED)).all():
+            t = _polish_inside(both, first, low, high, rising)
+    return t
+
+
+def _polish_inside(both: Array, t: Array, low: Array, high: Array, rising: NDArray[np.bool_]) -> Array:
+    """Newton's method kept inside its bracket; halving where it has not settled in 10 steps."""
+    step = high - low
+    for count in range(70):
+        value, bend = _horner(both, t)
+        past = (value > 0) == rising
+        high, low = np.where(past, t, high), np.where(past, low, t)
+        after = t - value / bend
+        stray = ~((after >= low) & (after <= high))
+        if count >= 10:
+            stray |= step > 1e-6
+        after = np.where(stray, 0.5 * (low + high), after)
+        step, t = np.abs(after - t), after
+        if step.max(initial=0.0) < SETTLED:
+            break
     return t
