@@ -189,6 +189,12 @@ class _Basis(Model):
             return material.get(name) if isinstance(material, dict) else material
         return given.adhesive if group == "adhesive" else given.fastener
 
+    @property
+    def factors_by_material(self) -> Mapping[str, float] | None:
+        """The factors that name their material; None where one number serves, or none is given."""
+        material = self.given.material if isinstance(self.given, Factors) else None
+        return material if isinstance(material, dict) else None
+
     def fall_back(self) -> float | None:
         """The factor for what is judged with the glue gone: fall_back_factor, or else the fastener's."""
         return self.fall_back_factor if self.fall_back_factor is not None else self.factor("fastener")

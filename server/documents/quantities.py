@@ -19,7 +19,7 @@ class Quantity:
     """Marks a float field: read by ``units.parse`` as ``kind`` and held between bounds.
 
     ``above`` excludes its own value, ``least`` and ``most`` include theirs; all in N, mm, MPa. ``hint`` is
-    added to the message where a unit of the wrong kind needs more than the usual words.
+    added to the message where a force per length was given.
     """
 
     kind: str
@@ -33,7 +33,7 @@ class Quantity:
         try:
             number = units.parse("", value, self.kind)
         except InputError as error:
-            if self.hint:
+            if self.hint and _is(value, "line_load"):
                 raise InputError("", f"{error} {self.hint}") from None
             raise
         if self.above is not None and not number > self.above:
@@ -65,6 +65,14 @@ class Quantity:
             "description": f"{kind.noun}; {plain}; text carries its own unit, such as {kind.example}",
             "x-unit": unit,
         }
+
+
+def _is(value: object, kind: str) -> bool:
+    try:
+        units.parse("", value, kind)
+    except InputError:
+        return False
+    return isinstance(value, str)
 
 
 def _reader(quantity: Quantity) -> Callable[[object], float]:
