@@ -24,8 +24,8 @@ PARALLEL = 1e-3  # sine of the angle up to which edges count as parallel; facets
 class Contact:
     """One stretch along which two pieces face each other.
 
-    ``first`` < ``second`` places of the two pieces; ``start``, ``end`` (2,) of the line midway in the gap, from the lower
-    end (the left one where level) [mm]; ``length`` of the facing overlap [mm]; ``gap`` the widest distance [mm].
+    ``first`` < ``second`` places of the two pieces; ``start``, ``end`` (2,) of the line midway in the gap, from the
+    lower end (the left one where level) [mm]; ``length`` of the facing overlap [mm]; ``gap`` the widest distance [mm].
     """
 
     first: int
@@ -59,8 +59,8 @@ def contacts(outlines: Sequence[Outline], reach: Array) -> list[Contact]:
     Notes
     -----
     Collinear stretches that follow each other are one contact. A stretch no longer than 0.05 mm is touching at a point,
-    no contact. Part of a gap that a third face stands in is left out. Edges at more than 1 : 1000, or whose gap opens by more
-    than 0.05 mm, are not parallel. Pieces that dip into each other by up to 0.05 mm still touch.
+    no contact. Part of a gap that a third face stands in is left out. Edges at more than 1 : 1000, or whose gap opens
+    by more than 0.05 mm, are not parallel. Pieces that dip into each other by up to 0.05 mm still touch.
 
     References
     ----------
@@ -118,8 +118,8 @@ def overlap(outlines: Sequence[Outline]) -> list[tuple[int, int, float]]:
 
     Notes
     -----
-    The depth of an overlap is the narrow side of the rectangle of the same area and perimeter: exact for a strip, and for a
-    piece that is oversize all round.
+    The depth of an overlap is the narrow side of the rectangle of the same area and perimeter: exact for a strip, and
+    for a piece that is oversize all round.
 
     References
     ----------
@@ -153,12 +153,8 @@ def _near_edges(edges: Edges, reach: Array) -> tuple[Indices, Indices]:
     low, high = edges.boxes()
     near = (low[:, None] - high[None] <= np.maximum(reach, TOUCH)[:, :, None]).all(axis=2)
     i, j = np.nonzero(np.triu(near & near.T, 1))
-    count = np.diff(edges.first, append=len(edges.start))
-    many = count[i] * count[j]
-    pair = np.repeat(np.arange(len(i)), many)
-    within = np.arange(len(pair)) - np.repeat(many.cumsum() - many, many)
-    a, b = np.divmod(within, count[j][pair])
-    return edges.first[i][pair] + a, edges.first[j][pair] + b
+    one, other, _ = edges.pairs(i, j)
+    return one, other
 
 
 @dataclass(frozen=True, eq=False)

@@ -12,7 +12,7 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from server.mechanics.polygon import Array, Edges, edges_of
+from server.mechanics.polygon import Array, Edges
 
 if TYPE_CHECKING:
     from server.mechanics.section import Piece, SectionProperties
@@ -28,8 +28,8 @@ _GRADES = np.concatenate(([0.0], 3.0 ** -np.arange(20, -1, -1.0)))
 class HorizontalCut:
     """The horizontal cut through a piece where the shear stress is greatest.
 
-    ``up`` its height [mm]; ``first_moment`` E-weighted, of all that lies above, about the neutral axis [N mm]; ``width``
-    of all pieces cut [mm]; ``intensity`` ES / (EI b) [1/mm2]: stress for a unit shear force.
+    ``up`` its height [mm]; ``first_moment`` E-weighted, of all that lies above, about the neutral axis [N mm];
+    ``width`` of all pieces cut [mm]; ``intensity`` ES / (EI b) [1/mm2]: stress for a unit shear force.
     """
 
     up: float
@@ -90,8 +90,9 @@ def bands(edges: Edges) -> Bands:
     slope = ((edges.end[:, 0] - start[:, 0])[edge]) / (edges.end[:, 1][edge] - u0)
     n, k = len(edges.first), len(levels) - 1
     place = edges.owner[edge] * k + band
-    low = np.bincount(place, sign * (x0 + slope * (levels[band] - u0)), n * k).reshape(n, k)
-    high = np.bincount(place, sign * (x0 + slope * (levels[band + 1] - u0)), n * k).reshape(n, k)
+    at_low, at_high = (sign * (x0 + slope * (levels[band + top] - u0)) for top in (0, 1))
+    low: Array = np.bincount(place, at_low, n * k).astype(float).reshape(n, k)
+    high: Array = np.bincount(place, at_high, n * k).astype(float).reshape(n, k)
     dust = 1e-12 * edges.size
     low[low < dust] = 0.0
     high[high < dust] = 0.0
@@ -157,11 +158,6 @@ def largest_cuts(pieces: Sequence[Piece], properties: SectionProperties) -> list
     list of HorizontalCut
         One for each piece; of equal cuts the lowest.
 
-    Raises
-    ------
-    InputError
-        If a piece has no outline.
-
     Notes
     -----
     b counts all pieces that the cut meets: the stress is taken as uniform over the cut. For rectangles the cut lies at
@@ -180,7 +176,7 @@ def largest_cuts(pieces: Sequence[Piece], properties: SectionProperties) -> list
     >>> round(cut.intensity * 100.0 * 200.0, 9)  # 3/2 of the mean
     1.5
     """
-    cut = bands(edges_of([piece.rings for piece in pieces]))
+    cut = properties.bands
     E = np.array([piece.E for piece in pieces], dtype=float)
     neutral_axis = float(properties.neutral_axis[1])
     ES = _first_moment(cut, E, neutral_axis)
@@ -248,17 +244,12 @@ def shear_stiffness(pieces: Sequence[Piece], properties: SectionProperties) -> f
     float or None
         GA [N]; None where a piece has no G.
 
-    Raises
-    ------
-    InputError
-        If a piece has no outline.
-
     Notes
     -----
     The stress is uniform over each horizontal cut, so the sideways flow in flanges, which is larger in thin-walled
     sections with wide flanges, is left out: GA is an upper estimate there. Bond lines take no part. The integrand is
-    a polynomial of degree 7 where the width is constant, and 16 Gauss points are exact; tapered bands are cut into parts
-    whose width grows at most threefold, which leaves an error below 1e-12.
+    a polynomial of degree 7 where the width is constant, and 16 Gauss points are exact; tapered bands are cut into
+    parts whose width grows at most threefold, which leaves an error below 1e-12.
 
     References
     ----------
@@ -275,7 +266,7 @@ def shear_stiffness(pieces: Sequence[Piece], properties: SectionProperties) -> f
     moduli = [piece.G for piece in pieces]
     if None in moduli:
         return None
-    cut = bands(edges_of([piece.rings for piece in pieces]))
+    cut = properties.bands
     E = np.array([piece.E for piece in pieces], dtype=float)
     softness = 1.0 / np.array(moduli, dtype=float)
     ES = _first_moment(cut, E, float(properties.neutral_axis[1])) / properties.EI

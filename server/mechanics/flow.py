@@ -1,13 +1,13 @@
 """Shear flow in the joints of a built-up section, wherever equilibrium or symmetry settles it by hand.
 
 Units: N, mm, MPa. Every piece p must be held along the member by its joints: the sum of their flows, with sign, is
-``V ES_p / EI``. A joint that alone holds two parts together is a clean cut. Mirror symmetry makes flows of several joints
-equal; where these together part the section, they share the flow of what they cut off.
+``V ES_p / EI``. A joint that alone holds two parts together is a clean cut. Mirror symmetry makes flows of several
+joints equal; where these together part the section, they share the flow of what they cut off.
 """
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Iterator, Sequence
 from dataclasses import dataclass, field
 from typing import Literal
 
@@ -26,11 +26,11 @@ __all__ = ["JointFlow", "JointLine", "joint_flows", "tied"]
 class JointFlow:
     """What one joint carries: flow = V x share / EI.
 
-    ``split`` "cut", "symmetry", or None where neither settles it; ``first_moment`` E-weighted, of the whole cut-off part
-    [N mm], above the neutral axis positive; ``first_moment_other_side`` the same summed over all other pieces: equal and
-    opposite; ``share`` this joint's part of it [N mm], with the sign of the flow on the joint's first piece;
-    ``cut_off`` pieces of the cut-off part; ``partners`` the joints that are cut together, in equal shares (this one
-    included); ``reason`` in words. For a joint that carries nothing by symmetry ``cut_off`` is empty and both moments 0;
+    ``split`` "cut", "symmetry", or None where neither settles it; ``first_moment`` E-weighted, of the whole cut-off
+    part [N mm], above the neutral axis positive; ``first_moment_other_side`` that of all other pieces, equal and
+    opposite; ``share`` this joint's part of it [N mm], with the sign of the flow on the joint's first piece; ``cut_off``
+    pieces of the cut-off part; ``partners`` the joints that are cut together, in equal shares (this one included);
+    ``reason`` in words. For a joint that carries nothing by symmetry ``cut_off`` is empty and both moments are 0;
     where ``split`` is None the numbers are None.
     """
 
@@ -77,10 +77,10 @@ def joint_flows(pieces: Sequence[Piece], properties: SectionProperties, joints: 
 
     Notes
     -----
-    Joints are rigid, or alike in their stiffness where ``key`` is equal. Three movements are tried about the neutral axis:
-    the mirror image about the vertical axis, which leaves bending strain as it is; about the horizontal axis, and half a
-    turn, both of which change its sign. Geometry, E, G and joints must match to a millionth of the size. A joint that a
-    movement maps on itself with the flow reversed carries nothing. Joints in a ring that these leave closed
+    Joints are rigid, or alike in their stiffness where ``key`` is equal. Three movements are tried about the neutral
+    axis: the mirror image about the vertical axis, which leaves bending strain as it is; about the horizontal axis, and
+    half a turn, both of which change its sign. Geometry, E, G and joints must match to a millionth of the size. A joint
+    that a movement maps on itself with the flow reversed carries nothing. Joints in a ring that these leave closed
     depend on how the pieces deform: split is None.
 
     References
@@ -121,8 +121,8 @@ def joint_flows(pieces: Sequence[Piece], properties: SectionProperties, joints: 
 class _Classes:
     """Joints whose flows are equal but for sign, under one or more movements.
 
-    ``members`` of each class; ``of`` (joint -> class); ``sign`` of each joint's flow in its class; ``nil`` classes whose flow a
-    movement reverses, so that it is nothing.
+    ``members`` of each class; ``of`` (joint -> class); ``sign`` of each joint's flow in its class; ``nil`` classes
+    whose flow a movement reverses, so that it is nothing.
     """
 
     members: list[list[int]] = field(default_factory=list)
@@ -173,67 +173,83 @@ class _Section:
 
     def by_symmetry(self, open_joints: list[int]) -> dict[int, JointFlow]:
         """Settle the joints that lie in rings, by as few movements as will do."""
-        finder = SymmetryFinder(self.pieces, self.properties, self.joints)
-        vertical, horizontal = finder.look("the vertical axis"), finder.look("the horizontal axis")
-        found = [look for look in (vertical, horizontal) if isinstance(look, Symmetry)]
-        looks = [vertical, horizontal]
-        if not found:  # both mirrors make a half turn, one excludes it
-            turn = finder.look("half a turn")
-            looks.append(turn)
-            found = [turn] if isinstance(turn, Symmetry) else []
-        attempts = [[symmetry] for symmetry in found] + ([found] if len(found) == 2 else [])
+        looks: list[Symmetry | Failure] = []
         settled: dict[int, JointFlow] = {}
-        for symmetries in attempts:
-            waiting = [joint for joint in open_joints if joint not in settled]
-            if not waiting:
-                break
-            self._settle(symmetries, waiting, settled)
+        for symmetries in self._attempts(looks):
+            self._settle(symmetries, [joint for joint in open_joints if joint not in settled], settled)
+            if len(settled) == len(open_joints):
+                return settled
         for joint in open_joints:
             if joint not in settled:
                 settled[joint] = JointFlow(None, None, None, None, (), (), self._why_not(joint, looks))
         return settled
 
+    def _attempts(self, looks: list[Symmetry | Failure]) -> Iterator[list[Symmetry]]:
+        """One movement after the other, then both mirrors; what was looked for is added to ``looks``."""
+        finder = SymmetryFinder(self.pieces, self.properties, self.joints)
+        found: list[Symmetry] = []
+        for about in ("the vertical axis", "the horizontal axis", "half a turn"):
+            if about == "half a turn" and found:
+                break  # both mirrors make a half turn, one alone excludes it
+            look = finder.look(about)
+            looks.append(look)
+            if isinstance(look, Symmetry):
+                found.append(look)
+                yield [look]
+        if len(found) == 2:
+            yield found
+
     def _settle(self, symmetries: list[Symmetry], waiting: list[int], settled: dict[int, JointFlow]) -> None:
+        """Settle every waiting joint whose class carries nothing, or parts the section."""
         classes = classes_under(symmetries, len(self.ends))
         nothing = {joint for number in classes.nil for joint in classes.members[number]}
         words = _by_which(symmetries)
         for joint in waiting:
-            if joint in nothing:
+            if joint in settled:
+                continue
+            number = classes.of[joint]
+            if number in classes.nil:
                 reason = f"{words} its flow is the opposite of itself, so it carries nothing."
                 settled[joint] = JointFlow("symmetry", 0.0, 0.0, 0.0, (), (joint,), reason)
                 continue
-            members = set(classes.members[classes.of[joint]])
-            flow = self._shared_cut(joint, members, classes, symmetries, words) or self._shared_cut(
-                joint, members | nothing, classes, symmetries, words
-            )
-            if flow:
-                settled[joint] = flow
+            members = set(classes.members[number])
+            self._share(members, classes, symmetries, words, settled)
+            if joint not in settled and nothing:
+                self._share(members | nothing, classes, symmetries, words, settled)
 
-    def _shared_cut(
-        self, joint: int, opened: set[int], classes: _Classes, symmetries: list[Symmetry], words: str
-    ) -> JointFlow | None:
-        """The part with the fewest joints that comes off when ``opened`` are cut, all of whose joints carry alike."""
-        number = classes.of[joint]
-        best: tuple[int, list[int], list[int], int] | None = None
-        for part in self._parts(opened, symmetries):
-            inside = set(part)
-            edge = [j for j in opened if (self.ends[j][0] in inside) != (self.ends[j][1] in inside)]
-            edge = sorted(j for j in edge if classes.of[j] not in classes.nil)
-            if joint not in edge or any(classes.of[j] != number for j in edge):
-                continue
+    def _share(
+        self,
+        opened: set[int],
+        classes: _Classes,
+        symmetries: list[Symmetry],
+        words: str,
+        settled: dict[int, JointFlow],
+    ) -> None:
+        """Cut the joints ``opened``; of every part that comes off by joints of equal flow, settle these.
+
+        Parts with fewest joints come first, and what is settled stays.
+        """
+        cuts = []
+        for side in self._parts(opened, symmetries):
+            inside = set(side)
+            edge = sorted(j for j in opened if (self.ends[j][0] in inside) != (self.ends[j][1] in inside))
+            edge = [j for j in edge if classes.of[j] not in classes.nil]
             outward = {classes.sign[j] * (1 if self.ends[j][0] in inside else -1) for j in edge}
-            if len(outward) == 1 and (best is None or len(edge) < best[0]):
-                best = len(edge), part, edge, outward.pop() * classes.sign[joint]
-        if best is None:
-            return None
-        n, side, partners, sign = best
-        part, rest = self._outer(side)
-        moment, other = self._moments(part, rest)
-        share = sign * (moment if part is side else -moment) / n
-        alone = f"{words} this joint carries all of the flow of {self._names(part)}."
-        shared = f"{words} {self._joint_names(partners)} share the flow of {self._names(part)} equally."
-        reason = alone if n == 1 else shared
-        return JointFlow("symmetry", moment, other, share, tuple(part), tuple(partners), reason)
+            if len(outward) == 1:
+                cuts.append((len(edge), side, edge))
+        for n, side, edge in sorted(cuts):
+            if all(joint in settled for joint in edge):
+                continue
+            part, rest = self._outer(side)
+            moment, other = self._moments(part, rest)
+            alone = f"{words} this joint carries all of the flow of {self._names(part)}."
+            shared = f"{words} {self._joint_names(edge)} share the flow of {self._names(part)} equally."
+            for joint in edge:
+                share = (moment if self.ends[joint][0] in part else -moment) / n
+                flow = JointFlow(
+                    "symmetry", moment, other, share, tuple(part), tuple(edge), alone if n == 1 else shared
+                )
+                settled.setdefault(joint, flow)
 
     def _parts(self, opened: set[int], symmetries: list[Symmetry]) -> list[list[int]]:
         """Bodies that are left when joints are cut, and each together with its images."""
@@ -254,9 +270,10 @@ class _Section:
         return parts
 
     def _outer(self, side: list[int]) -> tuple[list[int], list[int]]:
-        """A side and the rest, the one farther from the neutral axis first; then the smaller, then without the first piece.
+        """A side and the rest: the one farther from the neutral axis first; of like ones the smaller.
 
-        Both have the same first moment but for sign, so the farther one is the one with the smaller EA.
+        Both have the same first moment but for sign, so the farther one is the one with the smaller EA. Twins come in
+        the order of the pieces, the one without the first piece first.
         """
         inside = set(side)
         rest = [piece for piece in range(len(self.pieces)) if piece not in inside]
@@ -293,10 +310,11 @@ class _Section:
 
     def _failure(self, failure: Failure) -> str:
         places = failure.pieces or failure.joints
-        names = self._names(places) if failure.pieces else f"the joint {self._joint_names(places)}"
-        if len(places) > 1 and not failure.pieces:
-            names = f"the joints {self._joint_names(places)}"
-        return f"about {failure.about} {names} {'has' if len(places) == 1 else 'have'} no mirror image"
+        has = "has" if len(places) == 1 else "have"
+        if failure.pieces:
+            return f"about {failure.about} {self._names(places)} {has} no mirror image of the same shape, E and G"
+        names = f"the joint{'s' if len(places) > 1 else ''} {self._joint_names(places)}"
+        return f"about {failure.about} {names} {has} no mirror image of the same line, width, adhesive and fasteners"
 
 
 def _by_which(symmetries: Sequence[Symmetry]) -> str:

@@ -1,4 +1,4 @@
-"""Pieces and joints as a graph: what hangs together, which joint alone holds two parts together, which ring a joint is in.
+"""Pieces and joints as a graph: what hangs together, which joint alone holds two parts, which ring a joint is in.
 
 Pieces are numbered from 0; a joint is a pair of them. Two joints may connect the same pieces.
 """
@@ -79,7 +79,7 @@ def bridges(count: int, ends: Ends) -> dict[int, list[int]]:
 
 
 def ring_through(count: int, ends: Ends, joint: int) -> list[int]:
-    """Pieces of the shortest ring that a joint is part of, from one of its pieces round to the other; empty for a bridge."""
+    """Pieces of the shortest ring that a joint is part of, from its first piece to its second; empty for a bridge."""
     near = neighbours(count, ends)
     start, goal = ends[joint]
     came_from = {start: start}

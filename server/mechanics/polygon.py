@@ -35,6 +35,11 @@ class Edges:
     next: Indices
 
     @property
+    def count(self) -> Indices:
+        """Edges of each polygon, (n,)."""
+        return np.bincount(self.owner, minlength=len(self.first))
+
+    @property
     def size(self) -> float:
         """Diagonal of the box around everything [mm]."""
         spread: Array = self.start.max(axis=0) - self.start.min(axis=0)
@@ -43,6 +48,15 @@ class Edges:
     def boxes(self) -> tuple[Array, Array]:
         """Lower left and upper right corners of the box around each polygon, both (n, 2)."""
         return np.minimum.reduceat(self.start, self.first), np.maximum.reduceat(self.start, self.first)
+
+    def pairs(self, i: Indices, j: Indices) -> tuple[Indices, Indices, Indices]:
+        """Every edge of polygon ``i[k]`` with every edge of ``j[k]``: both edges, and k."""
+        count = self.count
+        many = count[i] * count[j]
+        pair = np.repeat(np.arange(len(i)), many)
+        within = np.arange(len(pair)) - (many.cumsum() - many)[pair]
+        a, b = np.divmod(within, count[j][pair])
+        return self.first[i][pair] + a, self.first[j][pair] + b, pair
 
 
 def _rings(outlines: Sequence[Outline]) -> tuple[list[Array], list[int], list[int]]:

@@ -8,13 +8,14 @@ from __future__ import annotations
 
 import math
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, field
+from functools import cached_property
 
 import numpy as np
 from numpy.typing import NDArray
 
 from server.errors import InputError
-from server.mechanics.cuts import HorizontalCut, largest_cuts, shear_stiffness
+from server.mechanics.cuts import Bands, HorizontalCut, bands, largest_cuts, shear_stiffness
 from server.mechanics.polygon import Array, Edges, edges_of, moments
 
 __all__ = [
@@ -70,7 +71,8 @@ class SectionProperties:
 
     ``area`` plain [mm2]; ``mass_per_length`` [kg/m], None where a density is missing; ``EA`` [N]; ``EI`` for bending up
     and down, ``EI_lateral``, ``EI_product`` [N mm2], about the neutral axis; ``neutral_axis`` (2,) across and up [mm];
-    ``pieces`` the properties of each piece; ``first_moments`` (n,) E x area x height above the neutral axis [N mm].
+    ``pieces`` the properties of each piece; ``first_moments`` (n,) E x area x height above the neutral axis [N mm];
+    ``edges`` the outlines as arrays.
     """
 
     area: float
@@ -82,6 +84,12 @@ class SectionProperties:
     neutral_axis: NDArray[np.float64]
     pieces: PieceProperties
     first_moments: NDArray[np.float64]
+    edges: Edges = field(repr=False)
+
+    @cached_property
+    def bands(self) -> Bands:
+        """The section between corner heights, cut once for all that needs it."""
+        return bands(self.edges)
 
 
 _QUARTER_TURNS = {0: (1.0, 0.0), 1: (0.0, 1.0), 2: (-1.0, 0.0), 3: (0.0, -1.0)}
@@ -209,7 +217,8 @@ def properties(pieces: Sequence[Piece]) -> SectionProperties:
     >>> round(section.EI / 1e9, 3)  # 10 000 x 100 x 200^3 / 12
     666.667
     """
-    parts = piece_properties(pieces)
+    edges = _edges(pieces)
+    parts = PieceProperties(*moments(edges))
     E = np.array([piece.E for piece in pieces], dtype=float)
     bad = ~(np.isfinite(E) & (E > 0))
     if bad.any():
@@ -237,4 +246,5 @@ def properties(pieces: Sequence[Piece]) -> SectionProperties:
         neutral_axis=neutral_axis,
         pieces=parts,
         first_moments=first_moments,
+        edges=edges,
     )

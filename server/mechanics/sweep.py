@@ -6,6 +6,8 @@ straight sides in a fixed order, so their common part is exact.
 
 from __future__ import annotations
 
+from itertools import pairwise
+
 import numpy as np
 
 from server.mechanics.polygon import Array, Edges
@@ -41,11 +43,12 @@ def common_region(edges: Edges, one: int, other: int) -> tuple[float, float]:
     heights = np.unique(np.concatenate((a[:, 1], b[:, 1], _crossing_heights(a, b))))
     low, high = max(a[:, 1].min(), b[:, 1].min()), min(a[:, 1].max(), b[:, 1].max())
     heights = heights[(heights >= low) & (heights <= high)]
+    dust = 1e-9 * edges.size
     area = perimeter = 0.0
     below: Spans = []
-    for bottom, top in zip(heights[:-1], heights[1:], strict=True):
-        H = float(top - bottom)
-        if H < 1e-9 * edges.size:
+    for bottom, top in pairwise(heights.tolist()):
+        H = top - bottom
+        if dust > H:
             continue
         ends = _common_sides(_sides(a, bottom, top), _sides(b, bottom, top))
         for (left_0, left_1), (right_0, right_1) in ends:
