@@ -8,6 +8,7 @@ from __future__ import annotations
 import math
 from collections.abc import Sequence
 from dataclasses import dataclass
+from itertools import pairwise
 
 import numpy as np
 from numpy.typing import NDArray
@@ -160,10 +161,10 @@ def lay_out(beam: Beam, cases: Sequence[Sequence[Load]]) -> Grid:
     ):
         _check_loads(beam, cases)
     m = len(breaks) - 1
-    bounds = [number[stretch.start] for stretch in beam.stretches]
+    bounds = [*(number[stretch.start] for stretch in beam.stretches), m]
     flexibility = np.repeat(
         np.array([[1 / s.EI for s in beam.stretches], [1 / s.GA for s in beam.stretches]]),
-        np.diff(bounds, append=m),
+        [right - left for left, right in pairwise(bounds)],
         axis=1,
     )
     force, couple = np.zeros((2, len(cases), m + 1))
@@ -212,17 +213,14 @@ def _spread(
     m = len(breaks) - 1
     if not lines:
         return np.zeros((2, cases, m))
-    start = np.array([number[row[1]] for row in lines])
-    covers = np.array([number[row[2]] for row in lines]) - start  # intervals under each load
-    owner = np.repeat(np.arange(len(lines)), covers)
-    interval = np.arange(len(owner)) + np.repeat(start - covers.cumsum() + covers, covers)
-    table = np.array(lines)
-    slope = (table[:, 4] - table[:, 3]) / (table[:, 2] - table[:, 1])
-    at_zero = table[:, 3] - slope * (table[:, 1] - breaks[start])
-    slopes = slope[owner]
-    values = at_zero[owner] + slopes * (breaks[interval] - breaks[start][owner])
-    place = table[:, 0].astype(np.intp)[owner] * m + interval
-    return np.array([np.bincount(place, part, cases * m) for part in (values, slopes)]).reshape(2, cases, m)
+    case, start, end, first, last = np.array(lines, dtype=float).T
+    from_break = np.array([number[row[1]] for row in lines])
+    covers = np.array([number[row[2]] for row in lines]) - from_break  # intervals under each load
+    row = np.repeat(np.array([case, start, first, (last - first) / (end - start)]), covers, axis=1)
+    interval = np.arange(row.shape[1]) + np.repeat(from_break - covers.cumsum() + covers, covers)
+    values = row[2] + row[3] * (breaks[interval] - row[1])
+    place = row[0].astype(np.intp) * m + interval
+    return np.array([np.bincount(place, part, cases * m) for part in (values, row[3])]).reshape(2, cases, m)
 
 
 def _what_holds(

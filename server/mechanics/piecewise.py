@@ -18,6 +18,7 @@ from numpy.typing import ArrayLike, NDArray
 from server.errors import InputError
 
 Array = NDArray[np.float64]
+Indices = NDArray[np.intp]
 TIE = 1e-9  # share of the greatest absolute value within which two places tie
 NOISE = 1e-14  # share of the greatest absolute value below which a slope is rounding
 SETTLED = 1e-8  # Newton's last step; the error after it is of the order of its square
@@ -118,30 +119,31 @@ def candidates(breaks: ArrayLike, coefficients: ArrayLike) -> Candidates:
     width = x[1:] - x[:-1]
     powers = np.empty((m, d))
     powers[:, 0], powers[:, 1:] = 1, width[:, None]
-    pieces = (c * np.multiply.accumulate(powers, axis=1)).reshape(-1, d)  # in t = s / width, 0 to 1
-    ends = np.empty((len(pieces), 2))
-    ends[:, 0] = pieces[:, 0]
-    pieces.sum(1, out=ends[:, 1])
-    at = np.empty((len(pieces) // m, m, 2))
+    pieces = np.ascontiguousarray((c * np.multiply.accumulate(powers, axis=1)).reshape(-1, d).T)  # in t = s / width
+    count = pieces.shape[1]
+    ends = np.empty((count, 2))
+    ends[:, 0] = pieces[0]
+    ends[:, 1] = pieces.sum(0)
+    at = np.empty((count // m, m, 2))
     at[..., 0], at[..., 1] = x[:-1], x[1:]
-    at = at.reshape(-1, 2)
-    if d > 2 and pieces.size:
-        slope = pieces[:, 1:] * np.arange(1.0, d)
-        hull = slope @ _bernstein(d - 1)
+    at = at.reshape(count, 2)
+    if d > 2 and count:
+        slope = pieces[1:] * np.arange(1.0, d)[:, None]
+        hull = _bernstein(d - 1) @ slope
         noise = np.repeat(NOISE * np.abs(ends).reshape(-1, 2 * m).max(1), m)
-        item = ((hull.min(1) < -noise) & (hull.max(1) > noise)).nonzero()[0]
+        item = ((hull.min(0) < -noise) & (hull.max(0) > noise)).nonzero()[0]
         if item.size:
-            item, t = _roots(item, slope[item], hull[item], noise[item])
+            item, t = _roots(item, slope[:, item], hull[:, item], noise[item])
         if item.size:
             back = np.searchsorted(item, item, "right") - np.arange(item.size)  # 1 for an interval's last root
             of = item % m
-            ends = _with_slots(ends, item, back, _horner(pieces[item].T, t))
+            ends = _with_slots(ends, item, back, _horner(pieces[:, item], t))
             at = _with_slots(at, item, back, x[of] + t * width[of])
     shape = (*lead, m, ends.shape[1])
     return Candidates(ends.reshape(shape), at.reshape(shape))
 
 
-def _with_slots(ends: Array, item: NDArray[np.intp], back: NDArray[np.intp], value: Array) -> Array:
+def _with_slots(ends: Array, item: Indices, back: Indices, value: Array) -> Array:
     """Put columns between the two ends, the last ones holding ``value``, the others the left end."""
     wide = np.empty((len(ends), 2 + int(back.max())))
     wide[:, :-1] = ends[:, :1]
@@ -293,73 +295,69 @@ def _horner(c: Array, t: Array) -> Array:
 @lru_cache
 def _bernstein(n: int) -> Array:
     """Return the matrix that turns n ascending coefficients on 0..1 into Bernstein coefficients."""
-    q = n - 1
-    return np.array([[comb(j, i) / comb(q, i) if i <= j else 0.0 for j in range(n)] for i in range(n)])
+    return np.array([[comb(j, i) / comb(n - 1, i) if i <= j else 0.0 for i in range(n)] for j in range(n)])
 
 
 @lru_cache
 def _halves(n: int) -> tuple[Array, Array]:
     """Return the matrices that give the Bernstein coefficients of the left and the right half."""
-    left = np.array([[comb(j, i) / 2.0**j if i <= j else 0.0 for j in range(n)] for i in range(n)])
+    left = np.array([[comb(j, i) / 2.0**j if i <= j else 0.0 for i in range(n)] for j in range(n)])
     return left, left[::-1, ::-1].copy()
 
 
-def _roots(item: NDArray[np.intp], slope: Array, hull: Array, noise: Array) -> tuple[NDArray[np.intp], Array]:
-    """Return the sign changes of each slope inside 0..1: the owner's number (ascending) and t."""
+def _roots(item: Indices, slope: Array, hull: Array, noise: Array) -> tuple[Indices, Array]:
+    """Return the sign changes inside 0..1 of each slope (one a column): the owner's number (ascending) and t."""
     # A slope of nothing but rounding at an end takes its neighbour's sign: the end is a candidate in any case.
     for end, inner in ((0, 1), (-1, -2)):
-        flat = np.abs(hull[:, end]) <= noise
+        flat = np.abs(hull[end]) <= noise
         if flat.any():
-            hull[flat, end] = hull[flat, inner]
+            hull[end, flat] = hull[inner, flat]
     above = hull > 0
-    turn = above[:, 1:] != above[:, :-1]
-    if (turn.sum(1) == 1).all():
-        rising = above[:, -1]
+    turn = above[1:] != above[:-1]
+    changes = turn.sum(0)
+    if (changes == 1).all():
+        rising = above[-1]
         low, high = np.zeros(item.size), np.ones(item.size)
         # Where the control polygon crosses zero: exact for a straight slope, near enough for Newton otherwise.
-        left = turn.argmax(1)
-        row = np.arange(item.size)
-        before, after = hull[row, left], hull[row, left + 1]
-        t = (left + before / (before - after)) / turn.shape[1]
+        left = turn.argmax(0)
+        column = np.arange(item.size)
+        before, after = hull[left, column], hull[left + 1, column]
+        t = (left + before / (before - after)) / len(turn)
     else:
-        item, slope, low, high, rising = _isolate(item, slope, hull, turn.sum(1))
+        item, slope, low, high, rising = _isolate(item, slope, hull, changes)
         t = 0.5 * (low + high)
-    t = _polish(slope.T, t, low, high, rising)
+    t = _polish(slope, t, low, high, rising)
     inside = (t > EDGE) & (t < 1 - EDGE)
     return (item, t) if inside.all() else (item[inside], t[inside])
 
 
-def _changes(hull: Array) -> NDArray[np.intp]:
-    above = hull > 0
-    return np.count_nonzero(above[:, 1:] != above[:, :-1], axis=1)
-
-
 def _isolate(
-    item: NDArray[np.intp], slope: Array, hull: Array, changes: NDArray[np.intp]
-) -> tuple[NDArray[np.intp], Array, Array, Array, NDArray[np.bool_]]:
+    item: Indices, slope: Array, hull: Array, changes: Indices
+) -> tuple[Indices, Array, Array, Array, NDArray[np.bool_]]:
     """Halve intervals until each holds one change of sign.
 
     Twenty-four halvings separate all but double roots, where the curve has no extreme anyway.
     """
-    to_left, to_right = _halves(hull.shape[1])
+    to_left, to_right = _halves(len(hull))
     which, low, size = np.arange(item.size), np.zeros(item.size), 1.0
-    found: list[tuple[NDArray[np.intp], Array, Array, NDArray[np.bool_]]] = []
+    found: list[tuple[Indices, Array, Array, NDArray[np.bool_]]] = []
     for _ in range(24):
         single, many = changes == 1, changes > 1
-        found.append((which[single], low[single], low[single] + size, hull[single, -1] > 0))
+        found.append((which[single], low[single], low[single] + size, hull[-1, single] > 0))
         if not many.any():
             break
         size /= 2
         which = np.concatenate([which[many], which[many]])
         low = np.concatenate([low[many], low[many] + size])
-        left, right = hull[many] @ to_left, hull[many] @ to_right
-        right[:, 0] = left[:, -1]  # one value at the shared end, so that a root there is found once
-        hull = np.concatenate([left, right])
-        changes = _changes(hull)
+        left, right = to_left @ hull[:, many], to_right @ hull[:, many]
+        right[0] = left[-1]  # one value at the shared end, so that a root there is found once
+        hull = np.concatenate([left, right], axis=1)
+        above = hull > 0
+        changes = (above[1:] != above[:-1]).sum(0)
     which, low, high, rising = (np.concatenate(parts) for parts in zip(*found, strict=True))
     order = np.lexsort((low, which))
     which = which[order]
-    return item[which], slope[which], low[order], high[order], rising[order]
+    return item[which], slope[:, which], low[order], high[order], rising[order]
 
 
 def _polish(slope: Array, t: Array, low: Array, high: Array, rising: NDArray[np.bool_]) -> Array:
