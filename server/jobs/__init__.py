@@ -1,0 +1,38 @@
+"""Jobs and their saved checks: save, print again, run again with today's values, see what moved, export."""
+
+from server.jobs.export import RecordError, altered, export_revision, print_record
+from server.jobs.headings import FoundJobs, Job, JobLine, create, edit, get, search
+from server.jobs.moved import Moved, moved
+from server.jobs.revisions import CheckLine, SavedRevision, checks_of, pdf_bytes, revision, revision_of, revisions_of
+from server.jobs.saving import run_again, save
+from server.jobs.shop import DISPLAYS, PAPERS, Shop, set_shop, shop
+
+__all__ = [
+    "DISPLAYS",
+    "PAPERS",
+    "CheckLine",
+    "FoundJobs",
+    "Job",
+    "JobLine",
+    "Moved",
+    "RecordError",
+    "SavedRevision",
+    "Shop",
+    "altered",
+    "checks_of",
+    "create",
+    "edit",
+    "export_revision",
+    "get",
+    "moved",
+    "pdf_bytes",
+    "print_record",
+    "revision",
+    "revision_of",
+    "revisions_of",
+    "run_again",
+    "save",
+    "search",
+    "set_shop",
+    "shop",
+]

@@ -228,12 +228,12 @@ def _in_force(what: Any = RevisionRow.n) -> Any:
     return chosen.correlate(RecordRow).scalar_subquery()
 
 
-def _revisions() -> Select[Any]:
+def _revisions() -> Select[RecordRow, RevisionRow, int, int | None, str | None]:
     return select(RecordRow, RevisionRow, _newest(), _in_force(), _in_force(RevisionRow.status)).join(RevisionRow)
 
 
-def _record(row: Row[Any]) -> Record:
-    record, revision, newest, in_force, in_force_status = row.tuple()
+def _record(row: Row[RecordRow, RevisionRow, int, int | None, str | None]) -> Record:
+    record, revision, newest, in_force, in_force_status = row
     return Record(
         key=record.key,
         group=record.group,

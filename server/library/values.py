@@ -5,7 +5,10 @@ from __future__ import annotations
 from collections.abc import Mapping
 from typing import Any
 
-from server import documents
+from pydantic import ValidationError
+
+from server.documents.faults import faults_of
+from server.documents.text import load
 from server.errors import DocumentError, Fault
 from server.library.groups import Group
 from server.storage.tables import compact
@@ -19,11 +22,15 @@ def check_entry(faults: list[Fault], group: Group, values: Mapping[str, Any]) ->
     """Return ``values`` as typed; faults as ``values.shear_strength`` where the models refuse them."""
     own = [name for name in _RECORDS_OWN if name in values]
     faults += [Fault(f"values.{name}", f"{name} belongs to the record itself; leave it out here.") for name in own]
-    typed = {name: value for name, value in values.items() if name not in _RECORDS_OWN}
     try:
-        documents.read_values(group.section, typed)
+        typed = load({name: value for name, value in values.items() if name not in own})
     except DocumentError as error:
         faults += [Fault(f"values.{fault.path}" if fault.path else "values", fault.message) for fault in error.faults]
+        return {}
+    try:
+        group.model.model_validate(typed)
+    except ValidationError as error:
+        faults += faults_of(error, group.model, ("values",))
         return typed
     if (length := len(compact(typed))) > MOST_CHARACTERS:
         faults.append(Fault("values", f"The values have {length} characters; shorten them to {MOST_CHARACTERS}."))

@@ -1,0 +1,113 @@
+"""What became different between two saved revisions of a check, for people."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator, Mapping, Sequence
+from dataclasses import dataclass
+from typing import Any, Literal
+
+from server import documents, units
+from server.jobs.revisions import SavedRevision
+
+_ONE = {"materials": "material", "adhesives": "adhesive", "fasteners": "fastener"}
+_NOTHING = "–"
+
+
+@dataclass(frozen=True)
+class Moved:
+    """One difference: what, and its old and new state as they are to be read."""
+
+    what: str
+    old: str
+    new: str
+    about: Literal["values", "given", "result"]
+
+
+def moved(old: SavedRevision, new: SavedRevision) -> list[Moved]:
+    """Return the differences: values used, what was given, then verdict, governing check and every utilisation."""
+    display = str(new.heading["display"])
+    found = [
+        *_pairs(_values(old, display), _values(new, display), "values"),
+        *_pairs(_given(old), _given(new), "given"),
+        *_pairs(_result(old), _result(new), "result"),
+    ]
+    return [difference for difference in found if difference.old != difference.new]
+
+
+def _pairs(old: Mapping[str, str], new: Mapping[str, str], about: Literal["values", "given", "result"]) -> list[Moved]:
+    names = dict.fromkeys([*old, *new])
+    return [Moved(name, old.get(name, _NOTHING), new.get(name, _NOTHING), about) for name in names]
+
+
+def _values(saved: SavedRevision, display: str) -> dict[str, str]:
+    found: dict[str, str] = {}
+    for section, entries in saved.values_used.items():
+        for name, entry in entries.items():
+            what = f"{_ONE.get(section, section)} {name}"
+            if entry.get("record") is not None:
+                found[f"{what}: record"] = f"{entry['record']} revision {entry['revision']}"
+            for path, value in _flat(entry):
+                if path not in ("record", "revision"):
+                    found[f"{what}: {_words(path)}"] = _shown(f"{section}.*.{path}", value, display)
+    return found
+
+
+def _given(saved: SavedRevision) -> dict[str, str]:
+    # Which revision a reference names shows among the values.
+    skipped = (".record", ".revision")
+    return {
+        path: str(value)
+        for path, value in _flat(saved.document)
+        if not (path.startswith(tuple(_ONE)) and path.endswith(skipped))
+    }
+
+
+def _result(saved: SavedRevision) -> dict[str, str]:
+    result = saved.result
+    found = {
+        "verdict": str(result["verdict"]),
+        "utilisation": _share(result.get("utilisation")),
+        "governing": _governing(result.get("governing")),
+    }
+    for part, one in (("joints", "joint"), ("pieces", "piece")):
+        for entry in result.get(part, ()):
+            found[f"{one} {entry['id']}: utilisation"] = _share(entry.get("utilisation"))
+    for number, entry in enumerate(result.get("deflection_limits", ()), start=1):
+        what = "long-term deflection" if entry.get("long_term") else "deflection"
+        found[f"{what} limit {number}: utilisation"] = _share(entry.get("utilisation"))
+    found["missing"] = "; ".join(map(str, result.get("missing", ()))) or _NOTHING
+    found["program"] = saved.engine
+    return found
+
+
+def _flat(value: Any, path: str = "") -> Iterator[tuple[str, Any]]:
+    """Yield every number and text below ``value`` with its path, as ``loads.snow[0].value``."""
+    if isinstance(value, Mapping):
+        for name, inner in value.items():
+            yield from _flat(inner, f"{path}.{name}" if path else str(name))
+    elif isinstance(value, Sequence) and not isinstance(value, str):
+        for index, inner in enumerate(value):
+            yield from _flat(inner, f"{path}[{index}]")
+    else:
+        yield path, value
+
+
+def _words(path: str) -> str:
+    return path.replace("_", " ").replace(".", ", ")
+
+
+def _shown(path: str, value: Any, display: str) -> str:
+    if isinstance(value, bool) or not isinstance(value, int | float):
+        return str(value)
+    kind = documents.kind_of(path)
+    return f"{value:g}" if kind is None else units.show(value, kind, display)
+
+
+def _share(value: Any) -> str:
+    return _NOTHING if value is None else f"{100 * value:.1f} %"
+
+
+def _governing(value: Any) -> str:
+    if isinstance(value, Mapping):
+        return ", ".join(str(part) for part in value.values() if isinstance(part, str) and part) or _NOTHING
+    return str(value) if value else _NOTHING
