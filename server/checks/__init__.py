@@ -1,0 +1,28 @@
+"""Checks: one module a kind, from a document with its values filled in to its result."""
+
+from __future__ import annotations
+
+from server import documents
+from server.checks import member
+from server.errors import DocumentError, Fault
+
+
+def run(document: documents.Document) -> dict[str, object]:
+    """Run a document's check and return its result as the contract says.
+
+    Raises
+    ------
+    DocumentError
+        If the document still refers to library records, or what it describes cannot be checked.
+    """
+    unresolved = document.unresolved()
+    if unresolved:
+        raise DocumentError(
+            [
+                Fault(path, "refers to a library record, but no library was opened to take it from.")
+                for path in unresolved
+            ]
+        )
+    if isinstance(document, documents.MemberDocument):
+        return member.run(document)
+    raise DocumentError([Fault("kind", f"kind {document.kind!r} cannot be checked in this version.")])

@@ -1,0 +1,187 @@
+"""From the document's loads and combinations to shear, moment, reactions and deflection along the member."""
+
+from __future__ import annotations
+
+from collections.abc import Iterable, Sequence
+from dataclasses import dataclass, replace
+
+import numpy as np
+from numpy.typing import NDArray
+
+from server import documents
+from server.checks.crosssection import Body
+from server.errors import DocumentError, Fault, InputError
+from server.mechanics import beam as mechanics
+from server.mechanics.beam import Beam, Couple, Extremes, LineLoad, PointLoad, Response, extremes, solve
+
+GRAVITY = 9.80665  # m/s2, standard (ISO 80000-3)
+TIE = 1e-9  # relative difference under which two extremes are the same
+
+
+@dataclass(frozen=True)
+class Actions:
+    """Responses of the member, one row a combination."""
+
+    names: tuple[str, ...]
+    durations: tuple[str | None, ...]
+    strength: tuple[int, ...]
+    deflection: tuple[int, ...]
+    factors: NDArray[np.float64]
+    cases: tuple[str, ...]
+    case_loads: tuple[tuple[mechanics.Load, ...], ...]
+    response: Response
+    long_term: NDArray[np.float64] | None
+    shear_deformation: bool
+
+    @property
+    def breaks(self) -> NDArray[np.float64]:
+        return self.response.breaks
+
+    @property
+    def strength_names(self) -> list[str]:
+        return [self.names[k] for k in self.strength]
+
+
+def act(document: documents.MemberDocument, body: Body) -> Actions:
+    """Solve every case once and combine; mechanics' complaints come back with the document's path."""
+    cases = tuple(document.loads)
+    loads = tuple(tuple(_loads(document, body, case)) for case in cases)
+    combinations = document.combinations
+    factors = np.array([[c.factors.get(case, 0.0) for case in cases] for c in combinations.values()])
+    deform = document.analysis.shear_deformation and all(s.section.shear_stiffness is not None for s in body.stretches)
+    solved = _solve(_beam(document, body, deform), loads)
+    kinds = [c.for_ for c in combinations.values()]
+    return Actions(
+        names=tuple(combinations),
+        durations=tuple(c.duration for c in combinations.values()),
+        strength=tuple(k for k, kind in enumerate(kinds) if kind in ("both", "strength")),
+        deflection=tuple(k for k, kind in enumerate(kinds) if kind in ("both", "deflection")),
+        factors=factors,
+        cases=cases,
+        case_loads=loads,
+        response=solved.combine(factors),
+        long_term=_long_term(document, body, deform, loads, solved, factors),
+        shear_deformation=deform,
+    )
+
+
+def _solve(beam: Beam, loads: Sequence[Sequence[mechanics.Load]]) -> Response:
+    try:
+        return solve(beam, loads)
+    except InputError as error:
+        raise DocumentError([Fault(f"member.{error.field}", str(error))]) from error
+
+
+def _beam(document: documents.MemberDocument, body: Body, deform: bool, creep: bool = False) -> Beam:
+    member = document.member
+    stretches = []
+    for s in body.stretches:
+        if creep:
+            EI, GA = s.section.softened
+        else:
+            EI, GA = s.section.properties.EI, s.section.shear_stiffness
+        stretches.append(mechanics.Stretch(s.start, s.end, EI, GA if deform and GA is not None else np.inf))
+    supports = [mechanics.Support(s.at, s.kind, s.stiffness or 0.0) for s in member.supports]
+    return Beam(member.length, tuple(supports), tuple(member.hinges), tuple(stretches))
+
+
+def _loads(document: documents.MemberDocument, body: Body, case: str) -> Iterable[mechanics.Load]:
+    for load in document.loads[case]:
+        if isinstance(load, documents.PointLoad):
+            yield PointLoad(load.at, load.value)
+        elif isinstance(load, documents.CoupleLoad):
+            yield Couple(load.at, load.value)
+        elif isinstance(load, documents.LineLoad):
+            yield LineLoad(load.from_, load.to, *load.ends)
+        elif isinstance(load, documents.AreaLoad):
+            per_length = load.value * load.width
+            yield LineLoad(load.from_, load.to, per_length, per_length)
+        else:
+            yield from _self_weight(body)
+
+
+def _self_weight(body: Body) -> Iterable[LineLoad]:
+    for stretch in body.stretches:
+        mass = stretch.section.properties.mass_per_length
+        assert mass is not None  # documents refuses self-weight of a piece without density
+        weight = mass * GRAVITY / 1000  # kg/m -> N/mm
+        yield LineLoad(stretch.start, stretch.end, weight, weight)
+
+
+def _long_term(
+    document: documents.MemberDocument,
+    body: Body,
+    deform: bool,
+    loads: Sequence[Sequence[mechanics.Load]],
+    solved: Response,
+    factors: NDArray[np.float64],
+) -> NDArray[np.float64] | None:
+    """Deflection with the sustained part on the softened member (EN 1995-1-1:2004 2.2.3).
+
+    The sustained share is taken of the case itself, before the combination's factor, so the rest is
+    factor minus share.
+    """
+    if all(part.material.creep is None for part in body.parts):
+        return None
+    cases = tuple(document.loads)
+    shares = np.array([[c.sustained.get(case, 0.0) for case in cases] for c in document.combinations.values()])
+    soft = _solve(_beam(document, body, deform, creep=True), loads)
+    short_part = np.tensordot(factors - shares, solved.deflection, 1)
+    return np.asarray(short_part + np.tensordot(shares, soft.deflection, 1))
+
+
+@dataclass(frozen=True)
+class Peak:
+    """The value of largest size with its place and the row of its combination."""
+
+    value: float
+    at: float
+    row: int
+
+
+def largest(values: NDArray[np.float64], places: NDArray[np.float64]) -> Peak:
+    """The greatest of one value a combination; the leftmost place wins a tie, then the first combination."""
+    top = float(values.max())
+    near = np.flatnonzero(values >= top - TIE * max(abs(top), 1e-300))
+    row = int(near[np.argmin(places[near])])
+    return Peak(float(values[row]), float(places[row]), row)
+
+
+def envelope(found: Extremes, names: Sequence[str]) -> dict[str, object]:
+    """The contract's extremes block over the combinations named."""
+    high, low = largest(found.max, found.at_max), largest(-found.min, found.at_min)
+    return {
+        "max": high.value,
+        "min": 0.0 - low.value,
+        "at_max": high.at,
+        "at_min": low.at,
+        "combination_max": names[high.row],
+        "combination_min": names[low.row],
+    }
+
+
+def rows(response: Response, chosen: Sequence[int]) -> Response:
+    """The response of the chosen combinations only."""
+    if len(chosen) == len(response.shear):
+        return response
+    pick = list(chosen)
+    return replace(
+        response,
+        shear=response.shear[pick],
+        moment=response.moment[pick],
+        deflection=response.deflection[pick],
+        reaction_force=response.reaction_force[pick],
+        reaction_couple=response.reaction_couple[pick],
+    )
+
+
+def absolute(found: Extremes) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
+    """Largest size and its place, per combination; the leftmost place wins a tie."""
+    high, low = np.abs(found.max), np.abs(found.min)
+    scale = np.maximum(np.maximum(high, low), 1e-300)
+    tie = np.abs(high - low) <= TIE * scale
+    take_high = np.where(tie, found.at_max <= found.at_min, high > low)
+    return np.maximum(high, low), np.where(take_high, found.at_max, found.at_min)
+
+
+__all__ = ["Actions", "Peak", "absolute", "act", "envelope", "extremes", "largest", "rows"]

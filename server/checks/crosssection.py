@@ -1,0 +1,321 @@
+"""From the document's pieces and joints to the cross-sections of the member.
+
+Finds the contacts, places every joint on its contact, and cuts the member into stretches of constant
+section between the ends of its pieces. What the geometry forbids is refused here, by name.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+from functools import cached_property
+from itertools import pairwise
+
+import numpy as np
+from numpy.typing import NDArray
+
+from server import documents
+from server.errors import DocumentError, Fault
+from server.mechanics.contacts import Contact, contacts, overlap
+from server.mechanics.flow import JointFlow, JointLine, joint_flows, tied
+from server.mechanics.section import (
+    HorizontalCut,
+    Piece,
+    SectionProperties,
+    largest_cuts,
+    properties,
+    rectangle,
+    shear_stiffness,
+)
+
+GAP = 0.05  # mm two faces may stand apart and still touch
+
+
+@dataclass(frozen=True)
+class Part:
+    """A piece of the document, placed: its outline and how far it runs along the member."""
+
+    index: int
+    name: str
+    spec: documents.Rectangle
+    material: documents.Material
+    outline: NDArray[np.float64]
+    start: float
+    end: float
+
+    @cached_property
+    def bottom(self) -> float:
+        return float(self.outline[:, 1].min())
+
+    @cached_property
+    def top(self) -> float:
+        return float(self.outline[:, 1].max())
+
+    @property
+    def lies_flat(self) -> bool:
+        """Whether the piece is wider than deep, so that horizontal cuts pass through its thickness."""
+        return float(np.ptp(self.outline[:, 0])) > self.top - self.bottom
+
+    @property
+    def rolls(self) -> bool:
+        """Whether shear at its face rolls the fibres: layered material, or grain across the member."""
+        return self.spec.grain == "across" or self.material.layered
+
+    @property
+    def body_rolls(self) -> bool:
+        """Whether shear on horizontal cuts through its body rolls the fibres (a panel on edge shears in its plane)."""
+        return self.spec.grain == "across" or (self.material.layered and self.lies_flat)
+
+    @property
+    def shear_modulus(self) -> float | None:
+        """The modulus that horizontal cuts see."""
+        if self.body_rolls and self.material.G_rolling is not None:
+            return self.material.G_rolling
+        return self.material.G
+
+    def coexists(self, other: Part) -> bool:
+        return min(self.end, other.end) > max(self.start, other.start)
+
+
+@dataclass(frozen=True)
+class Site:
+    """A joint of the document placed on its contact."""
+
+    index: int
+    id: str
+    spec: documents.Joint
+    first: Part
+    second: Part
+    contact: Contact
+    width: float
+
+    @property
+    def bonded(self) -> bool:
+        return self.spec.adhesive is not None
+
+    def present(self, start: float, end: float) -> bool:
+        return all(part.start <= start and part.end >= end for part in (self.first, self.second))
+
+
+@dataclass(frozen=True)
+class CrossSection:
+    """The section over one or more stretches: the parts present and all that follows from them."""
+
+    parts: tuple[Part, ...]
+    sites: tuple[Site, ...]
+    pieces: tuple[Piece, ...]
+    properties: SectionProperties
+
+    @cached_property
+    def shear_stiffness(self) -> float | None:
+        return shear_stiffness(self.pieces, self.properties)
+
+    @cached_property
+    def cuts(self) -> dict[int, HorizontalCut]:
+        found = largest_cuts(self.pieces, self.properties)
+        return {part.index: cut for part, cut in zip(self.parts, found, strict=True)}
+
+    @cached_property
+    def flows(self) -> dict[int, JointFlow]:
+        found = joint_flows(self.pieces, self.properties, _lines(self.parts, self.sites))
+        return {site.index: flow for site, flow in zip(self.sites, found, strict=True)}
+
+    @cached_property
+    def softened(self) -> tuple[float, float | None]:
+        """EI and GA with each piece's E and G divided by 1 + creep."""
+        soft = tuple(_piece(part, creep=True) for part in self.parts)
+        whole = properties(soft)
+        return whole.EI, shear_stiffness(soft, whole)
+
+
+@dataclass(frozen=True)
+class Stretch:
+    """A length of the member over which the section stays the same."""
+
+    start: float
+    end: float
+    section: CrossSection
+
+
+@dataclass(frozen=True)
+class Body:
+    """The whole member: its parts, joints, contacts, and stretches from left to right."""
+
+    length: float
+    parts: tuple[Part, ...]
+    sites: tuple[Site, ...]
+    contacts: tuple[Contact, ...]
+    stretches: tuple[Stretch, ...]
+
+    def stretches_of(self, part: Part) -> list[tuple[int, Stretch]]:
+        return [(i, s) for i, s in enumerate(self.stretches) if part.start <= s.start and part.end >= s.end]
+
+
+def build(document: documents.MemberDocument) -> Body:
+    """Place pieces and joints; raise DocumentError for overlaps, loose pieces and joints that touch nothing."""
+    parts = tuple(_parts(document))
+    found = _contacts(document, parts)
+    sites = tuple(_sites(document, parts, found))
+    stretches = tuple(_stretches(document.member.length, parts, sites))
+    return Body(document.member.length, parts, sites, tuple(found), stretches)
+
+
+def _stiffness_key(site: Site) -> object:
+    """What must match before two mirrored joints share alike: bonds are rigid, fasteners are not."""
+    if site.bonded:
+        return ("bond", round(site.width, 6))
+    spacing = site.spec.spacing
+    zones = tuple((z.from_, z.to, z.spacing) for z in spacing) if isinstance(spacing, list | tuple) else spacing
+    return ("fastener", site.spec.fastener, site.spec.rows, zones)
+
+
+def _parts(document: documents.MemberDocument) -> list[Part]:
+    length = document.member.length
+    parts = []
+    for index, (name, spec) in enumerate(document.section.pieces.items()):
+        material = document.materials[spec.material]
+        assert isinstance(material, documents.Material)
+        start = 0.0 if spec.from_ is None else spec.from_
+        end = length if spec.to is None else spec.to
+        outline = rectangle(spec.width, spec.depth, spec.at, spec.turn)
+        parts.append(Part(index, name, spec, material, outline, start, end))
+    return parts
+
+
+def _piece(part: Part, creep: bool = False) -> Piece:
+    soften = 1.0 + (part.material.creep or 0.0) if creep else 1.0
+    G = part.shear_modulus
+    return Piece(
+        part.name,
+        part.outline,
+        part.material.E / soften,
+        None if G is None else G / soften,
+        part.material.density,
+    )
+
+
+def _contacts(document: documents.MemberDocument, parts: Sequence[Part]) -> list[Contact]:
+    """All contacts between pieces that stand side by side somewhere along the member."""
+    reach = np.full((len(parts), len(parts)), GAP)
+    position = {part.name: part.index for part in parts}
+    for joint in document.section.joints:
+        i, j = (position[name] for name in joint.between)
+        reach[i, j] = reach[j, i] = max(reach[i, j], GAP + _thickness(document, joint))
+    return [c for c in contacts([p.outline for p in parts], reach) if parts[c.first].coexists(parts[c.second])]
+
+
+def _thickness(document: documents.MemberDocument, joint: documents.Joint) -> float:
+    if joint.adhesive is None:
+        return 0.0
+    adhesive = document.adhesives[joint.adhesive]
+    assert isinstance(adhesive, documents.Adhesive)
+    return adhesive.thickness or 0.0
+
+
+def _sites(document: documents.MemberDocument, parts: Sequence[Part], found: Sequence[Contact]) -> list[Site]:
+    by_name = {part.name: part for part in parts}
+    faults: list[Fault] = []
+    sites: list[Site] = []
+    for index, joint in enumerate(document.section.joints):
+        first, second = (by_name[name] for name in joint.between)
+        path = f"section.joints[{index}]"
+        touching = [c for c in found if {c.first, c.second} == {first.index, second.index}]
+        allowed = GAP + _thickness(document, joint)
+        pair = f"{first.name!r} and {second.name!r}"
+        if not touching:
+            faults.append(Fault(f"{path}.between", _apart(first, second, allowed)))
+            continue
+        segment = joint.segment or 1
+        if segment > len(touching):
+            faults.append(
+                Fault(f"{path}.segment", f"{pair} touch in {len(touching)} place(s); segment {segment} does not exist.")
+            )
+            continue
+        contact = touching[segment - 1]
+        if contact.gap > allowed + 1e-9:
+            faults.append(Fault(f"{path}.between", _apart(first, second, allowed, contact.gap)))
+            continue
+        width = contact.length if joint.width is None else joint.width
+        if width > contact.length * (1 + 1e-9):
+            faults.append(
+                Fault(
+                    f"{path}.width",
+                    f"width is {width:g} mm, but {pair} touch over only {contact.length:.6g} mm; "
+                    "enter at most that, or leave it empty for the whole contact.",
+                )
+            )
+            continue
+        joint_id = "/".join(joint.between) + (f"#{segment}" if segment > 1 else "")
+        sites.append(Site(index, joint_id, joint, first, second, contact, width))
+    if faults:
+        raise DocumentError(faults)
+    return sites
+
+
+def _apart(first: Part, second: Part, allowed: float, gap: float | None = None) -> str:
+    pair = f"{first.name!r} and {second.name!r}"
+    if not first.coexists(second):
+        return f"{pair} are never side by side: one ends before the other starts. Change their from and to."
+    how = "do not touch" if gap is None else f"stand {gap:.3g} mm apart"
+    return (
+        f"{pair} {how}; a joint needs facing parallel edges with a gap of at most {allowed:g} mm "
+        "(0.05 mm plus the adhesive's thickness). Move a piece, or give the adhesive its thickness."
+    )
+
+
+def _stretches(length: float, parts: Sequence[Part], sites: Sequence[Site]) -> list[Stretch]:
+    ends = sorted({0.0, length, *(p.start for p in parts), *(p.end for p in parts)})
+    known: dict[tuple[int, ...], CrossSection] = {}
+    stretches: list[Stretch] = []
+    for start, end in pairwise(ends):
+        active = tuple(p for p in parts if p.start <= start and p.end >= end)
+        key = tuple(p.index for p in active)
+        if key not in known:
+            known[key] = _cross_section(active, [s for s in sites if s.present(start, end)], start, end)
+        stretches.append(Stretch(start, end, known[key]))
+    return stretches
+
+
+def _cross_section(active: tuple[Part, ...], sites: Sequence[Site], start: float, end: float) -> CrossSection:
+    where = f"between {start:g} and {end:g} mm from the left end"
+    if not active:
+        raise DocumentError(
+            [Fault("section.pieces", f"No piece runs {where}; the member is cut through there. Extend a piece.")]
+        )
+    faults = [
+        Fault(
+            f"section.pieces.{active[i].name}.at",
+            f"{active[i].name!r} and {active[j].name!r} overlap by {area:.4g} mm2; move one so that they only touch.",
+        )
+        for i, j, area in overlap([p.outline for p in active])
+    ]
+    if faults:
+        raise DocumentError(faults)
+    loose = tied(len(active), _lines(active, sites))
+    if loose:
+        raise DocumentError(
+            [
+                Fault(
+                    f"section.pieces.{active[i].name}",
+                    f"{active[i].name!r} is tied to nothing {where}: no chain of joints joins it to "
+                    f"{active[0].name!r}. Add a joint, or take the piece out.",
+                )
+                for i in loose
+            ]
+        )
+    pieces = tuple(_piece(part) for part in active)
+    return CrossSection(active, tuple(sites), pieces, properties(pieces))
+
+
+def _lines(parts: Sequence[Part], sites: Sequence[Site]) -> list[JointLine]:
+    position = {part.index: i for i, part in enumerate(parts)}
+    return [
+        JointLine(
+            position[site.first.index],
+            position[site.second.index],
+            site.contact.start,
+            site.contact.end,
+            _stiffness_key(site),
+        )
+        for site in sites
+    ]

@@ -1,0 +1,120 @@
+"""What the drawings need from a check: outlines, contacts, loads, and polylines of the diagrams."""
+
+from __future__ import annotations
+
+import numpy as np
+from numpy.typing import NDArray
+
+from server import documents
+from server.checks.actions import Actions
+from server.checks.crosssection import Body, Site
+from server.mechanics.beam import Couple, Load, PointLoad
+
+MOST_POINTS = 120
+LEAST_STEPS, MOST_STEPS = 4, 16
+
+
+def drawing(document: documents.MemberDocument, body: Body, actions: Actions) -> dict[str, object]:
+    """Pieces, contacts, supports and loads as plain numbers, for sheets to draw without calculating."""
+    return {
+        "pieces": [
+            {
+                "id": p.name,
+                "outline": p.outline.tolist(),
+                "holes": [],
+                "material": p.spec.material,
+                "kind": p.material.kind,
+                "from": p.start,
+                "to": p.end,
+            }
+            for p in body.parts
+        ],
+        "contacts": _contacts(body),
+        "member": {
+            "length": body.length,
+            "supports": [{"at": s.at, "kind": s.kind} for s in document.member.supports],
+            "hinges": list(document.member.hinges),
+        },
+        "loads": [
+            _load(case, load) for case, loads in zip(actions.cases, actions.case_loads, strict=True) for load in loads
+        ],
+    }
+
+
+def _contacts(body: Body) -> list[dict[str, object]]:
+    joined: dict[int, Site] = {id(site.contact): site for site in body.sites}
+    found: list[dict[str, object]] = []
+    for contact in body.contacts:
+        site = joined.get(id(contact))
+        found.append(
+            {
+                "id": None if site is None else site.id,
+                "between": [body.parts[contact.first].name, body.parts[contact.second].name],
+                "start": [float(x) for x in contact.start],
+                "end": [float(x) for x in contact.end],
+                "length": float(contact.length),
+                "joined": site is not None,
+                "bonded": site is not None and site.bonded,
+            }
+        )
+    return found
+
+
+def _load(case: str, load: Load) -> dict[str, object]:
+    if isinstance(load, PointLoad):
+        return {"case": case, "kind": "point", "at": load.at, "value": load.value}
+    if isinstance(load, Couple):
+        return {"case": case, "kind": "couple", "at": load.at, "value": load.value}
+    return {
+        "case": case,
+        "kind": "line",
+        "from": load.start,
+        "to": load.end,
+        "value": [load.value_start, load.value_end],
+    }
+
+
+def diagrams(body: Body, actions: Actions) -> dict[str, object]:
+    """Envelopes over the combinations as polylines; every interval keeps both its ends, so jumps stay upright."""
+    breaks = actions.breaks
+    widths = np.diff(breaks)
+    steps = int(np.clip(MOST_POINTS // len(widths), LEAST_STEPS, MOST_STEPS))
+    local = widths[:, None] * np.linspace(0.0, 1.0, steps)
+    at = breaks[:-1, None] + local
+    found: dict[str, object] = {"at": at.ravel().tolist()}
+    strength, deflection = list(actions.strength), list(actions.deflection)
+    response = actions.response
+    if strength:
+        shear = _sample(response.shear[strength], local)
+        found["shear"] = _band(shear)
+        found["moment"] = _band(_sample(response.moment[strength], local))
+        found["joints"] = {s.id: _flow(s, body, breaks, shear) for s in body.sites}
+    if deflection:
+        found["deflection"] = _band(_sample(response.deflection[deflection], local))
+        if actions.long_term is not None:
+            found["deflection_long_term"] = _band(_sample(actions.long_term[deflection], local))
+    return found
+
+
+def _sample(coefficients: NDArray[np.float64], local: NDArray[np.float64]) -> NDArray[np.float64]:
+    """Values (combinations, intervals, steps) of piecewise polynomials at local coordinates (Horner)."""
+    value = np.zeros((coefficients.shape[0], *local.shape))
+    for power in range(coefficients.shape[2] - 1, -1, -1):
+        value = value * local + coefficients[:, :, power, None]
+    return value
+
+
+def _band(values: NDArray[np.float64]) -> dict[str, list[float]]:
+    return {"max": values.max(axis=0).ravel().tolist(), "min": values.min(axis=0).ravel().tolist()}
+
+
+def _flow(site: Site, body: Body, breaks: NDArray[np.float64], shear: NDArray[np.float64]) -> dict[str, list[float]]:
+    """Flow per interval: shear x the joint's share there, none where the joint is not."""
+    middles = 0.5 * (breaks[:-1] + breaks[1:])
+    rate = np.zeros(len(middles))
+    for stretch in body.stretches:
+        flow = stretch.section.flows.get(site.index)
+        if flow is not None and flow.split is not None:
+            inside = (middles > stretch.start) & (middles < stretch.end)
+            rate[inside] = abs(flow.share) / stretch.section.properties.EI
+    return _band(shear * rate[:, None])

@@ -1,0 +1,248 @@
+"""Bending and shear of the pieces themselves."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from dataclasses import dataclass, field
+
+import numpy as np
+from numpy.typing import NDArray
+
+from server.checks.crosssection import Body, Part, Stretch
+from server.checks.resistance import Claim, Judge, Strength, Weighed, worst
+from server.checks.scan import Scan
+from server.working import formula
+
+BENDING = "-E*M*(u - u_0)/EI"
+SHEAR = "V*S/(EI*b)"
+MECHANICS = "plane sections, E-weighted (any mechanics of materials text)"
+FIBRES = ("top", "bottom", "mean")
+
+
+@dataclass(frozen=True, eq=False)
+class Bent:
+    """Normal stresses of one piece: fibres x entries x combinations, an entry for each stretch x moment extreme."""
+
+    stress: NDArray[np.float64]
+    moment: NDArray[np.float64]
+    at: NDArray[np.float64]
+    stretch: NDArray[np.intp]
+
+
+@dataclass(frozen=True, eq=False)
+class Sheared:
+    """Largest VQ/(Ib) on horizontal cuts through one piece: stretches x combinations."""
+
+    stress: NDArray[np.float64]
+    shear: NDArray[np.float64]
+    at: NDArray[np.float64]
+    stretch: tuple[int, ...]
+
+
+@dataclass
+class PieceCheck:
+    """One piece on its way through the check: its stresses, what is claimed of it, then what came out."""
+
+    part: Part
+    result: dict[str, object]
+    bent: Bent | None = None
+    sheared: Sheared | None = None
+    claims: list[Claim] = field(default_factory=list)
+    governing: Weighed | None = None
+
+
+def claim_pieces(body: Body, scan: Scan, judge: Judge, *, upper_stiffness: bool) -> list[PieceCheck]:
+    """Stresses of every piece and, where its material has strengths, the limits that are to be weighed.
+
+    ``upper_stiffness``: fasteners carry a joint and slip is not reckoned, so the stresses are estimates
+    and no limit is judged on them.
+    """
+    found = []
+    for part in body.parts:
+        check = PieceCheck(part, _blank(part))
+        found.append(check)
+        if not scan.shear:
+            continue
+        present = body.stretches_of(part)
+        check.bent, check.sheared = _bend(part, present, scan), _shear(part, present, scan)
+        if not upper_stiffness and part.material.strengths.any():
+            judge.duration("material", part.spec.material, part.material)
+            check.claims = [*_bending_claims(part, check.bent, judge), *_shear_claim(part, check.sheared, judge)]
+    return found
+
+
+def write_piece(check: PieceCheck, weighed: list[Weighed | None], body: Body, judge: Judge) -> None:
+    """Write a piece's steps and its block of the result."""
+    if check.bent is None or check.sheared is None:
+        return
+    known = [w for w in weighed if w is not None]
+    group = f"Piece {check.part.name}"
+    _write_bending(check, check.bent, [w for w in known if w.claim.symbol == "sigma"], body, judge, group)
+    _write_shear(check, check.sheared, body, judge, group)
+    check.result["limits"] = [judge.write(w, group) for w in known]
+    check.governing = worst(known)
+    check.result["utilisation"] = None if check.governing is None else check.governing.utilisation
+
+
+def _blank(part: Part) -> dict[str, object]:
+    return {
+        "id": part.name,
+        "material": part.spec.material,
+        "stress_top": None,
+        "stress_bottom": None,
+        "stress_mean": None,
+        "shear_stress": None,
+        "limits": [],
+        "utilisation": None,
+    }
+
+
+def _bend(part: Part, present: list[tuple[int, Stretch]], scan: Scan) -> Bent:
+    stresses, moments, places, stretches = [], [], [], []
+    for t, stretch in present:
+        found = scan.moment[t]
+        moment = np.array([found.max, found.min])
+        whole = stretch.section.properties
+        heights = np.array(_heights(part, stretch))[:, None, None]
+        stresses.append(
+            formula(BENDING).array(
+                {"E": part.material.E, "M": moment, "u": heights, "u_0": whole.neutral_axis[1], "EI": whole.EI}
+            )
+        )
+        moments.append(moment)
+        places.append([found.at_max, found.at_min])
+        stretches += [t, t]
+    return Bent(
+        np.concatenate(stresses, axis=1),
+        np.concatenate(moments),
+        np.concatenate(places),
+        np.array(stretches, dtype=np.intp),
+    )
+
+
+def _heights(part: Part, stretch: Stretch) -> tuple[float, float, float]:
+    """Heights of the fibres: top, bottom, centroid."""
+    section = stretch.section
+    place = section.parts.index(part)
+    return part.top, part.bottom, float(section.properties.pieces.centroid[place, 1])
+
+
+def _shear(part: Part, present: list[tuple[int, Stretch]], scan: Scan) -> Sheared:
+    stresses, shears, places = [], [], []
+    for t, stretch in present:
+        shear, at = scan.shear[t]
+        cut, EI = stretch.section.cuts[part.index], stretch.section.properties.EI
+        stresses.append(formula(SHEAR).array({"V": shear, "S": abs(cut.first_moment), "b": cut.width, "EI": EI}))
+        shears.append(shear)
+        places.append(at)
+    return Sheared(np.array(stresses), np.array(shears), np.array(places), tuple(t for t, _ in present))
+
+
+def _bending_claims(part: Part, bent: Bent, judge: Judge) -> Iterator[Claim]:
+    for word, demand in _fibre_demands(part, bent):
+        entry = demand.argmax(axis=0)
+        columns = np.arange(demand.shape[1])
+        worst_of = demand[entry, columns]
+        if worst_of.max() <= 0:  # never in tension, or never in compression: nothing to judge
+            continue
+        strength = _strength(part, word, f"{word} in {part.name}", judge)
+        if strength is None:
+            judge.findings.miss(
+                f"bending strength of {part.spec.material!r} (piece {part.name}), or its {word} strength: the "
+                "material's record, from its grade or from tests."
+            )
+            continue
+        yield Claim(strength, "sigma", np.maximum(worst_of, 0.0), bent.at[entry, columns], bent.stretch[entry])
+
+
+def _fibre_demands(part: Part, bent: Bent) -> list[tuple[str, NDArray[np.float64]]]:
+    """What each strength is set against: the extreme fibre by bending, the mean by tension or compression.
+
+    Where bending is not given, the extreme fibre is judged by tension and compression.
+    """
+    top, bottom, mean = bent.stress
+    given = part.material.strengths
+    if given.bending is None:
+        return [("tension", np.maximum(top, bottom)), ("compression", -np.minimum(top, bottom))]
+    demands = [("bending", np.maximum(np.abs(top), np.abs(bottom)))]
+    demands += [("tension", mean)] if given.tension is not None else []
+    demands += [("compression", -mean)] if given.compression is not None else []
+    return demands
+
+
+def _shear_claim(part: Part, sheared: Sheared, judge: Judge) -> Iterator[Claim]:
+    word = "rolling_shear" if part.body_rolls else "shear"
+    spoken = word.replace("_", " ")
+    strength = _strength(part, word, f"{spoken} in {part.name}", judge)
+    if strength is None:
+        judge.findings.miss(
+            f"{spoken} strength of {part.spec.material!r} (piece {part.name}): the material's record, from its grade "
+            "or from tests."
+        )
+        return
+    entry = sheared.stress.argmax(axis=0)
+    columns = np.arange(sheared.stress.shape[1])
+    stretches = np.array(sheared.stretch, dtype=np.intp)[entry]
+    yield Claim(strength, "tau", sheared.stress[entry, columns], sheared.at[entry, columns], stretches)
+
+
+def _strength(part: Part, word: str, what: str, judge: Judge) -> Strength | None:
+    return judge.strength(
+        getattr(part.material.strengths, word),
+        what=what,
+        unit="MPa",
+        kind="material",
+        owner=part.spec.material,
+        holder=part.material,
+    )
+
+
+def _write_bending(check: PieceCheck, bent: Bent, weighed: list[Weighed], body: Body, judge: Judge, group: str) -> None:
+    """Stresses where the piece is used most: by its limits on normal stress, else where they are largest."""
+    size = np.abs(bent.stress[:2]).max(axis=0)
+    governing = worst(weighed)
+    if governing is None:
+        entry, row = (int(i) for i in np.unravel_index(int(size.argmax()), size.shape))
+    else:
+        row = governing.row
+        here = (bent.at[:, row] == governing.at) & (bent.stretch == governing.stretch)
+        entry = int(np.where(here, size[:, row], -1.0).argmax())
+    stretch = body.stretches[int(bent.stretch[entry])]
+    whole, part = stretch.section.properties, check.part
+    where = f"{MECHANICS}; at {bent.at[entry, row]:.6g} mm, combination {judge.actions.strength_names[row]}"
+    for name, height in zip(FIBRES, _heights(part, stretch), strict=True):
+        check.result[f"stress_{name}"] = judge.working.step(
+            "Normal stress at its centroid" if name == "mean" else f"Normal stress at its {name}",
+            f"sigma_{name}",
+            BENDING,
+            {
+                "E": (part.material.E, "MPa"),
+                "M": (float(bent.moment[entry, row]), "N*mm"),
+                "u": (height, "mm"),
+                "u_0": (float(whole.neutral_axis[1]), "mm"),
+                "EI": (whole.EI, "N*mm2"),
+            },
+            unit="MPa",
+            source=where,
+            group=group,
+        )
+
+
+def _write_shear(check: PieceCheck, sheared: Sheared, body: Body, judge: Judge, group: str) -> None:
+    entry, row = (int(i) for i in np.unravel_index(int(sheared.stress.argmax()), sheared.stress.shape))
+    stretch = body.stretches[sheared.stretch[entry]]
+    cut = stretch.section.cuts[check.part.index]
+    check.result["shear_stress"] = judge.working.step(
+        "Largest shear stress on a horizontal cut",
+        "tau",
+        SHEAR,
+        {
+            "V": (float(sheared.shear[entry, row]), "N"),
+            "S": (abs(cut.first_moment), "N*mm"),
+            "b": (cut.width, "mm"),
+            "EI": (stretch.section.properties.EI, "N*mm2"),
+        },
+        unit="MPa",
+        source=f"{MECHANICS}; cut {cut.up:.6g} mm up, b of all pieces cut there",
+        group=group,
+    )

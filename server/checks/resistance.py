@@ -1,0 +1,271 @@
+"""What a joint or piece resists, and what it is used to.
+
+Resistance, for one combination, is the characteristic strength x the duration factor of the
+combination x the product of the named factors / the safety or partial factor (contract of the check).
+All limits of a check are weighed at once, one row a limit and one column a strength combination; the
+governing cell of each row is then written out step by step.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterable, Sequence
+from dataclasses import dataclass, field
+from functools import lru_cache
+from typing import Literal
+
+import numpy as np
+from numpy.typing import NDArray
+
+from server import documents
+from server.checks.actions import TIE, Actions
+from server.working import Working, formula
+
+Kind = Literal["adhesive", "fastener", "material"]
+Holder = documents.Material | documents.Adhesive | documents.Fastener
+UNPROVEN = ("indicative", "draft", "on hold", "withdrawn")
+STRENGTH_SYMBOL = {"MPa": "f_k", "N": "R_k"}
+RESISTANCE_SYMBOL = {"MPa": "f_d", "N": "R_d"}
+
+
+@lru_cache(maxsize=64)
+def resistance_formula(strength: str, factors: int) -> str:
+    """The formula of a resistance: the strength's symbol, times k_dur and so many named factors, over gamma."""
+    named = "".join(f"*k_{i}" for i in range(1, factors + 1))
+    return f"{strength}*k_dur{named}/gamma"
+
+
+@dataclass
+class Findings:
+    """What the check finds on its way, beside the numbers: what is missing, what deserves a caution."""
+
+    missing: list[str] = field(default_factory=list)
+    cautions: list[dict[str, object]] = field(default_factory=list)
+
+    def miss(self, text: str) -> None:
+        if text not in self.missing:
+            self.missing.append(text)
+
+    def caution(self, about: str, text: str, answer: bool = False) -> None:
+        entry: dict[str, object] = {"about": about, "text": text, "answer": answer}
+        if entry not in self.cautions:
+            self.cautions.append(entry)
+
+
+@dataclass(frozen=True, eq=False)
+class Strength:
+    """One characteristic strength with everything that multiplies and divides it.
+
+    ``owner`` is the value's name in the document; ``duration`` one factor a strength combination,
+    NaN where the value's table has none for it.
+    """
+
+    what: str
+    value: float
+    unit: str
+    owner: str
+    duration: tuple[float, ...]
+    factors: tuple[tuple[str, float], ...]
+    divisor: float
+    source: str
+
+    def arguments(self, row: int) -> dict[str, tuple[float, str]]:
+        """What multiplies and divides the strength in one combination, with units, for a printed step."""
+        return {
+            "k_dur": (self.duration[row], ""),
+            "gamma": (self.divisor, ""),
+            **{f"k_{i}": (value, "") for i, (_, value) in enumerate(self.factors, 1)},
+        }
+
+
+@dataclass(frozen=True, eq=False)
+class Claim:
+    """A demand set against a strength, one entry a strength combination, with the place and stretch of each.
+
+    ``symbol`` is the demand's in the printed working.
+    """
+
+    strength: Strength
+    symbol: str
+    demand: NDArray[np.float64]
+    at: NDArray[np.float64]
+    stretch: NDArray[np.intp]
+
+
+@dataclass(frozen=True, eq=False)
+class Weighed:
+    """A claim at its governing combination ``row``; ``utilisation`` and ``resistance`` there."""
+
+    claim: Claim
+    row: int
+    resistance: float
+    utilisation: float
+
+    @property
+    def stretch(self) -> int:
+        return int(self.claim.stretch[self.row])
+
+    @property
+    def at(self) -> float:
+        return float(self.claim.at[self.row])
+
+
+class Judge:
+    """Gathers strengths for one document, with what is missing or doubtful about them, and weighs claims."""
+
+    def __init__(
+        self, document: documents.MemberDocument, actions: Actions, working: Working, findings: Findings
+    ) -> None:
+        self.document, self.actions, self.working, self.findings = document, actions, working, findings
+        self._durations: dict[tuple[str, str], tuple[float, ...]] = {}
+
+    def strength(
+        self, value: float | None, *, what: str, unit: str, kind: Kind, owner: str, holder: Holder
+    ) -> Strength | None:
+        """One strength, or None where it was not given."""
+        if value is None:
+            return None
+        return Strength(
+            what=what,
+            value=value,
+            unit=unit,
+            owner=owner,
+            duration=self.duration(kind, owner, holder),
+            factors=tuple(holder.factors.items()),
+            divisor=self._divisor(kind, owner),
+            source=describe(holder),
+        )
+
+    def _divisor(self, kind: Kind, owner: str) -> float:
+        found = self.document.basis.factor(kind, owner)
+        assert found is not None  # documents refuses a basis without a factor that the check uses
+        return found
+
+    def duration(self, kind: Kind, owner: str, holder: Holder) -> tuple[float, ...]:
+        """Duration factors over the strength combinations; doubts about the value are named the first time."""
+        key = (kind, owner)
+        if key in self._durations:
+            return self._durations[key]
+        label = f"{kind} {owner!r}"
+        table = holder.duration_factors
+        found = []
+        for k in self.actions.strength:
+            wanted = self.actions.durations[k]
+            if wanted is None or not table:
+                found.append(1.0)
+            elif wanted in table:
+                found.append(table[wanted])
+            else:
+                found.append(np.nan)
+                self.findings.miss(
+                    f"duration factor of {label} for {wanted!r} (combination {self.actions.names[k]!r}): its table "
+                    f"has only {', '.join(table)}; add it to the record from the code you work to."
+                )
+        if not table:
+            self.findings.caution(
+                "load duration", f"{label.capitalize()} has no duration factors: 1.0 was used for every combination."
+            )
+        self.judge_status(label, holder)
+        self._durations[key] = tuple(found)
+        return self._durations[key]
+
+    def judge_status(self, label: str, holder: Holder) -> None:
+        """A doubtful value never lets a check pass; a provisional or superseded one is named."""
+        status = holder.status
+        if status in UNPROVEN:
+            self.findings.miss(
+                f"approved value for {label}: its values are {status!r}; the verdict may rest only on values approved "
+                "from tests of these parts. Test coupons and have the record approved."
+            )
+        elif status == "provisional":
+            self.findings.caution("value status", f"{label.capitalize()} is provisional: few tests so far.", True)
+        elif status == "superseded":
+            self.findings.caution("value status", f"{label.capitalize()} is superseded: a newer revision exists.", True)
+
+    def weigh(self, claims: Sequence[Claim]) -> list[Weighed | None]:
+        """The governing combination of every claim; None where no combination can be judged."""
+        if not claims:
+            return []
+        demand = np.array([c.demand for c in claims])
+        places = np.array([c.at for c in claims])
+        resistances = _resistances(claims, demand.shape[1])
+        usage = np.where(np.isnan(resistances), -1.0, demand / resistances)
+        top = usage.max(axis=1, keepdims=True)
+        near = np.where(usage >= top - TIE * np.maximum(top, 1e-300), places, np.inf)
+        rows = near.argmin(axis=1).tolist()
+        return [
+            None if usage[i, row] < 0 else Weighed(claim, row, float(resistances[i, row]), float(usage[i, row]))
+            for i, (claim, row) in enumerate(zip(claims, rows, strict=True))
+        ]
+
+    def write(self, weighed: Weighed, group: str) -> dict[str, object]:
+        """The limit's block of the result, its resistance and utilisation reached step by step."""
+        claim, row = weighed.claim, weighed.row
+        found, unit = claim.strength, claim.strength.unit
+        given, resists = STRENGTH_SYMBOL[unit], RESISTANCE_SYMBOL[unit]
+        combination = self.actions.strength_names[row]
+        duration = self.actions.durations[self.actions.strength[row]]
+        named = "".join(f"; k_{i} = {name}" for i, (name, _) in enumerate(found.factors, 1))
+        demand = float(claim.demand[row])
+        resistance = self.working.step(
+            f"Resistance: {found.what}",
+            resists,
+            resistance_formula(given, len(found.factors)),
+            {given: (found.value, unit), **found.arguments(row)},
+            unit=unit,
+            source=f"{found.source}; k_dur: {duration or 'no duration stated'}{named}",
+            group=group,
+        )
+        utilisation = self.working.step(
+            f"Utilisation: {found.what}",
+            "eta",
+            f"{claim.symbol}/{resists}",
+            {claim.symbol: (demand, unit), resists: (resistance, unit)},
+            unit="",
+            source=f"combination {combination}",
+            group=group,
+        )
+        return {
+            "what": found.what,
+            "demand": demand,
+            "demand_unit": unit,
+            "resistance": resistance,
+            "utilisation": utilisation,
+            "reductions": [],
+            "combination": combination,
+            "at": weighed.at,
+            "strength": found.value,
+            "duration_factor": found.duration[row],
+            "factors": dict(found.factors),
+            "safety_factor": found.divisor,
+        }
+
+
+def _resistances(claims: Sequence[Claim], columns: int) -> NDArray[np.float64]:
+    """Resistances (claims, combinations); one evaluation of the printed formula for all with as many factors."""
+    alike: dict[int, list[int]] = {}
+    for i, claim in enumerate(claims):
+        alike.setdefault(len(claim.strength.factors), []).append(i)
+    found = np.empty((len(claims), columns))
+    for factors, places in alike.items():
+        strengths = [claims[i].strength for i in places]
+        values = {
+            "f_k": np.array([[s.value] for s in strengths]),
+            "k_dur": np.array([s.duration for s in strengths]),
+            "gamma": np.array([[s.divisor] for s in strengths]),
+        }
+        for n in range(factors):
+            values[f"k_{n + 1}"] = np.array([[s.factors[n][1]] for s in strengths])
+        found[places] = formula(resistance_formula("f_k", factors)).array(values)
+    return found
+
+
+def describe(holder: Holder) -> str:
+    """Where a value comes from, in one line."""
+    if holder.record:
+        return f"record {holder.record} revision {holder.revision}"
+    return holder.source or "as typed in this check"
+
+
+def worst(weighed: Iterable[Weighed | None]) -> Weighed | None:
+    """The one with the greatest utilisation; the first wins a tie."""
+    return max((w for w in weighed if w is not None), key=lambda w: w.utilisation, default=None)

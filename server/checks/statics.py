@@ -1,0 +1,315 @@
+"""The working of the member's statics: from the loads to reactions, shear, moment and deflection, by hand.
+
+The solver has found the numbers; these steps reach the governing ones again by plain equilibrium, so
+that a reader can follow them with a pocket calculator.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterable
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from server import documents
+from server.checks.actions import GRAVITY, Actions, Peak, absolute, extremes, largest
+from server.checks.crosssection import Body, CrossSection
+from server.mechanics.beam import Couple, PointLoad
+from server.working import Working
+
+STATICS = "equilibrium"
+REACTION = "(sum(W*(a - x_1)) - C)/(x_2 - x_1)"
+SHEAR = "sum(F)"
+MOMENT = "sum(F*(x - a)) - C"
+POINT_SAG = "sum(P*b*x*(L**2 - b**2 - x**2)/(6*L*EI))"
+UNIFORM_SAG = "w*x*(L**3 - 2*L*x**2 + x**3)/(24*EI)"
+BEAM_TABLE = "beam formula tables (AWC Design Aid No. 6, figures 1 and 8; superposition)"
+
+
+@dataclass(frozen=True)
+class Resultants:
+    """Forces of one combination at their places, and the sum of its couples, up to a place along the member."""
+
+    force: NDArray[np.float64]
+    at: NDArray[np.float64]
+    couple: float
+
+
+class Statics:
+    """Adds the steps for the places that govern, each once."""
+
+    def __init__(self, document: documents.MemberDocument, body: Body, actions: Actions, working: Working) -> None:
+        self.document, self.body, self.actions, self.working = document, body, actions, working
+        self._shear_done: set[tuple[float, int]] = set()
+
+    def loads(self) -> None:
+        """Area loads on their width, and self-weight from the pieces' densities."""
+        for case, loads in self.document.loads.items():
+            for number, load in enumerate(loads, 1):
+                if isinstance(load, documents.AreaLoad):
+                    self.working.step(
+                        f"Area load {number} of case {case} as a line load", "w", "p*b",
+                        {"p": (load.value, "MPa"), "b": (load.width, "mm")},
+                        unit="N/mm", source="load x loaded width", group="Loads",
+                    )  # fmt: skip
+                elif isinstance(load, documents.SelfWeight):
+                    for section in _distinct(self.body):
+                        self._self_weight(case, section)
+
+    def _self_weight(self, case: str, section: CrossSection) -> None:
+        weights = [(p.density or 0.0) * GRAVITY * 1e-9 for p in section.pieces]
+        self.working.step(
+            f"Self-weight of case {case}", "w", "sum(A*gamma)",
+            {"A": (section.properties.pieces.area, "mm2"), "gamma": (np.array(weights), "N/mm3")},
+            unit="N/mm", source="gamma = density x 9.80665 m/s2", group="Loads",
+        )  # fmt: skip
+
+    def section(self) -> None:
+        """Neutral axis and bending stiffness of every distinct section."""
+        distinct = _distinct(self.body)
+        for section in distinct:
+            extent = "" if len(distinct) == 1 else f" ({_extent(self.body, section)})"
+            parts = section.properties.pieces
+            E = np.array([p.E for p in section.pieces])
+            values: dict[str, object] = {
+                "E": (E, "MPa"),
+                "A": (parts.area, "mm2"),
+                "u": (parts.centroid[:, 1], "mm"),
+            }
+            u_0 = self.working.step(
+                f"Neutral axis, E-weighted{extent}", "u_0", "sum(E*A*u)/sum(E*A)", values,
+                unit="mm", source=f"in order: {', '.join(p.name for p in section.parts)}", group="Section",
+            )  # fmt: skip
+            self.working.step(
+                f"Bending stiffness{extent}", "EI", "sum(E*(I + A*(u - u_0)**2))",
+                {**values, "I": (parts.inertia[:, 0], "mm4"), "u_0": (u_0, "mm")},
+                unit="N*mm2", source="parallel axes (Steiner), E-weighted", group="Section",
+            )  # fmt: skip
+            GA = section.shear_stiffness
+            if self.actions.shear_deformation and GA is not None:
+                self.working.note(
+                    f"Shear stiffness{extent}",
+                    "GA = V^2 / integral of tau^2/G over the section, with tau = V S/(EI b) on horizontal cuts; "
+                    "integrated exactly between the corners of the pieces (Gauss-Legendre).",
+                    value=GA, unit="N", source="strain energy of shear (form factor)", group="Section",
+                )  # fmt: skip
+
+    def member(self) -> None:
+        """Reactions of the governing combinations, and the greatest shear and moment."""
+        actions = self.actions
+        if not actions.strength:
+            return
+        chosen = list(actions.strength)
+        response = actions.response
+        found = extremes(response.breaks, response.moment[chosen])
+        size, at = absolute(extremes(response.breaks, response.shear[chosen]))
+        shear = largest(size, at)
+        moments = [largest(found.max, found.at_max), largest(-found.min, found.at_min)]
+        rows = dict.fromkeys([shear.row, *(m.row for m in moments if m.value > 0)])
+        for row in rows:
+            self._reactions(chosen[row])
+        self.shear(shear.at, chosen[shear.row], shear.value)
+        for peak, word in zip(moments, ("sagging", "hogging"), strict=True):
+            if peak.value > 1e-9 * max(abs(moments[0].value), abs(moments[1].value), 1e-300):
+                self._moment(peak, chosen[peak.row], word)
+
+    def _reactions(self, k: int) -> None:
+        actions, supports = self.actions, sorted(self.document.member.supports, key=lambda s: s.at)
+        name, group = actions.names[k], "Member"
+        whole = self._resultants(k, self.body.length, inclusive=True)
+        if len(supports) == 2 and not self.document.member.hinges and all(s.kind != "fixed" for s in supports):
+            first, second = supports
+            right = self.working.step(
+                f"Reaction at {second.at:g} mm, combination {name}", "R_2", REACTION,
+                {
+                    "W": (whole.force, "N"), "a": (whole.at, "mm"), "C": (whole.couple, "N*mm"),
+                    "x_1": (first.at, "mm"), "x_2": (second.at, "mm"),
+                },
+                unit="N", source=f"{STATICS}: moments about the left support", group=group,
+            )  # fmt: skip
+            self.working.step(
+                f"Reaction at {first.at:g} mm, combination {name}", "R_1", "sum(W) - R_2",
+                {"W": (whole.force, "N"), "R_2": (right, "N")}, unit="N", source=STATICS, group=group,
+            )  # fmt: skip
+            return
+        forces = actions.response.reaction_force[k]
+        given = sorted(zip((s.at for s in self.document.member.supports), forces, strict=True))
+        listed = "; ".join(f"{at:g} mm: {force:,.5g} N" for at, force in given)
+        self.working.note(
+            f"Reactions, combination {name}",
+            f"Direct stiffness method with exact fixed-end forces. {listed}. Equilibrium: the reactions sum to "
+            f"{forces.sum():,.6g} N against {whole.force.sum():,.6g} N of load.",
+            value=float(forces.sum()), unit="N", source="direct stiffness (matrix structural analysis)", group=group,
+        )  # fmt: skip
+
+    def shear(self, at: float, k: int, size: float, group: str = "Member") -> None:
+        """Shear at a governing place, from the forces on its left; each place and combination once."""
+        if (at, k) in self._shear_done:
+            return
+        self._shear_done.add((at, k))
+        left = min(self._both_sides(k, at), key=lambda side: abs(abs(side.force.sum()) - size))
+        self.working.step(
+            f"Shear at {at:.6g} mm, combination {self.actions.names[k]}", "V", SHEAR, {"F": (left.force, "N")},
+            unit="N", source=f"{STATICS} of the part to the left: reactions up, loads down", group=group,
+        )  # fmt: skip
+
+    def _moment(self, peak: Peak, k: int, word: str) -> None:
+        signed = peak.value if word == "sagging" else -peak.value
+        left = min(self._both_sides(k, peak.at), key=lambda side: abs(_moment_of(side, peak.at) - signed))
+        self.working.step(
+            f"Greatest {word} moment, at {peak.at:.6g} mm, combination {self.actions.names[k]}", "M", MOMENT,
+            {
+                "F": (left.force, "N"), "a": (left.at, "mm"), "x": (peak.at, "mm"), "C": (left.couple, "N*mm"),
+            },
+            unit="N*mm", source=f"{STATICS} of the part to the left: reactions up, loads down", group="Member",
+        )  # fmt: skip
+
+    def _both_sides(self, k: int, at: float) -> list[Resultants]:
+        return [self._left(k, at, inclusive) for inclusive in (False, True)]
+
+    def _left(self, k: int, at: float, inclusive: bool) -> Resultants:
+        """Upward forces left of a place; at the left end what stands there always counts."""
+        inclusive = inclusive or at <= 0
+        supports = self.document.member.supports
+        held = [i for i, s in enumerate(supports) if s.at < at or (inclusive and s.at == at)]
+        response, loads = self.actions.response, self._resultants(k, at, inclusive)
+        force = np.concatenate([response.reaction_force[k][held], -loads.force])
+        places = np.concatenate([[supports[i].at for i in held], loads.at])
+        couple = float(response.reaction_couple[k][held].sum()) + loads.couple
+        if not len(force):
+            return Resultants(np.zeros(1), np.zeros(1), couple)
+        return Resultants(force, places, couple)
+
+    def _resultants(self, k: int, at: float, inclusive: bool) -> Resultants:
+        forces, places, couple = [], [], 0.0
+        for factor, loads in zip(self.actions.factors[k], self.actions.case_loads, strict=True):
+            if factor == 0:
+                continue
+            for load in loads:
+                if isinstance(load, PointLoad | Couple):
+                    if not (load.at < at or (inclusive and load.at == at)):
+                        continue
+                    if isinstance(load, Couple):
+                        couple += factor * load.value
+                    else:
+                        forces.append(factor * load.value)
+                        places.append(load.at)
+                elif load.start < at:
+                    force, place = _line_resultant(load.start, load.end, load.value_start, load.value_end, at)
+                    forces.append(factor * force)
+                    places.append(place)
+        return Resultants(np.array(forces), np.array(places), couple)
+
+    def deflection(self) -> None:
+        """The greatest deflection by beam tables where they hold, else the method by name."""
+        actions = self.actions
+        if not actions.deflection:
+            return
+        chosen = list(actions.deflection)
+        size, places = absolute(extremes(actions.breaks, actions.response.deflection[chosen]))
+        peak = largest(size, places)
+        k = chosen[peak.row]
+        if self._tabulated(k):
+            self._table_steps(peak, k)
+        else:
+            self.working.note(
+                f"Greatest deflection, combination {actions.names[k]}",
+                f"The moment and shear polynomials over EI and GA, integrated exactly between the breaks; at "
+                f"{peak.at:.6g} mm, where the slope is nil or changes sign.",
+                value=peak.value, unit="mm", source="Euler-Bernoulli with Timoshenko's shear part", group="Deflection",
+            )  # fmt: skip
+
+    def _tabulated(self, k: int) -> bool:
+        """Two pins at the ends, one section, point loads and full uniform loads only."""
+        supports = self.document.member.supports
+        ends = sorted(s.at for s in supports)
+        return (
+            ends == [0.0, self.body.length]
+            and all(s.kind == "pin" for s in supports)
+            and not self.document.member.hinges
+            and len(_distinct(self.body)) == 1
+            and all(self._in_tables(load) for load in self._loads_of(k))
+        )
+
+    def _in_tables(self, load: object) -> bool:
+        if isinstance(load, Couple):
+            return load.value == 0
+        if isinstance(load, PointLoad):
+            return True
+        assert hasattr(load, "value_start")
+        return bool(load.start == 0 and load.end == self.body.length and load.value_start == load.value_end)
+
+    def _loads_of(self, k: int) -> Iterable[object]:
+        for factor, loads in zip(self.actions.factors[k], self.actions.case_loads, strict=True):
+            if factor:
+                yield from loads
+
+    def _table_steps(self, peak: Peak, k: int) -> None:
+        L, x, name = self.body.length, peak.at, self.actions.names[k]
+        section = self.body.stretches[0].section
+        EI = (section.properties.EI, "N*mm2")
+        points: list[tuple[float, float]] = []
+        uniform = 0.0
+        for factor, loads in zip(self.actions.factors[k], self.actions.case_loads, strict=True):
+            for load in loads:
+                if isinstance(load, PointLoad):
+                    points.append((factor * load.value, load.at))
+                elif not isinstance(load, Couple):
+                    uniform += factor * load.value_start
+        title, group = f"at {x:.6g} mm, combination {name}", "Deflection"
+        total = {}
+        if points:
+            P, a = (np.array(column) for column in zip(*points, strict=True))
+            right = a >= x
+            total["u_P"] = self.working.step(
+                f"Deflection from point loads {title}", "u_P", POINT_SAG,
+                {
+                    "P": (P, "N"), "b": (np.where(right, L - a, a), "mm"), "x": (np.where(right, x, L - x), "mm"),
+                    "L": (L, "mm"), "EI": EI,
+                },
+                unit="mm", source=f"{BEAM_TABLE}; b and x from the end beyond the load", group=group,
+            )  # fmt: skip
+        if uniform or not points:
+            total["u_w"] = self.working.step(
+                f"Deflection from uniform load {title}", "u_w", UNIFORM_SAG,
+                {"w": (uniform, "N/mm"), "x": (x, "mm"), "L": (L, "mm"), "EI": EI},
+                unit="mm", source=BEAM_TABLE, group=group,
+            )  # fmt: skip
+        if self.actions.shear_deformation:
+            assert section.shear_stiffness is not None
+            total["u_V"] = self.working.step(
+                f"Deflection from shear {title}", "u_V", "M/GA",
+                {"M": (_moment_of(self._left(k, x, True), x), "N*mm"), "GA": (section.shear_stiffness, "N")},
+                unit="mm", source="simple span: integral of V/GA is M/GA", group=group,
+            )  # fmt: skip
+        self.working.step(
+            f"Greatest deflection {title}", "u", " + ".join(total),
+            {key: (value, "mm") for key, value in total.items()}, unit="mm", source="superposition", group=group,
+        )  # fmt: skip
+
+
+def _line_resultant(start: float, end: float, first: float, last: float, at: float) -> tuple[float, float]:
+    """Force and centroid of the part of a line load left of a place."""
+    stop = min(end, at)
+    value = first + (last - first) * (stop - start) / (end - start)
+    force = 0.5 * (first + value) * (stop - start)
+    if first + value == 0:
+        return force, 0.5 * (start + stop)
+    return force, start + (stop - start) * (first + 2 * value) / (3 * (first + value))
+
+
+def _moment_of(left: Resultants, at: float) -> float:
+    return float((left.force * (at - left.at)).sum()) - left.couple
+
+
+def _distinct(body: Body) -> list[CrossSection]:
+    found: list[CrossSection] = []
+    for stretch in body.stretches:
+        if not any(stretch.section is section for section in found):
+            found.append(stretch.section)
+    return found
+
+
+def _extent(body: Body, section: CrossSection) -> str:
+    return ", ".join(f"{s.start:g} to {s.end:g} mm" for s in body.stretches if s.section is section)
