@@ -114,7 +114,7 @@ def _flow(site: Site, body: Body, breaks: NDArray[np.float64], shear: NDArray[np
     rate = np.zeros(len(middles))
     for stretch in body.stretches:
         flow = stretch.section.flows.get(site.index)
-        if flow is not None and flow.split is not None:
+        if flow is not None and flow.share is not None:
             inside = (middles > stretch.start) & (middles < stretch.end)
             rate[inside] = abs(flow.share) / stretch.section.properties.EI
     return _band(shear * rate[:, None])

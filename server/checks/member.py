@@ -5,6 +5,8 @@ from __future__ import annotations
 from collections.abc import Sequence
 from dataclasses import dataclass
 
+from pydantic import BaseModel
+
 from server import ENGINE, documents
 from server.checks import statics as hand
 from server.checks.actions import Actions, act, envelope, extremes
@@ -119,7 +121,14 @@ def _judge(
     scanned = scan(body, actions)
     joints = claim_joints(body, scanned, judge)
     pieces = claim_pieces(body, scanned, judge, upper_stiffness=upper_stiffness)
-    weighed = iter(judge.weigh([claim for check in (*joints, *pieces) for claim in check.claims]))
+    weighed = iter(
+        judge.weigh(
+            [
+                *(claim for joint in joints for claim in joint.claims),
+                *(claim for piece in pieces for claim in piece.claims),
+            ]
+        )
+    )
     for joint in joints:
         write_joint(joint, [next(weighed) for _ in joint.claims], body, judge, statics)
     for piece in pieces:
@@ -235,5 +244,6 @@ def _values_used(document: documents.MemberDocument, body: Body) -> dict[str, ob
     }
 
 
-def _dump(value: documents.Model) -> dict[str, object]:
-    return value.model_dump(by_alias=True, exclude_none=True, mode="json")
+def _dump(value: BaseModel) -> dict[str, object]:
+    dumped: dict[str, object] = value.model_dump(by_alias=True, exclude_none=True, mode="json")
+    return dumped

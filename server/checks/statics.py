@@ -15,8 +15,9 @@ from numpy.typing import NDArray
 from server import documents
 from server.checks.actions import GRAVITY, Actions, Peak, absolute, extremes, largest
 from server.checks.crosssection import Body, CrossSection
-from server.mechanics.beam import Couple, PointLoad
+from server.mechanics.beam import Couple, LineLoad, Load, PointLoad
 from server.working import Working
+from server.working.record import Given
 
 STATICS = "equilibrium"
 REACTION = "(sum(W*(a - x_1)) - C)/(x_2 - x_1)"
@@ -72,7 +73,7 @@ class Statics:
             extent = "" if len(distinct) == 1 else f" ({_extent(self.body, section)})"
             parts = section.properties.pieces
             E = np.array([p.E for p in section.pieces])
-            values: dict[str, object] = {
+            values: dict[str, Given] = {
                 "E": (E, "MPa"),
                 "A": (parts.area, "mm2"),
                 "u": (parts.centroid[:, 1], "mm"),
@@ -232,15 +233,12 @@ class Statics:
             and all(self._in_tables(load) for load in self._loads_of(k))
         )
 
-    def _in_tables(self, load: object) -> bool:
-        if isinstance(load, Couple):
-            return load.value == 0
-        if isinstance(load, PointLoad):
-            return True
-        assert hasattr(load, "value_start")
-        return bool(load.start == 0 and load.end == self.body.length and load.value_start == load.value_end)
+    def _in_tables(self, load: Load) -> bool:
+        if isinstance(load, LineLoad):
+            return load.start == 0 and load.end == self.body.length and load.value_start == load.value_end
+        return isinstance(load, PointLoad) or load.value == 0
 
-    def _loads_of(self, k: int) -> Iterable[object]:
+    def _loads_of(self, k: int) -> Iterable[Load]:
         for factor, loads in zip(self.actions.factors[k], self.actions.case_loads, strict=True):
             if factor:
                 yield from loads
