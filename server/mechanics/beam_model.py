@@ -9,6 +9,7 @@ from __future__ import annotations
 import math
 from collections.abc import Sequence
 from dataclasses import dataclass
+from itertools import pairwise
 from typing import Literal
 
 from server.errors import InputError
@@ -165,10 +166,11 @@ class Beam:
                 _check_spring(f"supports[{number}].stiffness", support.stiffness)
             elif support.kind not in ("pin", "fixed"):
                 raise InputError(
-                    f"supports[{number}].kind", f'a support of kind "{support.kind}"; choose "pin", "fixed" or "spring".'
+                    f"supports[{number}].kind",
+                    f'a support of kind "{support.kind}"; choose "pin", "fixed" or "spring".',
                 )
         order = sorted(range(len(self.supports)), key=lambda number: self.supports[number].at)
-        for left, right in zip(order, order[1:], strict=False):
+        for left, right in pairwise(order):
             if self.supports[right].at - self.supports[left].at <= self.same_place:
                 raise InputError(
                     f"supports[{max(left, right)}].at",
@@ -212,7 +214,9 @@ class Beam:
             if not (math.isfinite(stretch.EI) and stretch.EI > 0):
                 raise InputError(f"{field}.EI", f"EI is {stretch.EI:g} N*mm2; enter a number greater than 0 N*mm2.")
             if not stretch.GA > 0:
-                raise InputError(f"{field}.GA", f"GA is {stretch.GA:g} N; enter a number greater than 0 N, or infinity.")
+                raise InputError(
+                    f"{field}.GA", f"GA is {stretch.GA:g} N; enter a number greater than 0 N, or infinity."
+                )
             reached = stretch.end
         if not abs(reached - self.length) <= self.same_place:
             raise InputError("stretches", f"the stretches end at {reached:g} mm; they must reach {self.length:g} mm.")
@@ -255,7 +259,7 @@ def span_ends(beam: Beam) -> list[tuple[float, float, Literal["span", "overhang"
         return ends
     if places[0] > beam.same_place:
         ends.append((0.0, places[0], "overhang"))
-    ends.extend((left, right, "span") for left, right in zip(places, places[1:], strict=False))
+    ends.extend((left, right, "span") for left, right in pairwise(places))
     if beam.length - places[-1] > beam.same_place:
         ends.append((places[-1], beam.length, "overhang"))
     return ends

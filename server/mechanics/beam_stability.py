@@ -36,7 +36,7 @@ def require_stable(beam: Beam) -> None:
 
     References
     ----------
-    .. [1] S. P. Timoshenko and D. H. Young, "Theory of Structures", 2nd ed. (1965), chapter 2 (rigid bodies and hinges).
+    .. [1] S. P. Timoshenko and D. H. Young, "Theory of Structures", 2nd ed. (1965), chapter 2.
     """
     supports = beam.supports
     if not supports:
@@ -81,5 +81,6 @@ def _explanation(beam: Beam, moving: list[tuple[float, float]]) -> str:
     parts = " and ".join(f"from {left:g} to {right:g} mm" for left, right in moving)
     hinges = ", ".join(f"{hinge:g}" for hinge in touched)
     return (
-        f"the part {parts} can move freely" if len(moving) == 1 else f"the parts {parts} can move freely"
-    ) + f" because of the hinge{'s' if len(touched) > 1 else ''} at {hinges} mm; add a support there or leave a hinge out."
+        f"the part{'s' if len(moving) > 1 else ''} {parts} can move freely because of the"
+        f" hinge{'s' if len(touched) > 1 else ''} at {hinges} mm; add a support there or leave a hinge out."
+    )
