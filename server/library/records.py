@@ -203,7 +203,8 @@ def search(
     if status:
         conditions.append(or_(RevisionRow.status == status, _in_force(RevisionRow.status) == status))
     terms = storage.search_terms(text)
-    if text.strip() and terms is None:
+    unknown = (group and group not in GROUPS) or (status and status not in STATUSES)
+    if unknown or (text.strip() and terms is None):
         return Found((), 0)
     order: list[Any] = [RecordRow.key]
     if terms is not None:
