@@ -84,6 +84,11 @@ class Group:
     limit: int
     path: str
 
+    @property
+    def has_more(self) -> bool:
+        """Whether some of its boxes are seldom needed."""
+        return any(box.more for box in self.boxes)
+
     def box(self, name: str) -> Box:
         """Return the box called ``name``."""
         return next(box for box in self.boxes if box.name == name)
@@ -339,9 +344,12 @@ SINGLES: dict[str, Box] = {
     # boxes that stand once on the page, by their field name
     box.name: box
     for box in (
-        Box("title", "What is it?", path="title"),
+        Box("mark", "Mark", hint="as on the drawing, such as B1"),
+        Box("title", "What it is", path="title"),
         Box("note", "Note", path="note", wide=True),
-        Box("display", "Units of the sheet", path="display", choices=(("SI", "SI"), ("US", "US customary"))),
+        Box("display", "Units shown", path="display", choices=(("SI", "SI"), ("US", "US customary"))),
+        Box("made_by", "Prepared by"),
+        Box("reason", "Reason for the change", hint="printed with the new revision"),
         Box("span", "Span", "position", path="member.length"),
         Box("load", "Load, uniform over the whole length", "line_load"),
         Box("load_case", "Case of that load"),

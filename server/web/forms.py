@@ -16,11 +16,13 @@ from server.errors import Fault
 from server.web import form_fill
 from server.web.form_fields import GROUPS, LOAD_UNITS, SINGLES, UNITS, VALUE_GROUPS, Group
 
-_FIELD = re.compile(r"(\w+)\[(\d{1,4})\]\.(\w+)")
+FIELD = re.compile(r"(\w+)\[(\d{1,4})\]\.(\w+)")
 _BARE = re.compile(r"[+\-−]?\s*[\d.,][\d\s.,/\-]*(?:[eE][+\-]?\d+)?")
 _LONGEST = 4000
 _FORMAT = {"format": "bondwright/1", "kind": "member"}
 SIMPLE_CASE = "imposed"
+BESIDE = {"mark": "mark", "made_by": "made_by", "reason": "reason"}
+"""Boxes whose text stands beside the document, by the name under which a refusal names them."""
 
 Row = dict[str, str]
 
@@ -91,11 +93,20 @@ def with_unit(text: str, unit: str, system: str) -> str:
     return text
 
 
+def is_box(name: str) -> bool:
+    """Say whether a name is that of one of the form's boxes; others come from nobody's form."""
+    match = FIELD.fullmatch(name)
+    if match is None:
+        return name in SINGLES
+    group = GROUPS.get(match[1])
+    return group is not None and any(box.name == match[3] for box in group.boxes)
+
+
 def rows(values: Mapping[str, str], group: Group) -> dict[int, Row]:
     """Return a group's rows by their index in the form, blank ones included."""
     found: dict[int, Row] = {}
     for name, text in values.items():
-        match = _FIELD.fullmatch(name)
+        match = FIELD.fullmatch(name)
         if match and match[1] == group.name:
             found.setdefault(int(match[2]), {})[match[3]] = text
     return dict(sorted(found.items()))
@@ -231,9 +242,9 @@ def _piece(row: Row, paths: Mapping[str, str], system: str, reading: Reading) ->
         if not text or box.name in ("name", "shape", "across", "up"):
             continue
         if box.name == "points":
-            piece["points"] = _points(text, system, paths["points"], reading)
+            piece["points"] = points(text, system, paths["points"], reading)
         elif box.name == "holes":
-            piece["holes"] = [_points(hole, system, paths["holes"], reading) for hole in text.split("|")]
+            piece["holes"] = [points(hole, system, paths["holes"], reading) for hole in text.split("|")]
         else:
             piece[box.name] = with_unit(text, box.unit, system)
     if row.get("across") or row.get("up"):
@@ -253,7 +264,7 @@ def _joint(index: int, row: Row, number: int, system: str, reading: Reading) -> 
         if not text or box.name in ("first", "second"):
             continue
         if box.name == "spacing" and ":" in text:
-            joint["spacing"] = _schedule(text, system, paths["spacing"], reading)
+            joint["spacing"] = schedule(text, system, paths["spacing"], reading)
         elif box.whole:
             joint.update(_whole(box.name, row))
         else:
@@ -325,7 +336,7 @@ def _load(row: Row, index: int, system: str, reading: Reading) -> dict[str, obje
     if row.get("axles"):
         load["axles"] = [
             [with_unit(offset, "position", system), with_unit(force, "force", system)]
-            for offset, force in _couples(row["axles"], f"loads[{index}].axles", reading)
+            for offset, force in couples(row["axles"], f"loads[{index}].axles", reading)
         ]
     return load
 
@@ -458,7 +469,7 @@ def _pairs(text: str, box: str, reading: Reading) -> dict[str, object]:
     return found
 
 
-def _couples(text: str, box: str, reading: Reading) -> list[tuple[str, str]]:
+def couples(text: str, box: str, reading: Reading) -> list[tuple[str, str]]:
     """Read ``0, 3 kN; 1.2 m, 3 kN`` into couples of texts."""
     found = []
     for part in re.split(r"[;\n]", text):
@@ -470,11 +481,11 @@ def _couples(text: str, box: str, reading: Reading) -> list[tuple[str, str]]:
     return found
 
 
-def _points(text: str, system: str, box: str, reading: Reading) -> list[list[str]]:
-    return [[with_unit(end, "size", system) for end in point] for point in _couples(text, box, reading)]
+def points(text: str, system: str, box: str, reading: Reading) -> list[list[str]]:
+    return [[with_unit(end, "size", system) for end in point] for point in couples(text, box, reading)]
 
 
-def _schedule(text: str, system: str, box: str, reading: Reading) -> list[dict[str, object]]:
+def schedule(text: str, system: str, box: str, reading: Reading) -> list[dict[str, object]]:
     """Read ``0 to 1 m: 75 mm; 1 m to 3 m: 150 mm`` into stretches of spacing."""
     found: list[dict[str, object]] = []
     for part in re.split(r"[;\n]", text):

@@ -280,7 +280,7 @@ def test_every_box_reaches_the_document():
     raw, _ = forms.read(FULL)
     optional = {"layout", "units", "display"}
     for name in FULL:
-        if name in optional or name.endswith(".kind") and name.startswith(("loads", "supports")):
+        if name in optional or (name.endswith(".kind") and name.startswith(("loads", "supports"))):
             continue
         changed, faults = forms.read({**FULL, name: "no such" if FULL[name] == "" else ""})
         default = FULL[name] in ("rectangle", "auto", "yes", "imposed")

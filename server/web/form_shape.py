@@ -1,0 +1,82 @@
+"""What the form's buttons do to its boxes: rows added and removed, a layout started, boxes marked in other units."""
+
+from __future__ import annotations
+
+import re
+from collections.abc import Iterable, Mapping
+
+from server.web import layouts
+from server.web.form_fields import GROUPS, LOAD_UNITS, SINGLES, Group
+from server.web.forms import FIELD, Reading, couples, points, rows, schedule, system_of, with_unit
+
+
+def shape(values: Mapping[str, str]) -> tuple[dict[str, str], str]:
+    """Do what a button of the form asked for: ``(values, the group whose rows changed)``.
+
+    ``add`` names a group, ``remove`` a row such as ``pieces[2]``, ``start`` a layout, ``units_of_boxes`` marks the
+    boxes in the units chosen. Numbers already typed keep the unit they were typed in.
+    """
+    kept = {name: text for name, text in values.items() if name not in ("add", "remove", "start", "units_of_boxes")}
+    if values.get("add") in GROUPS:
+        return _with_a_row(kept, GROUPS[values["add"]]), values["add"]
+    if removed := re.fullmatch(r"(\w+)\[\d{1,4}\]", values.get("remove", "")):
+        return {name: text for name, text in kept.items() if not name.startswith(removed[0] + ".")}, removed[1]
+    if values.get("start") in layouts.LAYOUTS:
+        return _started(kept, values["start"]), ""
+    if values.get("units_of_boxes"):
+        return in_units(kept, "US" if kept.get("display") == "US" else "SI"), "display"
+    return kept, ""
+
+
+def _with_a_row(values: dict[str, str], group: Group) -> dict[str, str]:
+    taken = rows(values, group)
+    if len(taken) >= group.limit:
+        return values
+    # The first view always asks for one adhesive, so its row is there before anything is typed into it.
+    last = max(taken, default=0 if group.name == "adhesives" else -1)
+    return values | {f"{group.name}[{last + 1}].{group.boxes[0].name}": ""}
+
+
+def _started(values: Mapping[str, str], layout: str) -> dict[str, str]:
+    """Start from a layout: pieces, joints and materials are new, all else stays as typed."""
+    replaced = ("pieces[", "joints[", "materials[", "layout")
+    kept = {name: text for name, text in values.items() if not name.startswith(replaced)}
+    fresh = layouts.start(layout, system_of(values))
+    return kept | {name: text for name, text in fresh.items() if name.startswith(replaced) or name not in kept}
+
+
+def in_units(values: Mapping[str, str], system: str) -> dict[str, str]:
+    """Mark the boxes in another system; a bare number keeps the unit it was typed in."""
+    now = system_of(values)
+    if now == system:
+        return dict(values)
+    said = {name: _with_units(name, text, values, now) for name, text in values.items() if text.strip()}
+    return {**values, **said, "units": system}
+
+
+def _with_units(name: str, text: str, values: Mapping[str, str], now: str) -> str:
+    """Return one box's text with the unit of every bare number said."""
+    match = FIELD.fullmatch(name)
+    if match is None or match[1] not in GROUPS:
+        return with_unit(text, SINGLES[name].unit, now) if name in SINGLES else text
+    box = next((each for each in GROUPS[match[1]].boxes if each.name == match[3]), None)
+    if box is None:
+        return text
+    trial = Reading()
+    if box.name in ("points", "holes"):
+        said = " | ".join(_listed(points(part, now, name, trial)) for part in text.split("|"))
+    elif box.name == "axles":
+        said = _listed(
+            [with_unit(a, "position", now), with_unit(f, "force", now)] for a, f in couples(text, name, trial)
+        )
+    elif box.name == "spacing" and ":" in text:
+        said = "; ".join(f"{z['from']} to {z['to']}: {z['spacing']}" for z in schedule(text, now, name, trial))
+    elif box.unit == "value":
+        said = with_unit(text, LOAD_UNITS.get(values.get(f"loads[{match[2]}].kind") or "line", ""), now)
+    else:
+        said = with_unit(text, box.unit, now)
+    return text if trial.faults else said
+
+
+def _listed(found: Iterable[list[str]]) -> str:
+    return "; ".join(", ".join(ends) for ends in found)

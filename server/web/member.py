@@ -1,0 +1,240 @@
+"""The check page of a built-up member: start, live preview, rows, save."""
+
+from __future__ import annotations
+
+from collections.abc import Iterable, Mapping
+from dataclasses import dataclass, replace
+from typing import Any
+
+from fastapi import APIRouter, Request
+from fastapi.responses import Response
+from markupsafe import Markup
+
+from server import checks, documents, jobs, library, working
+from server.errors import DocumentError, Fault, InputError, JointError
+from server.storage import Session
+from server.web import form_shape, form_words, forms, layouts
+from server.web.errors import faults_of
+from server.web.form_fields import VALUE_GROUPS
+from server.web.form_view import Form
+from server.web.inputs import DbSession, FormValues, Id, whole
+from server.web.pages import page, path_for, see
+from server.web.panel import panel
+
+router = APIRouter(include_in_schema=False)
+
+_RECORD_GROUPS = {"adhesives": "bonds", "fasteners": "fasteners", "materials": "materials"}
+_MOST_RECORDS = 500
+
+
+@dataclass(frozen=True)
+class Judged:
+    """One form, read and checked: a result, or what stands in its way."""
+
+    raw: Mapping[str, Any]
+    result: Mapping[str, Any] | None
+    messages: Mapping[str, str]
+    on_top: tuple[str, ...] = ()
+    waiting: tuple[str, ...] = ()
+
+
+def judge(session: Session, values: Mapping[str, str], *, patient: bool = True) -> Judged:
+    """Read, fill and check the form as typed; nothing is raised.
+
+    While ``patient``, a form whose span or loads are not typed yet is waited for instead of being found at fault.
+    """
+    reading = forms.reading_of(values)
+    waiting = tuple(_still_to_enter(values, reading.raw)) if patient else ()
+    if waiting:
+        return Judged(reading.raw, None, {}, waiting=waiting)
+    try:
+        result = checks.run(library.resolve(session, documents.read(reading.raw)))
+        faults: Iterable[Fault] = ()
+    except JointError as error:
+        result, faults = {}, faults_of(error)
+    beside, on_top = forms.place(faults, reading.paths)
+    messages = {**beside, **reading.faults}
+    return Judged(reading.raw, None if messages or on_top else result, messages, tuple(on_top))
+
+
+def _still_to_enter(values: Mapping[str, str], raw: Mapping[str, Any]) -> Iterable[str]:
+    if not values.get("span", "").strip():
+        yield "the span"
+    if not raw["loads"]:
+        yield "a load"
+    if not raw["section"]["pieces"]:
+        yield "the pieces"
+
+
+@router.get("/jobs/{job_id}/checks/new", name="new_check")
+def new_check(request: Request, session: DbSession, job_id: Id, layout: str = "box") -> Response:
+    """Show the form of a new check, started from a layout."""
+    job = jobs.get(session, job_id)
+    values = layouts.start(layout if layout in layouts.LAYOUTS else "empty", job.display)
+    return _page(request, session, job, values, judge(session, values))
+
+
+@router.post("/jobs/{job_id}/checks/preview", name="preview_check")
+def preview_check(request: Request, session: DbSession, values: FormValues, job_id: Id) -> Response:
+    """Answer a keystroke: the result, and the messages of the boxes concerned."""
+    typed = dict(values)
+    judged = judge(session, typed)
+    form = _form(request, typed, judged, job_id)
+    return page(request, "check/_preview.html", form=form, lazily=True, swap=True, **_shown(judged, typed))
+
+
+@router.post("/jobs/{job_id}/checks/working", name="preview_working")
+def preview_working(request: Request, session: DbSession, values: FormValues, job_id: Id) -> Response:
+    """Return the working of the form as typed, for when somebody opens it."""
+    judged = judge(session, dict(values))
+    steps = working_of(judged.result) if judged.result else []
+    return page(request, "check/_working.html", working=steps)
+
+
+@router.post("/jobs/{job_id}/checks/form", name="shape_check")
+def shape_check(request: Request, session: DbSession, values: FormValues, job_id: Id, check: str = "") -> Response:
+    """Do what a button of the form asks (rows, layout, units, calculate) and give the page back as typed."""
+    shaped, opened = form_shape.shape(dict(values))
+    return _page(
+        request, session, jobs.get(session, job_id), shaped, judge(session, shaped), whole(check) or 0, opened=opened
+    )
+
+
+@router.post("/jobs/{job_id}/checks", name="save_check")
+def save_check(request: Request, session: DbSession, values: FormValues, job_id: Id) -> Response:
+    """Save a new check in the job, or give the form back as typed."""
+    return _save(request, session, dict(values), job_id)
+
+
+@router.get("/checks/{check_id}/edit", name="edit_check")
+def edit_check(request: Request, session: DbSession, check_id: Id, revision: str = "") -> Response:
+    """Show the form filled with a revision of a check, the newest unless one is named."""
+    saved = jobs.revision_of(session, check_id, whole(revision))
+    values = forms.write(saved.document) | {"mark": saved.mark}
+    job = jobs.get(session, saved.job_id)
+    return _page(request, session, job, values, judge(session, values, patient=False), check_id)
+
+
+@router.post("/checks/{check_id}/revisions", name="revise_check")
+def revise_check(request: Request, session: DbSession, values: FormValues, check_id: Id) -> Response:
+    """Save the form as the next revision of a check, or give it back as typed."""
+    return _save(request, session, dict(values), jobs.revision_of(session, check_id).job_id, check_id)
+
+
+def _save(request: Request, session: Session, values: dict[str, str], job_id: int, check_id: int = 0) -> Response:
+    """Save what the form says; refused, the page comes back with the form as typed and its messages (422)."""
+    job = jobs.get(session, job_id)
+    reading = forms.reading_of(values)
+    messages = dict(reading.faults)
+    on_top: list[str] = []
+    if check_id and not values.get("reason", "").strip():
+        messages["reason"] = (
+            "The reason is empty; say in a few words what changed, such as “customer asked for 150 psf”."
+        )
+    if not messages:
+        try:
+            saved = jobs.save(
+                session,
+                job_id=job_id,
+                raw=reading.raw,
+                check_id=check_id or None,
+                mark=values.get("mark") or None,
+                made_by=values.get("made_by", ""),
+                reason=values.get("reason", ""),
+            )
+            return see(request, "show_revision", check_id=saved.check_id, revision=saved.revision)
+        except (DocumentError, InputError) as error:
+            messages, on_top = forms.place(faults_of(error), reading.paths | forms.BESIDE)
+    judged = judge(session, values, patient=False)
+    judged = replace(
+        judged, result=None, messages={**judged.messages, **messages}, on_top=tuple(on_top) or judged.on_top
+    )
+    return _page(request, session, job, values, judged, check_id, status=422)
+
+
+def _page(
+    request: Request,
+    session: Session,
+    job: jobs.Job,
+    values: Mapping[str, str],
+    judged: Judged,
+    check_id: int = 0,
+    *,
+    status: int = 200,
+    opened: str = "",
+) -> Response:
+    form = _form(request, values, judged, job.id, check_id)
+    return page(
+        request,
+        "check/edit.html",
+        status=status,
+        job=job,
+        check=jobs.revision_of(session, check_id) if check_id else None,
+        form=replace(form, library=_library(session), opened=opened),
+        layouts=layouts.LAYOUTS,
+        refused=status == 422,
+        lazily=True,
+        swap=False,
+        working=working_of(judged.result) if judged.result else [],
+        **_shown(judged, values),
+    )
+
+
+def _form(request: Request, values: Mapping[str, str], judged: Judged, job_id: int, check_id: int = 0) -> Form:
+    of_job = {name: path_for(request, name, job_id=job_id) for name in _JOB_ROUTES}
+    leave, save = path_for(request, "show_job", job_id=job_id), of_job["save_check"]
+    if check_id:
+        leave = path_for(request, "show_check", check_id=check_id)
+        save = path_for(request, "revise_check", check_id=check_id)
+    return Form(
+        values=values,
+        messages=judged.messages,
+        raw=judged.raw,
+        preview_url=of_job["preview_check"],
+        shape_url=of_job["shape_check"] + (f"?check={check_id}" if check_id else ""),
+        working_url=of_job["preview_working"],
+        save_url=save,
+        leave_url=leave,
+        revising=bool(check_id),
+    )
+
+
+_JOB_ROUTES = ("preview_check", "shape_check", "preview_working", "save_check")
+
+
+def _shown(judged: Judged, values: Mapping[str, str]) -> dict[str, Any]:
+    """What the result panel asks for."""
+    faults = [(name, form_words.label_of(name, values), text) for name, text in judged.messages.items()]
+    faults += [("", "", text) for text in judged.on_top]
+    display = "US" if judged.raw.get("display") == "US" else "SI"
+    found = panel(judged.result, display) if judged.result else None
+    return {"panel": found, "waiting": judged.waiting, "faults_on_page": faults}
+
+
+def _library(session: Session) -> dict[str, tuple[tuple[str, str], ...]]:
+    """Return the records to choose from, by group of the form."""
+    found = {
+        name: library.search(session, group=_RECORD_GROUPS[name], limit=_MOST_RECORDS).records for name in VALUE_GROUPS
+    }
+    return {
+        name: tuple(
+            (record.key, f"{record.key}  {record.name}, rev {record.revision} {record.status}") for record in records
+        )
+        for name, records in found.items()
+    }
+
+
+def working_of(result: Mapping[str, Any]) -> list[tuple[str, list[dict[str, object]]]]:
+    """Return the stored steps by their groups, formulas as MathML in the units shown."""
+    display = "US" if result.get("display") == "US" else "SI"
+    groups: dict[str, list[dict[str, object]]] = {}
+    for step in result["steps"]:
+        groups.setdefault(step.get("group") or "Check", []).append(
+            {
+                "title": step["title"],
+                "math": Markup(working.mathml(step, display)),  # noqa: S704 -- our own printer escapes every text
+                "note": step.get("note", ""),
+                "source": step["source"],
+            }
+        )
+    return list(groups.items())

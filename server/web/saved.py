@@ -1,0 +1,149 @@
+"""Saved checks: shown as stored, printed from the kept bytes, run again, compared. Nothing here recalculates."""
+
+from __future__ import annotations
+
+import json
+import re
+from collections.abc import Iterable, Mapping
+from dataclasses import dataclass
+from typing import Any
+
+from fastapi import APIRouter, Request
+from fastapi.responses import Response
+
+from server import jobs, library, sheets
+from server.jobs import Moved, SavedRevision
+from server.storage import Session
+from server.web.inputs import DbSession, FormValues, Id
+from server.web.member import working_of
+from server.web.pages import page, see
+from server.web.panel import panel
+
+router = APIRouter(prefix="/checks", include_in_schema=False)
+
+_ABOUT = (("result", "What was found"), ("values", "Values used"), ("given", "What was given"))
+_ONE = {"materials": "Material", "adhesives": "Adhesive", "fasteners": "Fastener"}
+
+
+@dataclass(frozen=True)
+class ValueUsed:
+    """One value that a saved check stands on; ``today`` says what the library holds now, where that differs."""
+
+    what: str
+    name: str
+    record: str
+    revision: int | None
+    status: str
+    source: str
+    today: str
+
+
+@router.get("/{check_id}", name="show_check")
+def show_check(request: Request, session: DbSession, check_id: Id) -> Response:
+    """Show the newest revision of a check."""
+    return _page(request, session, jobs.revision_of(session, check_id))
+
+
+@router.get("/{check_id}/revisions/{revision}", name="show_revision")
+def show_revision(request: Request, session: DbSession, check_id: Id, revision: Id) -> Response:
+    """Show one saved revision as it was stored."""
+    return _page(request, session, jobs.revision_of(session, check_id, revision))
+
+
+@router.get("/{check_id}/revisions/{revision}/sheet.pdf", name="check_pdf")
+def check_pdf(session: DbSession, check_id: Id, revision: Id) -> Response:
+    """Hand out the sheet: the bytes drawn when the revision was saved."""
+    saved = jobs.revision_of(session, check_id, revision)
+    headers = {"Content-Disposition": f'inline; filename="{file_name(saved)}.pdf"'}
+    return Response(jobs.pdf_bytes(session, saved.id), media_type="application/pdf", headers=headers)
+
+
+@router.get("/{check_id}/revisions/{revision}/document.json", name="check_document")
+def check_document(session: DbSession, check_id: Id, revision: Id) -> Response:
+    """Hand out the check document as typed, for the command line or another program."""
+    saved = jobs.revision_of(session, check_id, revision)
+    headers = {"Content-Disposition": f'attachment; filename="{file_name(saved)}.json"'}
+    text = json.dumps(saved.document, indent=2, ensure_ascii=False)
+    return Response(text.encode(), media_type="application/json", headers=headers)
+
+
+@router.post("/{check_id}/revisions/{revision}/again", name="run_again")
+def run_again(request: Request, session: DbSession, values: FormValues, check_id: Id, revision: Id) -> Response:
+    """Run a revision again with today's values: a new revision, then what moved."""
+    old = jobs.revision_of(session, check_id, revision)
+    new = jobs.run_again(session, old.id, made_by=values.get("made_by", ""))
+    return see(request, "compare_revisions", check_id=check_id, old=old.revision, new=new.revision)
+
+
+@router.get("/{check_id}/compare/{old}/{new}", name="compare_revisions")
+def compare_revisions(request: Request, session: DbSession, check_id: Id, old: Id, new: Id) -> Response:
+    """Show what moved between two revisions of a check."""
+    before, after = (jobs.revision_of(session, check_id, n) for n in (old, new))
+    moved = jobs.moved(before, after)
+    parts = [(title, [each for each in moved if each.about == about]) for about, title in _ABOUT]
+    return page(
+        request,
+        "check/compare.html",
+        job=jobs.get(session, after.job_id),
+        old=before,
+        new=after,
+        parts=[(title, found) for title, found in parts if found],
+        flipped=_flipped(moved),
+    )
+
+
+def _flipped(moved: Iterable[Moved]) -> Moved | None:
+    return next((each for each in moved if each.what == "verdict"), None)
+
+
+def _page(request: Request, session: Session, saved: SavedRevision) -> Response:
+    display = str(saved.heading["display"])
+    used = list(_values_used(session, saved.values_used))
+    return page(
+        request,
+        "check/saved.html",
+        job=jobs.get(session, saved.job_id),
+        saved=saved,
+        revisions=jobs.revisions_of(session, saved.check_id),
+        given=sheets.given(saved.document, saved.values_used, display),
+        used=used,
+        notices=[value for value in used if value.today],
+        panel=panel(saved.result, display),
+        waiting=(),
+        faults_on_page=(),
+        swap=False,
+        working=working_of({**saved.result, "display": display}),
+    )
+
+
+def _values_used(session: Session, values_used: Mapping[str, Any]) -> Iterable[ValueUsed]:
+    for section, entries in values_used.items():
+        for name, entry in entries.items():
+            yield ValueUsed(
+                what=_ONE.get(section, section),
+                name=name,
+                record=str(entry.get("record") or ""),
+                revision=entry.get("revision"),
+                status=str(entry.get("status") or ""),
+                source=str(entry.get("source") or ""),
+                today=_today(session, entry),
+            )
+
+
+def _today(session: Session, entry: Mapping[str, Any]) -> str:
+    """Say what became of a record since; '' where the sheet's revision still holds, or none was used."""
+    key, used = entry.get("record"), entry.get("revision")
+    if key is None or used is None:
+        return ""
+    current = library.in_force(session, str(key))
+    if current is None or current.revision <= used:
+        return ""
+    state = "" if current.status == "approved" else f" and {current.status}"
+    now = f"Library value {key} is now rev {current.revision}{state}."
+    return f"{now} This sheet used rev {used} and still prints rev {used}."
+
+
+def file_name(saved: SavedRevision) -> str:
+    """Return a file name that says job, mark and revision in letters every system takes."""
+    words = f"{saved.heading['job_number']} {saved.mark} rev {saved.revision}"
+    return re.sub(r"[^A-Za-z0-9._]+", "-", words).strip("-.")
