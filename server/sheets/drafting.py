@@ -13,12 +13,12 @@ from fractions import Fraction
 from functools import lru_cache
 from itertools import groupby
 
+from server import units
 from server.sheets.svg import CAP, FONT_SIZE, Drawing, spread, text_width
+from server.working import readable, readable_unit
 
 INCH = 25.4
 FOOT = 304.8
-POUND = 4.4482216152605
-
 MINUS = "−"
 
 
@@ -30,7 +30,7 @@ class Scale:
     factor: float
 
     def text(self, value: float) -> str:
-        """The number alone."""
+        """The number alone, four digits."""
         return number(value * self.factor)
 
     def full(self, value: float) -> str:
@@ -38,48 +38,43 @@ class Scale:
         return f"{number(value * self.factor)} {self.unit}"
 
 
-# (upper limit in result units, unit, factor) in rising order; the last one has no limit.
-_SI: dict[str, tuple[tuple[float, str, float], ...]] = {
-    "force": ((1e3, "N", 1.0), (float("inf"), "kN", 1e-3)),
-    "couple": ((1e5, "N·m", 1e-3), (float("inf"), "kN·m", 1e-6)),
-    "line_load": ((0.1, "N/m", 1e3), (float("inf"), "kN/m", 1.0)),
-    "flow": ((float("inf"), "N/mm", 1.0),),
-    "deflection": ((float("inf"), "mm", 1.0),),
-    "place": ((600.0, "mm", 1.0), (float("inf"), "m", 1e-3)),
-}
-_US: dict[str, tuple[tuple[float, str, float], ...]] = {
-    "force": ((2e4 * POUND, "lbf", 1 / POUND), (float("inf"), "kip", 1e-3 / POUND)),
-    "couple": ((2e4 * POUND * FOOT, "lbf·ft", 1 / (POUND * FOOT)), (float("inf"), "kip·ft", 1e-3 / (POUND * FOOT))),
-    "line_load": ((float("inf"), "lbf/ft", FOOT / POUND),),
-    "flow": ((float("inf"), "lbf/in", INCH / POUND),),
-    "deflection": ((float("inf"), "in", 1 / INCH),),
-    "place": ((2 * FOOT, "in", 1 / INCH), (float("inf"), "ft", 1 / FOOT)),
+def _consistent(stored: str) -> tuple[float, str, float]:
+    unit, factor = units.display_unit(stored, "US")
+    return float("inf"), readable_unit(unit), factor
+
+
+# (upper limit in result units, unit, factor) in rising order; the last one has no limit. The same units as in the tables.
+_SCALES: dict[str, dict[str, tuple[tuple[float, str, float], ...]]] = {
+    "SI": {
+        "force": ((1e3, "N", 1.0), (float("inf"), "kN", 1e-3)),
+        "couple": ((1e5, "N·m", 1e-3), (float("inf"), "kN·m", 1e-6)),
+        "line_load": ((0.1, "N/m", 1e3), (float("inf"), "kN/m", 1.0)),
+        "flow": ((float("inf"), "N/mm", 1.0),),
+        "deflection": ((float("inf"), "mm", 1.0),),
+        "place": ((600.0, "mm", 1.0), (float("inf"), "m", 1e-3)),
+    },
+    "US": {
+        "force": (_consistent("N"),),
+        "couple": (_consistent("N*mm"),),
+        "line_load": ((float("inf"), units.unit_of("line_load", "US"), units.scale_of("line_load", "US")),),
+        "flow": (_consistent("N/mm"),),
+        "deflection": (_consistent("mm"),),
+        "place": ((2 * FOOT, "in", 1 / INCH), (float("inf"), "ft", 1 / FOOT)),
+    },
 }
 
 
 def scale_for(kind: str, greatest: float, display: str) -> Scale:
     """The unit in which a drawing letters one kind of quantity, given its greatest absolute value."""
-    for limit, unit, factor in (_US if display == "US" else _SI)[kind]:
-        if abs(greatest) < limit:
-            return Scale(unit, factor)
-    raise AssertionError(f"no unit for {kind}")  # the last limit is infinite; NaN never reaches a drawing
+    choices = _SCALES["US" if display == "US" else "SI"][kind]
+    unit, factor = next((unit, factor) for limit, unit, factor in choices if abs(greatest) < limit)
+    return Scale(unit, factor)
 
 
 @lru_cache(maxsize=4096)
-def number(value: float, digits: int = 3) -> str:
-    """Three significant digits, whole numbers never rounded further, a real minus sign, no trailing zeros."""
-    size = abs(value)
-    if size < 1e-12:
-        return "0"
-    if size >= 10**digits:
-        text = f"{value:,.0f}".replace(",", "\u2009") if size < 1e7 else f"{value:.3g}"
-    else:
-        text = f"{value:.{digits}g}"
-        if "e" in text and size >= 1e-6:
-            text = f"{value:.7f}".rstrip("0")
-    if "." in text and "e" not in text:
-        text = text.rstrip("0").rstrip(".")
-    return text.replace("-", MINUS)
+def number(value: float, digits: int = 4) -> str:
+    """A number as the tables letter it."""
+    return "0" if abs(value) < 1e-12 else readable(value, digits)
 
 
 @lru_cache(maxsize=4096)
@@ -106,8 +101,10 @@ def inch_fraction(sixteenths: int) -> str:
 @lru_cache(maxsize=4096)
 def place_text(mm: float, display: str) -> str:
     """A place or a length along a member with its unit: 2.76 m, 850 mm, 13 ft 9-1/2 in."""
+    if abs(mm) < 1e-9:
+        return "0"
     if display != "US":
-        if abs(mm) < 600 and mm:
+        if abs(mm) < 600:
             return f"{mm:.1f}".removesuffix(".0").replace("-", MINUS) + " mm"
         return f"{mm / 1000:.3f}".rstrip("0").rstrip(".").replace("-", MINUS) + " m"
     inches = mm / INCH
@@ -149,7 +146,9 @@ def chain(
             return None
     middles = tuple((0.5 * (pixels[i] + pixels[j]), text) for i, j, text in spans)
     ticks = [pixels[0]]
-    ticks += [place for place in pixels[1:-1] if abs(place - ticks[-1]) >= 2.0 and abs(place - pixels[-1]) >= 2.0]
+    for place in pixels[1:-1]:
+        if abs(place - ticks[-1]) >= 2.0 and abs(place - pixels[-1]) >= 2.0:
+            ticks.append(place)
     return Chain((*ticks, pixels[-1]), middles)
 
 
@@ -187,9 +186,11 @@ def dimension_across(drawing: Drawing, y: float, dimensions: Chain) -> None:
         dimensions.texts,
         strict=True,
     ):
+        drop = 0.0
         if abs(x - want) > 4:
             drawing.line("thin", want, y, x, y + 6)
-        drawing.text(x, y + 5 + 2 * CAP * FONT_SIZE, text, "middle")
+            drop = 3.0
+        drawing.text(x, y + 5 + drop + 2 * CAP * FONT_SIZE, text, "middle")
 
 
 def dimension_up(drawing: Drawing, x: float, dimensions: Chain) -> None:

@@ -7,6 +7,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
+from itertools import pairwise
 from math import hypot
 from typing import Any
 
@@ -97,9 +98,8 @@ class _View:
         up = [point[1] for piece in self.pieces for point in piece["outline"]]
         self.low_a, self.high_a, self.low_u, self.high_u = min(across), max(across), min(up), max(up)
         wide, deep = self.high_a - self.low_a, self.high_u - self.low_u
-        self.levels_a, self.levels_u = _levels(self.pieces, 0), _levels(self.pieces, 1)
-        texts = [self.size(b - a) for a, b in zip(self.levels_u[:-1], self.levels_u[1:], strict=True)]
-        texts = sorted(texts, key=len)[-1:] if len(texts) > 1 else []
+        levels = list(_levels(self.pieces, 1, walls=False))
+        texts = sorted((self.size(b - a) for a, b in pairwise(levels)), key=len)[-1:] if len(levels) > 2 else []
         self.chain_room = max((text_width(f"12 × {text}") for text in texts), default=0.0)
         self.left_room = MARGIN + text_width(self.size(deep)) + 14 + (self.chain_room + 16 if texts else 0) + 30
         self.scale = min((width - self.left_room - 84) / wide, height / deep)
@@ -133,7 +133,7 @@ class _View:
             joint = joints.get(contact["id"], {}) if contact["joined"] else {}
             held = [str(limit.get("what", "")) for limit in joint.get("limits") or ()]
             fastened = bool(contact.get("fastener")) or any(what.startswith("fastener ") for what in held)
-            bonded = bool(contact.get("adhesive")) or any(what.startswith("adhesive ") for what in held)
+            bonded = bool(contact.get("bonded")) or any(what.startswith("adhesive ") for what in held)
             number = self.numbers.get(contact["id"], 0) if contact["joined"] else 0
             rows = int(contact.get("rows") or 1)
             bonded = contact["joined"] and (bonded or not fastened)
@@ -160,15 +160,31 @@ def joint_numbers(result: Mapping[str, Any]) -> dict[str, int]:
     return {name: i + 1 for i, name in enumerate(dict.fromkeys(names))}
 
 
-def _levels(pieces: Sequence[Mapping[str, Any]], axis: int) -> list[float]:
-    """Coordinates to dimension: the pieces' extents, and the corners of plain shapes; curves give their extents only."""
-    found: set[float] = set()
+def _levels(pieces: Sequence[Mapping[str, Any]], axis: int, walls: bool) -> dict[float, float]:
+    """Coordinates to dimension, each with the coordinate across it where its extension line starts (the leftmost, the lowest).
+
+    The pieces' extents, and the corners of plain shapes, with ``walls`` also those of their hollows; curves give their extents.
+    """
+    found: dict[float, float] = {}
     for piece in pieces:
-        values = [point[axis] for point in piece["outline"]]
-        found |= set(values) if len(values) <= 12 else {min(values), max(values)}
-    levels = sorted(found)
-    near = 1e-6 * (levels[-1] - levels[0])
-    return [level for i, level in enumerate(levels) if i == 0 or level - levels[i - 1] > near]
+        edge = min(point[1 - axis] for point in piece["outline"])
+        for ring in (piece["outline"], *(piece.get("holes") or ())) if walls else (piece["outline"],):
+            values = [point[axis] for point in ring]
+            ends = (min(values), max(values)) if len(values) > 12 else None
+            for point in ring:
+                level, other = point[axis], point[1 - axis] if ring is piece["outline"] else edge
+                if (ends is None or level in ends) and other < found.get(level, float("inf")):
+                    found[level] = other
+    near = 1e-6 * (max(found) - min(found))
+    kept: dict[float, float] = {}
+    last = None
+    for level in sorted(found):
+        if last is not None and level - last <= near:
+            kept[last] = min(kept[last], found[level])
+            continue
+        kept[level] = found[level]
+        last = level
+    return kept
 
 
 def _variants(contacts: Sequence[Mapping[str, Any]], pieces: Sequence[Mapping[str, Any]]) -> dict[str, int]:
@@ -227,6 +243,16 @@ def _fastener_places(mark: Mark) -> list[Point]:
     return [(x1 + (x2 - x1) * share, y1 + (y2 - y1) * share) for share in shares]
 
 
+def _along_axes(mark: Mark) -> list[Point]:
+    """Points that lettering keeps clear of: along the fasteners' axes."""
+    (x1, y1), (x2, y2) = mark.start, mark.end
+    length = hypot(x2 - x1, y2 - y1) or 1.0
+    nx, ny = (y2 - y1) / length, (x1 - x2) / length
+    return [
+        (x + nx * far, y + ny * far) for x, y in _fastener_places(mark) for far in (-AXIS, -AXIS / 2, 0, AXIS / 2, AXIS)
+    ]
+
+
 def _number_joints(view: _View, marks: Sequence[Mark], rails: dict[str, list[Label]]) -> None:
     """Choose a side for the number of each joint: the shortest way out that does not run along the joint itself."""
     middle = 0.5 * (view.top + view.bottom)
@@ -270,7 +296,7 @@ def _name_pieces(
     outside: list[tuple[Label, str]] = []
     busy = [label.anchor for rail in rails.values() for label in rail if label.anchor]
     for mark in marks:
-        busy += _fastener_places(mark)
+        busy += _along_axes(mark)
     axis = view.at(view.result["section"]["neutral_axis"])[1]
     for piece, box in zip(view.pieces, boxes, strict=True):
         name = str(piece["id"])
@@ -292,12 +318,24 @@ def _name_pieces(
             wanted = y
         else:
             anchor = (x, box.top + inset[1] if side == "top" else box.bottom - inset[1])
+            x = _clear_of(x, box, busy)
+            anchor = (x, anchor[1])
             wanted = x
         anchor = _on_material(anchor, box)
         label = Label(name, anchor, wanted)
         rails[side].append(label)
         outside.append((label, side))
     return _letters_for_crowds(view, outside, rails)
+
+
+def _clear_of(x: float, box: Box, busy: Sequence[Point]) -> float:
+    """The place along a piece, near its middle, that is farthest from dots and fasteners already there."""
+    near = [bx for bx, by in busy if box.left - 4 < bx < box.right + 4 and box.top - 14 < by < box.bottom + 14]
+    if not near:
+        return x
+    wide = box.right - box.left
+    choices = [x, x + 0.25 * min(wide, 80), x - 0.25 * min(wide, 80)]
+    return max(choices, key=lambda choice: min(min(abs(choice - bx) for bx in near), 12.0))
 
 
 def _on_material(anchor: Point, box: Box) -> Point:
@@ -410,39 +448,45 @@ def _dimensions(drawing: Drawing, view: _View, rails: dict[str, list[Label]]) ->
     """Overall and chain dimensions at the left and below, outside the rails that are used there."""
     left = min([label.box[0] for label in rails["left"]], default=view.left) - 12
     bottom = max([label.box[3] for label in rails["bottom"]], default=view.bottom) + 12
-    edge = {
-        level: min(view.at(p)[0] for piece in view.pieces for p in piece["outline"] if p[1] == level)
-        for level in view.levels_u
-    }
-    foot = {
-        level: max(view.at(p)[1] for piece in view.pieces for p in piece["outline"] if p[0] == level)
-        for level in view.levels_a
-    }
-    ups = [view.at((0, level))[1] for level in view.levels_u]
-    overs = [view.at((level, 0))[0] for level in view.levels_a]
-    texts = [view.size(b - a) for a, b in zip(view.levels_u[:-1], view.levels_u[1:], strict=True)]
-    rows = drafting.chain(view.levels_u, ups, texts, FONT_SIZE) if len(texts) > 1 else None
-    overall_x = left
+    starts, rows = _chain(view, 1)
+    overall = left
     if rows:
         drafting.dimension_up(drawing, left, rows)
-        for level, y in zip(view.levels_u, ups, strict=True):
-            drawing.line("thin", edge[level] - 3, y, left - 3, y)
-        overall_x = left - max(text_width(text) for _, text in rows.texts) - 18
-    drafting.dimension_up(drawing, overall_x, _overall(ups, view.size(view.high_u - view.low_u)))
-    for y, level in ((ups[0], view.levels_u[0]), (ups[-1], view.levels_u[-1])):
-        drawing.line("thin", left - 3 if rows else edge[level] - 3, y, overall_x - 3, y)
-    texts = [view.size(b - a) for a, b in zip(view.levels_a[:-1], view.levels_a[1:], strict=True)]
-    columns = drafting.chain(view.levels_a, overs, texts, None) if len(texts) > 1 else None
-    overall_y = bottom
+        for y in rows.ticks:
+            drawing.line("thin", starts[y] - 3, y, left - 3, y)
+        overall = left - max((text_width(text) for _, text in rows.texts), default=0.0) - 18
+    ends = (max(starts), min(starts))
+    drafting.dimension_up(drawing, overall, _overall(ends, view.size(view.high_u - view.low_u)))
+    for y in ends:
+        drawing.line("thin", left - 3 if rows else starts[y] - 3, y, overall - 3, y)
+    starts, columns = _chain(view, 0)
+    overall = bottom
     if columns:
         drafting.dimension_across(drawing, bottom, columns)
-        for level, x in zip(view.levels_a, overs, strict=True):
-            drawing.line("thin", x, foot[level] + 3, x, bottom + 3)
-        overall_y = bottom + 24
-    drafting.dimension_across(drawing, overall_y, _overall(overs, view.size(view.high_a - view.low_a)))
-    for x, level in ((overs[0], view.levels_a[0]), (overs[-1], view.levels_a[-1])):
-        drawing.line("thin", x, bottom + 3 if columns else foot[level] + 3, x, overall_y + 3)
-    drawing.height = overall_y + 20
+        for x in columns.ticks:
+            drawing.line("thin", x, starts[x] + 3, x, bottom + 3)
+        overall = bottom + 25
+    ends = (min(starts), max(starts))
+    drafting.dimension_across(drawing, overall, _overall(ends, view.size(view.high_a - view.low_a)))
+    for x in ends:
+        drawing.line("thin", x, bottom + 3 if columns else starts[x] + 3, x, overall + 3)
+    drawing.height = overall + 20
+
+
+def _chain(view: _View, axis: int) -> tuple[dict[float, float], drafting.Chain | None]:
+    """The chain of dimensions along one axis, as fine as there is room for, and where each extension line starts, in pixels."""
+    starts: dict[float, float] = {}
+    for walls in (True, False):
+        levels = _levels(view.pieces, axis, walls)
+        points = [(level, other) if axis == 0 else (other, level) for level, other in levels.items()]
+        starts = {view.at(point)[axis]: view.at(point)[1 - axis] for point in points}
+        texts = [view.size(high - low) for low, high in pairwise(levels)]
+        if len(texts) < 2:
+            return starts, None
+        chain = drafting.chain(list(levels), list(starts), texts, FONT_SIZE if axis else None)
+        if chain is not None:
+            return starts, chain
+    return starts, None
 
 
 def _overall(ticks: Sequence[float], text: str) -> drafting.Chain:
