@@ -9,14 +9,21 @@ from anyio import to_thread
 from fastapi import FastAPI
 from fastapi.responses import RedirectResponse
 from fastapi.staticfiles import StaticFiles
+from fastapi.telemetry import TelemetryConfig
 
 from server import ENGINE
 from server.paths import data_folder
 from server.settings import Settings
-from server.web import api, errors, jobs, library, security, shop
+from server.web import api, errors, jobs, library, member, saved, security, shop
 from server.web.records import Records
 
-_NO_TELEMETRY = {"tracing": False, "metrics": False, "logs": False, "operation_spans": False, "auto_configure": False}
+_NO_TELEMETRY: TelemetryConfig = {
+    "tracing": False,
+    "metrics": False,
+    "logs": False,
+    "operation_spans": False,
+    "auto_configure": False,
+}
 
 
 def create_app(settings: Settings) -> FastAPI:
@@ -47,8 +54,9 @@ def create_app(settings: Settings) -> FastAPI:
     app.add_middleware(security.Guard, settings=settings)
     app.mount("/static", StaticFiles(directory=data_folder("static")), name="static")
     app.add_api_route("/", _start, name="start", include_in_schema=False)
-    for room in (jobs, library, shop, api):
+    for room in (jobs, library, shop, member, saved, api):
         app.include_router(room.router)
+    api.describe(app)
     return app
 
 

@@ -10,7 +10,7 @@ _PACKAGE = Path(__file__).resolve().parent
 
 
 def data_folder(name: str) -> Path:
-    """Return the folder ``name`` (templates, static, seed_data): first in the installed package, then in the checkout."""
+    """Return the folder ``name`` (templates, static, seed_data): in the installed package, else in the checkout."""
     for folder in (_PACKAGE / "_data" / name, _PACKAGE.parent / name):
         if folder.is_dir():
             return folder

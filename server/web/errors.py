@@ -13,6 +13,8 @@ from fastapi.responses import JSONResponse, Response
 from starlette.exceptions import HTTPException
 
 from server.errors import DocumentError, Fault, InputError, JointError
+from server.library import NotFoundError
+from server.storage import StorageError
 from server.web.headers import HEADERS
 from server.web.pages import page
 
@@ -20,17 +22,23 @@ log = logging.getLogger("bondwright")
 
 _WORDS: dict[int, tuple[str, str]] = {
     400: ("That form could not be read", "It may have too many boxes or arrived in part. Go back and send it again."),
-    403: ("This request was refused", "It did not come from one of this program's own pages. Open the page again and send it from there."),
-    404: ("There is nothing at this address", "The link may be old, or part of it may be missing. Start again from the jobs."),
+    403: (
+        "This request was refused",
+        "It did not come from one of this program's own pages. Open the page again and send it from there.",
+    ),
+    404: (
+        "There is nothing at this address",
+        "The link may be old, or part of it may be missing. Start again from the jobs.",
+    ),
     405: ("This address does not take that kind of request", "Open the page with its form and use its buttons."),
-    413: ("That was too much at once", "Leave out what is not needed, or split it into smaller parts, and send it again."),
+    413: (
+        "That was too much at once",
+        "Leave out what is not needed, or split it into smaller parts, and send it again.",
+    ),
     421: ("This program does not answer to that name", "Use the address that was printed when it was started."),
+    503: ("The record book cannot be used now", "Nothing was saved. Try again in a minute."),
     422: ("Part of this address or form cannot be used", "Go back, look at what was typed, and send it again."),
 }
-
-
-class MissingError(JointError):
-    """What was asked for does not exist (any more); the message says what was looked for and where to look."""
 
 
 def install(app: FastAPI) -> None:
@@ -46,7 +54,8 @@ def refusal(request: Request, status: int, reason: str = "", faults: Sequence[Fa
     heading, usual = _WORDS.get(status, (HTTPStatus(status).phrase, "Go back and try again."))
     if request.url.path.startswith("/api/"):
         told = [{"path": fault.path, "message": fault.message} for fault in faults]
-        return JSONResponse({"faults": told or [{"path": "", "message": reason or f"{heading}. {usual}"}]}, status_code=status)
+        told = told or [{"path": "", "message": reason or f"{heading}. {usual}"}]
+        return JSONResponse({"faults": told}, status_code=status)
     return page(request, "error.html", status=status, heading=heading, lines=[reason or usual], faults=faults)
 
 
@@ -59,10 +68,14 @@ def faults_of(error: JointError) -> tuple[Fault, ...]:
 
 async def _explained(request: Request, error: Exception) -> Response:
     assert isinstance(error, JointError)
-    if isinstance(error, DocumentError):
-        return refusal(request, 422, "Some entries cannot be used:", error.faults)
-    status = int(getattr(error, "status", 404 if isinstance(error, MissingError) else 422))
-    return refusal(request, status, str(error), faults_of(error))
+    reason = "Some entries cannot be used:" if isinstance(error, DocumentError) else str(error)
+    return refusal(request, _status(error), reason, faults_of(error))
+
+
+def _status(error: JointError) -> int:
+    if isinstance(error, NotFoundError):
+        return 404
+    return 503 if isinstance(error, StorageError) else 422
 
 
 async def _refused(request: Request, error: Exception) -> Response:
@@ -88,5 +101,7 @@ async def _unexpected(request: Request, error: Exception) -> Response:
     heading = "Something went wrong in the program"
     line = f"This is a fault of the program, not of what was typed. Nothing was saved. Its mark in the log is {mark}."
     if request.url.path.startswith("/api/"):
-        return JSONResponse({"faults": [{"path": "", "message": f"{heading}. {line}"}]}, status_code=500, headers=HEADERS)
+        return JSONResponse(
+            {"faults": [{"path": "", "message": f"{heading}. {line}"}]}, status_code=500, headers=HEADERS
+        )
     return page(request, "error.html", status=500, headers=HEADERS, heading=heading, lines=[line], faults=())

@@ -53,6 +53,11 @@ def clean(text: str) -> str:
     return _CONTROLS.sub("", text.replace("\r\n", "\n").replace("\r", "\n"))
 
 
+def whole(text: str) -> int | None:
+    """Return a whole number from an address or a hidden box; None for anything else."""
+    return int(text) if text.isascii() and text.isdecimal() and len(text) < 10 else None
+
+
 FormValues = Annotated[ImmutableMultiDict[str, str], Depends(read_form)]
 Body = Annotated[bytes, Depends(read_body)]
 DbSession = Annotated[storage.Session, Depends(open_session)]

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import hashlib
-from collections.abc import Callable, Mapping
+from collections.abc import Callable, Container, Mapping
 from functools import cache, partial
 from pathlib import Path
 from typing import Any
@@ -13,9 +13,29 @@ from fastapi.responses import HTMLResponse, RedirectResponse
 from jinja2 import Environment, FileSystemLoader, StrictUndefined
 
 from server import ENGINE, units
+from server.errors import DocumentError
 from server.paths import data_folder
 
-_NAVIGATION = (("list_jobs", "Jobs", "/jobs"), ("list_records", "Library", "/library"), ("edit_shop", "Shop heading", "/shop"))
+_NAVIGATION = (
+    ("list_jobs", "Jobs", "/jobs"),
+    ("list_records", "Library", "/library"),
+    ("edit_shop", "Shop heading", "/shop"),
+)
+
+
+class Boxes(dict[str, str]):
+    """What the boxes of a form hold, or the messages beside them: blank where there is nothing."""
+
+    def __missing__(self, name: str) -> str:
+        return ""
+
+
+def beside(error: DocumentError, names: Container[str]) -> dict[str, str]:
+    """Return an error's messages by box; one whose field is not among ``names`` stands under the empty name."""
+    found: dict[str, str] = {}
+    for fault in error.faults:
+        found.setdefault(*((fault.path, fault.message) if fault.path in names else ("", str(fault))))
+    return found
 
 
 def page(
@@ -69,14 +89,8 @@ def static_links(folder: Path) -> Callable[[str], str]:
 
 
 def number(value: float, decimals: int | None = None) -> str:
-    """Return a number for people: three significant digits, or so many decimals; a true minus sign."""
-    if decimals is not None:
-        text = f"{value:.{decimals}f}"
-    elif value != 0 and not 1e-3 <= abs(value) < 1e6:
-        mantissa, exponent = f"{value:.2e}".split("e")
-        text = f"{mantissa}×10^{int(exponent)}"
-    else:
-        text = f"{value:.0f}" if abs(value) >= 999.5 else f"{value:.3g}"
+    """Return a number for people: four significant digits, or so many decimals; a true minus sign."""
+    text = units.digits(value) if decimals is None else f"{value:.{decimals}f}"
     return text.replace("-", "−")
 
 

@@ -39,7 +39,8 @@ class Records:
             self.path.parent.mkdir(parents=True, exist_ok=True)
         except OSError as error:
             raise JointError(
-                f"The folder {self.path.parent} cannot be made ({error.strerror}). Choose another place for the records."
+                f"The folder {self.path.parent} cannot be made ({error.strerror}). "
+                "Choose another place for the records."
             ) from error
         engine = storage.engine(self.path)
         storage.migrate(engine)

@@ -103,4 +103,3 @@ def _address(origin: str) -> tuple[str, str, int] | None:
         return parts.scheme, parts.hostname or "", parts.port or _DEFAULT_PORTS[parts.scheme]
     except (ValueError, KeyError):
         return None
-
