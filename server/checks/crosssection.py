@@ -154,6 +154,7 @@ class Body:
 def build(document: documents.MemberDocument) -> Body:
     """Place pieces and joints; raise DocumentError for overlaps, loose pieces and joints that touch nothing."""
     parts = tuple(_parts(document))
+    _refuse_overlaps(parts)
     found = _contacts(document, parts)
     sites = tuple(_sites(document, parts, found))
     stretches = tuple(_stretches(document.member.length, parts, sites))
@@ -192,6 +193,19 @@ def _piece(part: Part, creep: bool = False) -> Piece:
         None if G is None else G / soften,
         part.material.density,
     )
+
+
+def _refuse_overlaps(parts: Sequence[Part]) -> None:
+    faults = [
+        Fault(
+            f"section.pieces.{parts[i].name}.at",
+            f"{parts[i].name!r} and {parts[j].name!r} overlap by {area:.4g} mm2; move one so that they only touch.",
+        )
+        for i, j, area in overlap([p.outline for p in parts])
+        if parts[i].coexists(parts[j])
+    ]
+    if faults:
+        raise DocumentError(faults)
 
 
 def _contacts(document: documents.MemberDocument, parts: Sequence[Part]) -> list[Contact]:
@@ -282,15 +296,6 @@ def _cross_section(active: tuple[Part, ...], sites: Sequence[Site], start: float
         raise DocumentError(
             [Fault("section.pieces", f"No piece runs {where}; the member is cut through there. Extend a piece.")]
         )
-    faults = [
-        Fault(
-            f"section.pieces.{active[i].name}.at",
-            f"{active[i].name!r} and {active[j].name!r} overlap by {area:.4g} mm2; move one so that they only touch.",
-        )
-        for i, j, area in overlap([p.outline for p in active])
-    ]
-    if faults:
-        raise DocumentError(faults)
     loose = tied(len(active), _lines(active, sites))
     if loose:
         raise DocumentError(
