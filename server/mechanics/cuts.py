@@ -11,7 +11,9 @@ from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
 import numpy as np
+from numpy.typing import NDArray
 
+from server.errors import positive
 from server.mechanics.polygon import Array, Edges
 
 if TYPE_CHECKING:
@@ -99,15 +101,40 @@ def bands(edges: Edges) -> Bands:
     return Bands(levels[:-1], levels[1:], low, high)
 
 
-def _first_moment(cut: Bands, E: Array, neutral_axis: float) -> Array:
-    """Coefficients (4, k), rising powers of s in [0, 1], of the E-weighted first moment of all above a cut."""
+@dataclass(frozen=True, eq=False)
+class _Inward:
+    """The bands as seen from outside in: ``s`` runs from 0 at the end away from the neutral axis to 1.
+
+    So a first moment is a sum of terms of one sign, and keeps its digits towards a tip. ``outer`` height where s = 0
+    [mm]; ``step`` signed height of the band; ``ES`` (4, k) E-weighted first moment beyond s, rising powers; ``width``,
+    ``softness`` (2, k) sums of b and of b / G at both ends.
+    """
+
+    outer: Array
+    step: Array
+    ES: Array
+    width: Array
+    softness: Array
+
+
+def _inward(cut: Bands, pieces: Sequence[Piece], neutral_axis: float) -> _Inward:
     H = cut.high - cut.low
-    d = cut.low - neutral_axis
-    e0 = E @ cut.width_low
-    e1 = E @ cut.width_high - e0
-    c1, c2, c3 = H * e0 * d, H * (e0 * H + e1 * d) / 2, H * H * e1 / 3
-    above = (c1 + c2 + c3)[::-1].cumsum()[::-1]
-    return np.stack((above, -c1, -c2, -c3))
+    above = cut.low + cut.high > 2 * neutral_axis
+    G = np.array([np.inf if piece.G is None else piece.G for piece in pieces], dtype=float)
+    weights = np.stack((np.array([piece.E for piece in pieces], dtype=float), np.ones(len(G)), 1 / G))
+    low, high = weights @ cut.width_low, weights @ cut.width_high
+    outer, inner = np.where(above, high, low), np.where(above, low, high)
+    e0, e1 = outer[0], inner[0] - outer[0]
+    place = np.where(above, cut.high, cut.low)
+    D = np.abs(place - neutral_axis)
+    c1, c2, c3 = H * e0 * D, H * (e1 * D - e0 * H) / 2, -H * H * e1 / 3
+    own = c1 + c2 + c3
+    split = len(H) - int(above.sum())  # bands from here on lie above
+    beyond = np.zeros(len(H))
+    beyond[1:split] = own[:split][:-1].cumsum()
+    beyond[split:-1] = own[split + 1 :][::-1].cumsum()[::-1]
+    ES = np.stack((beyond, c1, c2, c3))
+    return _Inward(place, np.where(above, -H, H), ES, np.stack((outer[1], inner[1])), np.stack((outer[2], inner[2])))
 
 
 def _value(c: Array, s: Array) -> Array:
@@ -177,42 +204,33 @@ def largest_cuts(pieces: Sequence[Piece], properties: SectionProperties) -> list
     1.5
     """
     cut = properties.bands
-    E = np.array([piece.E for piece in pieces], dtype=float)
     neutral_axis = float(properties.neutral_axis[1])
-    ES = _first_moment(cut, E, neutral_axis)
-    b0, b_high = cut.width_low.sum(axis=0), cut.width_high.sum(axis=0)
-    b1 = b_high - b0
-    H = cut.high - cut.low
-    middle = np.clip((neutral_axis - cut.low) / H, 0.0, 1.0)
-    stations = [np.zeros_like(H), middle, np.ones_like(H)]
-    tapered = np.abs(b1) > 1e-12 * (b0 + b_high)
+    section = _inward(cut, pieces, neutral_axis)
+    ES, (b0, b_in) = section.ES, section.width
+    b1 = b_in - b0
+    k = len(b0)
+    middle = np.clip((neutral_axis - section.outer) / section.step, 0.0, 1.0)
+    stations = [np.zeros(k), middle, np.ones(k)]
+    tapered = np.abs(b1) > 1e-12 * (b0 + b_in)
     if tapered.any():
-        g = np.stack(
-            (
-                ES[1] * b0 - ES[0] * b1,
-                2 * ES[2] * b0,
-                3 * ES[3] * b0 + ES[2] * b1,
-                2 * ES[3] * b1,
-            )
-        )[:, tapered]
-        roots = np.zeros((3, len(H)))
-        roots[:, tapered] = _unit_roots(g)
+        g = np.stack((ES[1] * b0 - ES[0] * b1, 2 * ES[2] * b0, 3 * ES[3] * b0 + ES[2] * b1, 2 * ES[3] * b1))
+        roots = np.zeros((3, k))
+        roots[:, tapered] = _unit_roots(g[:, tapered])
         stations.extend(roots)
     s = np.stack(stations)
     moment = _value(ES, s)
-    width = b0 + b1 * s
-    thin = width <= 1e-9 * max(float(b0.max()), float(b_high.max()))  # a tip: the stress there tends to nothing
-    ratio = np.where(thin, 0.0, np.abs(moment) / np.where(thin, 1.0, width))
+    width = b0 * (1 - s) + b_in * s
+    thin = width <= 1e-9 * max(float(b0.max()), float(b_in.max()))  # a tip: the stress there tends to nothing
+    ratio = np.where(thin, 0.0, moment / np.where(thin, 1.0, width))
     best = _first_largest(ratio.T)
-    columns = np.arange(len(H))
-    peak = ratio[best, columns]
+    peak = ratio[best, np.arange(k)]
     through = (cut.width_low + cut.width_high) > 0
     chosen = _first_largest(np.where(through, peak, -1.0))
     found = []
     for band in chosen.tolist():
         row = int(best[band])
+        u = float(section.outer[band] + s[row, band] * section.step[band])
         ES_cut, b = float(moment[row, band]), float(width[row, band])
-        u = float(cut.low[band] + s[row, band] * H[band])
         found.append(HorizontalCut(u, ES_cut, b, float(peak[band]) / properties.EI))
     return found
 
@@ -244,6 +262,11 @@ def shear_stiffness(pieces: Sequence[Piece], properties: SectionProperties) -> f
     float or None
         GA [N]; None where a piece has no G.
 
+    Raises
+    ------
+    InputError
+        If a G is not a finite number above zero.
+
     Notes
     -----
     The stress is uniform over each horizontal cut, so the sideways flow in flanges, which is larger in thin-walled
@@ -263,33 +286,26 @@ def shear_stiffness(pieces: Sequence[Piece], properties: SectionProperties) -> f
     >>> round(shear_stiffness(plank, properties(plank)))  # 5/6 x 600 x 20 000
     10000000
     """
-    moduli = [piece.G for piece in pieces]
-    if None in moduli:
+    if any(piece.G is None for piece in pieces):
         return None
-    cut = properties.bands
-    E = np.array([piece.E for piece in pieces], dtype=float)
-    softness = 1.0 / np.array(moduli, dtype=float)
-    ES = _first_moment(cut, E, float(properties.neutral_axis[1])) / properties.EI
-    b0, b_high = cut.width_low.sum(axis=0), cut.width_high.sum(axis=0)
-    f0, f_high = softness @ cut.width_low, softness @ cut.width_high
-    H = cut.high - cut.low
+    for piece in pieces:
+        positive(f"G of {piece.name}", piece.G or 0.0, "MPa")
+    section = _inward(properties.bands, pieces, float(properties.neutral_axis[1]))
+    b, f, H = section.width, section.softness, np.abs(section.step)
 
-    def integral(which: Array, s: Array, weight: Array) -> float:
-        """Sum of weight x integrand at s (p, k) over the bands in ``which``."""
-        k = which.astype(bool)
-        b = b0[k] + (b_high[k] - b0[k]) * s
-        f = f0[k] + (f_high[k] - f0[k]) * s
-        safe = np.where(b > 0, b, 1.0)
-        return float((weight * np.where(b > 0, (_value(ES[:, k], s) / safe) ** 2 * f, 0.0)).sum(axis=0) @ H[k])
+    def integral(which: NDArray[np.bool_], s: Array, rest: Array, weight: Array) -> float:
+        """Sum of weight x integrand over the bands in ``which``, at s and rest = 1 - s."""
+        width = b[0, which] * rest + b[1, which] * s
+        soft = f[0, which] * rest + f[1, which] * s
+        ratio = _value(section.ES[:, which], s) / np.where(width > 0, width, np.inf)
+        return float((weight * (ratio * ratio * soft)).sum(axis=0) @ H[which])
 
-    solid = (b0 + b_high) > 0  # a bond line between two layers is a band with nothing in it
-    wide, narrow = np.maximum(b0, b_high), np.minimum(b0, b_high)
-    steep = solid & (wide > _STEEP * narrow)
-    plain = solid & ~steep
-    total = integral(plain, _GAUSS_X[:, None], _GAUSS_W[:, None])
-    if steep.any():
-        parts = _GRADES[:-1, None] + np.diff(_GRADES)[:, None] * _GAUSS_X  # graded towards s = 0
-        weights = (np.diff(_GRADES)[:, None] * _GAUSS_W).ravel()[:, None]
-        s = np.where((b0 <= b_high)[steep], parts.ravel()[:, None], 1.0 - parts.ravel()[:, None])
-        total += integral(steep, s, weights)
-    return 1.0 / total
+    solid = b.sum(axis=0) > 0  # a bond line between two layers is a band with nothing in it
+    steep = solid & (b.max(axis=0) > _STEEP * b.min(axis=0))
+    total = integral(solid & ~steep, _GAUSS_X[:, None], 1 - _GAUSS_X[:, None], _GAUSS_W[:, None])
+    if steep.any():  # graded towards the narrow end
+        near = (_GRADES[:-1, None] + np.diff(_GRADES)[:, None] * _GAUSS_X).ravel()[:, None]
+        weight = (np.diff(_GRADES)[:, None] * _GAUSS_W).ravel()[:, None]
+        from_outside = (b[0] <= b[1])[steep]
+        total += integral(steep, np.where(from_outside, near, 1 - near), np.where(from_outside, 1 - near, near), weight)
+    return properties.EI**2 / total
