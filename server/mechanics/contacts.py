@@ -18,6 +18,7 @@ from server.mechanics.sweep import common_region
 
 TOUCH = 0.05  # mm: closer than this is touching, and no deeper than this is not yet overlapping
 PARALLEL = 1e-3  # sine of the angle up to which edges count as parallel; facets of a round are further apart
+_DUST = 1e-6  # mm: a gap typed as 0.05 must not fail by its last binary digit
 
 
 @dataclass(frozen=True, eq=False)
@@ -83,7 +84,7 @@ def contacts(outlines: Sequence[Outline], reach: Array) -> list[Contact]:
         return []
     faces = _facing(edges, one, other)
     allowed = reach[edges.owner[faces.one], edges.owner[faces.other]]
-    kept = faces.high_gap <= allowed + 1e-9
+    kept = faces.high_gap <= allowed + _DUST
     found: list[Contact] = []
     for index in np.flatnonzero(kept).tolist():
         found.extend(_stretches(edges, faces, index))
@@ -151,7 +152,7 @@ def overlap(outlines: Sequence[Outline]) -> list[tuple[int, int, float]]:
 def _near_edges(edges: Edges, reach: Array) -> tuple[Indices, Indices]:
     """Pairs of edges, the first of the lower piece, whose pieces' boxes come within reach."""
     low, high = edges.boxes()
-    near = (low[:, None] - high[None] <= np.maximum(reach, TOUCH)[:, :, None]).all(axis=2)
+    near = (low[:, None] - high[None] <= np.maximum(reach, TOUCH)[:, :, None] + _DUST).all(axis=2)
     i, j = np.nonzero(np.triu(near & near.T, 1))
     one, other, _ = edges.pairs(i, j)
     return one, other
