@@ -41,7 +41,7 @@ from server.errors import InputError
 
 @dataclass
 class Parts:
-    """What could be read of a member document; a table that is no table at all is None."""
+    """What could be read of a member document; a table that is none at all, or empty where it must not be, is None."""
 
     display: Literal["SI", "US"] = "SI"
     basis: Allowable | LimitState | None = None
@@ -101,13 +101,13 @@ def salvage(raw: Mapping[str, Any]) -> Parts:
         materials=_table("material", raw.get("materials", {})),
         adhesives=_table("adhesive", raw.get("adhesives", {})),
         fasteners=_table("fastener", raw.get("fasteners", {})),
-        pieces=_table("piece", section.get("pieces")),
+        pieces=_table("piece", section.get("pieces")) or None,
         joints=_row("joint", joints),
-        length=_positive_length(member.get("length")),
+        length=_place(member.get("length")) or None,
         supports=_row("support", supports),
-        hinges=[_positive_length(hinge) for hinge in hinges] if isinstance(hinges, list) else [],
+        hinges=[_place(hinge) for hinge in hinges] if isinstance(hinges, list) else [],
         held_sideways=member.get("held_sideways", True) is not False,
-        loads={case: _row("load", rows) for case, rows in loads.items()} if loads is not None else None,
+        loads={case: _row("load", rows) for case, rows in loads.items()} if loads else None,
         combinations=_table("combination", raw.get("combinations", {})) or {},
         service=_one("service", raw.get("service")),
     )
@@ -194,7 +194,7 @@ def _row(kind: str, value: object) -> list[Any]:
     return [_one(kind, entry) for entry in value] if isinstance(value, list) else []
 
 
-def _positive_length(value: object) -> float | None:
+def _place(value: object) -> float | None:
     try:
         length = units.parse("", value, "length")
     except InputError:
