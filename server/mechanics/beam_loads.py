@@ -18,6 +18,7 @@ from server.mechanics.beam_model import Beam, Couple, LineLoad, Load, PointLoad
 
 Array = NDArray[np.float64]
 Indices = NDArray[np.intp]
+STEEP = 1e4
 _KIND = {"pin": 1, "fixed": 2, "spring": 3}  # as beam_system numbers what holds at a key place; a hinge adds 4
 _HINGED = {0: 4, 1: 5, 3: 6}
 
@@ -37,7 +38,7 @@ class Grid:
     force, couple : numpy.ndarray
         Force [N] and couple [N*mm] at each break, shape (c, m + 1).
     key, kind : numpy.ndarray
-        Breaks that are ends, supports or hinges, and what holds there [-].
+        Breaks that are ends, supports, hinges or steep changes of stiffness, and what holds there [-].
     springs : list of (int, float)
         Number of the key place and stiffness [N/mm].
     support : numpy.ndarray
@@ -172,7 +173,7 @@ def lay_out(beam: Beam, cases: Sequence[Sequence[Load]]) -> Grid:
         for case, at, value in rows:
             target[case, number[at]] += value
     supports = [number[support.at] for support in beam.supports]
-    key = sorted({0, m, *supports, *hinges})
+    key = sorted({0, m, *supports, *hinges, *_steep_changes(beam, bounds)})
     position = {place: order for order, place in enumerate(key)}
     kind, springs = _what_holds(beam, [position[at] for at in supports], [position[at] for at in hinges], len(key))
     return Grid(
@@ -221,6 +222,18 @@ def _spread(
     values = row[2] + row[3] * (breaks[interval] - row[1])
     place = row[0].astype(np.intp) * m + interval
     return np.array([np.bincount(place, part, cases * m) for part in (values, row[3])]).reshape(2, cases, m)
+
+
+def _steep_changes(beam: Beam, bounds: list[int]) -> list[int]:
+    """Return the breaks where the stiffness changes so much that the state there is an unknown of its own.
+
+    A very soft stretch acts nearly as a hinge; its small moment would drown in the rounding of the large ones.
+    """
+    return [
+        place
+        for place, (left, right) in zip(bounds[1:], pairwise(beam.stretches), strict=False)
+        if not 1 / STEEP < left.EI / right.EI < STEEP
+    ]
 
 
 def _what_holds(

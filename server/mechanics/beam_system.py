@@ -1,9 +1,10 @@
 """The equations of the member: what each part between two key places does, and what holds at those places.
 
-Key places are the member's ends, its supports and its hinges. The unknowns are the deflection y, the rotation psi of
-the section, the moment M and the shear V just right of each key place. Displacements and forces stand side by side,
-so stiffness enters only as flexibility 1/EI and 1/GA: a very stiff part, a very soft one or a stiff spring loses no
-digits to its neighbours, as it would in a matrix of stiffnesses. Units: N, mm.
+Key places are the member's ends, its supports, its hinges and steep changes of stiffness. The unknowns are the
+deflection y, the rotation psi of the section, the moment M and the shear V just right of each key place.
+Displacements and forces stand side by side, so stiffness enters only as flexibility 1/EI and 1/GA: a very stiff
+part, a very soft one or a stiff spring loses no digits to its neighbours, as it would in a matrix of stiffnesses.
+Units: N, mm.
 """
 
 from __future__ import annotations
