@@ -21,6 +21,7 @@ from server.working.grammar import PRECEDENCE, Binary, Call, Name, Negative, Nod
 
 Layout = list[Any]
 TIMES, MINUS, PLUS = "⋅", "−", "+"
+_ADDITIVE = (["sign", PLUS], ["sign", MINUS])
 INDEX = "i"
 _FUNCTION_NAMES = {"log": "ln"}
 
@@ -76,7 +77,9 @@ class _Writer:
             case Name(name):
                 return self.leaf(name, term)
             case Negative(of):
-                return ["row", ["sign", MINUS], self._held(of, PRECEDENCE["*"], term)]
+                held = self._held(of, PRECEDENCE["*"], term)
+                held = ["brackets", held] if starts_with_minus(held) else held
+                return ["row", ["sign", MINUS], *spread(held)]
             case Binary("/", over, under):
                 return ["fraction", self.write(over, term), self.write(under, term)]
             case Binary("**", base, exponent):
@@ -157,3 +160,52 @@ def starts_with_minus(layout: Layout) -> bool:
         case ["row", first, *_]:
             return starts_with_minus(first)
     return False
+
+
+WIDEST = 46.0
+"""Characters of a fraction or a bracket that still fits beside others in one line of a page or a sheet."""
+
+
+def width(node: Layout) -> float:
+    """About how many characters wide a layout is drawn."""
+    match node:
+        case ["name", base, below]:
+            return len(base) + 0.6 * len(below)
+        case ["number", digits, power]:
+            return len(digits) + (3.5 + 0.6 * len(power) if power else 0.0)
+        case ["word", text]:
+            return len(text)
+        case ["sign", _]:
+            return 2.0
+        case ["fraction", over, under]:
+            return max(width(over), width(under))
+        case ["power", base, exponent]:
+            return width(base) + 0.6 * width(exponent)
+        case ["function", name, *inner]:
+            return len(name) + 2.0 + sum(width(each) + 1.0 for each in inner)
+        case ["sum", _]:
+            return 2.0
+        case [_, *inner]:
+            return 1.0 + sum(width(each) for each in inner)
+    return 0.0
+
+
+def breakable(node: Layout) -> Layout:
+    """The same mathematics with fractions and brackets that are too wide for a line set in one row, which can break."""
+    match node:
+        case ["row", *inner]:
+            return ["row", *(part for each in inner for part in spread(breakable(each)))]
+        case ["fraction", over, under] if width(node) > WIDEST:
+            return ["row", *_in_line(over, _additive(over)), ["sign", "/"], *_in_line(under, under[0] == "row")]
+        case ["brackets", inner] if width(node) > WIDEST:
+            return ["row", *_in_line(inner, True)]
+    return node
+
+
+def _in_line(node: Layout, brackets: bool) -> list[Layout]:
+    inner = spread(breakable(node))
+    return [["sign", "("], *inner, ["sign", ")"]] if brackets else inner
+
+
+def _additive(node: Layout) -> bool:
+    return bool(node[0] == "row" and (node[1][0] == "sum" or any(each in _ADDITIVE for each in node[1:])))

@@ -76,12 +76,12 @@ def superscript(text: str) -> str:
 
 
 def readable_unit(unit: str) -> str:
-    """A unit for people: ``N*mm2`` becomes ``N·mm²``."""
+    """A unit for people: ``N*mm2`` becomes ``N·mm²``, ``degC`` becomes ``°C``."""
+    unit = "°" + unit[3:] if unit.startswith("deg") else unit
     out: list[str] = []
     after_letter = False
     for character in unit:
-        out.append(
-            "·" if character == "*" else superscript(character) if after_letter and character.isdigit() else character
-        )
+        raised = after_letter and character.isdigit()
+        out.append("·" if character == "*" else superscript(character) if raised else character)
         after_letter = character.isalpha() or (after_letter and character.isdigit())
     return "".join(out)

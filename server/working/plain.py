@@ -62,7 +62,8 @@ def _held(node: Layout, below: bool = False) -> str:
     text = line(node)
     if node[0] == "row":
         additive = any(each in (["sign", "+"], ["sign", "−"]) for each in node[1:])
-        return f"({text})" if below or additive else text
+        summed = node[1][0] == "sum"
+        return f"({text})" if below or additive or summed else text
     if node[0] in ("fraction",) and below:
         return f"({text})"
     if node[0] == "number" and node[2] and below:

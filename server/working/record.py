@@ -24,7 +24,7 @@ from server.working import names, numbers
 from server.working import plain as _plain
 from server.working.formula import Formula, formula, len_of
 from server.working.grammar import FormulaError
-from server.working.layout import Layout, number, spread, symbol, symbolic, with_numbers
+from server.working.layout import Layout, breakable, number, spread, symbol, symbolic, with_numbers
 
 Step = dict[str, Any]
 Given = tuple[float | Sequence[float] | NDArray[np.float64], str]
@@ -38,8 +38,8 @@ class Working:
     --------
     >>> w = Working()
     >>> given = {"V": (14600.0, "N"), "S": (1.04e6, "mm3"), "I": (4.27e8, "mm4")}
-    >>> w.step("Shear flow", "q", "V * S / I", given, "N/mm")
-    35.55971896955504
+    >>> round(w.step("Shear flow", "q", "V * S / I", given, "N/mm"), 3)
+    35.56
     >>> w.steps[0]["substituted"]
     '14600 * 1.04e6 / 4.27e8'
     """
@@ -286,9 +286,9 @@ def mathml(step: Mapping[str, Any], display: str = "SI") -> str:
     if parts.symbol:
         out.append(_mathml.math(parts.symbol, kind="working-symbol"))
     if parts.formula:
-        out.append(_mathml.math(equals, parts.formula, kind="working-formula"))
+        out.append(_mathml.math(equals, breakable(parts.formula), kind="working-formula"))
     if parts.numbers:
-        first, *others = _breakable(parts.numbers)
+        first, *others = _split(breakable(parts.numbers))
         out.append(_mathml.math(equals, *first, kind="working-numbers"))
         out += [_mathml.math(*each, kind="working-numbers") for each in others]
     if parts.value:
@@ -298,7 +298,7 @@ def mathml(step: Mapping[str, Any], display: str = "SI") -> str:
     return " ".join(out)
 
 
-def _breakable(layout: Layout) -> list[list[Layout]]:
+def _split(layout: Layout) -> list[list[Layout]]:
     """Split a long sum before its plus and minus signs."""
     groups: list[list[Layout]] = [[]]
     pieces = spread(layout)
@@ -314,8 +314,8 @@ def typst_math(step: Mapping[str, Any], display: str = "SI") -> dict[str, Any]:
     parts = shown(step, display)
     return {
         "symbol": parts.symbol,
-        "formula": parts.formula,
-        "numbers": parts.numbers,
+        "formula": parts.formula and breakable(parts.formula),
+        "numbers": parts.numbers and breakable(parts.numbers),
         "value": parts.value,
         "unit": parts.unit,
     }

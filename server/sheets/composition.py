@@ -1,0 +1,271 @@
+"""A check composed as a sheet: headings, tables, drawings and working in the order in which a reviewer reads them.
+
+The parts are plain data. ``templates/sheet`` decides how they look, and takes every text as it stands.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Iterable, Iterator, Mapping, Sequence
+from dataclasses import dataclass, field
+from typing import Any, Literal
+
+from server.sheets import tables
+from server.sheets.given import Group, given
+from server.sheets.values import governing, utilisation, verdict
+from server.working import typst_math
+
+Part = dict[str, Any]
+
+STANDING_CAUTION = (
+    "This is a workshop check by published formulae using values and factors entered by the shop. It does not replace "
+    "the local code, a licensed engineer’s review where required, or proof testing. The user is responsible for "
+    "applicability."
+)
+FOOT = (
+    "Workshop check by published formulae. Local codes and licensed practice take precedence; "
+    "limits of use stand at the end."
+)
+PRECEDENCE = "Local building, road, marine and machinery rules, and licensed practice, take precedence over this sheet."
+KINDS = {"member": "Check of a built-up member"}
+
+
+@dataclass(frozen=True)
+class SheetData:
+    """Everything that stands on one sheet. Two equal sheets give the same bytes, on any day and on any machine."""
+
+    document: Mapping[str, Any]
+    """The check document exactly as typed."""
+    result: Mapping[str, Any]
+    shop: str = ""
+    address: tuple[str, ...] = ()
+    job: str = ""
+    customer: str = ""
+    title: str = ""
+    """The heading; left empty, the document's own title."""
+    drawing: str = ""
+    """Drawing reference with its revision."""
+    mark: str = ""
+    """Member mark."""
+    revision: int | None = None
+    date: str = ""
+    """The date as it is to be printed."""
+    paper: Literal["A4", "Letter"] = "A4"
+    display: Literal["SI", "US"] = "SI"
+    status: str = ""
+    """State of the check as it is to be printed: issued, draft, superseded by revision 3."""
+    prepared: str = ""
+    checked: str = ""
+    approved: str = ""
+    replies: Mapping[str, str] = field(default_factory=dict)
+    """Replies to cautions, by the caution's text."""
+    content_hash: str = ""
+    engine: str = ""
+    saved_at: int = 0
+    """Seconds since 1970 that the file names as its date of making."""
+
+
+def compose(sheet: SheetData, drawings: Drawings) -> Part:
+    """The whole sheet as data for the template."""
+    return {
+        "paper": {"A4": "a4", "Letter": "us-letter"}[sheet.paper],
+        "head": _head(sheet),
+        "verdict": {
+            "word": verdict(sheet.result),
+            "utilisation": utilisation(sheet.result.get("utilisation")),
+            "governing": governing(sheet.result, sheet.display),
+        },
+        "parts": list(_numbered(sheet, drawings)),
+        "foot": {
+            "engine": sheet.engine or str(sheet.result.get("engine", "")),
+            "hash": sheet.content_hash or "not saved",
+            "limits": FOOT,
+        },
+    }
+
+
+@dataclass(frozen=True)
+class Drawings:
+    """The drawing functions, handed in: result and display to SVG."""
+
+    section: Callable[..., str]
+    loads: Callable[..., str]
+    diagram: Callable[..., str]
+    flow: Callable[..., str]
+
+
+def _head(sheet: SheetData) -> Part:
+    title = sheet.title or str(sheet.result.get("title") or sheet.document.get("title") or "Untitled check")
+    revision = "" if sheet.revision is None else str(sheet.revision)
+    names = [f"job {sheet.job}" if sheet.job else "", sheet.mark, f"revision {revision}" if revision else "", title]
+    kind = KINDS.get(str(sheet.result.get("kind")), "Check")
+    return {
+        "shop": sheet.shop or "No shop heading set",
+        "address": list(sheet.address),
+        "job": sheet.job,
+        "customer": sheet.customer,
+        "title": title,
+        "kind": f"{kind} – {sheet.status}" if sheet.status else kind,
+        "mark": sheet.mark,
+        "drawing": sheet.drawing,
+        "revision": revision,
+        "date": sheet.date,
+        "running": " · ".join(name for name in names if name),
+    }
+
+
+def _numbered(sheet: SheetData, drawings: Drawings) -> Iterator[Part]:
+    number = 0
+    for title, parts in _sections(sheet, drawings):
+        listed = list(parts)
+        if listed:
+            number += 1
+            yield {"kind": "heading", "number": str(number), "title": title}
+            yield from listed
+
+
+def _sections(sheet: SheetData, drawings: Drawings) -> Iterator[tuple[str, Iterable[Part]]]:
+    result, display = sheet.result, sheet.display
+    groups = given(sheet.document, result.get("values_used") or {}, display)
+    basis = [group for group in groups if group.title in ("Basis", "Combinations")]
+    yield "Basis", [_lines(group) for group in basis]
+    yield "Given values", _given_parts([group for group in groups if group not in basis], sheet)
+    yield "Section, loads and actions", _drawing_parts(result, display, drawings)
+    yield "Section properties", tables.section(result, display)
+    yield "Reactions, shear, moment", tables.actions(result, display)
+    yield "Joints", tables.joints(result, display)
+    yield "Pieces", tables.pieces(result, display)
+    yield "Deflection", tables.deflection(result, display)
+    yield "What is missing", _list(result.get("missing", ()))
+    yield "Cautions and replies", _cautions(result, sheet.replies)
+    yield "Working", _working(result, display)
+    yield "Values used", _values_used(result)
+    yield "Not checked", _not_checked(result)
+    yield "Prepared, checked, approved", [_signatures(sheet)]
+    yield "Limits of use", [{"kind": "text", "text": STANDING_CAUTION}]
+
+
+def _given_parts(groups: Sequence[Group], sheet: SheetData) -> Iterator[Part]:
+    note = sheet.document.get("note")
+    if isinstance(note, str) and note.strip():
+        yield {"kind": "text", "text": note.strip()}
+    yield {"kind": "legend", "columns": ["", "As typed", "As used"]}
+    values = [group for group in groups if group.values]
+    for group in groups:
+        if not group.values:
+            yield {"kind": "given", **_given(group)}
+    yield from _abreast(values)
+
+
+def _abreast(groups: Sequence[Group]) -> Iterator[Part]:
+    """Groups two by two: their rows are short."""
+    for first in range(0, len(groups), 2):
+        yield {"kind": "given-pair", "groups": [_given(group) for group in groups[first : first + 2]]}
+
+
+def _lines(group: Group) -> Part:
+    before = "Combination " if group.title == "Combinations" else ""
+    return {"kind": "lines", "rows": [[before + row.label, row.typed] for row in group.rows]}
+
+
+def _given(group: Group) -> Part:
+    rows = [[row.label, row.typed, row.converted] for row in group.rows]
+    return {"title": group.title, "about": group.about, "rows": rows}
+
+
+def _drawing_parts(result: Mapping[str, Any], display: str, drawings: Drawings) -> Iterator[Part]:
+    if "drawing" not in result:
+        return
+    yield _figure(drawings.section(result, display=display), "Section, seen on the right-hand face of a cut", 0.86)
+    yield _figure(drawings.loads(result, display=display), "Supports and loads", 0.86)
+    names = {"shear": "Shear", "moment": "Bending moment", "deflection": "Deflection"}
+    for quantity, name in names.items():
+        if (result.get("diagrams") or {}).get(quantity):
+            svg = drawings.diagram(result, quantity, display=display)
+            yield {**_figure(svg, "", 0.86), "alt": f"{name}, envelope over the combinations"}
+    if (result.get("diagrams") or {}).get("joints"):
+        yield {**_figure(drawings.flow(result, display=display), "", 0.86), "alt": "Shear flow in the joints"}
+
+
+def _figure(svg: str, caption: str, share: float) -> Part:
+    return {"kind": "drawing", "svg": svg, "caption": caption, "alt": caption, "share": share}
+
+
+def _list(items: Iterable[object]) -> Iterator[Part]:
+    listed = [str(item) for item in items]
+    if listed:
+        yield {"kind": "list", "items": listed}
+
+
+def _cautions(result: Mapping[str, Any], replies: Mapping[str, str]) -> Iterator[Part]:
+    for number, caution in enumerate(result.get("cautions", ()), 1):
+        text = str(caution.get("text", ""))
+        about = str(caution.get("about", ""))
+        yield {
+            "kind": "caution",
+            "number": f"{number}",
+            "about": about[:1].upper() + about[1:],
+            "text": text,
+            "answer": bool(caution.get("answer")),
+            "reply": str(replies.get(text, "")),
+        }
+
+
+def _working(result: Mapping[str, Any], display: str) -> Iterator[Part]:
+    group = None
+    for number, step in enumerate(result.get("steps", ()), 1):
+        if step.get("group", "") != group:
+            group = step.get("group", "")
+            if group:
+                yield {"kind": "sub", "title": group, "about": ""}
+        line = typst_math(step, display)
+        yield {
+            "kind": "step",
+            "number": str(number),
+            "title": step["title"],
+            "source": step.get("source", ""),
+            "line": line if line["value"] is not None else None,
+            "note": step.get("note", ""),
+        }
+
+
+def _values_used(result: Mapping[str, Any]) -> Iterator[Part]:
+    rows = []
+    for group, word in (("materials", "material"), ("adhesives", "adhesive"), ("fasteners", "fastener")):
+        for name, entry in (result.get("values_used", {}).get(group) or {}).items():
+            record = entry.get("record") or "typed for this check"
+            rows.append(
+                [
+                    word,
+                    name,
+                    record,
+                    str(entry.get("revision", "") or ""),
+                    entry.get("status") or "not stated",
+                    entry.get("source") or "",
+                ]
+            )
+    if rows:
+        columns = [
+            tables.column("Kind"),
+            tables.column("Name"),
+            tables.column("Record"),
+            tables.column("Rev.", side="right"),
+            tables.column("Status"),
+            tables.column("Source", share=1),
+        ]
+        yield {"kind": "table", "columns": columns, "rows": rows}
+
+
+def _not_checked(result: Mapping[str, Any]) -> Iterator[Part]:
+    listed = list(_list(result.get("not_checked", ())))
+    if listed:
+        yield {"kind": "text", "text": "This check leaves to others:"}
+        yield from listed
+        yield {
+            "kind": "text",
+            "text": PRECEDENCE,
+        }
+
+
+def _signatures(sheet: SheetData) -> Part:
+    people = [["Prepared", sheet.prepared], ["Checked", sheet.checked], ["Approved", sheet.approved]]
+    return {"kind": "signatures", "people": people}

@@ -1,0 +1,315 @@
+"""The tables of a sheet: results in rows, one unit a column."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator, Mapping, Sequence
+from typing import Any
+
+from server.sheets.values import DASH, Unit, quantity, unit, utilisation
+from server.working import readable
+
+Part = dict[str, Any]
+Result = Mapping[str, Any]
+
+
+def column(title: str, share: float = 0, side: str = "left") -> Part:
+    """One column; ``share`` 0 is as wide as its content."""
+    return {"title": title, "share": share, "side": side}
+
+
+def _numbers(name: str, of: Unit) -> Part:
+    return column(f"{name}, {of.text}" if of.text else name, side="right")
+
+
+Cell = str | dict[str, str]
+
+
+def table(columns: Sequence[Part], rows: Sequence[Sequence[Cell]]) -> Part:
+    """A table, for the template and for the terminal; a repeated first cell is left blank."""
+    shown = []
+    before: Cell | None = None
+    for row in rows:
+        shown.append(["" if row[0] == before and len(rows) > 1 else row[0], *row[1:]])
+        before = row[0]
+    return {"kind": "table", "columns": list(columns), "rows": shown}
+
+
+def used(value: object) -> Cell:
+    """A utilisation; strong where it is above 1."""
+    text = utilisation(value)
+    return {"strong": text} if isinstance(value, int | float) and value > 1 else text
+
+
+def section(result: Result, display: str) -> Iterator[Part]:
+    """Section properties, of every stretch where there are several."""
+    stretches = result.get("sections") or []
+    if len(stretches) > 1:
+        for stretch in stretches:
+            ends = [quantity(stretch.get(end), "mm", display) for end in ("from", "to")]
+            yield {"kind": "sub", "title": f"From {ends[0]} to {ends[1]}", "about": ""}
+            yield {"kind": "pairs", "pairs": _properties(stretch, display)}
+    elif result.get("section"):
+        yield {"kind": "pairs", "pairs": _properties(result["section"], display)}
+
+
+def _properties(values: Result, display: str) -> list[list[str]]:
+    axis = values.get("neutral_axis") or (None, None)
+    rows = [
+        ("Area", values.get("area"), "mm2"),
+        ("Mass per length", values.get("mass_per_length"), "kg/m"),
+        ("Neutral axis, up", axis[1], "mm"),
+        ("Neutral axis, across", axis[0], "mm"),
+        ("EA", values.get("EA"), "N"),
+        ("EI, bending up and down", values.get("EI"), "N*mm2"),
+        ("EI, bending sideways", values.get("EI_lateral"), "N*mm2"),
+        ("EI product", values.get("EI_product"), "N*mm2"),
+        ("GA, shear", values.get("GA"), "N"),
+        ("GJ, torsion", values.get("GJ"), "N*mm2"),
+        ("Effective EI, with slip", values.get("effective_EI"), "N*mm2"),
+    ]
+    if values.get("effective_EI") == values.get("EI"):
+        rows.pop()
+    return [[name, _plain(value, stored, display)] for name, value, stored in rows if value is not None]
+
+
+def _plain(value: object, stored: str, display: str) -> str:
+    """In the working's own unit: EA and GA are large forces, not loads."""
+    if stored == "N" and display == "SI" and isinstance(value, int | float):
+        return f"{readable(float(value), 5)}\u00a0N"
+    return quantity(value, stored, display, 5)
+
+
+def actions(result: Result, display: str) -> Iterator[Part]:
+    """Reactions by combination, then the extremes of shear and moment with place and combination."""
+    member = result.get("member") or {}
+    force, couple, length = unit("N", display), unit("N*mm", display), unit("mm", display)
+    reactions = member.get("reactions") or {}
+    rows: list[list[Cell]] = [
+        [name, length.number(each.get("at")), force.number(each.get("force")), _unless_zero(each.get("couple"), couple)]
+        for name, listed in reactions.items()
+        for each in listed
+    ]
+    if rows:
+        columns = [
+            column("Combination", share=1),
+            _numbers("Support at", length),
+            _numbers("Reaction, upward", force),
+            _numbers("Couple, anticlockwise", couple),
+        ]
+        yield table(columns, rows)
+    lines = [
+        ("Shear", member.get("shear"), force),
+        ("Bending moment", member.get("moment"), couple),
+    ]
+    yield from extremes(lines, length)
+
+
+def _unless_zero(value: object, of: Unit) -> str:
+    return of.number(value) if isinstance(value, int | float) and value else DASH
+
+
+def extremes(lines: Sequence[tuple[str, Any, Unit]], length: Unit) -> Iterator[Part]:
+    """Greatest and least of some quantities, with place and combination."""
+    rows = []
+    for name, envelope, of in lines:
+        if not envelope:
+            continue
+        for end, word in (("max", "greatest"), ("min", "least")):
+            rows.append(
+                [
+                    f"{name}, {word}",
+                    of.full(envelope.get(end)),
+                    length.number(envelope.get(f"at_{end}")),
+                    str(envelope.get(f"combination_{end}") or DASH),
+                ]
+            )
+    if rows:
+        columns = [column("", share=1), column("Value", side="right"), _numbers("At", length), column("Combination")]
+        yield table(columns, rows)
+
+
+def joined_by(joint: Result) -> str:
+    """What holds a joint together, in words."""
+    words = []
+    if joint.get("adhesive"):
+        words.append(str(joint["adhesive"]))
+    if joint.get("fastener"):
+        role = f" ({joint['role']})" if joint.get("role") else " (press)" if joint.get("adhesive") else ""
+        words.append(f"{joint['fastener']}{role}")
+    return " + ".join(words) or DASH
+
+
+def joints(result: Result, display: str) -> Iterator[Part]:
+    """The joint list, what each limit says, and what to ask for."""
+    listed = result.get("joints") or []
+    if not listed:
+        return
+    length, flow, stress = unit("mm", display), unit("N/mm", display), unit("MPa", display)
+    yield table(
+        [
+            column("No."),
+            column("Joint", share=1),
+            column("Joined by", share=1),
+            _numbers("Bonded width", length),
+            _numbers("Shear flow", flow),
+            _numbers("Stress", stress),
+            _numbers("At", length),
+            column("Split"),
+            column("Utilisation", side="right"),
+        ],
+        [
+            [
+                str(number),
+                joint["id"],
+                joined_by(joint),
+                length.number(joint.get("bonded_width")),
+                flow.number(joint.get("shear_flow")),
+                stress.number(joint.get("stress")),
+                length.number(joint.get("at")),
+                str(joint.get("split") or DASH),
+                used(joint.get("utilisation")),
+            ]
+            for number, joint in enumerate(listed, 1)
+        ],
+    )
+    limits = [[str(n), *row] for n, joint in enumerate(listed, 1) for row in limit_rows(joint, length, display)]
+    if limits:
+        yield {"kind": "sub", "title": "What each joint stands on", "about": ""}
+        yield table([column("No."), *_limit_columns(length)], limits)
+    yield from _asked(listed, length, stress)
+
+
+def _asked(listed: Sequence[Result], length: Unit, stress: Unit) -> Iterator[Part]:
+    """The strength to ask for, the width and the spacing needed."""
+    keys = ("strength_needed", "width_needed", "spacing_needed")
+    rows = [
+        [
+            str(number),
+            joint["id"],
+            stress.number(joint.get("strength_needed")),
+            length.number(joint.get("width_needed")),
+            length.number(joint.get("spacing_needed")),
+        ]
+        for number, joint in enumerate(listed, 1)
+        if any(joint.get(key) is not None for key in keys)
+    ]
+    if rows:
+        yield {
+            "kind": "sub",
+            "title": "What to ask for",
+            "about": "characteristic adhesive shear strength, bonded width, fastener spacing for a utilisation of 1",
+        }
+        columns = [
+            column("No."),
+            column("Joint", share=1),
+            _numbers("Strength needed", stress),
+            _numbers("Width needed", length),
+            _numbers("Spacing needed", length),
+        ]
+        yield table(columns, rows)
+
+
+def _limit_columns(length: Unit) -> list[Part]:
+    return [
+        column("Limit", share=1),
+        column("Strength", side="right"),
+        column("Resistance", side="right"),
+        column("Demand", side="right"),
+        _numbers("At", length),
+        column("Combination", share=0.6),
+        column("Utilisation", side="right"),
+    ]
+
+
+def limit_rows(owner: Result, length: Unit, display: str) -> Iterator[list[Cell]]:
+    """One row a limit: strength, resistance after factors, demand, where and when."""
+    for limit in owner.get("limits") or ():
+        own = str(limit.get("demand_unit") or "MPa")
+        yield [
+            str(limit.get("what", "")),
+            quantity(limit.get("strength"), own, display),
+            quantity(limit.get("resistance"), own, display),
+            quantity(limit.get("demand"), own, display),
+            length.number(limit.get("at")),
+            str(limit.get("combination") or DASH),
+            used(limit.get("utilisation")),
+        ]
+
+
+def pieces(result: Result, display: str) -> Iterator[Part]:
+    """Stresses of the pieces and what they stand on."""
+    listed = result.get("pieces") or []
+    if not listed:
+        return
+    length, stress = unit("mm", display), unit("MPa", display)
+    yield table(
+        [
+            column("Piece", share=1),
+            _numbers("Upper edge", stress),
+            _numbers("Lower edge", stress),
+            _numbers("Shear", stress),
+            column("Utilisation", side="right"),
+        ],
+        [
+            [
+                piece["id"],
+                stress.number(piece.get("stress_top")),
+                stress.number(piece.get("stress_bottom")),
+                stress.number(piece.get("shear_stress")),
+                used(piece.get("utilisation")),
+            ]
+            for piece in listed
+        ],
+    )
+    limits = [[piece["id"], *row] for piece in listed for row in limit_rows(piece, length, display)]
+    if limits:
+        yield {"kind": "sub", "title": "What each piece stands on", "about": "tension positive"}
+        yield table([column("Piece", share=0.7), *_limit_columns(length)], limits)
+
+
+def deflection(result: Result, display: str) -> Iterator[Part]:
+    """Greatest and least deflection, and every limit that was asked for."""
+    member = result.get("member") or {}
+    length = unit("mm", display)
+    lines = [
+        ("Deflection", member.get("deflection"), length),
+        ("Long-term deflection", member.get("deflection_long_term"), length),
+    ]
+    yield from extremes(lines, length)
+    rows = [
+        [
+            f"{length.number(each.get('from'))} to {length.number(each.get('to'))}",
+            "long-term" if each.get("long_term") else "short-term",
+            length.number(each.get("deflection")),
+            length.number(each.get("limit")),
+            _ratio(each),
+            str(each.get("combination") or DASH),
+            used(each.get("utilisation")),
+        ]
+        for each in result.get("deflection_limits") or ()
+    ]
+    if rows:
+        columns = [
+            column(f"Span, {length.text}", share=1),
+            column("Term"),
+            _numbers("Deflection", length),
+            _numbers("Limit", length),
+            column("Span / deflection", side="right"),
+            column("Combination", share=0.6),
+            column("Utilisation", side="right"),
+        ]
+        yield table(columns, rows)
+
+
+def _ratio(each: Result) -> str:
+    """The span (twice an overhang's length) over its deflection, rounded down: L/274."""
+    start, end, sag = each.get("from"), each.get("to"), each.get("deflection")
+    if (
+        not isinstance(start, int | float)
+        or not isinstance(end, int | float)
+        or not isinstance(sag, int | float)
+        or not sag
+    ):
+        return DASH
+    span = (end - start) * (2 if each.get("kind") == "overhang" else 1)
+    return readable(float(int(abs(span / sag))), 6)

@@ -1,0 +1,100 @@
+"""Results written for people: one unit a column, few digits, never a rounding that changes a verdict.
+
+Results are stored in N, mm and MPa. Forces are shown in kN and couples in kN·m (or lbf and lbf·in); all else keeps the
+unit in which the working reckons, so that a number in a table is found again in the working.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass
+from typing import Any
+
+from server import units
+from server.working import readable, readable_unit
+
+DIGITS = 4
+DASH = "–"
+_SI_FOR_PEOPLE = {"N": ("kN", 1e-3), "N*mm": ("kN·m", 1e-6)}
+
+
+@dataclass(frozen=True)
+class Unit:
+    """How one kind of result is shown: stored value x factor, in ``text``."""
+
+    text: str
+    factor: float
+
+    def number(self, value: object, digits: int = DIGITS) -> str:
+        """The number alone; a dash where there is none."""
+        if not isinstance(value, int | float) or isinstance(value, bool):
+            return DASH
+        return readable(float(value) * self.factor, digits)
+
+    def full(self, value: object, digits: int = DIGITS) -> str:
+        """Number and unit."""
+        text = self.number(value, digits)
+        return text if text == DASH or not self.text else f"{text}\u00a0{self.text}"
+
+
+def unit(stored: str, display: str) -> Unit:
+    """The unit people see for results stored in ``stored`` ("N*mm2", "MPa", ...)."""
+    if not stored:
+        return Unit("", 1.0)
+    if display == "US":
+        text, factor = units.display_unit(stored, "US")
+        return Unit(readable_unit(text), factor)
+    text, factor = _SI_FOR_PEOPLE.get(stored, (readable_unit(stored), 1.0))
+    return Unit(text, factor)
+
+
+def quantity(value: object, stored: str, display: str, digits: int = DIGITS) -> str:
+    """One result with its unit."""
+    return unit(stored, display).full(value, digits)
+
+
+def utilisation(value: object) -> str:
+    """A utilisation to two decimals; as many more as it takes not to show 1.00 for what is above or below 1."""
+    if not isinstance(value, int | float) or isinstance(value, bool):
+        return DASH
+    for decimals in (2, 3, 4, 6):
+        text = f"{value:.{decimals}f}"
+        if (float(text) > 1) == (value > 1) and (float(text) < 1) == (value < 1):
+            return text
+    return "just above 1" if value > 1 else "just below 1" if value < 1 else "1.00"
+
+
+def verdict(result: Mapping[str, Any]) -> str:
+    """The verdict's word, as it is printed."""
+    return str(result.get("verdict", "")).upper()
+
+
+def governing(result: Mapping[str, Any], display: str) -> str:
+    """The readable line that names what governs; in inch-pound units written anew from the limit it stands on."""
+    line = str(result.get("governing", ""))
+    if display != "US":
+        return line[:1].upper() + line[1:]
+    found = _governing_limit(result)
+    if found is None:
+        return line[:1].upper() + line[1:]
+    what, limit = found
+    place = quantity(limit.get("at"), "mm", display)
+    return (
+        f"{what}: {utilisation(limit.get('utilisation'))} of what is allowed, {place} from the left end, "
+        f"combination {limit.get('combination', DASH)}"
+    )
+
+
+def _governing_limit(result: Mapping[str, Any]) -> tuple[str, Mapping[str, Any]] | None:
+    limits = [
+        (f"{word} {part['id']}, {limit['what']}", limit)
+        for word, group in (("Joint", "joints"), ("Piece", "pieces"))
+        for part in result.get(group, ())
+        for limit in part.get("limits", ())
+    ]
+    limits += [
+        ("Long-term deflection" if each.get("long_term") else "Deflection", each)
+        for each in result.get("deflection_limits", ())
+    ]
+    known = [(what, limit) for what, limit in limits if isinstance(limit.get("utilisation"), int | float)]
+    return max(known, key=lambda each: float(each[1]["utilisation"]), default=None)
