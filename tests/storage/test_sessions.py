@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import sqlite3
 import threading
 from pathlib import Path
 
@@ -109,9 +110,7 @@ def test_read_then_write_never_meets_a_lock(book: Engine) -> None:
     assert seen == [str(n) for n in reversed(range(60))]
 
 
-def test_a_lock_held_by_another_program_is_told_in_plain_words(book: Engine, monkeypatch: pytest.MonkeyPatch) -> None:
-    import sqlite3
-
+def test_a_lock_held_by_another_program_is_told_in_plain_words(book: Engine) -> None:
     other = sqlite3.connect(str(book.url.database), isolation_level=None)
     other.execute("BEGIN IMMEDIATE")
     with storage.reading(book) as session:
@@ -120,6 +119,23 @@ def test_a_lock_held_by_another_program_is_told_in_plain_words(book: Engine, mon
             pass
     other.execute("ROLLBACK")
     other.close()
+
+
+def test_a_write_holds_the_file_from_its_first_moment(book: Engine) -> None:
+    """Otherwise another program could save between what this one read and what it writes."""
+    other = sqlite3.connect(str(book.url.database), isolation_level=None, timeout=0)
+    with storage.writing(book), pytest.raises(sqlite3.OperationalError, match="locked"):
+        other.execute("BEGIN IMMEDIATE")
+    other.execute("BEGIN IMMEDIATE")
+    other.close()
+
+
+def test_a_save_that_never_ends_is_told_to_the_next(book: Engine, monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.setattr(sessions, "LOCK_SECONDS", 0.05)
+    with storage.writing(book), storage.reading(book) as second:
+        with pytest.raises(storage.StorageError, match="Another save has not finished"), storage.write(second):
+            pass
+        assert second.scalars(select(Job)).all() == []  # reading goes on
 
 
 def test_a_missing_folder_is_told_in_plain_words(tmp_path: Path) -> None:
