@@ -102,6 +102,17 @@ def test_texts_from_a_form_read_like_numbers() -> None:
     assert read(changed(put("member/deflection_limit", "300"))).member.deflection_limit == 300.0
 
 
+def test_null_leaves_an_optional_field_out() -> None:
+    data = changed(put("section/joints/0", {"between": ["web L", "bottom"], "adhesive": "PU", "width": None}))
+    data["section"]["joints"][0] |= dict.fromkeys(("fastener", "spacing", "role"))
+    data["section"]["pieces"]["top"] |= {"from": None, "to": None}
+    data["materials"]["deal"]["G"] = None
+    data["service"] = None
+    document = read(data)
+    assert document.section.joints[0] == read(BOX).section.joints[0]
+    assert document.material("deal").G is None
+
+
 def test_all_faults_are_said_at_once() -> None:
     def change(data: dict) -> None:  # type: ignore[type-arg]
         data["section"]["pieces"]["web L"]["widht"] = data["section"]["pieces"]["web L"].pop("width")
