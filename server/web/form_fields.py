@@ -50,7 +50,7 @@ def shown_unit(unit: str, system: str) -> str:
     """Return the unit beside a box as people read it: ``kN·m``, ``°C``, ``lbf/ft``."""
     if not unit:
         return ""
-    return UNITS[unit][system == "US"].translate(_SHOWN).replace("deg", "°" if unit == "temperature" else "deg")
+    return UNITS[unit][system == "US"].translate(_SHOWN).replace("deg", "°")
 
 
 @dataclass(frozen=True)
@@ -126,7 +126,7 @@ PIECES = Group(
         Box(
             "grain",
             "Grain",
-            choices=(("", "along the member"), ("along", "along the member (stated)"), ("across", "across")),
+            choices=(("along", "along"), ("across", "across")),
             more=True,
         ),
         Box("turn", "Turned", "angle", hint="anticlockwise", more=True),

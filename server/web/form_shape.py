@@ -9,20 +9,25 @@ from server.web import layouts
 from server.web.form_fields import GROUPS, LOAD_UNITS, SINGLES, Group
 from server.web.forms import FIELD, Reading, couples, points, rows, schedule, system_of, with_unit
 
+_BUTTONS = ("add", "remove", "start", "set_out", "units_of_boxes", "calculate")
+
 
 def shape(values: Mapping[str, str]) -> tuple[dict[str, str], str]:
     """Do what a button of the form asked for: ``(values, the group whose rows changed)``.
 
-    ``add`` names a group, ``remove`` a row such as ``pieces[2]``, ``start`` a layout, ``units_of_boxes`` marks the
-    boxes in the units chosen. Numbers already typed keep the unit they were typed in.
+    ``add`` names a group, ``remove`` a row such as ``pieces[2]``, ``start`` a layout, ``set_out`` places its pieces
+    from their sizes, ``units_of_boxes`` marks the boxes in the units chosen. Numbers already
+    typed keep the unit they were typed in.
     """
-    kept = {name: text for name, text in values.items() if name not in ("add", "remove", "start", "units_of_boxes")}
+    kept = {name: text for name, text in values.items() if name not in _BUTTONS}
     if values.get("add") in GROUPS:
         return _with_a_row(kept, GROUPS[values["add"]]), values["add"]
     if removed := re.fullmatch(r"(\w+)\[\d{1,4}\]", values.get("remove", "")):
         return {name: text for name, text in kept.items() if not name.startswith(removed[0] + ".")}, removed[1]
     if values.get("start") in layouts.LAYOUTS:
         return _started(kept, values["start"]), ""
+    if values.get("set_out"):
+        return kept | (layouts.set_out(kept) or {}), "pieces"
     if values.get("units_of_boxes"):
         return in_units(kept, "US" if kept.get("display") == "US" else "SI"), "display"
     return kept, ""

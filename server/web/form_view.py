@@ -7,7 +7,7 @@ from dataclasses import dataclass, field
 from functools import cached_property
 from typing import Any
 
-from server.web import form_words, forms
+from server.web import form_words, forms, layouts
 from server.web.form_fields import GROUPS, LOAD_UNITS, SINGLES, UNITS, VALUE_GROUPS, Box, Group, shown_unit
 
 Options = tuple[tuple[str, str], ...]
@@ -79,6 +79,11 @@ class Form:
     def first_boxes(self) -> tuple[str, str]:
         """The boxes of the first adhesive that stand in the first view."""
         return (f"adhesives[{self.first_adhesive}].record", f"adhesives[{self.first_adhesive}].shear_strength")
+
+    @property
+    def can_set_out(self) -> bool:
+        """Whether the layout's own pieces are still there, so that their places follow from their sizes."""
+        return layouts.set_out(self.values) is not None
 
     def group(self, name: str) -> Group:
         """Return a group of rows."""

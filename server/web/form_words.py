@@ -93,12 +93,9 @@ def _joints(joints: Sequence[Raw]) -> str:
 
 
 def _member(member: Raw) -> str:
-    supports = member.get("supports") or ()
-    if (
-        len(supports) == 2
-        and all(support.get("kind") == "pin" for support in supports)
-        and (supports[1].get("at") == member.get("length"))
-    ):
+    supports: list[Raw] = list(member.get("supports") or ())
+    ends = [support.get("at") for support in supports]
+    if len(ends) == 2 and ends[1] == member.get("length") and all(each.get("kind") == "pin" for each in supports):
         held = "simple supports at both ends"
     elif supports:
         held = f"{len(supports)} support{'s' if len(supports) > 1 else ''}: " + _some(

@@ -57,12 +57,14 @@ def place(faults: Iterable[Fault], paths: Mapping[str, str]) -> tuple[dict[str, 
     on_top: list[str] = []
     for fault in faults:
         name = _box_of(fault.path, paths)
+        # In a box a bare number is in the unit beside it, not in the document's plain unit.
+        message = re.sub(r"\s*\(a plain number is in [^()]*\)", "", fault.message)
         if name is None:
             on_top.append(str(fault))
         elif name not in beside:
-            beside[name] = fault.message
-        elif fault.message not in beside[name]:
-            beside[name] += " " + fault.message
+            beside[name] = message
+        elif message not in beside[name]:
+            beside[name] += " " + message
     return beside, on_top
 
 

@@ -7,6 +7,12 @@ cannot pass before the shop has put in what its own material carries.
 
 from __future__ import annotations
 
+from collections.abc import Mapping
+
+from server import units
+from server.errors import InputError
+from server.web import forms
+
 LAYOUTS: dict[str, str] = {
     "box": "Box: two flanges, two webs",
     "i": "I: two flanges, one web",
@@ -149,3 +155,61 @@ def start(layout: str, system: str) -> dict[str, str]:
     for index, material in enumerate(kind for kind in (_TIMBER, _PLYWOOD) if kind[system]["name"] in used):
         values |= {f"materials[{index}].{name}": text for name, text in material[system].items()}
     return values
+
+
+def set_out(values: Mapping[str, str]) -> dict[str, str] | None:
+    """Return the boxes that place a layout's pieces from their sizes; None where its own pieces are not all there.
+
+    Pieces are known by the names the layout gave them. A size that cannot be read leaves every place as typed.
+    """
+    layout, system = values.get("layout", ""), "US" if values.get("units") == "US" else "SI"
+    rows = _rows_by_name(values)
+    names = [sizes[0] for sizes in _PIECES[system].get(layout, ())]
+    if not names or not set(names) <= rows.keys():
+        return None
+    sizes = {}
+    for name in names:
+        try:
+            sizes[name] = tuple(
+                _size(values.get(f"pieces[{rows[name]}].{side}", ""), system) for side in ("width", "depth")
+            )
+        except InputError:
+            return {}
+    factor = 25.4 if system == "US" else 1.0
+    placed: dict[str, str] = {}
+    for name, (across, up) in _places(layout, names, sizes).items():
+        placed[f"pieces[{rows[name]}].across"] = f"{round(across / factor, 4):g}"
+        placed[f"pieces[{rows[name]}].up"] = f"{round(up / factor, 4):g}"
+    return placed
+
+
+def _rows_by_name(values: Mapping[str, str]) -> dict[str, str]:
+    return {
+        text.strip(): name[len("pieces[") : -len("].name")]
+        for name, text in values.items()
+        if name.startswith("pieces[") and name.endswith("].name")
+    }
+
+
+def _size(text: str, system: str) -> float:
+    """Return a size in mm; a bare number is in the unit of its box."""
+    return units.parse("size", forms.with_unit(text, "size", system), "length")
+
+
+def _places(layout: str, names: list[str], sizes: Mapping[str, tuple[float, ...]]) -> dict[str, tuple[float, float]]:
+    """Return where each piece stands: a stack is centred; the box's webs stand outside its flanges."""
+    if layout == "box":
+        bottom, top, left, right = names
+        thick, wide = sizes[left][0], sizes[bottom][0]
+        return {
+            left: (0.0, 0.0),
+            bottom: (thick, 0.0),
+            top: (thick, sizes[left][1] - sizes[top][1]),
+            right: (thick + wide, 0.0),
+        }
+    widest = max(sizes[name][0] for name in names)
+    found, up = {}, 0.0
+    for name in names:
+        found[name] = ((widest - sizes[name][0]) / 2, up)
+        up += sizes[name][1]
+    return found

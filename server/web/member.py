@@ -10,8 +10,8 @@ from fastapi import APIRouter, Request
 from fastapi.responses import Response
 from markupsafe import Markup
 
-from server import checks, documents, jobs, library, working
-from server.errors import DocumentError, Fault, InputError, JointError
+from server import checks, documents, jobs, library, sheets, working
+from server.errors import Fault, JointError
 from server.storage import Session
 from server.web import form_shape, form_words, forms, layouts
 from server.web.errors import faults_of
@@ -53,8 +53,18 @@ def judge(session: Session, values: Mapping[str, str], *, patient: bool = True) 
     except JointError as error:
         result, faults = {}, faults_of(error)
     beside, on_top = forms.place(faults, reading.paths)
-    messages = {**beside, **reading.faults}
+    messages = {**beside, **reading.faults, **_unprintable(values)}
     return Judged(reading.raw, None if messages or on_top else result, messages, tuple(on_top))
+
+
+def _unprintable(values: Mapping[str, str]) -> dict[str, str]:
+    """Say at entry which characters the sheet could not print later."""
+    found = {name: sheets.unprintable(text) for name, text in values.items() if not text.isascii()}
+    return {
+        name: f"The sheet's fonts have no “{'”, “'.join(characters[:5])}”; use other letters or signs here."
+        for name, characters in found.items()
+        if characters and forms.is_box(name)
+    }
 
 
 def _still_to_enter(values: Mapping[str, str], raw: Mapping[str, Any]) -> Iterable[str]:
@@ -125,7 +135,7 @@ def _save(request: Request, session: Session, values: dict[str, str], job_id: in
     """Save what the form says; refused, the page comes back with the form as typed and its messages (422)."""
     job = jobs.get(session, job_id)
     reading = forms.reading_of(values)
-    messages = dict(reading.faults)
+    messages = {**reading.faults, **_unprintable(values)}
     on_top: list[str] = []
     if check_id and not values.get("reason", "").strip():
         messages["reason"] = (
@@ -143,7 +153,7 @@ def _save(request: Request, session: Session, values: dict[str, str], job_id: in
                 reason=values.get("reason", ""),
             )
             return see(request, "show_revision", check_id=saved.check_id, revision=saved.revision)
-        except (DocumentError, InputError) as error:
+        except JointError as error:
             messages, on_top = forms.place(faults_of(error), reading.paths | forms.BESIDE)
     judged = judge(session, values, patient=False)
     judged = replace(
@@ -175,7 +185,7 @@ def _page(
         refused=status == 422,
         lazily=True,
         swap=False,
-        working=working_of(judged.result) if judged.result else [],
+        working=[] if judged.result is None or "HX-Request" in request.headers else working_of(judged.result),
         **_shown(judged, values),
     )
 

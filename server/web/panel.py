@@ -5,6 +5,7 @@ Nothing is reckoned here; numbers are written by the same functions that write t
 
 from __future__ import annotations
 
+import re
 from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass
 from typing import Any
@@ -13,33 +14,29 @@ from markupsafe import Markup
 
 from server import sheets
 from server.sheets import values as written
+from server.sheets.section_view import joint_numbers
 
 Result = Mapping[str, Any]
-QUANTITIES = (
-    ("shear", "Shear force"),
-    ("moment", "Bending moment"),
-    ("deflection", "Deflection"),
-    ("joints", "Shear flow in the joints"),
-)
+QUANTITIES = ("shear", "moment", "deflection", "deflection_long_term")
 _SPLITS = {"cut": "clean cut", "symmetry": "by symmetry", "field": "by field"}
 
 
 @dataclass(frozen=True)
 class JointRow:
-    """One joint of the table: texts only, but for the utilisation that the verdict needs."""
+    """One joint of the table: texts only, numbers in the unit of their column."""
 
     number: int
     id: str
     held_by: str
     flow: str
+    at: str
+    split: str
     width: str
     stress: str
-    split: str
-    weakest: str
     utilisation: str
+    weakest: str
     ask_for: str
     needed: str
-    at: str
     over: bool
 
 
@@ -51,8 +48,8 @@ class PieceRow:
     top: str
     bottom: str
     shear: str
-    weakest: str
     utilisation: str
+    weakest: str
     over: bool
 
 
@@ -68,6 +65,15 @@ class SagRow:
 
 
 @dataclass(frozen=True)
+class Caution:
+    """What a careful engineer would say: one subject, each sentence once, with the places it is about."""
+
+    about: str
+    texts: tuple[str, ...]
+    answer: bool
+
+
+@dataclass(frozen=True)
 class Panel:
     """Everything the result panel shows."""
 
@@ -76,19 +82,20 @@ class Panel:
     governing: str
     section: Markup
     loads: Markup
-    diagrams: tuple[tuple[str, Markup], ...]
+    diagrams: tuple[Markup, ...]
     joints: tuple[JointRow, ...]
     pieces: tuple[PieceRow, ...]
     sags: tuple[SagRow, ...]
     missing: tuple[str, ...]
-    cautions: tuple[Mapping[str, Any], ...]
+    cautions: tuple[Caution, ...]
     not_checked: tuple[str, ...]
     extremes: tuple[tuple[str, str], ...]
+    units: Mapping[str, str]
 
 
 def panel(result: Result, display: str) -> Panel:
     """Return the panel of a result, in SI or US units."""
-    numbers = sheets.joint_numbers(result)
+    numbers = joint_numbers(result)
     return Panel(
         verdict=str(result["verdict"]),
         utilisation=written.utilisation(result.get("utilisation")),
@@ -99,10 +106,11 @@ def panel(result: Result, display: str) -> Panel:
         joints=tuple(_joint(joint, numbers.get(joint["id"], 0), display) for joint in result["joints"]),
         pieces=tuple(_piece(piece, display) for piece in result["pieces"]),
         sags=tuple(_sag(each, display) for each in result.get("deflection_limits", ())),
-        missing=tuple(line[:1].upper() + line[1:] for line in result["missing"]),
-        cautions=tuple(result["cautions"]),
+        missing=_together(result["missing"]),
+        cautions=tuple(_cautions(result)),
         not_checked=tuple(result["not_checked"]),
         extremes=tuple(_extremes(result["member"], display)),
+        units={stored: written.unit(stored, display).text for stored in ("N/mm", "mm", "MPa")},
     )
 
 
@@ -111,61 +119,79 @@ def _drawn(svg: str) -> Markup:
     return Markup(svg)  # noqa: S704 -- the one place, for our own drawings
 
 
-def _diagrams(result: Result, display: str) -> tuple[tuple[str, Markup], ...]:
+def _diagrams(result: Result, display: str) -> tuple[Markup, ...]:
     found = result["diagrams"]
-    return tuple(
-        (title, _drawn(sheets.diagram_svg(result, name, display=display)))
-        for name, title in QUANTITIES
-        if found.get(name)
-    )
+    drawn = [_drawn(sheets.diagram_svg(result, name, display=display)) for name in QUANTITIES if found.get(name)]
+    if found.get("joints"):
+        drawn.append(_drawn(sheets.flow_svg(result, display=display)))
+    return tuple(drawn)
 
 
 def _joint(joint: Mapping[str, Any], number: int, display: str) -> JointRow:
-    weakest = _weakest(joint["limits"])
+    def said(key: str, unit: str) -> str:
+        return written.unit(unit, display).number(joint.get(key))
+
     needed = [
         f"{words} {written.quantity(joint[key], 'mm', display)}"
         for key, words in (("width_needed", "width"), ("spacing_needed", "spacing"))
         if joint.get(key) is not None
     ]
-    held_by = [str(joint[key]) for key in ("adhesive", "fastener") if joint.get(key)]
     return JointRow(
         number=number,
         id=str(joint["id"]),
-        held_by=" with ".join(held_by),
-        flow=written.quantity(joint["shear_flow"], "N/mm", display),
-        width=written.quantity(joint["bonded_width"], "mm", display),
-        stress=written.quantity(joint["stress"], "MPa", display),
-        split=_SPLITS.get(str(joint["split"]), "no method yet"),
-        weakest=weakest,
-        utilisation=written.utilisation(joint["utilisation"]),
-        ask_for=written.quantity(joint["strength_needed"], "MPa", display),
-        needed=", ".join(needed) or written.DASH,
+        held_by=" with ".join(str(joint[key]) for key in ("adhesive", "fastener") if joint.get(key)),
+        flow=said("shear_flow", "N/mm"),
         at=written.quantity(joint["at"], "mm", display),
+        split=_SPLITS.get(str(joint["split"]), "no method yet"),
+        width=said("bonded_width", "mm"),
+        stress=said("stress", "MPa"),
+        utilisation=written.utilisation(joint["utilisation"]),
+        weakest=_weakest(joint["limits"]),
+        ask_for=said("strength_needed", "MPa"),
+        needed=", ".join(needed) or written.DASH,
         over=_over(joint),
     )
 
 
 def _piece(piece: Mapping[str, Any], display: str) -> PieceRow:
+    stress = written.unit("MPa", display)
     return PieceRow(
         id=str(piece["id"]),
-        top=written.quantity(piece["stress_top"], "MPa", display),
-        bottom=written.quantity(piece["stress_bottom"], "MPa", display),
-        shear=written.quantity(piece["shear_stress"], "MPa", display),
-        weakest=_weakest(piece["limits"]),
+        top=stress.number(piece["stress_top"]),
+        bottom=stress.number(piece["stress_bottom"]),
+        shear=stress.number(piece["shear_stress"]),
         utilisation=written.utilisation(piece["utilisation"]),
+        weakest=_weakest(piece["limits"]),
         over=_over(piece),
     )
 
 
 def _sag(each: Mapping[str, Any], display: str) -> SagRow:
     ends = " to ".join(written.quantity(each[end], "mm", display) for end in ("from", "to"))
+    length = written.unit("mm", display)
     return SagRow(
         where=ends + (", long-term" if each.get("long_term") else ""),
-        deflection=written.quantity(each["deflection"], "mm", display),
-        limit=written.quantity(each["limit"], "mm", display),
+        deflection=length.number(each["deflection"]),
+        limit=length.number(each["limit"]),
         utilisation=written.utilisation(each["utilisation"]),
         over=_over(each),
     )
+
+
+def _cautions(result: Result) -> Iterable[Caution]:
+    """Put cautions on one subject together; a sentence said of several joints or pieces names them all once."""
+    ids = {str(part["id"]) for group in ("joints", "pieces") for part in result[group]}
+    subjects: dict[tuple[str, bool], dict[str, list[str]]] = {}
+    for each in result["cautions"]:
+        sentences = subjects.setdefault((str(each["about"]), bool(each.get("answer"))), {})
+        place, colon, rest = str(each["text"]).partition(": ")
+        if colon and place in ids:
+            sentences.setdefault(rest, []).append(place)
+        else:
+            sentences.setdefault(str(each["text"]), [])
+    for (about, answer), sentences in subjects.items():
+        texts = tuple(f"{', '.join(places)}: {text}" if places else text for text, places in sentences.items())
+        yield Caution(about, texts, answer)
 
 
 def _weakest(limits: Sequence[Mapping[str, Any]]) -> str:
@@ -177,6 +203,17 @@ def _weakest(limits: Sequence[Mapping[str, Any]]) -> str:
 def _over(part: Mapping[str, Any]) -> bool:
     used = part.get("utilisation")
     return isinstance(used, int | float) and used > 1
+
+
+def _together(lines: Iterable[str]) -> tuple[str, ...]:
+    """Put lines that miss the same thing at several places on one: 'shear of X (at joint 1; at joint 2): test it'."""
+    places: dict[tuple[str, str], list[str]] = {}
+    for line in lines:
+        match = re.fullmatch(r"([^()]+) \(([^()]+)\): (.+)", line)
+        key, place = ((match[1], match[3]), match[2]) if match else ((line, ""), "")
+        places.setdefault(key, []).append(place)
+    said = (f"{what} ({'; '.join(found)}): {step}" if step else what for (what, step), found in places.items())
+    return tuple(line[:1].upper() + line[1:] for line in said)
 
 
 def _extremes(member: Mapping[str, Any], display: str) -> Iterable[tuple[str, str]]:
