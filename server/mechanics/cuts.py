@@ -270,9 +270,9 @@ def shear_stiffness(pieces: Sequence[Piece], properties: SectionProperties) -> f
     Notes
     -----
     The stress is uniform over each horizontal cut, and its sideways part is left out: GA is an upper estimate for thin
-    walls that run sideways (G A / 1.5 for a thin round tube, where G A / 2 is right). Bond lines take no part. The integrand is
-    a polynomial of degree 7 where the width is constant, and 16 Gauss points are exact; tapered bands are cut into
-    parts whose width grows at most threefold, which leaves an error below 1e-12.
+    walls that run sideways (G A / 1.5 for a thin round tube, where G A / 2 is right). Bond lines take no part.
+    The integrand is a polynomial of degree 7 where the width is constant, and 16 Gauss points are exact; tapered bands
+    are cut into parts whose width grows at most threefold, which leaves an error below 1e-12.
 
     References
     ----------

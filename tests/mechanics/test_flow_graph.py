@@ -1,7 +1,7 @@
 """Joint flow against plain linear algebra, on random grids of pieces with and without symmetry.
 
-The oracle writes down every piece's equilibrium and every symmetry as rows of one matrix: a joint is settled exactly where its
-unit row lies in the row space, and its flow is then that of the least-squares solution.
+The oracle writes down every piece's equilibrium and every symmetry as rows of one matrix: a joint is settled exactly
+where its unit row lies in the row space, and its flow is then that of the least-squares solution.
 """
 
 from __future__ import annotations
@@ -59,9 +59,7 @@ def random_grid(seed: int, kind: str):
     if not cells:
         return [], [], [], size
     x, y = np.concatenate(([0.0], np.cumsum(widths))), np.concatenate(([0.0], np.cumsum(heights)))
-    pieces = [
-        Piece(f"{a},{b}", rectangle(widths[a], heights[b], (x[a], y[b])), modulus[orbit[a, b]]) for a, b in cells
-    ]
+    pieces = [Piece(f"{a},{b}", rectangle(widths[a], heights[b], (x[a], y[b])), modulus[orbit[a, b]]) for a, b in cells]
     left_out = {}
     joints = []
     for contact in contacts([piece.outline for piece in pieces], np.full((len(pieces),) * 2, 0.05)):
@@ -140,7 +138,9 @@ def test_settles_exactly_what_linear_algebra_settles_with_the_same_flow(kind):
             seen[expected] += 1
             if expected:
                 assert found.share == pytest.approx(flow[j], abs=1e-9 * scale), (seed, j)
-                assert abs(found.share) * len(found.partners) == pytest.approx(abs(found.first_moment), abs=1e-9 * scale)
+                assert abs(found.share) * len(found.partners) == pytest.approx(
+                    abs(found.first_moment), abs=1e-9 * scale
+                )
                 assert found.first_moment == pytest.approx(-found.first_moment_other_side, abs=1e-9 * scale)
     assert seen["cut"] > 20
     assert seen[None] > 20 or kind == "both"

@@ -170,8 +170,8 @@ def thin_tube_values():
     return (4 * thin - thick) / 3
 
 
-# Left out: Cowper's coefficients and the form factor 2 of a thin tube count the sideways shear stress too, which horizontal
-# cuts do not see (they give 3/2 for the tube); they belong to the stress field of the section.
+# Left out: Cowper's coefficients and the form factor 2 of a thin tube count the sideways shear stress too, which
+# horizontal cuts do not see (they give 3/2 for the tube); they belong to the stress field of the section.
 CASES_BY_CUTS = {
     "rectangle, energy form factor A/A_s": lambda: rectangle_values()[0],
     "rectangle, peak over mean shear stress": lambda: rectangle_values()[1],
