@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import hashlib
-from collections.abc import Mapping
+from collections.abc import Iterator, Mapping, Sequence
 from typing import Any
 
 from server.storage.tables import compact
@@ -23,3 +23,19 @@ def content_hash(content: Mapping[str, Any]) -> str:
 def bytes_hash(data: bytes) -> str:
     """Return the SHA-256, in hexadecimal, of a sheet's bytes."""
     return hashlib.sha256(data).hexdigest()
+
+
+def leaves(value: Any, path: str = "") -> Iterator[tuple[str, Any]]:
+    """Yield every number and text below ``value`` with its path.
+
+    >>> list(leaves({"loads": {"snow": [{"value": "2 kN"}]}}))
+    [('loads.snow[0].value', '2 kN')]
+    """
+    if isinstance(value, Mapping):
+        for name, inner in value.items():
+            yield from leaves(inner, f"{path}.{name}" if path else str(name))
+    elif isinstance(value, Sequence) and not isinstance(value, str):
+        for index, inner in enumerate(value):
+            yield from leaves(inner, f"{path}[{index}]")
+    else:
+        yield path, value

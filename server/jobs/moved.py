@@ -2,11 +2,12 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator, Mapping, Sequence
+from collections.abc import Mapping
 from dataclasses import dataclass
 from typing import Any, Literal
 
 from server import documents, units
+from server.jobs.content import leaves
 from server.jobs.revisions import SavedRevision
 
 _ONE = {"materials": "material", "adhesives": "adhesive", "fasteners": "fastener"}
@@ -46,7 +47,7 @@ def _values(saved: SavedRevision, display: str) -> dict[str, str]:
             what = f"{_ONE.get(section, section)} {name}"
             if entry.get("record") is not None:
                 found[f"{what}: record"] = f"{entry['record']} revision {entry['revision']}"
-            for path, value in _flat(entry):
+            for path, value in leaves(entry):
                 if path not in ("record", "revision"):
                     found[f"{what}: {_words(path)}"] = _shown(f"{section}.*.{path}", value, display)
     return found
@@ -57,7 +58,7 @@ def _given(saved: SavedRevision) -> dict[str, str]:
     skipped = (".record", ".revision")
     return {
         path: str(value)
-        for path, value in _flat(saved.document)
+        for path, value in leaves(saved.document)
         if not (path.startswith(tuple(_ONE)) and path.endswith(skipped))
     }
 
@@ -78,18 +79,6 @@ def _result(saved: SavedRevision) -> dict[str, str]:
     found["missing"] = "; ".join(map(str, result.get("missing", ()))) or _NOTHING
     found["program"] = saved.engine
     return found
-
-
-def _flat(value: Any, path: str = "") -> Iterator[tuple[str, Any]]:
-    """Yield every number and text below ``value`` with its path, as ``loads.snow[0].value``."""
-    if isinstance(value, Mapping):
-        for name, inner in value.items():
-            yield from _flat(inner, f"{path}.{name}" if path else str(name))
-    elif isinstance(value, Sequence) and not isinstance(value, str):
-        for index, inner in enumerate(value):
-            yield from _flat(inner, f"{path}[{index}]")
-    else:
-        yield path, value
 
 
 def _words(path: str) -> str:

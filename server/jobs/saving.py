@@ -13,7 +13,7 @@ from server import checks, documents, library, sheets, storage
 from server.documents import Document
 from server.errors import DocumentError, Fault
 from server.jobs import headings
-from server.jobs.content import bytes_hash, content_hash
+from server.jobs.content import bytes_hash, content_hash, leaves
 from server.jobs.revisions import SavedRevision, revision
 from server.jobs.shop import shop
 from server.library import NotFoundError, fields
@@ -184,8 +184,20 @@ def _kept(checked: _Checked, heading: Mapping[str, Any], draw: Draw) -> dict[str
         "engine": result["engine"],
     }
     sha256 = content_hash(content)
-    pdf = draw(sheet_data(content, sha256))
+    try:
+        pdf = draw(sheet_data(content, sha256))
+    except sheets.UnprintableError as error:
+        raise DocumentError(_unprintable(checked.document, error) or [Fault("", str(error))]) from error
     return {**content, "sha256": sha256, "pdf": pdf, "pdf_sha256": bytes_hash(pdf)}
+
+
+def _unprintable(document: Mapping[str, Any], error: sheets.UnprintableError) -> list[Fault]:
+    """Name the fields of the document that hold what the sheet's fonts do not have."""
+    return [
+        Fault(path, str(error))
+        for path, value in leaves(document)
+        if any(sign in path or sign in str(value) for sign in error.characters)
+    ]
 
 
 def sheet_data(content: Mapping[str, Any], sha256: str) -> sheets.SheetData:

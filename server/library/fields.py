@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import unicodedata
 
+from server import sheets
 from server.errors import Fault
 
 LINE, TEXT = 200, 5000
@@ -37,4 +38,15 @@ def _clean(faults: list[Fault], path: str, value: str, most: int, allowed: str) 
     bad = [sign for sign in text if sign not in allowed and unicodedata.category(sign) in ("Cc", "Cs")]
     if bad:
         faults.append(Fault(path, f"{path} holds a character that cannot be printed ({bad[0]!a}); take it out."))
+        return text
+    printable(faults, path, text)
     return text
+
+
+def printable(faults: list[Fault], path: str, text: str) -> None:
+    """Add a fault where ``text`` holds a sign the sheets' fonts do not have: better now than when a sheet is drawn."""
+    for sign in dict.fromkeys(text):
+        if not sign.isascii() and sheets.unprintable(sign):
+            message = f"{path} holds “{sign}” (U+{ord(sign):04X}), which a sheet cannot print; use another sign."
+            faults.append(Fault(path, message))
+            return

@@ -10,6 +10,7 @@ from pydantic import ValidationError
 from server.documents.faults import faults_of
 from server.documents.text import load
 from server.errors import DocumentError, Fault
+from server.library import fields
 from server.library.groups import Group
 from server.storage.tables import compact
 
@@ -32,6 +33,8 @@ def check_entry(faults: list[Fault], group: Group, values: Mapping[str, Any]) ->
     except ValidationError as error:
         faults += faults_of(error, group.model, ("values",))
         return typed
-    if (length := len(compact(typed))) > MOST_CHARACTERS:
-        faults.append(Fault("values", f"The values have {length} characters; shorten them to {MOST_CHARACTERS}."))
+    text = compact(typed)
+    if len(text) > MOST_CHARACTERS:
+        faults.append(Fault("values", f"The values have {len(text)} characters; shorten them to {MOST_CHARACTERS}."))
+    fields.printable(faults, "values", text)
     return typed

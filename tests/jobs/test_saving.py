@@ -8,7 +8,7 @@ from typing import Any
 import pytest
 from sqlalchemy import Engine, text
 
-from server import checks, documents, jobs, library, storage
+from server import checks, documents, jobs, library, sheets, storage
 from server.errors import DocumentError, JointError
 from server.jobs import saving
 from server.jobs.content import bytes_hash, content_hash
@@ -84,16 +84,16 @@ def test_the_order_of_pieces_is_kept_and_part_of_the_hash(session: Session) -> N
 
 
 def test_the_sheet_gets_what_it_has_to_say(session: Session) -> None:
-    sheets: list[SheetData] = []
+    drawn: list[SheetData] = []
 
     def draw(sheet: SheetData) -> bytes:
-        sheets.append(sheet)
+        drawn.append(sheet)
         return b"x"
 
     jobs.set_shop(session, name="Invented Joinery", address="1 Mill Lane\n\nNowhere")
     job = start_job(session, paper="Letter", display="US", drawing="D-1")
     saved = save(session, job, mark="RB1", made_by="Anna", draw=draw)
-    [sheet] = sheets
+    [sheet] = drawn
     assert sheet == SheetData(
         document=saved.document,
         result=sheet.result,
@@ -218,6 +218,20 @@ def test_a_sheet_that_cannot_be_drawn_saves_nothing(session: Session) -> None:
         save(session, job, draw=broken)
     assert count(session) == 0
     assert jobs.checks_of(session, job.id) == []
+
+
+def test_what_the_fonts_lack_is_named_by_its_field(session: Session) -> None:
+    job = start_job(session)
+    raw = document(shear_strength=4.2)
+    raw["note"] = "for the circus \U0001f3aa"
+    with pytest.raises(DocumentError) as caught:
+        save(session, job, raw, draw=sheets.pdf)
+    [fault] = caught.value.faults
+    assert fault.path == "note"
+    assert "U+1F3AA" in fault.message
+    with pytest.raises(DocumentError, match="made_by"):
+        save(session, job, made_by="\U0001f3aa")
+    assert count(session) == 0
 
 
 def test_the_lock_is_not_held_while_checking_and_drawing(session: Session, book: Engine) -> None:

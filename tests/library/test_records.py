@@ -90,6 +90,14 @@ def test_every_fault_is_named_at_once_and_nothing_saved(session: Session) -> Non
     assert library.search(session).total == 0
 
 
+def test_what_no_sheet_can_print_is_refused_at_entry(session: Session) -> None:
+    sign = "\U0001f3aa"
+    found = faults(add_bond, session, name=f"a{sign}", source=sign, values={"factors": {sign: 1.0}})
+    assert set(found) == {"name", "source", "values"}
+    assert "U+1F3AA" in found["name"]
+    assert add_bond(session, name="Grünleim ½ – λ ≤ Ø").key == "B-001"
+
+
 @pytest.mark.parametrize(
     ("group", "values", "path"),
     [
