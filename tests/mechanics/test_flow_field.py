@@ -110,7 +110,7 @@ def joints_of(pieces):
     [
         (BOX, 6.0, 4, 1e-6),
         # three pieces meet in a point here: its nodal force cannot be told apart
-        (CAPPED, 4.0, 5, 2e-3),
+        (CAPPED, 4.0, 5, 1e-2),
         (PINWHEEL, 2.5, 4, 1e-6),
         (POSTS, 5.0, 1, 1e-6),
         (LAMELLAS, 8.0, 1, 1e-6),
