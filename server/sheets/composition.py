@@ -11,6 +11,7 @@ from typing import Any, Literal
 
 from server.sheets import tables
 from server.sheets.given import Group, given
+from server.sheets.steps import working_groups
 from server.sheets.values import governing, utilisation, verdict
 from server.working import typst_math
 
@@ -211,12 +212,17 @@ def _cautions(result: Mapping[str, Any], replies: Mapping[str, str]) -> Iterator
 
 
 def _working(result: Mapping[str, Any], display: str) -> Iterator[Part]:
-    group = None
-    for number, step in enumerate(result.get("steps", ()), 1):
-        if step.get("group", "") != group:
-            group = step.get("group", "")
-            if group:
-                yield {"kind": "sub", "title": group, "about": ""}
+    for group in working_groups(result.get("steps", ())):
+        if group.title:
+            yield {"kind": "sub", "title": group.title, "about": ""}
+        if group.same:
+            yield {"kind": "text", "text": group.same}
+        else:
+            yield from _steps(group.steps, group.first, display)
+
+
+def _steps(steps: Sequence[Mapping[str, Any]], first: int, display: str) -> Iterator[Part]:
+    for number, step in enumerate(steps, first):
         line = typst_math(step, display)
         yield {
             "kind": "step",

@@ -37,22 +37,6 @@ class Group:
     """Whether these are the values of a material, an adhesive or a fastener."""
 
 
-# The stored unit of every kind of quantity that a member's document can hold.
-_UNITS = {
-    "length": "mm",
-    "force": "N",
-    "line_load": "N/mm",
-    "area_load": "MPa",
-    "couple": "N*mm",
-    "stress": "MPa",
-    "stiffness": "N/mm",
-    "density": "kg/m3",
-    "temperature": "degC",
-    "expansion": "1/K",
-    "angle": "deg",
-    "moisture": "%",
-    "factor": "",
-}
 _MATERIAL = {
     "E": ("Modulus E", "stress"),
     "G": ("Shear modulus G", "stress"),
@@ -130,7 +114,7 @@ class _Writer:
             number = units.parse("", value, kind)
         except InputError:
             return ""
-        return unit(_UNITS[kind], self.display).full(number, 6)
+        return unit(units.KINDS[kind].unit, self.display).full(number, 6)
 
     def row(self, label: str, value: object, kind: str) -> Row:
         """One row for one value."""
@@ -149,7 +133,8 @@ class _Writer:
     # --- the parts of a member's document ---
 
     def basis(self, basis: Typed) -> Iterable[Row]:
-        yield Row("Method", typed_text(basis.get("method", "")), "")
+        if "method" in basis:
+            yield Row("Method", typed_text(basis["method"]), "")
         names = {"safety_factor": "Safety factor", "partial_factor": "Partial factor"}
         for field, name in names.items():
             if field in basis:

@@ -10,7 +10,7 @@ import json
 import re
 import threading
 from functools import lru_cache
-from typing import Any
+from typing import Any, Final
 
 import typst
 
@@ -22,7 +22,7 @@ from server.sheets.loads_drawing import loads_svg
 from server.sheets.section_drawing import section_svg
 
 DRAWINGS = Drawings(section_svg, loads_svg, diagram_svg, flow_svg)
-STANDARD = "a-2b"
+STANDARD: Final = "a-2b"
 _UNSHOWN = re.compile(r'the text `"(.*?)"` could not be displayed')
 _PROBE = b"""
 #set text(font: ("Libertinus Serif", "New Computer Modern Math", "DejaVu Sans Mono"))
@@ -59,7 +59,7 @@ class _Setter:
         text = json.dumps(data, ensure_ascii=False, sort_keys=True)
         with self._lock:
             made = self._compiler.compile(
-                input=files,
+                input=files,  # type: ignore[type-var]  # a dict of sources is taken; the stub does not say so
                 format="pdf",
                 sys_inputs={"sheet": text},
                 pdf_standards=STANDARD,

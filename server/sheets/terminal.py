@@ -3,11 +3,12 @@
 from __future__ import annotations
 
 import textwrap
-from collections.abc import Iterable, Iterator, Mapping
+from collections.abc import Iterable, Iterator, Mapping, Sequence
 from typing import Any
 
 from server.sheets import tables
 from server.sheets.composition import PRECEDENCE, STANDING_CAUTION
+from server.sheets.steps import working_groups
 from server.sheets.values import governing, utilisation, verdict
 from server.working import plain
 
@@ -89,12 +90,17 @@ def _working(result: Mapping[str, Any], display: str) -> Iterator[str]:
     if not steps:
         return
     yield from _title("Working")
-    group = None
-    for number, step in enumerate(steps, 1):
-        if step.get("group", "") != group:
-            group = step.get("group", "")
-            if group:
-                yield from ["", group]
+    for group in working_groups(steps):
+        if group.title:
+            yield from ["", group.title]
+        if group.same:
+            yield from _wrapped(group.same, "     ", "     ")
+        else:
+            yield from _steps(group.steps, group.first, display)
+
+
+def _steps(steps: Sequence[Mapping[str, Any]], first: int, display: str) -> Iterator[str]:
+    for number, step in enumerate(steps, first):
         source = f"  [{step['source']}]" if step.get("source") else ""
         yield from _wrapped(f"{step['title']}{source}", f"{number:>3}  ", "     ")
         indent = 0
@@ -128,7 +134,7 @@ def _cell(cell: str | Mapping[str, str]) -> str:
     return (cell if isinstance(cell, str) else f"{cell['strong']} !").replace("\u2009", "\u00a0")
 
 
-def _widths(columns: list[Part], rows: list[list[str]]) -> list[int]:
+def _widths(columns: Sequence[Part], rows: list[list[str]]) -> list[int]:
     """Every column as wide as its content; where that is too wide, the texts give way first, longest first."""
     widths = []
     for position, column in enumerate(columns):
@@ -145,7 +151,7 @@ def _widths(columns: list[Part], rows: list[list[str]]) -> list[int]:
     return widths
 
 
-def _row(cells: list[str], widths: list[int], columns: list[Part], bottom: bool = False) -> Iterator[str]:
+def _row(cells: list[str], widths: list[int], columns: Sequence[Part], bottom: bool = False) -> Iterator[str]:
     wrapped = [textwrap.wrap(cell, width) or [""] for cell, width in zip(cells, widths, strict=True)]
     height = max(len(lines) for lines in wrapped)
     for line in range(height):

@@ -208,4 +208,4 @@ def _in_line(node: Layout, brackets: bool) -> list[Layout]:
 
 
 def _additive(node: Layout) -> bool:
-    return bool(node[0] == "row" and (node[1][0] == "sum" or any(each in _ADDITIVE for each in node[1:])))
+    return bool(node[0] == "row" and (node[1][0] == "sum" or any(each in _ADDITIVE for each in node[2:])))

@@ -61,7 +61,7 @@ def _held(node: Layout, below: bool = False) -> str:
     """A fraction's upper or lower part; rows are bracketed below the bar, sums and differences above it too."""
     text = line(node)
     if node[0] == "row":
-        additive = any(each in (["sign", "+"], ["sign", "−"]) for each in node[1:])
+        additive = any(each in (["sign", "+"], ["sign", "−"]) for each in node[2:])
         summed = node[1][0] == "sum"
         return f"({text})" if below or additive or summed else text
     if node[0] in ("fraction",) and below:

@@ -18,6 +18,7 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
+from server import units
 from server.errors import InputError
 from server.working import mathml as _mathml
 from server.working import names, numbers
@@ -239,7 +240,7 @@ def shown(step: Mapping[str, Any], display: str = "SI") -> Shown:
     digits = _texts(known, values, lists, value)[0]
     count = len_of(values, lists)
     with_values = with_numbers(known.tree, values, lists, count, digits)
-    repeats = with_values == number(value)
+    repeats = spread(with_values) == [number(value)]
     return Shown(
         head,
         None if known.names <= {step["symbol"]} and known.trivial else symbolic(known.tree, lists),
@@ -252,8 +253,6 @@ def shown(step: Mapping[str, Any], display: str = "SI") -> Shown:
 def _display_unit(unit: str, display: str) -> tuple[str, float]:
     if display == "SI" or not unit:
         return unit, 1.0
-    from server import units
-
     shown_unit, factor = units.display_unit(unit, display)
     return shown_unit, factor
 

@@ -9,13 +9,9 @@ from typing import Any
 
 from server.working import Working
 
-ROLLING = {
-    "what": "rolling shear in web L",
-    "resistance": 0.3260,
-    "utilisation": 0.7785,
-    "demand": 0.2538,
-    "demand_unit": "MPa",
-}
+ADHESIVE = {"what": "adhesive R2", "strength": 5.2, "resistance": 1.7333, "utilisation": 0.1464, "demand": 0.2538}
+ROLLING = {"strength": 1.28, "resistance": 0.3260, "utilisation": 0.7785, "demand": 0.2538}
+SHEAR = {"what": "shear in top flange", "strength": 4.0, "resistance": 1.3333, "utilisation": 0.1904, "demand": 0.2538}
 
 
 def document() -> dict[str, Any]:
@@ -84,7 +80,8 @@ def result() -> dict[str, Any]:
         "display": "SI",
         "verdict": "fail",
         "utilisation": 1.0945,
-        "governing": "deflection of the span 0 to 6000 mm, 1.09 of its limit used 2897 mm from the left end, combination all",
+        "governing": "deflection of the span 0 to 6000 mm, 1.09 of its limit used 2897 mm from the left end, "
+        "combination all",
         "section": {
             "area": 22600.0,
             "mass_per_length": 11.29,
@@ -125,14 +122,14 @@ def result() -> dict[str, Any]:
         "cautions": [
             {
                 "about": "wide bond",
-                "text": "top flange/web L: h_f = 70 mm > 4 b_ef = 50 mm. EN 1995-1-1:2004 (9.10) would multiply the rolling "
-                "shear strength of web L by 0.764 (utilisation 1.02 instead of 0.778); it is not applied here.",
+                "text": "top flange/web L: h_f = 70 mm > 4 b_ef = 50 mm. EN 1995-1-1:2004 (9.10) would multiply the "
+                "rolling shear strength of web L by 0.764 (utilisation 1.02 instead of 0.778); it is not applied here.",
                 "answer": True,
             },
             {
                 "about": "fasteners with adhesive",
-                "text": "top flange/web L: stiff glue carries nearly all of the flow until it breaks, so the fasteners (press) "
-                "are held to carry none of it. Their strengths are never added.",
+                "text": "top flange/web L: stiff glue carries nearly all of the flow until it breaks, so the fasteners "
+                "(press) are held to carry none of it. Their strengths are never added.",
                 "answer": False,
             },
         ],
@@ -194,6 +191,7 @@ def _extremes(most: float, at_most: float, least: float, at_least: float) -> dic
 
 def _joint(name: str) -> dict[str, Any]:
     place = {
+        "demand_unit": "MPa",
         "combination": "all",
         "at": 0.0,
         "duration_factor": 1.0,
@@ -216,15 +214,15 @@ def _joint(name: str) -> dict[str, Any]:
         "fastener": "N27",
         "role": "press",
         "limits": [
-            {"what": "adhesive R2", "strength": 5.2, "resistance": 1.7333, "demand": 0.2538, "demand_unit": "MPa", "utilisation": 0.1464, **place},
-            {**ROLLING, "what": f"rolling shear in {web}", "strength": 1.28, **place},
-            {"what": "shear in top flange", "strength": 4.0, "resistance": 1.3333, "demand": 0.2538, "demand_unit": "MPa", "utilisation": 0.1904, **place},
+            {**ADHESIVE, **place},
+            {**ROLLING, "what": f"rolling shear in {web}", **place},
+            {**SHEAR, **place},
         ],
         "strength_needed": 0.7614,
         "utilisation": 0.7785,
         "width_needed": 54.5,
         "spacing_needed": None,
-    }  # fmt: skip
+    }
 
 
 def _piece(name: str) -> dict[str, Any]:
@@ -341,9 +339,13 @@ def steps() -> list[dict[str, Any]]:
         "cut-off part: top flange",
     )
     q = w.step(
-        "Shear flow", "q", "c_s*V*S/EI", {"c_s": (0.5, ""), "V": (V, "N"), "S": (S, "N*mm"), "EI": (stiffness, "N*mm2")}, "N/mm",
+        "Shear flow",
+        "q",
+        "c_s*V*S/EI",
+        {"c_s": (0.5, ""), "V": (V, "N"), "S": (S, "N*mm"), "EI": (stiffness, "N*mm2")},
+        "N/mm",
         "Jourawski's formula; halves by mirror symmetry",
-    )  # fmt: skip
+    )
     tau = w.step(
         "Shear stress in the bond", "tau", "q/(b*c)", {"q": (q, "N/mm"), "b": (70.0, "mm"), "c": (1.0, "")}, "MPa"
     )
@@ -356,15 +358,19 @@ def steps() -> list[dict[str, Any]]:
         "EN 1995-1-1:2004 (9.10)",
     )
     f_d = w.step(
-        "Resistance: rolling shear in web L", "f_d", "k_h*f_k/gamma", {"k_h": (k, ""), "f_k": (1.28, "MPa"), "gamma": (3.0, "")}, "MPa",
+        "Resistance: rolling shear in web L",
+        "f_d",
+        "k_h*f_k/gamma",
+        {"k_h": (k, ""), "f_k": (1.28, "MPa"), "gamma": (3.0, "")},
+        "MPa",
         "record M-PLY-12 revision 2",
-    )  # fmt: skip
+    )
     w.step("Utilisation", "eta", "tau/f_d", {"tau": (tau, "MPa"), "f_d": (f_d, "MPa")})
     w.begin("Deflection")
     w.note(
         "Greatest deflection",
-        "Direct stiffness, exact piecewise polynomials over 3 intervals; extremes by roots. Equilibrium: reactions less loads "
-        "leave 0 N of 28 200 N.",
+        "Direct stiffness, exact piecewise polynomials over 3 intervals; extremes by roots. Equilibrium: reactions "
+        "less loads leave 0 N of 28 200 N.",
         21.89,
         "mm",
         symbol="u_max",
