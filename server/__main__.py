@@ -4,8 +4,10 @@ from __future__ import annotations
 
 import argparse
 import json
+import socket
 import sys
 from collections.abc import Mapping, Sequence
+from dataclasses import replace
 from pathlib import Path
 from typing import TYPE_CHECKING
 
@@ -13,6 +15,8 @@ from server import ENGINE
 from server.errors import DocumentError, JointError
 
 if TYPE_CHECKING:  # each command imports what it needs: a check on the command line does not wait for the web
+    from sqlalchemy import Engine
+
     from server import documents
     from server.settings import Settings
 
@@ -87,23 +91,62 @@ def _serve(options: argparse.Namespace) -> int:
 
 
 def _demo(options: argparse.Namespace) -> int:
-    from server.jobs.demo import fill
+    from server.jobs import demo
     from server.settings import Settings
 
     settings = Settings(data=options.data, host=options.host, port=options.port)
-    fill(settings.data)
+    demo.fill(_opened(settings))
     return _listen(settings)
 
 
 def _listen(settings: Settings) -> int:
+    """Serve until stopped; the address is printed once it answers."""
     import uvicorn
 
     from server.app import create_app
 
-    app = create_app(settings)
-    print(f"Bondwright is ready: {settings.address}  (Ctrl+C stops it)", flush=True)
-    uvicorn.run(app, host=settings.host, port=settings.port, log_level="warning", access_log=False)
+    class Announced(uvicorn.Server):
+        async def startup(self, sockets: list[socket.socket] | None = None) -> None:
+            await super().startup(sockets)
+            if self.started:
+                print(f"Bondwright is ready: {replace(settings, port=port).address}  (Ctrl+C stops it)", flush=True)
+
+    door = _door(settings)
+    port = int(door.getsockname()[1])
+    config = uvicorn.Config(create_app(settings), log_level="warning", access_log=False)
+    Announced(config).run(sockets=[door])
     return PASS
+
+
+def _door(settings: Settings) -> socket.socket:
+    family = socket.AF_INET6 if ":" in settings.host else socket.AF_INET
+    door = socket.socket(family, socket.SOCK_STREAM)
+    if sys.platform != "win32":  # there it would let two programs share one port
+        door.setsockopt(socket.SOL_SOCKET, socket.SO_REUSEADDR, 1)
+    try:
+        door.bind((settings.host, settings.port))
+    except OSError as error:
+        door.close()
+        raise JointError(
+            f"Port {settings.port} of {settings.host} cannot be opened ({error.strerror}). Is the program running "
+            "already? Stop it, or choose another port with --port."
+        ) from error
+    return door
+
+
+def _opened(settings: Settings) -> Engine:
+    """The shop's record book, made or brought up to date."""
+    from server import storage
+
+    try:
+        settings.data.mkdir(parents=True, exist_ok=True)
+    except OSError as error:
+        raise JointError(
+            f"The folder {settings.data} cannot be made ({error.strerror}); choose another with --data."
+        ) from error
+    engine = storage.engine(settings.records)
+    storage.migrate(engine)
+    return engine
 
 
 def _check(options: argparse.Namespace) -> int:
@@ -144,9 +187,7 @@ def _resolved(document: documents.Document, settings: Settings) -> documents.Doc
         return document
     from server import library, storage
 
-    engine = storage.engine(settings.records)
-    storage.migrate(engine)
-    with storage.reading(engine) as session:
+    with storage.reading(_opened(settings)) as session:
         return library.resolve(session, document)
 
 
