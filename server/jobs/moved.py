@@ -30,7 +30,7 @@ def moved(old: SavedRevision, new: SavedRevision) -> list[Moved]:
     found = [
         *_pairs(_values(old, display), _values(new, display), "values"),
         *_pairs(_given(old), _given(new), "given"),
-        *_pairs(_result(old), _result(new), "result"),
+        *_pairs(_result(old, display), _result(new, display), "result"),
     ]
     return [difference for difference in found if difference.old != difference.new]
 
@@ -63,7 +63,7 @@ def _given(saved: SavedRevision) -> dict[str, str]:
     }
 
 
-def _result(saved: SavedRevision) -> dict[str, str]:
+def _result(saved: SavedRevision, display: str) -> dict[str, str]:
     result = saved.result
     found = {
         "verdict": str(result["verdict"]),
@@ -73,9 +73,10 @@ def _result(saved: SavedRevision) -> dict[str, str]:
     for part, one in (("joints", "joint"), ("pieces", "piece")):
         for entry in result.get(part, ()):
             found[f"{one} {entry['id']}: utilisation"] = _share(entry.get("utilisation"))
-    for number, entry in enumerate(result.get("deflection_limits", ()), start=1):
+    for entry in result.get("deflection_limits", ()):
         what = "long-term deflection" if entry.get("long_term") else "deflection"
-        found[f"{what} limit {number}: utilisation"] = _share(entry.get("utilisation"))
+        start, end = (units.show(entry[end], "length", display) for end in ("from", "to"))
+        found[f"{what} from {start} to {end}: utilisation"] = _share(entry.get("utilisation"))
     found["missing"] = "; ".join(map(str, result.get("missing", ()))) or _NOTHING
     found["program"] = saved.engine
     return found

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import copy
+
 import pytest
 
 from server import jobs, library, units
@@ -80,14 +82,17 @@ def test_nothing_moves_when_nothing_changed(session: Session) -> None:
 def test_what_was_given_is_compared_as_typed(session: Session) -> None:
     job = start_job(session)
     raw = document(shear_strength=4.2)
+    raw["member"]["deflection_limit"] = 300
     old = save(session, job, raw)
-    raw = document(shear_strength=4.2)
+    raw = copy.deepcopy(raw)
     raw["loads"]["imposed"][0]["value"] = "0.9 kN/m"
     raw["note"] = "heavier"
     found = jobs.moved(old, save(session, job, raw, check_id=old.check_id))
     given = {one.what: (one.old, one.new) for one in found if one.about == "given"}
     assert given == {"loads.imposed[0].value": ("0.8 kN/m", "0.9 kN/m"), "note": ("–", "heavier")}
-    assert {one.what for one in found if one.about == "result"} >= {"utilisation", "piece lower: utilisation"}
+    results = {one.what for one in found if one.about == "result"}
+    span = f"{units.show(0, 'length')} to {units.show(3000, 'length')}"
+    assert results >= {"utilisation", "piece lower: utilisation", f"deflection from {span}: utilisation"}
 
 
 def test_a_record_that_can_no_longer_be_filled_is_a_fault_and_saves_nothing(session: Session) -> None:
