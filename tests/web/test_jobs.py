@@ -8,9 +8,11 @@ from pathlib import Path
 import pytest
 from fastapi.testclient import TestClient
 
+from server import jobs, storage
 from server.app import create_app
 from server.settings import Settings
 from tests.web.conftest import ADDRESS
+from tests.web.test_api import changed
 
 JOB = {
     "number": "26-014",
@@ -114,6 +116,23 @@ class TestHeading:
         ):
             assert answer.status_code == 404
             assert "There is no" in answer.text or "There is nothing" in answer.text
+
+
+class TestChecksOfAJob:
+    @pytest.mark.parametrize(("strength", "word", "share"), [(1.2, "Pass", "0.50"), (0.5, "Fail", "1.20")])
+    def test_they_stand_with_verdict_utilisation_and_sheet(
+        self, client: TestClient, job: str, strength: float, word: str, share: str
+    ) -> None:
+        document = changed("adhesives/glue", {"shear_strength": strength, "status": "approved"})
+        with storage.reading(client.app.state.records.engine) as session:  # type: ignore[attr-defined]
+            saved = jobs.save(session, job_id=1, raw=document, mark="B1")
+        text = client.get(job).text
+        assert f'<span class="word">{word}</span><span class="used">{share}</span>' in text
+        assert "two planks" in text
+        assert f'href="/checks/{saved.check_id}"' in text
+        assert client.get(f"/checks/{saved.check_id}/revisions/1/sheet.pdf").content.startswith(b"%PDF")
+        listed = client.get("/jobs").text
+        assert f'<span class="word">{word}</span><span class="used">{share}</span>' in listed
 
 
 class TestSearch:

@@ -5,6 +5,9 @@ from __future__ import annotations
 import pytest
 from fastapi.testclient import TestClient
 
+from server import jobs, storage
+from tests.web.test_api import changed
+
 BOND = {
     "name": "Brackwater R2 on birch ply",
     "key": "",
@@ -160,6 +163,19 @@ class TestRevise:
         answer = client.get(f"{bond}?revision={revision}")
         assert answer.status_code == 404
         assert "it has revisions 1 to 1" in answer.text
+
+
+class TestUse:
+    def test_a_record_says_which_checks_stand_on_it(self, client: TestClient, bond: str) -> None:
+        client.post("/jobs", data={"number": "26-014", "title": "Planks", "paper": "A4", "display": "SI"})
+        document = changed("adhesives/glue", {"record": "B-001"})
+        with storage.reading(client.app.state.records.engine) as session:  # type: ignore[attr-defined]
+            saved = jobs.save(session, job_id=1, raw=document, mark="B7")
+        text = client.get(bond).text
+        assert "No saved check" not in text
+        assert f'<a href="/checks/{saved.check_id}/revisions/1">B7</a>' in text
+        assert '<a href="/jobs/1">26-014</a>' in text
+        assert 'class="word">Pass<' in text
 
 
 class TestList:
