@@ -14,6 +14,7 @@ from server import storage
 from server.errors import DocumentError, Fault
 from server.jobs.shop import DISPLAYS, PAPERS, shop
 from server.library import NotFoundError, fields
+from server.library.records import MOST
 from server.storage import Session
 from server.storage.tables import Check as CheckRow
 from server.storage.tables import CheckRevision as RevisionRow
@@ -21,7 +22,6 @@ from server.storage.tables import Job as JobRow
 
 _SEARCH = table("job_search", column("rowid"), column("job_search"))
 _WORST_FIRST = ("fail", "not proven", "pass")
-MOST = 1_000_000_000  # beyond any id or page; SQLite refuses numbers of more than 64 bits
 
 
 @dataclass(frozen=True)

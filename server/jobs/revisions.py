@@ -10,8 +10,8 @@ from sqlalchemy import Row, Select, func, select
 from sqlalchemy.orm import aliased, undefer
 
 from server.jobs import headings
-from server.jobs.headings import MOST
 from server.library import NotFoundError
+from server.library.records import MOST
 from server.storage import Session
 from server.storage.tables import Check as CheckRow
 from server.storage.tables import CheckRevision as RevisionRow

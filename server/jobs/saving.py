@@ -17,6 +17,7 @@ from server.jobs.content import bytes_hash, content_hash, leaves
 from server.jobs.revisions import SavedRevision, revision
 from server.jobs.shop import shop
 from server.library import NotFoundError, fields
+from server.library.records import MOST
 from server.storage import Session
 from server.storage.tables import Check as CheckRow
 from server.storage.tables import CheckRevision as RevisionRow
@@ -149,7 +150,7 @@ def _heading(
         number = (session.scalar(select(func.max(CheckRow.number)).where(CheckRow.job_id == job_id)) or 0) + 1
         n, old_mark = 1, f"C{number}"
     else:
-        row = session.get(CheckRow, check_id, populate_existing=True) if 0 < check_id < headings.MOST else None
+        row = session.get(CheckRow, check_id, populate_existing=True) if 0 < check_id < MOST else None
         if row is None or row.job_id != job_id:
             raise NotFoundError(f"Job {job.number} has no check with the id {check_id}. Look for it under its job.")
         newest = session.scalar(select(func.max(RevisionRow.n)).where(RevisionRow.check_id == check_id)) or 0

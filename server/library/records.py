@@ -23,7 +23,7 @@ from server.storage.tables import RecordRevision as RevisionRow
 from server.storage.tables import compact
 
 _KEY = re.compile(r"[A-Za-z0-9](?:[A-Za-z0-9._-]{0,38}[A-Za-z0-9])?")
-_MOST = 1_000_000_000  # beyond any revision or page; SQLite refuses numbers of more than 64 bits
+MOST = 1_000_000_000  # beyond any revision or page; SQLite refuses numbers of more than 64 bits
 _SEARCH = table("record_search", column("rowid"), column("record_search"))
 
 
@@ -90,7 +90,7 @@ def add(
         raise DocumentError([Fault("group", f"{group[:60]!r} is not a group; choose one of {', '.join(GROUPS)}.")])
     words = {"name": name, "source": source, "status": status, "note": note, "made_by": made_by, "reason": reason}
     key = key.strip()
-    faults = [] if not key or _KEY.fullmatch(key) else [_bad_key(key)]
+    faults = [] if not key or is_key(key) else [_bad_key(key)]
     content = _checked(GROUPS[group], words, values, details or {}, faults)
     at = storage.utc_text(now)
     with storage.write(session):
@@ -158,7 +158,7 @@ def edit(
 def get(session: Session, key: str, revision: int | None = None) -> Record:
     """Return a revision of record ``key``, the newest without ``revision``; NotFoundError where there is none."""
     query = _revisions().where(RecordRow.key == _plausible(session, key))
-    query = query.where(RevisionRow.n == (_newest() if revision is None else min(max(revision, 0), _MOST)))
+    query = query.where(RevisionRow.n == (_newest() if revision is None else min(max(revision, 0), MOST)))
     row = session.execute(query).one_or_none()
     if row is None:
         newest = session.scalar(select(func.max(RevisionRow.n)).join(RecordRow).where(RecordRow.key == key))
@@ -212,7 +212,7 @@ def search(
         order = [literal_column("record_search.rank"), RecordRow.key]
     total = session.scalar(select(func.count()).select_from(RecordRow).join(RevisionRow).where(*conditions)) or 0
     query = _revisions().where(*conditions).order_by(*order).limit(min(max(limit, 0), 500))
-    query = query.offset(min(max(offset, 0), _MOST))
+    query = query.offset(min(max(offset, 0), MOST))
     return Found(tuple(_record(row) for row in session.execute(query)), total)
 
 
@@ -328,9 +328,18 @@ def _store(session: Session, row: RecordRow, n: int, content: Mapping[str, Any],
     )
 
 
+def is_key(text: str) -> bool:
+    """Return whether ``text`` can be a record's key.
+
+    >>> is_key("B-001"), is_key("B 001")
+    (True, False)
+    """
+    return _KEY.fullmatch(text) is not None
+
+
 def _plausible(session: Session, key: str) -> str:
     """Return ``key`` if it can be one at all: what cannot may not even be text the database takes."""
-    if not _KEY.fullmatch(key):
+    if not is_key(key):
         raise _no_record(session, key)
     return key
 

@@ -7,6 +7,7 @@ from dataclasses import dataclass
 from sqlalchemy import func, select
 from sqlalchemy.orm import aliased
 
+from server.library.records import MOST, is_key
 from server.storage import Session
 from server.storage.tables import Check, CheckRevision, CheckValue, Job
 
@@ -34,6 +35,8 @@ def where_used(
     session: Session, key: str, *, revision: int | None = None, limit: int = 500, offset: int = 0
 ) -> list[Use]:
     """Return the saved check revisions that used record ``key`` (that ``revision`` of it), newest first."""
+    if not is_key(key):
+        return []
     later = aliased(CheckRevision)
     newest = select(func.max(later.n)).where(later.check_id == Check.id).scalar_subquery()
     query = (
@@ -43,11 +46,11 @@ def where_used(
         .join(Job, Job.id == Check.job_id)
         .where(CheckValue.record_key == key)
         .order_by(CheckRevision.id.desc(), CheckValue.name)
-        .limit(limit)
-        .offset(offset)
+        .limit(min(max(limit, 0), MOST))
+        .offset(min(max(offset, 0), MOST))
     )
     if revision is not None:
-        query = query.where(CheckValue.record_revision == revision)
+        query = query.where(CheckValue.record_revision == min(max(revision, 0), MOST))
     return [
         Use(
             record_revision=value.record_revision,

@@ -1,8 +1,7 @@
 """The door to the record book: one SQLite file, many readers, one writer at a time.
 
 A page opens a session with :func:`reading`. Whoever saves something wraps that in :func:`write`, which is short: work
-that takes long (checking, drawing a sheet) is done before it. Every setting here was measured; shared reasons stand in
-DEVELOPERS.md.
+that takes long (checking, drawing a sheet) is done before it. Every setting here was measured.
 """
 
 from __future__ import annotations
@@ -15,7 +14,7 @@ from pathlib import Path
 
 from sqlalchemy import Connection, Engine, create_engine, event
 from sqlalchemy import orm as sa_orm
-from sqlalchemy.exc import OperationalError
+from sqlalchemy.exc import DatabaseError
 from sqlalchemy.orm import ORMExecuteState
 from sqlalchemy.pool import ConnectionPoolEntry
 
@@ -140,7 +139,7 @@ def plain_words() -> Iterator[None]:
     """Turn the database's own complaints that a person can act on into a StorageError."""
     try:
         yield
-    except OperationalError as error:
+    except DatabaseError as error:
         said = str(error.orig)
         for sign, message in _PLAIN.items():
             if sign in said:
@@ -153,5 +152,7 @@ _PLAIN: dict[str, str] = {
     "disk is full": "The disk is full; nothing was saved. Free some space and save again.",
     "readonly": "The record book may only be read by this user; nothing was saved. Check who owns its folder.",
     "unable to open": "The record book cannot be opened. Check that its folder exists and may be written to.",
-    "disk I/O": "The disk did not answer; nothing was saved. Check the disk, then the record book (bondwright backup).",
+    "malformed": "The record book is damaged. Keep the file and restore a backup (bondwright restore).",
+    "not a database": "The file at the record book's place is not one. Move it away, or restore a backup.",
+    "disk I/O": "The disk did not answer; nothing was saved. Check the disk, then start again.",
 }

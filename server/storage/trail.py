@@ -44,7 +44,7 @@ def note(
 
 def lines(session: Session, *, subject: str | None = None, limit: int = 100, offset: int = 0) -> list[TrailLine]:
     """Return lines, newest first; of one subject when it is given."""
-    query = select(TrailEntry).order_by(TrailEntry.id.desc()).limit(limit).offset(offset)
+    query = select(TrailEntry).order_by(TrailEntry.id.desc()).limit(min(limit, 1000)).offset(min(offset, 1_000_000_000))
     if subject is not None:
         query = query.where(TrailEntry.subject == subject)
     return [

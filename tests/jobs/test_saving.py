@@ -322,6 +322,8 @@ def test_where_a_record_is_used(session: Session) -> None:
     assert (found[0].name, found[0].job_number, found[0].mark, found[0].verdict) == ("glue", "J-001", "RB1", "pass")
     assert [use.check_revision_id for use in library.where_used(session, "B-001", revision=1)] == [first.id]
     assert library.where_used(session, "B-002") == []
+    assert library.where_used(session, "\ud800") == []
+    assert library.where_used(session, "B-001", revision=10**30, offset=10**30) == []
 
 
 def test_an_altered_revision_is_noticed(session: Session, book: Engine) -> None:

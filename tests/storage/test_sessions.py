@@ -144,6 +144,12 @@ def test_a_missing_folder_is_told_in_plain_words(tmp_path: Path) -> None:
         storage.migrate(engine)
 
 
+def test_a_file_that_is_no_record_book_is_told_in_plain_words(tmp_path: Path) -> None:
+    (tmp_path / "book.db").write_bytes(b"a letter to the customer " * 200)
+    with pytest.raises(storage.StorageError, match="is not one"):
+        storage.migrate(storage.engine(tmp_path / "book.db"))
+
+
 def test_json_keeps_the_order_of_names_and_every_digit(book: Engine) -> None:
     given = {"b": 0.1 + 0.2, "a": "Ü ½ \"'", "n": {"z": 1, "y": [1, 2.0, None, True]}}
     with storage.writing(book) as session:
