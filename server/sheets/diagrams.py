@@ -1,12 +1,13 @@
 """Shear, moment, deflection and joint flow along the member, drawn from the stored polylines.
 
-Envelopes over the combinations: the greatest values solid, the least dashed, both lightly filled to the zero line. Shear is drawn
-up where positive; sagging moments and deflections are drawn down, moments therefore on the side in tension. Each drawing says so.
+Envelopes over the combinations: the greatest values solid, the least dashed, both lightly filled to the zero line.
+Shear is drawn up where positive; sagging moments and deflections are drawn down, moments therefore on the side in
+tension. Each drawing says so.
 """
 
 from __future__ import annotations
 
-from collections.abc import Mapping, Sequence
+from collections.abc import Mapping
 from dataclasses import dataclass
 from math import ceil, floor, log10
 from typing import Any
@@ -17,12 +18,13 @@ from numpy.typing import NDArray
 from server.errors import InputError
 from server.sheets import drafting
 from server.sheets.drafting import Scale
-from server.sheets.section_drawing import joint_numbers
+from server.sheets.section_view import joint_numbers
 from server.sheets.svg import CAP, FONT_SIZE, Drawing, shorten, text_width
 
 LEFT, RIGHT, HEAD, FOOT = 58.0, 22.0, 22.0, 32.0
 MOST_POINTS = 120
-LANE, LEAST_LANE = 54.0, 34.0
+LANES = ((1, 110.0), (3, 72.0), (8, 54.0), (10**9, 36.0))
+"""Height of a lane by the number of lanes."""
 LETTERS = 15.0
 
 
@@ -46,7 +48,13 @@ FLOW = Quantity("Shear flow", "flow", False, "sign as the shear force")
 
 
 def diagram_svg(
-    result: Mapping[str, Any], quantity: str, *, display: str = "SI", width: float = 640.0, height: float = 210.0, prefix: str = ""
+    result: Mapping[str, Any],
+    quantity: str,
+    *,
+    display: str = "SI",
+    width: float = 640.0,
+    height: float = 210.0,
+    prefix: str = "",
 ) -> str:
     """Draw the envelope of "shear", "moment", "deflection" or "deflection_long_term" along the member as SVG.
 
@@ -55,11 +63,27 @@ def diagram_svg(
     if quantity not in QUANTITIES:
         raise InputError("quantity", f"quantity is {quantity!r}; choose one of {', '.join(QUANTITIES)}.")
     extremes = result.get("member", {}).get(quantity)
-    return _diagram(result, QUANTITIES[quantity], quantity, result["diagrams"].get(quantity), extremes, display, width, height, prefix)
+    return _diagram(
+        result,
+        QUANTITIES[quantity],
+        quantity,
+        result["diagrams"].get(quantity),
+        extremes,
+        display,
+        width,
+        height,
+        prefix,
+    )
 
 
 def joint_svg(
-    result: Mapping[str, Any], joint_id: str, *, display: str = "SI", width: float = 640.0, height: float = 180.0, prefix: str = ""
+    result: Mapping[str, Any],
+    joint_id: str,
+    *,
+    display: str = "SI",
+    width: float = 640.0,
+    height: float = 180.0,
+    prefix: str = "",
 ) -> str:
     """Draw the shear flow of one joint along the member as SVG."""
     number = joint_numbers(result).get(joint_id, 0)
@@ -69,7 +93,7 @@ def joint_svg(
 
 
 def flow_svg(result: Mapping[str, Any], *, display: str = "SI", width: float = 640.0, prefix: str = "") -> str:
-    """Draw the shear flow of every joint along the member, one lane a joint (alike joints share one), all to one scale."""
+    """Draw the flow of every joint along the member, one lane a joint (alike joints share one), all to one scale."""
     drawing = Drawing(width)
     title = str(result.get("title") or "the member")
     bands = result["diagrams"].get("joints") or {}
@@ -77,12 +101,14 @@ def flow_svg(result: Mapping[str, Any], *, display: str = "SI", width: float = 6
     if not bands or not len(at):
         drawing.height = 26
         drawing.text(8, 17, "Shear flow in the joints: there is no joint, or no load combination asks for it.")
-        return drawing.svg("diagram flow", f"Joint flow, {title}", f"Shear flow in the joints of {title}: nothing to draw")
+        return drawing.svg(
+            "diagram flow", f"Joint flow, {title}", f"Shear flow in the joints of {title}: nothing to draw"
+        )
     lanes = _lanes(bands)
     high = max(0.0, *(float(lane.high.max()) for lane in lanes))
     low = min(0.0, *(float(lane.low.min()) for lane in lanes))
     scale = drafting.scale_for("flow", max(high, -low), display)
-    tall = LANE if len(lanes) <= 8 else LEAST_LANE
+    tall = next(lane for most, lane in LANES if len(lanes) <= most)
     bottom = HEAD + len(lanes) * (tall + LETTERS) + 4
     frame = _Plot(result, at, low, high, scale, False, display, width, HEAD, bottom)
     frame.places(drawing)
@@ -138,21 +164,41 @@ def _joint_peak(at: NDArray[np.float64], lane: Lane, joint: Mapping[str, Any]) -
 
 
 def _diagram(
-    result: Mapping[str, Any], quantity: Quantity, key: str, band: Mapping[str, Any] | None, extremes: Mapping[str, Any] | None,
-    display: str, width: float, height: float, prefix: str,
-) -> str:  # fmt: skip
+    result: Mapping[str, Any],
+    quantity: Quantity,
+    key: str,
+    band: Mapping[str, Any] | None,
+    extremes: Mapping[str, Any] | None,
+    display: str,
+    width: float,
+    height: float,
+    prefix: str,
+) -> str:
     drawing = Drawing(width)
     drawing.height = height
     title = str(result.get("title") or "the member")
     if not band or not len(result["diagrams"]["at"]):
         drawing.height = 26
         drawing.text(8, 17, f"{quantity.name}: no load combination asks for it, so there is nothing to draw.")
-        return drawing.svg(f"diagram {key}", f"{quantity.name}, {title}", f"{quantity.name} of {title}: nothing to draw")
+        return drawing.svg(
+            f"diagram {key}", f"{quantity.name}, {title}", f"{quantity.name} of {title}: nothing to draw"
+        )
     at, high, low = (np.asarray(values, dtype=float) for values in (result["diagrams"]["at"], band["max"], band["min"]))
     peaks = _peaks(at, high, low, extremes)
     greatest = max(abs(peaks[0].value), abs(peaks[1].value))
     scale = drafting.scale_for(quantity.kind, greatest, display)
-    plot = _Plot(result, at, min(0.0, peaks[1].value), max(0.0, peaks[0].value), scale, quantity.down, display, width, HEAD, height - FOOT)
+    plot = _Plot(
+        result,
+        at,
+        min(0.0, peaks[1].value),
+        max(0.0, peaks[0].value),
+        scale,
+        quantity.down,
+        display,
+        width,
+        HEAD,
+        height - FOOT,
+    )
     plot.axes(drawing)
     curve = plot.curve(drawing, high, low)
     plot.zero_line(drawing)
@@ -282,7 +328,8 @@ class _Plot:
             return 1
         second = self._path(xs, low)
         drawing.under.append(
-            f'<path class="min" d="{second}" fill="#000" fill-opacity=".07" stroke-width="1.2" stroke-dasharray="6 2.5"/>'
+            f'<path class="min" d="{second}" fill="#000" fill-opacity=".07" '
+            'stroke-width="1.2" stroke-dasharray="6 2.5"/>'
         )
         return 2
 
@@ -318,14 +365,17 @@ class _Plot:
         most = f"{self.scale.full(abs(peak.value))} at {drafting.place_text(peak.at, self.display)}{why}"
         if not peak.value:
             most = "0 everywhere"
-        names = f"{', '.join(str(numbers.get(name, '?')) for name in lane.names)} = {', '.join(lane.names)}"
+        names = ", ".join(str(numbers.get(name, "?")) for name in lane.names)
+        names = f"{names} = {', '.join(lane.names)}" if len(lane.names) <= 2 else f"joints {names}"
         room = self.right - self.left
         most = shorten(most, 0.6 * room)
         drawing.text(self.left + 4, self.top - 3, shorten(names, room - text_width(most) - 20))
         drawing.text(self.right - 4, self.top - 3, most, "end")
         return f"joint {names}: largest {most}"
 
-    def _label_peak(self, drawing: Drawing, peak: Peak, text: str, taken: list[tuple[float, float, float, float]]) -> None:
+    def _label_peak(
+        self, drawing: Drawing, peak: Peak, text: str, taken: list[tuple[float, float, float, float]]
+    ) -> None:
         """A dot on the curve, and the text beyond it, away from the zero line and inside the frame."""
         x, y = self.x(peak.at), self.y(peak.value)
         outward = 1 if y >= self.zero else -1
@@ -336,7 +386,7 @@ class _Plot:
         box = (centre - half - 2, middle - 6.5, centre + half + 2, middle + 6.5)
         for left, top, right, bottom in taken:
             if box[0] < right and left < box[2] and box[1] < bottom and top < box[3]:
-                middle = (bottom + 7 if outward > 0 else top - 7)
+                middle = bottom + 7 if outward > 0 else top - 7
         taken.append((centre - half - 2, middle - 6.5, centre + half + 2, middle + 6.5))
         drawing.dot(x, y, 2.4)
         drawing.backing(centre - half - 2, middle - 6, 2 * half + 4, 12.5)

@@ -1,8 +1,8 @@
 """Lettering of quantities on drawings and dimension lines, as on a drafting board.
 
-A drawing has one unit for one kind of quantity, chosen by its greatest value, so that a reader compares numbers and not units.
-Lengths of sections are dimensioned in mm, or in inches with the fractions of a rule where a size is one; places along a member in
-m, or in feet and inches.
+A drawing has one unit for one kind of quantity, chosen by its greatest value, so that a reader compares numbers and
+not units. Lengths of sections are dimensioned in mm, or in inches with the fractions of a rule where a size is one;
+places along a member in m, or in feet and inches.
 """
 
 from __future__ import annotations
@@ -43,7 +43,7 @@ def _consistent(stored: str) -> tuple[float, str, float]:
     return float("inf"), readable_unit(unit), factor
 
 
-# (upper limit in result units, unit, factor) in rising order; the last one has no limit. The same units as in the tables.
+# (upper limit in result units, unit, factor) in rising order; the last has no limit. Units as in the tables.
 _SCALES: dict[str, dict[str, tuple[tuple[float, str, float], ...]]] = {
     "SI": {
         "force": ((1e3, "N", 1.0), (float("inf"), "kN", 1e-3)),
@@ -79,7 +79,7 @@ def number(value: float, digits: int = 4) -> str:
 
 @lru_cache(maxsize=4096)
 def size_text(mm: float, display: str) -> str:
-    """A dimension of a section without its unit: 12.5, or 3-1/2 where the inches are a fraction of a rule, else 0.703."""
+    """A section's dimension without its unit: 12.5, or 3-1/2 where the inches are a rule's fraction, else 0.703."""
     if display != "US":
         return f"{mm:.2f}".rstrip("0").rstrip(".") if mm < 10 else f"{mm:.1f}".removesuffix(".0")
     inches = mm / INCH
@@ -109,7 +109,7 @@ def place_text(mm: float, display: str) -> str:
         return f"{mm / 1000:.3f}".rstrip("0").rstrip(".").replace("-", MINUS) + " m"
     inches = mm / INCH
     sixteenths = round(inches * 16)
-    if inches < 0 or abs(inches - sixteenths / 16) > 0.005:
+    if inches < 0 or abs(inches - sixteenths / 16) > 0.0005:
         return f"{mm / FOOT:.3f}".rstrip("0").rstrip(".").replace("-", MINUS) + " ft"
     feet, rest = divmod(sixteenths, 192)
     if not rest:
@@ -130,20 +130,26 @@ def chain(
 ) -> Chain | None:
     """Dimensions between levels, or None where they do not fit.
 
-    ``texts[i]`` belongs between level i and i+1; ``room_of`` is the height a text takes in a vertical chain (None: its own
-    width, as in a horizontal one). Layers thinner than two pixels get ticks and no text; equal neighbours are lettered once,
-    "12 × 20".
+    ``texts[i]`` belongs between level i and i+1; ``room_of`` is the height a text takes in a vertical chain (None:
+    its own width, as in a horizontal one). Layers thinner than two pixels get ticks and no text; equal neighbours are
+    lettered once, "12 × 20".
     """
     spans = [(i, i + 1, text) for i, text in enumerate(texts) if abs(pixels[i + 1] - pixels[i]) >= 2.0]
     length = abs(pixels[-1] - pixels[0])
 
     def fits(found: Sequence[tuple[int, int, str]]) -> bool:
-        return sum((room_of or text_width(text)) + 3 for _, _, text in found) <= 0.92 * length
+        sizes = [room_of or text_width(text) for _, _, text in found]
+        if sum(sizes) + 3 * len(sizes) > 0.9 * length:
+            return False
+        wanted = sorted(0.5 * (pixels[i] + pixels[j]) for i, j, _ in found)
+        sizes = sizes if pixels[-1] >= pixels[0] else sizes[::-1]
+        placed = spread(wanted, sizes, min(pixels), max(pixels), 3)
+        return all(abs(a - b) <= 14 for a, b in zip(wanted, placed, strict=True))
 
     if not fits(spans):
         spans = _grouped(spans)
-        if len(spans) < 1 or not fits(spans):
-            return None
+    if not spans or not fits(spans):
+        return None
     middles = tuple((0.5 * (pixels[i] + pixels[j]), text) for i, j, text in spans)
     ticks = [pixels[0]]
     for place in pixels[1:-1]:
@@ -198,7 +204,7 @@ def dimension_up(drawing: Drawing, x: float, dimensions: Chain) -> None:
     ticks_up(drawing, x, dimensions.ticks)
     order = sorted(dimensions.texts)
     wanted = [y for y, _ in order]
-    placed = spread(wanted, [FONT_SIZE] * len(order), min(dimensions.ticks) - 8, max(dimensions.ticks) + 8, 1)
+    placed = spread(wanted, [FONT_SIZE] * len(order), min(dimensions.ticks) + 1, max(dimensions.ticks) - 1, 1)
     for y, want, (_, text) in zip(placed, wanted, order, strict=True):
         if abs(y - want) > 3:
             drawing.line("thin", x, want, x - 7, y)

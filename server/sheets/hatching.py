@@ -1,9 +1,9 @@
 """Hatching of cut pieces by material kind, as in ISO 128-3 (general hatching) and drafting practice.
 
-Timber shows its end grain, plywood its layers (every second one across), steel paired and aluminium solid-and-broken lines at 45
-degrees, fibre composites a net, cores small cells, anything else plain 45 degree lines. Touching pieces of one metal are hatched
-in opposite directions. The sorts for wood and metals are common practice, not a published rule, so the drawing's own key names
-the material of every sort and nothing rests on the hatching alone.
+Timber shows its end grain, plywood its layers (every second one across), steel paired and aluminium solid-and-broken
+lines at 45 degrees, fibre composites a net, cores small cells, anything else plain 45 degree lines. Touching pieces
+of one metal are hatched in opposite directions. The sorts for wood and metals are common practice, not a published
+rule, so the drawing's own key names the material of every sort and nothing rests on the hatching alone.
 """
 
 from __future__ import annotations
@@ -15,18 +15,21 @@ from math import hypot
 from server.sheets.svg import Drawing, polygon
 
 # The first word found in the material's kind decides; layered wood stands before wood.
-_WORDS = (
-    ("plywood", "layers"), ("ply", "layers"), ("lvl", "layers"), ("osb", "layers"), ("clt", "layers"), ("veneer", "layers"),
-    ("mdf", "board"), ("hardboard", "board"), ("particle", "board"), ("fibreboard", "board"), ("fiberboard", "board"),
-    ("steel", "pairs"), ("stainless", "pairs"), ("iron", "pairs"),
-    ("gfrp", "net"), ("cfrp", "net"), ("frp", "net"), ("grp", "net"), ("glass", "net"), ("composite", "net"),
-    ("carbon", "net"), ("laminate", "net"), ("plastic", "net"),
-    ("foam", "cells"), ("core", "cells"), ("balsa", "cells"), ("honeycomb", "cells"), ("cork", "cells"), ("insulation", "cells"),
-    ("alumin", "broken"), ("metal", "plain"), ("brass", "plain"), ("bronze", "plain"), ("copper", "plain"),
-    ("concrete", "stones"), ("mortar", "stones"), ("screed", "stones"),
-    ("timber", "rings"), ("wood", "rings"), ("glulam", "rings"), ("lumber", "rings"), ("spruce", "rings"), ("pine", "rings"),
-    ("oak", "rings"), ("fir", "rings"), ("larch", "rings"), ("beech", "rings"),
-)  # fmt: skip
+_WORDS: tuple[tuple[str, str], ...] = tuple(
+    (word, sort)
+    for sort, words in (
+        ("layers", "plywood ply lvl osb clt veneer"),
+        ("board", "mdf hardboard particle fibreboard fiberboard"),
+        ("pairs", "steel stainless iron"),
+        ("net", "gfrp cfrp frp grp glass composite carbon laminate plastic"),
+        ("cells", "foam core balsa honeycomb cork insulation"),
+        ("broken", "alumin"),
+        ("plain", "metal brass bronze copper"),
+        ("stones", "concrete mortar screed"),
+        ("rings", "timber wood glulam lumber spruce pine oak fir larch beech"),
+    )
+    for word in words.split()
+)
 
 # Tiles: size, then strokes. Lines keep clear of the tile's edge, where half of a stroke would be cut off.
 _TILES = {
@@ -97,7 +100,7 @@ def _tile(drawing: Drawing, sort: str, variant: int) -> str:
     width, height, strokes = _TILES[sort]
     turn = 45 if sort in _TURNED else 0
     if variant:
-        turn = -45 if sort in _TURNED else 90 if sort == "layers" else 0
+        turn = {"net": 20, "layers": 90}.get(sort, -45 if sort in _TURNED else 0)
     place = f' patternTransform="rotate({turn})"' if turn else ""
     definition = (
         f'<pattern id="~{name}" width="{width}" height="{height}" patternUnits="userSpaceOnUse"{place}>'
@@ -118,7 +121,8 @@ def _rings(drawing: Drawing, data: str, left: float, top: float, right: float, b
     reach = hypot(max(pith_x - left, right - pith_x), height + away)
     step = max(6.0, (reach - away) / 20)
     sweep = 0 if variant else 1
-    arcs = []  # half circles; a radius written a little short is stretched to the chord, one a little long would move the centre
+    # Half circles. A radius written a little short is stretched to the chord; a little long, it would move the centre.
+    arcs = []
     radius = away + 0.5 * step
     while radius < reach:
         arcs.append(

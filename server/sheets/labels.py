@@ -1,7 +1,7 @@
 """Placing numbers and names around a drawing: rails on four sides, leaders that do not cross.
 
-Each label wants the place nearest to what it points at; ``spread`` keeps those of one rail apart in order. Where two leaders of a
-rail still cross, their labels change places, which always shortens the two together, so it ends.
+Each label wants the place nearest to what it points at; ``spread`` keeps those of one rail apart in order. Where two
+leaders of a rail still cross, their labels change places, which always shortens the two together, so it ends.
 """
 
 from __future__ import annotations
@@ -32,6 +32,10 @@ class Label:
     width: float = field(default=0.0)
 
     def __post_init__(self) -> None:
+        self.measure()
+
+    def measure(self) -> None:
+        """Take the width anew, after the text was changed."""
         self.width = 2 * self.radius if self.balloon else text_width(self.text)
 
     @property
@@ -52,7 +56,7 @@ class Label:
 
 
 def place(labels: list[Label], side: str, edge: float, low: float, high: float) -> None:
-    """Give every label of one rail its place; ``edge`` is the outline's coordinate there, ``low`` to ``high`` the rail's reach."""
+    """Place the labels of one rail; ``edge`` is the outline's coordinate there, ``low`` to ``high`` its reach."""
     if not labels:
         return
     upright = side in ("left", "right")
@@ -83,7 +87,7 @@ def _uncross(labels: list[Label], across: int) -> bool:
     changed = False
     for i in range(len(labels) - 1):
         one, two = labels[i], labels[i + 1]
-        if one.anchor and two.anchor and crossing(one.anchor, one.place, two.anchor, two.place):
+        if one.anchor and two.anchor and crossing(one.anchor, leader_end(one), two.anchor, leader_end(two)):
             one.wanted, two.wanted = max(one.wanted, two.wanted), min(one.wanted, two.wanted)
             labels[i], labels[i + 1] = two, one
             changed = True
@@ -105,7 +109,7 @@ def draw(drawing: Drawing, labels: Sequence[Label]) -> None:
     for label in labels:
         x, y = label.place
         if label.anchor:
-            end_x, end_y = _leader_end(label)
+            end_x, end_y = leader_end(label)
             drawing.line("thin", label.anchor[0], label.anchor[1], end_x, end_y)
             drawing.dot(*label.anchor)
         if label.balloon:
@@ -118,7 +122,7 @@ def draw(drawing: Drawing, labels: Sequence[Label]) -> None:
         drawing.over.append(f'<path class="balloons" d="{"".join(rings)}" fill="#fff" stroke-width=".9"/>')
 
 
-def _leader_end(label: Label) -> Point:
+def leader_end(label: Label) -> Point:
     """Where the leader meets the label: the rim of the circle, or the near edge of the text."""
     assert label.anchor is not None
     (ax, ay), (x, y) = label.anchor, label.place

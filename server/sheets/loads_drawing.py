@@ -12,7 +12,7 @@ from typing import Any
 
 from server.sheets import drafting
 from server.sheets.drafting import Scale
-from server.sheets.svg import CAP, FONT_SIZE, Drawing, shorten, spread, text_width
+from server.sheets.svg import CAP, FONT_SIZE, Drawing, shorten, text_width
 
 MARGIN = 34.0
 LINE_HEIGHT = 24.0
@@ -25,7 +25,7 @@ LANES = 6
 
 @dataclass(frozen=True)
 class Placed:
-    """One load in pixels: its reach along the member with its lettering, and its height above and below the lane's line."""
+    """One load in pixels: its reach along the member, lettering included, and its heights about the lane's line."""
 
     load: Mapping[str, Any]
     left: float
@@ -94,7 +94,10 @@ def _frame(member: Mapping[str, Any], loads: Sequence[Mapping[str, Any]], displa
     }
     length = float(member["length"])
     scale = (width - 2 * MARGIN) / length
-    units = [drafting.scale_for(*pair, display) for pair in zip(("force", "line_load", "couple"), greatest.values(), strict=True)]
+    units = [
+        drafting.scale_for(*pair, display)
+        for pair in zip(("force", "line_load", "couple"), greatest.values(), strict=True)
+    ]
     return Frame(MARGIN, scale, length, display, units[0], units[1], units[2], greatest)
 
 
@@ -107,7 +110,9 @@ def _case(drawing: Drawing, frame: Frame, case: str, loads: Sequence[Mapping[str
     over = 0
     for load in sorted(loads, key=lambda load: (load["kind"] != "line", load.get("from", load.get("at")))):
         placed = _placed(frame, load)
-        lane = next((lane for lane in lanes if all(placed.left > p.right + 4 or placed.right < p.left - 4 for p in lane)), None)
+        lane = next(
+            (lane for lane in lanes if all(placed.left > p.right + 4 or placed.right < p.left - 4 for p in lane)), None
+        )
         if lane is not None:
             lane.append(placed)
         elif len(lanes) < LANES:
@@ -220,7 +225,9 @@ def _couple(drawing: Drawing, x: float, y: float, value: float) -> None:
     r = 10.0
     side = 1 if value > 0 else -1  # anticlockwise: from the right, over the top, to the lower left
     sweep = 0 if value > 0 else 1
-    drawing.pen("outline").append(f"M{x + side * r * 0.87:.1f} {y + r * 0.5:.1f}A{r} {r} 0 1 {sweep} {x:.1f} {y + r:.1f}")
+    drawing.pen("outline").append(
+        f"M{x + side * r * 0.87:.1f} {y + r * 0.5:.1f}A{r} {r} 0 1 {sweep} {x:.1f} {y + r:.1f}"
+    )
     drawing.arrow(x + side * 5.5, y + r - 1.4, side * 0.97, -0.24, 7.5, 2.6)
     drawing.dot(x, y, 1.6)
 
@@ -229,7 +236,9 @@ def _member(drawing: Drawing, frame: Frame, picture: Mapping[str, Any], y: float
     """The member itself with supports, hinges, short pieces and dimensions; returns where it ends."""
     member = picture["member"]
     left, right = frame.x(0.0), frame.x(frame.length)
-    drawing.under.append(f'<path d="M{left:.1f} {y:.1f}h{right - left:.1f}v6h{left - right:.1f}z" fill="#fff" stroke-width="1.1"/>')
+    drawing.under.append(
+        f'<path d="M{left:.1f} {y:.1f}h{right - left:.1f}v6h{left - right:.1f}z" fill="#fff" stroke-width="1.1"/>'
+    )
     for support in member["supports"]:
         _support(drawing, frame, support, y)
     for hinge in member.get("hinges") or ():
@@ -250,10 +259,21 @@ def _support(drawing: Drawing, frame: Frame, support: Mapping[str, Any], y: floa
         if at_left or at_right:
             out = -1 if at_left else 1
             outline.append(f"M{x:.1f} {y - 9:.1f}V{low + 9:.1f}")
-            thin.extend([f"M{x:.1f} {y - 9 + 5 * i:.1f}l{out * 5} {5 if at_left else -5}" for i in range(1 if at_right else 0, 5)])
+            thin.extend(
+                [
+                    f"M{x:.1f} {y - 9 + 5 * i:.1f}l{out * 5} {5 if at_left else -5}"
+                    for i in range(1 if at_right else 0, 5)
+                ]
+            )
         else:
             outline.append(f"M{x - 7:.1f} {y - 3:.1f}h14M{x - 7:.1f} {low + 3:.1f}h14")
-            thin.extend([f"M{x - 7 + 4 * i:.1f} {edge:.1f}l3 {turn}" for i in range(4) for edge, turn in ((y - 3, -4), (low + 3, 4))])
+            thin.extend(
+                [
+                    f"M{x - 7 + 4 * i:.1f} {edge:.1f}l3 {turn}"
+                    for i in range(4)
+                    for edge, turn in ((y - 3, -4), (low + 3, 4))
+                ]
+            )
         return
     foot = low + 11
     if kind == "spring":
@@ -275,7 +295,8 @@ def _short_pieces(drawing: Drawing, frame: Frame, pieces: Sequence[Mapping[str, 
             continue
         left, right = frame.x(start), frame.x(end)
         drawing.under.append(
-            f'<path d="M{left:.1f} {y:.1f}H{right:.1f}V{y + 5:.1f}H{left:.1f}z" fill="#000" fill-opacity=".2" stroke-width=".8"/>'
+            f'<path d="M{left:.1f} {y:.1f}H{right:.1f}V{y + 5:.1f}H{left:.1f}z" '
+            'fill="#000" fill-opacity=".2" stroke-width=".8"/>'
         )
         places = " to ".join(drafting.place_text(place, frame.display) for place in (start, end))
         text = f"{piece['id']}, {places}"
@@ -298,14 +319,14 @@ def _spans(drawing: Drawing, frame: Frame, member: Mapping[str, Any], y: float) 
     if len(places) > 2 and rows:
         drafting.dimension_across(drawing, y, rows)
         y += 25
-    whole = drafting.Chain((ticks[0], ticks[-1]), ((0.5 * (ticks[0] + ticks[-1]), drafting.place_text(frame.length, frame.display)),))
+    whole = drafting.Chain(
+        (ticks[0], ticks[-1]), ((0.5 * (ticks[0] + ticks[-1]), drafting.place_text(frame.length, frame.display)),)
+    )
     drafting.dimension_across(drawing, y, whole)
     return y + 20
 
 
-def _words(
-    frame: Frame, title: str, member: Mapping[str, Any], loads: Sequence[Mapping[str, Any]]
-) -> tuple[str, str]:
+def _words(frame: Frame, title: str, member: Mapping[str, Any], loads: Sequence[Mapping[str, Any]]) -> tuple[str, str]:
     supports = ", ".join(f"{s['kind']} at {drafting.place_text(s['at'], frame.display)}" for s in member["supports"])
     length = drafting.place_text(frame.length, frame.display)
     count = len(loads)

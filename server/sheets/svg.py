@@ -1,8 +1,9 @@
 """A small SVG writer for drafting drawings: pens, lettering, arrowheads, and the frame around them.
 
-Only presentation attributes are written, never ``style`` or script, so the drawings live under the strict content policy of the
-page; everything used here (patterns, clip paths, dashes, rotated text) is also drawn by typst in the PDF. One drawing unit is one
-CSS pixel at full size; a 640 wide drawing set 170 mm wide on paper prints 11 px lettering at 8.3 pt.
+Only presentation attributes are written, never ``style`` or script, so the drawings live under the strict content
+policy of the page; everything used here (patterns, clip paths, dashes, rotated text) is also drawn by typst in the
+PDF. One drawing unit is one CSS pixel at full size; a 640 wide drawing set 170 mm wide on paper prints 11 px
+lettering at 8.3 pt.
 """
 
 from __future__ import annotations
@@ -13,11 +14,12 @@ from functools import lru_cache
 from math import ceil, floor
 
 INK = "#111"
+FACES = "'Source Sans 3',Arial,'Liberation Sans','Libertinus Serif',sans-serif"
 FONT_SIZE = 11.0
 CAP = 0.36
 """Half the height of digits and capitals over the font size: added to a centre line it gives the baseline."""
 
-# Widths of a common grotesque in thousandths of the font size; wider than the page's own face, so that what fits here fits there.
+# Widths of a common grotesque in thousandths of the font size; wider than the page's own face, to be safe.
 _WIDTHS = {
     **dict.fromkeys("ijl|'", 240),
     **dict.fromkeys("ft!,.:;/ []()I", 295),
@@ -28,7 +30,7 @@ _WIDTHS = {
     **dict.fromkeys("GOQ", 785),
     **dict.fromkeys("mMW%@", 890),
 }
-_ILLEGAL = {code: None for code in (*range(9), 11, 12, *range(14, 32), 0xFFFE, 0xFFFF, *range(0xD800, 0xE000))}
+_ILLEGAL = dict.fromkeys((*range(9), 11, 12, *range(14, 32), 65534, 65535, *range(55296, 57344)))
 _ESCAPES = {
     **_ILLEGAL,
     ord("&"): "&amp;",
@@ -67,10 +69,10 @@ def shorten(text: str, width: float, size: float = FONT_SIZE) -> str:
 # How each pen draws. Order is drawing order: what comes later lies on top.
 PENS = {
     "grid": 'stroke="#bbb" stroke-width=".5"',
-    "shade": 'fill="#000" fill-opacity=".22"',
     "thin": 'stroke-width=".6"',
     "outline": 'stroke-width="1.1"',
     "bond": 'stroke-width="2.8"',
+    "gap": 'stroke="#fff" stroke-width="2.6"',
     "touching": 'stroke-width="1.4" stroke-dasharray="4 3"',
     "axis": 'stroke-width=".8" stroke-dasharray="9 2.5 1.5 2.5"',
     "chain": 'stroke-width=".7" stroke-dasharray="14 3 2 3"',
@@ -129,7 +131,7 @@ class Drawing:
         bold: bool = False,
         turned: bool = False,
     ) -> None:
-        """One line of lettering on the baseline ``y``; ``anchor`` is "", "middle" or "end"; turned reads from the right."""
+        """One line of lettering on the baseline ``y``; ``anchor`` is "", "middle" or "end"."""
         place = f'x="{x:.1f}" y="{y:.1f}"'
         if anchor:
             place += f' text-anchor="{anchor}"'
@@ -150,18 +152,21 @@ class Drawing:
     ) -> str:
         """The finished drawing: ``kind`` is its class, ``summary`` the text alternative that is read out for it.
 
-        Inside the drawing ids are written with a leading "~"; here it becomes a mark made from the drawing's own content (and
-        ``prefix``), so that two drawings on one page never share an id unless they are the same drawing.
+        Inside the drawing ids are written with a leading "~"; here it becomes a mark made from the drawing's own
+        content (and ``prefix``), so that two drawings on one page never share an id unless they are the same drawing.
         """
         strokes = [
             f'<path {PENS[name]} d="{"".join(self._pens[name])}"/>'
             for name in PENS
-            if self._pens.get(name) and name != "blank"
+            if self._pens.get(name) and name not in ("blank", "grid")
         ]
-        blank = f'<path {PENS["blank"]} d="{"".join(self._pens["blank"])}"/>' if "blank" in self._pens else ""
+        blank, grid = (
+            f'<path {PENS[name]} d="{"".join(self._pens[name])}"/>' if name in self._pens else ""
+            for name in ("blank", "grid")
+        )
         body = (
             (f"<defs>{''.join(self.defs)}</defs>" if self.defs else "")
-            + f'<g fill="none" stroke="{INK}">{"".join(self.under)}{"".join(strokes)}{blank}{"".join(self.over)}</g>'
+            + f'<g fill="none" stroke="{INK}">{grid}{"".join(self.under)}{"".join(strokes)}{blank}{"".join(self.over)}</g>'
             + f'<g fill="{INK}">{"".join(self.letters)}</g>'
         )
         if self.defs:
@@ -173,7 +178,7 @@ class Drawing:
         return (
             f'<svg xmlns="http://www.w3.org/2000/svg" class="drawing {kind}" role="img" aria-label="{escape(summary)}" '
             f'viewBox="0 {top} {self.width:g} {height}" width="{self.width:g}" height="{height}" '
-            f"font-family=\"'Source Sans 3',Arial,'Liberation Sans',sans-serif\" font-size=\"{FONT_SIZE:g}\"{attributes}>"
+            f'font-family="{FACES}" font-size="{FONT_SIZE:g}"{attributes}>'
             f"<title>{escape(title)}</title>{more}{body}</svg>"
         )
 
@@ -192,10 +197,11 @@ def spread(
     gap: float,
     weights: Sequence[float] | None = None,
 ) -> list[float]:
-    """Centres of labels along a line: in the given order, none overlapping, as near as can be to where they are wanted.
+    """Centres of labels along a line: in the given order, none overlapping, as near as can be to where they are
+    wanted.
 
-    Least squares with the order kept (pool adjacent violators). Where [low, high] is too short the labels run on past ``high``:
-    the caller sees it from the last centre.
+    Least squares with the order kept (pool adjacent violators). Where [low, high] is too short the labels run on past
+    ``high``: the caller sees it from the last centre.
     """
     if not wanted:
         return []
