@@ -65,3 +65,24 @@ def test_a_wide_fraction_is_set_in_a_row_that_can_break():
     assert row.count(["sign", "("]) == row.count(["sign", ")"]) == 2
     assert mathml(w.steps[0]).count('class="working-numbers"') > 3
     assert typst_math(w.steps[0])["formula"][0] == "fraction", "the symbols are short enough"
+
+
+@pytest.mark.parametrize(
+    ("text", "line"),
+    [
+        ("a/(b*c)", "y = a / (b ⋅ c)"),
+        ("a/b*c", "y = a / b ⋅ c"),
+        ("a*(b/c)", "y = a ⋅ (b / c)"),
+        ("(a + b)/c", "y = (a + b) / c"),
+        ("a/(b/c)", "y = a / (b / c)"),
+        ("-a*b/c", "y = −a ⋅ b / c"),
+        ("a - (b - c)", "y = a − (b − c)"),
+        ("(a*b)**2/c", "y = (a ⋅ b)² / c"),
+        ("a**b**c", "y = a^(b^c)"),
+        ("sqrt(a + b)*c", "y = √(a + b) ⋅ c"),
+    ],
+)
+def test_the_plain_line_keeps_what_a_bar_held_together(text, line):
+    w = Working()
+    w.step("t", "y", text, {name: (value, "") for name, value in (("a", 3.0), ("b", 2.0), ("c", 0.5)) if name in text})
+    assert plain(w.steps[0])[0] == line
