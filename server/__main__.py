@@ -9,7 +9,7 @@ import sys
 from collections.abc import Mapping, Sequence
 from dataclasses import replace
 from pathlib import Path
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, Literal
 
 from server import ENGINE
 from server.errors import DocumentError, JointError
@@ -194,7 +194,7 @@ def _resolved(document: documents.Document, settings: Settings) -> documents.Doc
 def _write_pdf(target: Path, document: documents.Document, result: Mapping[str, object]) -> None:
     from server import sheets
 
-    display = "US" if result["display"] == "US" else "SI"
+    display: Literal["SI", "US"] = "US" if result["display"] == "US" else "SI"
     sheet = sheets.SheetData(document=document.raw, result=result, display=display, engine=ENGINE)
     _write(target, sheets.pdf(sheet))
 
