@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import re
 from collections.abc import Iterable, Mapping
+from dataclasses import dataclass
 
 from server.web import layouts
 from server.web.form_fields import GROUPS, LOAD_UNITS, SINGLES, Group
@@ -12,34 +13,46 @@ from server.web.forms import FIELD, Reading, couples, points, rows, schedule, sy
 _BUTTONS = ("add", "remove", "start", "set_out", "units_of_boxes", "calculate")
 
 
-def shape(values: Mapping[str, str]) -> tuple[dict[str, str], str]:
-    """Do what a button of the form asked for: ``(values, the group whose rows changed)``.
+@dataclass(frozen=True)
+class Shaped:
+    """The boxes after a button was pressed; ``opened`` is the part it stood in, ``focus`` where to go on typing."""
+
+    values: dict[str, str]
+    opened: str = ""
+    focus: str = ""
+
+
+def shape(values: Mapping[str, str]) -> Shaped:
+    """Do what a button of the form asked for.
 
     ``add`` names a group, ``remove`` a row such as ``pieces[2]``, ``start`` a layout, ``set_out`` places its pieces
-    from their sizes, ``units_of_boxes`` marks the boxes in the units chosen. Numbers already
-    typed keep the unit they were typed in.
+    from their sizes, ``units_of_boxes`` marks the boxes in the units chosen. Numbers already typed keep the unit they
+    were typed in.
     """
     kept = {name: text for name, text in values.items() if name not in _BUTTONS}
     if values.get("add") in GROUPS:
-        return _with_a_row(kept, GROUPS[values["add"]]), values["add"]
-    if removed := re.fullmatch(r"(\w+)\[\d{1,4}\]", values.get("remove", "")):
-        return {name: text for name, text in kept.items() if not name.startswith(removed[0] + ".")}, removed[1]
+        return _with_a_row(kept, GROUPS[values["add"]])
+    removed = re.fullmatch(r"(\w+)\[\d{1,4}\]", values.get("remove", ""))
+    if removed and removed[1] in GROUPS:
+        left = {name: text for name, text in kept.items() if not name.startswith(removed[0] + ".")}
+        return Shaped(left, removed[1], f"add-{removed[1]}")
     if values.get("start") in layouts.LAYOUTS:
-        return _started(kept, values["start"]), ""
+        return Shaped(_started(kept, values["start"]))
     if values.get("set_out"):
-        return kept | (layouts.set_out(kept) or {}), "pieces"
+        return Shaped(kept | (layouts.set_out(kept) or {}), "pieces")
     if values.get("units_of_boxes"):
-        return in_units(kept, "US" if kept.get("display") == "US" else "SI"), "display"
-    return kept, ""
+        return Shaped(in_units(kept, "US" if kept.get("display") == "US" else "SI"), "display")
+    return Shaped(kept)
 
 
-def _with_a_row(values: dict[str, str], group: Group) -> dict[str, str]:
+def _with_a_row(values: dict[str, str], group: Group) -> Shaped:
     taken = rows(values, group)
     if len(taken) >= group.limit:
-        return values
+        return Shaped(values, group.name, f"add-{group.name}")
     # The first view always asks for one adhesive, so its row is there before anything is typed into it.
     last = max(taken, default=0 if group.name == "adhesives" else -1)
-    return values | {f"{group.name}[{last + 1}].{group.boxes[0].name}": ""}
+    first = f"{group.name}[{last + 1}].{group.boxes[0].name}"
+    return Shaped(values | {first: ""}, group.name, first)
 
 
 def _started(values: Mapping[str, str], layout: str) -> dict[str, str]:

@@ -18,8 +18,8 @@ DURATIONS = ("permanent", "long-term", "medium-term", "short-term", "instantaneo
 class Form:
     """The boxes as typed, the messages beside them, and where the form's buttons lead.
 
-    ``messages`` are by box. ``records`` are the library's records to choose from, by group. ``opened`` is the group
-    whose rows were just changed.
+    ``messages`` are by box. ``records`` are the library's records to choose from, by group. ``opened`` is the part
+    that was just changed, ``focus`` the box or button in it to go on from.
     """
 
     values: Mapping[str, str]
@@ -32,6 +32,7 @@ class Form:
     leave_url: str
     library: Mapping[str, Options] = field(default_factory=dict)
     opened: str = ""
+    focus: str = ""
     revising: bool = False
 
     @property
@@ -108,7 +109,7 @@ class Form:
 
     def records(self, name: str) -> Options:
         """Return the library's records for a row of values."""
-        return (("", "none: values typed here"), *self.library.get(name.partition("[")[0], ()))
+        return (("", "typed here"), *self.library.get(name.partition("[")[0], ()))
 
     def typed_box(self, name: str) -> Box | None:
         """Return the box of a text input, None for a select: a select is left alone while somebody uses it."""

@@ -104,10 +104,16 @@ def preview_working(request: Request, session: DbSession, values: FormValues, jo
 @router.post("/jobs/{job_id}/checks/form", name="shape_check")
 def shape_check(request: Request, session: DbSession, values: FormValues, job_id: Id, check: str = "") -> Response:
     """Do what a button of the form asks (rows, layout, units, calculate) and give the page back as typed."""
-    shaped, opened = form_shape.shape(dict(values))
-    return _page(
-        request, session, jobs.get(session, job_id), shaped, judge(session, shaped), whole(check) or 0, opened=opened
-    )
+    shaped = form_shape.shape(dict(values))
+    job, check_id = jobs.get(session, job_id), whole(check) or 0
+    if "HX-Request" in request.headers:
+        # Only the boxes are taken from this answer; they then ask for a preview themselves.
+        judged = Judged(forms.reading_of(shaped.values).raw, None, {})
+    else:
+        judged = judge(session, shaped.values)
+    answer = _page(request, session, job, shaped.values, judged, check_id, opened=shaped.opened, focus=shaped.focus)
+    answer.headers["HX-Trigger"] = "shaped"
+    return answer
 
 
 @router.post("/jobs/{job_id}/checks", name="save_check")
@@ -172,6 +178,7 @@ def _page(
     *,
     status: int = 200,
     opened: str = "",
+    focus: str = "",
 ) -> Response:
     form = _form(request, values, judged, job.id, check_id)
     return page(
@@ -180,12 +187,12 @@ def _page(
         status=status,
         job=job,
         check=jobs.revision_of(session, check_id) if check_id else None,
-        form=replace(form, library=_library(session), opened=opened),
+        form=replace(form, library=_library(session), opened=opened, focus=focus),
         layouts=layouts.LAYOUTS,
         refused=status == 422,
         lazily=True,
         swap=False,
-        working=[] if judged.result is None or "HX-Request" in request.headers else working_of(judged.result),
+        working=[] if judged.result is None else working_of(judged.result),
         **_shown(judged, values),
     )
 

@@ -21,7 +21,7 @@ from server.web.panel import panel
 
 router = APIRouter(prefix="/checks", include_in_schema=False)
 
-_ABOUT = (("result", "What was found"), ("values", "Values used"), ("given", "What was given"))
+_ABOUT = (("given", "What was given"), ("values", "Values used"), ("result", "What was found"))
 _ONE = {"materials": "Material", "adhesives": "Adhesive", "fasteners": "Fastener"}
 
 
@@ -80,7 +80,7 @@ def compare_revisions(request: Request, session: DbSession, check_id: Id, old: I
     """Show what moved between two revisions of a check."""
     before, after = (jobs.revision_of(session, check_id, n) for n in (old, new))
     moved = jobs.moved(before, after)
-    parts = [(title, [each for each in moved if each.about == about]) for about, title in _ABOUT]
+    parts = [(title, [(_words(each), each) for each in moved if each.about == about]) for about, title in _ABOUT]
     return page(
         request,
         "check/compare.html",
@@ -90,6 +90,13 @@ def compare_revisions(request: Request, session: DbSession, check_id: Id, old: I
         parts=[(title, found) for title, found in parts if found],
         flipped=_flipped(moved),
     )
+
+
+def _words(moved: Moved) -> str:
+    """Say a document's path in words: 'loads.imposed[0].value' is 'loads, imposed 1, value'."""
+    if moved.about != "given":
+        return moved.what
+    return re.sub(r"\[(\d+)\]", lambda at: f" {int(at[1]) + 1}", moved.what).replace(".", ", ").replace("_", " ")
 
 
 def _flipped(moved: Iterable[Moved]) -> Moved | None:
