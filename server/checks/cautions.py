@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from dataclasses import dataclass
+
 import numpy as np
 
 from server import documents
@@ -29,8 +31,7 @@ def add_cautions(
     """Everything that deserves a word; the order is the order in which the sheet prints them."""
     _contacts(body, findings)
     _ends(document, body, findings)
-    for site, checked in zip(body.sites, joints, strict=True):
-        _joint(site, checked, body, document, findings)
+    _joints(document, body, joints, findings)
     _materials(document, body, actions, findings)
     _member(document, body, actions, findings)
 
@@ -66,63 +67,89 @@ def _ends(document: documents.MemberDocument, body: Body, findings: Findings) ->
                 )
 
 
-def _joint(site: Site, checked: JointCheck, body: Body, document: documents.MemberDocument, findings: Findings) -> None:
-    if site.bonded:
-        if site.spec.width is None and site.spec.coverage == 1.0:
-            findings.caution(
-                "bonded width",
-                f"{site.id}: the whole contact of {site.contact.length:.4g} mm is counted as bonded. Radii, chamfers, "
-                "dry edges and unglued strips carry nothing: enter the width that is really bonded, or the coverage.",
-                answer=True,
-            )
-        if site.spec.fastener is not None:
-            findings.caution(
-                "fasteners with adhesive",
-                f"{site.id}: stiff glue carries nearly all of the flow until it breaks, so the fasteners "
-                f"({site.spec.role or 'press'}) are held to carry none of it. Their strengths are never added.",
-            )
-        _wide_bond(site, checked, body, findings)
-    elif checked.result["shear_flow"] is not None and not document.analysis.slip:
+def _joints(document: documents.MemberDocument, body: Body, joints: list[JointCheck], findings: Findings) -> None:
+    """What holds for several joints alike is said once, with the joints' names before it."""
+    whole: dict[float, list[str]] = {}
+    fastened: dict[str, list[str]] = {}
+    slipping: list[str] = []
+    for site in body.sites:
+        if site.bonded and site.spec.width is None and site.spec.coverage == 1.0:
+            whole.setdefault(round(site.contact.length, 6), []).append(site.id)
+        if site.bonded and site.spec.fastener is not None:
+            fastened.setdefault(site.spec.effective_role or "press", []).append(site.id)
+        if not site.bonded and not document.analysis.slip:
+            slipping.append(site.id)
+    for length, ids in whole.items():
+        findings.caution(
+            "bonded width",
+            f"{', '.join(ids)}: the whole contact of {length:.4g} mm is counted as bonded. Radii, chamfers, dry edges "
+            "and unglued strips carry nothing: enter the width that is really bonded, or the coverage.",
+            answer=True,
+        )
+    for role, ids in fastened.items():
+        findings.caution(
+            "fasteners with adhesive",
+            f"{', '.join(ids)}: stiff glue carries nearly all of the flow until it breaks, so the fasteners ({role}) "
+            "are held to carry none of it. Their strengths are never added.",
+        )
+    _wide_bonds(body, joints, findings)
+    if slipping:
         findings.caution(
             "slip",
-            f"{site.id}: fasteners slip. Flow and spacing are those of a rigid joint; stresses of the pieces and "
-            "deflection are estimates with too great a stiffness.",
+            f"{', '.join(slipping)}: fasteners slip. Flow and spacing are those of a rigid joint; stresses of the "
+            "pieces and deflection are estimates with too great a stiffness.",
         )
 
 
-def _wide_bond(site: Site, checked: JointCheck, body: Body, findings: Findings) -> None:
+@dataclass(frozen=True)
+class WideBond:
+    """A bond wider than its layer spreads the flow over: the rule that says so, and what it would take off."""
+
+    rule: str
+    reduction: float
+
+
+def _wide_bonds(body: Body, joints: list[JointCheck], findings: Findings) -> None:
     """EN 1995-1-1:2004 expressions (9.10) and (9.14): stress gathers at the edge of a deep or wide bond."""
-    length = site.contact.length
-    across, up = np.abs(np.asarray(site.contact.end) - np.asarray(site.contact.start))
-    upright = up > across
-    for part in (site.first, site.second):
-        if not part.rolls:
-            continue
-        if upright:
-            width = _extent(part, 0)
-            effective = width / 2 if _bonded_behind(site, part, body) else width
-            bound, rule, names = 4 * effective, "(9.10)", f"h_f = {length:.4g} mm > 4 b_ef = {4 * effective:.4g} mm"
-        else:
-            bound, rule = 8 * _extent(part, 1), "(9.14)"
-            names = f"b_w = {length:.4g} mm > 8 h_f = {bound:.4g} mm"
-        if length <= bound * (1 + 1e-9):
-            continue
-        reduction = (bound / length) ** 0.8
+    found: dict[WideBond, list[tuple[str, str, float | None]]] = {}
+    for site, check in zip(body.sites, joints, strict=True):
+        for part in (site.first, site.second):
+            wide = _wide_bond(site, part, body) if site.bonded and part.rolls else None
+            if wide is not None:
+                found.setdefault(wide, []).append((site.id, part.name, _rolling_use(check, part)))
+    for wide, places in found.items():
+        parts = ", ".join(dict.fromkeys(name for _, name, _ in places))
+        used = max((use for _, _, use in places if use is not None), default=None)
+        effect = "" if used is None else f" (utilisation {used / wide.reduction:.3g} instead of {used:.3g})"
         findings.caution(
             "wide bond",
-            f"{site.id}: {names}. EN 1995-1-1:2004 {rule} would multiply the rolling shear strength of {part.name} "
-            f"by {reduction:.3f}{_with_reduction(checked, part, reduction)}; it is not applied here.",
+            f"{', '.join(dict.fromkeys(joint for joint, _, _ in places))}: {wide.rule} would multiply the rolling "
+            f"shear strength of {parts} by {wide.reduction:.3f}{effect}; it is not applied here.",
             answer=True,
         )
 
 
-def _with_reduction(checked: JointCheck, part: Part, reduction: float) -> str:
-    limits = checked.result["limits"]
+def _wide_bond(site: Site, part: Part, body: Body) -> WideBond | None:
+    length = site.contact.length
+    across, up = np.abs(np.asarray(site.contact.end) - np.asarray(site.contact.start))
+    if up > across:
+        bound = 4 * _extent(part, 0) / (2 if _bonded_behind(site, part, body) else 1)
+        words = f"h_f = {length:.4g} mm > 4 b_ef = {bound:.4g} mm. EN 1995-1-1:2004 (9.10)"
+    else:
+        bound = 8 * _extent(part, 1)
+        words = f"b_w = {length:.4g} mm > 8 h_f = {bound:.4g} mm. EN 1995-1-1:2004 (9.14)"
+    if length <= bound * (1 + 1e-9):
+        return None
+    return WideBond(words, round(float((bound / length) ** 0.8), 9))
+
+
+def _rolling_use(check: JointCheck, part: Part) -> float | None:
+    limits = check.result["limits"]
     assert isinstance(limits, list)
     for limit in limits:
         if limit["what"] == f"rolling shear in {part.name}":
-            return f" (utilisation {limit['utilisation'] / reduction:.3g} instead of {limit['utilisation']:.3g})"
-    return ""
+            return float(limit["utilisation"])
+    return None
 
 
 def _extent(part: Part, axis: int) -> float:
