@@ -23,6 +23,8 @@ from server.sheets.svg import CAP, FONT_SIZE, Drawing, shorten, text_width
 
 LEFT, RIGHT, HEAD, FOOT = 58.0, 22.0, 22.0, 32.0
 MOST_POINTS = 120
+LEAST_LETTERED = 0.005
+"""A lesser extreme below this share of the greater one is not lettered on the curve (the text alternative has it)."""
 LANES = ((1, 110.0), (3, 72.0), (8, 54.0), (10**9, 36.0))
 """Height of a lane by the number of lanes."""
 LETTERS = 15.0
@@ -304,8 +306,8 @@ class _Plot:
         for mark in marks:
             x = self.x(mark / place.factor)
             grid.append(f"M{x:.1f} {self.top:.1f}V{self.bottom + 4:.1f}")
-            drawing.text(x, self.bottom + 6 + 2 * CAP * FONT_SIZE, drafting.number(mark), "middle")
-        drawing.text(self.left - 6, self.bottom + 6 + 2 * CAP * FONT_SIZE, place.unit, "end")
+            text = drafting.number(mark) if mark else f"0 {place.unit}"
+            drawing.text(x, self.bottom + 6 + 2 * CAP * FONT_SIZE, text, "middle")
         drawing.line("thin", self.left, self.top, self.left, self.bottom)
         drawing.line("thin", self.right, self.top, self.right, self.bottom)
 
@@ -353,7 +355,7 @@ class _Plot:
             where = "" if peak.at is None else f" at {drafting.place_text(peak.at, self.display)}"
             why = f", {peak.combination}" if peak.combination else ""
             words.append(f"{word} {self.scale.full(peak.value)}{where}{why}")
-            if abs(peak.value) < 1e-6 * greatest or (word == "least" and peak == peaks[0]):
+            if abs(peak.value) < LEAST_LETTERED * greatest or (word == "least" and peak == peaks[0]):
                 continue
             self._label_peak(drawing, peak, f"{self.scale.full(peak.value)}{where}{why}", taken)
         return "; ".join(words)

@@ -19,6 +19,8 @@ from server.working import readable, readable_unit
 
 INCH = 25.4
 FOOT = 304.8
+ROW = 13.0
+"""Step between two rows of texts below a chain."""
 MINUS = "−"
 
 
@@ -123,6 +125,11 @@ class Chain:
 
     ticks: tuple[float, ...]
     texts: tuple[tuple[float, str], ...]
+    rows: int = 1
+
+    def row(self, index: int) -> list[tuple[float, str]]:
+        """The texts of one row, in rising order of place."""
+        return sorted(self.texts)[index :: self.rows]
 
 
 def chain(
@@ -132,30 +139,34 @@ def chain(
 
     ``texts[i]`` belongs between level i and i+1; ``room_of`` is the height a text takes in a vertical chain (None:
     its own width, as in a horizontal one). Layers thinner than two pixels get ticks and no text; equal neighbours are
-    lettered once, "12 × 20".
+    lettered once, "12 × 20"; where one row is too short for a horizontal chain, two take turns.
     """
     spans = [(i, i + 1, text) for i, text in enumerate(texts) if abs(pixels[i + 1] - pixels[i]) >= 2.0]
-    length = abs(pixels[-1] - pixels[0])
+    for found in (spans, _grouped(spans)):
+        texts_at = tuple((0.5 * (pixels[i] + pixels[j]), text) for i, j, text in found)
+        for rows in (1, 2) if room_of is None else (1,):
+            made = Chain(_ticks(pixels), texts_at, rows)
+            if found and all(_fits(made.row(i), room_of, min(pixels), max(pixels)) for i in range(rows)):
+                return made
+    return None
 
-    def fits(found: Sequence[tuple[int, int, str]]) -> bool:
-        sizes = [room_of or text_width(text) for _, _, text in found]
-        if sum(sizes) + 3 * len(sizes) > 0.9 * length:
-            return False
-        wanted = sorted(0.5 * (pixels[i] + pixels[j]) for i, j, _ in found)
-        sizes = sizes if pixels[-1] >= pixels[0] else sizes[::-1]
-        placed = spread(wanted, sizes, min(pixels), max(pixels), 3)
-        return all(abs(a - b) <= 14 for a, b in zip(wanted, placed, strict=True))
 
-    if not fits(spans):
-        spans = _grouped(spans)
-    if not spans or not fits(spans):
-        return None
-    middles = tuple((0.5 * (pixels[i] + pixels[j]), text) for i, j, text in spans)
+def _fits(row: Sequence[tuple[float, str]], room_of: float | None, low: float, high: float) -> bool:
+    """Whether texts stand side by side without moving far from their places."""
+    sizes = [room_of or text_width(text) for _, text in row]
+    if sum(sizes) + 3 * len(sizes) > 0.9 * (high - low):
+        return False
+    placed = spread([place for place, _ in row], sizes, low, high, 3)
+    return all(abs(place - x) <= 14 for (place, _), x in zip(row, placed, strict=True))
+
+
+def _ticks(pixels: Sequence[float]) -> tuple[float, ...]:
+    """Both ends, and what lies between them two pixels apart or more."""
     ticks = [pixels[0]]
     for place in pixels[1:-1]:
         if abs(place - ticks[-1]) >= 2.0 and abs(place - pixels[-1]) >= 2.0:
             ticks.append(place)
-    return Chain((*ticks, pixels[-1]), middles)
+    return (*ticks, pixels[-1])
 
 
 def _grouped(spans: Sequence[tuple[int, int, str]]) -> list[tuple[int, int, str]]:
@@ -182,21 +193,18 @@ def ticks_up(drawing: Drawing, x: float, ticks: Sequence[float]) -> None:
 
 
 def dimension_across(drawing: Drawing, y: float, dimensions: Chain) -> None:
-    """A horizontal chain with its texts below the line; a text that had to move keeps a short line to its place."""
+    """A horizontal chain with its texts below in one row or two; one that moved keeps a line to its place."""
     ticks_across(drawing, y, dimensions.ticks)
-    wanted = [x for x, _ in dimensions.texts]
-    widths = [text_width(text) for _, text in dimensions.texts]
-    for x, want, (_, text) in zip(
-        spread(wanted, widths, min(dimensions.ticks) + 2, max(dimensions.ticks) - 2, 4),
-        wanted,
-        dimensions.texts,
-        strict=True,
-    ):
-        drop = 0.0
-        if abs(x - want) > 4:
-            drawing.line("thin", want, y, x, y + 6)
-            drop = 3.0
-        drawing.text(x, y + 5 + drop + 2 * CAP * FONT_SIZE, text, "middle")
+    for index in range(dimensions.rows):
+        row = dimensions.row(index)
+        widths = [text_width(text) for _, text in row]
+        placed = spread([x for x, _ in row], widths, min(dimensions.ticks) + 2, max(dimensions.ticks) - 2, 4)
+        for x, (want, text) in zip(placed, row, strict=True):
+            moved = abs(x - want) > 4
+            if moved:
+                drawing.line("thin", want, y, x, y + 6)
+            drop = ROW * index + (3.0 if moved and not index else 0.0)
+            drawing.text(x, y + 5 + drop + 2 * CAP * FONT_SIZE, text, "middle")
 
 
 def dimension_up(drawing: Drawing, x: float, dimensions: Chain) -> None:

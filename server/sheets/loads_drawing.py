@@ -25,13 +25,26 @@ LANES = 6
 
 @dataclass(frozen=True)
 class Placed:
-    """One load in pixels: its reach along the member, lettering included, and its heights about the lane's line."""
+    """One load in pixels: its own reach, that of its lettering, and its heights about the lane's line."""
 
     load: Mapping[str, Any]
-    left: float
-    right: float
+    own: tuple[float, float]
+    letters: tuple[float, float]
     above: float
     below: float
+
+    def clear_of(self, other: Placed) -> bool:
+        """Whether two loads may share a lane: they may touch, their lettering may not."""
+
+        def apart(one: tuple[float, float], two: tuple[float, float], gap: float) -> bool:
+            return one[0] >= two[1] + gap or two[0] >= one[1] + gap
+
+        return (
+            apart(self.own, other.own, -0.5)
+            and apart(self.letters, other.letters, 6)
+            and apart(self.own, other.letters, -0.5)
+            and apart(self.letters, other.own, -0.5)
+        )
 
 
 @dataclass(frozen=True)
@@ -110,9 +123,7 @@ def _case(drawing: Drawing, frame: Frame, case: str, loads: Sequence[Mapping[str
     over = 0
     for load in sorted(loads, key=lambda load: (load["kind"] != "line", load.get("from", load.get("at")))):
         placed = _placed(frame, load)
-        lane = next(
-            (lane for lane in lanes if all(placed.left > p.right + 4 or placed.right < p.left - 4 for p in lane)), None
-        )
+        lane = next((lane for lane in lanes if all(placed.clear_of(p) for p in lane)), None)
         if lane is not None:
             lane.append(placed)
         elif len(lanes) < LANES:
@@ -122,8 +133,8 @@ def _case(drawing: Drawing, frame: Frame, case: str, loads: Sequence[Mapping[str
     y += FONT_SIZE + 3
     for i, lane in enumerate(lanes):
         above, below = max(p.above for p in lane), max(p.below for p in lane)
-        short = i == 0 and any(p.left < text_width(name) + 16 for p in lane)
-        base = y + above + (2 if short or i else -6 if above > 8 else 4)
+        short = i == 0 and any(min(p.own[0], p.letters[0]) < text_width(name) + 16 for p in lane)
+        base = y + above + (2 if short or i else -6 if above > 8 else 7)
         drawing.line("thin", left, base, right, base)
         for placed in lane:
             _load(drawing, frame, placed.load, base)
@@ -158,21 +169,22 @@ def _label_place(frame: Frame, load: Mapping[str, Any]) -> tuple[float, float]:
 
 def _placed(frame: Frame, load: Mapping[str, Any]) -> Placed:
     centre, half = _label_place(frame, load)
+    letters = centre - half, centre + half
+    if load["kind"] == "couple":
+        x = frame.x(load["at"])
+        return Placed(load, (x - 11, x + 11), letters, 12 + LETTERS, 12)
     if load["kind"] == "line":
-        ends = frame.x(load["from"]), frame.x(load["to"])
+        own = frame.x(load["from"]), frame.x(load["to"])
         heights = [frame.high("line", v) for v in _values(load)]
-    elif load["kind"] == "couple":
-        ends = frame.x(load["at"]) - 11, frame.x(load["at"]) + 11
-        return Placed(load, min(ends[0], centre - half), max(ends[1], centre + half), 12 + LETTERS, 12)
     else:
-        ends = frame.x(load["at"]) - 3, frame.x(load["at"]) + 3
+        own = frame.x(load["at"]) - 3, frame.x(load["at"]) + 3
         heights = [frame.high("point", _values(load)[0])]
     above, below = max(0.0, *heights), max(0.0, *(-h for h in heights))
     if above >= below:
         above += LETTERS
     else:
         below += LETTERS
-    return Placed(load, min(ends[0], centre - half), max(ends[1], centre + half), above, below)
+    return Placed(load, own, letters, above, below)
 
 
 def _load(drawing: Drawing, frame: Frame, load: Mapping[str, Any], base: float) -> None:
@@ -318,7 +330,7 @@ def _spans(drawing: Drawing, frame: Frame, member: Mapping[str, Any], y: float) 
     rows = drafting.chain(places, ticks, texts, None)
     if len(places) > 2 and rows:
         drafting.dimension_across(drawing, y, rows)
-        y += 25
+        y += 12 + drafting.ROW * rows.rows
     whole = drafting.Chain(
         (ticks[0], ticks[-1]), ((0.5 * (ticks[0] + ticks[-1]), drafting.place_text(frame.length, frame.display)),)
     )

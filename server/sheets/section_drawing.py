@@ -170,7 +170,7 @@ def _dimensions(drawing: Drawing, view: View, rails: dict[str, list[Label]]) -> 
         drafting.dimension_across(drawing, bottom, columns)
         for x in columns.ticks:
             drawing.line("thin", x, starts[x] + 3, x, bottom + 3)
-        overall = bottom + 25
+        overall = bottom + 12 + drafting.ROW * columns.rows
     ends = (min(starts), max(starts))
     drafting.dimension_across(drawing, overall, _overall(ends, view.size(view.high_a - view.low_a)))
     for x in ends:

@@ -90,11 +90,10 @@ class View:
         found = []
         for contact in self.result["drawing"]["contacts"]:
             joint = joints.get(contact["id"], {}) if contact["joined"] else {}
-            held = [str(limit.get("what", "")) for limit in joint.get("limits") or ()]
-            fastened = bool(contact.get("fastener")) or any(what.startswith("fastener ") for what in held)
-            bonded = bool(contact.get("bonded")) or any(what.startswith("adhesive ") for what in held)
+            fastened = bool(joint.get("fastener"))
+            bonded = bool(contact.get("bonded") or joint.get("adhesive"))
             number = self.numbers.get(contact["id"], 0) if contact["joined"] else 0
-            rows = int(contact.get("rows") or 1)
+            rows = int(joint.get("rows") or 1)
             bonded = contact["joined"] and (bonded or not fastened)
             found.append(Mark(number, self.at(contact["start"]), self.at(contact["end"]), bonded, fastened, rows))
         return found

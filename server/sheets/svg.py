@@ -164,11 +164,9 @@ class Drawing:
             f'<path {PENS[name]} d="{"".join(self._pens[name])}"/>' if name in self._pens else ""
             for name in ("blank", "grid")
         )
-        body = (
-            (f"<defs>{''.join(self.defs)}</defs>" if self.defs else "")
-            + f'<g fill="none" stroke="{INK}">{grid}{"".join(self.under)}{"".join(strokes)}{blank}{"".join(self.over)}</g>'
-            + f'<g fill="{INK}">{"".join(self.letters)}</g>'
-        )
+        defs = f"<defs>{''.join(self.defs)}</defs>" if self.defs else ""
+        drawn = "".join([grid, *self.under, *strokes, blank, *self.over])
+        body = f'{defs}<g fill="none" stroke="{INK}">{drawn}</g><g fill="{INK}">{"".join(self.letters)}</g>'
         if self.defs:
             mark = f"{prefix}{kind[0]}{zlib.crc32(body.encode('utf-8', 'replace')):08x}-"
             body = body.replace('id="~', f'id="{mark}').replace("url(#~", f"url(#{mark}")

@@ -38,7 +38,8 @@ def joint(
         limits.append({"what": f"adhesive {glued}", "resistance": 0.4, "utilisation": 0.7})
     if fastener:
         limits.append({"what": f"fastener {fastener}", "resistance": 380.0, "utilisation": 0.7})
-    return {"id": name, "shear_flow": flow, "limits": limits, "cut_off": cut_off, "utilisation": 0.7, **more}
+    held = {"adhesive": glued, "fastener": fastener}
+    return {"id": name, **held, "shear_flow": flow, "limits": limits, "cut_off": cut_off, "utilisation": 0.7, **more}
 
 
 def two_supports(
@@ -413,11 +414,15 @@ def flitch() -> dict[str, Any]:
         piece("right plank", rectangle(45, 220, 55, 0), "C24", "timber", SPAN),
     ]
     contacts = [
-        contact("left plank/flitch plate", ("left plank", "flitch plate"), (45, 10), (45, 210)) | {"rows": 3},
+        contact("left plank/flitch plate", ("left plank", "flitch plate"), (45, 10), (45, 210)),
         contact(None, ("flitch plate", "right plank"), (55, 10), (55, 210)),
     ]
     return section_only(
-        "flitch", pieces, contacts, [joint("left plank/flitch plate", None, "M12 bolt", 20, ["left plank"])], [50, 110]
+        "flitch",
+        pieces,
+        contacts,
+        [joint("left plank/flitch plate", None, "M12 bolt", 20, ["left plank"], rows=3)],
+        [50, 110],
     )
 
 
