@@ -3,7 +3,8 @@
 from __future__ import annotations
 
 from collections.abc import Iterable, Sequence
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
+from functools import cached_property
 
 import numpy as np
 from numpy.typing import NDArray
@@ -12,15 +13,48 @@ from server import documents
 from server.checks.crosssection import Body
 from server.errors import DocumentError, Fault, InputError
 from server.mechanics import beam as mechanics
-from server.mechanics.beam import Beam, Couple, Extremes, LineLoad, PointLoad, Response, extremes, solve
+from server.mechanics.beam import Beam, Couple, LineLoad, PointLoad, Response, solve
+from server.mechanics.piecewise import Candidates, Extremes, candidates, extremes
 
 GRAVITY = 9.80665  # m/s2, standard (ISO 80000-3)
 TIE = 1e-9  # relative difference under which two extremes are the same
 
 
-@dataclass(frozen=True)
+@dataclass(frozen=True, eq=False)
+class Curve:
+    """One quantity along the member, a row a combination; its turning points are found once."""
+
+    breaks: NDArray[np.float64]
+    coefficients: NDArray[np.float64]
+    names: tuple[str, ...]
+
+    @cached_property
+    def _candidates(self) -> Candidates:
+        return candidates(self.breaks, self.coefficients)
+
+    @cached_property
+    def _index(self) -> dict[float, int]:
+        return {place: i for i, place in enumerate(self.breaks.tolist())}
+
+    def over(self, start: float, end: float) -> Extremes:
+        """Extremes of every row between two places, inside them on both sides of every jump."""
+        first, last = self._index.get(start), self._index.get(end)
+        if first is None or last is None:
+            return extremes(self.breaks, self.coefficients, start, end)
+        return self._candidates.over(first, last)
+
+    @cached_property
+    def whole(self) -> Extremes:
+        return self._candidates.over()
+
+
+@dataclass(frozen=True, eq=False)
 class Actions:
-    """Responses of the member, one row a combination."""
+    """Responses of the member: every combination, and the curves of those that are for strength or deflection.
+
+    ``shear`` and ``moment`` are None where no combination is for strength, ``sag`` and ``long_term`` where none is
+    for deflection; ``long_term`` also where no material creeps.
+    """
 
     names: tuple[str, ...]
     durations: tuple[str | None, ...]
@@ -30,16 +64,19 @@ class Actions:
     cases: tuple[str, ...]
     case_loads: tuple[tuple[mechanics.Load, ...], ...]
     response: Response
-    long_term: NDArray[np.float64] | None
+    shear: Curve | None
+    moment: Curve | None
+    sag: Curve | None
+    long_term: Curve | None
     shear_deformation: bool
 
     @property
     def breaks(self) -> NDArray[np.float64]:
         return self.response.breaks
 
-    @property
-    def strength_names(self) -> list[str]:
-        return [self.names[k] for k in self.strength]
+    @cached_property
+    def strength_names(self) -> tuple[str, ...]:
+        return tuple(self.names[k] for k in self.strength)
 
 
 def act(document: documents.MemberDocument, body: Body) -> Actions:
@@ -50,17 +87,31 @@ def act(document: documents.MemberDocument, body: Body) -> Actions:
     factors = np.array([[c.factors.get(case, 0.0) for case in cases] for c in combinations.values()])
     deform = document.analysis.shear_deformation and all(s.section.shear_stiffness is not None for s in body.stretches)
     solved = _solve(_beam(document, body, deform), loads)
-    kinds = [c.for_ for c in combinations.values()]
+    combined = solved.combine(factors)
+    long_term = _long_term(document, body, deform, loads, solved, factors)
+    names, kinds = tuple(combinations), [c.for_ for c in combinations.values()]
+    strength = tuple(k for k, kind in enumerate(kinds) if kind in ("both", "strength"))
+    deflection = tuple(k for k, kind in enumerate(kinds) if kind in ("both", "deflection"))
+
+    def curve(coefficients: NDArray[np.float64] | None, chosen: tuple[int, ...]) -> Curve | None:
+        if coefficients is None or not chosen:
+            return None
+        picked = coefficients if len(chosen) == len(names) else coefficients[list(chosen)]
+        return Curve(combined.breaks, picked, tuple(names[k] for k in chosen))
+
     return Actions(
-        names=tuple(combinations),
+        names=names,
         durations=tuple(c.duration for c in combinations.values()),
-        strength=tuple(k for k, kind in enumerate(kinds) if kind in ("both", "strength")),
-        deflection=tuple(k for k, kind in enumerate(kinds) if kind in ("both", "deflection")),
+        strength=strength,
+        deflection=deflection,
         factors=factors,
         cases=cases,
         case_loads=loads,
-        response=solved.combine(factors),
-        long_term=_long_term(document, body, deform, loads, solved, factors),
+        response=combined,
+        shear=curve(combined.shear, strength),
+        moment=curve(combined.moment, strength),
+        sag=curve(combined.deflection, deflection),
+        long_term=curve(long_term, deflection),
         shear_deformation=deform,
     )
 
@@ -147,8 +198,11 @@ def largest(values: NDArray[np.float64], places: NDArray[np.float64]) -> Peak:
     return Peak(float(values[row]), float(places[row]), row)
 
 
-def envelope(found: Extremes, names: Sequence[str]) -> dict[str, object]:
-    """The contract's extremes block over the combinations named."""
+def envelope(curve: Curve | None) -> dict[str, object] | None:
+    """The contract's extremes block of a curve."""
+    if curve is None:
+        return None
+    found, names = curve.whole, curve.names
     high, low = largest(found.max, found.at_max), largest(-found.min, found.at_min)
     return {
         "max": high.value,
@@ -158,30 +212,3 @@ def envelope(found: Extremes, names: Sequence[str]) -> dict[str, object]:
         "combination_max": names[high.row],
         "combination_min": names[low.row],
     }
-
-
-def rows(response: Response, chosen: Sequence[int]) -> Response:
-    """The response of the chosen combinations only."""
-    if len(chosen) == len(response.shear):
-        return response
-    pick = list(chosen)
-    return replace(
-        response,
-        shear=response.shear[pick],
-        moment=response.moment[pick],
-        deflection=response.deflection[pick],
-        reaction_force=response.reaction_force[pick],
-        reaction_couple=response.reaction_couple[pick],
-    )
-
-
-def absolute(found: Extremes) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
-    """Largest size and its place, per combination; the leftmost place wins a tie."""
-    high, low = np.abs(found.max), np.abs(found.min)
-    scale = np.maximum(np.maximum(high, low), 1e-300)
-    tie = np.abs(high - low) <= TIE * scale
-    take_high = np.where(tie, found.at_max <= found.at_min, high > low)
-    return np.maximum(high, low), np.where(take_high, found.at_max, found.at_min)
-
-
-__all__ = ["Actions", "Peak", "absolute", "act", "envelope", "extremes", "largest", "rows"]

@@ -219,6 +219,10 @@ def _member(document: documents.MemberDocument, body: Body, actions: Actions, fi
                 "twice as strong as the largest stress.",
                 answer=True,
             )
+    used = {case for c in document.combinations.values() for case in c.factors}
+    idle = [case for case in document.loads if case not in used]
+    if idle:
+        findings.caution("loads", f"No combination uses the load case(s) {', '.join(idle)}: they were left out.")
     _uplift(document, actions, findings)
     if document.service is None:
         findings.caution(

@@ -5,11 +5,8 @@ from __future__ import annotations
 from dataclasses import dataclass
 from itertools import pairwise
 
-import numpy as np
-from numpy.typing import NDArray
-
 from server import documents
-from server.checks.actions import Actions, Peak, absolute, extremes, largest
+from server.checks.actions import Actions, Curve, Peak, largest
 from server.checks.resistance import Findings
 from server.working import Working
 
@@ -38,7 +35,7 @@ def check_deflection(
     if limit is None:
         findings.caution("deflection", "No deflection limit was given, so deflection was not judged.")
         return []
-    if not actions.deflection:
+    if actions.sag is None:
         findings.miss(
             "deflection: a limit is given but no combination is for deflection; add one (for: deflection or both)."
         )
@@ -49,27 +46,19 @@ def check_deflection(
             "small; the limit is not judged until slip is reckoned."
         )
         return []
-    chosen = list(actions.deflection)
-    found = _sags(document, actions, actions.response.deflection[chosen], limit, working, long_term=False)
+    found = _sags(document, actions.sag, limit, working, long_term=False)
     if actions.long_term is not None:
-        found += _sags(document, actions, actions.long_term[chosen], limit, working, long_term=True)
+        found += _sags(document, actions.long_term, limit, working, long_term=True)
     return found
 
 
 def _sags(
-    document: documents.MemberDocument,
-    actions: Actions,
-    deflection: NDArray[np.float64],
-    limit: float,
-    working: Working,
-    *,
-    long_term: bool,
+    document: documents.MemberDocument, curve: Curve, limit: float, working: Working, *, long_term: bool
 ) -> list[Sag]:
-    sags = []
-    for start, end, kind in spans(document.member):
-        size, at = absolute(extremes(actions.breaks, deflection, start, end))
-        sags.append(_sag(start, end, kind, largest(size, at), limit, actions, working, long_term))
-    return sags
+    return [
+        _sag(start, end, kind, largest(*curve.over(start, end).absolute()), limit, curve.names, working, long_term)
+        for start, end, kind in spans(document.member)
+    ]
 
 
 def spans(member: documents.Member) -> list[tuple[float, float, str]]:
@@ -89,11 +78,11 @@ def _sag(
     kind: str,
     peak: Peak,
     limit: float,
-    actions: Actions,
+    names: tuple[str, ...],
     working: Working,
     long_term: bool,
 ) -> Sag:
-    combination = actions.names[actions.deflection[peak.row]]
+    combination = names[peak.row]
     group = "Long-term deflection" if long_term else "Deflection"
     where = f"{kind} {start:g} to {end:g} mm"
     allowed = working.step(

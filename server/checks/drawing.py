@@ -82,17 +82,16 @@ def diagrams(body: Body, actions: Actions) -> dict[str, object]:
     local = widths[:, None] * np.linspace(0.0, 1.0, steps)
     at = breaks[:-1, None] + local
     found: dict[str, object] = {"at": at.ravel().tolist()}
-    strength, deflection = list(actions.strength), list(actions.deflection)
-    response = actions.response
-    if strength:
-        shear = _sample(response.shear[strength], local)
-        found["shear"] = _band(shear)
-        found["moment"] = _band(_sample(response.moment[strength], local))
+    curves = {
+        "shear": actions.shear,
+        "moment": actions.moment,
+        "deflection": actions.sag,
+        "deflection_long_term": actions.long_term,
+    }
+    found.update({name: _band(_sample(c.coefficients, local)) for name, c in curves.items() if c is not None})
+    if actions.shear is not None:
+        shear = _sample(actions.shear.coefficients, local)
         found["joints"] = {s.id: _flow(s, body, breaks, shear) for s in body.sites}
-    if deflection:
-        found["deflection"] = _band(_sample(response.deflection[deflection], local))
-        if actions.long_term is not None:
-            found["deflection_long_term"] = _band(_sample(actions.long_term[deflection], local))
     return found
 
 

@@ -8,7 +8,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from server import documents
-from server.checks.actions import TIE, absolute, extremes
+from server.checks.actions import TIE
 from server.checks.crosssection import Body, Part, Site, Stretch
 from server.checks.resistance import Claim, Judge, Strength, Weighed, describe, resistance_formula, worst
 from server.checks.scan import Scan
@@ -225,7 +225,6 @@ def _claim_fasteners(check: JointCheck, demand: Demand, body: Body, scan: Scan, 
     zones = _zones(site, body.length)
     if not zones:
         findings.miss(f"spacing of {name!r} in joint {site.id}: enter a spacing; the one needed is stated.")
-        # Still weighed at a spacing of 1 mm a row, so that the spacing needed can be stated.
         return
     for start, end, spacing in zones:
         where = f"joint {site.id}, {start:g} to {end:g} mm"
@@ -262,6 +261,7 @@ def _zones(site: Site, length: float) -> list[Zone]:
 
 def _zone_demand(site: Site, body: Body, scan: Scan, zones: list[Zone]) -> Demand:
     """Force per fastener (in ``flow``) where it is greatest over the zones; ``stretch`` counts zones."""
+    assert scan.curve is not None
     found: Demand | None = None
     for number, (start, end, spacing) in enumerate(zones):
         for stretch in body.stretches:
@@ -269,7 +269,7 @@ def _zone_demand(site: Site, body: Body, scan: Scan, zones: list[Zone]) -> Deman
             flow = stretch.section.flows.get(site.index)
             if high <= low or flow is None or flow.share is None:
                 continue
-            V, at = absolute(extremes(scan.breaks, scan.shear_rows, low, high))
+            V, at = scan.curve.over(low, high).absolute()
             q = formula(FLOW["cut"]).array({"V": V, "S": abs(flow.share), "EI": stretch.section.properties.EI})
             force = formula(FASTENER_FORCE).array({"q": q, "s": spacing, "n": site.spec.rows})
             here = Demand(q, force, at, np.full(len(at), number, dtype=np.intp))

@@ -9,7 +9,7 @@ from pydantic import BaseModel
 
 from server import ENGINE, documents
 from server.checks import statics as hand
-from server.checks.actions import Actions, act, envelope, extremes
+from server.checks.actions import Actions, act, envelope
 from server.checks.cautions import NOT_CHECKED, add_cautions
 from server.checks.crosssection import Body, CrossSection, build
 from server.checks.deflection import Sag, check_deflection
@@ -215,20 +215,12 @@ def _member(document: documents.MemberDocument, actions: Actions) -> dict[str, o
             ]
             for k, name in enumerate(actions.names)
         },
-        "shear": None,
-        "moment": None,
-        "deflection": None,
+        "shear": envelope(actions.shear),
+        "moment": envelope(actions.moment),
+        "deflection": envelope(actions.sag),
     }
-    if actions.strength:
-        chosen = list(actions.strength)
-        found["shear"] = envelope(extremes(actions.breaks, response.shear[chosen]), actions.strength_names)
-        found["moment"] = envelope(extremes(actions.breaks, response.moment[chosen]), actions.strength_names)
-    if actions.deflection:
-        chosen = list(actions.deflection)
-        names = [actions.names[k] for k in chosen]
-        found["deflection"] = envelope(extremes(actions.breaks, response.deflection[chosen]), names)
-        if actions.long_term is not None:
-            found["deflection_long_term"] = envelope(extremes(actions.breaks, actions.long_term[chosen]), names)
+    if actions.long_term is not None:
+        found["deflection_long_term"] = envelope(actions.long_term)
     return found
 
 

@@ -7,9 +7,9 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from server.checks.actions import Actions, absolute, extremes
+from server.checks.actions import Actions, Curve
 from server.checks.crosssection import Body
-from server.mechanics.beam import Extremes
+from server.mechanics.piecewise import Extremes
 
 Sized = tuple[NDArray[np.float64], NDArray[np.float64]]
 
@@ -18,22 +18,18 @@ Sized = tuple[NDArray[np.float64], NDArray[np.float64]]
 class Scan:
     """``shear`` size and place of the largest shear of each combination, ``moment`` both extremes; by stretch."""
 
-    breaks: NDArray[np.float64]
-    shear_rows: NDArray[np.float64]
+    curve: Curve | None
     shear: tuple[Sized, ...]
     moment: tuple[Extremes, ...]
 
 
 def scan(body: Body, actions: Actions) -> Scan:
     """Scan every stretch; empty where no combination is for strength."""
-    chosen = list(actions.strength)
-    breaks, response = actions.breaks, actions.response
-    shear, moment = response.shear[chosen], response.moment[chosen]
-    if not chosen:
-        return Scan(breaks, shear, (), ())
+    shear, moment = actions.shear, actions.moment
+    if shear is None or moment is None:
+        return Scan(None, (), ())
     return Scan(
-        breaks,
         shear,
-        tuple(absolute(extremes(breaks, shear, s.start, s.end)) for s in body.stretches),
-        tuple(extremes(breaks, moment, s.start, s.end) for s in body.stretches),
+        tuple(shear.over(s.start, s.end).absolute() for s in body.stretches),
+        tuple(moment.over(s.start, s.end) for s in body.stretches),
     )

@@ -13,7 +13,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from server import documents
-from server.checks.actions import GRAVITY, Actions, Peak, absolute, extremes, largest
+from server.checks.actions import GRAVITY, Actions, Peak, largest
 from server.checks.crosssection import Body, CrossSection
 from server.mechanics.beam import Couple, LineLoad, Load, PointLoad
 from server.working import Working
@@ -99,13 +99,10 @@ class Statics:
     def member(self) -> None:
         """Reactions of the governing combinations, and the greatest shear and moment."""
         actions = self.actions
-        if not actions.strength:
+        if actions.shear is None or actions.moment is None:
             return
-        chosen = list(actions.strength)
-        response = actions.response
-        found = extremes(response.breaks, response.moment[chosen])
-        size, at = absolute(extremes(response.breaks, response.shear[chosen]))
-        shear = largest(size, at)
+        chosen, found = list(actions.strength), actions.moment.whole
+        shear = largest(*actions.shear.whole.absolute())
         moments = [largest(found.max, found.at_max), largest(-found.min, found.at_min)]
         rows = dict.fromkeys([shear.row, *(m.row for m in moments if m.value > 0)])
         for row in rows:
@@ -205,12 +202,10 @@ class Statics:
     def deflection(self) -> None:
         """The greatest deflection by beam tables where they hold, else the method by name."""
         actions = self.actions
-        if not actions.deflection:
+        if actions.sag is None:
             return
-        chosen = list(actions.deflection)
-        size, places = absolute(extremes(actions.breaks, actions.response.deflection[chosen]))
-        peak = largest(size, places)
-        k = chosen[peak.row]
+        peak = largest(*actions.sag.whole.absolute())
+        k = actions.deflection[peak.row]
         if self._tabulated(k):
             self._table_steps(peak, k)
         else:
