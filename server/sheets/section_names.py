@@ -83,7 +83,7 @@ def _on_material(box: Box, side: str, x: float, y: float, busy: Sequence[Point])
     inset = min(9.0, 0.4 * (high - low))
     for dot in busy:
         far = high - dot[along] if side in ("right", "bottom") else dot[along] - low
-        if 0 < far <= inset + 3 and abs(dot[1 - along] - level) < 30:
+        if 0 < far <= inset + 3 and abs(dot[1 - along] - level) < (30 if along == 0 else 5):
             inset = min(inset, 0.5 * far)
     place = high - inset if side in ("right", "bottom") else low + inset
     return (place, level) if along == 0 else (level, place)
