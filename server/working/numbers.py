@@ -6,6 +6,8 @@ what people see: digits in groups of three, and a power of ten.
 
 from __future__ import annotations
 
+from functools import lru_cache
+
 DIGITS = 5
 LADDER = (5, 6, 8, 11, 17)
 """How many digits the numbers of one line may have: the first rung that brings a reader to the printed value."""
@@ -13,6 +15,7 @@ _LEAST, _MOST = 1e-3, 1e6
 _FORMATS = {digits: f"%.{digits}g" for digits in range(1, 18)}
 
 
+@lru_cache(maxsize=65536)  # the same sizes, moduli and loads stand in line after line
 def canonical(value: float, digits: int = DIGITS) -> str:
     """A number to so many significant digits: ``35.482``, ``-0.25``, ``123456``, ``1.0395e6``, ``2.5e-4``.
 
