@@ -23,7 +23,7 @@ JOB = {
     "display": "US",
     "note": "one spare",
 }
-NONSENSE = ["<script>alert(1)</script>", "'; DROP TABLE jobs; --", "{{ 7*7 }}", "\u202egnp", "Ω ✓ 木", "%00", "a\x00b"]
+NONSENSE = ["<script>alert(1)</script>", "'; DROP TABLE jobs; --", "{{ 7*7 }}", "\u202egnp", "Ω ≤ é", "%00", "a\x00b"]
 
 
 @pytest.fixture
@@ -86,6 +86,13 @@ class TestStart:
         )
         assert "<script>" not in shown
         assert ">49<" not in shown
+
+    def test_a_sign_that_no_sheet_can_print_is_refused_beside_its_box(self, client: TestClient) -> None:
+        answer = client.post("/jobs", data=JOB | {"title": "deck 木"})
+        assert answer.status_code == 422
+        assert 'id="f-title-message"' in answer.text
+        assert 'value="deck 木"' in answer.text
+        assert "26-014" not in client.get("/jobs").text
 
     def test_a_long_text_is_refused_in_words(self, client: TestClient) -> None:
         answer = client.post("/jobs", data=JOB | {"title": "x" * 500})
