@@ -10,7 +10,6 @@ from collections.abc import Iterable
 from dataclasses import dataclass
 
 import numpy as np
-from numpy.typing import NDArray
 
 from server import documents
 from server.checks.actions import GRAVITY, Actions, Peak, largest
@@ -32,8 +31,8 @@ BEAM_TABLE = "beam formula tables (AWC Design Aid No. 6, figures 1 and 8; superp
 class Resultants:
     """Forces of one combination at their places, and the sum of its couples, up to a place along the member."""
 
-    force: NDArray[np.float64]
-    at: NDArray[np.float64]
+    force: list[float]
+    at: list[float]
     couple: float
 
 
@@ -43,6 +42,7 @@ class Statics:
     def __init__(self, document: documents.MemberDocument, body: Body, actions: Actions, working: Working) -> None:
         self.document, self.body, self.actions, self.working = document, body, actions, working
         self._shear_done: set[tuple[float, int]] = set()
+        self._held: dict[int, list[tuple[float, float, float]]] = {}
 
     def loads(self) -> None:
         """Area loads on their width, and self-weight from the pieces' densities."""
@@ -62,7 +62,7 @@ class Statics:
         weights = [(p.density or 0.0) * GRAVITY * 1e-9 for p in section.pieces]
         self.working.step(
             f"Self-weight of case {case}", "w", "sum(A*gamma)",
-            {"A": (section.properties.pieces.area, "mm2"), "gamma": (np.array(weights), "N/mm3")},
+            {"A": (section.properties.pieces.area.tolist(), "mm2"), "gamma": (weights, "N/mm3")},
             unit="N/mm", source="gamma = density x 9.80665 m/s2", group="Loads",
         )  # fmt: skip
 
@@ -72,11 +72,10 @@ class Statics:
         for section in distinct:
             extent = "" if len(distinct) == 1 else f" ({_extent(self.body, section)})"
             parts = section.properties.pieces
-            E = np.array([p.E for p in section.pieces])
             values: dict[str, Given] = {
-                "E": (E, "MPa"),
-                "A": (parts.area, "mm2"),
-                "u": (parts.centroid[:, 1], "mm"),
+                "E": ([p.E for p in section.pieces], "MPa"),
+                "A": (parts.area.tolist(), "mm2"),
+                "u": (parts.centroid[:, 1].tolist(), "mm"),
             }
             u_0 = self.working.step(
                 f"Neutral axis, E-weighted{extent}", "u_0", "sum(E*A*u)/sum(E*A)", values,
@@ -84,7 +83,7 @@ class Statics:
             )  # fmt: skip
             self.working.step(
                 f"Bending stiffness{extent}", "EI", "sum(E*(I + A*(u - u_0)**2))",
-                {**values, "I": (parts.inertia[:, 0], "mm4"), "u_0": (u_0, "mm")},
+                {**values, "I": (parts.inertia[:, 0].tolist(), "mm4"), "u_0": (u_0, "mm")},
                 unit="N*mm2", source="parallel axes (Steiner), E-weighted", group="Section",
             )  # fmt: skip
             GA = section.shear_stiffness
@@ -137,7 +136,7 @@ class Statics:
         self.working.note(
             f"Reactions, combination {name}",
             f"Direct stiffness method with exact fixed-end forces. {listed}. Equilibrium: the reactions sum to "
-            f"{forces.sum():,.6g} N against {whole.force.sum():,.6g} N of load.",
+            f"{forces.sum():,.6g} N against {sum(whole.force):,.6g} N of load.",
             value=float(forces.sum()), unit="N", source="direct stiffness (matrix structural analysis)", group=group,
         )  # fmt: skip
 
@@ -146,7 +145,7 @@ class Statics:
         if (at, k) in self._shear_done:
             return
         self._shear_done.add((at, k))
-        left = min(self._both_sides(k, at), key=lambda side: abs(abs(side.force.sum()) - size))
+        left = min(self._both_sides(k, at), key=lambda side: abs(abs(sum(side.force)) - size))
         self.working.step(
             f"Shear at {at:.6g} mm, combination {self.actions.names[k]}", "V", SHEAR, {"F": (left.force, "N")},
             unit="N", source=f"{STATICS} of the part to the left: reactions up, loads down", group=group,
@@ -169,19 +168,30 @@ class Statics:
     def _left(self, k: int, at: float, inclusive: bool) -> Resultants:
         """Upward forces left of a place; at the left end what stands there always counts."""
         inclusive = inclusive or at <= 0
-        supports = self.document.member.supports
-        held = [i for i, s in enumerate(supports) if s.at < at or (inclusive and s.at == at)]
-        response, loads = self.actions.response, self._resultants(k, at, inclusive)
-        force = np.concatenate([response.reaction_force[k][held], -loads.force])
-        places = np.concatenate([[supports[i].at for i in held], loads.at])
-        couple = float(response.reaction_couple[k][held].sum()) + loads.couple
-        if not len(force):
-            return Resultants(np.zeros(1), np.zeros(1), couple)
-        return Resultants(force, places, couple)
+        loads = self._resultants(k, at, inclusive)
+        force, places, couple = [], [], loads.couple
+        for place, held, turned in self._reactions_of(k):
+            if place < at or (inclusive and place == at):
+                force.append(held)
+                places.append(place)
+                couple += turned
+        force += [-each for each in loads.force]
+        return Resultants(force or [0.0], places + loads.at or [0.0], couple)
+
+    def _reactions_of(self, k: int) -> list[tuple[float, float, float]]:
+        """Place, force and couple of every support in one combination."""
+        if k not in self._held:
+            response = self.actions.response
+            places = [s.at for s in self.document.member.supports]
+            forces, couples = response.reaction_force[k].tolist(), response.reaction_couple[k].tolist()
+            self._held[k] = list(zip(places, forces, couples, strict=True))
+        return self._held[k]
 
     def _resultants(self, k: int, at: float, inclusive: bool) -> Resultants:
-        forces, places, couple = [], [], 0.0
-        for factor, loads in zip(self.actions.factors[k], self.actions.case_loads, strict=True):
+        forces: list[float] = []
+        places: list[float] = []
+        couple = 0.0
+        for factor, loads in zip(self.actions.factors[k].tolist(), self.actions.case_loads, strict=True):
             if factor == 0:
                 continue
             for load in loads:
@@ -197,7 +207,7 @@ class Statics:
                     force, place = _line_resultant(load.start, load.end, load.value_start, load.value_end, at)
                     forces.append(factor * force)
                     places.append(place)
-        return Resultants(np.array(forces), np.array(places), couple)
+        return Resultants(forces, places, couple)
 
     def deflection(self) -> None:
         """The greatest deflection by beam tables where they hold, else the method by name."""
@@ -293,7 +303,7 @@ def _line_resultant(start: float, end: float, first: float, last: float, at: flo
 
 
 def _moment_of(left: Resultants, at: float) -> float:
-    return float((left.force * (at - left.at)).sum()) - left.couple
+    return sum(force * (at - place) for force, place in zip(left.force, left.at, strict=True)) - left.couple
 
 
 def _distinct(body: Body) -> list[CrossSection]:
