@@ -201,7 +201,7 @@ LOADS = Group(
     "loads",
     "load",
     (
-        Box("case", "Case", path="."),
+        Box("case", "Case", path=".", hint="blank: as the first load"),
         Box(
             "kind",
             "Kind",
@@ -296,6 +296,7 @@ ADHESIVES = Group(
         Box("E", "E", "stress", more=True),
         Box("shear_yield", "Shear yield", "stress", more=True),
         Box("shear_strain_limit", "Shear strain limit", more=True),
+        Box("kind", "Family", more=True),
         _STATUS,
         *_FACTORS,
         *_SOURCE,
@@ -315,6 +316,7 @@ FASTENERS = Group(
         Box("diameter", "Diameter", "size"),
         Box("spacing_min", "Least spacing", "size", more=True),
         Box("spacing_max", "Greatest spacing", "size", more=True),
+        Box("kind", "Kind", more=True),
         Box("creep", "Creep factor", more=True),
         _STATUS,
         *_FACTORS,
@@ -347,6 +349,7 @@ SINGLES: dict[str, Box] = {
         Box("mark", "Mark", hint="as on the drawing, such as B1"),
         Box("title", "What it is", path="title"),
         Box("note", "Note", path="note", wide=True),
+        Box("shop_note", "Note for the shop", path="shop_note", wide=True),
         Box("display", "Units shown", path="display", choices=(("SI", "SI"), ("US", "US customary"))),
         Box("made_by", "Prepared by"),
         Box("reason", "Reason for the change", hint="printed with the new revision"),

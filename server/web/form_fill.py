@@ -11,8 +11,8 @@ from collections.abc import Iterable, Mapping, Sequence
 from typing import Any
 
 from server.web.form_fields import GROUPS, LOAD_UNITS, PLAIN_UNITS, UNITS, VALUE_GROUPS, Group
+from server.web.form_text import is_number
 
-_BARE = re.compile(r"[+\-−]?\s*[\d.,][\d\s.,/\-]*(?:[eE][+\-]?\d+)?")
 Values = dict[str, str]
 Raw = Mapping[str, Any]
 
@@ -29,8 +29,8 @@ def show(value: object, unit: str, system: str) -> str:
     marked = UNITS[unit][system == "US"]
     typed = text.removesuffix(marked).strip()
     if typed != text:
-        return typed if _BARE.fullmatch(typed) else text
-    if not _BARE.fullmatch(text) or marked == PLAIN_UNITS[unit]:
+        return typed if is_number(typed) else text
+    if not is_number(text) or marked == PLAIN_UNITS[unit]:
         return text
     return f"{text} {PLAIN_UNITS[unit]}"
 
@@ -45,7 +45,7 @@ def fill(raw: Raw, *, simple_case: str, slip_by_itself: bool) -> Values:
     """Return the boxes of the form that say ``raw``."""
     system = "US" if raw.get("display") == "US" else "SI"
     values: Values = {"units": system, "display": system}
-    for name in ("title", "note"):
+    for name in ("title", "note", "shop_note"):
         values[name] = str(raw.get(name) or "")
     _basis(raw.get("basis") or {}, values)
     for name in VALUE_GROUPS:

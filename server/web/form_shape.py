@@ -8,7 +8,8 @@ from dataclasses import dataclass
 
 from server.web import layouts
 from server.web.form_fields import GROUPS, LOAD_UNITS, SINGLES, Group
-from server.web.forms import FIELD, Reading, couples, points, rows, schedule, system_of, with_unit
+from server.web.form_text import Reading, couples, points, schedule, with_unit
+from server.web.forms import FIELD, rows, system_of
 
 _BUTTONS = ("add", "remove", "start", "set_out", "units_of_boxes", "calculate")
 

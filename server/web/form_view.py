@@ -141,5 +141,5 @@ _PARTS: dict[str, tuple[str, ...]] = {
     "basis": tuple(name for name in SINGLES if name.startswith("basis.")),
     "analysis": ("slip", "shear_deformation", "field", "rules"),
     "service": ("lowest", "highest", "cure", "moisture"),
-    "sheet": ("display", "note"),
+    "sheet": ("display", "note", "shop_note"),
 }

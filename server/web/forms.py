@@ -9,35 +9,23 @@ belongs to; the path of every box is noted while reading.
 from __future__ import annotations
 
 import re
-from collections.abc import Iterable, Mapping
-from dataclasses import dataclass, field
+from collections.abc import Collection, Iterable, Mapping
 
 from server.errors import Fault
 from server.web import form_fill
-from server.web.form_fields import GROUPS, LOAD_UNITS, SINGLES, UNITS, VALUE_GROUPS, Group
+from server.web.form_fields import GROUPS, LOAD_UNITS, SINGLES, VALUE_GROUPS, Group
+from server.web.form_text import Reading, couples, is_number, pairs, points, schedule, split, with_unit
 
 FIELD = re.compile(r"(\w+)\[(\d{1,4})\]\.(\w+)")
-_BARE = re.compile(r"[+\-−]?\s*[\d.,][\d\s.,/\-]*(?:[eE][+\-]?\d+)?")
 _LONGEST = 4000
 _FORMAT = {"format": "bondwright/1", "kind": "member"}
 SIMPLE_CASE = "imposed"
+STARTED_WITH = ("glue", "timber", "plywood")
+"""Names that a layout starts with: such a row without a value that nothing refers to was never typed by anybody."""
 BESIDE = {"mark": "mark", "made_by": "made_by", "reason": "reason"}
 """Boxes whose text stands beside the document, by the name under which a refusal names them."""
 
 Row = dict[str, str]
-
-
-@dataclass
-class Reading:
-    """One form as read: the document, the form's own faults by box, and which box each path came from."""
-
-    raw: dict[str, object] = field(default_factory=dict)
-    faults: dict[str, str] = field(default_factory=dict)
-    paths: dict[str, str] = field(default_factory=dict)
-
-    def fault(self, name: str, message: str) -> None:
-        """Keep the first message of a box."""
-        self.faults.setdefault(name, message)
 
 
 def read(values: Mapping[str, str]) -> tuple[dict[str, object], dict[str, str]]:
@@ -85,14 +73,6 @@ def _box_of(path: str, paths: Mapping[str, str]) -> str | None:
 def system_of(values: Mapping[str, str]) -> str:
     """Return the system that the form's boxes are marked in, which is what a bare number means."""
     return "US" if values.get("units") == "US" else "SI"
-
-
-def with_unit(text: str, unit: str, system: str) -> str:
-    """Say the box's unit after a bare number; leave anything else as typed."""
-    text = text.strip()
-    if unit and _BARE.fullmatch(text):
-        return f"{text} {UNITS[unit][system == 'US']}"
-    return text
 
 
 def is_box(name: str) -> bool:
@@ -167,7 +147,7 @@ def _names_used(name: str, filled: Mapping[str, Mapping[int, Row]]) -> set[str]:
 
 
 def _read_heading(values: Mapping[str, str], reading: Reading) -> None:
-    for name in ("title", "note"):
+    for name in ("title", "note", "shop_note"):
         if values.get(name):
             reading.raw[name] = values[name]
     reading.raw["display"] = values.get("display") or system_of(values)
@@ -179,8 +159,8 @@ def _read_heading(values: Mapping[str, str], reading: Reading) -> None:
     for kind in ("adhesive", "fastener", "material"):
         reading.paths[f"basis.{key}.{kind}"] = f"basis.{kind}"
         if text := values.get(f"basis.{kind}", ""):
-            by_name = kind == "material" and not _is_number(text)
-            factors[kind] = _pairs(text, "basis.material", reading) if by_name else text
+            by_name = kind == "material" and not is_number(text)
+            factors[kind] = pairs(text, "basis.material", reading) if by_name else text
     basis: dict[str, object] = {"method": method, key: factors}
     if values.get("basis.fall_back_factor"):
         basis["fall_back_factor"] = values["basis.fall_back_factor"]
@@ -192,12 +172,15 @@ def _read_values(group: Group, filled: Mapping[int, Row], used: set[str], system
     entries: dict[str, object] = {}
     for index, row in filled.items():
         only_named = {name for name, text in row.items() if text} <= {"name", "layered", "kind", "status"}
-        if only_named and row.get("name") not in used:
+        if only_named and row.get("name") not in used and row.get("name") in ("", None, *STARTED_WITH):
             continue
         name = row.get("name") or row.get("record", "")
         if not _named(group, index, name, entries, reading):
             continue
         paths = _box_paths(group, index, f"{group.path}.{name}", reading)
+        if row.get("revision") and not row.get("record"):
+            message = "A revision belongs to a record; choose the record too, or empty this box."
+            reading.fault(paths["revision"], message)
         if record := row.get("record"):
             entries[name] = {"record": record, **_whole("revision", row)}
             reading.paths[f"{group.path}.{name}"] = f"{group.name}[{index}].record"
@@ -215,7 +198,7 @@ def _entry(group: Group, row: Row, paths: Mapping[str, str], system: str, readin
             continue
         value: object = with_unit(text, box.unit, system)
         if box.name in ("duration_factors", "factors"):
-            value = _pairs(text, paths[box.name], reading)
+            value = pairs(text, paths[box.name], reading)
         elif box.name == "layered":
             value = text == "yes"
         _put(entry, box.place, value)
@@ -232,7 +215,8 @@ def _read_section(filled: Mapping[str, Mapping[int, Row]], system: str, reading:
             reading.paths[f"{group.path}.{name}.at"] = paths["across"]
             pieces[name] = _piece(row, paths, system, reading)
     joints = [
-        _joint(index, row, number, system, reading) for number, (index, row) in enumerate(filled["joints"].items())
+        _joint(index, row, number, pieces, system, reading)
+        for number, (index, row) in enumerate(filled["joints"].items())
     ]
     reading.raw["section"] = {"pieces": pieces, "joints": joints}
 
@@ -257,10 +241,17 @@ def _piece(row: Row, paths: Mapping[str, str], system: str, reading: Reading) ->
     return piece
 
 
-def _joint(index: int, row: Row, number: int, system: str, reading: Reading) -> dict[str, object]:
+def _joint(
+    index: int, row: Row, number: int, pieces: Collection[str], system: str, reading: Reading
+) -> dict[str, object]:
     group = GROUPS["joints"]
     paths = _box_paths(group, index, f"{group.path}[{number}]", reading)
-    joint: dict[str, object] = {"between": [row.get("first", ""), row.get("second", "")]}
+    first, second = row.get("first", ""), row.get("second", "")
+    # A fault of the pair belongs to the piece that is not there, and to the first one where both are.
+    reading.paths[f"{group.path}[{number}].between"] = paths[
+        "second" if first in pieces and second not in pieces else "first"
+    ]
+    joint: dict[str, object] = {"between": [first, second]}
     for box in group.boxes:
         text = row.get(box.name, "")
         if not text or box.name in ("first", "second"):
@@ -312,7 +303,7 @@ def _read_loads(values: Mapping[str, str], filled: Mapping[int, Row], system: st
         loads[case] = [{"kind": "line", "from": "0 mm", "to": length, "value": value}]
         reading.paths |= {f"loads.{case}[0].value": "load", f"loads.{case}[0].to": "span", f"loads.{case}[0]": "load"}
     for index, row in filled.items():
-        case = row.get("case") or SIMPLE_CASE
+        case = row.get("case") or values.get("load_case") or SIMPLE_CASE
         entries = loads.setdefault(case, [])
         _box_paths(GROUPS["loads"], index, f"loads.{case}[{len(entries)}]", reading)
         entries.append(_load(row, index, system, reading))
@@ -356,13 +347,13 @@ def _read_combinations(filled: Mapping[int, Row], reading: Reading) -> None:
         paths = _box_paths(group, index, f"{group.path}.{name}", reading)
         factors: object = dict.fromkeys(loads, 1.0)
         if row.get("factors"):
-            factors = _pairs(row["factors"], paths["factors"], reading)
+            factors = pairs(row["factors"], paths["factors"], reading)
         entry: dict[str, object] = {"factors": factors}
         for key in ("duration", "for"):
             if row.get(key):
                 entry[key] = row[key]
         if row.get("sustained"):
-            entry["sustained"] = _pairs(row["sustained"], paths["sustained"], reading)
+            entry["sustained"] = pairs(row["sustained"], paths["sustained"], reading)
         combinations[name] = entry
     if combinations:
         reading.raw["combinations"] = combinations
@@ -376,7 +367,7 @@ def _read_analysis(values: Mapping[str, str], reading: Reading) -> None:
         "field": values.get("field") or "auto",
     }
     if values.get("rules"):
-        analysis["rules"] = _split(values["rules"])
+        analysis["rules"] = split(values["rules"])
     reading.raw["analysis"] = analysis
 
 
@@ -399,7 +390,7 @@ def _read_service(values: Mapping[str, str], system: str, reading: Reading) -> N
     if values.get("cure"):
         service["cure_temperature"] = with_unit(values["cure"], "temperature", system)
     if values.get("moisture"):
-        service["moisture_change"] = _pairs(values["moisture"], "moisture", reading)
+        service["moisture_change"] = pairs(values["moisture"], "moisture", reading)
     if service:
         reading.raw["service"] = service
 
@@ -445,61 +436,3 @@ def _whole(name: str, row: Row) -> dict[str, object]:
     if not text:
         return {}
     return {name: int(text) if text.isdecimal() and len(text) < 10 else text}
-
-
-def _is_number(text: str) -> bool:
-    return _BARE.fullmatch(text) is not None
-
-
-def _split(text: str) -> list[str]:
-    """Split a list typed with commas, semicolons or lines; quotes round a part keep its commas in it."""
-    found = re.findall(r'\s*(?:"((?:[^"]|"")*)"|([^,;\n]*))\s*(?:[,;\n]|$)', text)
-    return [part for quoted, plain in found if (part := quoted.replace('""', '"') or plain.strip())]
-
-
-def _pairs(text: str, box: str, reading: Reading) -> dict[str, object]:
-    """Read ``dead 1.35, snow 1.5`` into a value by name."""
-    found: dict[str, object] = {}
-    for part in _split(text):
-        match = re.fullmatch(r"(.+?)[\s:=]+([+\-−]?[\d.,]+(?:[eE][+\-]?\d+)?\s*%?)", part)
-        if match is None:
-            reading.fault(box, f"“{part}” is not a name and a number; write for example “dead 1.35, snow 1.5”.")
-        elif match[1] in found:
-            reading.fault(box, f"“{match[1]}” is given twice; keep one of them.")
-        else:
-            found[match[1]] = match[2]
-    return found
-
-
-def couples(text: str, box: str, reading: Reading) -> list[tuple[str, str]]:
-    """Read ``0, 3 kN; 1.2 m, 3 kN`` into couples of texts."""
-    found = []
-    for part in re.split(r"[;\n]", text):
-        ends = [end.strip() for end in (part.split(",") if "," in part else part.split())]
-        if len(ends) == 2 and all(ends):
-            found.append((ends[0], ends[1]))
-        elif part.strip():
-            reading.fault(box, f"“{part.strip()}” is not two values; write them as “0, 3; 1.2, 3”.")
-    return found
-
-
-def points(text: str, system: str, box: str, reading: Reading) -> list[list[str]]:
-    return [[with_unit(end, "size", system) for end in point] for point in couples(text, box, reading)]
-
-
-def schedule(text: str, system: str, box: str, reading: Reading) -> list[dict[str, object]]:
-    """Read ``0 to 1 m: 75 mm; 1 m to 3 m: 150 mm`` into stretches of spacing."""
-    found: list[dict[str, object]] = []
-    for part in re.split(r"[;\n]", text):
-        match = re.fullmatch(r"\s*(.+?)\s+to\s+(.+?)\s*:\s*(.+?)\s*", part)
-        if match:
-            found.append(
-                {
-                    "from": with_unit(match[1], "position", system),
-                    "to": with_unit(match[2], "position", system),
-                    "spacing": with_unit(match[3], "size", system),
-                }
-            )
-        elif part.strip():
-            reading.fault(box, f"“{part.strip()}” is not a stretch; write for example “0 to 1 m: 75; 1 m to 3 m: 150”.")
-    return found

@@ -11,7 +11,7 @@ from collections.abc import Mapping
 
 from server import units
 from server.errors import InputError
-from server.web import forms
+from server.web.form_text import with_unit
 
 LAYOUTS: dict[str, str] = {
     "box": "Box: two flanges, two webs",
@@ -193,7 +193,7 @@ def _rows_by_name(values: Mapping[str, str]) -> dict[str, str]:
 
 def _size(text: str, system: str) -> float:
     """Return a size in mm; a bare number is in the unit of its box."""
-    return units.parse("size", forms.with_unit(text, "size", system), "length")
+    return units.parse("size", with_unit(text, "size", system), "length")
 
 
 def _places(layout: str, names: list[str], sizes: Mapping[str, tuple[float, ...]]) -> dict[str, tuple[float, float]]:

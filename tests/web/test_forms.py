@@ -7,6 +7,7 @@ import pytest
 from server.errors import Fault
 from server.web import forms, layouts
 from server.web.form_fields import GROUPS
+from server.web.form_text import with_unit
 
 BOX = layouts.start("box", "SI") | {"title": "B1", "span": "6.0", "load": "4.2"}
 
@@ -41,12 +42,12 @@ def test_a_typed_unit_is_kept_as_typed():
     [("4", "4 in"), ("11-5/8", "11-5/8 in"), ("3 1/2", "3 1/2 in"), ("0.703", "0.703 in"), ("1.2e1", "1.2e1 in")],
 )
 def test_fractions_and_exponents_count_as_bare_numbers(typed, said):
-    assert forms.with_unit(typed, "size", "US") == said
+    assert with_unit(typed, "size", "US") == said
 
 
 @pytest.mark.parametrize("typed", ["abc", "nan", "inf", "4 kg", "12 mm", "--", ""])
 def test_what_is_no_bare_number_is_left_for_the_document_to_judge(typed):
-    assert forms.with_unit(typed, "size", "SI") == typed
+    assert with_unit(typed, "size", "SI") == typed
 
 
 def test_boxes_marked_in_us_units_mean_us_units():
@@ -168,6 +169,25 @@ def test_what_the_form_alone_can_tell_stands_beside_its_box(box, text, says):
     assert says in (faults.get(box) or faults.get("highest") or "")
 
 
+def test_a_revision_without_its_record_is_refused_beside_its_box():
+    _, faults = forms.read(BOX | {"adhesives[0].revision": "2"})
+    assert "belongs to a record" in faults["adhesives[0].revision"]
+
+
+@pytest.mark.parametrize(("box", "text"), [("joints[0].first", "no such"), ("joints[0].second", "no such")])
+def test_a_joint_to_nowhere_is_marked_at_the_piece_that_is_not_there(box, text):
+    paths = forms.reading_of(BOX | {box: text}).paths
+    beside, _ = forms.place([Fault("section.joints[0].between", "names no piece")], paths)
+    assert beside == {box: "names no piece"}
+
+
+def test_a_load_without_a_case_belongs_to_the_case_of_the_first():
+    raw, _ = forms.read(
+        BOX | {"load_case": "roof", "loads[0].kind": "point", "loads[0].value": "3", "loads[0].at": "2"}
+    )
+    assert [load["kind"] for load in raw["loads"]["roof"]] == ["line", "point"]
+
+
 def test_too_many_rows_are_refused_in_words():
     _, faults = forms.read({f"supports[{i}].at": str(i) for i in range(30)})
     assert faults == {
@@ -220,6 +240,7 @@ FULL = (
     BOX
     | {
         "note": "to be glued on Thursday",
+        "shop_note": "two of these",
         "basis.method": "limit-state",
         "basis.material": "plywood 1.2, timber 1.3",
         "basis.fall_back_factor": "1.3",
@@ -259,7 +280,12 @@ FULL = (
     | {"materials[0].factors": "wet 0.8", "materials[0].note": "n"}
     | {"materials[1].layered": "no"}
     | {f"adhesives[0].{n}": "1" for n in ("shear_strength", "thickness", "shear_modulus", "peel_strength", "E")}
-    | {"adhesives[0].shear_yield": "20", "adhesives[0].shear_strain_limit": "0.4"}
+    | {
+        "adhesives[0].kind": "epoxy",
+        "fasteners[0].kind": "nail",
+        "adhesives[0].shear_yield": "20",
+        "adhesives[0].shear_strain_limit": "0.4",
+    }
     | {f"fasteners[0].{n}": "5" for n in ("shear_resistance", "slip_modulus", "diameter", "spacing_min")}
     | {"fasteners[0].name": "nail", "fasteners[0].spacing_max": "200", "fasteners[0].creep": "0.6"}
     | {"fasteners[1].name": "screw", "fasteners[1].record": "F-001", "fasteners[1].revision": "2"}
