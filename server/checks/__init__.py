@@ -7,8 +7,10 @@ from server.checks import member
 from server.errors import DocumentError, Fault
 
 
-def run(document: documents.Document) -> dict[str, object]:
+def run(document: documents.Document, *, working: bool = True) -> dict[str, object]:
     """Run a document's check and return its result as the contract says.
+
+    ``working`` false leaves the steps out (the numbers are the same), for an answer while somebody types.
 
     Raises
     ------
@@ -24,5 +26,5 @@ def run(document: documents.Document) -> dict[str, object]:
             ]
         )
     if isinstance(document, documents.MemberDocument):
-        return member.run(document)
+        return member.run(document, working=working)
     raise DocumentError([Fault("kind", f"kind {document.kind!r} cannot be checked in this version.")])

@@ -31,7 +31,7 @@ class Candidate:
     section: CrossSection
 
 
-def run(document: documents.MemberDocument) -> dict[str, object]:
+def run(document: documents.MemberDocument, *, working: bool = True) -> dict[str, object]:
     """Check a member as contract.md's kind "member" says.
 
     Raises
@@ -42,15 +42,17 @@ def run(document: documents.MemberDocument) -> dict[str, object]:
     _refuse_what_is_to_come(document)
     body = build(document)
     actions = act(document, body)
-    working, findings = Working(), Findings()
-    statics = hand.Statics(document, body, actions, working)
-    statics.loads()
-    statics.section()
-    statics.member()
+    book, findings = Working(record=working), Findings()
+    statics = hand.Statics(document, body, actions, book)
+    if working:
+        statics.loads()
+        statics.section()
+        statics.member()
     upper = _upper_stiffness(document, body, findings)
-    joints, pieces = _judge(body, actions, Judge(document, actions, working, findings), statics, upper)
-    statics.deflection()
-    sags = check_deflection(document, actions, working, findings, upper_stiffness=upper)
+    joints, pieces = _judge(body, actions, Judge(document, actions, book, findings), statics, upper)
+    if working:
+        statics.deflection()
+    sags = check_deflection(document, actions, book, findings, upper_stiffness=upper)
     add_cautions(document, body, actions, joints, findings)
     governing = _governing(body, actions, joints, pieces, sags)
     return {
@@ -72,7 +74,7 @@ def run(document: documents.MemberDocument) -> dict[str, object]:
         "not_checked": list(NOT_CHECKED),
         "drawing": drawing(document, body, actions),
         "diagrams": diagrams(body, actions),
-        "steps": working.steps,
+        "steps": book.steps,
         "values_used": _values_used(document, body),
         "engine": ENGINE,
     }

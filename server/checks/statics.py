@@ -142,7 +142,7 @@ class Statics:
 
     def shear(self, at: float, k: int, size: float, group: str = "Member") -> None:
         """Shear at a governing place, from the forces on its left; each place and combination once."""
-        if (at, k) in self._shear_done:
+        if not self.working.record or (at, k) in self._shear_done:
             return
         self._shear_done.add((at, k))
         left = min(self._both_sides(k, at), key=lambda side: abs(abs(sum(side.force)) - size))

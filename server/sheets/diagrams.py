@@ -414,6 +414,7 @@ def thinned(x: NDArray[np.float64], y: NDArray[np.float64]) -> tuple[NDArray[np.
             idle[0::2] = np.abs(dx[0::2] * py[0::2] - dy[0::2] * px[0::2]) <= 0.3 * span[0::2]
             if not idle.any():
                 break
-        keep = np.append(np.append(True, ~idle), True)
+        keep = np.ones(len(x), dtype=bool)
+        keep[1:-1] = ~idle
         x, y = x[keep], y[keep]
     return x, y

@@ -38,17 +38,18 @@ class Judged:
     waiting: tuple[str, ...] = ()
 
 
-def judge(session: Session, values: Mapping[str, str], *, patient: bool = True) -> Judged:
+def judge(session: Session, values: Mapping[str, str], *, patient: bool = True, working: bool = True) -> Judged:
     """Read, fill and check the form as typed; nothing is raised.
 
-    While ``patient``, a form whose span or loads are not typed yet is waited for instead of being found at fault.
+    While ``patient``, a form whose span or loads are not typed yet is waited for instead of being found at fault;
+    without ``working`` the result has no steps.
     """
     reading = forms.reading_of(values)
     waiting = tuple(_still_to_enter(values, reading.raw)) if patient else ()
     if waiting:
         return Judged(reading.raw, None, {}, waiting=waiting)
     try:
-        result = checks.run(library.resolve(session, documents.read(reading.raw)))
+        result = checks.run(library.resolve(session, documents.read(reading.raw)), working=working)
         faults: Iterable[Fault] = ()
     except JointError as error:
         result, faults = {}, faults_of(error)
@@ -88,7 +89,7 @@ def new_check(request: Request, session: DbSession, job_id: Id, layout: str = "b
 def preview_check(request: Request, session: DbSession, values: FormValues, job_id: Id) -> Response:
     """Answer a keystroke: the result, and the messages of the boxes concerned."""
     typed = dict(values)
-    judged = judge(session, typed)
+    judged = judge(session, typed, working=False)
     form = _form(request, typed, judged, job_id)
     return page(request, "check/_preview.html", form=form, lazily=True, swap=True, **_shown(judged, typed))
 

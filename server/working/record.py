@@ -35,6 +35,9 @@ _NO_LISTS: frozenset[str] = frozenset()
 class Working:
     """Collects the steps of one check, in the order in which they are made.
 
+    With ``record`` false every formula is evaluated just the same, but no step is kept: a live preview shows results
+    long before anybody opens the working.
+
     Examples
     --------
     >>> w = Working()
@@ -45,7 +48,8 @@ class Working:
     '14600 * 1.04e6 / 4.27e8'
     """
 
-    def __init__(self) -> None:
+    def __init__(self, *, record: bool = True) -> None:
+        self.record = record
         self.steps: list[Step] = []
         self.group = ""
 
@@ -89,6 +93,8 @@ class Working:
                 if isinstance(taken, list):
                     lists = lists | {name}
         value = _evaluate(known, plain_values, lists, symbol, title)
+        if not self.record:
+            return value
         texts = _texts(known, plain_values, lists, value)[1]
         self.steps.append(
             {
@@ -119,6 +125,8 @@ class Working:
         """Record what a numerical method did, in words, with the value it gave."""
         if value is not None and not math.isfinite(value):
             raise InputError(symbol or title, _not_finite(symbol or title, value, title))
+        if not self.record:
+            return
         self.steps.append(
             {
                 "title": title,
