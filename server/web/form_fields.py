@@ -289,7 +289,7 @@ ADHESIVES = Group(
         Box("name", "Name"),
         Box("record", "From the library"),
         Box("revision", "Revision", hint="blank: newest approved", whole=True),
-        Box("shear_strength", "Shear strength", "stress", hint="characteristic; blank: you are told which to ask for"),
+        Box("shear_strength", "Shear strength", "stress", hint="blank: you are told which to ask for"),
         Box("thickness", "Bond line", "size"),
         Box("shear_modulus", "Shear modulus", "stress"),
         Box("peel_strength", "Tension across bond", "stress", hint="pull-off, not a peel test", more=True),

@@ -47,7 +47,7 @@ def shape(values: Mapping[str, str]) -> Shaped:
 
 
 def _with_a_row(values: dict[str, str], group: Group) -> Shaped:
-    taken = rows(values, group)
+    taken = rows(values)[group.name]
     if len(taken) >= group.limit:
         return Shaped(values, group.name, f"add-{group.name}")
     # The first view always asks for one adhesive, so its row is there before anything is typed into it.

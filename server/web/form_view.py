@@ -63,7 +63,7 @@ class Form:
 
     @cached_property
     def _rows(self) -> dict[str, list[int]]:
-        found = {name: list(forms.rows(self.values, group)) for name, group in GROUPS.items()}
+        found = {name: list(indexed) for name, indexed in forms.rows(self.values).items()}
         found["adhesives"] = found["adhesives"] or [0]
         return found
 

@@ -84,14 +84,13 @@ def is_box(name: str) -> bool:
     return group is not None and any(box.name == match[3] for box in group.boxes)
 
 
-def rows(values: Mapping[str, str], group: Group) -> dict[int, Row]:
-    """Return a group's rows by their index in the form, blank ones included."""
-    found: dict[int, Row] = {}
+def rows(values: Mapping[str, str]) -> dict[str, dict[int, Row]]:
+    """Return every group's rows by their index in the form, blank ones included."""
+    found: dict[str, dict[int, Row]] = {name: {} for name in GROUPS}
     for name, text in values.items():
-        match = FIELD.fullmatch(name)
-        if match and match[1] == group.name:
-            found.setdefault(int(match[2]), {})[match[3]] = text
-    return dict(sorted(found.items()))
+        if "[" in name and (match := FIELD.fullmatch(name)) and match[1] in found:
+            found[match[1]].setdefault(int(match[2]), {})[match[3]] = text
+    return {name: dict(sorted(indexed.items())) for name, indexed in found.items()}
 
 
 def reading_of(values: Mapping[str, str]) -> Reading:
@@ -106,7 +105,8 @@ def reading_of(values: Mapping[str, str]) -> Reading:
         if box.path:
             reading.paths[box.path] = name
     system = system_of(values)
-    filled = {name: _filled(values, group, reading) for name, group in GROUPS.items()}
+    typed = rows(values)
+    filled = {name: _filled(typed[name], group, reading) for name, group in GROUPS.items()}
     _read_heading(values, reading)
     for name in VALUE_GROUPS:
         _read_values(GROUPS[name], filled[name], _names_used(name, filled), system, reading)
@@ -119,13 +119,12 @@ def reading_of(values: Mapping[str, str]) -> Reading:
     return reading
 
 
-def _filled(values: Mapping[str, str], group: Group, reading: Reading) -> dict[int, Row]:
+def _filled(typed: Mapping[int, Row], group: Group, reading: Reading) -> dict[int, Row]:
     """Return the rows in which something was typed; more than the group's limit is a fault."""
     choices = {box.name: box.choices[0][0] for box in group.boxes if box.choices}
     kept: dict[int, Row] = {}
-    for index, row in rows(values, group).items():
-        typed = {name for name, text in row.items() if text and text != choices.get(name)}
-        if typed - {"case", "layered"}:
+    for index, row in typed.items():
+        if any(text and text != choices.get(name) and name not in ("case", "layered") for name, text in row.items()):
             kept[index] = row
     if len(kept) > group.limit:
         over = list(kept)[group.limit]
