@@ -2,9 +2,13 @@
 
 from __future__ import annotations
 
+import json
+
 import pytest
 
+from server import checks, documents
 from server.errors import Fault
+from server.paths import data_folder
 from server.web import forms, layouts
 from server.web.form_fields import GROUPS
 from server.web.form_text import with_unit
@@ -339,3 +343,13 @@ def test_each_layout_starts_without_a_fault_of_its_own(layout, system):
 def test_names_of_boxes_are_their_own_within_a_row(group):
     names = [box.name for box in group.boxes]
     assert len(names) == len(set(names))
+
+
+@pytest.mark.parametrize("name", ["pass", "fail", "not-proven"])
+def test_a_document_written_elsewhere_gives_the_same_result_through_the_form(name):
+    given = json.loads((data_folder("seed_data") / "checks" / f"{name}.json").read_text(encoding="utf-8"))
+    raw, faults = forms.read(forms.write(given))
+    assert faults == {}
+    before, after = (checks.run(documents.read(each)) for each in (given, raw))
+    for part in ("verdict", "utilisation", "joints", "pieces", "member", "missing", "drawing"):
+        assert after[part] == before[part]
