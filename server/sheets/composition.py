@@ -27,6 +27,7 @@ FOOT = (
     "limits of use stand at the end."
 )
 PRECEDENCE = "Local building, road, marine and machinery rules, and licensed practice, take precedence over this sheet."
+DIAGRAM_HEIGHT = 172.0
 KINDS = {"member": "Check of a built-up member"}
 
 
@@ -181,7 +182,7 @@ def _drawing_parts(result: Mapping[str, Any], display: str, drawings: Drawings) 
     names = {"shear": "Shear", "moment": "Bending moment", "deflection": "Deflection"}
     for quantity, name in names.items():
         if (result.get("diagrams") or {}).get(quantity):
-            svg = drawings.diagram(result, quantity, display=display)
+            svg = drawings.diagram(result, quantity, display=display, height=DIAGRAM_HEIGHT)
             yield {**_figure(svg, "", 0.86), "alt": f"{name}, envelope over the combinations"}
     if (result.get("diagrams") or {}).get("joints"):
         yield {**_figure(drawings.flow(result, display=display), "", 0.86), "alt": "Shear flow in the joints"}

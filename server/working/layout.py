@@ -103,7 +103,8 @@ class _Writer:
         if first[0] == "row" and first[1][0] == "sum" and operator == "*":
             first = ["brackets", first]  # (sum of a) times b, not the sum of a times b
         # Standing right of a sign, whatever begins with a minus is bracketed.
-        second = self._held(right, own + (operator == "-"), term)
+        kept = operator == "-" or (operator == "+" and isinstance(right, Binary))  # brackets as they were written
+        second = self._held(right, own + kept, term)
         if starts_with_minus(second):
             second = ["brackets", second]
         sign = {"*": TIMES, "-": MINUS}.get(operator, operator)
