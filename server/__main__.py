@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import argparse
+import io
 import json
 import socket
 import sys
@@ -29,6 +30,9 @@ DEMO_DATA = Path("shop/demo")
 def main(arguments: Sequence[str] | None = None) -> int:
     """Run one command; what we expect and can explain is one clear line a fault, never a traceback."""
     options = _parser().parse_args(arguments)
+    for stream in (sys.stdout, sys.stderr):
+        if isinstance(stream, io.TextIOWrapper):  # a console that cannot show every sign still shows the sheet
+            stream.reconfigure(errors="replace")
     try:
         return int(options.run(options))
     except DocumentError as error:

@@ -151,6 +151,7 @@ def _blank(site: Site) -> dict[str, object]:
         "adhesive": site.spec.adhesive,
         "fastener": site.spec.fastener,
         "role": site.spec.effective_role,
+        "rows": site.spec.rows,
         "first_moment": None,
         "shear_flow": None,
         "stress": None,

@@ -162,7 +162,8 @@ class Judge:
                 )
         if not table:
             self.findings.caution(
-                "load duration", f"{label.capitalize()} has no duration factors: 1.0 was used for every combination."
+                "load duration",
+                f"{label[:1].upper() + label[1:]} has no duration factors: 1.0 was used for every combination.",
             )
         self.judge_status(label, holder)
         self._durations[key] = tuple(found)
@@ -177,9 +178,13 @@ class Judge:
                 "from tests of these parts. Test coupons and have the record approved."
             )
         elif status == "provisional":
-            self.findings.caution("value status", f"{label.capitalize()} is provisional: few tests so far.", True)
+            self.findings.caution(
+                "value status", f"{label[:1].upper() + label[1:]} is provisional: few tests so far.", True
+            )
         elif status == "superseded":
-            self.findings.caution("value status", f"{label.capitalize()} is superseded: a newer revision exists.", True)
+            self.findings.caution(
+                "value status", f"{label[:1].upper() + label[1:]} is superseded: a newer revision exists.", True
+            )
 
     def weigh(self, claims: Sequence[Claim]) -> list[Weighed | None]:
         """The governing combination of every claim; None where no combination can be judged."""
