@@ -37,13 +37,14 @@ class Contact:
     gap: float
 
 
-def contacts(outlines: Sequence[Outline], reach: Array) -> list[Contact]:
+def contacts(outlines: Sequence[Outline] | Edges, reach: Array) -> list[Contact]:
     """Find every stretch along which two pieces face each other.
 
     Parameters
     ----------
-    outlines : sequence
-        Of n pieces, each an (m, 2) array or such rings, the outer one first [mm].
+    outlines : sequence or Edges
+        Of n pieces, each an (m, 2) array or such rings, the outer one first [mm]; or their edges, as in
+        ``SectionProperties.edges``.
     reach : numpy.ndarray
         (n, n) widest gap that still counts as a contact of that pair [mm].
 
@@ -76,7 +77,7 @@ def contacts(outlines: Sequence[Outline], reach: Array) -> list[Contact]:
     """
     edges = edges_of(outlines)
     reach = np.asarray(reach, dtype=float)
-    if reach.shape != (len(outlines), len(outlines)):
+    if reach.shape != (len(edges.first), len(edges.first)):
         raise InputError("reach", f"reach has the shape {reach.shape}; give one number for every pair of pieces.")
     reach = np.maximum(reach, reach.T)
     one, other = _near_edges(edges, reach)
@@ -99,13 +100,14 @@ def segments(found: Sequence[Contact]) -> dict[tuple[int, int], tuple[Contact, .
     return {pair: tuple(contacts) for pair, contacts in pairs.items()}
 
 
-def overlap(outlines: Sequence[Outline]) -> list[tuple[int, int, float]]:
+def overlap(outlines: Sequence[Outline] | Edges) -> list[tuple[int, int, float]]:
     """Pairs of pieces that lie inside each other by more than 0.05 mm, and the area they share.
 
     Parameters
     ----------
-    outlines : sequence
-        Of n pieces, each an (m, 2) array or such rings, the outer one first [mm].
+    outlines : sequence or Edges
+        Of n pieces, each an (m, 2) array or such rings, the outer one first [mm]; or their edges, as in
+        ``SectionProperties.edges``.
 
     Returns
     -------

@@ -28,9 +28,9 @@ class JointFlow:
 
     ``split`` "cut", "symmetry", or None where neither settles it; ``first_moment`` E-weighted, of the whole cut-off
     part [N mm], above the neutral axis positive; ``first_moment_other_side`` that of all other pieces, equal and
-    opposite; ``share`` this joint's part of it [N mm], with the sign of the flow on the joint's first piece; ``cut_off``
-    pieces of the cut-off part; ``partners`` the joints that are cut together, in equal shares (this one included);
-    ``reason`` in words. For a joint that carries nothing by symmetry ``cut_off`` is empty and both moments are 0;
+    opposite; ``share`` this joint's part of it [N mm], with the sign of the flow on the joint's first piece;
+    ``cut_off`` pieces of the cut-off part; ``partners`` the joints that are cut together, in equal shares (this one
+    included); ``reason`` in words. For a joint that carries nothing by symmetry ``cut_off`` is empty and both moments are 0;
     where ``split`` is None the numbers are None.
     """
 

@@ -73,14 +73,18 @@ def _rings(outlines: Sequence[Outline]) -> tuple[list[Array], list[int], list[in
     return rings, owners, outer
 
 
-def edges_of(outlines: Sequence[Outline]) -> Edges:
+def edges_of(outlines: Sequence[Outline] | Edges) -> Edges:
     """Flatten outlines into edges, turning every ring so that its material lies on the left.
+
+    A corner that is typed twice running, such as a closing one, counts once. Edges that are ready pass through.
 
     Raises
     ------
     InputError
-        If there is no outline, or a ring has fewer than three points.
+        If there is no outline, or a ring has fewer than three distinct corners.
     """
+    if isinstance(outlines, Edges):
+        return outlines
     if not outlines:
         raise InputError("pieces", "The section has no pieces; add at least one.")
     rings, owners, outer = _rings(outlines)
@@ -103,7 +107,27 @@ def edges_of(outlines: Sequence[Outline]) -> Edges:
         start = np.concatenate(turned)
         end = start[following]
     owner = np.repeat(np.array(owners), counts)
-    return Edges(start, end, owner, first[outer], following)
+    edges = Edges(start, end, owner, first[outer], following)
+    repeated = ((start == end).sum(axis=1)) == 2
+    return _without(edges, following[repeated]) if repeated.any() else edges
+
+
+def _without(edges: Edges, corners: Indices) -> Edges:
+    """The same polygons less some corners, each named by the edge that starts there."""
+    keep = np.ones(len(edges.start), dtype=bool)
+    keep[corners] = False
+    ends_ring = edges.next != np.arange(1, len(keep) + 1)
+    ring = np.concatenate(([0], ends_ring[:-1].cumsum()))
+    counts = np.bincount(ring[keep], minlength=int(ring[-1]) + 1)
+    if counts.min() < 3:
+        bad = int(edges.owner[ring == counts.argmin()][0])
+        raise InputError("pieces", f"Piece {bad + 1} has no area: its outline has fewer than three distinct corners.")
+    last = counts.cumsum() - 1
+    following = np.arange(1, int(keep.sum()) + 1)
+    following[last] = last - counts + 1
+    start, owner = edges.start[keep], edges.owner[keep]
+    first = np.searchsorted(owner, np.arange(len(edges.first)))
+    return Edges(start, start[following], owner, first, following)
 
 
 def _doubled_areas(start: Array, end: Array, origin: Array) -> Array:
@@ -182,16 +206,4 @@ def straightened(edges: Edges) -> Edges:
     turn = np.abs(along[:, 0] * after[:, 1] - along[:, 1] * after[:, 0])
     ahead = along[:, 0] * after[:, 0] + along[:, 1] * after[:, 1] > 0
     flat = ahead & (turn <= 1e-9 * length * length[edges.next])
-    if not flat.any():
-        return edges
-    keep = np.ones(len(along), dtype=bool)
-    keep[edges.next[flat]] = False
-    ends_ring = edges.next != np.arange(1, len(along) + 1)
-    ring = np.concatenate(([0], ends_ring[:-1].cumsum()))
-    counts = np.bincount(ring[keep], minlength=int(ring[-1]) + 1)
-    last = counts.cumsum() - 1
-    following = np.arange(1, int(keep.sum()) + 1)
-    following[last] = last - counts + 1
-    start, owner = edges.start[keep], edges.owner[keep]
-    first = np.searchsorted(owner, np.arange(len(edges.first)))
-    return Edges(start, start[following], owner, first, following)
+    return _without(edges, edges.next[flat]) if flat.any() else edges

@@ -12,6 +12,7 @@ from hypothesis import strategies as st
 
 from server.errors import InputError
 from server.mechanics.contacts import contacts, overlap, segments
+from server.mechanics.polygon import edges_of
 from server.mechanics.section import rectangle
 
 
@@ -224,6 +225,17 @@ def test_depth_counts_not_area():
     for depth, expected in ((0.04, 0), (0.06, 1)):
         turned[1] = turned[0] + down * (20 - depth)
         assert len(overlap(turned)) == expected
+
+
+def test_edges_that_are_ready_do_as_well_as_outlines():
+    edges = edges_of([FLANGE, WEB])
+    assert contacts(edges, reach(2))[0].length == 70.0
+    assert overlap(edges) == []
+
+
+def test_a_closing_corner_does_no_harm():
+    closed = np.vstack((FLANGE, FLANGE[:1]))
+    assert found([closed, WEB]) == found([FLANGE, WEB])
 
 
 def test_refuses_a_reach_that_does_not_fit():

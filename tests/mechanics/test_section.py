@@ -88,6 +88,15 @@ def test_a_clockwise_outline_and_an_anticlockwise_hole_are_read_alike():
     assert found == pytest.approx(expected, rel=1e-14)
 
 
+def test_a_corner_typed_twice_counts_once():
+    tee = ODD_PIECES[0]
+    closed = replace(tee, outline=np.vstack((tee.outline[:3], tee.outline[2:], tee.outline[:1])))
+    assert values([closed]) == pytest.approx(values([tee]), rel=1e-14)
+    assert len(properties([closed]).edges.start) == len(tee.outline)
+    with pytest.raises(InputError, match="fewer than three distinct corners"):
+        properties([tee, Piece("flat", np.array([(0, 0), (5, 0), (5, 0), (0, 0.0)]), 1.0)])
+
+
 def test_section_properties_agree_with_sums_over_level_lines():
     found = properties(ODD_PIECES)
     EA = sum(p.E * integrate(all_rings(p), lambda a, b, u: b - a) for p in ODD_PIECES)

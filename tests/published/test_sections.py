@@ -20,7 +20,7 @@ from server.mechanics.section import Piece, largest_cuts, properties, rectangle,
 
 HERE = Path(__file__).parent
 CASES = {case["id"]: case for case in tomllib.loads((HERE / "sections.toml").read_text())["case"]}
-SHEAR = list(csv.DictReader((HERE / "shear_coefficients.csv").open()))
+SHEAR = list(csv.DictReader((HERE / "shear_coefficients.csv").read_text().splitlines()))
 
 
 def half_last_digit(printed: str) -> float:
