@@ -14,6 +14,7 @@ from server.documents.common import (
     Strengths,
     Values,
 )
+from server.documents.coupons import Coupon, CouponsDocument, Failure, Statistic
 from server.documents.member import (
     Analysis,
     AreaLoad,
@@ -47,8 +48,11 @@ __all__ = [
     "Basis",
     "Combination",
     "CoupleLoad",
+    "Coupon",
+    "CouponsDocument",
     "Document",
     "Factors",
+    "Failure",
     "Fastener",
     "Joint",
     "LimitState",
@@ -67,6 +71,7 @@ __all__ = [
     "SelfWeight",
     "Service",
     "SpacingZone",
+    "Statistic",
     "Strengths",
     "Support",
     "Values",

@@ -1,7 +1,7 @@
 r"""Whether a sample looks like a normal, log-normal or Weibull one: Anderson-Darling and Shapiro-Wilk.
 
-Log-normal is normal in the logarithms: give those. Statistics and probabilities are dimensionless; results may be in any
-one unit (MPa here).
+Log-normal is normal in the logarithms: give those. Statistics and probabilities are dimensionless; results may be in
+any one unit (MPa here).
 """
 
 from __future__ import annotations
@@ -72,8 +72,8 @@ def anderson_darling_normal(values: ArrayLike) -> FitTest:
 
     Notes
     -----
-    The p-value is the published approximation of the adjusted statistic's distribution, made for n of 8 and more; below,
-    the test has little power whatever its p-value.
+    The p-value is the published approximation of the adjusted statistic's distribution, made for n of 8 and more;
+    below, the test has little power whatever its p-value.
 
     References
     ----------

@@ -123,8 +123,8 @@ def outliers(values: ArrayLike, *, level: float = LEVEL) -> list[Outlier]:
     Returns
     -------
     list of Outlier
-        In the order in which they were found; each with the residual and the critical value of its own round. Empty where
-        there are fewer than three results.
+        In the order in which they were found; each with the residual and the critical value of its own round. Empty
+        where there are fewer than three results.
 
     Raises
     ------
