@@ -60,8 +60,8 @@ class BreakingLoad(Quantity):
             if isinstance(value, str) and _is_stress(value):
                 raise InputError(
                     "",
-                    f"{units.given(value)} is a stress, and a load is asked for; enter the load the coupon broke at, or "
-                    "call it 'stress'. (A gauge's pressure is called 'gauge'.)",
+                    f"{units.given(value)} is a stress, and a load is asked for; enter the load the coupon broke at, "
+                    "or call it 'stress'. (A gauge's pressure is called 'gauge'.)",
                 ) from error
             raise
 

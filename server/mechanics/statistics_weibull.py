@@ -16,7 +16,7 @@ from numpy.typing import ArrayLike, NDArray
 
 from server.errors import InputError, positive
 
-MOST_SHAPE = 1e6
+MOST_SHAPE = 1e12
 """A larger shape says that there is no scatter."""
 POINTS = 600  # of the quadrature over the spread; half as many give the same nine digits from three results on
 

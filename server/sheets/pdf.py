@@ -16,7 +16,7 @@ import typst
 
 from server import paths
 from server.errors import JointError
-from server.sheets.composition import Drawings, SheetData, compose
+from server.sheets.composition import KINDS, Drawings, SheetData, compose
 from server.sheets.diagrams import diagram_svg, flow_svg
 from server.sheets.loads_drawing import loads_svg
 from server.sheets.section_drawing import section_svg
@@ -94,6 +94,9 @@ def pdf(sheet: SheetData) -> bytes:
     JointError
         Where the sheet cannot be set for another reason.
     """
+    kind = sheet.result.get("kind", "member")
+    if kind not in KINDS:
+        raise JointError(f"There is no PDF for checks of kind {str(kind)[:40]!r} yet; leave the PDF out.")
     data = compose(sheet, DRAWINGS)
     try:
         return _setter().pdf(_templates(), data, sheet.saved_at)

@@ -6,7 +6,7 @@ import textwrap
 from collections.abc import Iterable, Iterator, Mapping, Sequence
 from typing import Any
 
-from server.sheets import tables
+from server.sheets import tables, terminal_coupons
 from server.sheets.composition import PRECEDENCE, STANDING_CAUTION
 from server.sheets.steps import working_groups
 from server.sheets.values import governing, utilisation, verdict
@@ -29,11 +29,8 @@ def terminal(result: Mapping[str, Any], display: str | None = None) -> str:
 
 def _lines(result: Mapping[str, Any], display: str) -> Iterator[str]:
     yield from _head(result, display)
-    yield from _block("Joints", tables.joints(result, display))
-    yield from _block("Pieces", tables.pieces(result, display))
-    yield from _block("Deflection", tables.deflection(result, display))
-    yield from _block("Section", tables.section(result, display))
-    yield from _block("Reactions, shear, moment", tables.actions(result, display))
+    for title, parts in terminal_coupons.blocks(result, display) if _coupons(result) else _member(result, display):
+        yield from _block(title, parts)
     yield from _listed("What is missing", (str(line) for line in result.get("missing", ())))
     yield from _listed("Cautions", (_caution(each) for each in result.get("cautions", ())))
     yield from _working(result, display)
@@ -42,11 +39,24 @@ def _lines(result: Mapping[str, Any], display: str) -> Iterator[str]:
     yield str(result.get("engine", ""))
 
 
+def _coupons(result: Mapping[str, Any]) -> bool:
+    return bool(result.get("kind") == "coupons")
+
+
+def _member(result: Mapping[str, Any], display: str) -> Iterator[tuple[str, Iterable[Part]]]:
+    yield "Joints", tables.joints(result, display)
+    yield "Pieces", tables.pieces(result, display)
+    yield "Deflection", tables.deflection(result, display)
+    yield "Section", tables.section(result, display)
+    yield "Reactions, shear, moment", tables.actions(result, display)
+
+
 def _head(result: Mapping[str, Any], display: str) -> Iterator[str]:
     word = verdict(result)
     used = result.get("utilisation")
     yield f"{word}   utilisation {utilisation(used)}" if used is not None else word
-    yield from _wrapped(governing(result, display))
+    headline = terminal_coupons.headline if _coupons(result) else governing
+    yield from _wrapped(headline(result, display))
     if result.get("title"):
         yield from ["", *_wrapped(str(result["title"]))]
 
