@@ -18,6 +18,7 @@ from server import documents
 from server.errors import DocumentError, Fault
 from server.mechanics.contacts import Contact, contacts, overlap
 from server.mechanics.flow import JointFlow, JointLine, joint_flows, tied
+from server.mechanics.polygon import Edges, edges_of
 from server.mechanics.section import (
     HorizontalCut,
     Piece,
@@ -111,6 +112,12 @@ class CrossSection:
         return shear_stiffness(self.pieces, self.properties)
 
     @cached_property
+    def centroids(self) -> dict[int, float]:
+        """Height of each part's centroid, by its index."""
+        heights = self.properties.pieces.centroid[:, 1].tolist()
+        return {part.index: height for part, height in zip(self.parts, heights, strict=True)}
+
+    @cached_property
     def cuts(self) -> dict[int, HorizontalCut]:
         found = largest_cuts(self.pieces, self.properties)
         return {part.index: cut for part, cut in zip(self.parts, found, strict=True)}
@@ -154,8 +161,9 @@ class Body:
 def build(document: documents.MemberDocument) -> Body:
     """Place pieces and joints; raise DocumentError for overlaps, loose pieces and joints that touch nothing."""
     parts = tuple(_parts(document))
-    _refuse_overlaps(parts)
-    found = _contacts(document, parts)
+    edges = edges_of([part.outline for part in parts])
+    _refuse_overlaps(parts, edges)
+    found = _contacts(document, parts, edges)
     sites = tuple(_sites(document, parts, found))
     stretches = tuple(_stretches(document.member.length, parts, sites))
     return Body(document.member.length, parts, sites, tuple(found), stretches)
@@ -195,27 +203,27 @@ def _piece(part: Part, creep: bool = False) -> Piece:
     )
 
 
-def _refuse_overlaps(parts: Sequence[Part]) -> None:
+def _refuse_overlaps(parts: Sequence[Part], edges: Edges) -> None:
     faults = [
         Fault(
             f"section.pieces.{parts[i].name}.at",
             f"{parts[i].name!r} and {parts[j].name!r} overlap by {area:.4g} mm2; move one so that they only touch.",
         )
-        for i, j, area in overlap([p.outline for p in parts])
+        for i, j, area in overlap(edges)
         if parts[i].coexists(parts[j])
     ]
     if faults:
         raise DocumentError(faults)
 
 
-def _contacts(document: documents.MemberDocument, parts: Sequence[Part]) -> list[Contact]:
+def _contacts(document: documents.MemberDocument, parts: Sequence[Part], edges: Edges) -> list[Contact]:
     """All contacts between pieces that stand side by side somewhere along the member."""
     reach = np.full((len(parts), len(parts)), GAP)
     position = {part.name: part.index for part in parts}
     for joint in document.section.joints:
         i, j = (position[name] for name in joint.between)
         reach[i, j] = reach[j, i] = max(reach[i, j], GAP + _thickness(document, joint))
-    return [c for c in contacts([p.outline for p in parts], reach) if parts[c.first].coexists(parts[c.second])]
+    return [c for c in contacts(edges, reach) if parts[c.first].coexists(parts[c.second])]
 
 
 def _thickness(document: documents.MemberDocument, joint: documents.Joint) -> float:

@@ -57,14 +57,13 @@ def claim_pieces(body: Body, scan: Scan, judge: Judge, *, upper_stiffness: bool)
     ``upper_stiffness``: fasteners carry a joint and slip is not reckoned, so the stresses are estimates
     and no limit is judged on them.
     """
+    bent, sheared = _bend(body, scan), _shear(body, scan)
     found = []
     for part in body.parts:
-        check = PieceCheck(part, _blank(part))
+        check = PieceCheck(part, _blank(part), bent.get(part.index), sheared.get(part.index))
         found.append(check)
-        if not scan.shear:
+        if check.bent is None or check.sheared is None:
             continue
-        present = body.stretches_of(part)
-        check.bent, check.sheared = _bend(part, present, scan), _shear(part, present, scan)
         if not upper_stiffness and part.material.strengths.any():
             judge.duration("material", part.spec.material, part.material)
             check.claims = [*_bending_claims(part, check.bent, judge), *_shear_claim(part, check.sheared, judge)]
@@ -97,45 +96,62 @@ def _blank(part: Part) -> dict[str, object]:
     }
 
 
-def _bend(part: Part, present: list[tuple[int, Stretch]], scan: Scan) -> Bent:
-    stresses, moments, places, stretches = [], [], [], []
-    for t, stretch in present:
-        found = scan.moment[t]
-        moment = np.array([found.max, found.min])
-        whole = stretch.section.properties
-        heights = np.array(_heights(part, stretch))[:, None, None]
-        stresses.append(
-            formula(BENDING).array(
-                {"E": part.material.E, "M": moment, "u": heights, "u_0": whole.neutral_axis[1], "EI": whole.EI}
-            )
+def _bend(body: Body, scan: Scan) -> dict[int, Bent]:
+    """Normal stresses of every piece: one evaluation a stretch, for all pieces, fibres, extremes and combinations."""
+    found: dict[int, Bent] = {}
+    for t, (stretch, extremes) in enumerate(zip(body.stretches, scan.moment, strict=False)):
+        parts, whole = stretch.section.parts, stretch.section.properties
+        moment, at = np.array([extremes.max, extremes.min]), np.array([extremes.at_max, extremes.at_min])
+        stress = formula(BENDING).array(
+            {
+                "E": np.array([p.material.E for p in parts])[:, None, None, None],
+                "M": moment,
+                "u": np.array([_heights(p, stretch) for p in parts])[:, :, None, None],
+                "u_0": whole.neutral_axis[1],
+                "EI": whole.EI,
+            }
         )
-        moments.append(moment)
-        places.append([found.at_max, found.at_min])
-        stretches += [t, t]
+        where = np.full(2, t, dtype=np.intp)
+        for part, own in zip(parts, stress, strict=True):
+            here = Bent(own, moment, at, where)
+            found[part.index] = _longer(found[part.index], here) if part.index in found else here
+    return found
+
+
+def _longer(left: Bent, right: Bent) -> Bent:
     return Bent(
-        np.concatenate(stresses, axis=1),
-        np.concatenate(moments),
-        np.concatenate(places),
-        np.array(stretches, dtype=np.intp),
+        np.concatenate([left.stress, right.stress], axis=1),
+        np.concatenate([left.moment, right.moment]),
+        np.concatenate([left.at, right.at]),
+        np.concatenate([left.stretch, right.stretch]),
     )
 
 
 def _heights(part: Part, stretch: Stretch) -> tuple[float, float, float]:
     """Heights of the fibres: top, bottom, centroid."""
-    section = stretch.section
-    place = section.parts.index(part)
-    return part.top, part.bottom, float(section.properties.pieces.centroid[place, 1])
+    return part.top, part.bottom, stretch.section.centroids[part.index]
 
 
-def _shear(part: Part, present: list[tuple[int, Stretch]], scan: Scan) -> Sheared:
-    stresses, shears, places = [], [], []
-    for t, stretch in present:
-        shear, at = scan.shear[t]
-        cut, EI = stretch.section.cuts[part.index], stretch.section.properties.EI
-        stresses.append(formula(SHEAR).array({"V": shear, "S": abs(cut.first_moment), "b": cut.width, "EI": EI}))
-        shears.append(shear)
-        places.append(at)
-    return Sheared(np.array(stresses), np.array(shears), np.array(places), tuple(t for t, _ in present))
+def _shear(body: Body, scan: Scan) -> dict[int, Sheared]:
+    """Largest shear stress on a horizontal cut through every piece: one evaluation a stretch for all pieces."""
+    rows: dict[int, list[tuple[NDArray[np.float64], NDArray[np.float64], NDArray[np.float64], int]]] = {}
+    for t, (stretch, (shear, at)) in enumerate(zip(body.stretches, scan.shear, strict=False)):
+        cuts = list(stretch.section.cuts.items())
+        stress = formula(SHEAR).array(
+            {
+                "V": shear,
+                "S": np.array([[abs(cut.first_moment)] for _, cut in cuts]),
+                "b": np.array([[cut.width] for _, cut in cuts]),
+                "EI": stretch.section.properties.EI,
+            }
+        )
+        for (index, _), own in zip(cuts, stress, strict=True):
+            rows.setdefault(index, []).append((own, shear, at, t))
+    found = {}
+    for index, each in rows.items():
+        stresses, shears, places, stretches = zip(*each, strict=True)
+        found[index] = Sheared(np.array(stresses), np.array(shears), np.array(places), stretches)
+    return found
 
 
 def _bending_claims(part: Part, bent: Bent, judge: Judge) -> Iterator[Claim]:
