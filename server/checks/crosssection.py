@@ -26,6 +26,7 @@ from server.mechanics.section import (
     largest_cuts,
     properties,
     rectangle,
+    reweighted,
     shear_stiffness,
 )
 
@@ -131,7 +132,7 @@ class CrossSection:
     def softened(self) -> tuple[float, float | None]:
         """EI and GA with each piece's E and G divided by 1 + creep."""
         soft = tuple(_piece(part, creep=True) for part in self.parts)
-        whole = properties(soft)
+        whole = reweighted(soft, self.properties)
         return whole.EI, shear_stiffness(soft, whole)
 
 

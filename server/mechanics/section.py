@@ -27,6 +27,7 @@ __all__ = [
     "piece_properties",
     "properties",
     "rectangle",
+    "reweighted",
     "shear_stiffness",
 ]
 
@@ -218,7 +219,37 @@ def properties(pieces: Sequence[Piece]) -> SectionProperties:
     666.667
     """
     edges = _edges(pieces)
-    parts = PieceProperties(*moments(edges))
+    return _weighted(pieces, PieceProperties(*moments(edges)), edges)
+
+
+def reweighted(pieces: Sequence[Piece], like: SectionProperties) -> SectionProperties:
+    """Properties of pieces that have the outlines of ``like`` but other moduli (softened by creep, say).
+
+    Parameters
+    ----------
+    pieces : sequence of Piece
+        The same pieces in the same order; E in [MPa], density in [kg/m3].
+    like : SectionProperties
+        Properties of pieces with these outlines; their geometry is taken over.
+
+    Returns
+    -------
+    SectionProperties
+        As ``properties(pieces)``.
+
+    Raises
+    ------
+    InputError
+        If an E is not a finite number above zero.
+
+    References
+    ----------
+    .. [1] As ``properties``.
+    """
+    return _weighted(pieces, like.pieces, like.edges)
+
+
+def _weighted(pieces: Sequence[Piece], parts: PieceProperties, edges: Edges) -> SectionProperties:
     E = np.array([piece.E for piece in pieces], dtype=float)
     bad = ~(np.isfinite(E) & (E > 0))
     if bad.any():

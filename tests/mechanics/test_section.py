@@ -19,6 +19,7 @@ from server.mechanics.section import (
     piece_properties,
     properties,
     rectangle,
+    reweighted,
     shear_stiffness,
 )
 
@@ -349,3 +350,13 @@ def test_pieces_without_area_and_sections_without_pieces_are_refused():
         properties([box()[0], Piece("line", np.array([(0, 0), (1, 1), (2, 2.0)]), 1.0)])
     with pytest.raises(InputError, match="2 points"):
         properties([Piece("line", np.array([(0, 0), (1, 1.0)]), 1.0)])
+
+
+def test_reweighted_is_properties_with_other_moduli() -> None:
+    stiff = [Piece("web", rectangle(20, 100, (40, 0)), 9000.0, 500.0, 400.0),
+             Piece("flange", rectangle(100, 20, (0, 100)), 12000.0, 700.0, 450.0)]  # fmt: skip
+    soft = [replace(piece, E=piece.E / factor) for piece, factor in zip(stiff, (1.6, 1.8), strict=True)]
+    found, expected = reweighted(soft, properties(stiff)), properties(soft)
+    for name in ("area", "mass_per_length", "EA", "EI", "EI_lateral", "EI_product", "neutral_axis", "first_moments"):
+        assert getattr(found, name) == pytest.approx(getattr(expected, name), rel=1e-12), name
+    assert shear_stiffness(soft, found) == pytest.approx(shear_stiffness(soft, expected), rel=1e-12)
