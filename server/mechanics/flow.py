@@ -30,8 +30,8 @@ class JointFlow:
     part [N mm], above the neutral axis positive; ``first_moment_other_side`` that of all other pieces, equal and
     opposite; ``share`` this joint's part of it [N mm], with the sign of the flow on the joint's first piece;
     ``cut_off`` pieces of the cut-off part; ``partners`` the joints that are cut together, in equal shares (this one
-    included); ``reason`` in words. For a joint that carries nothing by symmetry ``cut_off`` is empty and both moments are 0;
-    where ``split`` is None the numbers are None.
+    included); ``reason`` in words. For a joint that carries nothing by symmetry ``cut_off`` is empty and both moments
+    are 0; where ``split`` is None the numbers are None.
     """
 
     split: Literal["cut", "symmetry"] | None
@@ -202,7 +202,6 @@ class _Section:
     def _settle(self, symmetries: list[Symmetry], waiting: list[int], settled: dict[int, JointFlow]) -> None:
         """Settle every waiting joint whose class carries nothing, or parts the section."""
         classes = classes_under(symmetries, len(self.ends))
-        nothing = {joint for number in classes.nil for joint in classes.members[number]}
         words = _by_which(symmetries)
         for joint in waiting:
             if joint in settled:
@@ -212,10 +211,7 @@ class _Section:
                 reason = f"{words} its flow is the opposite of itself, so it carries nothing."
                 settled[joint] = JointFlow("symmetry", 0.0, 0.0, 0.0, (), (joint,), reason)
                 continue
-            members = set(classes.members[number])
-            self._share(members, classes, symmetries, words, settled)
-            if joint not in settled and nothing:
-                self._share(members | nothing, classes, symmetries, words, settled)
+            self._share(set(classes.members[number]), classes, symmetries, words, settled)
 
     def _share(
         self,
@@ -225,7 +221,7 @@ class _Section:
         words: str,
         settled: dict[int, JointFlow],
     ) -> None:
-        """Cut the joints ``opened``; of every part that comes off by joints of equal flow, settle these.
+        """Cut the joints ``opened``, one class; of every part that comes off with its flows all one way, settle these.
 
         Parts with fewest joints come first, and what is settled stays.
         """
@@ -233,7 +229,6 @@ class _Section:
         for side in self._parts(opened, symmetries):
             inside = set(side)
             edge = sorted(j for j in opened if (self.ends[j][0] in inside) != (self.ends[j][1] in inside))
-            edge = [j for j in edge if classes.of[j] not in classes.nil]
             outward = {classes.sign[j] * (1 if self.ends[j][0] in inside else -1) for j in edge}
             if len(outward) == 1:
                 cuts.append((len(edge), side, edge))

@@ -220,6 +220,9 @@ def test_depth_counts_not_area():
     tube = [rectangle(60, 80, (0, 0)), rectangle(54, 74, (3, 3))]
     assert overlap([tube, rectangle(54.06, 74.06, (2.97, 2.97))]) == []
     assert overlap([tube, rectangle(54.2, 74.2, (2.9, 2.9))])[0][2] == pytest.approx(54.2 * 74.2 - 54 * 74)
+    wide = [rectangle(200, 80, (0, 0)), rectangle(194, 74, (3, 3))]
+    assert overlap([wide, rectangle(150, 74.09, (20, 2.955))]) == []  # 0.045 mm into the wall above and below
+    assert overlap([wide, rectangle(150, 74.12, (20, 2.94))])[0][2] == pytest.approx(150 * 0.12)
     turned = [rectangle(200, 20, (0, 0), turn=30), None]
     down = np.array([math.sin(math.radians(30)), -math.cos(math.radians(30))])
     for depth, expected in ((0.04, 0), (0.06, 1)):
