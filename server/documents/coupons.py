@@ -81,7 +81,10 @@ class Scatter(Quantity):
         """Return NaN for 'unknown', else the scatter."""
         if isinstance(value, str) and value.strip() == "unknown":
             return math.nan
-        return super().read(value)
+        try:
+            return super().read(value)
+        except InputError:
+            raise InputError("", f"{units.given(value)} is not accepted; enter {self.wanted()}.") from None
 
     def wanted(self) -> str:
         """What to type instead."""
@@ -98,6 +101,9 @@ class Level(Quantity):
             if math.isclose(level, known, rel_tol=1e-9):
                 return known
         raise InputError("", f"{units.given(value)} is not accepted; enter {self.wanted()}.")
+
+    def __get_pydantic_core_schema__(self, source: Any, handler: GetCoreSchemaHandler) -> CoreSchema:
+        return core_schema.no_info_plain_validator_function(self.read)  # no shortcut for floats within bounds
 
     def wanted(self) -> str:
         """What to type instead."""

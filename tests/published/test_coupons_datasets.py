@@ -138,13 +138,13 @@ def test_nist_certified_resistivity_gives_its_grand_mean_and_total_scatter():
     assert found["batches"]["pooled"] is True  # F = 1.18 does not tell the instruments apart either
 
 
-def test_surpyval_fits_the_same_weibull_to_bofors_steel():
-    """The published fit of the same counts, by the maximum of the likelihood, in the case's own numbers."""
+def test_the_fit_of_bofors_steel_solves_both_likelihood_equations():
+    """The equations of the maximum of the likelihood, written out, at the scale and shape of the result."""
     case = CASES["bofors-grouped"]
     values = np.array(values_of(case))
     found = run(list(values), distribution="weibull")["weibull"]
     scaled = (values / found["scale"]) ** found["shape"]
-    assert scaled.mean() == pytest.approx(1.0, rel=1e-9)  # both likelihood equations, written out
+    assert scaled.mean() == pytest.approx(1.0, rel=1e-9)
     logs = np.log(values)
     assert (scaled * logs).sum() / scaled.sum() - 1 / found["shape"] == pytest.approx(logs.mean(), rel=1e-9)
 
