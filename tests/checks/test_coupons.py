@@ -426,6 +426,11 @@ def test_the_failure_pattern_is_averaged_and_asked_about():
     mild = run(listed)
     assert "coupons 3 and 6" in texts(mild, "failure pattern")
     assert "peeled off" not in texts(mild, "failure pattern")
+    del listed[0]["failure"]
+    fewer = run(listed)
+    assert fewer["failure"]["coupons"] == 5
+    assert fewer["failure"]["adhesive"] == pytest.approx((0 + 30 + 20 + 0 + 60) / 5)
+    assert "coupon 1" in texts(fewer, "failure pattern")
     assert run(sets.PRIMED)["failure"] is None
 
 
@@ -563,6 +568,7 @@ def any_document(chance):
             ("coverage", [0.9, 0.95, 0.99]),
             ("confidence", [0.75, 0.95]),
             ("scatter", [0.1, "unknown"]),
+            ("level", [0.1, 0.07]),
         ):
             if chance.random() < 0.3:
                 made["statistic"][name] = chance.choice(good)

@@ -69,7 +69,9 @@ def test_anderson_darling_of_a_weibull_sample_agrees_with_scipy():
         n_mc_samples=2,
         rng=np.random.default_rng(0),
     )
-    assert anderson_darling_weibull(x, fit).statistic == pytest.approx(other.statistic, rel=1e-9)
+    found = anderson_darling_weibull(x, fit)
+    assert found.statistic == pytest.approx(other.statistic, rel=1e-9)
+    assert found.adjusted == pytest.approx(found.statistic * (1 + 0.2 / math.sqrt(20)), rel=1e-12)
 
 
 # Points of the statistic adjusted for size, both parameters estimated, from memory of D'Agostino and Stephens (1986):

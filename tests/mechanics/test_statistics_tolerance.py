@@ -45,6 +45,14 @@ def test_the_factor_agrees_with_the_noncentral_t_of_scipy_stats(n, coverage, con
     assert k == pytest.approx(other, rel=1e-8)
 
 
+@pytest.mark.parametrize("n", [1, 2, 5, 100])
+@pytest.mark.parametrize(("coverage", "confidence"), SHARES)
+def test_the_known_factor_has_the_confidence_it_claims(n, coverage, confidence):
+    """The mean of n alone varies, by sigma over the root of n."""
+    k = tolerance.factor_known(n, coverage=coverage, confidence=confidence)
+    assert stats.norm.cdf(math.sqrt(n) * (k - stats.norm.ppf(coverage))) == pytest.approx(confidence, rel=1e-12)
+
+
 def test_the_factor_of_a_median_is_that_of_a_mean():
     for n in (2, 5, 30):
         k = tolerance.factor(n, coverage=0.5, confidence=0.75)
