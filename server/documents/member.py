@@ -58,7 +58,7 @@ SHAPES_TO_COME = frozenset(("polygon", "round", "tube", "angle", "channel", "i",
 
 
 def _known_shape(value: object) -> object:
-    if isinstance(value, Mapping) and value.get("shape") not in SHAPES:
+    if isinstance(value, Mapping) and value.get("shape") not in tuple(SHAPES):  # a list typed here has no hash
         raise PydanticCustomError("choice", "not a known shape", {"field": "shape", "known": ", ".join(sorted(SHAPES))})
     return value
 
