@@ -6,7 +6,7 @@ from collections.abc import AsyncIterator
 from contextlib import asynccontextmanager
 
 from anyio import to_thread
-from fastapi import FastAPI
+from fastapi import Depends, FastAPI
 from fastapi.responses import RedirectResponse
 from fastapi.staticfiles import StaticFiles
 from fastapi.telemetry import TelemetryConfig
@@ -14,7 +14,7 @@ from fastapi.telemetry import TelemetryConfig
 from server import ENGINE
 from server.paths import data_folder
 from server.settings import Settings
-from server.web import api, errors, jobs, library, member, saved, security, shop
+from server.web import api, errors, gate, jobs, library, member, people, saved, security, shop
 from server.web.records import Records
 
 _NO_TELEMETRY: TelemetryConfig = {
@@ -46,15 +46,18 @@ def create_app(settings: Settings) -> FastAPI:
         telemetry=_NO_TELEMETRY,
         docs_url=None,
         redoc_url=None,
-        openapi_url="/openapi.json",
+        openapi_url=None,
         lifespan=lifespan,
+        dependencies=[Depends(gate.admit)],
     )
     app.state.settings, app.state.records = settings, records
     errors.install(app)
+    gate.install(app)
+    app.add_middleware(gate.Identify, settings=settings, records=records)
     app.add_middleware(security.Guard, settings=settings)
     app.mount("/static", StaticFiles(directory=data_folder("static")), name="static")
     app.add_api_route("/", _start, name="start", include_in_schema=False)
-    for room in (jobs, library, shop, member, saved, api):
+    for room in (jobs, library, shop, member, saved, people, api):
         app.include_router(room.router)
     api.describe(app)
     return app

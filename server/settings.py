@@ -8,6 +8,7 @@ from pathlib import Path
 
 from server.errors import JointError
 
+EVERY_ADDRESS = frozenset({"0.0.0.0", "::", "[::]", ""})  # noqa: S104 -- recognised, not bound to
 LOOPBACK_NAMES = frozenset({"localhost", "127.0.0.1", "::1"})
 
 
@@ -26,21 +27,30 @@ def is_loopback(host: str) -> bool:
 class Settings:
     """One running program.
 
-    ``data`` is the folder of the shop's records; ``max_body`` the largest request in bytes, ``max_fields`` the most
-    boxes one form may send. Limits are far above what a check needs and far below what would hurt.
+    ``data`` is the folder of the shop's records. With ``sign_in`` people sign in, which only a program that this
+    machine alone can reach may do without; ``names`` are further host names it answers to. ``max_body`` is the largest request
+    in bytes, ``max_fields`` the most boxes one form may send: far above what a check needs, far below what would hurt.
     """
 
     data: Path
     host: str = "127.0.0.1"
     port: int = 8300
+    sign_in: bool = False
+    names: tuple[str, ...] = ()
     max_body: int = 2 * 1024 * 1024
     max_fields: int = 5000
 
     def __post_init__(self) -> None:
-        if not is_loopback(self.host):
+        if not is_loopback(self.host) and not self.sign_in:
             raise JointError(
-                f"The address {self.host} can be reached from other machines, and this version has no sign-in yet. "
-                "Use 127.0.0.1, and let people work at this machine."
+                f"The address {self.host} can be reached from other machines, which is only done with sign-in. Add "
+                "the first person (bondwright person add) or start with --sign-in, which prints a code for the first "
+                "person; or use 127.0.0.1, and let people work at this machine."
+            )
+        if self.host in EVERY_ADDRESS and not self.names:
+            raise JointError(
+                f"The address {self.host} stands for every address of this machine; say with --name which host names "
+                "or addresses people type to reach it, such as --name workshop.local."
             )
         if not 0 <= self.port <= 65535:
             raise JointError(f"The port is {self.port}; give a whole number from 1 to 65535, such as 8300.")
@@ -53,10 +63,12 @@ class Settings:
     @property
     def hosts(self) -> frozenset[str]:
         """The host names this program answers to; any other is somebody else's name for our address."""
-        return LOOPBACK_NAMES | {self.host.strip().strip("[]").lower()}
+        named = {name.strip().strip("[]").rstrip(".").lower() for name in (self.host, *self.names)}
+        return LOOPBACK_NAMES | (named - EVERY_ADDRESS)
 
     @property
     def address(self) -> str:
         """The address to type into a browser."""
-        host = f"[{self.host}]" if ":" in self.host else self.host
+        host = self.names[0] if self.names else self.host.strip("[]")
+        host = f"[{host}]" if ":" in host else host
         return f"http://{host}:{self.port}/"

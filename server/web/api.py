@@ -71,6 +71,10 @@ def describe(app: FastAPI) -> None:
         components.update(_schemas())
         return made
 
+    def openapi() -> Response:
+        return PlainJson(schema())
+
+    app.add_api_route("/openapi.json", openapi, name="openapi", include_in_schema=False)
     app.openapi = schema  # type: ignore[method-assign]  # FastAPI's own way of extending it
 
 

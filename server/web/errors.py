@@ -14,6 +14,7 @@ from starlette.exceptions import HTTPException
 
 from server.errors import DocumentError, Fault, InputError, JointError
 from server.library import NotFoundError
+from server.people import BusyError, NoPersonError
 from server.storage import StorageError
 from server.web.headers import HEADERS
 from server.web.pages import page
@@ -22,6 +23,10 @@ log = logging.getLogger("bondwright")
 
 _WORDS: dict[int, tuple[str, str]] = {
     400: ("That form could not be read", "It may have too many boxes or arrived in part. Go back and send it again."),
+    401: (
+        "Sign in first",
+        "Sign in, or send a personal token as “Authorization: Bearer ...”; you make one on your page.",
+    ),
     403: (
         "This request was refused",
         "It did not come from one of this program's own pages. Open the page again and send it from there.",
@@ -52,7 +57,7 @@ def install(app: FastAPI) -> None:
 def refusal(request: Request, status: int, reason: str = "", faults: Sequence[Fault] = ()) -> Response:
     """Answer with ``status`` and say why; ``reason`` replaces the usual sentence."""
     heading, usual = _WORDS.get(status, (HTTPStatus(status).phrase, "Go back and try again."))
-    if request.url.path.startswith("/api/"):
+    if request.url.path.startswith("/api/") or request.url.path == "/openapi.json":
         told = [{"path": fault.path, "message": fault.message} for fault in faults]
         told = told or [{"path": "", "message": reason or f"{heading}. {usual}"}]
         return JSONResponse({"faults": told}, status_code=status)
@@ -73,9 +78,9 @@ async def _explained(request: Request, error: Exception) -> Response:
 
 
 def _status(error: JointError) -> int:
-    if isinstance(error, NotFoundError):
+    if isinstance(error, NotFoundError | NoPersonError):
         return 404
-    return 503 if isinstance(error, StorageError) else 422
+    return 503 if isinstance(error, StorageError | BusyError) else 422
 
 
 async def _refused(request: Request, error: Exception) -> Response:

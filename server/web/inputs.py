@@ -12,6 +12,7 @@ from starlette.datastructures import ImmutableMultiDict
 from server import storage
 from server.settings import Settings
 from server.web.records import Records
+from server.web.who import made_by
 
 _CONTROLS = re.compile(r"[\x00-\x08\x0b\x0c\x0e-\x1f\x7f]")
 
@@ -35,12 +36,16 @@ def open_session(request: Request) -> Iterator[storage.Session]:
 
 
 async def read_form(request: Request) -> ImmutableMultiDict[str, str]:
-    """Return the form's boxes exactly as typed (line ends as ``\\n``; characters nobody can type are dropped)."""
+    """Return the form's boxes exactly as typed (line ends as ``\\n``; characters nobody can type are dropped).
+
+    ``made_by`` is no box to somebody who signed in: it is their name, whatever was sent.
+    """
     limits = settings_of(request)
     async with request.form(max_files=0, max_fields=limits.max_fields, max_part_size=limits.max_body) as form:
-        return ImmutableMultiDict(
-            [(name, clean(value)) for name, value in form.multi_items() if isinstance(value, str)]
-        )
+        boxes = [(name, clean(value)) for name, value in form.multi_items() if isinstance(value, str)]
+    if name := made_by(request):
+        boxes = [(box, value) for box, value in boxes if box != "made_by"] + [("made_by", name)]
+    return ImmutableMultiDict(boxes)
 
 
 async def read_body(request: Request) -> bytes:

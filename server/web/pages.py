@@ -15,11 +15,14 @@ from jinja2 import Environment, FileSystemLoader, StrictUndefined
 from server import ENGINE, units
 from server.errors import DocumentError
 from server.paths import data_folder
+from server.web.access import may
+from server.web.who import current
 
 _NAVIGATION = (
     ("list_jobs", "Jobs", "/jobs"),
     ("list_records", "Library", "/library"),
     ("edit_shop", "Shop heading", "/shop"),
+    ("list_people", "People", "/people"),
 )
 
 
@@ -42,7 +45,14 @@ def page(
     request: Request, template: str, *, status: int = 200, headers: Mapping[str, str] | None = None, **context: object
 ) -> HTMLResponse:
     """Render ``template`` with a short, named ``context``."""
-    linked = {"url_for": partial(path_for, request), "nav": partial(_navigation, request), **context}
+    person = current(request)
+    linked = {
+        "url_for": partial(path_for, request),
+        "nav": partial(_navigation, request),
+        "person": person,
+        "may": partial(may, person),
+        **context,
+    }
     text = environment().get_template(template).render(linked)
     return HTMLResponse(text, status_code=status, headers=dict(headers) if headers else None)
 
@@ -114,4 +124,8 @@ def moment(at: str) -> str:
 
 
 def _navigation(request: Request) -> list[tuple[str, str, bool]]:
-    return [(name, text, request.url.path.startswith(prefix)) for name, text, prefix in _NAVIGATION]
+    return [
+        (name, text, request.url.path.startswith(prefix))
+        for name, text, prefix in _NAVIGATION
+        if may(current(request), name)
+    ]

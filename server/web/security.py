@@ -45,7 +45,9 @@ class Guard:
             return 421, ""
         if scope["method"] in _READING:
             return None
-        if not from_our_pages(headers, scope["scheme"]):
+        # No page of somebody else's can send a token: a browser asks first, and is not answered.
+        by_token = self.settings.sign_in and headers.get("authorization", "").lower().startswith("bearer ")
+        if not by_token and not from_our_pages(headers, scope["scheme"]):
             return 403, ""
         length = headers.get("content-length", "0")
         if length.isascii() and length.isdigit() and int(length[:20]) > self.settings.max_body:

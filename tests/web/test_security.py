@@ -124,9 +124,24 @@ class TestSize:
 
 class TestAddress:
     @pytest.mark.parametrize("host", ["0.0.0.0", "192.168.1.20", "::", "workshop", "127.0.0.1.example", ""])
-    def test_only_this_machine_is_served_until_sign_in_exists(self, tmp_path: Path, host: str) -> None:
-        with pytest.raises(JointError, match="no sign-in yet"):
+    def test_without_sign_in_only_this_machine_is_served(self, tmp_path: Path, host: str) -> None:
+        with pytest.raises(JointError, match="only done with sign-in"):
             Settings(data=tmp_path, host=host)
+
+    @pytest.mark.parametrize("host", ["192.168.1.20", "workshop", "fd00::5"])
+    def test_with_sign_in_the_network_is_served_under_the_names_it_was_given(self, tmp_path: Path, host: str) -> None:
+        settings = Settings(data=tmp_path, host=host, sign_in=True, names=("Workshop.local",))
+        assert {host, "workshop.local", "localhost"} <= settings.hosts
+        assert settings.address == "http://Workshop.local:8300/"
+        assert host in Settings(data=tmp_path, host=host, sign_in=True).address
+
+    @pytest.mark.parametrize("host", ["0.0.0.0", "::", ""])
+    def test_every_address_at_once_needs_a_name_to_answer_to(self, tmp_path: Path, host: str) -> None:
+        with pytest.raises(JointError, match="--name"):
+            Settings(data=tmp_path, host=host, sign_in=True)
+        settings = Settings(data=tmp_path, host=host, sign_in=True, names=("workshop.local",))
+        assert "workshop.local" in settings.hosts
+        assert not settings.hosts & {"0.0.0.0", "::", ""}
 
     @pytest.mark.parametrize("host", ["127.0.0.1", "127.0.0.2", "localhost", "::1", "[::1]"])
     def test_loopback_addresses_are_served(self, tmp_path: Path, host: str) -> None:
