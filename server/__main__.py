@@ -1,4 +1,4 @@
-"""The command line: serve, demo, check, backup, restore."""
+"""The command line: serve, demo, check, backup, restore, person."""
 
 from __future__ import annotations
 
@@ -25,6 +25,7 @@ PASS, NOT_PASSED, WRONG = 0, 1, 2
 LARGEST_FILE = 1024 * 1024
 DATA = Path("shop")
 DEMO_DATA = Path("shop/demo")
+AT_THE_MACHINE = "at the machine"  # who did it, in the trail, where nobody signed in
 
 
 def main(arguments: Sequence[str] | None = None) -> int:
@@ -76,12 +77,17 @@ def _parser() -> argparse.ArgumentParser:
     restore.add_argument("source", type=Path)
     _data(restore, DATA)
     restore.set_defaults(run=_restore)
+    _person(commands)
     return parser
 
 
 def _address(parser: argparse.ArgumentParser) -> None:
-    parser.add_argument("--host", default="127.0.0.1", help="address to listen on (this machine only, for now)")
+    parser.add_argument("--host", default="127.0.0.1", help="address to listen on (default: this machine only)")
     parser.add_argument("--port", type=int, default=8300, help="port (default 8300)")
+    parser.add_argument("--sign-in", action="store_true", help="have people sign in (always so beyond this machine)")
+    parser.add_argument(
+        "--name", action="append", default=[], metavar="HOST", help="a host name people type to reach it (repeat it)"
+    )
 
 
 def _data(parser: argparse.ArgumentParser, default: Path) -> None:
@@ -89,18 +95,44 @@ def _data(parser: argparse.ArgumentParser, default: Path) -> None:
 
 
 def _serve(options: argparse.Namespace) -> int:
-    from server.settings import Settings
-
-    return _listen(Settings(data=options.data, host=options.host, port=options.port))
+    return _listen(_settings(options))
 
 
 def _demo(options: argparse.Namespace) -> int:
     from server.jobs import demo
-    from server.settings import Settings
 
-    settings = Settings(data=options.data, host=options.host, port=options.port)
+    settings = _settings(options)
     demo.fill(_opened(settings))
     return _listen(settings)
+
+
+def _settings(options: argparse.Namespace) -> Settings:
+    """What the options say; beyond this machine people sign in as soon as there are any."""
+    from server import people, storage
+    from server.settings import Settings, is_loopback
+
+    sign_in = bool(options.sign_in)
+    if not sign_in and not is_loopback(options.host):
+        here = Settings(data=options.data)
+        if here.records.exists():
+            with storage.reading(_opened(here)) as session:
+                sign_in = people.anybody(session)
+    return Settings(data=options.data, host=options.host, port=options.port, sign_in=sign_in, names=tuple(options.name))
+
+
+def _first_words(settings: Settings) -> str:
+    """What the first person needs to get in; '' where there are people, or nobody signs in."""
+    from server import people, storage
+
+    if not settings.sign_in:
+        return ""
+    with storage.reading(_opened(settings)) as session:
+        code = people.first_code(session)
+    if code is None:
+        return ""
+    return (
+        f"Nobody can sign in yet. Open {settings.address}first-person and enter this code within an hour: {code.code}"
+    )
 
 
 def _listen(settings: Settings) -> int:
@@ -113,10 +145,13 @@ def _listen(settings: Settings) -> int:
         async def startup(self, sockets: list[socket.socket] | None = None) -> None:
             await super().startup(sockets)
             if self.started:
-                print(f"Bondwright is ready: {replace(settings, port=port).address}  (Ctrl+C stops it)", flush=True)
+                print(f"Bondwright is ready: {settings.address}  (Ctrl+C stops it)", flush=True)
+                if first_words:
+                    print(first_words, flush=True)
 
     door = _door(settings)
-    port = int(door.getsockname()[1])
+    settings = replace(settings, port=int(door.getsockname()[1]))
+    first_words = _first_words(settings)
     config = uvicorn.Config(create_app(settings), log_level="warning", access_log=False)
     Announced(config).run(sockets=[door])
     return PASS
@@ -136,6 +171,102 @@ def _door(settings: Settings) -> socket.socket:
             "already? Stop it, or choose another port with --port."
         ) from error
     return door
+
+
+def _person(commands: argparse._SubParsersAction[argparse.ArgumentParser]) -> None:
+    """The people, looked after at the machine itself: the way back in where nobody can sign in any more."""
+    person = commands.add_parser("person", help="list, add, switch off or on, make a one-time code")
+    acts = person.add_subparsers(required=True, metavar="act")
+    for name, words, run in (
+        ("list", "list everybody with their roles", _list_people),
+        ("add", "add a person and make a one-time code", _add_person),
+        ("code", "make a one-time code for a new password", _give_code),
+        ("off", "let a person in no more", _switch_off),
+        ("on", "let a person in again", _switch_on),
+    ):
+        act = acts.add_parser(name, help=words)
+        if name != "list":
+            act.add_argument("sign_in_name", help="the name the person signs in with, such as ann.e")
+        if name == "add":
+            act.add_argument("--name", required=True, help="the name as it is to stand on the sheets")
+            act.add_argument(
+                "--role",
+                action="append",
+                default=[],
+                help="reads, prepares, checks, approves or 'keeps the book' (repeat it; the first person gets all)",
+            )
+        _data(act, DATA)
+        act.set_defaults(run=run)
+
+
+def _list_people(options: argparse.Namespace) -> int:
+    from server import people, storage
+
+    with storage.reading(_book_of(options)) as session:
+        for each in people.members(session):
+            state = "off" if each.off_at else "in use" if each.has_password else "no password yet"
+            print(f"{each.sign_in_name:20} {each.name:30} {state:16} {', '.join(each.roles)}")
+    return PASS
+
+
+def _add_person(options: argparse.Namespace) -> int:
+    from server import people, sheets, storage
+    from server.settings import Settings
+
+    with storage.reading(_opened(Settings(data=options.data))) as session:
+        roles = options.role or (people.ROLES if not people.anybody(session) else ())
+        _, code = people.add(
+            session,
+            name=options.name,
+            sign_in_name=options.sign_in_name,
+            roles=roles,
+            by=AT_THE_MACHINE,
+            unprintable=sheets.unprintable,
+        )
+    return _print_code(options.name, code.code, code.ends_at)
+
+
+def _give_code(options: argparse.Namespace) -> int:
+    from server import people, storage
+
+    with storage.reading(_book_of(options)) as session:
+        member = people.find(session, options.sign_in_name)
+        code = people.give_code(session, member.id, by=AT_THE_MACHINE)
+    return _print_code(member.name, code.code, code.ends_at)
+
+
+def _print_code(name: str, code: str, ends_at: str) -> int:
+    print(f"{name} signs in with this code, once, until {ends_at}: {code}")
+    return PASS
+
+
+def _switch_off(options: argparse.Namespace) -> int:
+    from server import people, storage
+
+    with storage.reading(_book_of(options)) as session:
+        member = people.find(session, options.sign_in_name)
+        people.switch_off(session, member.id, by=AT_THE_MACHINE)
+    print(f"{member.name} is switched off and signed out everywhere.")
+    return PASS
+
+
+def _switch_on(options: argparse.Namespace) -> int:
+    from server import people, storage
+
+    with storage.reading(_book_of(options)) as session:
+        member = people.find(session, options.sign_in_name)
+        people.switch_on(session, member.id, by=AT_THE_MACHINE)
+    print(f"{member.name} is switched on again.")
+    return PASS
+
+
+def _book_of(options: argparse.Namespace) -> Engine:
+    """The record book that is there already."""
+    from server.settings import Settings
+
+    settings = Settings(data=options.data)
+    _book(settings)
+    return _opened(settings)
 
 
 def _opened(settings: Settings) -> Engine:

@@ -28,8 +28,9 @@ class Settings:
     """One running program.
 
     ``data`` is the folder of the shop's records. With ``sign_in`` people sign in, which only a program that this
-    machine alone can reach may do without; ``names`` are further host names it answers to. ``max_body`` is the largest request
-    in bytes, ``max_fields`` the most boxes one form may send: far above what a check needs, far below what would hurt.
+    machine alone can reach may do without; ``names`` are further host names it answers to. ``max_body`` is the largest
+    request in bytes, ``max_fields`` the most boxes one form may send. Both limits are far above what a check needs and
+    far below what would hurt.
     """
 
     data: Path

@@ -47,7 +47,7 @@ def create_job(request: Request, session: DbSession, values: FormValues) -> Resp
     """Start a job, or give the form back as typed."""
     typed = _typed(values)
     try:
-        job = jobs.create(session, **typed)
+        job = jobs.create(session, **typed, made_by=values.get("made_by", ""))
     except DocumentError as error:
         return _form(request, typed, beside(error, LABELS))
     return see(request, "show_job", job_id=job.id)
@@ -72,7 +72,7 @@ def save_job(request: Request, session: DbSession, values: FormValues, job_id: I
     job = jobs.get(session, job_id)
     typed = _typed(values)
     try:
-        jobs.edit(session, job_id, **typed)
+        jobs.edit(session, job_id, **typed, made_by=values.get("made_by", ""))
     except DocumentError as error:
         return _form(request, typed, beside(error, LABELS), job)
     return see(request, "show_job", job_id=job_id)

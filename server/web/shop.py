@@ -40,6 +40,7 @@ def save_shop(request: Request, session: DbSession, values: FormValues) -> Respo
             address=typed["address"],
             paper=typed["paper"],
             display=typed["display"],
+            made_by=values.get("made_by", ""),
         )
     except DocumentError as error:
         return _form(request, typed, beside(error, LABELS))
