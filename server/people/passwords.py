@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import secrets
 import threading
 import unicodedata
 from collections.abc import Iterator
@@ -74,7 +75,7 @@ def fits(kept: str | None, password: str) -> bool:
             _HASHER.verify(kept or _nobodys(), _plain(password))
         except (VerificationError, InvalidHashError):
             return False
-    return kept is not None
+    return bool(kept)
 
 
 def outdated(kept: str) -> bool:
@@ -84,7 +85,7 @@ def outdated(kept: str) -> bool:
 
 @cache
 def _nobodys() -> str:
-    return _HASHER.hash("a password nobody has")
+    return _HASHER.hash(secrets.token_urlsafe())
 
 
 def _plain(password: str) -> str:
@@ -100,8 +101,8 @@ def _is_name(text: str, names: tuple[str, ...]) -> bool:
 
 
 def _is_common(text: str) -> bool:
-    swapped = text.casefold().translate(_SWAPPED)
-    return _letters(text) in _COMMON or _letters(swapped) in _COMMON or swapped.strip("0123456789.-_#?& ") in _COMMON
+    core = text.casefold().strip("0123456789.,-_#?!&*+/ ")
+    return _letters(text) in _COMMON or _letters(core.translate(_SWAPPED)) in _COMMON
 
 
 def _letters(text: str) -> str:

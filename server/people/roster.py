@@ -65,7 +65,7 @@ def members(session: Session) -> list[Member]:
     rows = session.scalars(select(PersonRow).order_by(PersonRow.off_at.is_not(None), PersonRow.name))
     codes = {row.person_id: row.ends_at for row in session.scalars(select(CodeRow))}
     last_seen = select(SessionRow.person_id, func.max(SessionRow.seen_at)).group_by(SessionRow.person_id)
-    seen = dict(session.execute(last_seen).tuples().all())
+    seen = {person_id: at for person_id, at in session.execute(last_seen)}  # noqa: C416 -- rows are no pairs to mypy
     return [_member(row, codes.get(row.id), seen.get(row.id)) for row in rows]
 
 

@@ -83,7 +83,7 @@ def by_session(session: Session, token: str, *, now: datetime | None = None) -> 
     found = session.execute(query).one_or_none()
     if found is None:
         return None
-    row, person = found.tuple()
+    row, person = found
     visit = Visit(_person(person), row.id)
     if at - since(row.seen_at) >= _SEEN_EVERY:
         _mark(session, update(SessionRow).where(SessionRow.id == row.id).values(seen_at=utc_text(at)))
@@ -98,7 +98,7 @@ def by_token(session: Session, token: str, *, now: datetime | None = None) -> Vi
     found = session.execute(query).one_or_none()
     if found is None:
         return None
-    row, person = found.tuple()
+    row, person = found
     visit = Visit(_person(person))
     if row.used_at is None or at - since(row.used_at) >= _SEEN_EVERY:
         _mark(session, update(TokenRow).where(TokenRow.id == row.id).values(used_at=utc_text(at)))
