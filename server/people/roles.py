@@ -12,7 +12,7 @@ KEEPS_THE_BOOK = "keeps the book"
 ROLES = (READS, PREPARES, CHECKS, APPROVES, KEEPS_THE_BOOK)
 
 MEANING = {
-    READS: "sees jobs, sheets and the library; everybody who signs in does",
+    READS: "sees jobs, sheets and the library, as everybody does who signs in",
     PREPARES: "enters jobs, checks, coupons and records",
     CHECKS: "looks over checks that somebody else prepared",
     APPROVES: "approves values that somebody else entered",

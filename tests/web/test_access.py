@@ -302,3 +302,16 @@ def test_a_record_book_that_cannot_be_read_lets_nobody_in(door: Door, monkeypatc
     answer = door.ask("GET", "/jobs", headers)
     assert answer.status_code == 503
     assert "did not answer" in answer.text
+
+
+def test_pages_offer_no_button_that_would_be_refused(door: Door) -> None:
+    typed = {"number": "26-001", "title": "Gangway", "paper": "A4", "display": "SI"}
+    keeper, reader = door.signed_in(door.keeper), door.signed_in(door.people[people.READS])
+    where = door.ask("POST", "/jobs", keeper, data=typed).headers["location"]
+    for path in ("/jobs", where, "/library"):
+        offered = re.findall(r'<a class="button[^"]*" href="([^"]+)"', door.ask("GET", path, keeper).text)
+        assert offered
+        text = door.ask("GET", path, reader).text
+        for link in offered:
+            assert outcome(door.ask("GET", link, reader)) == "refused"
+            assert link not in text
