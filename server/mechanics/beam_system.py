@@ -220,7 +220,7 @@ def solve_system(A: Array, rhs: Array) -> Array:
             "the member's equations cannot be solved: its stiffnesses, springs or loads differ too much in size; bring"
             " them closer together.",
         )
-    return x
+    return np.asarray(x, dtype=np.float64)
 
 
 def _solve_banded(A: Array, rhs: Array) -> Array:

@@ -289,7 +289,7 @@ def _horner(c: Array, t: Array) -> Array:
         value += coefficient
         value *= t
     value += c[0]
-    return value
+    return np.asarray(value, dtype=np.float64)
 
 
 @lru_cache

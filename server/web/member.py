@@ -58,6 +58,9 @@ def judge(session: Session, values: Mapping[str, str], *, patient: bool = True, 
     return Judged(reading.raw, None if messages or on_top else result, messages, tuple(on_top))
 
 
+LONG_LINE = 60  # characters of numbers beyond which a line may have to be scrolled, so it takes the keyboard's focus
+
+
 def _unprintable(values: Mapping[str, str]) -> dict[str, str]:
     """Say at entry which characters the sheet could not print later."""
     found = {name: sheets.unprintable(text) for name, text in values.items() if not text.isascii()}
@@ -250,6 +253,7 @@ def working_of(result: Mapping[str, Any]) -> list[tuple[str, list[dict[str, obje
         groups.setdefault(step.get("group") or "Check", []).append(
             {
                 "title": step["title"],
+                "long": len(step["substituted"]) > LONG_LINE,
                 "math": Markup(working.mathml(step, display)),  # noqa: S704 -- our own printer escapes every text
                 "note": step.get("note", ""),
                 "source": step["source"],

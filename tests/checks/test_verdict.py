@@ -228,8 +228,8 @@ def test_extreme_fibre_is_judged_by_tension_and_compression_where_bending_is_not
 
 def test_a_bond_whose_piece_stops_short_is_judged_along_it_and_not_proven_at_its_end():
     strip = {"shape": "rectangle", "width": 80, "depth": 8, "at": [10, -8], "material": "pine", "from": 250, "to": 2750}
-    result = run(STACK, section__pieces__strip=strip, loads__live__0__value=0.5,
-                 section__joints=[*STACK["section"]["joints"], {"between": ["strip", "lower"], "adhesive": "glue"}])  # fmt: skip
+    joints = [*STACK["section"]["joints"], {"between": ["strip", "lower"], "adhesive": "glue"}]
+    result = run(STACK, section__pieces__strip=strip, loads__live__0__value=0.5, section__joints=joints)
     assert result["verdict"] == "not proven"
     assert any("end of strip at 250 mm" in line for line in result["missing"])
     strip_joint = result["joints"][1]
