@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import shutil
 import threading
 import time
 from collections.abc import Callable, Iterator
@@ -17,18 +16,7 @@ from server.jobs import demo
 from server.settings import Settings
 from server.storage import engine, migrate
 
-CHROMIUM = shutil.which("chromium") or shutil.which("chromium-browser")
-ARGUMENTS = ["--no-sandbox", "--disable-gpu", "--disable-background-networking", "--no-first-run"]
 AXE = (Path(__file__).parent / "vendor" / "axe.min.js").read_text(encoding="utf-8")
-
-
-def pytest_collection_modifyitems(items: list[pytest.Item]) -> None:
-    skip = pytest.mark.skip(reason="there is no chromium on this machine")
-    for item in items:
-        if Path(__file__).parent in item.path.parents:
-            item.add_marker(pytest.mark.browser)
-            if CHROMIUM is None:
-                item.add_marker(skip)
 
 
 def running(settings: Settings) -> Iterator[str]:
@@ -57,15 +45,6 @@ def demo_address(tmp_path_factory: pytest.TempPathFactory) -> Iterator[str]:
     demo.fill(book)
     book.dispose()
     yield from running(settings)
-
-
-@pytest.fixture(scope="session")
-def browser() -> Iterator[Any]:
-    api = pytest.importorskip("playwright.sync_api", reason="playwright is not installed")
-    with api.sync_playwright() as started:
-        made = started.chromium.launch(executable_path=CHROMIUM, args=ARGUMENTS)
-        yield made
-        made.close()
 
 
 @pytest.fixture

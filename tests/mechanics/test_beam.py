@@ -456,7 +456,9 @@ def test_curves_obey_the_differential_equations_and_join(data):
     bent[:, :2] -= V[:, 1:] * [1, 2] * g[:, None]
     # Where moment and shear both bend the axis, each coefficient is a difference: last bits of its larger term count.
     terms = np.abs(y[:, 2:] * [2, 6, 12, 20])
-    np.testing.assert_array_less(np.abs(bent + M * f[:, None]), 1e-9 * np.maximum(terms, np.abs(M * f[:, None])) + 1e-30)
+    np.testing.assert_array_less(
+        np.abs(bent + M * f[:, None]), 1e-9 * np.maximum(terms, np.abs(M * f[:, None])) + 1e-30
+    )
     fixed = [support.at for support in member.supports if support.kind == "fixed"]
     for name, kept in (("deflection", []), ("moment", fixed)):
         curve = getattr(response, name)

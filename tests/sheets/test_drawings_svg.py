@@ -4,7 +4,6 @@ from __future__ import annotations
 
 import json
 import re
-import shutil
 from collections.abc import Callable
 from typing import Any
 
@@ -144,13 +143,8 @@ def test_everything_a_preview_draws(benchmark: Any) -> None:
     assert sum(len(svg) for svg in drawn) < 30_000
 
 
-@pytest.mark.browser
-def test_a_browser_draws_them_under_the_strict_policy_with_no_lettering_on_lettering() -> None:
+def test_a_browser_draws_them_under_the_strict_policy_with_no_lettering_on_lettering(browser: Any) -> None:
     """Measured by the browser's own text boxes, in whatever face it has."""
-    browser_path = shutil.which("chromium")
-    if browser_path is None:
-        pytest.skip("no chromium on this machine")
-    sync_api = pytest.importorskip("playwright.sync_api")
     sheets: list[str] = []
     for make in fixtures.SECTIONS.values():
         result: dict[str, Any] = make()
@@ -174,14 +168,11 @@ def test_a_browser_draws_them_under_the_strict_policy_with_no_lettering_on_lette
         })
         return bad
     })"""
-    with sync_api.sync_playwright() as play:
-        arguments = ["--no-sandbox", "--disable-gpu", "--disable-background-networking", "--no-first-run"]
-        browser = play.chromium.launch(executable_path=browser_path, args=arguments)
-        page = browser.new_page()
-        said: list[str] = []
-        page.on("console", lambda message: said.append(message.text))
-        page.set_content(page_text)
-        found = page.eval_on_selector_all("svg", measure)
-        browser.close()
+    page = browser.new_page()
+    said: list[str] = []
+    page.on("console", lambda message: said.append(message.text))
+    page.set_content(page_text)
+    found = page.eval_on_selector_all("svg", measure)
+    page.close()
     assert said == []
     assert [bad for bad in found if bad] == []

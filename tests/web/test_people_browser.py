@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import shutil
 import threading
 import time
 from collections.abc import Callable, Iterator
@@ -16,15 +15,8 @@ from server import people, storage
 from server.app import create_app
 from server.settings import Settings
 
-api = pytest.importorskip("playwright.sync_api", reason="playwright is not installed")
-CHROMIUM = shutil.which("chromium") or shutil.which("chromium-browser")
-ARGUMENTS = ["--no-sandbox", "--disable-gpu", "--disable-background-networking", "--no-first-run"]
 AXE = Path(__file__).parents[1] / "browser" / "vendor" / "axe.min.js"
 PASSWORD, OTHER = "seven planed boards", "nine sharp chisels"
-pytestmark = [
-    pytest.mark.browser,
-    pytest.mark.skipif(CHROMIUM is None, reason="there is no chromium on this machine"),
-]
 
 
 class Running:
@@ -52,14 +44,6 @@ def running(tmp_path: Path) -> Iterator[Running]:
     yield made
     made.server.should_exit = True
     made.thread.join(timeout=10)
-
-
-@pytest.fixture(scope="module")
-def browser() -> Iterator[Any]:
-    with api.sync_playwright() as started:
-        made = started.chromium.launch(executable_path=CHROMIUM, args=ARGUMENTS)
-        yield made
-        made.close()
 
 
 @pytest.fixture
