@@ -13,6 +13,7 @@ from __future__ import annotations
 import math
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
+from math import isfinite
 from typing import Any
 
 import numpy as np
@@ -81,17 +82,19 @@ class Working:
         if values.keys() != known.names:
             _mismatch(known, values)
         plain_values: dict[str, float | list[float]] = {}
+        kept: dict[str, dict[str, Any]] = {}
         lists = _NO_LISTS
-        for name, (given, _) in values.items():
+        for name, (given, its_unit) in values.items():
             if isinstance(given, float | int):
-                plain_values[name] = float(given)
-                if not math.isfinite(given):
+                taken: float | list[float] = float(given)
+                if not isfinite(given):
                     raise InputError(name, _not_finite(name, given, title))
             else:
                 taken = _listed(name, given, title)
-                plain_values[name] = taken
                 if isinstance(taken, list):
                     lists = lists | {name}
+            plain_values[name] = taken
+            kept[name] = {"value": taken, "unit": its_unit}
         value = _evaluate(known, plain_values, lists, symbol, title)
         if not self.record:
             return value
@@ -106,7 +109,7 @@ class Working:
                 "unit": unit,
                 "source": source,
                 "group": self.group if group is None else group,
-                "values": {name: {"value": plain_values[name], "unit": values[name][1]} for name in values},
+                "values": kept,
                 "note": note,
             }
         )
@@ -123,7 +126,7 @@ class Working:
         symbol: str = "",
     ) -> None:
         """Record what a numerical method did, in words, with the value it gave."""
-        if value is not None and not math.isfinite(value):
+        if value is not None and not isfinite(value):
             raise InputError(symbol or title, _not_finite(symbol or title, value, title))
         if not self.record:
             return
@@ -156,12 +159,12 @@ def _listed(name: str, given: Any, title: str) -> float | list[float]:
     """A numpy scalar, a sequence or an array as plain numbers, all finite."""
     if np.ndim(given) == 0:
         scalar = float(given)
-        if not math.isfinite(scalar):
+        if not isfinite(scalar):
             raise InputError(name, _not_finite(name, scalar, title))
         return scalar
     taken = [float(each) for each in given]
     for position, each in enumerate(taken):
-        if not math.isfinite(each):
+        if not isfinite(each):
             raise InputError(name, _not_finite(f"{name}_{position + 1}", each, title))
     return taken
 
@@ -177,7 +180,7 @@ def _evaluate(
         raise InputError(symbol, _no_answer(known, symbol, title, "divides by zero")) from None
     except (ValueError, OverflowError):
         raise InputError(symbol, _no_answer(known, symbol, title, "has no real answer")) from None
-    if isinstance(value, complex) or not math.isfinite(value):
+    if isinstance(value, complex) or not isfinite(value):
         raise InputError(symbol, _no_answer(known, symbol, title, "has no finite real answer"))
     return float(value)
 
@@ -199,16 +202,18 @@ def _texts(
     form = numbers.canonical
     target = form(value)
     texts: Texts = {}
+    rounded: dict[str, float | list[float]] = {}
+    rest = values
     for digits in numbers.LADDER:
-        rounded: dict[str, float | list[float]] = {}
-        for name, each in values.items():
+        for name, each in rest.items():
             if isinstance(each, list):
                 written = [form(item, digits) for item in each]
                 texts[name], rounded[name] = written, [float(text) for text in written]
             else:
                 texts[name] = text = form(each, digits)
                 rounded[name] = float(text)
-        if rounded == values:
+        rest = {name: each for name, each in rest.items() if rounded[name] != each}
+        if not rest:
             return digits, texts
         try:
             if form(known.value(rounded, lists)) == target:
