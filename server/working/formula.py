@@ -78,11 +78,6 @@ class Formula:
         pieces = self._pieces.get(key)
         if pieces is None:
             pieces = self._pieces[key] = _pieces_of(self.tree, lists, count)
-        if not lists:
-            for name, text in texts.items():
-                if text[0] == "-":
-                    texts = {**texts, name: f"({text})"}
-            return "".join([piece if isinstance(piece, str) else texts[piece[0]] for piece in pieces])  # type: ignore[misc]
         out: list[str] = []
         for piece in pieces:
             if isinstance(piece, str):
