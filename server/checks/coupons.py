@@ -10,6 +10,7 @@ from server import ENGINE, units
 from server.checks import coupon_limits as limits
 from server.checks.coupon_cautions import add_cautions
 from server.checks.coupon_limits import Limit, Values
+from server.checks.coupon_plot import probability_plot
 from server.checks.coupon_tests import find_batches, find_fit, find_outliers
 from server.checks.resistance import Findings
 from server.documents.coupons import Coupon, CouponsDocument, Failure, label, stress_of
@@ -47,6 +48,7 @@ def run(document: CouponsDocument, *, working: bool = True) -> dict[str, object]
     found["fit"], found["fit_shapiro_wilk"] = find_fit(x, statistic, book)
     found["batches"] = find_batches(x, coupons, statistic, book)
     found["failure"] = _failures(coupons)
+    found["probability_plot"] = probability_plot(x, places, limit, statistic)
     found["without_exclusions"] = _without_exclusions(every, document, limit, book)
     if limit.reason:
         findings.miss(f"characteristic value: {limit.reason}.")

@@ -6,6 +6,7 @@ The unit of the values is the caller's own (MPa here); limits come out in the sa
 from __future__ import annotations
 
 from dataclasses import dataclass
+from itertools import pairwise
 from typing import Literal
 
 import numpy as np
@@ -122,4 +123,4 @@ def _stretches(signs: NDArray[np.float64]) -> list[tuple[int, int]]:
     """First place, and the one after the last, of every stretch of one sign other than 0."""
     edges = np.flatnonzero(np.diff(signs)) + 1
     bounds = np.concatenate(([0], edges, [signs.size])).astype(int)
-    return [(int(a), int(b)) for a, b in zip(bounds, bounds[1:], strict=False) if b > a and signs[a] != 0]
+    return [(int(a), int(b)) for a, b in pairwise(bounds) if b > a and signs[a] != 0]

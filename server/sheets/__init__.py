@@ -2,26 +2,41 @@
 
 from server.sheets.composition import STANDING_CAUTION, SheetData
 from server.sheets.diagrams import diagram_svg, flow_svg, joint_svg
+from server.sheets.dot_plot import dot_plot_svg
+from server.sheets.evidence import EvidenceData, FactorLine, Reply, area_as_typed, load_as_typed
 from server.sheets.given import Group, Row, given
+from server.sheets.history import Point, history_svg, in_words
 from server.sheets.loads_drawing import loads_svg
-from server.sheets.pdf import UnprintableError, pdf, unprintable
+from server.sheets.pdf import UnprintableError, evidence_pdf, pdf, unprintable
+from server.sheets.probability_plot import probability_plot_svg
 from server.sheets.section_drawing import section_svg
 from server.sheets.terminal import terminal
 from server.sheets.values import governing, quantity, utilisation, verdict
 
 __all__ = [
     "STANDING_CAUTION",
+    "EvidenceData",
+    "FactorLine",
     "Group",
+    "Point",
+    "Reply",
     "Row",
     "SheetData",
     "UnprintableError",
+    "area_as_typed",
     "diagram_svg",
+    "dot_plot_svg",
+    "evidence_pdf",
     "flow_svg",
     "given",
     "governing",
+    "history_svg",
+    "in_words",
     "joint_svg",
+    "load_as_typed",
     "loads_svg",
     "pdf",
+    "probability_plot_svg",
     "quantity",
     "section_svg",
     "terminal",

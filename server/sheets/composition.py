@@ -139,7 +139,7 @@ def _sections(sheet: SheetData, drawings: Drawings) -> Iterator[tuple[str, Itera
     yield "Deflection", tables.deflection(result, display)
     yield "What is missing", _list(result.get("missing", ()))
     yield "Cautions and replies", _cautions(result, sheet.replies)
-    yield "Working", _working(result, display)
+    yield "Working", working(result, display)
     yield "Values used", _values_used(result)
     yield "Not checked", _not_checked(result)
     yield "Prepared, checked, approved", [_signatures(sheet)]
@@ -212,7 +212,8 @@ def _cautions(result: Mapping[str, Any], replies: Mapping[str, str]) -> Iterator
         }
 
 
-def _working(result: Mapping[str, Any], display: str) -> Iterator[Part]:
+def working(result: Mapping[str, Any], display: str) -> Iterator[Part]:
+    """The steps of a result in their groups; a group that repeats another is named once."""
     for group in working_groups(result.get("steps", ())):
         if group.title:
             yield {"kind": "sub", "title": group.title, "about": ""}

@@ -18,6 +18,7 @@ from server import paths
 from server.errors import JointError
 from server.sheets.composition import KINDS, Drawings, SheetData, compose
 from server.sheets.diagrams import diagram_svg, flow_svg
+from server.sheets.evidence import EvidenceData, compose_evidence
 from server.sheets.loads_drawing import loads_svg
 from server.sheets.section_drawing import section_svg
 
@@ -80,8 +81,13 @@ def _setter() -> _Setter:
 def _templates() -> dict[str, bytes]:
     folder = paths.data_folder("templates") / "sheet"
     found = {each.name: each.read_bytes() for each in sorted(folder.glob("*.typ"))}
-    found["main"] = found.pop("sheet.typ")
     return found
+
+
+def _sources(main: str) -> dict[str, bytes]:
+    """The templates, with the one called ``main`` as the file that is set."""
+    found = dict(_templates())
+    return {**found, "main": found.pop(main)}
 
 
 def pdf(sheet: SheetData) -> bytes:
@@ -97,9 +103,17 @@ def pdf(sheet: SheetData) -> bytes:
     kind = sheet.result.get("kind", "member")
     if kind not in KINDS:
         raise JointError(f"There is no PDF for checks of kind {str(kind)[:40]!r} yet; leave the PDF out.")
-    data = compose(sheet, DRAWINGS)
+    return _set("sheet.typ", compose(sheet, DRAWINGS), sheet.saved_at)
+
+
+def evidence_pdf(page: EvidenceData) -> bytes:
+    """The evidence page of a value as a PDF file; raises as ``pdf`` does."""
+    return _set("evidence.typ", compose_evidence(page), page.made_at)
+
+
+def _set(main: str, data: dict[str, Any], timestamp: int) -> bytes:
     try:
-        return _setter().pdf(_templates(), data, sheet.saved_at)
+        return _setter().pdf(_sources(main), data, timestamp)
     except typst.TypstError as error:
         missing = _missing_characters(error)
         if missing:

@@ -6,7 +6,7 @@ import textwrap
 from collections.abc import Iterable, Iterator, Mapping, Sequence
 from typing import Any
 
-from server.sheets import tables, terminal_coupons
+from server.sheets import coupon_tables, tables
 from server.sheets.composition import PRECEDENCE, STANDING_CAUTION
 from server.sheets.steps import working_groups
 from server.sheets.values import governing, utilisation, verdict
@@ -29,7 +29,7 @@ def terminal(result: Mapping[str, Any], display: str | None = None) -> str:
 
 def _lines(result: Mapping[str, Any], display: str) -> Iterator[str]:
     yield from _head(result, display)
-    for title, parts in terminal_coupons.blocks(result, display) if _coupons(result) else _member(result, display):
+    for title, parts in coupon_tables.blocks(result, display) if _coupons(result) else _member(result, display):
         yield from _block(title, parts)
     yield from _listed("What is missing", (str(line) for line in result.get("missing", ())))
     yield from _listed("Cautions", (_caution(each) for each in result.get("cautions", ())))
@@ -55,7 +55,7 @@ def _head(result: Mapping[str, Any], display: str) -> Iterator[str]:
     word = verdict(result)
     used = result.get("utilisation")
     yield f"{word}   utilisation {utilisation(used)}" if used is not None else word
-    headline = terminal_coupons.headline if _coupons(result) else governing
+    headline = coupon_tables.headline if _coupons(result) else governing
     yield from _wrapped(headline(result, display))
     if result.get("title"):
         yield from ["", *_wrapped(str(result["title"]))]

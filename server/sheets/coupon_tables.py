@@ -1,4 +1,4 @@
-"""What the terminal's sheet shows of a set of coupons: the value, the coupons, the tests, what more would buy."""
+"""A set of coupons in tables, for the terminal and the evidence page: value, coupons, tests, what more would buy."""
 
 from __future__ import annotations
 
@@ -9,7 +9,7 @@ from server.sheets.tables import column, table
 from server.sheets.values import DASH, quantity, unit
 from server.working import readable
 
-Part = Mapping[str, Any]
+Part = dict[str, Any]
 Result = Mapping[str, Any]
 NAMES = {
     "normal": "normal",
@@ -34,68 +34,77 @@ def headline(result: Result, display: str) -> str:
     n = result.get("n")
     return (
         f"Characteristic value {quantity(value, 'MPa', display)} from {n} coupon{'' if n == 1 else 's'}: "
-        f"{_percent(statistic.get('coverage'))} lie above it, stated with {_percent(statistic.get('confidence'))} "
+        f"{percent(statistic.get('coverage'))} lie above it, stated with {percent(statistic.get('confidence'))} "
         f"confidence ({NAMES.get(str(statistic.get('distribution')), '')})"
     )
 
 
 def blocks(result: Result, display: str) -> Iterator[tuple[str, Iterable[Part]]]:
     """Every block of the sheet between its head and what is missing: title and parts."""
-    yield "Characteristic value", _value(result, display)
+    yield "Characteristic value", value(result, display)
     yield "Coupons", _coupons(result, display)
-    yield "Where they broke", _failures(result)
-    yield "Tests of the set", _tests(result)
-    yield "What would raise it", _ahead(result, display)
+    yield "Where they broke", failures(result)
+    yield "Tests of the set", tests(result)
+    yield "What would raise it", ahead(result, display)
 
 
-def _percent(value: object) -> str:
+def percent(value: object) -> str:
+    """A share as a percentage."""
     return f"{readable(float(value) * 100, 4)} %" if isinstance(value, int | float) else DASH
 
 
-def _number(value: object, digits: int = 4) -> str:
+def number(value: object, digits: int = 4) -> str:
+    """A number for people; a dash where there is none."""
     return readable(float(value), digits) if isinstance(value, int | float) else DASH
 
 
-def _value(result: Result, display: str) -> Iterator[Part]:
-    yield {"kind": "pairs", "pairs": _pairs(result, display)}
+def value(result: Result, display: str) -> Iterator[Part]:
+    """The value with what it is made of, the same with the excluded coupons, and EN 1990 Annex D."""
+    yield {"kind": "pairs", "pairs": pairs(result, display)}
     whole = result.get("without_exclusions")
     if whole:
         yield {"kind": "sub", "title": "With the excluded coupons", "about": ""}
-        yield {"kind": "pairs", "pairs": _pairs(whole, display)}
+        yield {"kind": "pairs", "pairs": pairs(whole, display)}
+    yield from directly_from_tests(result, display)
+
+
+def directly_from_tests(result: Result, display: str) -> Iterator[Part]:
+    """Characteristic and design value by EN 1990 Annex D, where it has a factor."""
     annex = result.get("design_from_tests")
     if annex:
         yield {"kind": "sub", "title": "EN 1990 Annex D, directly from tests, conversion factor 1", "about": ""}
         rows = [
-            [f"{name} value", f"{quantity(annex[key], 'MPa', display)}  (factor {_number(annex[f'{key}_factor'])})"]
+            [f"{name} value", f"{quantity(annex[key], 'MPa', display)}  (factor {number(annex[f'{key}_factor'])})"]
             for name, key in (("Characteristic", "characteristic"), ("Design", "design"))
             if annex.get(key) is not None
         ]
         yield {"kind": "pairs", "pairs": rows}
 
 
-def _pairs(found: Result, display: str) -> list[list[str]]:
+def pairs(found: Result, display: str) -> list[list[str]]:
+    """Names and numbers of one answer."""
     rows = [
-        ["Coupons", _number(found.get("n"))],
+        ["Coupons", number(found.get("n"))],
         ["Mean", quantity(found.get("mean_stress"), "MPa", display)],
         ["Standard deviation", quantity(found.get("standard_deviation_stress"), "MPa", display)],
-        ["Coefficient of variation", _percent(found.get("variation"))],
+        ["Coefficient of variation", percent(found.get("variation"))],
         ["Lowest", quantity(found.get("minimum"), "MPa", display)],
     ]
     if found.get("of_logarithms"):
         rows += [
-            ["Mean of the logarithms (MPa)", _number(found.get("mean"))],
-            ["Their standard deviation", _number(found.get("standard_deviation"))],
+            ["Mean of the logarithms (MPa)", number(found.get("mean"))],
+            ["Their standard deviation", number(found.get("standard_deviation"))],
         ]
     weibull = found.get("weibull")
     if weibull:
-        rows += [["Weibull shape", _number(weibull["shape"])], ["Scale", quantity(weibull["scale"], "MPa", display)]]
+        rows += [["Weibull shape", number(weibull["shape"])], ["Scale", quantity(weibull["scale"], "MPa", display)]]
     if found.get("rank"):
-        rows.append(["Rank from below", _number(found["rank"])])
+        rows.append(["Rank from below", number(found["rank"])])
     if found.get("factor") is not None:
-        rows.append(["Tolerance factor", _number(found["factor"])])
+        rows.append(["Tolerance factor", number(found["factor"])])
     rows.append(["Characteristic value", quantity(found.get("characteristic"), "MPa", display)])
     if found.get("share_of_mean") is not None:
-        rows.append(["Share of the mean", _percent(found["share_of_mean"])])
+        rows.append(["Share of the mean", percent(found["share_of_mean"])])
     return rows
 
 
@@ -118,46 +127,49 @@ def _coupons(result: Result, display: str) -> Iterator[Part]:
         yield table(columns, rows)
 
 
-def _failures(result: Result) -> Iterator[Part]:
+def failures(result: Result) -> Iterator[Part]:
+    """Where the coupons broke, on average."""
     summary = result.get("failure")
     if summary:
-        rows = [[name, f"{_number(summary[key], 3)} %"] for key, name in _SHARES if summary.get(key)]
+        rows = [[name, f"{number(summary[key], 3)} %"] for key, name in _SHARES if summary.get(key)]
         yield {"kind": "pairs", "pairs": [*rows, ["Recorded for", f"{summary['coupons']} coupons (means)"]]}
 
 
-def _tests(result: Result) -> Iterator[Part]:
+def tests(result: Result) -> Iterator[Part]:
+    """Fit, outliers and batches, each with its statistic and its critical value."""
     rows = []
     for key in ("fit", "fit_shapiro_wilk"):
         fit = result.get(key) or {}
         if fit.get("test"):
             told = "accepted" if fit["accepted"] else "not accepted"
-            rows.append([fit["test"], f"{_number(fit['statistic'])}, p = {_number(fit['p_value'], 3)}: {told}"])
+            rows.append([fit["test"], f"{number(fit['statistic'])}, p = {number(fit['p_value'], 3)}: {told}"])
     for each in result.get("outliers") or []:
-        told = f"{_number(each['statistic'])} beyond {_number(each['critical'])}"
+        told = f"{number(each['statistic'])} beyond {number(each['critical'])}"
         rows.append([f"Outlier: coupon {each['index'] + 1}", told])
     if not result.get("outliers"):
         rows.append(["Outliers", "none"])
     batches = result.get("batches") or {}
     if batches.get("statistic") is not None:
         told = "may be pooled" if batches["pooled"] else "not one population"
-        rows.append(["Batches", f"{_number(batches['statistic'])} against {_number(batches['critical'])}: {told}"])
+        rows.append(["Batches", f"{number(batches['statistic'])} against {number(batches['critical'])}: {told}"])
     else:
         rows.append(["Batches", str(batches.get("note") or DASH)])
     yield {"kind": "pairs", "pairs": rows}
 
 
-def _ahead(result: Result, display: str) -> Iterator[Part]:
+def ahead(result: Result, display: str) -> Iterator[Part]:
+    """What more coupons, and less scatter, would buy."""
     rows = [[f"{each['n']} coupons, same scatter", each] for each in result.get("more_coupons") or []]
     rows += [
-        [f"{_percent(each['scatter'])} of the scatter, {each['n']} coupons", each]
+        [f"{percent(each['scatter'])} of the scatter, {each['n']} coupons", each]
         for each in result.get("less_scatter") or []
     ]
     if not rows:
         return
-    pairs = [
+    listed = [
         [name, f"{quantity(each['characteristic'], 'MPa', display)}  ({each['gain'] * 100:+.1f} %)"]
         for name, each in rows
     ]
     needed = result.get("needed_for_1_percent_gain")
-    pairs.append(["Further coupons for 1 % more", DASH if needed is None else str(needed)])
-    yield {"kind": "pairs", "pairs": pairs}
+    listed.append(["Further coupons for 1 % more", DASH if needed is None else str(needed)])
+    yield {"kind": "pairs", "pairs": listed}
