@@ -19,7 +19,7 @@ from server.checks.pieces import PieceCheck, claim_pieces, write_piece
 from server.checks.resistance import Findings, Judge
 from server.checks.scan import scan
 from server.errors import DocumentError, Fault
-from server.working import Working
+from server.working import Working, exceeds
 
 
 @dataclass(frozen=True)
@@ -171,7 +171,7 @@ def _governing(
 
 def _verdict(governing: Candidate | None, findings: Findings) -> dict[str, object]:
     """Fail where a utilisation exceeds 1; else not proven where anything is missing; else pass."""
-    if governing is not None and governing.utilisation > 1:
+    if governing is not None and exceeds(governing.utilisation):
         verdict = "fail"
     elif findings.missing or governing is None:
         verdict = "not proven"

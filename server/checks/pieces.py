@@ -62,6 +62,7 @@ def claim_pieces(body: Body, scan: Scan, judge: Judge, *, upper_stiffness: bool)
     for part in body.parts:
         check = PieceCheck(part, _blank(part), bent.get(part.index), sheared.get(part.index))
         found.append(check)
+        judge.judge_status(f"material {part.spec.material!r}", part.material)  # its E carries, judged itself or not
         if check.bent is None or check.sheared is None:
             continue
         if not upper_stiffness and part.material.strengths.any():

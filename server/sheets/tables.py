@@ -6,7 +6,7 @@ from collections.abc import Iterator, Mapping, Sequence
 from typing import Any
 
 from server.sheets.values import DASH, Unit, quantity, unit, utilisation
-from server.working import readable
+from server.working import exceeds, readable
 
 Part = dict[str, Any]
 Result = Mapping[str, Any]
@@ -37,7 +37,7 @@ def table(columns: Sequence[Part], rows: Sequence[Sequence[Cell]]) -> Part:
 def used(value: object) -> Cell:
     """A utilisation; strong where it is above 1."""
     text = utilisation(value)
-    return {"strong": text} if isinstance(value, int | float) and value > 1 else text
+    return {"strong": text} if isinstance(value, int | float) and exceeds(value) else text
 
 
 def section(result: Result, display: str) -> Iterator[Part]:

@@ -11,7 +11,7 @@ from dataclasses import dataclass
 from typing import Any
 
 from server import units
-from server.working import readable, readable_unit
+from server.working import exceeds, readable, readable_unit
 
 DIGITS = 4
 DASH = "–"
@@ -57,11 +57,12 @@ def utilisation(value: object) -> str:
     """A utilisation to two decimals; as many more as it takes not to show 1.00 for what is above or below 1."""
     if not isinstance(value, int | float) or isinstance(value, bool):
         return DASH
+    above, below = exceeds(value), exceeds(2 - value)
     for decimals in (2, 3, 4, 6):
         text = f"{value:.{decimals}f}"
-        if (float(text) > 1) == (value > 1) and (float(text) < 1) == (value < 1):
+        if (float(text) > 1) == above and (float(text) < 1) == below:
             return text
-    return "just above 1" if value > 1 else "just below 1" if value < 1 else "1.00"
+    return "just above 1" if above else "just below 1" if below else "1.00"
 
 
 def verdict(result: Mapping[str, Any]) -> str:

@@ -15,6 +15,7 @@ from markupsafe import Markup
 from server import sheets
 from server.sheets import values as written
 from server.sheets.section_view import joint_numbers
+from server.working import exceeds
 
 Result = Mapping[str, Any]
 QUANTITIES = ("shear", "moment", "deflection", "deflection_long_term")
@@ -202,7 +203,7 @@ def _weakest(limits: Sequence[Mapping[str, Any]]) -> str:
 
 def _over(part: Mapping[str, Any]) -> bool:
     used = part.get("utilisation")
-    return isinstance(used, int | float) and used > 1
+    return isinstance(used, int | float) and exceeds(used)
 
 
 def _together(lines: Iterable[str]) -> tuple[str, ...]:

@@ -12,7 +12,14 @@ DIGITS = 5
 LADDER = (5, 6, 8, 11, 17)
 """How many digits the numbers of one line may have: the first rung that brings a reader to the printed value."""
 _LEAST, _MOST = 1e-3, 1e6
+ROUNDING = 1e-10
+"""Of 1: the last bits of a division, far below what any strength is known to."""
 _FORMATS = {digits: f"%.{digits}g" for digits in range(1, 18)}
+
+
+def exceeds(utilisation: float) -> bool:
+    """Whether a utilisation is over 1 by more than its own last bits, so that what is used just fully holds."""
+    return utilisation > 1 + ROUNDING
 
 
 @lru_cache(maxsize=65536)  # the same sizes, moduli and loads stand in line after line

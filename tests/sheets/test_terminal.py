@@ -67,6 +67,8 @@ def test_a_rounding_never_hides_an_excess():
     assert utilisation(0.9996) == "0.9996"
     assert utilisation(1.0) == "1.00"
     assert utilisation(1 + 1e-9) == "just above 1"
+    assert utilisation(1 - 1e-9) == "just below 1"
+    assert utilisation(1 + 1e-15) == utilisation(1 - 1e-15) == "1.00"  # last bits of a division
     assert utilisation(0.778) == "0.78"
     assert utilisation(None) == "–"
 
