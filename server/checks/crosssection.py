@@ -6,6 +6,7 @@ section between the ends of its pieces. What the geometry forbids is refused her
 
 from __future__ import annotations
 
+import math
 from collections.abc import Sequence
 from dataclasses import dataclass
 from functools import cached_property
@@ -15,20 +16,23 @@ import numpy as np
 from numpy.typing import NDArray
 
 from server import documents
+from server.checks.outlines import outlines
 from server.errors import DocumentError, Fault
-from server.mechanics.contacts import Contact, contacts, overlap
+from server.mechanics.contacts import Contact, contacts, in_order, overlap
 from server.mechanics.flow import JointFlow, JointLine, joint_flows, tied
+from server.mechanics.outlines import nearest
 from server.mechanics.polygon import Edges, edges_of
+from server.mechanics.round_contacts import Round, round_contacts
 from server.mechanics.section import (
     HorizontalCut,
     Piece,
     SectionProperties,
     largest_cuts,
     properties,
-    rectangle,
     reweighted,
     shear_stiffness,
 )
+from server.mechanics.shapes import Shape
 
 GAP = 0.05  # mm two faces may stand apart and still touch
 
@@ -39,24 +43,34 @@ class Part:
 
     index: int
     name: str
-    spec: documents.Rectangle
+    spec: documents.Piece
     material: documents.Material
-    outline: NDArray[np.float64]
+    shape: Shape
     start: float
     end: float
 
+    @property
+    def outline(self) -> NDArray[np.float64]:
+        """Corners of the outer ring, anticlockwise."""
+        return self.shape.outline
+
+    @cached_property
+    def box(self) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
+        """Lower left and upper right corner of the bounding box."""
+        return self.shape.box()
+
     @cached_property
     def bottom(self) -> float:
-        return float(self.outline[:, 1].min())
+        return float(self.box[0][1])
 
     @cached_property
     def top(self) -> float:
-        return float(self.outline[:, 1].max())
+        return float(self.box[1][1])
 
     @property
     def lies_flat(self) -> bool:
         """Whether the piece is wider than deep, so that horizontal cuts pass through its thickness."""
-        return float(np.ptp(self.outline[:, 0])) > self.top - self.bottom
+        return float(self.box[1][0] - self.box[0][0]) > self.top - self.bottom
 
     @property
     def rolls(self) -> bool:
@@ -162,7 +176,7 @@ class Body:
 def build(document: documents.MemberDocument) -> Body:
     """Place pieces and joints; raise DocumentError for overlaps, loose pieces and joints that touch nothing."""
     parts = tuple(_parts(document))
-    edges = edges_of([part.outline for part in parts])
+    edges = edges_of([part.shape.rings for part in parts], [part.shape.curved for part in parts])
     _refuse_overlaps(parts, edges)
     found = _contacts(document, parts, edges)
     sites = tuple(_sites(document, parts, found))
@@ -181,14 +195,14 @@ def _stiffness_key(site: Site) -> object:
 
 def _parts(document: documents.MemberDocument) -> list[Part]:
     length = document.member.length
+    shapes = outlines(document.section.pieces)
     parts = []
     for index, (name, spec) in enumerate(document.section.pieces.items()):
         material = document.materials[spec.material]
         assert isinstance(material, documents.Material)
         start = 0.0 if spec.from_ is None else spec.from_
         end = length if spec.to is None else spec.to
-        outline = rectangle(spec.width, spec.depth, spec.at, spec.turn)
-        parts.append(Part(index, name, spec, material, outline, start, end))
+        parts.append(Part(index, name, spec, material, shapes[name], start, end))
     return parts
 
 
@@ -201,6 +215,7 @@ def _piece(part: Part, creep: bool = False) -> Piece:
         part.material.E / soften,
         None if G is None else G / soften,
         part.material.density,
+        part.shape.holes,
     )
 
 
@@ -208,7 +223,8 @@ def _refuse_overlaps(parts: Sequence[Part], edges: Edges) -> None:
     faults = [
         Fault(
             f"section.pieces.{parts[i].name}.at",
-            f"{parts[i].name!r} and {parts[j].name!r} overlap by {area:.4g} mm2; move one so that they only touch.",
+            f"{parts[i].name!r} and {parts[j].name!r} overlap{'' if math.isnan(area) else f' by {area:.4g} mm2'}; move "
+            "one so that they only touch.",
         )
         for i, j, area in overlap(edges)
         if parts[i].coexists(parts[j])
@@ -224,7 +240,20 @@ def _contacts(document: documents.MemberDocument, parts: Sequence[Part], edges: 
     for joint in document.section.joints:
         i, j = (position[name] for name in joint.between)
         reach[i, j] = reach[j, i] = max(reach[i, j], GAP + _thickness(document, joint))
-    return [c for c in contacts(edges, reach) if parts[c.first].coexists(parts[c.second])]
+    flat = contacts(edges, reach)
+    rings = round_contacts(_rounds(parts), reach)
+    found = in_order([*flat, *rings]) if rings else flat
+    return [c for c in found if parts[c.first].coexists(parts[c.second])]
+
+
+def _rounds(parts: Sequence[Part]) -> list[Round]:
+    found = []
+    for part in parts:
+        if isinstance(part.spec, documents.Round):
+            (left, low), radius = part.spec.at, part.spec.diameter / 2
+            inner = 0.0 if part.spec.wall is None else radius - part.spec.wall
+            found.append(Round(part.index, (left + radius, low + radius), radius, inner))
+    return found
 
 
 def _thickness(document: documents.MemberDocument, joint: documents.Joint) -> float:
@@ -279,11 +308,19 @@ def _apart(first: Part, second: Part, allowed: float, gap: float | None = None) 
     pair = f"{first.name!r} and {second.name!r}"
     if not first.coexists(second):
         return f"{pair} are never side by side: one ends before the other starts. Change their from and to."
-    how = "do not touch" if gap is None else f"stand {gap:.3g} mm apart"
+    how = _how_far(first, second, allowed) if gap is None else f"stand {gap:.3g} mm apart"
     return (
         f"{pair} {how}; a joint needs facing parallel edges with a gap of at most {allowed:g} mm "
         "(0.05 mm plus the adhesive's thickness). Move a piece, or give the adhesive its thickness."
     )
+
+
+def _how_far(first: Part, second: Part, allowed: float) -> str:
+    """Why two pieces have no contact: apart, touching at a point, or along a curve or a slope."""
+    distance = nearest(first.shape.rings, second.shape.rings)
+    if distance > allowed + 1e-9:
+        return f"do not touch: they are {distance:.3g} mm apart"
+    return "touch only at a point, or nowhere along flats that face each other"
 
 
 def _stretches(length: float, parts: Sequence[Part], sites: Sequence[Site]) -> list[Stretch]:
@@ -327,8 +364,8 @@ def _lines(parts: Sequence[Part], sites: Sequence[Site]) -> list[JointLine]:
         JointLine(
             position[site.first.index],
             position[site.second.index],
-            site.contact.start,
-            site.contact.end,
+            site.contact.start if site.contact.line is None else site.contact.middle,
+            site.contact.end if site.contact.line is None else site.contact.middle,
             _stiffness_key(site),
         )
         for site in sites

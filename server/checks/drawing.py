@@ -21,7 +21,7 @@ def drawing(document: documents.MemberDocument, body: Body, actions: Actions) ->
             {
                 "id": p.name,
                 "outline": p.outline.tolist(),
-                "holes": [],
+                "holes": [hole.tolist() for hole in p.shape.holes],
                 "material": p.spec.material,
                 "kind": p.material.kind,
                 "from": p.start,
@@ -48,6 +48,7 @@ def _contacts(body: Body) -> list[dict[str, object]]:
         site = joined.get(id(contact))
         found.append(
             {
+                **({} if contact.line is None else {"line": contact.line.tolist()}),
                 "id": None if site is None else site.id,
                 "between": [body.parts[contact.first].name, body.parts[contact.second].name],
                 "start": [float(x) for x in contact.start],

@@ -17,7 +17,6 @@ from server.errors import Fault
 
 NOT_YET: Mapping[str, frozenset[str]] = {
     # field: texts the contract names and this version does not read
-    "shape": frozenset(("polygon", "round", "tube", "angle", "channel", "i", "tee")),
     "kind": frozenset(("moving",)),
 }
 MOST = 200  # faults reported at once

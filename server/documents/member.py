@@ -2,11 +2,9 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
 from typing import Annotated, Any, Literal
 
-from pydantic import BeforeValidator, Field, Tag
-from pydantic_core import PydanticCustomError
+from pydantic import Field, Tag
 
 from server.documents.common import MARK, Basis, Document, Model, Number, number_or, tag_of
 from server.documents.quantities import (
@@ -22,6 +20,7 @@ from server.documents.quantities import (
     Moment,
     Name,
     Place,
+    Radius,
     Rows,
     Segment,
     Share,
@@ -37,7 +36,6 @@ Role = Literal["sole", "fall-back", "peel-stop", "press"]
 class _Piece(Model):
     """What pieces of every shape have in common."""
 
-    at: tuple[Length, Length]
     material: Name
     grain: Literal["along", "across"] = "along"
     turn: Angle = 0.0
@@ -45,28 +43,103 @@ class _Piece(Model):
     to: Place | None = None
 
 
-class Rectangle(_Piece):
-    """A rectangular piece; ``at`` is the lower left corner of its bounding box after turning."""
+class _Placed(_Piece):
+    """A piece placed by ``at``, the lower left corner of its bounding box after ``turn``."""
+
+    at: tuple[Length, Length]
+
+
+class Rectangle(_Placed):
+    """A rectangular piece, its four corners sharp, rounded or cut off at 45 degrees."""
 
     shape: Literal["rectangle"]
     width: Size
     depth: Size
+    corner_radius: Radius = 0.0
+    chamfer: Radius = 0.0
 
 
-SHAPES = frozenset(("rectangle",))
-SHAPES_TO_COME = frozenset(("polygon", "round", "tube", "angle", "channel", "i", "tee"))
+Points = Annotated[list[tuple[Length, Length]], Field(min_length=3, max_length=500)]
 
 
-def _known_shape(value: object) -> object:
-    if isinstance(value, Mapping) and value.get("shape") not in tuple(SHAPES):  # a list typed here has no hash
-        raise PydanticCustomError("choice", "not a known shape", {"field": "shape", "known": ", ".join(sorted(SHAPES))})
-    return value
+class Polygon(_Piece):
+    """A piece from its corners, where they stand unless ``at`` is given; ``holes`` in the same coordinates."""
+
+    shape: Literal["polygon"]
+    at: tuple[Length, Length] | None = None
+    points: Points
+    holes: Annotated[list[Points], Field(max_length=30)] = Field(default_factory=list)
 
 
-# A further shape is one class, its name moved into SHAPES, and one arm of a union under tag_of("shape", SHAPES),
-# as loads have; a union of one arm is not a union to pydantic, hence the plain check for now.
-Piece = Rectangle
-PieceEntry = Annotated[Rectangle, BeforeValidator(_known_shape)]
+class Round(_Placed):
+    """A round bar, or with ``wall`` a round tube."""
+
+    shape: Literal["round"]
+    diameter: Size
+    wall: Size | None = None
+
+
+class Tube(_Placed):
+    """A rectangular tube; ``corner_radius`` is that of its outside."""
+
+    shape: Literal["tube"]
+    width: Size
+    depth: Size
+    wall: Size
+    corner_radius: Radius = 0.0
+
+
+class AngleProfile(_Placed):
+    """An angle, its corner at the lower left before turning; ``toe_radius`` on the inner edge of the legs' ends."""
+
+    shape: Literal["angle"]
+    width: Size
+    depth: Size
+    wall: Size
+    root_radius: Radius = 0.0
+    toe_radius: Radius = 0.0
+
+
+class _WebAndFlange(_Placed):
+    width: Size
+    depth: Size
+    web: Size
+    flange: Size
+    root_radius: Radius = 0.0
+    toe_radius: Radius = 0.0
+
+
+class Channel(_WebAndFlange):
+    """A channel, its web at the left before turning."""
+
+    shape: Literal["channel"]
+
+
+class IProfile(_WebAndFlange):
+    """An I or H profile of two like flanges."""
+
+    shape: Literal["i"]
+
+
+class Tee(_WebAndFlange):
+    """A tee, its flange on top before turning."""
+
+    shape: Literal["tee"]
+
+
+SHAPES = frozenset(("rectangle", "polygon", "round", "tube", "angle", "channel", "i", "tee"))
+Piece = Rectangle | Polygon | Round | Tube | AngleProfile | Channel | IProfile | Tee
+PieceEntry = Annotated[
+    Annotated[Rectangle, Tag(MARK + "rectangle")]
+    | Annotated[Polygon, Tag(MARK + "polygon")]
+    | Annotated[Round, Tag(MARK + "round")]
+    | Annotated[Tube, Tag(MARK + "tube")]
+    | Annotated[AngleProfile, Tag(MARK + "angle")]
+    | Annotated[Channel, Tag(MARK + "channel")]
+    | Annotated[IProfile, Tag(MARK + "i")]
+    | Annotated[Tee, Tag(MARK + "tee")],
+    tag_of("shape", SHAPES),
+]
 
 
 class SpacingZone(Model):

@@ -138,7 +138,6 @@ def _adapter(kind: str) -> TypeAdapter[Any]:
 
 # Fields no rule looks at: where one of them is wrong, this stands in for it, and the rules speak about the rest.
 _STAND_INS: Mapping[str, Mapping[str, object]] = {
-    "piece": {"shape": "rectangle", "width": 1.0, "depth": 1.0, "at": [0, 0], "grain": "along", "turn": 0.0},
     "joint": {"coverage": 1.0, "width": None, "rows": 1},
     "load": {"value": 0.0, "offset": 0.0, "width": 1.0},
     "combination": {"for": "both", "duration": None},
@@ -162,6 +161,8 @@ def _one(kind: str, value: object) -> Any:
 
 def _mended(kind: str, value: object, error: ValidationError) -> dict[str, Any] | None:
     """``value`` with stand-ins for its wrong fields and without unknown names; None where a rule would look at them."""
+    if kind == "piece":
+        return _without_its_shape(value)
     stand_ins = _STAND_INS.get(kind)
     if stand_ins is None or not isinstance(value, dict):
         return None
@@ -175,14 +176,15 @@ def _mended(kind: str, value: object, error: ValidationError) -> dict[str, Any] 
             mended[name] = stand_ins[name]
         else:
             return None
-    return _without_other_shapes(mended) if "shape" in stand_ins else mended
+    return mended
 
 
-def _without_other_shapes(piece: dict[str, Any]) -> dict[str, Any]:
-    """A piece of a shape that is not read yet, as the rectangle that stands in for it."""
-    stand_ins = _STAND_INS["piece"]
-    known = {key: value for key, value in piece.items() if key in stand_ins or key in ("material", "from", "to")}
-    return {**{"width": 1.0, "depth": 1.0}, **known}
+def _without_its_shape(value: object) -> dict[str, Any] | None:
+    """A piece as a rectangle of no matter which size: rules look at its material and at where it runs."""
+    if not isinstance(value, dict):
+        return None
+    looked_at = {key: value[key] for key in ("material", "from", "to") if key in value}
+    return {"shape": "rectangle", "width": 1.0, "depth": 1.0, "at": [0, 0], **looked_at}
 
 
 def _table(kind: str, value: object) -> dict[str, Any] | None:

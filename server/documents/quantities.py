@@ -145,6 +145,7 @@ Text = Annotated[str, StringConstraints(strict=True, max_length=5000)]
 
 Length = Annotated[float, Quantity("length")]
 Size = Annotated[float, Quantity("length", above=0.0)]
+Radius = Annotated[float, Quantity("length", least=0.0)]
 Place = Annotated[float, Quantity("length", least=0.0)]
 Force = Annotated[float, Quantity("force")]
 LineForce = Annotated[float, Quantity("line_load")]

@@ -18,7 +18,8 @@ from server.mechanics.sweep import common_region
 
 TOUCH = 0.05  # mm: closer than this is touching, and no deeper than this is not yet overlapping
 PARALLEL = 1e-3  # sine of the angle up to which edges count as parallel; facets of a round are further apart
-_DUST = 1e-6  # mm: a gap typed as 0.05 must not fail by its last binary digit
+DUST = 1e-6  # mm: a gap typed as 0.05 must not fail by its last binary digit
+_MANY = 200_000  # pairs of edges looked at in one go
 
 
 @dataclass(frozen=True, eq=False)
@@ -26,7 +27,8 @@ class Contact:
     """One stretch along which two pieces face each other.
 
     ``first`` < ``second`` places of the two pieces; ``start``, ``end`` (2,) of the line midway in the gap, from the
-    lower end (the left one where level) [mm]; ``length`` of the facing overlap [mm]; ``gap`` the widest distance [mm].
+    lower end (the left one where level) [mm]; ``length`` of the facing overlap [mm]; ``gap`` the widest distance [mm];
+    ``line`` (k, 2) the points of a contact that is not straight, such as the closed ring between round tubes.
     """
 
     first: int
@@ -35,6 +37,14 @@ class Contact:
     end: NDArray[np.float64]
     length: float
     gap: float
+    line: NDArray[np.float64] | None = None
+
+    @property
+    def middle(self) -> NDArray[np.float64]:
+        """Midway between its ends; the centre of a ring."""
+        ends = np.stack((self.start, self.end)) if self.line is None else self.line[:-1]
+        result: NDArray[np.float64] = ends.mean(axis=0)
+        return result
 
 
 def contacts(outlines: Sequence[Outline] | Edges, reach: Array) -> list[Contact]:
@@ -62,7 +72,8 @@ def contacts(outlines: Sequence[Outline] | Edges, reach: Array) -> list[Contact]
     -----
     Collinear stretches that follow each other are one contact. A stretch no longer than 0.05 mm is touching at a point,
     no contact. Part of a gap that a third face stands in is left out. Edges at more than 1 : 1000, or whose gap opens
-    by more than 0.05 mm, are not parallel. Pieces that dip into each other by up to 0.05 mm still touch.
+    by more than 0.05 mm, are not parallel. Pieces that dip into each other by up to 0.05 mm still touch. Sides of arcs
+    (``Edges.curved``) touch nothing: the flat that can be glued is what counts. Rounds in rounds: ``round_contacts``.
 
     References
     ----------
@@ -85,11 +96,11 @@ def contacts(outlines: Sequence[Outline] | Edges, reach: Array) -> list[Contact]
         return []
     faces = _facing(edges, one, other)
     allowed = reach[edges.owner[faces.one], edges.owner[faces.other]]
-    kept = faces.high_gap <= allowed + _DUST
+    kept = faces.high_gap <= allowed + DUST
     found: list[Contact] = []
     for index in np.flatnonzero(kept).tolist():
         found.extend(_stretches(edges, faces, index))
-    return _in_order(_merged(found))
+    return in_order(_merged(found))
 
 
 def segments(found: Sequence[Contact]) -> dict[tuple[int, int], tuple[Contact, ...]]:
@@ -112,7 +123,7 @@ def overlap(outlines: Sequence[Outline] | Edges) -> list[tuple[int, int, float]]
     Returns
     -------
     list of (int, int, float)
-        Places of the two pieces and their common area [mm2], by pair.
+        Places of the two pieces and their common area [mm2], by pair; NaN where outlines cross too often to say.
 
     Raises
     ------
@@ -145,19 +156,41 @@ def overlap(outlines: Sequence[Outline] | Edges) -> list[tuple[int, int, float]]
             shared, round_about = common_region(edges, i, j)
             half = round_about / 2
             depth = (half - np.sqrt(max(half * half - 4 * shared, 0.0))) / 2
-            if depth <= TOUCH:
+            if depth <= TOUCH:  # not so where both are NaN
                 continue
         found.append((i, j, shared))
     return found
 
 
 def _near_edges(edges: Edges, reach: Array) -> tuple[Indices, Indices]:
-    """Pairs of edges, the first of the lower piece, whose pieces' boxes come within reach."""
+    """Pairs of flat edges, the first of the lower piece, whose pieces' boxes come within reach."""
     low, high = edges.boxes()
-    near = (low[:, None] - high[None] <= np.maximum(reach, TOUCH)[:, :, None] + _DUST).all(axis=2)
+    near = (low[:, None] - high[None] <= np.maximum(reach, TOUCH)[:, :, None] + DUST).all(axis=2)
     i, j = np.nonzero(np.triu(near & near.T, 1))
+    count = edges.count
+    if int((count[i] * count[j]).sum()) > _MANY:
+        return _one_by_one(edges, i, j, reach)
     one, other, _ = edges.pairs(i, j)
+    if edges.curved is not None:
+        flat = ~(edges.curved[one] | edges.curved[other])
+        one, other = one[flat], other[flat]
     return one, other
+
+
+def _one_by_one(edges: Edges, i: Indices, j: Indices, reach: Array) -> tuple[Indices, Indices]:
+    """The same for many edges: pair by pair, and of each pair only edges near the other piece's box."""
+    low, high = edges.boxes()
+    edge_low, edge_high = np.minimum(edges.start, edges.end), np.maximum(edges.start, edges.end)
+    flat = np.ones(len(edges.start), dtype=bool) if edges.curved is None else ~edges.curved
+    own = [edges.first[k] + np.flatnonzero(flat[edges.first[k] :][:n]) for k, n in enumerate(edges.count.tolist())]
+    found: list[tuple[Indices, Indices]] = []
+    for a, b in zip(i.tolist(), j.tolist(), strict=True):
+        margin = max(float(reach[a, b]), TOUCH) + DUST
+        one, other = own[a], own[b]
+        one = one[((edge_low[one] <= high[b] + margin) & (edge_high[one] >= low[b] - margin)).all(axis=1)]
+        other = other[((edge_low[other] <= high[a] + margin) & (edge_high[other] >= low[a] - margin)).all(axis=1)]
+        found.append((np.repeat(one, len(other)), np.tile(other, len(one))))
+    return np.concatenate([one for one, _ in found]), np.concatenate([other for _, other in found])
 
 
 @dataclass(frozen=True, eq=False)
@@ -228,7 +261,7 @@ def _hidden(edges: Edges, one: int, other: int, gap: float) -> list[tuple[float,
 def _merged(found: list[Contact]) -> list[Contact]:
     """Join collinear stretches of a pair that follow each other."""
     result: list[Contact] = []
-    for pair in segments(_in_order(found)).values():
+    for pair in segments(in_order(found)).values():
         kept: list[Contact] = []
         for contact in pair:
             place = next((k for k, before in enumerate(kept) if _continues(before, contact)), None)
@@ -254,6 +287,6 @@ def _joined(before: Contact, contact: Contact) -> Contact:
     return Contact(before.first, before.second, before.start, contact.end, length, gap)
 
 
-def _in_order(found: list[Contact]) -> list[Contact]:
+def in_order(found: list[Contact]) -> list[Contact]:
     """By pair, then lowest, then leftmost; level to a millionth of a millimetre."""
     return sorted(found, key=lambda c: (c.first, c.second, round(float(c.start[1]), 6), float(c.start[0])))

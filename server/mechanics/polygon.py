@@ -25,7 +25,8 @@ class Edges:
     """Every edge of several polygons, material on the left.
 
     ``start`` and ``end`` (e, 2); ``owner`` (e,) the polygon an edge belongs to; ``first`` (n,) the first edge of
-    each polygon; ``next`` (e,) the edge that follows in the same ring.
+    each polygon; ``next`` (e,) the edge that follows in the same ring; ``curved`` (e,) which edges stand for a part of
+    an arc, None where none does.
     """
 
     start: Array
@@ -33,6 +34,7 @@ class Edges:
     owner: Indices
     first: Indices
     next: Indices
+    curved: NDArray[np.bool_] | None = None
 
     @property
     def count(self) -> Indices:
@@ -73,10 +75,11 @@ def _rings(outlines: Sequence[Outline]) -> tuple[list[Array], list[int], list[in
     return rings, owners, outer
 
 
-def edges_of(outlines: Sequence[Outline] | Edges) -> Edges:
+def edges_of(outlines: Sequence[Outline] | Edges, curved: Sequence[Sequence[NDArray[np.bool_]]] | None = None) -> Edges:
     """Flatten outlines into edges, turning every ring so that its material lies on the left.
 
     A corner that is typed twice running, such as a closing one, counts once. Edges that are ready pass through.
+    ``curved`` says for every ring of every outline which sides, each from a corner to the next, are parts of an arc.
 
     Raises
     ------
@@ -102,12 +105,15 @@ def edges_of(outlines: Sequence[Outline] | Edges) -> Edges:
     wanted = -np.ones(len(rings))
     wanted[outer] = 1.0
     wrong = areas * wanted < 0
+    arcs = None if curved is None else [ring for piece in curved for ring in piece]
     if wrong.any():  # reverse those rings and flatten again
         turned = [ring[::-1] if flip else ring for ring, flip in zip(rings, wrong, strict=True)]
         start = np.concatenate(turned)
         end = start[following]
+        if arcs is not None:
+            arcs = [np.roll(ring[::-1], -1) if flip else ring for ring, flip in zip(arcs, wrong, strict=True)]
     owner = np.repeat(np.array(owners), counts)
-    edges = Edges(start, end, owner, first[outer], following)
+    edges = Edges(start, end, owner, first[outer], following, None if arcs is None else np.concatenate(arcs))
     repeated = ((start == end).sum(axis=1)) == 2
     return _without(edges, following[repeated]) if repeated.any() else edges
 
@@ -127,7 +133,8 @@ def _without(edges: Edges, corners: Indices) -> Edges:
     following[last] = last - counts + 1
     start, owner = edges.start[keep], edges.owner[keep]
     first = np.searchsorted(owner, np.arange(len(edges.first)))
-    return Edges(start, start[following], owner, first, following)
+    curved = None if edges.curved is None else edges.curved[keep]
+    return Edges(start, start[following], owner, first, following, curved)
 
 
 def _doubled_areas(start: Array, end: Array, origin: Array) -> Array:

@@ -6,6 +6,7 @@ straight sides in a fixed order, so their common part is exact.
 
 from __future__ import annotations
 
+import math
 from itertools import pairwise
 
 import numpy as np
@@ -13,6 +14,7 @@ import numpy as np
 from server.mechanics.polygon import Array, Edges
 
 Spans = list[tuple[float, float]]
+MOST_HEIGHTS = 4000  # outlines that cross more often than this are not worth the exact area
 
 
 def common_region(edges: Edges, one: int, other: int) -> tuple[float, float]:
@@ -28,7 +30,8 @@ def common_region(edges: Edges, one: int, other: int) -> tuple[float, float]:
     Returns
     -------
     area, perimeter : float
-        Of the common region [mm2], [mm]; holes count as outside.
+        Of the common region [mm2], [mm]; holes count as outside. Both are NaN where the outlines have so many corners
+        and crossings that the sweep would take long.
 
     Raises
     ------
@@ -43,6 +46,8 @@ def common_region(edges: Edges, one: int, other: int) -> tuple[float, float]:
     heights = np.unique(np.concatenate((a[:, 1], b[:, 1], _crossing_heights(a, b))))
     low, high = max(a[:, 1].min(), b[:, 1].min()), min(a[:, 1].max(), b[:, 1].max())
     heights = heights[(heights >= low) & (heights <= high)]
+    if len(heights) > MOST_HEIGHTS:
+        return math.nan, math.nan
     dust = 1e-9 * edges.size
     area = perimeter = 0.0
     below: Spans = []

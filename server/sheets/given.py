@@ -73,6 +73,16 @@ _PLURALS = {
     "adhesives": ("Adhesive", _ADHESIVE),
     "fasteners": ("Fastener", _FASTENER),
 }
+_SHAPE_SIZES = (
+    ("diameter", "diameter"),
+    ("wall", "wall"),
+    ("web", "web"),
+    ("flange", "flange"),
+    ("corner radius", "corner_radius"),
+    ("chamfer", "chamfer"),
+    ("root radius", "root_radius"),
+    ("toe radius", "toe_radius"),
+)
 _GROUPS = ("materials", "adhesives", "fasteners")
 
 
@@ -213,8 +223,15 @@ class _Writer:
     def _piece(self, piece: Typed) -> Iterable[tuple[str, object, str]]:
         if piece.get("shape", "rectangle") != "rectangle":
             yield "", piece["shape"], ""
-        yield "", piece.get("width"), "length"
-        yield "×", piece.get("depth"), "length"
+        if piece.get("width") is not None:
+            yield "", piece["width"], "length"
+            yield "×", piece.get("depth"), "length"
+        for words, field in _SHAPE_SIZES:
+            if piece.get(field) is not None:
+                yield words, piece[field], "length"
+        yield from self._corners("corners", piece.get("points"))
+        for hole in piece.get("holes") or ():
+            yield from self._corners("; hole", hole)
         at = piece.get("at")
         if isinstance(at, Sequence) and not isinstance(at, str) and len(at) == 2:
             yield "at", at[0], "length"
@@ -229,6 +246,13 @@ class _Writer:
             yield "; from", piece["from"], "length"
         if piece.get("to") is not None:
             yield "; to", piece["to"], "length"
+
+    def _corners(self, word: str, points: object) -> Iterable[tuple[str, object, str]]:
+        """The corners of a ring: 'corners 0, 0; 50, 0; 50, 30'."""
+        for number, point in enumerate(points if isinstance(points, list | tuple) else ()):
+            if isinstance(point, list | tuple) and len(point) == 2:
+                yield word if number == 0 else ";", point[0], "length"
+                yield ",", point[1], "length"
 
     def joints(self, joints: Iterable[Typed]) -> Iterable[Row]:
         for joint in joints:

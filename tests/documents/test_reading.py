@@ -117,7 +117,7 @@ def test_all_faults_are_said_at_once() -> None:
     def change(data: dict) -> None:  # type: ignore[type-arg]
         data["section"]["pieces"]["web L"]["widht"] = data["section"]["pieces"]["web L"].pop("width")
         data["section"]["pieces"]["bottom"]["material"] = "dael"
-        data["section"]["pieces"]["top"] |= {"shape": "polygon", "points": []}
+        data["section"]["pieces"]["top"] |= {"shape": "hexagon", "points": []}
         data["section"]["joints"][0] |= {"adhesive": "PUR", "rows": "two"}
         data["section"]["joints"][1]["coverage"] = 1.2
         data["section"]["joints"][2]["between"] = ["web L"]
@@ -155,7 +155,7 @@ def test_all_faults_are_said_at_once() -> None:
     }
     assert "did you mean 'width'?" in found["section.pieces.web L.widht"]
     assert "did you mean 'deal'?" in found["section.pieces.bottom.material"]
-    assert "not available yet" in found["section.pieces.top.shape"]
+    assert "known: 'angle', 'channel'" in found["section.pieces.top.shape"]
     assert "not available yet" in found["loads.snow[2].kind"]
     assert "it weighs 4 lbf (17.79 N)" in found["loads.snow[1].value"]
     assert "did you mean 'couple'?" in found["loads.snow[3].kind"]
@@ -206,8 +206,10 @@ def test_all_faults_are_said_at_once() -> None:
         (drop("basis/safety_factor"), "basis.safety_factor", "Missing; enter"),
         (put("section/pieces", {}), "section.pieces", "at least 1 entry"),
         (put("section/pieces/top/shape", "circle"), "section.pieces.top.shape", "'circle' is not accepted"),
-        (put("section/pieces/top/shape", "tee"), "section.pieces.top.shape", "'tee' is not available yet"),
-        (drop("section/pieces/top/shape"), "section.pieces.top.shape", "Missing; enter one of 'rectangle'"),
+        (put("section/pieces/top/shape", "tube"), "section.pieces.top.wall", "Missing; enter a length greater than 0"),
+        (put("section/pieces/top/wall", 3), "section.pieces.top.wall", "not a name of the contract here"),
+        (put("section/pieces/top/corner_radius", -1), "section.pieces.top.corner_radius", "of at least 0"),
+        (drop("section/pieces/top/shape"), "section.pieces.top.shape", "Missing; enter one of 'angle'"),
         (put("section/pieces/top/at", [0]), "section.pieces.top.at[1]", "two are wanted"),
         (put("section/pieces/top/at", [0, 1, 2]), "section.pieces.top.at", "at most 2"),
         (put("section/pieces/top/at", "0, 0"), "section.pieces.top.at", "enter a list of two values"),
