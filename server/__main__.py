@@ -149,6 +149,7 @@ def _listen(settings: Settings) -> int:
                 if first_words:
                     print(first_words, flush=True)
 
+    _opened(settings).dispose()  # a book that cannot be opened is said in words before anything listens
     door = _door(settings)
     settings = replace(settings, port=int(door.getsockname()[1]))
     first_words = _first_words(settings)

@@ -94,7 +94,7 @@ def _shown(path: str, value: Any, display: str) -> str:
 
 
 def _share(value: Any) -> str:
-    return _NOTHING if value is None else f"{100 * value:.1f} %"
+    return _NOTHING if value is None else f"{value:.3f}"
 
 
 def _governing(value: Any) -> str:

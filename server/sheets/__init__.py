@@ -11,7 +11,7 @@ from server.sheets.pdf import UnprintableError, evidence_pdf, pdf, unprintable
 from server.sheets.probability_plot import probability_plot_svg
 from server.sheets.section_drawing import section_svg
 from server.sheets.terminal import terminal
-from server.sheets.values import governing, quantity, utilisation, verdict
+from server.sheets.values import governing, in_units, quantity, utilisation, verdict
 
 __all__ = [
     "STANDING_CAUTION",
@@ -31,6 +31,7 @@ __all__ = [
     "given",
     "governing",
     "history_svg",
+    "in_units",
     "in_words",
     "joint_svg",
     "load_as_typed",

@@ -12,7 +12,7 @@ from typing import Any, Literal
 from server.sheets import tables
 from server.sheets.given import Group, given
 from server.sheets.steps import working_groups
-from server.sheets.values import governing, utilisation, verdict
+from server.sheets.values import governing, in_units, utilisation, verdict
 from server.working import typst_math
 
 Part = dict[str, Any]
@@ -137,8 +137,8 @@ def _sections(sheet: SheetData, drawings: Drawings) -> Iterator[tuple[str, Itera
     yield "Joints", tables.joints(result, display)
     yield "Pieces", tables.pieces(result, display)
     yield "Deflection", tables.deflection(result, display)
-    yield "What is missing", _list(result.get("missing", ()))
-    yield "Cautions and replies", _cautions(result, sheet.replies)
+    yield "What is missing", _list(in_units(str(line), display) for line in result.get("missing", ()))
+    yield "Cautions and replies", _cautions(result, sheet.replies, display)
     yield "Working", working(result, display)
     yield "Values used", _values_used(result)
     yield "Not checked", _not_checked(result)
@@ -198,7 +198,7 @@ def _list(items: Iterable[object]) -> Iterator[Part]:
         yield {"kind": "list", "items": listed}
 
 
-def _cautions(result: Mapping[str, Any], replies: Mapping[str, str]) -> Iterator[Part]:
+def _cautions(result: Mapping[str, Any], replies: Mapping[str, str], display: str) -> Iterator[Part]:
     for number, caution in enumerate(result.get("cautions", ()), 1):
         text = str(caution.get("text", ""))
         about = str(caution.get("about", ""))
@@ -206,7 +206,7 @@ def _cautions(result: Mapping[str, Any], replies: Mapping[str, str]) -> Iterator
             "kind": "caution",
             "number": f"{number}",
             "about": about[:1].upper() + about[1:],
-            "text": text,
+            "text": in_units(text, display),
             "answer": bool(caution.get("answer")),
             "reply": str(replies.get(text, "")),
         }
@@ -229,10 +229,10 @@ def _steps(steps: Sequence[Mapping[str, Any]], first: int, display: str) -> Iter
         yield {
             "kind": "step",
             "number": str(number),
-            "title": step["title"],
-            "source": step.get("source", ""),
+            "title": in_units(step["title"], display),
+            "source": in_units(step.get("source", ""), display),
             "line": line if line["value"] is not None else None,
-            "note": step.get("note", ""),
+            "note": in_units(step.get("note", ""), display),
         }
 
 

@@ -9,7 +9,7 @@ from typing import Any
 from server.sheets import coupon_tables, tables
 from server.sheets.composition import PRECEDENCE, STANDING_CAUTION
 from server.sheets.steps import working_groups
-from server.sheets.values import governing, utilisation, verdict
+from server.sheets.values import governing, in_units, utilisation, verdict
 from server.working import plain
 
 WIDTH = 80
@@ -31,8 +31,8 @@ def _lines(result: Mapping[str, Any], display: str) -> Iterator[str]:
     yield from _head(result, display)
     for title, parts in coupon_tables.blocks(result, display) if _coupons(result) else _member(result, display):
         yield from _block(title, parts)
-    yield from _listed("What is missing", (str(line) for line in result.get("missing", ())))
-    yield from _listed("Cautions", (_caution(each) for each in result.get("cautions", ())))
+    yield from _listed("What is missing", (in_units(str(line), display) for line in result.get("missing", ())))
+    yield from _listed("Cautions", (in_units(_caution(each), display) for each in result.get("cautions", ())))
     yield from _working(result, display)
     yield from _listed("Not checked", (str(line) for line in result.get("not_checked", ())))
     yield from ["", *_wrapped(PRECEDENCE), "", *_wrapped(STANDING_CAUTION), ""]
@@ -112,7 +112,7 @@ def _working(result: Mapping[str, Any], display: str) -> Iterator[str]:
 def _steps(steps: Sequence[Mapping[str, Any]], first: int, display: str) -> Iterator[str]:
     for number, step in enumerate(steps, first):
         source = f"  [{step['source']}]" if step.get("source") else ""
-        yield from _wrapped(f"{step['title']}{source}", f"{number:>3}  ", "     ")
+        yield from _wrapped(in_units(f"{step['title']}{source}", display), f"{number:>3}  ", "     ")
         indent = 0
         for position, line in enumerate(plain(step, display)):
             if not position:
@@ -120,7 +120,7 @@ def _steps(steps: Sequence[Mapping[str, Any]], first: int, display: str) -> Iter
             before = " " * (7 + (indent + 1 if position and indent else 0))
             yield from _wrapped(line, before, " " * (9 + indent))
         if step.get("note"):
-            yield from _wrapped(step["note"], "       ", "       ")
+            yield from _wrapped(in_units(step["note"], display), "       ", "       ")
 
 
 def _wrapped(text: str, first: str = "", later: str = "") -> list[str]:

@@ -6,6 +6,7 @@ unit in which the working reckons, so that a number in a table is found again in
 
 from __future__ import annotations
 
+import re
 from collections.abc import Mapping
 from dataclasses import dataclass
 from typing import Any
@@ -16,6 +17,7 @@ from server.working import exceeds, readable, readable_unit
 DIGITS = 4
 DASH = "–"
 _SI_FOR_PEOPLE = {"N": ("kN", 1e-3), "N*mm": ("kN·m", 1e-6)}
+_IN_WORDS = re.compile(r"(?<![\w.])(\d+(?:\.\d+)?(?:e[+-]?\d+)?) (N/mm|MPa|mm2|mm|N)(?![\w/*·²]|\d)")
 
 
 @dataclass(frozen=True)
@@ -53,6 +55,17 @@ def quantity(value: object, stored: str, display: str, digits: int = DIGITS) -> 
     return unit(stored, display).full(value, digits)
 
 
+def in_units(text: str, display: str) -> str:
+    """A stored sentence for people: its millimetres, newtons and megapascals in the units of ``display``.
+
+    >>> in_units("the plate stops 250 mm from the left end", "US")
+    'the plate stops 9.843 in from the left end'
+    """
+    if display != "US":
+        return text
+    return _IN_WORDS.sub(lambda found: quantity(float(found[1]), found[2], display).replace("\u00a0", " "), text)
+
+
 def utilisation(value: object) -> str:
     """A utilisation to two decimals; as many more as it takes not to show 1.00 for what is above or below 1."""
     if not isinstance(value, int | float) or isinstance(value, bool):
@@ -77,7 +90,7 @@ def governing(result: Mapping[str, Any], display: str) -> str:
         return line[:1].upper() + line[1:]
     found = _governing_limit(result)
     if found is None:
-        return line[:1].upper() + line[1:]
+        return in_units(line[:1].upper() + line[1:], display)
     what, limit = found
     place = quantity(limit.get("at"), "mm", display)
     return (

@@ -252,11 +252,11 @@ def working_of(result: Mapping[str, Any]) -> list[tuple[str, list[dict[str, obje
     for step in result["steps"]:
         groups.setdefault(step.get("group") or "Check", []).append(
             {
-                "title": step["title"],
+                "title": sheets.in_units(step["title"], display),
                 "long": len(step["substituted"]) > LONG_LINE,
                 "math": Markup(working.mathml(step, display)),  # noqa: S704 -- our own printer escapes every text
-                "note": step.get("note", ""),
-                "source": step["source"],
+                "note": sheets.in_units(step.get("note", ""), display),
+                "source": sheets.in_units(step["source"], display),
             }
         )
     return list(groups.items())

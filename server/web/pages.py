@@ -19,7 +19,7 @@ from server.web.access import may
 from server.web.who import current
 
 _NAVIGATION = (
-    ("list_jobs", "Jobs", "/jobs"),
+    ("list_jobs", "Jobs", ("/jobs", "/checks")),
     ("list_records", "Library", "/library"),
     ("edit_shop", "Shop heading", "/shop"),
     ("list_people", "People", "/people"),

@@ -107,8 +107,8 @@ def panel(result: Result, display: str) -> Panel:
         joints=tuple(_joint(joint, numbers.get(joint["id"], 0), display) for joint in result["joints"]),
         pieces=tuple(_piece(piece, display) for piece in result["pieces"]),
         sags=tuple(_sag(each, display) for each in result.get("deflection_limits", ())),
-        missing=_together(result["missing"]),
-        cautions=tuple(_cautions(result)),
+        missing=_together(written.in_units(str(line), display) for line in result["missing"]),
+        cautions=tuple(_cautions(result, display)),
         not_checked=tuple(result["not_checked"]),
         extremes=tuple(_extremes(result["member"], display)),
         units={stored: written.unit(stored, display).text for stored in ("N/mm", "mm", "MPa")},
@@ -179,17 +179,18 @@ def _sag(each: Mapping[str, Any], display: str) -> SagRow:
     )
 
 
-def _cautions(result: Result) -> Iterable[Caution]:
+def _cautions(result: Result, display: str) -> Iterable[Caution]:
     """Put cautions on one subject together; a sentence said of several joints or pieces names them all once."""
     ids = {str(part["id"]) for group in ("joints", "pieces") for part in result[group]}
     subjects: dict[tuple[str, bool], dict[str, list[str]]] = {}
     for each in result["cautions"]:
         sentences = subjects.setdefault((str(each["about"]), bool(each.get("answer"))), {})
-        place, colon, rest = str(each["text"]).partition(": ")
+        whole = written.in_units(str(each["text"]), display)
+        place, colon, rest = whole.partition(": ")
         if colon and place in ids:
             sentences.setdefault(rest, []).append(place)
         else:
-            sentences.setdefault(str(each["text"]), [])
+            sentences.setdefault(whole, [])
     for (about, answer), sentences in subjects.items():
         texts = tuple(f"{', '.join(places)}: {text}" if places else text for text, places in sentences.items())
         yield Caution(about, texts, answer)
