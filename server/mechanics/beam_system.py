@@ -22,18 +22,19 @@ BANDED_FROM = 48  # unknowns from which a banded solution pays for its import
 BAND = 5
 
 # What holds at a key place: factors on the state just left of it and just right of it, rows y, psi, M, V.
-_FREE, _PIN, FIXED, _SPRING, _HINGE, _HINGED_PIN, _HINGED_SPRING = range(7)
-_LEFT, _RIGHT = np.zeros((7, 4, 4)), np.zeros((7, 4, 4))
-_LEFT[:], _RIGHT[:] = -np.eye(4), np.eye(4)  # nothing there: the state passes through
-for _kind in (_HINGE, _HINGED_PIN, _HINGED_SPRING):  # psi may jump; M is zero on both sides
-    _LEFT[_kind, 1], _RIGHT[_kind, 1] = [0, 0, 1, 0], 0
-    _LEFT[_kind, 2], _RIGHT[_kind, 2] = 0, [0, 0, 1, 0]
-_LEFT[FIXED, 1], _RIGHT[FIXED, 1] = [0, 1, 0, 0], 0  # psi is zero on both sides; M may jump
-_LEFT[FIXED, 2], _RIGHT[FIXED, 2] = 0, [0, 1, 0, 0]
+_FREE, _PIN, FIXED, _SPRING, HINGE, _HINGED_PIN, _HINGED_SPRING = range(7)
+SPRINGS = (_SPRING, _HINGED_SPRING)
+BEFORE, AFTER = np.zeros((7, 4, 4)), np.zeros((7, 4, 4))
+BEFORE[:], AFTER[:] = -np.eye(4), np.eye(4)  # nothing there: the state passes through
+for _kind in (HINGE, _HINGED_PIN, _HINGED_SPRING):  # psi may jump; M is zero on both sides
+    BEFORE[_kind, 1], AFTER[_kind, 1] = [0, 0, 1, 0], 0
+    BEFORE[_kind, 2], AFTER[_kind, 2] = 0, [0, 0, 1, 0]
+BEFORE[FIXED, 1], AFTER[FIXED, 1] = [0, 1, 0, 0], 0  # psi is zero on both sides; M may jump
+BEFORE[FIXED, 2], AFTER[FIXED, 2] = 0, [0, 1, 0, 0]
 for _kind in (_PIN, FIXED, _HINGED_PIN):  # y is zero; V may jump
-    _LEFT[_kind, 3], _RIGHT[_kind, 3] = 0, [1, 0, 0, 0]
-_LOADED = np.ones((7, 4, 1))  # a load on a support or a couple on a fixed one goes straight into the reaction
-_LOADED[[_PIN, FIXED, _HINGED_PIN], 3] = _LOADED[FIXED, 2] = 0
+    BEFORE[_kind, 3], AFTER[_kind, 3] = 0, [1, 0, 0, 0]
+LOADED = np.ones((7, 4, 1))  # a load on a support or a couple on a fixed one goes straight into the reaction
+LOADED[[_PIN, FIXED, _HINGED_PIN], 3] = LOADED[FIXED, 2] = 0
 
 
 @dataclass(frozen=True)
@@ -148,11 +149,11 @@ def assemble(grid: Grid, swept: Sweep) -> tuple[Array, Array, Array]:
     T[:, :, 2:] = end[:, :, cases:] * scale[2:]
     T[:, 0, 0] = T[:, 1, 1] = 1
     T[:, 0, 1] = T[:, 2, 3]  # the length of the part
-    right, left = _RIGHT[grid.kind], _LEFT[grid.kind]
+    right, left = AFTER[grid.kind], BEFORE[grid.kind]
     loads = np.zeros((K, 4, cases))
     loads[:, 2] = grid.couple[:, grid.key].T / -scale[2]
     loads[:, 3] = -grid.force[:, grid.key].T
-    loads *= _LOADED[grid.kind]
+    loads *= LOADED[grid.kind]
     carried = left[1:] @ T
     loads[1:] -= left[1:] @ end[:, :, :cases]
     for place, stiffness in grid.springs:  # V jumps by k y; divided so that neither a soft nor a stiff spring swamps
