@@ -95,9 +95,7 @@ def _path(name: str, field: str, spec: documents.Piece) -> str:
 
 def _refuse_slivers(shape: Shape, spec: documents.Piece) -> None:
     """A piece that is thinner than the tolerance of contacts touches everything near it."""
-    area = float(moments(edges_of([shape.rings]))[0][0])
-    round_about = sum(float(np.hypot(*(np.roll(ring, -1, axis=0) - ring).T).sum()) for ring in shape.rings)
-    thickness = 2 * area / round_about
+    thickness = _mean_thickness(shape, spec)
     if thickness < THINNEST:
         thin = next((n for n in ("wall", "web", "flange") if getattr(spec, n, None)), "points")
         if isinstance(spec, documents.Rectangle):
@@ -109,7 +107,17 @@ def _refuse_slivers(shape: Shape, spec: documents.Piece) -> None:
         )
 
 
+def _mean_thickness(shape: Shape, spec: documents.Piece) -> float:
+    """Twice the area over the perimeter [mm]; by hand for a rectangle, of which most sections are made."""
+    if isinstance(spec, documents.Rectangle):
+        return spec.width * spec.depth / (spec.width + spec.depth)
+    area = float(moments(edges_of([shape.rings]))[0][0])
+    return 2 * area / sum(float(np.hypot(*(np.roll(ring, -1, axis=0) - ring).T).sum()) for ring in shape.rings)
+
+
 def _too_wide(found: Mapping[str, Shape]) -> list[Fault]:
+    if np.ptp(np.concatenate([shape.rings[0] for shape in found.values()]), axis=0).max() <= WIDEST:
+        return []
     boxes = {name: shape.box() for name, shape in found.items()}
     low = np.min([box[0] for box in boxes.values()], axis=0)
     faults = []
