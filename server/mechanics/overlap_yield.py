@@ -1,0 +1,184 @@
+r"""A bond that is elastic up to a yield stress in shear and then gives way without more: strength by strain limit.
+
+Units: N, mm, MPa. The flow in the bond is :math:`q = \max(-q_y, \min(q_y, k_s s))`; the joint holds until the slip
+somewhere reaches :math:`s_u = \gamma_u t_a`, the total shear strain limit times the bond line. Peel stays elastic.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import dataclass, replace
+
+import numpy as np
+from numpy.typing import ArrayLike, NDArray
+
+from server.errors import InputError
+from server.mechanics.overlap_solver import Array, Course, Loads, Solver
+
+MOST_ROUNDS = 60
+SETTLED = 1e-7  # relative change of the load in one round
+STRIDE = 1.6  # the slip aimed at grows by this from round to round, so that the yielded length grows steadily
+Shares = Callable[[Array], Array]
+
+
+@dataclass(frozen=True, eq=False)
+class Yielded:
+    """A batch of bonds at one load each: ``load`` [N]; courses of all fields as one column; where the bond yields.
+
+    ``found`` is false for a bond without such a load (what else acts is too much already), ``settled`` for one whose
+    yielded length was still moving in the last round.
+    """
+
+    load: Array
+    course: Course
+    flow: Array
+    found: NDArray[np.bool_]
+    settled: NDArray[np.bool_]
+
+
+def at_limit(
+    solver: Solver, loads: Loads, shares: Shares, *, yield_flow: ArrayLike, slip_limit: ArrayLike, whole: bool = True
+) -> Yielded:
+    r"""The least load under which the slip somewhere reaches its limit.
+
+    Parameters
+    ----------
+    solver : Solver
+        The bonds.
+    loads : Loads
+        Their load columns.
+    shares : callable
+        Load P of each bond [N] -> how much of each column acts, ``(bonds, columns)``.
+    yield_flow : array_like
+        Yield stress times width [N/mm].
+    slip_limit : array_like
+        Total shear strain limit times bond line [mm].
+    whole : bool
+        Whether forces and opening are wanted too, not only load and slip.
+
+    Returns
+    -------
+    Yielded
+        Load [N], courses, flow [N/mm].
+
+    Raises
+    ------
+    InputError
+        If the yield flow or slip limit is not above zero, or the limit lies below the slip at yield.
+
+    Notes
+    -----
+    Newton's method on the load and on where the bond yields, at every collocation point: each round solves the linear
+    bond with the yielded points of the round before, then takes the load from the slip limit. No unloading: the load
+    grows once (deformation theory).
+
+    References
+    ----------
+    .. [1] L. J. Hart-Smith, "Adhesive-bonded double-lap joints", NASA CR-112235 (1973).
+    .. [2] L. J. Hart-Smith, "Adhesive-bonded single-lap joints", NASA CR-112236 (1973).
+    """
+    flow, limit = _batch(solver, yield_flow), _batch(solver, slip_limit)
+    stiffness = np.broadcast_to(np.asarray(solver.pair.shear, dtype=float), (len(flow), 1, 1))[:, 0, 0]
+    at_yield = flow / stiffness
+    if not np.all((flow > 0) & (limit > 0)):
+        raise InputError("shear_yield", "yield stress and strain limit must both be above zero.")
+    if np.any(limit < at_yield * (1 - 1e-9)):
+        raise InputError(
+            "shear_strain_limit", "the strain limit lies below the strain at yield, shear_yield / shear_modulus."
+        )
+    course = solver.solve(loads, only_slip=True)
+    target = np.minimum(limit, at_yield)
+    load, found = _load_at(course, shares, target, np.zeros(len(flow)))
+    yielded = np.zeros(course.slip_inside.shape[:3], dtype=np.int8)
+    settled = steady = np.zeros(len(flow), dtype=bool)
+    for _ in range(MOST_ROUNDS):
+        target = np.minimum(limit, STRIDE * target)
+        course = solver.solve(loads, yielded, flow[:, None, None], only_slip=True)
+        fresh, found = _load_at(course, shares, target, load)
+        moved = _where(_sum(course.slip_inside, shares(fresh)), at_yield)
+        settled = (np.abs(fresh - load) <= SETTLED * np.abs(fresh)) & (target >= limit)
+        steady = (moved == yielded).all(axis=(1, 2)) & (target >= limit)
+        load, yielded = fresh, moved
+        if np.all(settled | steady | ~found):
+            break
+    course = solver.solve(loads, yielded, flow[:, None, None]) if whole else course
+    return _combined(course, load, shares, flow, stiffness, found, settled | steady)
+
+
+def under(solver: Solver, loads: Loads, shares: Shares, load: ArrayLike, *, yield_flow: ArrayLike) -> Yielded:
+    """The same bonds under a given load [N]; ``settled`` is false where the bond cannot carry it."""
+    flow = _batch(solver, yield_flow)
+    stiffness = np.broadcast_to(np.asarray(solver.pair.shear, dtype=float), (len(flow), 1, 1))[:, 0, 0]
+    given, at_yield = _batch(solver, load), flow / stiffness
+    act = shares(given)
+    course = solver.solve(loads, only_slip=True)
+    yielded = _where(_sum(course.slip_inside, act), at_yield)
+    steady = np.zeros(len(flow), dtype=bool)
+    for _ in range(MOST_ROUNDS):
+        course = solver.solve(loads, yielded, flow[:, None, None], only_slip=True)
+        moved = _where(_sum(course.slip_inside, act), at_yield)
+        steady = (moved == yielded).all(axis=(1, 2))
+        yielded = moved
+        if steady.all():
+            break
+    course = solver.solve(loads, yielded, flow[:, None, None])
+    return _combined(course, given, shares, flow, stiffness, np.ones_like(steady), steady)
+
+
+def _batch(solver: Solver, value: ArrayLike) -> Array:
+    return np.array(np.broadcast_to(np.asarray(value, dtype=float), len(solver.mesh.nodes)))
+
+
+def _sum(columns: Array, act: Array) -> Array:
+    """All columns times what acts of each; a last column beyond them (what yielded parts do) counts once."""
+    whole: Array = np.einsum("b...c,bc->b...", columns[..., : act.shape[1]], act)
+    return whole + columns[..., -1] if columns.shape[-1] > act.shape[1] else whole
+
+
+def _where(slip: Array, at_yield: Array) -> NDArray[np.int8]:
+    return (np.sign(slip) * (np.abs(slip) > at_yield[:, None, None])).astype(np.int8)
+
+
+def _load_at(course: Course, shares: Shares, limit: Array, guess: Array) -> tuple[Array, NDArray[np.bool_]]:
+    """The greatest load at which no slip is beyond ``limit``, and whether there is one above zero.
+
+    The slip is linear in the columns, and what acts of them nearly so in the load: each place allows a range of loads,
+    and all places together the range that is common to them.
+    """
+    load = guess
+    found = np.ones(len(limit), dtype=bool)
+    for _ in range(30):
+        step = np.maximum(1e-4 * np.abs(load), 1e-6)
+        act, next_act = shares(load), shares(load + step)
+        slip = _sum(course.slip, act)
+        slope = (np.einsum("bxc,bc->bx", course.slip[..., : act.shape[1]], next_act - act)) / step[:, None]
+        safe = np.where(np.abs(slope) > 0, slope, 1e-300)
+        rooms = (np.sign(safe) * limit[:, None] - slip) / safe, (-np.sign(safe) * limit[:, None] - slip) / safe
+        most, least = load + rooms[0].min(axis=1), load + rooms[1].max(axis=1)
+        found = (most > least) & (most > 0)
+        fresh = np.where(found, most, 0.0)
+        done = np.abs(fresh - load) <= 1e-12 * np.abs(fresh)
+        load = fresh
+        if done.all():
+            break
+    return load, found
+
+
+def _combined(
+    course: Course,
+    load: Array,
+    shares: Shares,
+    yield_flow: Array,
+    stiffness: Array,
+    found: NDArray[np.bool_],
+    settled: NDArray[np.bool_],
+) -> Yielded:
+    act = shares(load)
+    one = {
+        name: _sum(getattr(course, name), act)[..., None]
+        for name in ("slip", "opening", "force", "shear", "moment", "slip_inside")
+        if getattr(course, name).size
+    }
+    bound = yield_flow[:, None]
+    flow = np.clip(stiffness[:, None] * one["slip"][..., 0], -bound, bound)
+    return Yielded(load, replace(course, **one), flow, found, settled)

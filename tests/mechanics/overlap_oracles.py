@@ -1,0 +1,115 @@
+"""Independent solutions for bonded overlaps: displacements by scipy's boundary-value solver, nothing eliminated."""
+
+from __future__ import annotations
+
+import numpy as np
+from scipy.integrate import solve_bvp
+
+
+def two_beams(length, upper, lower, ks, kp, ends, *, mismatch=0.0, points=600, yield_flow=None, guided=False):
+    """Flow and opening force along the bond of two beams, from their own twelve equations in displacements.
+
+    ``upper`` and ``lower`` are (EA, EI, arm); ``ends`` the (N, V, M) of the upper beam at left and right, then of the
+    lower one at left. The lower beam is held at its left end; what acts on its right end follows from equilibrium.
+    ``guided``: the upper beam's right end cannot turn, its moment there is not given; the lower beam is then rigid in
+    bending and only stretches.
+    """
+    (EA1, EI1, c1), (EA2, EI2, c2) = upper, lower
+    left1, right1, left2 = ends
+    force = max(abs(v) for v in (left1[0], right1[0], left2[0], 1e-9)) + abs(mismatch) * EA1 * 1e-2
+    c = max(c1, c2)
+    scale = np.array([force * length / EA1, force, c, c / length, force * c, force * c / length] * 2)
+    scale[[2, 8]] = force * c * length**2 / EI1
+    scale[[3, 9]] = force * c * length / EI1
+    scale[6] = scale[0]
+
+    def bond(y):
+        s = y[0] - y[6] + c1 * y[3] + c2 * y[9]
+        q = ks * s if yield_flow is None else np.clip(ks * s, -yield_flow, yield_flow)
+        return q, kp * (y[2] - y[8])
+
+    def equations(x, z):
+        y = z * scale[:, None]
+        q, pull = bond(y)
+        rows = [
+            y[1] / EA1 + mismatch,
+            q,
+            y[3],
+            y[4] / EI1,
+            y[5] + c1 * q,
+            -pull,
+            y[7] / EA2,
+            -q,
+            y[9],
+            y[10] / EI2 if np.isfinite(EI2) else 0 * q,
+            y[11] + c2 * q,
+            pull,
+        ]
+        return length * np.vstack(rows) / scale[:, None]
+
+    def boundary(za, zb):
+        a, b = za * scale, zb * scale
+        last = b[3] / scale[3] if guided else (b[4] - right1[2]) / scale[4]
+        return np.array(
+            [
+                (a[1] - left1[0]) / scale[1],
+                (a[5] - left1[1]) / scale[5],
+                (a[4] - left1[2]) / scale[4],
+                (b[1] - right1[0]) / scale[1],
+                (b[5] - right1[1]) / scale[5],
+                last,
+                a[6] / scale[6],
+                a[8] / scale[8],
+                a[9] / scale[9],
+                (a[7] - left2[0]) / scale[7],
+                (a[11] - left2[1]) / scale[11],
+                (a[10] - left2[2]) / scale[10],
+            ]
+        )
+
+    t = np.linspace(0, 1, points)
+    x = (1 - np.cos(np.pi * t)) / 2
+    start = np.zeros((12, points))
+    start[1] = x * right1[0] / scale[1]
+    found = solve_bvp(equations, boundary, x, start, tol=1e-6, max_nodes=60000)
+    assert found.success, found.message
+    where = (1 - np.cos(np.pi * np.linspace(0, 1, 2001))) / 2
+    y = found.sol(where) * scale[:, None]
+    q, pull = bond(y)
+    return where * length, q, pull, y
+
+
+def two_bars(length, soft1, soft2, ks, force, *, mismatch=0.0, yield_flow=None, points=2000):
+    """Flow along a bond of two bars of compliance ``soft1`` and ``soft2`` (functions of place): shear lag alone."""
+
+    def equations(x, y):
+        q = ks * y[1] if yield_flow is None else np.clip(ks * y[1], -yield_flow, yield_flow)
+        return np.vstack([q, y[0] * soft1(x) - (force - y[0]) * soft2(x) + mismatch])
+
+    x = length * (1 - np.cos(np.pi * np.linspace(0, 1, points))) / 2
+    start = np.vstack([force * x / length, np.full(points, force / length / ks)])
+    found = solve_bvp(
+        equations, lambda a, b: np.array([a[0] / force, b[0] / force - 1]), x, start, tol=1e-7, max_nodes=100000
+    )
+    assert found.success, found.message
+    q = ks * found.sol(x)[1]
+    return x, q if yield_flow is None else np.clip(q, -yield_flow, yield_flow)
+
+
+def two_bars_by_energy(length, soft1, soft2, ks, force, *, elements=20000):
+    """The same from the least complementary energy, by linear elements: for bars that run out to a tip."""
+    from scipy.linalg import solveh_banded
+
+    h = length / elements
+    middle = (np.arange(elements) + 0.5) * h
+    a = soft1(middle) + soft2(middle)
+    main, side = np.full(elements + 1, 0.0), 1 / (ks * h) * -1 + a * h / 4
+    main[:-1] += 1 / (ks * h) + a * h / 4
+    main[1:] += 1 / (ks * h) + a * h / 4
+    load = np.zeros(elements + 1)
+    load[:-1] += soft2(middle) * force * h / 2
+    load[1:] += soft2(middle) * force * h / 2
+    load[-2] -= side[-1] * force
+    band = np.vstack([main[1:-1], np.append(side[1:-1], 0.0)])
+    N = np.concatenate(([0.0], solveh_banded(band, load[1:-1], lower=True), [force]))
+    return middle, np.diff(N) / h
