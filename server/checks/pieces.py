@@ -221,9 +221,8 @@ def _write_bending(check: PieceCheck, bent: Bent, weighed: list[Weighed], body: 
     if governing is None:
         entry, row = (int(i) for i in np.unravel_index(int(size.argmax()), size.shape))
     else:
-        row = governing.row
-        here = (bent.at[:, row] == governing.at) & (bent.stretch == governing.stretch)
-        entry = int(np.where(here, size[:, row], -1.0).argmax())
+        row, word = governing.row, governing.claim.strength.what.removesuffix(f" in {check.part.name}")
+        entry = int(dict(_fibre_demands(check.part, bent))[word][:, row].argmax())
     stretch = body.stretches[int(bent.stretch[entry])]
     whole, part = stretch.section.properties, check.part
     where = f"{MECHANICS}; at {bent.at[entry, row]:.6g} mm, combination {judge.actions.strength_names[row]}"

@@ -204,9 +204,9 @@ class Statics:
                         forces.append(factor * load.value)
                         places.append(load.at)
                 elif load.start < at:
-                    force, place = _line_resultant(load.start, load.end, load.value_start, load.value_end, at)
-                    forces.append(factor * force)
-                    places.append(place)
+                    for force, place in _line_resultants(load, at):
+                        forces.append(factor * force)
+                        places.append(place)
         return Resultants(forces, places, couple)
 
     def deflection(self) -> None:
@@ -214,7 +214,8 @@ class Statics:
         actions = self.actions
         if actions.sag is None:
             return
-        peak = largest(*actions.sag.whole.absolute())
+        sag = actions.sag.whole
+        peak = largest(*sag.absolute())
         k = actions.deflection[peak.row]
         if self._tabulated(k):
             self._table_steps(peak, k)
@@ -223,7 +224,8 @@ class Statics:
                 f"Greatest deflection, combination {actions.names[k]}",
                 f"The moment and shear polynomials over EI and GA, integrated exactly between the breaks; at "
                 f"{peak.at:.6g} mm, where the slope is nil or changes sign.",
-                value=peak.value, unit="mm", source="Euler-Bernoulli with Timoshenko's shear part", group="Deflection",
+                value=peak.value if largest(sag.max, sag.at_max).value == peak.value else -peak.value,
+                unit="mm", source="Euler-Bernoulli with Timoshenko's shear part", group="Deflection",
             )  # fmt: skip
 
     def _tabulated(self, k: int) -> bool:
@@ -292,14 +294,20 @@ class Statics:
         )  # fmt: skip
 
 
-def _line_resultant(start: float, end: float, first: float, last: float, at: float) -> tuple[float, float]:
-    """Force and centroid of the part of a line load left of a place."""
-    stop = min(end, at)
-    value = first + (last - first) * (stop - start) / (end - start)
-    force = 0.5 * (first + value) * (stop - start)
-    if first + value == 0:
-        return force, 0.5 * (start + stop)
-    return force, start + (stop - start) * (first + 2 * value) / (3 * (first + value))
+def _line_resultants(load: LineLoad, at: float) -> list[tuple[float, float]]:
+    """Forces and centroids of the part of a line load left of a place.
+
+    One force; two triangles where the load changes sign, as its single resultant would lie outside it, or be nil beside
+    a couple.
+    """
+    stop = min(load.end, at)
+    first, length = load.value_start, stop - load.start
+    last = first + (load.value_end - first) * length / (load.end - load.start)
+    if first * last < 0:
+        return [(first * length / 2, load.start + length / 3), (last * length / 2, load.start + 2 * length / 3)]
+    if first + last == 0:
+        return [(0.0, load.start + length / 2)]
+    return [((first + last) / 2 * length, load.start + length * (first + 2 * last) / (3 * (first + last)))]
 
 
 def _moment_of(left: Resultants, at: float) -> float:

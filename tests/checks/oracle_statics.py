@@ -173,14 +173,14 @@ def largest(x: Array, values: Array) -> Extreme:
     """The largest value over all segments, sharpened by the parabola through its neighbours."""
     found = Extreme(-np.inf, 0.0)
     for number, (places, row) in enumerate(zip(x, values, strict=True)):
-        i = int(row.argmax())
-        value, at = float(row[i]), float(places[i])
-        if 0 < i < len(row) - 1:
-            below, above = row[i] - row[i - 1], row[i] - row[i + 1]
-            if below + above > 0:
-                shift = 0.5 * (below - above) / (below + above)
-                value += float(0.25 * (below - above) * shift)
-                at += shift * float(places[1] - places[0])
+        top = int(row.argmax())
+        value, at = float(row[top]), float(places[top])
+        i = min(max(top, 1), len(row) - 2)
+        below, above = row[i] - row[i - 1], row[i] - row[i + 1]
+        shift = 0.5 * (below - above) / (below + above) if below + above > 0 else 2.0
+        if abs(shift) < 1:
+            value = float(row[i] + 0.25 * (below - above) * shift)
+            at = float(places[i] + shift * (places[1] - places[0]))
         if value > found.value + 1e-12 * abs(value):
             found = Extreme(value, at, number)
     return found

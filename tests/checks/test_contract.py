@@ -63,6 +63,22 @@ class TestUnitsAndSigns:
             "min": pytest.approx(-200_000), "at_min": pytest.approx(1000), "combination_min": "all",
         }  # fmt: skip
 
+    @pytest.mark.parametrize(
+        ("start", "end", "value"), [(0, 3000, [-1, 1]), (500, 2000, [2, -2]), (0, 2400, [-0.5, 1.5]), (0, 3000, [0, 0])]
+    )
+    def test_a_load_that_changes_sign_turns_the_member_in_the_working_too(
+        self, start: float, end: float, value: list[float]
+    ) -> None:
+        """Its resultant may be nil, its moment is not: printed and found reactions are the same."""
+        load = {"kind": "line", "from": start, "to": end, "value": value}
+        result = run(STACK, loads__live=[load])
+        a, b, length = *value, end - start
+        right = ((a + b) / 2 * length * start + (a + 2 * b) / 6 * length**2) / 3000
+        printed = {step["symbol"]: step["value"] for step in result["steps"]}
+        found = [r["force"] for r in result["member"]["reactions"]["all"]]
+        assert found == pytest.approx([(a + b) / 2 * length - right, right], abs=1e-9)
+        assert [printed["R_1"], printed["R_2"]] == pytest.approx(found, abs=1e-9)
+
     def test_upward_loads_are_negative_and_lift(self) -> None:
         member = run(STACK, loads__live__0__value=-1.2)["member"]
         assert [r["force"] for r in member["reactions"]["all"]] == pytest.approx([-1800, -1800])
@@ -305,6 +321,17 @@ class TestJoints:
         needed = run(STACK, section__joints__0__coverage=0.7)["joints"][0]["width_needed"]
         (joint,) = run(STACK, section__joints__0__coverage=0.7, section__joints__0__width=needed)["joints"]
         assert joint["utilisation"] == pytest.approx(1)
+
+
+class TestPieces:
+    def test_stresses_are_those_where_the_piece_is_used_most_on_the_right_side_of_a_jump(self) -> None:
+        """Sagging 100 kN mm and hogging 200 kN mm stand at one place; weak in tension, the lower one sags."""
+        couple = {"kind": "couple", "at": 1000, "value": 300_000}
+        strengths = {"bending": 20, "tension": 1, "compression": 18, "shear": 3}
+        lower, upper = run(STACK, loads__live=[couple], materials__pine__strengths=strengths)["pieces"]
+        Z = 100 * 100**2 / 6
+        assert (lower["stress_top"], lower["stress_bottom"]) == (pytest.approx(0, abs=1e-9), pytest.approx(1e5 / Z))
+        assert upper["stress_top"] == pytest.approx(2e5 / Z)
 
 
 class TestDeflection:
