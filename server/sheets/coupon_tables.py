@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from collections.abc import Iterable, Iterator, Mapping
 from typing import Any
 
@@ -25,6 +26,28 @@ _SHARES = (
 )
 
 
+def unit_of(result: Result) -> str:
+    """The unit the results are stored in: MPa, or N where a fastener was broken at a load."""
+    return str(result.get("unit") or "MPa")
+
+
+def in_newtons(result: Result) -> dict[str, Any]:
+    """A result that was reckoned on one square millimetre a coupon, read as loads: its MPa are N."""
+    steps = [_as_load(step) for step in result.get("steps", ()) if step.get("group") != "Stresses"]
+    return {**_as_load({**result, "steps": ()}), "steps": steps, "unit": "N", "quantity": "Load at failure"}
+
+
+def _as_load(value: Any) -> Any:
+    """Every text and unit in N; the numbers stay."""
+    if isinstance(value, str):
+        return re.sub(r"\bMPa\b", "N", value).replace("stresses", "loads").replace("Stresses", "Loads")
+    if isinstance(value, Mapping):
+        return {name: _as_load(each) for name, each in value.items()}
+    if isinstance(value, list | tuple):
+        return [_as_load(each) for each in value]
+    return value
+
+
 def headline(result: Result, display: str) -> str:
     """The line under the verdict."""
     value, statistic = result.get("characteristic"), result.get("statistic") or {}
@@ -33,7 +56,7 @@ def headline(result: Result, display: str) -> str:
         return line[:1].upper() + line[1:]
     n = result.get("n")
     return (
-        f"Characteristic value {quantity(value, 'MPa', display)} from {n} coupon{'' if n == 1 else 's'}: "
+        f"Characteristic value {quantity(value, unit_of(result), display)} from {n} coupon{'' if n == 1 else 's'}: "
         f"{percent(statistic.get('coverage'))} lie above it, stated with {percent(statistic.get('confidence'))} "
         f"confidence ({NAMES.get(str(statistic.get('distribution')), '')})"
     )
@@ -60,11 +83,11 @@ def number(value: object, digits: int = 4) -> str:
 
 def value(result: Result, display: str) -> Iterator[Part]:
     """The value with what it is made of, the same with the excluded coupons, and EN 1990 Annex D."""
-    yield {"kind": "pairs", "pairs": pairs(result, display)}
+    yield {"kind": "pairs", "pairs": pairs(result, display, unit_of(result))}
     whole = result.get("without_exclusions")
     if whole:
         yield {"kind": "sub", "title": "With the excluded coupons", "about": ""}
-        yield {"kind": "pairs", "pairs": pairs(whole, display)}
+        yield {"kind": "pairs", "pairs": pairs(whole, display, unit_of(result))}
     yield from directly_from_tests(result, display)
 
 
@@ -74,35 +97,38 @@ def directly_from_tests(result: Result, display: str) -> Iterator[Part]:
     if annex:
         yield {"kind": "sub", "title": "EN 1990 Annex D, directly from tests, conversion factor 1", "about": ""}
         rows = [
-            [f"{name} value", f"{quantity(annex[key], 'MPa', display)}  (factor {number(annex[f'{key}_factor'])})"]
+            [
+                f"{name} value",
+                f"{quantity(annex[key], unit_of(result), display)}  (factor {number(annex[f'{key}_factor'])})",
+            ]
             for name, key in (("Characteristic", "characteristic"), ("Design", "design"))
             if annex.get(key) is not None
         ]
         yield {"kind": "pairs", "pairs": rows}
 
 
-def pairs(found: Result, display: str) -> list[list[str]]:
-    """Names and numbers of one answer."""
+def pairs(found: Result, display: str, of: str = "MPa") -> list[list[str]]:
+    """Names and numbers of one answer; ``of`` is the unit of the result."""
     rows = [
         ["Coupons", number(found.get("n"))],
-        ["Mean", quantity(found.get("mean_stress"), "MPa", display)],
-        ["Standard deviation", quantity(found.get("standard_deviation_stress"), "MPa", display)],
+        ["Mean", quantity(found.get("mean_stress"), of, display)],
+        ["Standard deviation", quantity(found.get("standard_deviation_stress"), of, display)],
         ["Coefficient of variation", percent(found.get("variation"))],
-        ["Lowest", quantity(found.get("minimum"), "MPa", display)],
+        ["Lowest", quantity(found.get("minimum"), of, display)],
     ]
     if found.get("of_logarithms"):
         rows += [
-            ["Mean of the logarithms (MPa)", number(found.get("mean"))],
+            [f"Mean of the logarithms ({of})", number(found.get("mean"))],
             ["Their standard deviation", number(found.get("standard_deviation"))],
         ]
     weibull = found.get("weibull")
     if weibull:
-        rows += [["Weibull shape", number(weibull["shape"])], ["Scale", quantity(weibull["scale"], "MPa", display)]]
+        rows += [["Weibull shape", number(weibull["shape"])], ["Scale", quantity(weibull["scale"], of, display)]]
     if found.get("rank"):
         rows.append(["Rank from below", number(found["rank"])])
     if found.get("factor") is not None:
         rows.append(["Tolerance factor", number(found["factor"])])
-    rows.append(["Characteristic value", quantity(found.get("characteristic"), "MPa", display)])
+    rows.append(["Characteristic value", quantity(found.get("characteristic"), of, display)])
     if found.get("share_of_mean") is not None:
         rows.append(["Share of the mean", percent(found["share_of_mean"])])
     return rows
@@ -110,7 +136,7 @@ def pairs(found: Result, display: str) -> list[list[str]]:
 
 def _coupons(result: Result, display: str) -> Iterator[Part]:
     listed = result.get("coupons") or []
-    stress = unit("MPa", display)
+    stress = unit(unit_of(result), display)
     batches = any(each.get("batch") for each in listed)
     columns = [column("No.", side="right"), column(f"Stress, {stress.text}", side="right")]
     columns += [column("Batch")] if batches else []
@@ -167,7 +193,7 @@ def ahead(result: Result, display: str) -> Iterator[Part]:
     if not rows:
         return
     listed = [
-        [name, f"{quantity(each['characteristic'], 'MPa', display)}  ({each['gain'] * 100:+.1f} %)"]
+        [name, f"{quantity(each['characteristic'], unit_of(result), display)}  ({each['gain'] * 100:+.1f} %)"]
         for name, each in rows
     ]
     needed = result.get("needed_for_1_percent_gain")

@@ -6,7 +6,7 @@ Plain data in, parts for the template out, as composition.py does for checks; no
 from __future__ import annotations
 
 from collections.abc import Iterable, Iterator, Mapping, Sequence
-from dataclasses import dataclass, field
+from dataclasses import dataclass
 from typing import Any, Literal
 
 from server.mechanics.control_chart import Chart
@@ -17,7 +17,7 @@ from server.sheets.history import Point, history_svg, in_words
 from server.sheets.plotting import texts_of
 from server.sheets.probability_plot import probability_plot_svg
 from server.sheets.tables import column, table
-from server.sheets.values import DASH, quantity, unit
+from server.sheets.values import DASH, unit
 from server.working import readable
 
 Pairs = Sequence[tuple[str, str]]
@@ -97,7 +97,7 @@ class EvidenceData:
     engine: str = ""
     content_hash: str = ""
     made_at: int = 0
-    unit: str = field(default="MPa")
+    unit: str = "MPa"
 
 
 def compose_evidence(page: EvidenceData) -> Part:
@@ -178,10 +178,10 @@ def _figure(svg: str, alt: str) -> Part:
 
 def _value(result: Mapping[str, Any], display: str) -> Iterator[Part]:
     """Both answers side by side where coupons were excluded; then what EN 1990 gives directly from the tests."""
-    whole = result.get("without_exclusions")
+    whole, of = result.get("without_exclusions"), coupon_tables.unit_of(result)
     if whole:
         left = [f"no. {each['index'] + 1}" for each in result["coupons"] if each.get("excluded")]
-        kept, every = (dict(coupon_tables.pairs(found, display)) for found in (result, whole))
+        kept, every = (dict(coupon_tables.pairs(found, display, of)) for found in (result, whole))
         head = [
             column("", share=1),
             column(f"Without {', '.join(left[:6])}{' and more' if len(left) > 6 else ''}", side="right"),
@@ -189,7 +189,7 @@ def _value(result: Mapping[str, Any], display: str) -> Iterator[Part]:
         rows = [[name, text, every.get(name, DASH)] for name, text in kept.items()]
         yield table([*head, column("With every coupon", side="right")], rows)
     else:
-        yield {"kind": "pairs", "pairs": coupon_tables.pairs(result, display)}
+        yield {"kind": "pairs", "pairs": coupon_tables.pairs(result, display, of)}
     yield from coupon_tables.directly_from_tests(result, display)
 
 
@@ -383,8 +383,3 @@ def _people(page: EvidenceData) -> Iterator[Part]:
     if page.acts:
         columns = [column("State"), column("Day"), column("By"), column("Reason", share=1)]
         yield table(columns, [list(act) for act in page.acts])
-
-
-def value_in_words(result: Mapping[str, Any], display: str) -> str:
-    """The characteristic value of a result with its unit; a dash where there is none."""
-    return quantity(result.get("characteristic"), str(result.get("unit") or "MPa"), display)

@@ -14,6 +14,7 @@ SYSTEMS = ("SI", "US")
 UNITS: dict[str, tuple[str, str]] = {
     # what a bare number means in a box: (SI, US), in the spelling that units.parse reads
     "size": ("mm", "in"),
+    "area": ("mm2", "in2"),
     "position": ("m", "ft"),
     "force": ("kN", "lbf"),
     "line_load": ("kN/m", "lbf/ft"),
@@ -30,6 +31,7 @@ UNITS: dict[str, tuple[str, str]] = {
 # What a plain number means in a document (contract.md), for documents written by hand or by a program.
 PLAIN_UNITS: dict[str, str] = {
     "size": "mm",
+    "area": "mm2",
     "position": "mm",
     "force": "N",
     "line_load": "N/mm",

@@ -6,9 +6,11 @@ import json
 
 import pytest
 
+from server import checks, documents
 from server.__main__ import main
 from server.errors import JointError
 from server.sheets import SheetData, pdf, terminal
+from server.sheets.coupon_tables import in_newtons, pairs
 from tests.checks import coupon_sets as sets
 
 
@@ -79,3 +81,14 @@ def test_the_command_line_gives_the_contract_s_exit_statuses(tmp_path, capsys):
     assert (status, out) == (2, "")
     assert "no PDF" in error
     assert not target.exists()
+
+
+def test_a_fasteners_result_reads_in_loads():
+    raw = sets.document([{"load": f"{each} N", "area": 1.0} for each in (1830, 1726, 2024, 1632, 1913)])
+    found = in_newtons(checks.run(documents.read(raw)))
+    assert (found["unit"], found["quantity"]) == ("N", "Load at failure")
+    shown = dict(pairs(found, "US", found["unit"]))
+    assert shown["Mean"] == "410.3\u00a0lbf"  # 1825 N
+    words = json.dumps(found, ensure_ascii=False)
+    assert "MPa" not in words
+    assert not any(step.get("group") == "Stresses" for step in found["steps"])
