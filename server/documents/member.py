@@ -34,8 +34,9 @@ Role = Literal["sole", "fall-back", "peel-stop", "press"]
 
 
 class _Piece(Model):
-    """What pieces of every shape have in common."""
+    """What pieces of every shape have in common; ``profile`` is a label, the sizes themselves are what counts."""
 
+    profile: Line = ""
     material: Name
     grain: Literal["along", "across"] = "along"
     turn: Angle = 0.0

@@ -223,6 +223,8 @@ class _Writer:
     def _piece(self, piece: Typed) -> Iterable[tuple[str, object, str]]:
         if piece.get("shape", "rectangle") != "rectangle":
             yield "", piece["shape"], ""
+        if piece.get("profile"):
+            yield "", piece["profile"], ""
         if piece.get("width") is not None:
             yield "", piece["width"], "length"
             yield "×", piece.get("depth"), "length"

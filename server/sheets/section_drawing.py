@@ -15,7 +15,7 @@ from server.sheets.hatching import hatch
 from server.sheets.labels import Label
 from server.sheets.section_names import name_pieces
 from server.sheets.section_view import AXIS, MARGIN, Box, Mark, View, fastener_places, levels_of
-from server.sheets.svg import CAP, FONT_SIZE, Drawing, polygon, shorten, text_width
+from server.sheets.svg import CAP, FONT_SIZE, Drawing, path, polygon, shorten, text_width
 
 ROW = 16.0
 SWATCH = 24.0
@@ -92,11 +92,11 @@ def _shade(drawing: Drawing, view: View, boxes: Sequence[Box], joint_id: str | N
 def _contact(drawing: Drawing, mark: Mark) -> None:
     """A bond line heavy, a contact that nothing joins dashed, fasteners as their axes across the joint."""
     (x1, y1), (x2, y2) = mark.start, mark.end
-    if not mark.bonded and not mark.fastened:
-        drawing.line("gap", x1, y1, x2, y2)
-        drawing.line("touching", x1, y1, x2, y2)
+    pens = ("bond",) if mark.bonded else ("heavy",) if mark.fastened else ("gap", "touching")
+    for pen in pens:
+        drawing.pen(pen).append(path(mark.line or (mark.start, mark.end)))
+    if not mark.fastened:
         return
-    drawing.line("bond" if mark.bonded else "heavy", x1, y1, x2, y2)
     length = hypot(x2 - x1, y2 - y1) or 1.0
     ux, uy = (x2 - x1) / length, (y2 - y1) / length
     for x, y in fastener_places(mark):

@@ -31,7 +31,7 @@ class Box:
 
 @dataclass(frozen=True)
 class Mark:
-    """A contact in pixels with what holds it together."""
+    """A contact in pixels with what holds it together; ``line`` its points where it is not straight."""
 
     number: int
     start: Point
@@ -39,6 +39,7 @@ class Mark:
     bonded: bool
     fastened: bool
     rows: int
+    line: tuple[Point, ...] = ()
 
 
 class View:
@@ -95,7 +96,8 @@ class View:
             number = self.numbers.get(contact["id"], 0) if contact["joined"] else 0
             rows = int(joint.get("rows") or 1)
             bonded = contact["joined"] and (bonded or not fastened)
-            found.append(Mark(number, self.at(contact["start"]), self.at(contact["end"]), bonded, fastened, rows))
+            line = tuple(self.at(point) for point in contact.get("line") or ())
+            found.append(Mark(number, self.at(contact["start"]), self.at(contact["end"]), bonded, fastened, rows, line))
         return found
 
     def settle(self, drawing: Drawing, rails: dict[str, list[Label]]) -> None:

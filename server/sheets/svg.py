@@ -187,6 +187,11 @@ def polygon(points: Sequence[Sequence[float]]) -> str:
     return "M" + "L".join(pairs) + "z"
 
 
+def path(points: Sequence[Sequence[float]]) -> str:
+    """Path data of an open line, to a tenth of a pixel."""
+    return "M" + "L".join(f"{x:.1f} {y:.1f}" for x, y in points)
+
+
 def spread(
     wanted: Sequence[float],
     sizes: Sequence[float],

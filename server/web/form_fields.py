@@ -69,6 +69,7 @@ class Box:
     more: bool = False  # seldom needed: folded away in its row
     wide: bool = False
     whole: bool = False  # a whole number
+    shapes: tuple[str, ...] = ()  # the shapes of piece it belongs to; none: every shape
 
     @property
     def place(self) -> str:
@@ -115,25 +116,14 @@ _FACTORS = (
     Box("factors", "Other factors", hint="wet 0.8, workmanship 0.9", more=True, wide=True),
 )
 
+_FLANGED = ("channel", "i", "tee")
+_WIDE = ("rectangle", "tube", "angle", *_FLANGED)
+_SIZED = ("round", *_WIDE)
 PIECES = Group(
     "pieces",
     "piece",
     (
         Box("name", "Name"),
-        Box("width", "Width", "size"),
-        Box("depth", "Depth", "size"),
-        Box("across", "Across", "size", "at[0]", hint="left edge, from any origin"),
-        Box("up", "Up", "size", "at[1]", hint="lower edge"),
-        Box("material", "Material", names="materials"),
-        Box(
-            "grain",
-            "Grain",
-            choices=(("along", "along"), ("across", "across")),
-            more=True,
-        ),
-        Box("turn", "Turned", "angle", hint="anticlockwise", more=True),
-        Box("from", "Starts at", "position", hint="blank: left end", more=True),
-        Box("to", "Stops at", "position", hint="blank: right end", more=True),
         Box(
             "shape",
             "Shape",
@@ -147,14 +137,28 @@ PIECES = Group(
                 ("i", "I profile"),
                 ("tee", "T profile"),
             ),
-            more=True,
         ),
-        Box("diameter", "Diameter", "size", more=True),
-        Box("wall", "Wall", "size", more=True),
-        Box("web", "Web", "size", more=True),
-        Box("flange", "Flange", "size", more=True),
-        Box("points", "Points", hint="across, up; across, up; ...", more=True, wide=True),
-        Box("holes", "Holes", hint="as points, | between holes", more=True, wide=True),
+        Box("profile", "Profile", names="profiles", hint="by name, or type the sizes", shapes=_SIZED),
+        Box("width", "Width", "size", shapes=_WIDE),
+        Box("depth", "Depth", "size", shapes=_WIDE),
+        Box("diameter", "Diameter", "size", shapes=("round",)),
+        Box("wall", "Wall", "size", shapes=("round", "tube", "angle")),
+        Box("web", "Web", "size", shapes=_FLANGED),
+        Box("flange", "Flange", "size", shapes=_FLANGED),
+        Box("points", "Points", hint="across, up; across, up; ...", wide=True, shapes=("polygon",)),
+        Box("holes", "Holes", hint="as points, | between holes", wide=True, shapes=("polygon",)),
+        Box("corner_radius", "Corner radius", "size", hint="outside; blank: sharp", shapes=("tube",)),
+        Box("root_radius", "Root radius", "size", hint="blank: sharp", shapes=("angle", *_FLANGED)),
+        Box("across", "Across", "size", "at[0]", hint="left edge, from any origin"),
+        Box("up", "Up", "size", "at[1]", hint="lower edge"),
+        Box("material", "Material", names="materials"),
+        Box("grain", "Grain", choices=(("along", "along"), ("across", "across")), more=True),
+        Box("turn", "Turned", "angle", hint="anticlockwise", more=True),
+        Box("from", "Starts at", "position", hint="blank: left end", more=True),
+        Box("to", "Stops at", "position", hint="blank: right end", more=True),
+        Box("rounded", "Corner radius", "size", "corner_radius", more=True, shapes=("rectangle",)),
+        Box("chamfer", "Chamfer", "size", hint="along either side", more=True, shapes=("rectangle",)),
+        Box("toe_radius", "Toe radius", "size", more=True, shapes=("angle", *_FLANGED)),
     ),
     40,
     "section.pieces",

@@ -12,6 +12,7 @@ from typing import Any
 
 from server.web.form_fields import GROUPS, LOAD_UNITS, PLAIN_UNITS, UNITS, VALUE_GROUPS, Group
 from server.web.form_text import is_number
+from server.web.pieces_boxes import boxes_of, row_of
 
 Values = dict[str, str]
 Raw = Mapping[str, Any]
@@ -98,7 +99,9 @@ def _basis(basis: Raw, values: Values) -> None:
 
 
 def _piece(values: Values, index: int, name: str, piece: Raw, system: str) -> None:
-    _row(values, GROUPS["pieces"], index, {**piece, "name": name}, system, leave=("points", "holes"))
+    boxes = boxes_of(str(piece.get("shape") or "rectangle"))
+    leave = [box.name for box in GROUPS["pieces"].boxes if box not in boxes]
+    _row(values, GROUPS["pieces"], index, row_of(name, piece), system, leave=(*leave, "points", "holes"))
     if piece.get("points"):
         values[f"pieces[{index}].points"] = _points(piece["points"], system)
     if piece.get("holes"):

@@ -6,12 +6,14 @@ import re
 from collections.abc import Iterable, Mapping
 from dataclasses import dataclass
 
+from server.library.profiles import SIZES
 from server.web import layouts
 from server.web.form_fields import GROUPS, LOAD_UNITS, SINGLES, Group
 from server.web.form_text import Reading, couples, points, schedule, with_unit
 from server.web.forms import FIELD, rows, system_of
+from server.web.pieces_boxes import boxes_of, profile_of
 
-_BUTTONS = ("add", "remove", "start", "set_out", "units_of_boxes", "calculate")
+_BUTTONS = ("add", "remove", "reshape", "start", "set_out", "units_of_boxes", "calculate")
 
 
 @dataclass(frozen=True)
@@ -26,7 +28,8 @@ class Shaped:
 def shape(values: Mapping[str, str]) -> Shaped:
     """Do what a button of the form asked for.
 
-    ``add`` names a group, ``remove`` a row such as ``pieces[2]``, ``start`` a layout, ``set_out`` places its pieces
+    ``add`` names a group, ``remove`` a row such as ``pieces[2]``, ``reshape`` the box of a piece's row that says which
+    boxes the row has (``pieces[2].shape``, ``pieces[2].profile``), ``start`` a layout, ``set_out`` places its pieces
     from their sizes, ``units_of_boxes`` marks the boxes in the units chosen. Numbers already typed keep the unit they
     were typed in.
     """
@@ -37,6 +40,9 @@ def shape(values: Mapping[str, str]) -> Shaped:
     if removed and removed[1] in GROUPS:
         left = {name: text for name, text in kept.items() if not name.startswith(removed[0] + ".")}
         return Shaped(left, removed[1], f"add-{removed[1]}")
+    reshaped = re.fullmatch(r"(pieces\[\d{1,4}\])\.(shape|profile)", values.get("reshape", ""))
+    if reshaped:
+        return Shaped(_reshaped(kept, reshaped[1], reshaped[2]), "pieces", reshaped[0])
     if values.get("start") in layouts.LAYOUTS:
         return Shaped(_started(kept, values["start"]))
     if values.get("set_out"):
@@ -54,6 +60,18 @@ def _with_a_row(values: dict[str, str], group: Group) -> Shaped:
     last = max(taken, default=0 if group.name == "adhesives" else -1)
     first = f"{group.name}[{last + 1}].{group.boxes[0].name}"
     return Shaped(values | {first: ""}, group.name, first)
+
+
+def _reshaped(values: dict[str, str], row: str, by: str) -> dict[str, str]:
+    """The row after its shape or its profile was chosen: a profile brings shape and sizes, another shape ends it."""
+    cells = {box.name: values.get(f"{row}.{box.name}", "") for box in GROUPS["pieces"].boxes}
+    profile = profile_of(cells)
+    if profile is None:
+        return values
+    if by == "shape" and profile.shape != cells["shape"]:
+        return values | {f"{row}.profile": ""}
+    sizes = [box.name for box in boxes_of(profile.shape) if box.place in SIZES]
+    return values | {f"{row}.shape": profile.shape} | dict.fromkeys((f"{row}.{name}" for name in sizes), "")
 
 
 def _started(values: Mapping[str, str], layout: str) -> dict[str, str]:

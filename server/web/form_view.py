@@ -7,7 +7,8 @@ from dataclasses import dataclass, field
 from functools import cached_property
 from typing import Any
 
-from server.web import form_words, forms, layouts
+from server.library.profiles import profiles
+from server.web import form_words, forms, layouts, pieces_boxes
 from server.web.form_fields import GROUPS, LOAD_UNITS, SINGLES, UNITS, VALUE_GROUPS, Box, Group, shown_unit
 
 Options = tuple[tuple[str, str], ...]
@@ -120,9 +121,33 @@ class Form:
             box = next((each for each in group.boxes if each.name == short), None) if group else None
         return None if box is None or box.choices or box.name == "record" else box
 
+    def boxes(self, group: Group, index: int) -> tuple[Box, ...]:
+        """Return the boxes of a row: of a piece those of its shape."""
+        return group.boxes if group.name != "pieces" else pieces_boxes.boxes_shown(self._cells(index))
+
+    def kept(self, group: Group, index: int) -> list[tuple[str, str]]:
+        """Return what was typed into boxes that the row does not show now, so that it is there when they come back."""
+        shown = self.boxes(group, index)
+        names = [f"{group.name}[{index}].{box.name}" for box in group.boxes if box not in shown]
+        return [(name, self.values[name]) for name in names if self.values.get(name)]
+
+    def hint(self, name: str, box: Box) -> str:
+        """Return the help under a box; under a profile its sizes."""
+        if box.name != "profile":
+            return box.hint
+        return pieces_boxes.sizes_in_words({"profile": self.values.get(name, "")}) or box.hint
+
+    def _cells(self, index: int) -> dict[str, str]:
+        return {box.name: self.values.get(f"pieces[{index}].{box.name}", "") for box in GROUPS["pieces"].boxes}
+
+    @property
+    def profiles(self) -> tuple[str, ...]:
+        """Names of the profiles to offer."""
+        return tuple(profiles())
+
     def more_open(self, group: Group, index: int) -> bool:
         """Say whether a row's seldom-needed boxes hold anything worth seeing at once."""
-        names = [(f"{group.name}[{index}].{box.name}", box) for box in group.boxes if box.more]
+        names = [(f"{group.name}[{index}].{box.name}", box) for box in self.boxes(group, index) if box.more]
         return any(name in self.messages for name, _ in names) or any(
             self.values.get(name) and not box.choices and box.name not in ("source", "note") for name, box in names
         )

@@ -62,6 +62,8 @@ def _basis(basis: Raw) -> str:
 
 def _pieces(pieces: Raw) -> str:
     def one(name: str, piece: Raw) -> str:
+        if piece.get("profile"):
+            return f"{name} {piece['profile']}"
         sizes = [str(piece[key]) for key in ("width", "depth") if piece.get(key)] or [str(piece.get("diameter", ""))]
         return f"{name} {_times(sizes)}".strip()
 

@@ -9,11 +9,11 @@ belongs to; the path of every box is noted while reading.
 from __future__ import annotations
 
 import re
-from collections.abc import Collection, Iterable, Mapping
+from collections.abc import Collection, Iterable, Mapping, Sequence
 
 from server.errors import Fault
-from server.web import form_fill
-from server.web.form_fields import GROUPS, LOAD_UNITS, SINGLES, VALUE_GROUPS, Group
+from server.web import form_fill, pieces_boxes
+from server.web.form_fields import GROUPS, LOAD_UNITS, SINGLES, VALUE_GROUPS, Box, Group
 from server.web.form_text import Reading, couples, is_number, pairs, points, schedule, split, with_unit
 
 FIELD = re.compile(r"(\w+)\[(\d{1,4})\]\.(\w+)")
@@ -210,9 +210,10 @@ def _read_section(filled: Mapping[str, Mapping[int, Row]], system: str, reading:
     for index, row in filled["pieces"].items():
         name = row.get("name", "")
         if _named(group, index, name, pieces, reading):
-            paths = _box_paths(group, index, f"{group.path}.{name}", reading)
+            shape = pieces_boxes.shape_of(row)
+            paths = _box_paths(group, index, f"{group.path}.{name}", reading, pieces_boxes.boxes_of(shape))
             reading.paths[f"{group.path}.{name}.at"] = paths["across"]
-            pieces[name] = _piece(row, paths, system, reading)
+            pieces[name] = _piece(row, shape, paths, system, reading)
     joints = [
         _joint(index, row, number, pieces, system, reading)
         for number, (index, row) in enumerate(filled["joints"].items())
@@ -220,18 +221,20 @@ def _read_section(filled: Mapping[str, Mapping[int, Row]], system: str, reading:
     reading.raw["section"] = {"pieces": pieces, "joints": joints}
 
 
-def _piece(row: Row, paths: Mapping[str, str], system: str, reading: Reading) -> dict[str, object]:
-    piece: dict[str, object] = {"shape": row.get("shape") or "rectangle"}
-    for box in GROUPS["pieces"].boxes:
+def _piece(row: Row, shape: str, paths: Mapping[str, str], system: str, reading: Reading) -> dict[str, object]:
+    piece: dict[str, object] = {"shape": shape}
+    if row.get("profile") and "profile" in paths:
+        piece |= pieces_boxes.sizes_of_profile(row, paths, system, reading)
+    for box in pieces_boxes.boxes_of(shape):
         text = row.get(box.name, "")
-        if not text or box.name in ("name", "shape", "across", "up"):
+        if not text or box.name in ("name", "shape", "profile", "across", "up"):
             continue
         if box.name == "points":
             piece["points"] = points(text, system, paths["points"], reading)
         elif box.name == "holes":
             piece["holes"] = [points(hole, system, paths["holes"], reading) for hole in text.split("|")]
         else:
-            piece[box.name] = with_unit(text, box.unit, system)
+            piece[box.place] = with_unit(text, box.unit, system)
     if row.get("across") or row.get("up"):
         for name in ("across", "up"):
             if not row.get(name):
@@ -409,10 +412,13 @@ def _named(group: Group, index: int, name: str, taken: Mapping[str, object], rea
     return False
 
 
-def _box_paths(group: Group, index: int, base: str, reading: Reading) -> dict[str, str]:
-    """Note the paths of a row's boxes; return the box names by their short name."""
-    names = {box.name: f"{group.name}[{index}].{box.name}" for box in group.boxes}
-    for box in group.boxes:
+def _box_paths(
+    group: Group, index: int, base: str, reading: Reading, boxes: Sequence[Box] | None = None
+) -> dict[str, str]:
+    """Note the paths of a row's boxes, or of those of them that count; return the box names by their short name."""
+    counted = group.boxes if boxes is None else boxes
+    names = {box.name: f"{group.name}[{index}].{box.name}" for box in counted}
+    for box in counted:
         place = box.place.lstrip(".")
         reading.paths.setdefault(f"{base}.{place}" if place else base, names[box.name])
     return names

@@ -174,3 +174,27 @@ def test_everything_works_without_javascript(page: Any) -> None:
     page.click("text=Run it again")
     page.wait_for_url("**/compare/1/2")
     assert "Nothing moved" in page.inner_text("main")
+
+
+def test_a_shape_brings_its_own_boxes_and_a_profile_its_sizes(page: Any) -> None:
+    """Choosing a shape shows its boxes without leaving the row; a profile fills the section with its sizes."""
+    fill_first_view(page)
+    page.click("#fold-pieces > summary")
+    page.select_option("[name='pieces[3].shape']", "tube")
+    page.wait_for_selector("[name='pieces[3].wall']")
+    assert page.evaluate("document.activeElement.name") == "pieces[3].shape"
+    assert page.input_value("[name='pieces[3].depth']") == "400"
+    page.fill("[name='pieces[3].profile']", "shs 100 x 4")
+    page.keyboard.press("Tab")
+    page.wait_for_selector("[name='pieces[3].depth']", state="detached")  # the profile says it
+    page.wait_for_selector("#now-pieces:has-text('SHS 100 x 4')")
+    assert page.evaluate("document.documentElement.scrollWidth <= 800")
+
+
+@pytest.mark.parametrize("page", [False], indirect=True)
+def test_without_javascript_a_button_shows_the_boxes_of_a_shape(page: Any) -> None:
+    page.click("#fold-pieces > summary")
+    page.select_option("[name='pieces[0].shape']", "round")
+    page.click("#row-pieces\\[0\\] noscript button, #row-pieces\\[0\\] button:has-text('Show the boxes')")
+    page.fill("[name='pieces[0].diameter']", "60")
+    assert page.locator("[name='pieces[0].width']").get_attribute("type") == "hidden"
