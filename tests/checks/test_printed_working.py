@@ -1,0 +1,104 @@
+"""Every step of every demo document is reached again from what is printed, by Python's own arithmetic.
+
+Nothing of ``server.working`` takes part in the arithmetic here: the printed line is a plain expression.
+"""
+
+from __future__ import annotations
+
+import json
+import math
+from collections.abc import Iterator
+from functools import cache
+from pathlib import Path
+from tempfile import TemporaryDirectory
+from typing import Any
+
+import numpy as np
+import pytest
+
+from server import checks, documents, library, storage
+from tests.checks.oracle_documents import DOCUMENTS
+
+SEED = Path(__file__).parents[2] / "seed_data"
+CALCULATOR = {
+    "__builtins__": {}, "sqrt": math.sqrt, "exp": math.exp, "log": math.log, "tanh": math.tanh, "cosh": math.cosh,
+    "sinh": math.sinh, "pi": math.pi, "abs": abs, "max": max, "min": min,
+}  # fmt: skip
+ON_ARRAYS = {
+    "__builtins__": {}, "sqrt": np.sqrt, "exp": np.exp, "log": np.log, "tanh": np.tanh, "cosh": np.cosh,
+    "sinh": np.sinh, "pi": np.pi, "abs": np.abs, "max": max, "min": min, "sum": np.sum,
+}  # fmt: skip
+LEFT_OUT = "... ("  # a sum of more than twelve terms prints its first two and its last
+
+
+def _demo_documents() -> Iterator[tuple[str, Any]]:
+    for file in sorted(SEED.glob("checks/*.json")):
+        if file.name != "wrong.json":
+            yield file.name, json.loads(file.read_text("utf-8"))
+    for job in json.loads((SEED / "jobs.json").read_text("utf-8")):
+        for check in job["checks"]:
+            for number, each in enumerate([check, *check.get("then", [])], 1):
+                yield f"{job['number']} {check['mark']} revision {number}", each["document"]
+
+
+@cache
+def results() -> dict[str, dict[str, Any]]:
+    """The results of all demo documents, filled from the demo shop's records, and of the oracle's documents."""
+    with TemporaryDirectory() as folder:
+        engine = storage.engine(Path(folder) / "book.db")
+        storage.migrate(engine)
+        with storage.reading(engine) as session:
+            for record in json.loads((SEED / "library.json").read_text("utf-8")):
+                library.add(session, **record, made_by="demo", reason="demo")
+            found = {name: checks.run(library.resolve(session, documents.read(raw))) for name, raw in _demo_documents()}
+        engine.dispose()
+    return found | {name: checks.run(documents.read(raw)) for name, raw in DOCUMENTS.items()}
+
+
+def steps() -> Iterator[tuple[str, dict[str, Any]]]:
+    """Every step with a formula, with where it stands."""
+    for name, result in results().items():
+        for step in result["steps"]:  # type: ignore[attr-defined]
+            if step["formula"]:
+                yield f"{name}, {step['group']}: {step['title']}", step
+
+
+def five(value: float) -> float:
+    """To the five significant digits that a printed value has; whole digits below a million are all printed."""
+    return float(f"{value:.4e}") if abs(value) < 1e5 or abs(value) >= 1e6 else float(f"{value:.0f}")
+
+
+def test_there_are_demo_documents_and_steps() -> None:
+    assert len(results()) - len(DOCUMENTS) >= 7
+    assert len(list(steps())) > 1000
+
+
+def test_the_printed_line_gives_the_printed_value() -> None:
+    wrong = []
+    for where, step in steps():
+        if LEFT_OUT in step["substituted"]:
+            continue
+        got = eval(step["substituted"], CALCULATOR)  # our own printed lines
+        if five(got) != five(step["value"]):
+            wrong.append(f"{where}: {step['substituted']} is {got!r}, printed {step['value']!r}")
+    assert wrong == []
+
+
+def test_the_printed_formula_with_its_values_gives_the_value() -> None:
+    wrong = []
+    for where, step in steps():
+        values = {name: np.asarray(each["value"], dtype=float) for name, each in step["values"].items()}
+        got = float(eval(step["formula"], ON_ARRAYS | values))  # our own formulas
+        if got != pytest.approx(step["value"], rel=1e-12, abs=1e-9):
+            wrong.append(f"{where}: {step['formula']} is {got!r}, printed {step['value']!r}")
+    assert wrong == []
+
+
+def test_few_sums_are_too_long_to_print_whole() -> None:
+    long = [where for where, step in steps() if LEFT_OUT in step["substituted"]]
+    assert long == []
+
+
+def test_every_step_says_its_unit_and_where_its_formula_is_from() -> None:
+    wrong = [where for where, step in steps() if not step["title"] or not step["symbol"] or not step["source"]]
+    assert wrong == []
