@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import json
+from collections.abc import Mapping
 from functools import cache
 from typing import Any
 
@@ -79,20 +80,26 @@ def describe(app: FastAPI) -> None:
 
 
 def _schemas() -> dict[str, Any]:
-    """Return the schemas by name, with the document's parts hoisted to where OpenAPI wants them."""
-    text = json.dumps(documents.schema()).replace("#/$defs/", "#/components/schemas/")
-    document: dict[str, Any] = json.loads(text)
-    parts: dict[str, Any] = document.pop("$defs", {})
+    """Return the schemas by name: one document for each kind of check, and their parts."""
+    found: dict[str, Any] = {}
+    kinds: dict[str, str] = {}
+    for kind in documents.KINDS:
+        name, parts = _hoisted(documents.schema(kind), found)
+        found |= parts
+        kinds[kind] = f"#/components/schemas/{name}"
     fault = {"type": "object", "properties": {"path": {"type": "string"}, "message": {"type": "string"}}}
     return {
-        **parts,
-        "Document": document,
+        **found,
+        "Document": {
+            "oneOf": [{"$ref": at} for at in kinds.values()],
+            "discriminator": {"propertyName": "kind", "mapping": kinds},
+        },
         "Result": {
             "type": "object",
             "required": ["format", "kind", "verdict"],
             "properties": {
                 "format": {"const": "bondwright/1"},
-                "kind": {"type": "string"},
+                "kind": {"enum": list(kinds)},
                 "verdict": {"enum": ["pass", "fail", "not proven"]},
                 "utilisation": {"type": ["number", "null"]},
                 "governing": {"type": "string"},
@@ -100,6 +107,32 @@ def _schemas() -> dict[str, Any]:
         },
         "Faults": {"type": "object", "properties": {"faults": {"type": "array", "items": fault}}},
     }
+
+
+def _hoisted(document: dict[str, Any], known: Mapping[str, Any]) -> tuple[str, dict[str, Any]]:
+    """A document's name, and its schema and parts by the names they get beside those already ``known``.
+
+    A part keeps its own name unless another kind of check has a different part of that name.
+    """
+    title, parts = document["title"], document.pop("$defs", {})
+    names = dict.fromkeys(parts, "")
+    for part in names:
+        taken = part in known and known[part] != _pointed(parts[part], {each: each for each in parts})
+        names[part] = f"{title}.{part}" if taken else part
+    return title, {names[part]: _pointed(schema, names) for part, schema in parts.items()} | {
+        title: _pointed(document, names)
+    }
+
+
+def _pointed(schema: Any, names: Mapping[str, str]) -> Any:
+    """The schema with its references led to where OpenAPI keeps schemas."""
+    if isinstance(schema, list):
+        return [_pointed(each, names) for each in schema]
+    if isinstance(schema, dict):
+        return {key: _pointed(value, names) for key, value in schema.items()}
+    if isinstance(schema, str) and schema.startswith("#/$defs/"):
+        return f"#/components/schemas/{names[schema.removeprefix('#/$defs/')]}"
+    return schema
 
 
 def _record(record: library.Record) -> dict[str, Any]:

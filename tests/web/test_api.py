@@ -9,6 +9,9 @@ from typing import Any
 import pytest
 from fastapi.testclient import TestClient
 
+from server import documents
+from server.web import api
+
 # Two planks glued flat on each other. By hand: V = 2 x 4000 / 2 = 4000 N, I = 100 x 200^3 / 12, S = 100 x 100 x 50,
 # flow = V S / I = 30 N/mm, stress = 30 / 100 = 0.3 MPa, resistance = 1.2 / 2 = 0.6 MPa (common practice: VQ/I).
 PLANKS: dict[str, Any] = {
@@ -202,6 +205,29 @@ class TestSchema:
         text = json.dumps(schema["components"]["schemas"])
         for name in ("deflection_limit", "rolling_shear", "partial_factor"):
             assert name in text
+
+    def test_every_kind_of_check_has_its_document(self, client: TestClient) -> None:
+        schemas = client.get("/openapi.json").json()["components"]["schemas"]
+        mapping = schemas["Document"]["discriminator"]["mapping"]
+        assert set(mapping) == set(documents.KINDS)
+        assert [each["$ref"] for each in schemas["Document"]["oneOf"]] == list(mapping.values())
+        for kind, at in mapping.items():
+            document = schemas[at.rpartition("/")[2]]
+            assert document["properties"]["kind"]["const"] == kind
+            assert set(document["properties"]) == set(documents.schema(kind)["properties"])
+        assert {"coupons", "statistic"} <= set(schemas["CouponsDocument"]["properties"])
+
+    def test_parts_of_one_name_that_differ_are_kept_apart(self) -> None:
+        known = {"Load": {"type": "string"}, "Same": {"type": "object"}}
+        document = {
+            "title": "Raft", "$defs": {"Load": {"type": "number"}, "Same": {"type": "object"}},
+            "properties": {"load": {"$ref": "#/$defs/Load"}, "same": [{"$ref": "#/$defs/Same"}]},
+        }  # fmt: skip
+        name, parts = api._hoisted(document, known)
+        assert (name, set(parts)) == ("Raft", {"Raft", "Raft.Load", "Same"})
+        assert parts["Raft"]["properties"] == {
+            "load": {"$ref": "#/components/schemas/Raft.Load"}, "same": [{"$ref": "#/components/schemas/Same"}],
+        }  # fmt: skip
 
     def test_every_reference_in_it_leads_somewhere(self, client: TestClient) -> None:
         schema = client.get("/openapi.json").json()
