@@ -40,8 +40,29 @@ class Model(BaseModel):
     model_config = ConfigDict(extra="forbid", frozen=True)
 
 
+class Lineage(Model):
+    """How one number of a library record was come by: the value's revision, and the coupons behind it."""
+
+    record: Line
+    revision: Revision
+    property: Line = ""
+    origin: Line = ""
+    status: Status
+    coupon_set: Line | None = None
+    coupon_set_revision: Revision | None = None
+    coupons: int | None = None
+    excluded: int | None = None
+    statistic: Line | None = None
+    approved_by: Line | None = None
+    approved_at: Line | None = None
+    outside_checker: Text | None = None
+
+
 class Values(Model):
-    """What materials, adhesives and fasteners have in common; ``record`` and ``revision`` say where they came from."""
+    """What materials, adhesives and fasteners have in common; ``record`` and ``revision`` say where they came from.
+
+    ``lineage``, by field ("shear_strength"), is what the library knows of a number; nobody types it.
+    """
 
     status: Status | None = None
     duration_factors: dict[Name, Reduction] = Field(default_factory=dict, max_length=50)
@@ -50,6 +71,13 @@ class Values(Model):
     note: Text = ""
     record: Line | None = None
     revision: Revision | None = None
+    lineage: dict[Name, Lineage] | None = None
+
+    @model_validator(mode="after")
+    def _lineage_of_a_record(self) -> Values:
+        if self.lineage is not None and self.record is None:
+            raise ValueError("'lineage' comes with a library record's values; leave it out.")
+        return self
 
     @model_validator(mode="after")
     def _revision_of_a_record(self) -> Values:

@@ -13,6 +13,7 @@ from server.jobs.shop import set_shop
 from server.paths import data_folder
 
 WHO = "demo"
+APPROVER = "M. Invented (demo)"
 REASON = "demo shop"
 
 
@@ -24,13 +25,21 @@ def fill(engine: Engine) -> bool:
             return False
         set_shop(session, **_read(seed / "shop.json"), made_by=WHO)
         for record in _read(seed / "library.json"):
-            library.add(session, **record, made_by=WHO, reason=REASON)
+            _add(session, record)
         for job in _read(seed / "jobs.json"):
             checks = job.pop("checks")
             made = headings.create(session, **job, made_by=WHO)
             for check in checks:
                 _save(session, made.id, check)
     return True
+
+
+def _add(session: storage.Session, record: dict[str, Any]) -> None:
+    """Add a seed record; what it says is approved gets the approval of an invented person, marked as invented."""
+    approved = record.get("status") == "approved"
+    made = library.add(session, **(record | {"status": "draft"} if approved else record), made_by=WHO, reason=REASON)
+    if approved:
+        library.approve_invented(session, made.key, who=APPROVER)
 
 
 def _save(session: storage.Session, job_id: int, check: dict[str, Any]) -> None:

@@ -14,7 +14,7 @@ from server import storage
 from server.errors import DocumentError, Fault
 from server.jobs.shop import DISPLAYS, PAPERS, shop
 from server.library import NotFoundError, fields
-from server.library.records import MOST
+from server.library.record import MOST
 from server.storage import Session
 from server.storage.tables import Check as CheckRow
 from server.storage.tables import CheckRevision as RevisionRow

@@ -11,7 +11,7 @@ from sqlalchemy.orm import aliased, undefer
 
 from server.jobs import headings
 from server.library import NotFoundError
-from server.library.records import MOST
+from server.library.record import MOST
 from server.storage import Session
 from server.storage.tables import Check as CheckRow
 from server.storage.tables import CheckRevision as RevisionRow

@@ -17,7 +17,7 @@ from server.jobs.content import bytes_hash, content_hash, leaves
 from server.jobs.revisions import SavedRevision, revision
 from server.jobs.shop import shop
 from server.library import NotFoundError, fields
-from server.library.records import MOST
+from server.library.record import MOST
 from server.storage import Session
 from server.storage.tables import Check as CheckRow
 from server.storage.tables import CheckRevision as RevisionRow

@@ -1,26 +1,62 @@
-"""The library: bonds, fasteners and materials as records with revisions, and the way from a reference to its values."""
+"""The library: records with revisions and the evidence behind them, and the way from a reference to its values."""
 
-from server.library.groups import GROUPS, STATUSES, Group
-from server.library.records import Found, NotFoundError, Record, add, edit, get, in_force, revisions, search
-from server.library.references import entry, resolve, standing
+from server.library.acts import approve, approve_invented, put_forward, set_status, waiting
+from server.library.coupon_sets import coupon_document, coupon_result, document_of
+from server.library.finding import search
+from server.library.groups import ALL, EVIDENCE, GROUPS, STATUSES, Group
+from server.library.obstacles import Obstacle, obstacles
+from server.library.properties import PROPERTIES, Property
+from server.library.questions import Question, answer, questions
+from server.library.reading import acts, get, in_force, revisions
+from server.library.record import Act, Approval, Factor, Found, Link, NotFoundError, Record
+from server.library.records import add, edit
+from server.library.references import assembled, entry, multiplication, resolve, standing
+from server.library.rules import Rules, rules, set_rules
 from server.library.uses import Use, where_used
 
 __all__ = [
+    "ALL",
+    "EVIDENCE",
     "GROUPS",
+    "PROPERTIES",
     "STATUSES",
+    "Act",
+    "Approval",
+    "Factor",
     "Found",
     "Group",
+    "Link",
     "NotFoundError",
+    "Obstacle",
+    "Property",
+    "Question",
     "Record",
+    "Rules",
     "Use",
+    "acts",
     "add",
+    "answer",
+    "approve",
+    "approve_invented",
+    "assembled",
+    "coupon_document",
+    "coupon_result",
+    "document_of",
     "edit",
     "entry",
     "get",
     "in_force",
+    "multiplication",
+    "obstacles",
+    "put_forward",
+    "questions",
     "resolve",
     "revisions",
+    "rules",
     "search",
+    "set_rules",
+    "set_status",
     "standing",
+    "waiting",
     "where_used",
 ]

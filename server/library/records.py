@@ -1,67 +1,44 @@
-"""Records and their revisions: add, edit, read, search. An edit adds a revision; every older one stays readable."""
+"""Records are added and edited here. An edit adds a revision; every older one stays readable."""
 
 from __future__ import annotations
 
-import re
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 from datetime import datetime
 from typing import Any
 
-from sqlalchemy import ColumnElement, Row, Select, column, func, literal_column, or_, select, table, text
-from sqlalchemy.orm import aliased
+from sqlalchemy import select
 
 from server import storage
-from server.errors import DocumentError, Fault, JointError
-from server.library import fields
-from server.library.groups import DECISIVE, GROUPS, STATUSES, Group
-from server.library.nearest import nearest_words
-from server.library.values import check_entry
+from server.errors import DocumentError, Fault
+from server.library import fields, heads
+from server.library.groups import ALL, STATUSES, Group
+from server.library.links import Given, pinned_records, read_chain, read_links
+from server.library.reading import get, is_key
+from server.library.record import Factor, Record
+from server.library.values import check_entry, complete_value
 from server.storage import Session
+from server.storage.evidence_tables import LinkRow
 from server.storage.tables import Record as RecordRow
 from server.storage.tables import RecordRevision as RevisionRow
-from server.storage.tables import compact
 
-_KEY = re.compile(r"[A-Za-z0-9](?:[A-Za-z0-9._-]{0,38}[A-Za-z0-9])?")
-MOST = 1_000_000_000  # beyond any revision or page; SQLite refuses numbers of more than 64 bits
-_SEARCH = table("record_search", column("rowid"), column("record_search"))
-
-
-class NotFoundError(JointError):
-    """There is no such record, revision, job or check."""
+Chain = Sequence[Factor | Mapping[str, Any]]
 
 
 @dataclass(frozen=True)
-class Record:
-    """One revision of a record.
+class Draft:
+    """What a revision is to hold, as it was given."""
 
-    ``newest`` is the record's last revision; ``in_force`` the one that a reference without a revision takes, with its
-    status (None: no revision was ever approved, put on hold, withdrawn or superseded).
-    """
-
-    key: str
-    group: str
-    revision: int
     name: str
-    status: str
     values: Mapping[str, Any]
-    details: Mapping[str, str]
-    source: str
-    note: str
-    made_by: str
-    reason: str
-    created_at: str
-    newest: int
-    in_force: int | None
-    in_force_status: str | None
-
-
-@dataclass(frozen=True)
-class Found:
-    """One page of a search, and how many there are in all."""
-
-    records: Sequence[Record]
-    total: int
+    source: str = ""
+    status: str = "draft"
+    note: str = ""
+    details: Mapping[str, str] | None = None
+    links: Mapping[str, Given] | None = None
+    chain: Chain | None = None
+    made_by: str = ""
+    reason: str = ""
 
 
 def add(
@@ -75,32 +52,37 @@ def add(
     status: str = "draft",
     note: str = "",
     details: Mapping[str, str] | None = None,
+    links: Mapping[str, Given] | None = None,
+    chain: Chain | None = None,
     made_by: str = "",
     reason: str = "",
     now: datetime | None = None,
 ) -> Record:
-    """Add a record as revision 1; without ``key`` the next free one of its group (B-001, F-001, M-001).
+    """Add a record as revision 1; without ``key`` the next free one of its group (B-001, V-001, T-001).
+
+    ``links`` names the revisions it stands on by role, ``chain`` the factors of a bond, fastener or material.
 
     Raises
     ------
     DocumentError
-        With every fault: fields as named here, values as ``values.shear_strength``, details as ``details.product``.
+        With every fault: fields as named here, values as ``values.shear_strength``, details as ``details.product``,
+        links as ``links.product``, factors as ``chain[0].source``.
     """
-    if group not in GROUPS:
-        raise DocumentError([Fault("group", f"{group[:60]!r} is not a group; choose one of {', '.join(GROUPS)}.")])
-    words = {"name": name, "source": source, "status": status, "note": note, "made_by": made_by, "reason": reason}
+    if group not in ALL:
+        raise DocumentError([Fault("group", f"{group[:60]!r} is not a group; choose one of {', '.join(ALL)}.")])
+    draft = Draft(name, values, source, status, note, details, links, chain, made_by, reason)
     key = key.strip()
     faults = [] if not key or is_key(key) else [_bad_key(key)]
-    content = _checked(GROUPS[group], words, values, details or {}, faults)
+    content = checked(session, ALL[group], draft, faults)
     at = storage.utc_text(now)
     with storage.write(session):
-        key = key or _next_key(session, GROUPS[group])
+        key = key or _next_key(session, ALL[group])
         if session.scalar(select(RecordRow.id).where(RecordRow.key == key)) is not None:
             raise DocumentError([Fault("key", f"{key} is taken; choose another key, or edit that record.")])
         row = RecordRow(key=key, group=group, created_at=at)
         session.add(row)
         session.flush()
-        _store(session, row, 1, content, at)
+        store(session, row, 1, content, at)
     return get(session, key)
 
 
@@ -114,167 +96,103 @@ def edit(
     status: str | None = None,
     note: str | None = None,
     details: Mapping[str, str] | None = None,
+    links: Mapping[str, Given] | None = None,
+    chain: Chain | None = None,
     based_on: int | None = None,
     made_by: str = "",
     reason: str = "",
     now: datetime | None = None,
 ) -> Record:
-    """Add a revision; what is left out stays as in the newest one.
+    """Add a revision; what is left out stays as in the newest one, except that an approval never passes on.
 
     ``based_on`` is the revision that the person had before them: if another was saved meanwhile, nothing is.
     """
     with storage.write(session):
         old = get(session, key)
         if based_on is not None and based_on != old.newest:
-            raise DocumentError(
-                [
-                    Fault(
-                        "based_on",
-                        f"{old.key} was changed meanwhile: revision {old.newest} was saved, yours started from "
-                        f"revision {based_on}. Look at revision {old.newest} and enter your change again.",
-                    )
-                ]
-            )
-        words = {
-            "name": old.name if name is None else name,
-            "source": old.source if source is None else source,
-            "status": old.status if status is None else status,
-            "note": old.note if note is None else note,
-            "made_by": made_by,
-            "reason": reason,
-        }
-        content = _checked(
-            GROUPS[old.group],
-            words,
-            old.values if values is None else values,
-            old.details if details is None else details,
-            [],
+            raise DocumentError([_changed_meanwhile(old, based_on)])
+        draft = Draft(
+            name=old.name if name is None else name,
+            values=old.values if values is None else values,
+            source=old.source if source is None else source,
+            status=_next_status(old) if status is None else status,
+            note=old.note if note is None else note,
+            details=old.details if details is None else details,
+            links=old.links if links is None else links,
+            chain=old.chain if chain is None else chain,
+            made_by=made_by,
+            reason=reason,
         )
+        content = checked(session, ALL[old.group], draft, [])
         row = session.scalars(select(RecordRow).where(RecordRow.key == key)).one()
-        _store(session, row, old.newest + 1, content, storage.utc_text(now))
+        store(session, row, old.newest + 1, content, storage.utc_text(now))
     return get(session, key)
 
 
-def get(session: Session, key: str, revision: int | None = None) -> Record:
-    """Return a revision of record ``key``, the newest without ``revision``; NotFoundError where there is none."""
-    query = _revisions().where(RecordRow.key == _plausible(session, key))
-    query = query.where(RevisionRow.n == (_newest() if revision is None else min(max(revision, 0), MOST)))
-    row = session.execute(query).one_or_none()
-    if row is None:
-        newest = session.scalar(select(func.max(RevisionRow.n)).join(RecordRow).where(RecordRow.key == key))
-        if newest is not None:
-            raise NotFoundError(f"{key} has no revision {revision}; it has revisions 1 to {newest}.")
-        raise _no_record(session, key)
-    return _record(row)
+def _next_status(old: Record) -> str:
+    """A new revision is work in progress: what was approved, or a value put forward, begins again as a draft."""
+    return "draft" if old.group == "values" or old.status == "approved" or old.put_forward else old.status
 
 
-def revisions(session: Session, key: str) -> list[Record]:
-    """Return every revision of record ``key``, newest first."""
-    query = _revisions().where(RecordRow.key == _plausible(session, key))
-    found = [_record(row) for row in session.execute(query)]
-    if not found:
-        raise _no_record(session, key)
-    return sorted(found, key=lambda record: -record.revision)
-
-
-def in_force(session: Session, key: str) -> Record | None:
-    """Return the revision that a reference without a revision takes; None where none was ever approved or stopped."""
-    newest = get(session, key)
-    return None if newest.in_force is None else get(session, key, newest.in_force)
-
-
-def search(
-    session: Session,
-    text: str = "",
-    *,
-    group: str | None = None,
-    status: str | None = None,
-    limit: int = 50,
-    offset: int = 0,
-) -> Found:
-    """Find records by words of their key, name, source, note, details or values, each from its beginning.
-
-    Each record comes once, as its newest revision. ``status`` finds records whose newest revision, or whose revision
-    in force, has it: an approved bond with a newer draft is found as both.
-    """
-    conditions: list[ColumnElement[bool]] = [RevisionRow.n == _newest()]
-    if group:
-        conditions.append(RecordRow.group == group)
-    if status:
-        conditions.append(or_(RevisionRow.status == status, _in_force(RevisionRow.status) == status))
-    terms = storage.search_terms(text)
-    unknown = (group and group not in GROUPS) or (status and status not in STATUSES)
-    if unknown or (text.strip() and terms is None):
-        return Found((), 0)
-    order: list[Any] = [RecordRow.key]
-    if terms is not None:
-        conditions += [_SEARCH.c.rowid == RecordRow.id, _SEARCH.c.record_search.op("MATCH")(terms)]
-        order = [literal_column("record_search.rank"), RecordRow.key]
-    total = session.scalar(select(func.count()).select_from(RecordRow).join(RevisionRow).where(*conditions)) or 0
-    query = _revisions().where(*conditions).order_by(*order).limit(min(max(limit, 0), 500))
-    query = query.offset(min(max(offset, 0), MOST))
-    return Found(tuple(_record(row) for row in session.execute(query)), total)
-
-
-def _newest() -> Any:
-    other = aliased(RevisionRow)
-    return select(func.max(other.n)).where(other.record_id == RecordRow.id).correlate(RecordRow).scalar_subquery()
-
-
-def _in_force(what: Any = RevisionRow.n) -> Any:
-    """The number, or another column, of the last revision whose status decides."""
-    other = aliased(RevisionRow)
-    mine = (other.record_id == RecordRow.id) & other.status.in_(DECISIVE)
-    chosen = select(getattr(other, what.key)).where(mine).order_by(other.n.desc()).limit(1)
-    return chosen.correlate(RecordRow).scalar_subquery()
-
-
-def _revisions() -> Select[RecordRow, RevisionRow, int, int | None, str | None]:
-    return select(RecordRow, RevisionRow, _newest(), _in_force(), _in_force(RevisionRow.status)).join(RevisionRow)
-
-
-def _record(row: Row[RecordRow, RevisionRow, int, int | None, str | None]) -> Record:
-    record, revision, newest, in_force, in_force_status = row
-    return Record(
-        key=record.key,
-        group=record.group,
-        revision=revision.n,
-        name=revision.name,
-        status=revision.status,
-        values=revision.entry,
-        details=revision.details,
-        source=revision.source,
-        note=revision.note,
-        made_by=revision.made_by,
-        reason=revision.reason,
-        created_at=revision.created_at,
-        newest=newest,
-        in_force=in_force,
-        in_force_status=in_force_status,
+def _changed_meanwhile(old: Record, based_on: int) -> Fault:
+    return Fault(
+        "based_on",
+        f"{old.key} was changed meanwhile: revision {old.newest} was saved, yours started from revision {based_on}. "
+        f"Look at revision {old.newest} and enter your change again.",
     )
 
 
-def _checked(
-    group: Group, words: Mapping[str, str], values: Mapping[str, Any], details: Mapping[str, str], faults: list[Fault]
-) -> dict[str, Any]:
+def checked(session: Session, group: Group, draft: Draft, faults: list[Fault]) -> dict[str, Any]:
     """Return the columns of a revision, or raise with every fault."""
     content: dict[str, Any] = {
-        "name": fields.line(faults, "name", words["name"], needed="what the shop calls it"),
-        "status": fields.choice(faults, "status", words["status"], STATUSES),
-        "source": fields.prose(faults, "source", words["source"]),
-        "note": fields.prose(faults, "note", words["note"]),
-        "made_by": fields.line(faults, "made_by", words["made_by"]),
-        "reason": fields.prose(faults, "reason", words["reason"]),
-        "details": _details(faults, group, details),
-        "entry": check_entry(faults, group, values),
+        "name": fields.line(faults, "name", draft.name, needed="what the shop calls it"),
+        "status": _status(faults, group, draft.status),
+        "source": fields.prose(faults, "source", draft.source),
+        "note": fields.prose(faults, "note", draft.note),
+        "made_by": fields.line(faults, "made_by", draft.made_by),
+        "reason": fields.prose(faults, "reason", draft.reason),
+        "details": _details(faults, group, draft.details or {}),
     }
-    if content["status"] == "approved" and not content["source"]:
-        faults.append(
-            Fault("source", "The source is empty; name the test report or standard before the values are approved.")
+    links = read_links(session, faults, group, draft.links or {})
+    pinned = pinned_records(links)
+    sound = len(faults)
+    content["entry"] = check_entry(faults, group, draft.values, tuple(pinned))
+    if group.name == "values" and len(faults) == sound and content["entry"]:
+        behind = links["set"][1] if "set" in links else None
+        content["entry"], content["details"] = complete_value(
+            faults, content["entry"], content["details"], content["source"], behind
         )
+    content["chain"] = _chain(session, faults, group, draft, content["entry"], tuple(pinned.values()))
     if faults:
         raise DocumentError(faults)
+    content["links"] = {role: [target.key, target.revision] for role, (target, _) in links.items()}
     return content
+
+
+def _chain(
+    session: Session,
+    faults: list[Fault],
+    group: Group,
+    draft: Draft,
+    entry: Mapping[str, Any],
+    pinned: Sequence[Record],
+) -> list[dict[str, Any]]:
+    if draft.chain and not group.section:
+        faults.append(Fault("chain", f"Factors belong to a bond, a fastener or a material, not to {group.one}."))
+        return []
+    return read_chain(session, faults, draft.chain or (), entry, pinned)
+
+
+def _status(faults: list[Fault], group: Group, status: str) -> str:
+    """A status somebody may enter: never "approved", and of a value only that it is a draft."""
+    fields.choice(faults, "status", status, STATUSES)
+    if status == "approved":
+        message = "Nobody enters 'approved': save the record as a draft, then have another person approve it."
+        faults.append(Fault("status", message))
+    elif group.name == "values" and status != "draft" and status in STATUSES:
+        message = "A value starts as a draft; its number of coupons decides what it counts as once it is put forward."
+        faults.append(Fault("status", message))
+    return status
 
 
 def _details(faults: list[Fault], group: Group, details: Mapping[str, str]) -> dict[str, str]:
@@ -304,20 +222,18 @@ def _next_key(session: Session, group: Group) -> str:
     return f"{group.prefix}-{max(numbers, default=0) + 1:03d}"
 
 
-def _store(session: Session, row: RecordRow, n: int, content: Mapping[str, Any], at: str) -> None:
-    session.add(RevisionRow(record_id=row.id, n=n, created_at=at, **content))
+def store(session: Session, row: RecordRow, n: int, content: Mapping[str, Any], at: str) -> RevisionRow:
+    """Write a revision with all that is derived from it; called inside ``storage.write``."""
+    revision = RevisionRow(record_id=row.id, n=n, created_at=at, **content)
+    session.add(revision)
     session.flush()
-    words = [*content["details"].values(), content["source"], content["note"], content["made_by"]]
-    session.execute(text("DELETE FROM record_search WHERE rowid = :id"), {"id": row.id})
-    session.execute(
-        text("INSERT INTO record_search (rowid, key, name, words) VALUES (:id, :key, :name, :words)"),
-        {
-            "id": row.id,
-            "key": row.key,
-            "name": content["name"],
-            "words": "\n".join([*words, compact(content["entry"])]),
-        },
+    session.add_all(
+        LinkRow(record_revision_id=revision.id, role=role, target_key=key, target_revision=target)
+        for role, key, target in _link_rows(content)
     )
+    session.flush()
+    heads.refresh(session, row.id)
+    heads.index(session, row, revision)
     storage.note(
         session,
         at=at,
@@ -326,23 +242,15 @@ def _store(session: Session, row: RecordRow, n: int, content: Mapping[str, Any],
         subject=f"record {row.key}",
         detail={"revision": n, "status": content["status"], "reason": content["reason"]},
     )
+    return revision
 
 
-def is_key(text: str) -> bool:
-    """Return whether ``text`` can be a record's key.
-
-    >>> is_key("B-001"), is_key("B 001")
-    (True, False)
-    """
-    return _KEY.fullmatch(text) is not None
-
-
-def _plausible(session: Session, key: str) -> str:
-    """Return ``key`` if it can be one at all: what cannot may not even be text the database takes."""
-    if not is_key(key):
-        raise _no_record(session, key)
-    return key
-
-
-def _no_record(session: Session, key: str) -> NotFoundError:
-    return NotFoundError(f"There is no record {key[:60]!r} in the library. {nearest_words(session, key)}")
+def _link_rows(content: Mapping[str, Any]) -> set[tuple[str, str, int]]:
+    """The links of a revision: as given, the sets behind its factors, and the lots that its coupons name."""
+    found = {(role, key, n) for role, (key, n) in content["links"].items()}
+    for factor in content["chain"]:
+        pair = [factor[role] for role in ("dry", "conditioned") if role in factor]
+        found |= {(f"factor:{factor['name']}", key, n) for key, n in pair}
+    coupons = content["entry"].get("coupons", ())
+    lots = {str(each.get("lot", "")).strip().casefold() for each in coupons if isinstance(each, Mapping)}
+    return found | {("lot", lot, 0) for lot in lots if lot}

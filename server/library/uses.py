@@ -7,7 +7,8 @@ from dataclasses import dataclass
 from sqlalchemy import func, select
 from sqlalchemy.orm import aliased
 
-from server.library.records import MOST, is_key
+from server.library.reading import is_key
+from server.library.record import MOST
 from server.storage import Session
 from server.storage.tables import Check, CheckRevision, CheckValue, Job
 

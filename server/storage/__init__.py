@@ -1,6 +1,6 @@
 """The record book on disk: engine and sessions, migrations, the trail, search terms, backup."""
 
-from server.storage import people_tables  # so that Base knows every table
+from server.storage import evidence_tables, people_tables  # so that Base knows every table
 from server.storage.copies import backup, check_whole, restore
 from server.storage.search import search_terms
 from server.storage.sessions import Session, StorageError, engine, plain_words, reading, write, writing
@@ -14,6 +14,7 @@ __all__ = [
     "backup",
     "check_whole",
     "engine",
+    "evidence_tables",
     "lines",
     "migrate",
     "note",

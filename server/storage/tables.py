@@ -140,6 +140,8 @@ class RecordRevision(Base):
     status: Mapped[str] = mapped_column(Text)
     entry: Mapped[dict[str, Any]] = mapped_column(Json)
     details: Mapped[dict[str, str]] = mapped_column(Json)
+    links: Mapped[dict[str, Any]] = mapped_column(Json)
+    chain: Mapped[list[Any]] = mapped_column(Json)
     source: Mapped[str] = mapped_column(Text)
     note: Mapped[str] = mapped_column(Text)
     made_by: Mapped[str] = mapped_column(Text)

@@ -31,7 +31,12 @@ def list_records(
     chosen = group if group in GROUPS else None
     offset = whole(start) or 0
     found = library.search(
-        session, q, group=chosen, status=status if status in STATUSES else None, limit=_A_PAGE, offset=offset
+        session,
+        q,
+        group=chosen or tuple(GROUPS),
+        status=status if status in STATUSES else None,
+        limit=_A_PAGE,
+        offset=offset,
     )
     by_group = {name: [record for record in found.records if record.group == name] for name in GROUPS}
     return page(
@@ -78,6 +83,7 @@ def create_record(request: Request, session: DbSession, values: FormValues, grou
 def show_record(request: Request, session: DbSession, key: str, revision: str = "") -> Response:
     """Show one revision of a record, the newest unless one is named, with all its revisions and its uses."""
     record = library.get(session, key, whole(revision))
+    _known(record.group)
     group = GROUPS[record.group]
     return page(
         request,
@@ -96,6 +102,7 @@ def show_record(request: Request, session: DbSession, key: str, revision: str = 
 def edit_record(request: Request, session: DbSession, key: str) -> Response:
     """Show the form filled with the newest revision."""
     record = library.get(session, key)
+    _known(record.group)
     return _form(request, record.group, record_form.fill(record, shop_units(session)), record=record)
 
 
@@ -103,7 +110,7 @@ def edit_record(request: Request, session: DbSession, key: str) -> Response:
 def save_record(request: Request, session: DbSession, values: FormValues, key: str) -> Response:
     """Save a new revision, or give the form back as typed."""
     old = library.get(session, key)
-    typed = record_form.read(old.group, values)
+    typed = record_form.read(_known(old.group), values)
     if typed.faults:
         return _form(request, old.group, typed.text, typed.faults, old)
     try:
@@ -144,7 +151,7 @@ def _form(
         hint=record_form.hint,
         unit=partial(shown_unit, system=forms.system_of(values)),
         details=GROUPS[group].details,
-        statuses=STATUSES,
+        statuses=[status for status in STATUSES if status != "approved"],
     )
 
 

@@ -95,7 +95,7 @@ def fill(record: Record, system: str) -> dict[str, str]:
             "key": record.key,
             "based_on": str(record.revision),
             "name": record.name,
-            "status": record.status,
+            "status": "draft" if record.status == "approved" else record.status,
             "source": record.source,
             "note": record.note,
             "made_by": "",

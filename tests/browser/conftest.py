@@ -11,10 +11,11 @@ from typing import Any
 import pytest
 import uvicorn
 
+from server import library
 from server.app import create_app
 from server.jobs import demo
 from server.settings import Settings
-from server.storage import engine, migrate
+from server.storage import engine, migrate, reading
 
 AXE = (Path(__file__).parent / "vendor" / "axe.min.js").read_text(encoding="utf-8")
 
@@ -33,8 +34,26 @@ def running(settings: Settings) -> Iterator[str]:
 
 
 @pytest.fixture(scope="module")
-def address(tmp_path_factory: pytest.TempPathFactory) -> Iterator[str]:
-    yield from running(Settings(data=tmp_path_factory.mktemp("book")))
+def settings(tmp_path_factory: pytest.TempPathFactory) -> Settings:
+    return Settings(data=tmp_path_factory.mktemp("book"))
+
+
+@pytest.fixture(scope="module")
+def address(settings: Settings) -> Iterator[str]:
+    yield from running(settings)
+
+
+@pytest.fixture(scope="module")
+def approve(settings: Settings, address: str) -> Callable[[str], None]:
+    """Let an invented person approve a record, past the screens: for tests about something else."""
+
+    def act(key: str) -> None:
+        book = engine(settings.records)
+        with reading(book) as session:
+            library.approve_invented(session, key, who="A. Invented")
+        book.dispose()
+
+    return act
 
 
 @pytest.fixture(scope="module")

@@ -13,6 +13,7 @@ from typing import Any
 
 from server import ENGINE, jobs, library, storage
 from server.storage import Session
+from tests.library.samples import put
 
 FOLDER = Path(__file__).parents[1] / "records"
 NOW = datetime(2026, 12, 1, 12, tzinfo=UTC)
@@ -124,7 +125,7 @@ def main() -> None:
 
 def _box_beam(session: Session) -> int:
     told = {"source": INVENTED, "status": "approved", "now": NOW}
-    library.add(
+    put(
         session,
         group="materials",
         name="Softwood, class as marked",
@@ -139,7 +140,7 @@ def _box_beam(session: Session) -> int:
         },
         **told,  # type: ignore[arg-type]
     )
-    library.add(
+    put(
         session,
         group="bonds",
         name="Melamine on softwood and ply",

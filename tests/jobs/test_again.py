@@ -11,7 +11,7 @@ from server.errors import DocumentError
 from server.jobs import SavedRevision
 from server.storage import Session
 from tests.jobs.samples import quick_sheet, save, start_job
-from tests.library.samples import add_bond, document
+from tests.library.samples import add_bond, change, document
 
 
 def again(session: Session, saved: SavedRevision) -> SavedRevision:
@@ -25,7 +25,8 @@ def differences(old: SavedRevision, new: SavedRevision) -> dict[str, tuple[str, 
 def test_an_open_reference_takes_todays_revision(session: Session) -> None:
     add_bond(session)
     old = save(session, start_job(session), document())
-    library.edit(session, "B-001", values={"shear_strength": "0.2 MPa", "duration_factors": {"long-term": 0.6}})
+    values = {"shear_strength": "0.2 MPa", "duration_factors": {"long-term": 0.6}}
+    change(session, "B-001", status="approved", values=values)
     new = again(session, old)
     assert (new.check_id, new.revision, new.follows_id) == (old.check_id, 2, old.id)
     assert new.document == old.document
@@ -50,7 +51,7 @@ def test_an_open_reference_takes_todays_revision(session: Session) -> None:
 def test_a_named_revision_takes_todays_too_and_the_document_says_so(session: Session) -> None:
     add_bond(session)
     old = save(session, start_job(session), document(record="B-001", revision=1))
-    library.edit(session, "B-001", note="n")
+    change(session, "B-001", status="approved", note="n")
     new = again(session, old)
     assert new.document["adhesives"]["glue"] == {"record": "B-001", "revision": 2}
     assert old.document["adhesives"]["glue"] == {"record": "B-001", "revision": 1}
@@ -98,7 +99,7 @@ def test_what_was_given_is_compared_as_typed(session: Session) -> None:
 def test_a_record_that_can_no_longer_be_filled_is_a_fault_and_saves_nothing(session: Session) -> None:
     add_bond(session)
     old = save(session, start_job(session), document())
-    library.edit(session, "B-001", values={"shear_modulus": 800})
+    change(session, "B-001", status="approved", values={"shear_modulus": 800})
     new = again(session, old)  # a strength that is gone is said, not refused
     assert new.verdict == "not proven"
     assert differences(old, new)["adhesive glue: shear strength"][1] == "–"

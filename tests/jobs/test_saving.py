@@ -16,7 +16,7 @@ from server.library import NotFoundError
 from server.sheets import SheetData
 from server.storage import Session
 from tests.jobs.samples import NOON, quick_sheet, save, start_job
-from tests.library.samples import add_bond, document
+from tests.library.samples import add_bond, change, document
 
 
 def count(session: Session) -> int:
@@ -121,7 +121,7 @@ def test_an_old_revision_never_changes(session: Session) -> None:
     job = start_job(session)
     old = save(session, job, document())
     pdf = jobs.pdf_bytes(session, old.id)
-    library.edit(session, "B-001", values={"shear_strength": "0.1 MPa"})
+    change(session, "B-001", status="approved", values={"shear_strength": "0.1 MPa"})
     jobs.edit(session, job.id, title="other", customer="other", paper="Letter")
     jobs.set_shop(session, name="other")
     save(session, job, document(), check_id=old.check_id, mark="other")
@@ -311,7 +311,7 @@ def test_where_a_record_is_used(session: Session) -> None:
     add_bond(session)
     job = start_job(session)
     first = save(session, job, document(), mark="RB1")
-    library.edit(session, "B-001", note="n")
+    change(session, "B-001", status="approved", note="n")
     second = save(session, job, document(), check_id=first.check_id)
     save(session, job)  # typed values: no record
     found = library.where_used(session, "b-001")

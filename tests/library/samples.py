@@ -11,6 +11,7 @@ from server.storage import Session
 
 BOND_VALUES = {"shear_strength": "4.2 MPa", "duration_factors": {"long-term": 0.6}}
 SOURCE = "test report T-17 (invented)"
+APPROVER = "A. Invented"
 
 
 def add_bond(session: Session, status: str = "approved", **more: Any) -> Record:
@@ -22,7 +23,26 @@ def add_bond(session: Session, status: str = "approved", **more: Any) -> Record:
         "status": status,
         "details": {"product": "Grünleim 7", "surface_a_material": "spruce", "test_method": "lap coupons, EN 302-1"},
     }
-    return library.add(session, **(fields | more))
+    return put(session, **(fields | more))
+
+
+def put(session: Session, *, status: str = "draft", **fields: Any) -> Record:
+    """Add a record of the status wanted; an approval is an invented one."""
+    if status != "approved":
+        return library.add(session, status=status, **fields)
+    return approve(session, library.add(session, **fields))
+
+
+def change(session: Session, key: str, *, status: str | None = None, **fields: Any) -> Record:
+    """Edit a record into the status wanted; an approval is an invented one."""
+    if status != "approved":
+        return library.edit(session, key, status=status, **fields)
+    return approve(session, library.edit(session, key, status="draft", **fields))
+
+
+def approve(session: Session, record: Record) -> Record:
+    """Let an invented person approve a revision."""
+    return library.approve_invented(session, record.key, who=APPROVER, revision=record.revision)
 
 
 DOCUMENT: dict[str, Any] = {

@@ -10,7 +10,7 @@ from server import library, storage
 from server.errors import DocumentError
 from server.library import NotFoundError
 from server.storage import Session
-from tests.library.samples import BOND_VALUES, SOURCE, add_bond
+from tests.library.samples import APPROVER, BOND_VALUES, SOURCE, add_bond, approve
 
 
 def faults(call: Any, *arguments: Any, **named: Any) -> dict[str, str]:
@@ -22,6 +22,7 @@ def faults(call: Any, *arguments: Any, **named: Any) -> dict[str, str]:
 def test_a_record_comes_back_as_typed(session: Session) -> None:
     added = add_bond(session, made_by="Shop office", reason="first tests", now=datetime(2026, 12, 1, 9, tzinfo=UTC))
     assert added == library.get(session, "B-001")
+    assert added.approval is not None
     assert added.values == BOND_VALUES  # "4.2 MPa" stays text
     assert (added.key, added.revision, added.newest, added.in_force) == ("B-001", 1, 1, 1)
     assert added.created_at == "2026-12-01T09:00:00Z"
@@ -123,12 +124,15 @@ def test_values_are_bounded(session: Session) -> None:
 
 
 def test_an_approved_record_names_its_source(session: Session) -> None:
-    assert "test report or standard" in faults(add_bond, session, source=" ")["source"]
-    assert add_bond(session, source="", status="draft").status == "draft"
+    add_bond(session, source="", status="draft")
+    assert "test report or standard" in faults(approve, session, library.get(session, "B-001"))["source"]
 
 
 def test_an_unknown_group_or_record_is_told(session: Session) -> None:
-    assert "bonds, fasteners, materials" in faults(library.add, session, group="glues", name="x", values={})["group"]
+    assert (
+        "bonds, fasteners, materials, products"
+        in faults(library.add, session, group="glues", name="x", values={})["group"]
+    )
     add_bond(session)
     with pytest.raises(NotFoundError, match="Nearest: B-001"):
         library.get(session, "B-01")
@@ -146,7 +150,8 @@ def test_the_trail_tells_of_every_revision(session: Session) -> None:
     told = storage.lines(session, subject="record B-001")
     assert [(line.who, line.what, line.detail["status"]) for line in told] == [
         ("Ben", "record edited", "on hold"),
-        ("Anna", "record added", "approved"),
+        (APPROVER, "bond approved", "approved"),
+        ("Anna", "record added", "draft"),
     ]
 
 

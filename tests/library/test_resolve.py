@@ -9,7 +9,7 @@ import pytest
 from server import documents, library
 from server.errors import DocumentError
 from server.storage import Session
-from tests.library.samples import SOURCE, add_bond, document
+from tests.library.samples import SOURCE, add_bond, change, document, put
 
 
 def filled(session: Session, **adhesive: Any) -> documents.Adhesive:
@@ -33,7 +33,7 @@ def revisions(session: Session, *statuses: str) -> None:
         if n == 1:
             add_bond(session, status=status, values=values)
         else:
-            library.edit(session, "B-001", status=status, values=values)
+            change(session, "B-001", status=status, values=values)
 
 
 def test_a_reference_brings_values_and_where_they_are_from(session: Session) -> None:
@@ -46,10 +46,8 @@ def test_a_reference_brings_values_and_where_they_are_from(session: Session) -> 
 
 def test_every_section_is_filled(session: Session) -> None:
     add_bond(session)
-    library.add(session, group="materials", name="s", values={"E": "11 GPa"}, source="x", status="approved")
-    library.add(
-        session, group="fasteners", name="f", values={"shear_resistance": "1 kN"}, source="x", status="approved"
-    )
+    put(session, group="materials", name="s", values={"E": "11 GPa"}, source="x", status="approved")
+    put(session, group="fasteners", name="f", values={"shear_resistance": "1 kN"}, source="x", status="approved")
     raw = document()
     raw["materials"]["spruce"] = {"record": "M-001"}
     raw["fasteners"] = {"screw": {"record": "F-001"}}
@@ -130,7 +128,7 @@ def test_an_unknown_key_names_its_neighbours(session: Session) -> None:
 
 
 def test_a_record_of_another_group_is_refused(session: Session) -> None:
-    library.add(session, group="materials", name="s", values={"E": 1}, source="x", status="approved")
+    put(session, group="materials", name="s", values={"E": 1}, source="x", status="approved")
     assert "M-001 is a material; a bond is wanted" in faults(session, record="M-001")["adhesives.glue.record"]
 
 

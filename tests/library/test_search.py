@@ -4,7 +4,7 @@ import pytest
 
 from server import library
 from server.storage import Session
-from tests.library.samples import add_bond
+from tests.library.samples import add_bond, put
 
 
 @pytest.fixture
@@ -13,7 +13,7 @@ def filled(session: Session) -> Session:
     add_bond(
         session, name="Epoxy 20 on aluminium", details={"product": "Epoxy 20"}, status="draft", note="for trailers"
     )
-    library.add(session, group="materials", name="Spruce C24", values={"E": 11000}, source="EN 338", status="approved")
+    put(session, group="materials", name="Spruce C24", values={"E": 11000}, source="EN 338", status="approved")
     return session
 
 

@@ -15,7 +15,11 @@ KEPT = {
     f"'{HASH}', x'25', '{HASH}', '', '', '')",
     "check_values": "(1, 'adhesives', 'glue', 'B-001', 1)",
     "records": "(1, 'B-001', 'bonds', '')",
-    "record_revisions": "(1, 1, 1, 'n', 'draft', '{}', '{}', '', '', '', '', '')",
+    "record_revisions": "(1, 1, 1, 'n', 'draft', '{}', '{}', '', '', '', '', '', '{}', '[]')",
+    "record_acts": "(1, 1, 'approved', 'n', NULL, '', '', '{}')",
+    "record_links": "(1, 'set', 'T-001', 1)",
+    "answers": "(1, 'record', 1, 'q', 'asked', 'answer', 'n', NULL, '')",
+    "issues": f"(1, 1, 'a', 'b', NULL, '', '', '[]', x'25', '{HASH}', '')",
     "trail": "(1, '', '', 'saved', '', '{}')",
 }
 HEADINGS = {

@@ -11,6 +11,7 @@ from fastapi.testclient import TestClient
 
 from server import documents
 from server.web import api
+from tests.web.approving import approve
 
 # Two planks glued flat on each other. By hand: V = 2 x 4000 / 2 = 4000 N, I = 100 x 200^3 / 12, S = 100 x 100 x 50,
 # flow = V S / I = 30 N/mm, stress = 30 / 100 = 0.3 MPa, resistance = 1.2 / 2 = 0.6 MPa (common practice: VQ/I).
@@ -33,7 +34,7 @@ PLANKS: dict[str, Any] = {
 }
 BOND = {
     "name": "glue",
-    "status": "approved",
+    "status": "draft",
     "units": "SI",
     "shear_strength": "1.2",
     "source": "Report 1 (invented)",
@@ -79,6 +80,7 @@ def test_every_verdict_is_an_answer(client: TestClient, strength: float | None, 
 
 def test_references_are_filled_from_the_library(client: TestClient) -> None:
     client.post("/library/new/bonds", data=BOND)
+    approve(client, "B-001")
     status, result = run(client, changed("adhesives/glue", {"record": "B-001"}))
     assert status == 200
     assert result["values_used"]["adhesives"]["glue"]["record"] == "B-001"

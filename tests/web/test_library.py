@@ -6,12 +6,13 @@ import pytest
 from fastapi.testclient import TestClient
 
 from server import jobs, storage
+from tests.web.approving import approve
 from tests.web.test_api import changed
 
 BOND = {
     "name": "Brackwater R2 on birch ply",
     "key": "",
-    "status": "approved",
+    "status": "draft",
     "units": "SI",
     "shear_strength": "1.28",
     "thickness": "0.2 mm",
@@ -29,7 +30,9 @@ GROUPS = {"bonds": BOND, "materials": MATERIAL, "fasteners": FASTENER}
 @pytest.fixture
 def bond(client: TestClient) -> str:
     """The address of one bond."""
-    return client.post("/library/new/bonds", data=BOND).headers["location"]
+    made = client.post("/library/new/bonds", data=BOND).headers["location"]
+    approve(client, "B-001")
+    return made
 
 
 def revise(client: TestClient, bond: str, **changes: str) -> int:
@@ -60,14 +63,20 @@ class TestAdd:
         assert "180 psi" in client.get(answer.headers["location"]).text
 
     def test_a_bad_entry_keeps_the_typed_text_and_saves_nothing(self, client: TestClient) -> None:
-        wrong = {"name": "", "shear_strength": "4 kg", "thickness": "-1", "source": "", "details.cure": "24 h <at> 20"}
+        wrong = {
+            "name": "",
+            "shear_strength": "4 kg",
+            "thickness": "-1",
+            "status": "approved",
+            "details.cure": "24 h <at> 20",
+        }
         answer = client.post("/library/new/bonds", data=BOND | wrong)
         assert answer.status_code == 422
         assert "4 entries need another look" in answer.text
         assert 'value="4 kg"' in answer.text
         assert "is a mass, not a stress" in answer.text
         assert 'id="f-thickness-message"' in answer.text
-        assert 'id="f-source-message"' in answer.text
+        assert 'id="f-status-message"' in answer.text
         assert 'value="24 h &lt;at&gt; 20"' in answer.text
         assert "Brackwater" not in client.get("/library").text
 
@@ -135,7 +144,7 @@ class TestRevise:
         before = client.get("/api/records/B-001").json()["entry"]
         assert revise(client, bond) == 303
         after = client.get("/api/records/B-001").json()["entry"]
-        assert after | {"revision": 1} == before
+        assert after | {"revision": 1, "status": "approved"} == before
 
     def test_a_change_from_an_older_revision_is_refused(self, client: TestClient, bond: str) -> None:
         assert revise(client, bond, shear_strength="1.58") == 303

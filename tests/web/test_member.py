@@ -11,6 +11,7 @@ from fastapi.testclient import TestClient
 
 from server.web import layouts
 from server.web.form_fields import GROUPS
+from tests.web.approving import approve
 
 JOB = {"number": "26-020", "title": "Roof", "customer": "", "drawing": "", "paper": "A4", "display": "SI", "note": ""}
 BOX = layouts.start("box", "SI") | {"mark": "B1", "title": "Roof box beam", "span": "6.0", "load": "4.2"}
@@ -146,8 +147,9 @@ class TestPreview:
         assert re.search(r'id="m-title" hx-swap-oob="true">[^<]*fonts have no “木”', text)
 
     def test_a_library_record_fills_the_check(self, shop: TestClient) -> None:
-        record = {"units": "SI", "key": "B-002", "name": "R2", "status": "approved", "source": "test 14 (invented)"}
+        record = {"units": "SI", "key": "B-002", "name": "R2", "status": "draft", "source": "test 14 (invented)"}
         assert shop.post("/library/new/bonds", data=record | {"shear_strength": "0.3"}).status_code == 303
+        approve(shop, "B-002")
         assert "B-002  R2, rev 1 approved" in shop.get("/jobs/1/checks/new").text
         text = shop.post(PREVIEW, data=WHOLE | {"adhesives[0].record": "B-002"}).text
         assert verdict(text).startswith("Fail 2.19")

@@ -8,10 +8,11 @@ import re
 import pytest
 from fastapi.testclient import TestClient
 
+from tests.web.approving import approve
 from tests.web.test_member import HTMX, SAVE, WHOLE, boxes, shop, verdict
 
 __all__ = ["shop"]  # the fixture
-BOND = {"units": "SI", "key": "B-002", "name": "R2", "status": "approved", "source": "test report 14 (invented)"}
+BOND = {"units": "SI", "key": "B-002", "name": "R2", "status": "draft", "source": "test report 14 (invented)"}
 PICKED = WHOLE | {"adhesives[0].record": "B-002", "adhesives[0].shear_strength": ""}
 PDF = "/checks/1/revisions/1/sheet.pdf"
 
@@ -20,6 +21,7 @@ PDF = "/checks/1/revisions/1/sheet.pdf"
 def book(shop: TestClient) -> TestClient:
     """A client with one saved check on one library bond."""
     assert shop.post("/library/new/bonds", data=BOND | {"shear_strength": "6"}).status_code == 303
+    approve(shop, "B-002")
     assert shop.post(SAVE, data=PICKED | {"made_by": "M. Hand"}).status_code == 303
     return shop
 
@@ -30,6 +32,7 @@ def weaken(book: TestClient) -> None:
     page = book.get("/library/B-002/edit")
     names = re.findall(r'<form method="post" action="([^"]+)"', page.text)
     assert book.post(names[0], data=entry).status_code == 303
+    approve(book, "B-002")
 
 
 class TestShow:
