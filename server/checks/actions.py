@@ -53,7 +53,8 @@ class Actions:
     """Responses of the member: every combination, and the curves of those that are for strength or deflection.
 
     ``shear`` and ``moment`` are None where no combination is for strength, ``sag`` and ``long_term`` where none is
-    for deflection; ``long_term`` also where no material creeps.
+    for deflection; ``long_term`` also where no material creeps. ``sustained`` shares of each case that stay;
+    ``slips`` whether the joints' slip is in all of it.
     """
 
     names: tuple[str, ...]
@@ -69,6 +70,8 @@ class Actions:
     sag: Curve | None
     long_term: Curve | None
     shear_deformation: bool
+    sustained: NDArray[np.float64]
+    slips: bool = False
 
     @property
     def breaks(self) -> NDArray[np.float64]:
@@ -88,7 +91,8 @@ def act(document: documents.MemberDocument, body: Body) -> Actions:
     deform = document.analysis.shear_deformation and all(s.section.shear_stiffness is not None for s in body.stretches)
     solved = _solve(_beam(document, body, deform), loads)
     combined = solved.combine(factors)
-    long_term = _long_term(document, body, deform, loads, solved, factors)
+    shares = np.array([[c.sustained.get(case, 0.0) for case in cases] for c in combinations.values()])
+    long_term = _long_term(document, body, deform, loads, solved, factors, shares)
     names, kinds = tuple(combinations), [c.for_ for c in combinations.values()]
     strength = tuple(k for k, kind in enumerate(kinds) if kind in ("both", "strength"))
     deflection = tuple(k for k, kind in enumerate(kinds) if kind in ("both", "deflection"))
@@ -113,6 +117,7 @@ def act(document: documents.MemberDocument, body: Body) -> Actions:
         sag=curve(combined.deflection, deflection),
         long_term=curve(long_term, deflection),
         shear_deformation=deform,
+        sustained=shares,
     )
 
 
@@ -166,6 +171,7 @@ def _long_term(
     loads: Sequence[Sequence[mechanics.Load]],
     solved: Response,
     factors: NDArray[np.float64],
+    shares: NDArray[np.float64],
 ) -> NDArray[np.float64] | None:
     """Deflection with the sustained part on the softened member (EN 1995-1-1:2004 2.2.3).
 
@@ -174,8 +180,6 @@ def _long_term(
     """
     if all(part.material.creep is None for part in body.parts):
         return None
-    cases = tuple(document.loads)
-    shares = np.array([[c.sustained.get(case, 0.0) for case in cases] for c in document.combinations.values()])
     soft = _solve(_beam(document, body, deform, creep=True), loads)
     short_part = np.tensordot(factors - shares, solved.deflection, 1)
     return np.asarray(short_part + np.tensordot(shares, soft.deflection, 1))

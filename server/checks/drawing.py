@@ -8,10 +8,12 @@ from numpy.typing import NDArray
 from server import documents
 from server.checks.actions import Actions
 from server.checks.crosssection import Body, Site
+from server.checks.slide import Slide
 from server.mechanics.beam import Couple, Load, PointLoad
 
 MOST_POINTS = 120
 LEAST_STEPS, MOST_STEPS = 4, 16
+WIDEST_SEEN = 2000  # parts of the member's length: what is narrower than one is not seen
 
 
 def drawing(document: documents.MemberDocument, body: Body, actions: Actions) -> dict[str, object]:
@@ -75,13 +77,14 @@ def _load(case: str, load: Load) -> dict[str, object]:
     }
 
 
-def diagrams(body: Body, actions: Actions) -> dict[str, object]:
+def diagrams(body: Body, actions: Actions, sliding: Slide | None = None) -> dict[str, object]:
     """Envelopes over the combinations as polylines; every interval keeps both its ends, so jumps stay upright."""
     breaks = actions.breaks
-    widths = np.diff(breaks)
-    steps = int(np.clip(MOST_POINTS // len(widths), LEAST_STEPS, MOST_STEPS))
+    shown = _shown(breaks, body.length) if sliding is not None else np.arange(len(breaks) - 1)
+    widths = np.diff(breaks)[shown]
+    steps = int(np.clip(MOST_POINTS // len(widths), 2 if sliding is not None else LEAST_STEPS, MOST_STEPS))
     local = widths[:, None] * np.linspace(0.0, 1.0, steps)
-    at = breaks[:-1, None] + local
+    at = breaks[:-1][shown, None] + local
     found: dict[str, object] = {"at": at.ravel().tolist()}
     curves = {
         "shear": actions.shear,
@@ -89,11 +92,21 @@ def diagrams(body: Body, actions: Actions) -> dict[str, object]:
         "deflection": actions.sag,
         "deflection_long_term": actions.long_term,
     }
-    found.update({name: _band(_sample(c.coefficients, local)) for name, c in curves.items() if c is not None})
-    if actions.shear is not None:
+    found.update({name: _band(_sample(c.coefficients[:, shown], local)) for name, c in curves.items() if c is not None})
+    if sliding is not None:
+        for name, each in (("joints", sliding.flows), ("slips", sliding.slips)):
+            found[name] = {
+                site.id: _band(_sample(each[site.index].coefficients[:, shown], local)) for site in body.sites
+            }
+    elif actions.shear is not None:
         shear = _sample(actions.shear.coefficients, local)
         found["joints"] = {s.id: _flow(s, body, breaks, shear) for s in body.sites}
     return found
+
+
+def _shown(breaks: NDArray[np.float64], length: float) -> NDArray[np.intp]:
+    """Intervals wide enough to be seen; the curves between them run on without a jump."""
+    return np.flatnonzero(np.diff(breaks) > length / WIDEST_SEEN)
 
 
 def _sample(coefficients: NDArray[np.float64], local: NDArray[np.float64]) -> NDArray[np.float64]:

@@ -5,42 +5,29 @@ from __future__ import annotations
 from dataclasses import dataclass, field
 
 import numpy as np
-from numpy.typing import NDArray
 
 from server import documents
-from server.checks.actions import TIE
+from server.checks.along import FLOW, Along, Demand, RigidAlong, SlidingAlong, leftmost
 from server.checks.crosssection import Body, Part, Site, Stretch
-from server.checks.resistance import Claim, Judge, Strength, Weighed, describe, resistance_formula, worst
-from server.checks.scan import Scan
+from server.checks.fastened import Fastening, claim_fasteners, write_fasteners
+from server.checks.resistance import Claim, Judge, Strength, Weighed, resistance_formula, worst
+from server.checks.slip_steps import write_sliding_flow
 from server.checks.statics import Statics
+from server.mechanics.flow import JointFlow
 from server.working import formula
 
 MECHANICS = "Jourawski's formula, E-weighted (any mechanics of materials text)"
 FIRST_MOMENT = "abs(sum(E*A*(u - u_0)))"
-FLOW = {"cut": "V*S/EI", "symmetry": "c_s*V*S/EI"}
 STRESS = "q/(b*c)"
-FASTENER_FORCE = "q*s/n"
-
-
-@dataclass(frozen=True, eq=False)
-class Demand:
-    """Shear and flow of one joint, one entry a strength combination, with the place and stretch of each."""
-
-    shear: NDArray[np.float64]
-    flow: NDArray[np.float64]
-    at: NDArray[np.float64]
-    stretch: NDArray[np.intp]
-
-    @property
-    def peak(self) -> int:
-        """The combination of the largest flow; the leftmost place wins a tie, then the first combination."""
-        near = self.flow >= self.flow.max() * (1 - TIE)
-        return int(np.where(near, self.at, np.inf).argmin())
 
 
 @dataclass
 class JointCheck:
-    """One joint on its way through the check: what is claimed of it, then what came out."""
+    """One joint on its way through the check: what is claimed of it, then what came out.
+
+    ``along`` what its flow was found with; ``fastening`` its fasteners where they carry, with the glue ``gone`` for a
+    fall-back.
+    """
 
     site: Site
     result: dict[str, object]
@@ -48,97 +35,102 @@ class JointCheck:
     claims: list[Claim] = field(default_factory=list)
     incomplete: bool = False
     governing: Weighed | None = None
+    along: Along | None = None
+    fastening: Fastening | None = None
+    gone: SlidingAlong | None = None
 
 
-def claim_joints(body: Body, scan: Scan, judge: Judge) -> list[JointCheck]:
+@dataclass(frozen=True)
+class Flows:
+    """The joints' flow in the states that the check looks at.
+
+    ``along`` as the member is reckoned; ``rigid`` with no slip; ``gone`` with the glue gone, None where no joint has a
+    fall-back or it cannot be reckoned.
+    """
+
+    along: Along
+    rigid: RigidAlong
+    gone: SlidingAlong | None
+
+
+def claim_joints(body: Body, flows: Flows, judge: Judge) -> list[JointCheck]:
     """Flow of every joint, and the limits that are to be weighed."""
-    demands = _demands(body, scan)
-    return [_claim(site, body, demands.get(site.index), scan, judge) for site in body.sites]
+    rigid = flows.rigid.demands()
+    demands = rigid if flows.along is flows.rigid else flows.along.demands()
+    return [_claim(site, body, demands.get(site.index), rigid.get(site.index), flows, judge) for site in body.sites]
 
 
 def write_joint(check: JointCheck, weighed: list[Weighed | None], body: Body, judge: Judge, statics: Statics) -> None:
     """Write a joint's steps and its block of the result."""
     if check.demand is None:
         return
+    site, group = check.site, f"Joint {check.site.id}"
     _write_flow(check, check.demand, body, judge, statics)
-    group = f"Joint {check.site.id}"
+    bond = [w for w in weighed if w is not None and w.claim.symbol == "tau"]
+    limits = [judge.write(w, group) for w in bond]
+    if check.fastening is not None:
+        force = next((w for w in weighed if w is not None and w.claim.symbol == "F"), None)
+        group_of = f"{group}, glue gone" if check.gone is not None else group
+        if check.gone is not None and force is not None:
+            write_sliding_flow(site, check.gone.slide, check.fastening.demand, judge, group_of)
+        check.result["spacing_needed"] = write_fasteners(check.fastening, force, body, judge, group_of)
+        limits += [] if force is None else [judge.write(force, group_of)]
     known = [w for w in weighed if w is not None]
-    if not check.site.bonded:
-        _write_spacing(check, check.demand, known, body, judge, group)
-    check.result["limits"] = [judge.write(w, group) for w in known]
+    check.result["limits"] = limits
     check.governing = worst(known)
     check.result["utilisation"] = None if check.governing is None else check.governing.utilisation
-    if check.site.bonded:
+    if site.bonded:
         check.result["strength_needed"] = _strength_needed(check, check.demand, judge, group)
-        if check.governing is not None and not check.incomplete and len(known) == len(weighed):
-            check.result["width_needed"] = _width_needed(check, check.demand, check.governing, judge, group)
+        weakest = worst(bond)
+        if weakest is not None and not check.incomplete and len(bond) == len(check.claims) - (len(known) - len(bond)):
+            check.result["width_needed"] = _width_needed(check, check.demand, weakest, judge, group)
 
 
-def _demands(body: Body, scan: Scan) -> dict[int, Demand]:
-    """Largest flow of every joint whose share is known, over the stretches where it is, by combination."""
-    found: dict[int, Demand] = {}
-    for t, stretch in enumerate(body.stretches):
-        if not scan.shear:
-            break
-        settled = [(i, flow) for i, flow in stretch.section.flows.items() if flow.share is not None]
-        shares = np.array([[abs(flow.share or 0.0)] for _, flow in settled]).reshape(-1, 1)
-        shear, at = scan.shear[t]
-        flows = formula(FLOW["cut"]).array({"V": shear, "S": shares, "EI": stretch.section.properties.EI})
-        where = np.full(len(at), t, dtype=np.intp)
-        for (index, _), flow in zip(settled, flows, strict=True):
-            here = Demand(shear, flow, at, where)
-            found[index] = _leftmost(found[index], here) if index in found else here
-    return found
-
-
-def _leftmost(left: Demand, right: Demand) -> Demand:
-    """The larger flow of two stretches, combination by combination: the left one keeps a tie."""
-    more = right.flow > left.flow * (1 + TIE)
-    if not more.any():
-        return left
-    return Demand(
-        np.where(more, right.shear, left.shear),
-        np.where(more, right.flow, left.flow),
-        np.where(more, right.at, left.at),
-        np.where(more, right.stretch, left.stretch),
-    )
-
-
-def _claim(site: Site, body: Body, demand: Demand | None, scan: Scan, judge: Judge) -> JointCheck:
+def _claim(
+    site: Site, body: Body, demand: Demand | None, rigid: Demand | None, flows: Flows, judge: Judge
+) -> JointCheck:
     check = JointCheck(site, _blank(site))
-    reason = _undetermined(site, body)
+    reason = flows.along.unsettled(site)
     if reason:
         judge.findings.miss(
             f"joint {site.id}: its share of the shear flow. {reason} A method for the field of shear in the whole "
             "section would be needed; until then change the section so that a cut or symmetry fixes the share."
         )
         demand = None
-    check.demand = demand
+    check.demand, check.along = demand, flows.along
     if demand is None:
-        if scan.shear and site.bonded:
+        if flows.rigid.scan.shear and site.bonded:
             _bond_strengths(site, judge)  # names the values it lacks, so that one look finds all gaps
         return check
-    if site.bonded:
-        stress = formula(STRESS).array({"q": demand.flow, "b": site.width, "c": site.spec.coverage})
-        strengths = _bond_strengths(site, judge)
-        check.claims = [Claim(s, "tau", stress, demand.at, demand.stretch) for s in strengths if s is not None]
-        check.incomplete = None in strengths
-        if site.spec.role == "fall-back":
-            judge.findings.miss(
-                f"joint {site.id}: whether its fasteners are a fall-back (glue gone, slip reckoned) is not reckoned in "
-                "this version; check the member again with the fasteners as sole carriers."
-            )
-    else:
-        _claim_fasteners(check, demand, body, scan, judge)
+    if not site.bonded:
+        check.fastening = claim_fasteners(site, body, flows.along, demand, judge)
+        check.claims = [] if check.fastening.claim is None else [check.fastening.claim]
+        return check
+    carried = demand
+    if site.spec.role == "fall-back" and rigid is not None:
+        check.demand, check.along = rigid, flows.rigid
+        carried = rigid if demand is rigid else leftmost(rigid, demand)
+    stress = formula(STRESS).array({"q": carried.flow, "b": site.width, "c": site.spec.coverage})
+    strengths = _bond_strengths(site, judge)
+    check.claims = [Claim(s, "tau", stress, carried.at, carried.stretch) for s in strengths if s is not None]
+    check.incomplete = None in strengths
+    if site.spec.role == "fall-back" and flows.gone is not None:
+        _claim_fall_back(check, body, flows.gone, judge)
     return check
 
 
-def _undetermined(site: Site, body: Body) -> str:
-    for stretch in body.stretches:
-        flow = stretch.section.flows.get(site.index)
-        if flow is not None and flow.split is None:
-            return flow.reason
-    return ""
+def _claim_fall_back(check: JointCheck, body: Body, gone: SlidingAlong, judge: Judge) -> None:
+    """The fasteners with the glue gone, by their slip; a share that nothing settles is named."""
+    site = check.site
+    reason = gone.unsettled(site)
+    demand = None if reason else gone.over(site, 0.0, body.length)
+    if demand is None:
+        judge.findings.miss(f"joint {site.id} with the glue gone: its share of the flow. {reason}")
+        return
+    check.gone = gone
+    check.fastening = claim_fasteners(site, body, gone, demand, judge, fall_back=True)
+    if check.fastening.claim is not None:
+        check.claims.append(check.fastening.claim)
 
 
 def _blank(site: Site) -> dict[str, object]:
@@ -156,6 +148,7 @@ def _blank(site: Site) -> dict[str, object]:
         "shear_flow": None,
         "stress": None,
         "at": None,
+        "place": "",
         "combination": None,
         "split": None,
         "distribution": [],
@@ -211,112 +204,33 @@ def _surface_strength(part: Part, site: Site, judge: Judge) -> Strength | None:
     )
 
 
-def _claim_fasteners(check: JointCheck, demand: Demand, body: Body, scan: Scan, judge: Judge) -> None:
-    site, findings = check.site, judge.findings
-    name, fastener = _fastener(site, judge)
-    strength = judge.strength(
-        fastener.shear_resistance, what=f"fastener {name}", unit="N", kind="fastener", owner=name, holder=fastener
-    )
-    if strength is None:
-        findings.miss(
-            f"shear resistance of fastener {name!r} (joint {site.id}): tests of the fastener in these pieces, a yield-"
-            "limit calculation, or its record."
-        )
-        return
-    zones = _zones(site, body.length)
-    if not zones:
-        findings.miss(f"spacing of {name!r} in joint {site.id}: enter a spacing; the one needed is stated.")
-        return
-    for start, end, spacing in zones:
-        where = f"joint {site.id}, {start:g} to {end:g} mm"
-        if fastener.spacing_min is not None and spacing < fastener.spacing_min:
-            findings.miss(
-                f"spacing {spacing:g} mm in {where}: under the least, {fastener.spacing_min:g} mm, for which {name!r} "
-                "has its resistance; widen it, add a row or choose another fastener."
-            )
-        if fastener.spacing_max is not None and spacing > fastener.spacing_max:
-            findings.miss(f"spacing {spacing:g} mm in {where}: over the largest allowed, {fastener.spacing_max:g} mm.")
-    worst_zone = _zone_demand(site, body, scan, zones)
-    check.claims = [Claim(strength, "F", worst_zone.flow, worst_zone.at, demand.stretch)]
-
-
-def _fastener(site: Site, judge: Judge) -> tuple[str, documents.Fastener]:
-    name = site.spec.fastener
-    assert name is not None
-    fastener = judge.document.fasteners[name]
-    assert isinstance(fastener, documents.Fastener)
-    return name, fastener
-
-
-Zone = tuple[float, float, float]  # from, to, spacing
-
-
-def _zones(site: Site, length: float) -> list[Zone]:
-    spacing = site.spec.spacing
-    if spacing is None:
-        return []
-    if isinstance(spacing, float | int):
-        return [(0.0, length, float(spacing))]
-    return [(zone.from_, zone.to, zone.spacing) for zone in spacing]
-
-
-def _zone_demand(site: Site, body: Body, scan: Scan, zones: list[Zone]) -> Demand:
-    """Force per fastener (in ``flow``) where it is greatest over the zones; ``stretch`` counts zones."""
-    assert scan.curve is not None
-    found: Demand | None = None
-    for number, (start, end, spacing) in enumerate(zones):
-        for stretch in body.stretches:
-            low, high = max(start, stretch.start), min(end, stretch.end)
-            flow = stretch.section.flows.get(site.index)
-            if high <= low or flow is None or flow.share is None:
-                continue
-            V, at = scan.curve.over(low, high).absolute()
-            q = formula(FLOW["cut"]).array({"V": V, "S": abs(flow.share), "EI": stretch.section.properties.EI})
-            force = formula(FASTENER_FORCE).array({"q": q, "s": spacing, "n": site.spec.rows})
-            here = Demand(q, force, at, np.full(len(at), number, dtype=np.intp))
-            found = here if found is None else _leftmost(found, here)
-    assert found is not None  # zones cover the member, and the joint is somewhere on it
-    return found
-
-
 def _write_flow(check: JointCheck, demand: Demand, body: Body, judge: Judge, statics: Statics) -> None:
     site, working = check.site, judge.working
     group, row = f"Joint {site.id}", demand.peak
     stretch = body.stretches[int(demand.stretch[row])]
     shared = stretch.section.flows[site.index]
     assert shared.split is not None
-    statics.shear(float(demand.at[row]), judge.actions.strength[row], float(demand.shear[row]), group)
-    first = _write_first_moment(site, stretch, judge, group)
-    reference = body.parts[0]
     combination = judge.actions.strength_names[row]
-    values: dict[str, tuple[float, str]] = {
-        "V": (float(demand.shear[row]), "N"),
-        "S": (first, "N*mm"),
-        "EI": (stretch.section.properties.EI, "N*mm2"),
-    }
-    if shared.split == "symmetry":
-        values["c_s"] = (abs(shared.share or 0.0) / first if first else 0.0, "")
-    flow = working.step(
-        "Shear flow",
-        "q",
-        FLOW[shared.split],
-        values,
-        unit="N/mm",
-        source=f"{MECHANICS}; V of combination {combination}. {shared.reason}",
+    if not isinstance(check.along, SlidingAlong):
+        statics.shear(float(demand.at[row]), judge.actions.strength[row], float(demand.shear[row]), group)
+    first = _write_first_moment(site, stretch, judge, group)
+    if isinstance(check.along, SlidingAlong):
+        flow, check.result["slip"] = write_sliding_flow(site, check.along.slide, demand, judge, group)
+    else:
+        flow = _rigid_flow(demand, stretch, shared, first, combination, judge, group)
+    check.result["first_moment"] = working.step(
+        "First moment on the reference modulus",
+        "Q",
+        "S/E_1",
+        {"S": (first, "N*mm"), "E_1": (body.parts[0].material.E, "MPa")},
+        unit="mm3",
+        source=f"E_1: modulus of {body.parts[0].name}",
         group=group,
     )
     check.result.update(
-        first_moment=working.step(
-            "First moment on the reference modulus",
-            "Q",
-            "S/E_1",
-            {"S": (first, "N*mm"), "E_1": (reference.material.E, "MPa")},
-            unit="mm3",
-            source=f"E_1: modulus of {reference.name}",
-            group=group,
-        ),
         shear_flow=flow,
         at=float(demand.at[row]),
+        place=judge.places.at(float(demand.at[row])),
         combination=combination,
         split=shared.split,
         cut_off=[stretch.section.parts[i].name for i in shared.cut_off],
@@ -332,6 +246,28 @@ def _write_flow(check: JointCheck, demand: Demand, body: Body, judge: Judge, sta
             source="mean over the bonded width x coverage",
             group=group,
         )
+
+
+def _rigid_flow(
+    demand: Demand, stretch: Stretch, shared: JointFlow, first: float, combination: str, judge: Judge, group: str
+) -> float:
+    assert shared.split is not None
+    values: dict[str, tuple[float, str]] = {
+        "V": (float(demand.shear[demand.peak]), "N"),
+        "S": (first, "N*mm"),
+        "EI": (stretch.section.properties.EI, "N*mm2"),
+    }
+    if shared.split == "symmetry":
+        values["c_s"] = (abs(shared.share or 0.0) / first if first else 0.0, "")
+    return judge.working.step(
+        "Shear flow",
+        "q",
+        FLOW[shared.split],
+        values,
+        unit="N/mm",
+        source=f"{MECHANICS}; V of combination {combination}. {shared.reason}",
+        group=group,
+    )
 
 
 def _write_first_moment(site: Site, stretch: Stretch, judge: Judge, group: str) -> float:
@@ -403,49 +339,3 @@ def _width_needed(check: JointCheck, demand: Demand, governing: Weighed, judge: 
         source=governing.claim.strength.what,
         group=group,
     )
-
-
-def _write_spacing(
-    check: JointCheck, demand: Demand, known: list[Weighed], body: Body, judge: Judge, group: str
-) -> None:
-    """The spacing needed, and the force per fastener at the spacing given."""
-    site, working = check.site, judge.working
-    name, fastener = _fastener(site, judge)
-    strength = judge.strength(
-        fastener.shear_resistance, what=f"fastener {name}", unit="N", kind="fastener", owner=name, holder=fastener
-    )
-    if strength is None or demand.flow.max() <= 0:
-        return
-    weighed = judge.weigh([Claim(strength, "q", demand.flow, demand.at, demand.stretch)])[0]
-    if weighed is None:
-        return
-    check.result["spacing_needed"] = working.step(
-        "Spacing needed",
-        "s_req",
-        "n*R_d/q",
-        {
-            "n": (site.spec.rows, ""),
-            "R_d": (weighed.resistance, "N"),
-            "q": (float(demand.flow[weighed.row]), "N/mm"),
-        },
-        unit="mm",
-        source=describe(fastener),
-        group=group,
-    )
-    for w in known:
-        spacing = _spacing_at(site, body.length, w.at)
-        flow = float(w.claim.demand[w.row]) * site.spec.rows / spacing
-        working.step(
-            "Force per fastener",
-            "F",
-            FASTENER_FORCE,
-            {"q": (flow, "N/mm"), "s": (spacing, "mm"), "n": (site.spec.rows, "")},
-            unit="N",
-            source=f"combination {judge.actions.strength_names[w.row]}, at {w.at:.6g} mm",
-            group=group,
-        )
-
-
-def _spacing_at(site: Site, length: float, at: float) -> float:
-    """The widest spacing at a place: where two zones meet, the one that loads a fastener more."""
-    return max(spacing for start, end, spacing in _zones(site, length) if start <= at <= end)

@@ -10,14 +10,20 @@ from pydantic import BaseModel
 from server import ENGINE, documents
 from server.checks import statics as hand
 from server.checks.actions import Actions, act, envelope
+from server.checks.along import RigidAlong, SlidingAlong
 from server.checks.cautions import NOT_CHECKED, add_cautions
 from server.checks.crosssection import Body, CrossSection, build
 from server.checks.deflection import Sag, check_deflection
 from server.checks.drawing import diagrams, drawing
-from server.checks.joints import JointCheck, claim_joints, write_joint
+from server.checks.fall_back import FallBack, glue_gone, judge_fall_back
+from server.checks.holds import holds
+from server.checks.joints import Flows, JointCheck, claim_joints, write_joint
 from server.checks.pieces import PieceCheck, claim_pieces, write_piece
-from server.checks.resistance import Findings, Judge
-from server.checks.scan import scan
+from server.checks.places import Places
+from server.checks.resistance import Claim, Findings, Judge, Weighed
+from server.checks.scan import Scan, scan
+from server.checks.slide import K_U_RULE, Slide, slide
+from server.checks.slip_steps import write_effective, write_method
 from server.errors import DocumentError, Fault
 from server.working import Working, exceeds
 
@@ -41,20 +47,28 @@ def run(document: documents.MemberDocument, *, working: bool = True) -> dict[str
     """
     _refuse_what_is_to_come(document)
     body = build(document)
-    actions = act(document, body)
+    rigid = act(document, body)
     book, findings = Working(record=working), Findings()
+    sliding = _slide(document, body, rigid, findings)
+    actions = rigid if sliding is None else sliding.actions
     statics = hand.Statics(document, body, actions, book)
     if working:
         statics.loads()
         statics.section()
+        if sliding is not None:
+            write_method(sliding, book, "Slip")
+            write_effective(sliding, body.stretches[0].section.properties.EI, book, "Slip")
         statics.member()
-    upper = _upper_stiffness(document, body, findings)
-    joints, pieces = _judge(body, actions, Judge(document, actions, book, findings), statics, upper)
+    upper = sliding is None and _upper_stiffness(document, body, findings)
+    _name_what_is_to_come(document, findings)
+    judge = Judge(document, actions, book, findings, Places(document))
+    flows = _flows(document, body, rigid, sliding, findings)
+    joints, pieces, fall_back = _judge(body, scan(body, actions), judge, statics, flows, sliding, upper)
     if working:
         statics.deflection()
     sags = check_deflection(document, actions, book, findings, upper_stiffness=upper)
     add_cautions(document, body, actions, joints, findings)
-    governing = _governing(body, actions, joints, pieces, sags)
+    governing = _governing(body, judge, joints, pieces, sags, fall_back)
     return {
         "format": document.format,
         "kind": document.kind,
@@ -63,17 +77,18 @@ def run(document: documents.MemberDocument, *, working: bool = True) -> dict[str
         "display": document.display,
         **_verdict(governing, findings),
         "basis": document.basis.model_dump(exclude_none=True),
-        "section": _section(governing.section if governing else body.stretches[0].section),
-        "sections": [{"from": s.start, "to": s.end, **_section(s.section)} for s in body.stretches],
+        "section": _section(governing.section if governing else body.stretches[0].section, sliding),
+        "sections": [{"from": s.start, "to": s.end, **_section(s.section, sliding)} for s in body.stretches],
         "member": _member(document, actions),
         "joints": [c.result for c in joints],
         "pieces": [c.result for c in pieces],
         "deflection_limits": [s.result for s in sags],
+        "fall_back": None if fall_back is None else fall_back.result,
         "cautions": findings.cautions,
         "missing": findings.missing,
         "not_checked": list(NOT_CHECKED),
         "drawing": drawing(document, body, actions),
-        "diagrams": diagrams(body, actions),
+        "diagrams": diagrams(body, actions, sliding),
         "steps": book.steps,
         "values_used": _values_used(document, body),
         "engine": ENGINE,
@@ -94,65 +109,105 @@ def _refuse_what_is_to_come(document: documents.MemberDocument) -> None:
         )
 
 
+def _slide(document: documents.MemberDocument, body: Body, rigid: Actions, findings: Findings) -> Slide | None:
+    """The member with slip where it is asked for; what it lacks is named, and without it nothing is reckoned."""
+    if not document.analysis.slip:
+        return None
+    held = holds(document, body, "as built")
+    for text in held.missing:
+        findings.miss(f"slip: {text}")
+    return slide(document, body, rigid, held) if held.solvable else None
+
+
+def _flows(
+    document: documents.MemberDocument, body: Body, rigid: Actions, sliding: Slide | None, findings: Findings
+) -> Flows:
+    along = RigidAlong(body, scan(body, rigid))
+    held = glue_gone(document, body, findings)
+    gone = None if held is None or rigid.shear is None else SlidingAlong(slide(document, body, rigid, held))
+    return Flows(along if sliding is None else SlidingAlong(sliding), along, gone)
+
+
 def _upper_stiffness(document: documents.MemberDocument, body: Body, findings: Findings) -> bool:
-    """Whether fasteners carry a joint with no slip reckoned; also names every analysis asked for and not to be had."""
+    """Whether fasteners carry a joint with no slip reckoned, or slip was asked for and could not be."""
     fastened = [site.id for site in body.sites if not site.bonded]
-    analysis = document.analysis
-    if analysis.slip:
-        findings.miss("slip of the joints (analysis.slip): not reckoned in this version; the joints are taken rigid.")
-    elif fastened:
+    if fastened:
         findings.miss(
             f"stresses of the pieces and deflection: fasteners carry {', '.join(fastened)} and their slip is not "
             "reckoned; only flow, resistance and spacing of the fasteners stand."
         )
-    if analysis.field == "always":
+    return document.analysis.slip or bool(fastened)
+
+
+def _name_what_is_to_come(document: documents.MemberDocument, findings: Findings) -> None:
+    """Name every analysis that was asked for and is not to be had."""
+    if document.analysis.field == "always":
         findings.miss("the section's shear field (analysis.field always): not available in this version.")
-    for rule in analysis.rules:
-        findings.miss(f"rule {rule!r} (analysis.rules): not applied in this version; see the cautions for its effect.")
+    for rule in document.analysis.rules:
+        if rule != K_U_RULE:
+            findings.miss(
+                f"rule {rule!r} (analysis.rules): not applied in this version; see the cautions for its effect."
+            )
     for case, loads in document.loads.items():
         for number, load in enumerate(loads):
             if getattr(load, "offset", 0.0):
                 findings.miss(f"torsion of load {number + 1} of case {case!r} (offset): not reckoned in this version.")
-    return analysis.slip or bool(fastened)
 
 
 def _judge(
-    body: Body, actions: Actions, judge: Judge, statics: hand.Statics, upper_stiffness: bool
-) -> tuple[list[JointCheck], list[PieceCheck]]:
+    body: Body,
+    scanned: Scan,
+    judge: Judge,
+    statics: hand.Statics,
+    flows: Flows,
+    sliding: Slide | None,
+    upper_stiffness: bool,
+) -> tuple[list[JointCheck], list[PieceCheck], FallBack | None]:
     """Gather every claim, weigh all at once, write joints and pieces in the order of the document."""
-    scanned = scan(body, actions)
-    joints = claim_joints(body, scanned, judge)
-    pieces = claim_pieces(body, scanned, judge, upper_stiffness=upper_stiffness)
-    weighed = iter(
-        judge.weigh(
-            [
-                *(claim for joint in joints for claim in joint.claims),
-                *(claim for piece in pieces for claim in piece.claims),
-            ]
-        )
-    )
-    for joint in joints:
-        write_joint(joint, [next(weighed) for _ in joint.claims], body, judge, statics)
-    for piece in pieces:
-        write_piece(piece, [next(weighed) for _ in piece.claims], body, judge)
-    return joints, pieces
+    joints = claim_joints(body, flows, judge)
+    pieces = claim_pieces(body, scanned, judge, upper_stiffness=upper_stiffness, slide=sliding)
+    gone: list[PieceCheck] = []
+    if flows.gone is not None:
+        gone = claim_pieces(body, scanned, judge, upper_stiffness=False, slide=flows.gone.slide, fall_back=True)
+    claimed = [*(joint.claims for joint in joints), *(piece.claims for piece in (*pieces, *gone))]
+    weighed = _in_groups(judge.weigh([claim for claims in claimed for claim in claims]), claimed)
+    for joint, own in zip(joints, weighed, strict=False):
+        write_joint(joint, own, body, judge, statics)
+    rest = weighed[len(joints) :]
+    for piece, own in zip(pieces, rest, strict=False):
+        write_piece(piece, own, body, judge)
+    if flows.gone is None:
+        return joints, pieces, None
+    return joints, pieces, judge_fall_back(flows.gone, joints, list(zip(gone, rest[len(pieces) :], strict=True)), judge)
+
+
+def _in_groups(weighed: Sequence[Weighed | None], claimed: Sequence[Sequence[Claim]]) -> list[list[Weighed | None]]:
+    found = iter(weighed)
+    return [[next(found) for _ in claims] for claims in claimed]
 
 
 def _governing(
-    body: Body, actions: Actions, joints: Sequence[JointCheck], pieces: Sequence[PieceCheck], sags: Sequence[Sag]
+    body: Body,
+    judge: Judge,
+    joints: Sequence[JointCheck],
+    pieces: Sequence[PieceCheck],
+    sags: Sequence[Sag],
+    fall_back: FallBack | None,
 ) -> Candidate | None:
     candidates = [
         Candidate(
             c.governing.utilisation,
-            f"{word} {c.result['id']}: {c.governing.claim.strength.what}, {c.governing.utilisation:.3g} of its "
-            f"resistance used {c.governing.at:.6g} mm from the left end, combination "
-            f"{actions.strength_names[c.governing.row]}",
+            f"{word} {c.result['id']}: {c.governing.claim.strength.what}{_state(c)}, {c.governing.utilisation:.3g} of "
+            f"its resistance used {judge.places.words(c.governing.at)}, combination "
+            f"{judge.actions.strength_names[c.governing.row]}",
             body.stretches[c.governing.stretch].section,
         )
         for word, group in (("joint", joints), ("piece", pieces))
         for c in group
         if c.governing is not None
     ]
+    if fall_back is not None and fall_back.utilisation is not None:
+        candidates.append(Candidate(fall_back.utilisation, fall_back.line, body.stretches[0].section))
     for sag in sags:
         result = sag.result
         at = float(str(result["at"]))
@@ -162,11 +217,17 @@ def _governing(
             Candidate(
                 sag.utilisation,
                 f"{term} of the {result['kind']} {result['from']:g} to {result['to']:g} mm, {sag.utilisation:.3g} of "
-                f"its limit used {at:.6g} mm from the left end, combination {result['combination']}",
+                f"its limit used {judge.places.words(at)}, combination {result['combination']}",
                 section,
             )
         )
-    return max(candidates, key=lambda c: c.utilisation, default=None)
+    return max(candidates, key=lambda c: float(f"{c.utilisation:.12g}"), default=None)  # of equals the first
+
+
+def _state(check: JointCheck | PieceCheck) -> str:
+    """With the glue gone, where that is what governs a joint."""
+    gone = isinstance(check, JointCheck) and check.gone is not None
+    return " with the glue gone" if gone and check.governing and check.governing.claim.symbol == "F" else ""
 
 
 def _verdict(governing: Candidate | None, findings: Findings) -> dict[str, object]:
@@ -186,7 +247,7 @@ def _verdict(governing: Candidate | None, findings: Findings) -> dict[str, objec
     }
 
 
-def _section(section: CrossSection) -> dict[str, object]:
+def _section(section: CrossSection, sliding: Slide | None) -> dict[str, object]:
     whole = section.properties
     return {
         "area": whole.area,
@@ -199,7 +260,7 @@ def _section(section: CrossSection) -> dict[str, object]:
         "shear_centre": None,
         "GA": section.shear_stiffness,
         "GJ": None,
-        "effective_EI": whole.EI,
+        "effective_EI": whole.EI if sliding is None else whole.EI * sliding.ratio,
     }
 
 

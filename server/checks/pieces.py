@@ -11,6 +11,9 @@ from numpy.typing import NDArray
 from server.checks.crosssection import Body, Part, Stretch
 from server.checks.resistance import Claim, Judge, Strength, Weighed, worst
 from server.checks.scan import Scan
+from server.checks.slide import Slide
+from server.checks.slip_pieces import CUT, SlidingShear, fibres, sliding_shear, write_stress
+from server.checks.slip_pieces import MECHANICS as SLIDING
 from server.working import formula
 
 BENDING = "-E*M*(u - u_0)/EI"
@@ -31,12 +34,16 @@ class Bent:
 
 @dataclass(frozen=True, eq=False)
 class Sheared:
-    """Largest VQ/(Ib) on horizontal cuts through one piece: stretches x combinations."""
+    """Largest shear stress on horizontal cuts through one piece: stretches x combinations.
+
+    ``cuts`` stretch by stretch where the joints slide, with the piece's place among those of the stretch.
+    """
 
     stress: NDArray[np.float64]
     shear: NDArray[np.float64]
     at: NDArray[np.float64]
     stretch: tuple[int, ...]
+    cuts: tuple[tuple[SlidingShear, int], ...] = ()
 
 
 @dataclass
@@ -49,18 +56,26 @@ class PieceCheck:
     sheared: Sheared | None = None
     claims: list[Claim] = field(default_factory=list)
     governing: Weighed | None = None
+    slide: Slide | None = None
 
 
-def claim_pieces(body: Body, scan: Scan, judge: Judge, *, upper_stiffness: bool) -> list[PieceCheck]:
+def claim_pieces(
+    body: Body, scan: Scan, judge: Judge, *, upper_stiffness: bool, slide: Slide | None = None, fall_back: bool = False
+) -> list[PieceCheck]:
     """Stresses of every piece and, where its material has strengths, the limits that are to be weighed.
 
     ``upper_stiffness``: fasteners carry a joint and slip is not reckoned, so the stresses are estimates
-    and no limit is judged on them.
+    and no limit is judged on them. ``slide``: the stresses are those of the member whose joints slide; ``fall_back``:
+    judged with the factor for what stands with the glue gone.
     """
-    bent, sheared = _bend(body, scan), _shear(body, scan)
+    if slide is None:
+        bent, sheared = _bend(body, scan), _shear(body, scan)
+    else:
+        bent, sheared = _bend_sliding(body, slide), _shear_sliding(body, slide)
+    judge = judge.with_divisor(judge.document.basis.fall_back()) if fall_back else judge
     found = []
     for part in body.parts:
-        check = PieceCheck(part, _blank(part), bent.get(part.index), sheared.get(part.index))
+        check = PieceCheck(part, _blank(part), bent.get(part.index), sheared.get(part.index), slide=slide)
         found.append(check)
         judge.judge_status(f"material {part.spec.material!r}", part.material)  # its E carries, judged itself or not
         if check.bent is None or check.sheared is None:
@@ -71,12 +86,12 @@ def claim_pieces(body: Body, scan: Scan, judge: Judge, *, upper_stiffness: bool)
     return found
 
 
-def write_piece(check: PieceCheck, weighed: list[Weighed | None], body: Body, judge: Judge) -> None:
+def write_piece(check: PieceCheck, weighed: list[Weighed | None], body: Body, judge: Judge, group: str = "") -> None:
     """Write a piece's steps and its block of the result."""
     if check.bent is None or check.sheared is None:
         return
     known = [w for w in weighed if w is not None]
-    group = f"Piece {check.part.name}"
+    group = group or f"Piece {check.part.name}"
     _write_bending(check, check.bent, [w for w in known if w.claim.symbol == "sigma"], body, judge, group)
     _write_shear(check, check.sheared, body, judge, group)
     check.result["limits"] = [judge.write(w, group) for w in known]
@@ -155,6 +170,36 @@ def _shear(body: Body, scan: Scan) -> dict[int, Sheared]:
     return found
 
 
+def _bend_sliding(body: Body, slide: Slide) -> dict[int, Bent]:
+    """Normal stresses where any fibre of a piece is greatest or least, from its own force and bending."""
+    found: dict[int, Bent] = {}
+    for t, stretch in enumerate(body.stretches):
+        for part in stretch.section.parts:
+            stress, at = fibres(slide, part, stretch).extremes(stretch.start, stretch.end)
+            here = Bent(stress, np.zeros_like(at), at, np.full(len(at), t, dtype=np.intp))
+            found[part.index] = _longer(found[part.index], here) if part.index in found else here
+    return found
+
+
+def _shear_sliding(body: Body, slide: Slide) -> dict[int, Sheared]:
+    """Largest shear stress on a horizontal cut through every piece, by what the forces above it change by."""
+    rows: dict[int, list[tuple[SlidingShear, int, int]]] = {}
+    for t, stretch in enumerate(body.stretches):
+        found = sliding_shear(slide, stretch)
+        for position, part in enumerate(stretch.section.parts):
+            rows.setdefault(part.index, []).append((found, position, t))
+    return {
+        index: Sheared(
+            np.array([cut.stress[i] for cut, i, _ in each]),
+            np.zeros((len(each), each[0][0].stress.shape[1])),
+            np.array([cut.at[i] for cut, i, _ in each]),
+            tuple(t for _, _, t in each),
+            tuple((cut, i) for cut, i, _ in each),
+        )
+        for index, each in rows.items()
+    }
+
+
 def _bending_claims(part: Part, bent: Bent, judge: Judge) -> Iterator[Claim]:
     for word, demand in _fibre_demands(part, bent):
         entry = demand.argmax(axis=0)
@@ -225,6 +270,11 @@ def _write_bending(check: PieceCheck, bent: Bent, weighed: list[Weighed], body: 
         entry = int(dict(_fibre_demands(check.part, bent))[word][:, row].argmax())
     stretch = body.stretches[int(bent.stretch[entry])]
     whole, part = stretch.section.properties, check.part
+    if check.slide is not None:
+        at, top = float(bent.at[entry, row]), float(bent.stress[0, entry, row])
+        found = write_stress(check.slide, part, stretch, at, row, top, judge, group)
+        check.result.update(zip(("stress_top", "stress_bottom", "stress_mean"), found, strict=True))
+        return
     where = f"{MECHANICS}; at {bent.at[entry, row]:.6g} mm, combination {judge.actions.strength_names[row]}"
     for name, height in zip(FIBRES, _heights(part, stretch), strict=True):
         check.result[f"stress_{name}"] = judge.working.step(
@@ -246,6 +296,9 @@ def _write_bending(check: PieceCheck, bent: Bent, weighed: list[Weighed], body: 
 
 def _write_shear(check: PieceCheck, sheared: Sheared, body: Body, judge: Judge, group: str) -> None:
     entry, row = (int(i) for i in np.unravel_index(int(sheared.stress.argmax()), sheared.stress.shape))
+    if sheared.cuts:
+        _write_sliding_shear(check, sheared, entry, row, body, judge, group)
+        return
     stretch = body.stretches[sheared.stretch[entry]]
     cut = stretch.section.cuts[check.part.index]
     check.result["shear_stress"] = judge.working.step(
@@ -260,5 +313,24 @@ def _write_shear(check: PieceCheck, sheared: Sheared, body: Body, judge: Judge, 
         },
         unit="MPa",
         source=f"{MECHANICS}; cut {cut.up:.6g} mm up, b of all pieces cut there",
+        group=group,
+    )
+
+
+def _write_sliding_shear(
+    check: PieceCheck, sheared: Sheared, entry: int, row: int, body: Body, judge: Judge, group: str
+) -> None:
+    found, i = sheared.cuts[entry]
+    parts = body.stretches[sheared.stretch[entry]].section.parts
+    above = [j for j in range(len(parts)) if abs(found.change[i, row, j]) > 0] or [i]
+    names = ", ".join(parts[j].name for j in above)
+    check.result["shear_stress"] = judge.working.step(
+        "Largest shear stress on a horizontal cut",
+        "tau",
+        CUT,
+        {"n_x": (found.change[i, row, above].tolist(), "N/mm"), "b": (float(found.width[i, row]), "mm")},
+        unit="MPa",
+        source=f"{SLIDING}; n_x: change of axial force along the member above the cut, of {names}; cut "
+        f"{found.up[i, row]:.6g} mm up, at {found.at[i, row]:.6g} mm, combination {judge.actions.strength_names[row]}",
         group=group,
     )

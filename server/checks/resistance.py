@@ -18,6 +18,7 @@ from numpy.typing import NDArray
 
 from server import documents
 from server.checks.actions import TIE, Actions
+from server.checks.places import Places
 from server.working import Working, formula
 
 Kind = Literal["adhesive", "fastener", "material"]
@@ -113,15 +114,36 @@ class Judge:
     """Gathers strengths for one document, with what is missing or doubtful about them, and weighs claims."""
 
     def __init__(
-        self, document: documents.MemberDocument, actions: Actions, working: Working, findings: Findings
+        self,
+        document: documents.MemberDocument,
+        actions: Actions,
+        working: Working,
+        findings: Findings,
+        places: Places | None = None,
     ) -> None:
         self.document, self.actions, self.working, self.findings = document, actions, working, findings
+        self.places = places or Places(document)
         self._durations: dict[tuple[str, str], tuple[float, ...]] = {}
+        self._common: float | None = None
+
+    def with_divisor(self, divisor: float | None) -> Judge:
+        """A judge of the same check that divides every strength by one factor, such as the fall-back's."""
+        other = Judge(self.document, self.actions, self.working, self.findings, self.places)
+        other._common = divisor
+        return other
 
     def strength(
-        self, value: float | None, *, what: str, unit: str, kind: Kind, owner: str, holder: Holder
+        self,
+        value: float | None,
+        *,
+        what: str,
+        unit: str,
+        kind: Kind,
+        owner: str,
+        holder: Holder,
+        divisor: float | None = None,
     ) -> Strength | None:
-        """One strength, or None where it was not given."""
+        """One strength, or None where it was not given; ``divisor`` stands in for the basis's own factor."""
         if value is None:
             return None
         return Strength(
@@ -131,7 +153,7 @@ class Judge:
             owner=owner,
             duration=self.duration(kind, owner, holder),
             factors=tuple(holder.factors.items()),
-            divisor=self._divisor(kind, owner),
+            divisor=divisor or self._common or self._divisor(kind, owner),
             source=describe(holder),
         )
 
@@ -238,6 +260,7 @@ class Judge:
             "reductions": [],
             "combination": combination,
             "at": weighed.at,
+            "place": self.places.at(weighed.at),
             "strength": found.value,
             "duration_factor": found.duration[row],
             "factors": dict(found.factors),

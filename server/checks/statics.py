@@ -217,7 +217,13 @@ class Statics:
         sag = actions.sag.whole
         peak = largest(*sag.absolute())
         k = actions.deflection[peak.row]
-        if self._tabulated(k):
+        if actions.slips:
+            self.working.note(
+                f"Greatest deflection, combination {actions.names[k]}",
+                f"Deflection of the layers that slide, with shear deformation by GA; at {peak.at:.6g} mm.",
+                value=peak.value, unit="mm", source="exact solution between breaks (see Slip)", group="Deflection",
+            )  # fmt: skip
+        elif self._tabulated(k):
             self._table_steps(peak, k)
         else:
             self.working.note(

@@ -126,6 +126,7 @@ class Adhesive(Values):
     shear_modulus: Stress | None = None
     E: Stress | None = None
     thickness: Size | None = None
+    creep: Creep | None = None
     shear_yield: Stress | None = None
     shear_strain_limit: Strain | None = None
     kind: Line = ""
@@ -137,8 +138,12 @@ class Fastener(Values):
     shear_resistance: Resistance | None = None
     slip_modulus: Stiffness | None = None
     diameter: Size | None = None
+    length: Size | None = None
     spacing_min: Size | None = None
     spacing_max: Size | None = None
+    row_spacing: Size | None = None
+    edge_distance: Size | None = None
+    end_distance: Size | None = None
     creep: Creep | None = None
     kind: Line = ""
 

@@ -293,6 +293,7 @@ class Analysis(Model):
     shear_deformation: bool = Field(default=True, strict=True)
     field: Literal["auto", "always", "never"] = "auto"
     rules: list[Line] = Field(default_factory=list, max_length=50)
+    spacing_step: Size | None = None
 
 
 class Service(Model):

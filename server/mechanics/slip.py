@@ -26,7 +26,7 @@ from server.mechanics.slip_model import FlexibleJoint, Layer, LayeredMember, Zon
 from server.mechanics.slip_stacks import Stacks, Tree, plant, stack
 from server.mechanics.slip_system import Chain, assemble, link, solve_system, spread_loads
 
-__all__ = ["Curves", "FlexibleJoint", "Layer", "LayeredMember", "SlipResponse", "Zone", "solve_slip"]
+__all__ = ["Curves", "FlexibleJoint", "Layer", "LayeredMember", "SlipResponse", "Stations", "Zone", "solve_slip"]
 
 Array = NDArray[np.float64]
 
@@ -67,6 +67,18 @@ class SlipResponse:
     def curves(self) -> Curves:
         """Shear, moment, deflection, and what every layer and joint carries, along the member."""
         return trace(self.member, self.tree, self.stacks, self.chain, self.stations, self.states)
+
+    def curves_at(self, places: Stations) -> Curves:
+        """Return the curves between stations chosen for another member with the same breaks.
+
+        Parameters
+        ----------
+        places : Stations
+            For instance those of the same member with stiffer joints.
+        """
+        if places is self.stations:
+            return self.curves
+        return trace(self.member, self.tree, self.stacks, self.chain, places, self.states)
 
     @cached_property
     def response(self) -> Response:

@@ -1,0 +1,169 @@
+"""The flow of a joint along the member: by V S / EI where joints are rigid, by its slip where they slide."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import Protocol
+
+import numpy as np
+from numpy.typing import NDArray
+
+from server.checks.actions import TIE
+from server.checks.crosssection import Body, Site
+from server.checks.scan import Scan
+from server.checks.slide import Slide
+from server.mechanics.piecewise import evaluate
+from server.working import formula
+
+FLOW = {"cut": "V*S/EI", "symmetry": "c_s*V*S/EI"}
+SLIDING_FLOW = "k*s"
+
+
+@dataclass(frozen=True, eq=False)
+class Demand:
+    """Shear and flow of one joint, one entry a strength combination, with the place and stretch of each."""
+
+    shear: NDArray[np.float64]
+    flow: NDArray[np.float64]
+    at: NDArray[np.float64]
+    stretch: NDArray[np.intp]
+
+    @property
+    def peak(self) -> int:
+        """The combination of the largest flow; the leftmost place wins a tie, then the first combination."""
+        near = self.flow >= self.flow.max() * (1 - TIE)
+        return int(np.where(near, self.at, np.inf).argmin())
+
+
+def leftmost(left: Demand, right: Demand) -> Demand:
+    """The larger flow of two stretches, combination by combination: the left one keeps a tie."""
+    more = right.flow > left.flow * (1 + TIE)
+    if not more.any():
+        return left
+    return Demand(
+        np.where(more, right.shear, left.shear),
+        np.where(more, right.flow, left.flow),
+        np.where(more, right.at, left.at),
+        np.where(more, right.stretch, left.stretch),
+    )
+
+
+class Along(Protocol):
+    """Where a joint's flow is greatest over a part of the member."""
+
+    def demands(self) -> dict[int, Demand]:
+        """Largest flow of every joint whose share is known, over the stretches where it is."""
+        ...
+
+    def over(self, site: Site, low: float, high: float) -> Demand | None:
+        """Largest flow of one joint between two places; None where it is not there or not known."""
+        ...
+
+    def unsettled(self, site: Site) -> str:
+        """Why the joint's share of the flow is not known; empty where it is."""
+        ...
+
+
+@dataclass(frozen=True, eq=False)
+class RigidAlong:
+    """Flow where no joint slips: shear times the joint's share of the first moment over EI."""
+
+    body: Body
+    scan: Scan
+
+    def demands(self) -> dict[int, Demand]:
+        """All joints of a stretch at once."""
+        found: dict[int, Demand] = {}
+        for t, stretch in enumerate(self.body.stretches):
+            if not self.scan.shear:
+                break
+            settled = [(i, flow) for i, flow in stretch.section.flows.items() if flow.share is not None]
+            shares = np.array([[abs(flow.share or 0.0)] for _, flow in settled]).reshape(-1, 1)
+            shear, at = self.scan.shear[t]
+            flows = formula(FLOW["cut"]).array({"V": shear, "S": shares, "EI": stretch.section.properties.EI})
+            where = np.full(len(at), t, dtype=np.intp)
+            for (index, _), flow in zip(settled, flows, strict=True):
+                here = Demand(shear, flow, at, where)
+                found[index] = leftmost(found[index], here) if index in found else here
+        return found
+
+    def over(self, site: Site, low: float, high: float) -> Demand | None:
+        """Stretch by stretch between the two places."""
+        if self.scan.curve is None:
+            return None
+        found: Demand | None = None
+        for t, stretch in enumerate(self.body.stretches):
+            start, end = max(low, stretch.start), min(high, stretch.end)
+            flow = stretch.section.flows.get(site.index)
+            if end <= start or flow is None or flow.share is None:
+                continue
+            V, at = self.scan.curve.over(start, end).absolute()
+            q = formula(FLOW["cut"]).array({"V": V, "S": abs(flow.share), "EI": stretch.section.properties.EI})
+            here = Demand(V, q, at, np.full(len(at), t, dtype=np.intp))
+            found = here if found is None else leftmost(found, here)
+        return found
+
+    def unsettled(self, site: Site) -> str:
+        """The reason a cut or symmetry does not settle the share."""
+        for stretch in self.body.stretches:
+            flow = stretch.section.flows.get(site.index)
+            if flow is not None and flow.split is None:
+                return flow.reason
+        return ""
+
+
+@dataclass(frozen=True, eq=False)
+class SlidingAlong:
+    """Flow where the joints slide: stiffness along the member times slip."""
+
+    slide: Slide
+
+    def demands(self) -> dict[int, Demand]:
+        """Joint by joint over the whole member."""
+        if self.slide.actions.shear is None:
+            return {}
+        body = self.slide.body
+        found = {site.index: self.over(site, 0.0, body.length) for site in body.sites if not self.unsettled(site)}
+        return {index: demand for index, demand in found.items() if demand is not None}
+
+    def over(self, site: Site, low: float, high: float) -> Demand | None:
+        """Stretch by stretch where both pieces of the joint are."""
+        body, curve = self.slide.body, self.slide.flows[site.index]
+        found: Demand | None = None
+        for t, stretch in enumerate(body.stretches):
+            start, end = max(low, stretch.start), min(high, stretch.end)
+            if end <= start or not site.present(stretch.start, stretch.end):
+                continue
+            q, at = curve.over(start, end).absolute()
+            here = Demand(self._shear(at), q, at, np.full(len(at), t, dtype=np.intp))
+            found = here if found is None else leftmost(found, here)
+        return found
+
+    def _shear(self, at: NDArray[np.float64]) -> NDArray[np.float64]:
+        curve = self.slide.actions.shear
+        if curve is None:
+            return np.zeros(len(at))
+        left = np.diagonal(evaluate(curve.breaks, curve.coefficients, at, "left"))
+        right = np.diagonal(evaluate(curve.breaks, curve.coefficients, at, "right"))
+        return np.asarray(np.maximum(np.abs(left), np.abs(right)))
+
+    def unsettled(self, site: Site) -> str:
+        """Why the layers alone do not settle the joint: a closed ring, or partners of unlike stiffness."""
+        for stretch in self.slide.body.stretches:
+            flow = stretch.section.flows.get(site.index)
+            if flow is None:
+                continue
+            if flow.split is None:
+                return flow.reason
+            partners = [stretch.section.sites[place] for place in flow.partners]
+            if any(not self._alike(site, other) for other in partners):
+                names = ", ".join(other.id for other in partners)
+                return f"Symmetry would make {names} share alike, but they are not equally stiff."
+        return ""
+
+    def _alike(self, one: Site, other: Site) -> bool:
+        a, b = (
+            [(zone.start, zone.end, zone.stiffness) for zone in self.slide.holds.each[site.index].zones]
+            for site in (one, other)
+        )
+        return len(a) == len(b) and (not a or bool(np.allclose(a, b, rtol=1e-6)))

@@ -1,0 +1,382 @@
+"""Checks of members whose joints slip, against derivations of their own, and what the contract says about them.
+
+The stage deck and the gangway are invented; what they must give is derived here from the equations of partial
+composite action (Newmark, Siess and Viest 1951), not taken from anywhere.
+"""
+
+from __future__ import annotations
+
+import math
+from typing import Any
+
+import numpy as np
+import pytest
+from scipy.integrate import solve_bvp
+
+from server import checks, documents
+from tests.checks.made import STACK, Raw, changed, run
+
+IN, LBF, FT = 25.4, 4.4482216152605, 304.8
+PSI = LBF / IN**2
+
+
+def deck(span_ft: float, **changes: object) -> Raw:
+    """A stage deck of five ribs under a skin, glued and screwed, in inch-pound units."""
+    span = f"{span_ft} ft"
+    pieces: Raw = {
+        "skin": {"shape": "rectangle", "width": "48 in", "depth": "0.703 in", "at": [0, "3.5 in"], "material": "ply"}
+    }
+    for i in range(5):
+        at = [f"{11.625 * i} in", 0]
+        pieces[f"rib {i + 1}"] = {
+            "shape": "rectangle",
+            "width": "1.5 in",
+            "depth": "3.5 in",
+            "at": at,
+            "material": "pine",
+        }
+    screw = {"adhesive": "PU", "fastener": "screw", "spacing": "6 in", "role": "fall-back"}
+    raw: Raw = {
+        "format": "bondwright/1",
+        "kind": "member",
+        "display": "US",
+        "basis": {"method": "allowable", "safety_factor": 3.0},
+        "materials": {
+            "ply": {
+                "E": "1.2e6 psi",
+                "layered": True,
+                "strengths": {"rolling_shear": "180 psi", "bending": "6000 psi"},
+            },
+            "pine": {"E": "1.3e6 psi", "strengths": {"shear": "600 psi", "bending": "7500 psi"}},
+        },
+        "adhesives": {"PU": {"shear_strength": "600 psi"}},
+        "fasteners": {"screw": {"shear_resistance": "350 lbf", "slip_modulus": "5500 lbf/in", "spacing_min": "2 in"}},
+        "section": {"pieces": pieces, "joints": [{"between": ["skin", f"rib {i + 1}"], **screw} for i in range(5)]},
+        "member": {"length": span, "supports": [{"at": 0, "kind": "pin"}, {"at": span, "kind": "pin"}]},
+        "loads": {"floor": [{"kind": "area", "from": 0, "to": span, "value": "133 psf", "width": "4 ft"}]},
+    }
+    return changed(raw, **changes)
+
+
+def two_layers(L: float, w: float, EA: tuple[float, float], EI: tuple[float, float], r: float, k: float) -> Raw:
+    """Deflection at midspan, end flow and end slip of two layers under a uniform load, Newmark's closed form."""
+    EA_star, EI_0 = EA[0] * EA[1] / sum(EA), sum(EI)
+    EI_inf = EI_0 + EA_star * r**2
+    alpha = math.sqrt(k * (1 / EA_star + r**2 / EI_0))
+    a = alpha * L / 2
+    sag = 5 * w * L**4 / (384 * EI_inf) + w / alpha**4 * (1 / EI_0 - 1 / EI_inf) * (
+        alpha**2 * L**2 / 8 + 1 / math.cosh(a) - 1
+    )
+    flow = EA_star * r / EI_inf * (w * L / 2) * (1 - math.tanh(a) / a)
+    return {"sag": sag, "flow": flow, "slip": flow / k, "EI": EI_inf}
+
+
+def deck_by_hand(span_ft: float) -> Raw:
+    """The deck with the glue gone: skin over five ribs, 5 screws every 6 in."""
+    E_ply, E_pine = 1.2e6 * PSI, 1.3e6 * PSI
+    b, h, bw, hw = 48 * IN, 0.703 * IN, 5 * 1.5 * IN, 3.5 * IN
+    return two_layers(
+        span_ft * FT,
+        133 * LBF / FT**2 * 4 * FT,
+        (E_ply * b * h, E_pine * bw * hw),
+        (E_ply * b * h**3 / 12, E_pine * bw * hw**3 / 12),
+        (h + hw) / 2,
+        5 * 5500 * LBF / IN / (6 * IN),
+    )
+
+
+class TestTheStageDeck:
+    @pytest.mark.parametrize(
+        ("span", "left", "force", "verdict"), [(8, 0.44, 299, "there is none"), (4, 0.35, 55, "there is a fall-back")]
+    )
+    def test_glue_gone(self, span: int, left: float, force: float, verdict: str) -> None:
+        result, by_hand = run(deck(span)), deck_by_hand(span)
+        rigid = 5 * 133 * LBF / FT**2 * 4 * FT * (span * FT) ** 4 / (384 * by_hand["EI"])
+        gone = result["fall_back"]
+        assert gone["stiffness_left"] == pytest.approx(rigid / by_hand["sag"], rel=1e-6)
+        assert gone["stiffness_left"] == pytest.approx(left, abs=0.005)
+        assert gone["verdict"] == verdict
+        assert gone["holds"] is (span == 4)
+        assert gone["deflection"][0]["deflection"] == pytest.approx(by_hand["sag"], rel=1e-6)
+        for joint in gone["joints"]:
+            assert joint["force"] == pytest.approx(by_hand["flow"] / 5 * 6 * IN, rel=1e-6)
+            assert joint["force"] == pytest.approx(force * LBF, abs=0.5 * LBF)
+            assert joint["slip"] == pytest.approx(by_hand["slip"], rel=1e-6)
+
+    def test_the_flow_told_is_the_rigid_one_and_the_screws_are_judged_on_the_other(self) -> None:
+        result, by_hand = run(deck(8)), deck_by_hand(8)
+        for joint in result["joints"]:
+            assert joint["shear_flow"] == pytest.approx(24.5219, rel=1e-5)  # 140 lbf/in: a rib's first moment over EI
+            limit = joint["limits"][-1]
+            assert limit["what"] == "fastener screw"
+            assert limit["demand"] == pytest.approx(by_hand["flow"] / 5 * 6 * IN, rel=1e-6)
+            assert limit["resistance"] == pytest.approx(350 / 3 * LBF)
+            assert joint["spacing_needed"] == pytest.approx(350 / 3 * LBF / (by_hand["flow"] / 5), rel=1e-6)
+            assert joint["width_needed"] == pytest.approx(joint["bonded_width"] * joint["limits"][1]["utilisation"])
+        assert result["verdict"] == "fail"
+        assert "glue gone" in result["governing"]
+
+    def test_its_own_factor_stands_in_for_all_that_is_judged_with_the_glue_gone(self) -> None:
+        result = run(deck(4), basis__fall_back_factor=1.5)
+        limit = result["joints"][0]["limits"][-1]
+        assert (limit["safety_factor"], limit["resistance"]) == (1.5, pytest.approx(350 / 1.5 * LBF))
+        assert result["joints"][0]["limits"][0]["safety_factor"] == 3.0
+        assert {own["safety_factor"] for piece in result["fall_back"]["pieces"] for own in piece["limits"]} == {1.5}
+
+    def test_pieces_are_judged_without_composite_action(self) -> None:
+        """A rib alone carries its share of EI; its stress is found again from its own force and moment at midspan."""
+        result = run(deck(4))
+        rib = next(piece for piece in result["fall_back"]["pieces"] if piece["id"] == "rib 1")
+        assert {limit["what"] for limit in rib["limits"]} == {"bending in rib 1", "shear in rib 1"}
+        assert rib["stress_bottom"] > result["pieces"][1]["stress_bottom"]
+        w, L, h, E = 133 * LBF / FT**2 * 4 * FT, 4 * FT, 3.5 * IN, 1.3e6 * PSI
+        EI_0 = 1.2e6 * PSI * 48 * 0.703**3 / 12 * IN**4 + 5 * E * 1.5 * 3.5**3 / 12 * IN**4
+        x = np.linspace(0, L / 2, 4001)
+        flow = _flow_along(w, L, x)
+        N = np.trapezoid(flow, x) / 5
+        r = (3.5 + 0.703) / 2 * IN
+        kappa = (w * L**2 / 8 - 5 * N * r) / EI_0
+        assert rib["stress_bottom"] == pytest.approx(N / (1.5 * 3.5 * IN**2) + E * kappa * h / 2, rel=1e-4)
+
+    def test_a_fall_back_that_does_not_hold_fails_a_member_that_else_passes(self) -> None:
+        weak = run(deck(4), fasteners__screw__shear_resistance="60 lbf")
+        assert weak["verdict"] == "fail"
+        assert max(own["utilisation"] for own in weak["joints"][0]["limits"][:-1]) < 1
+        assert "There is none" in weak["fall_back"]["text"]
+        assert run(deck(4))["verdict"] == "pass"
+
+    def test_what_a_fall_back_needs_is_asked_for_by_name(self) -> None:
+        for path, words in (("slip_modulus", "slip modulus"), ("shear_resistance", "shear resistance")):
+            result = run(deck(4), **{f"fasteners__screw__{path}": ...})
+            assert result["verdict"] == "not proven"
+            assert any(words in text and "'screw'" in text for text in result["missing"])
+        result = run(deck(4), **{f"section__joints__{i}__spacing": ... for i in range(5)})
+        assert result["verdict"] == "not proven"
+        assert any("spacing of 'screw'" in text for text in result["missing"])
+
+
+def _flow_along(w: float, L: float, x: np.ndarray) -> np.ndarray:
+    """Flow of the deck's joint by a boundary-value library: q'' / k = q (1/EA* + r^2/EI0) - r V / EI0."""
+    E_ply, E_pine = 1.2e6 * PSI, 1.3e6 * PSI
+    A1, A2 = 48 * 0.703 * IN**2, 5 * 1.5 * 3.5 * IN**2
+    EI_0 = (E_ply * 48 * 0.703**3 + E_pine * 5 * 1.5 * 3.5**3) / 12 * IN**4
+    r, k = (3.5 + 0.703) / 2 * IN, 5 * 5500 * LBF / IN / (6 * IN)
+    soft = 1 / (E_ply * A1) + 1 / (E_pine * A2) + r**2 / EI_0
+
+    def slope(at: np.ndarray, y: np.ndarray) -> np.ndarray:
+        return np.vstack([y[1], k * (soft * y[0] - r / EI_0 * w * (L / 2 - at))])
+
+    found = solve_bvp(slope, lambda a, b: np.array([a[1], b[1]]), np.linspace(0, L, 201), np.zeros((2, 201)), tol=1e-8)
+    return found.sol(x)[0]
+
+
+def planks(**changes: object) -> Raw:
+    """Two planks held together by screws alone, slip reckoned."""
+    raw = changed(
+        STACK,
+        adhesives={},
+        fasteners={"screw": {"shear_resistance": 6000, "slip_modulus": 2000, "duration_factors": {"long-term": 0.6}}},
+        section__joints=[{"between": ["lower", "upper"], "fastener": "screw", "spacing": 100}],
+        analysis={"slip": True},
+        materials__pine__strengths__bending=40,
+    )
+    return changed(raw, **changes)
+
+
+def planks_by_hand(k: float, E: float = 10000, w: float = 1.2) -> Raw:
+    return two_layers(3000, w, (E * 5000, E * 5000), (E * 100 * 50**3 / 12,) * 2, 50, k)
+
+
+class TestSoleCarriers:
+    def test_flow_slip_and_effective_stiffness(self) -> None:
+        result, by_hand = run(planks(materials__pine__G=...)), planks_by_hand(20)
+        joint = result["joints"][0]
+        assert joint["shear_flow"] == pytest.approx(by_hand["flow"], rel=1e-8)
+        assert joint["slip"] == pytest.approx(by_hand["slip"], rel=1e-8)
+        assert joint["limits"][0]["demand"] == pytest.approx(100 * by_hand["flow"], rel=1e-8)
+        assert joint["spacing_needed"] == pytest.approx(3000 / by_hand["flow"], rel=1e-8)
+        rigid = 5 * 1.2 * 3000**4 / (384 * by_hand["EI"])
+        assert result["section"]["EI"] == pytest.approx(by_hand["EI"])
+        assert result["section"]["effective_EI"] == pytest.approx(by_hand["EI"] * rigid / by_hand["sag"], rel=1e-7)
+        assert result["member"]["deflection"]["max"] == pytest.approx(by_hand["sag"], rel=1e-7)
+        assert result["verdict"] == "pass"
+        assert result["pieces"][0]["limits"]
+
+    def test_effective_stiffness_leaves_shear_deformation_out(self) -> None:
+        by_hand = planks_by_hand(20)
+        rigid = 5 * 1.2 * 3000**4 / (384 * by_hand["EI"])
+        result = run(planks())
+        assert result["section"]["effective_EI"] == pytest.approx(by_hand["EI"] * rigid / by_hand["sag"], rel=1e-7)
+        GA = 5 / 6 * 625 * 100 * 100
+        sag = by_hand["sag"] + 1.2 * 3000**2 / 8 / GA
+        assert result["member"]["deflection"]["max"] == pytest.approx(sag, rel=1e-7)
+
+    def test_rows_and_spacing_make_the_stiffness(self) -> None:
+        one = run(planks(section__joints__0__rows=3, section__joints__0__spacing=150))
+        assert one["joints"][0]["shear_flow"] == pytest.approx(planks_by_hand(40)["flow"], rel=1e-8)
+
+    def test_creep_softens_pieces_and_fasteners_each_by_its_own(self) -> None:
+        result = run(
+            planks(
+                materials__pine__creep=0.6,
+                materials__pine__G=...,
+                fasteners__screw__creep=1.0,
+                combinations={"all": {"factors": {"live": 1.5}, "sustained": {"live": 0.5}}},
+            )
+        )
+        fresh, aged = planks_by_hand(20), planks_by_hand(20 / 2.0, E=10000 / 1.6)
+        expected = 1.0 * fresh["sag"] + 0.5 * aged["sag"]
+        assert result["member"]["deflection_long_term"]["max"] == pytest.approx(expected, rel=1e-7)
+
+    def test_creep_of_the_screws_alone_is_reckoned_too(self) -> None:
+        combinations = {"all": {"factors": {"live": 1.0}, "sustained": {"live": 1.0}}}
+        result = run(planks(materials__pine__G=..., fasteners__screw__creep=1.0, combinations=combinations))
+        assert result["member"]["deflection_long_term"]["max"] == pytest.approx(planks_by_hand(10)["sag"], rel=1e-7)
+
+    def test_without_a_slip_modulus_nothing_stands_on_slip(self) -> None:
+        result = run(planks(fasteners__screw__slip_modulus=...))
+        assert result["verdict"] == "not proven"
+        assert any("slip modulus" in text for text in result["missing"])
+        assert result["section"]["effective_EI"] == result["section"]["EI"]
+        assert not result["pieces"][0]["limits"]
+        assert result["joints"][0]["limits"]  # flow and spacing stand, as upper estimates
+
+    def test_a_bond_slides_by_its_layer(self) -> None:
+        soft = changed(STACK, analysis={"slip": True}, materials__pine__G=...)
+        soft["adhesives"]["glue"].update(shear_modulus=1.2, thickness=3.0)
+        soft["section"]["pieces"]["upper"]["at"] = [0, 53]
+        soft["section"]["joints"][0].update(width=80, coverage=0.75)
+        by_hand = two_layers(3000, 1.2, (5e7, 5e7), (1e4 * 100 * 50**3 / 12,) * 2, 53, 1.2 * 80 * 0.75 / 3)
+        result = run(soft)
+        assert result["joints"][0]["shear_flow"] == pytest.approx(by_hand["flow"], rel=1e-8)
+        assert result["joints"][0]["stress"] == pytest.approx(by_hand["flow"] / 60, rel=1e-8)
+        assert result["verdict"] == "pass"
+
+    def test_a_bond_of_unknown_stiffness_is_not_proven(self) -> None:
+        result = run(STACK, analysis={"slip": True})
+        assert result["verdict"] == "not proven"
+        assert any("shear modulus and bond-line thickness of adhesive 'glue'" in text for text in result["missing"])
+        assert result["joints"][0]["shear_flow"] == pytest.approx(27, rel=0.01)  # a stiff bond stands in
+
+    def test_zones_of_spacing_change_the_stiffness_along_the_member(self) -> None:
+        zones = [
+            {"from": 0, "to": 800, "spacing": 50},
+            {"from": 800, "to": 2200, "spacing": 200},
+            {"from": 2200, "to": 3000, "spacing": 50},
+        ]
+        result = run(planks(materials__pine__G=..., section__joints__0__spacing=zones))
+        stiff, soft = planks_by_hand(40), planks_by_hand(10)
+        assert stiff["sag"] < result["member"]["deflection"]["max"] < soft["sag"]
+        force = result["joints"][0]["limits"][0]
+        assert force["at"] in (pytest.approx(800), pytest.approx(0))
+        assert force["place"] in ("change of spacing in lower/upper", "support")
+
+    def test_strength_stands_on_two_thirds_of_the_slip_modulus_where_the_rule_is_named(self) -> None:
+        basis = {"method": "limit-state", "partial_factor": 1.3}
+        rule = {"slip": True, "rules": ["EN 1995-1-1 2.2.2"]}
+        combinations = {"all": {"factors": {"live": 1.0}}}
+        result = run(planks(materials__pine__G=..., basis=basis, analysis=rule, combinations=combinations))
+        assert result["joints"][0]["shear_flow"] == pytest.approx(planks_by_hand(20 * 2 / 3)["flow"], rel=1e-8)
+        assert result["member"]["deflection"]["max"] == pytest.approx(planks_by_hand(20)["sag"], rel=1e-7)
+        assert not any("2.2.2" in text for text in result["missing"])
+
+
+class TestStressesOfPieces:
+    def test_axial_force_and_own_bending(self) -> None:
+        result = run(planks(materials__pine__G=...))
+        w, L, EI_0, r = 1.2, 3000.0, 2 * 1e4 * 100 * 50**3 / 12, 50.0
+        EI_inf = planks_by_hand(20)["EI"]
+        alpha = math.sqrt(20 * (2 / 5e7 + r**2 / EI_0))
+        N = 2.5e7 * r / EI_inf * (w * L**2 / 8 - w / alpha**2 * (1 - 1 / math.cosh(alpha * L / 2)))
+        kappa = (w * L**2 / 8 - N * r) / EI_0
+        lower = result["pieces"][0]
+        assert lower["stress_bottom"] == pytest.approx(N / 5000 + 1e4 * kappa * 25, rel=1e-6)
+        assert lower["stress_top"] == pytest.approx(N / 5000 - 1e4 * kappa * 25, rel=1e-6)
+        assert lower["stress_mean"] == pytest.approx(N / 5000, rel=1e-6)
+
+    def test_shear_stress_tends_to_that_of_the_rigid_member(self) -> None:
+        rigid = run(STACK)
+        sliding = run(planks(fasteners__screw__slip_modulus=1e9, fasteners__screw__shear_resistance=1e6))
+        for one, other in zip(rigid["pieces"], sliding["pieces"], strict=True):
+            assert other["shear_stress"] == pytest.approx(one["shear_stress"], rel=2e-3)
+            for name in ("stress_top", "stress_bottom", "stress_mean"):
+                assert other[name] == pytest.approx(one[name], rel=1e-4, abs=1e-4)
+
+    def test_loose_planks_shear_each_by_itself(self) -> None:
+        loose = run(planks(fasteners__screw__slip_modulus=1e-6))
+        for piece in loose["pieces"]:
+            assert piece["shear_stress"] == pytest.approx(1.5 * 900 / 5000, rel=1e-6)
+
+
+class TestRings:
+    def test_a_box_with_unlike_webs_is_not_proven(self) -> None:
+        from tests.checks.made import BOX
+
+        box = changed(BOX, analysis={"slip": True}, section__pieces__right__width=10)
+        box["adhesives"]["resin"].update(shear_modulus=300, thickness=0.04)
+        result = run(box)
+        assert result["verdict"] != "pass"
+        assert any("share of the shear flow" in text for text in result["missing"])
+
+    def test_a_box_with_like_webs_is_shared_by_symmetry(self) -> None:
+        from tests.checks.made import BOX
+
+        box = changed(BOX, analysis={"slip": True})
+        box["adhesives"]["resin"].update(shear_modulus=300, thickness=0.04)
+        rigid, result = run(BOX), run(box)
+        assert result["missing"] == rigid["missing"]
+        for one, other in zip(rigid["joints"], result["joints"], strict=True):
+            assert other["split"] == "symmetry"
+            assert other["shear_flow"] == pytest.approx(one["shear_flow"], rel=0.02)
+
+
+def test_the_governing_place_is_named() -> None:
+    raw = changed(STACK, loads__live=[{"kind": "point", "at": 1200, "value": 3000}])
+    result = run(raw)
+    assert "1200 mm from the left end: load 1 of live" in result["governing"] or "support" in result["governing"]
+    assert {limit["place"] for piece in result["pieces"] for limit in piece["limits"]} >= {"load 1 of live"}
+
+
+def gangway(G: float, t: float) -> Raw:
+    """Aluminium straps on a spruce core."""
+    pieces = {
+        "bottom": {"shape": "rectangle", "width": 45, "depth": 4, "at": [0, 0], "material": "alu"},
+        "core": {"shape": "rectangle", "width": 45, "depth": 180, "at": [0, 4 + t], "material": "spruce"},
+        "top": {"shape": "rectangle", "width": 45, "depth": 4, "at": [0, 184 + 2 * t], "material": "alu"},
+    }
+    return {
+        "format": "bondwright/1",
+        "kind": "member",
+        "basis": {"method": "allowable", "safety_factor": 3.0},
+        "materials": {"alu": {"E": 69000}, "spruce": {"E": 10500}},
+        "adhesives": {"glue": {"shear_modulus": G, "thickness": t, "shear_strength": 5}},
+        "section": {
+            "pieces": pieces,
+            "joints": [{"between": pair, "adhesive": "glue"} for pair in (["bottom", "core"], ["core", "top"])],
+        },
+        "member": {"length": 4200, "supports": [{"at": 0, "kind": "pin"}, {"at": 4200, "kind": "pin"}]},
+        "loads": {"walk": [{"kind": "line", "from": 0, "to": 4200, "value": 1.35}]},
+        "analysis": {"slip": True},
+    }
+
+
+@pytest.mark.parametrize(
+    ("G", "t", "least", "most"), [(1200, 0.3, 0.999, 1.0), (250, 1.0, 0.995, 1.0), (1.2, 3.0, 0.8, 0.9)]
+)
+def test_the_gangway_with_three_adhesives(G: float, t: float, least: float, most: float) -> None:
+    """Straps alike above and below pull alike: the two-layer closed form, with both straps on one equation."""
+    result: dict[str, Any] = checks.run(documents.read(gangway(G, t)))
+    EA, r, k = 69000 * 180, 92 + t, G * 45 / t
+    EI_0 = 10500 * 45 * 180**3 / 12 + 2 * 69000 * 45 * 4**3 / 12
+    EI_inf = EI_0 + 2 * EA * r**2
+    alpha = math.sqrt(k * (1 / EA + 2 * r**2 / EI_0))
+    a, L, w = alpha * 2100, 4200.0, 1.35
+    shape = alpha**2 * L**2 / 8 + (1 / math.cosh(a) if a < 700 else 0.0) - 1
+    sag = 5 * w * L**4 / (384 * EI_inf) + w / alpha**4 * (1 / EI_0 - 1 / EI_inf) * shape
+    flow = EA * r / EI_inf * w * L / 2 * (1 - math.tanh(a) / a)
+    assert result["member"]["deflection"]["max"] == pytest.approx(sag, rel=1e-7)
+    for joint in result["joints"]:
+        assert joint["shear_flow"] == pytest.approx(flow, rel=1e-7)
+    share = result["section"]["effective_EI"] / result["section"]["EI"]
+    assert share == pytest.approx(5 * w * L**4 / (384 * EI_inf) / sag, rel=1e-7)
+    assert least < share <= most
