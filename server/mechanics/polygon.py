@@ -17,6 +17,7 @@ from server.errors import InputError
 
 Array = NDArray[np.float64]
 Indices = NDArray[np.intp]
+Bools = NDArray[np.bool_]
 Outline = Array | Sequence[Array]
 
 
