@@ -208,8 +208,8 @@ def _frame(layout: Layout) -> _Frame:
     row = int(np.ceil(np.sqrt(count)))
     place = np.arange(count)
     spread = high - low
-    size: Array = np.asarray(np.maximum(spread[:, 0], spread[:, 1]), dtype=np.float64)
-    return _Frame(low, size, 3.0 * np.stack((place % row, place // row), axis=1))
+    cell = 3.0 * np.stack((place % row, place // row), axis=1).astype(np.float64)
+    return _Frame(low, np.maximum(spread[:, 0], spread[:, 1]), cell)
 
 
 def _delaunay(points: Array, piece: Indices, frame: _Frame, least: Array) -> Indices:
