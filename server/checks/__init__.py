@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from server import documents
-from server.checks import coupons, member
+from server.checks import coupons, fastener, member
 from server.errors import DocumentError, Fault
 
 
@@ -29,4 +29,6 @@ def run(document: documents.Document, *, working: bool = True) -> dict[str, obje
         return member.run(document, working=working)
     if isinstance(document, documents.CouponsDocument):
         return coupons.run(document, working=working)
+    if isinstance(document, documents.FastenerDocument):
+        return fastener.run(document, working=working)
     raise DocumentError([Fault("kind", f"kind {document.kind!r} cannot be checked in this version.")])

@@ -15,6 +15,7 @@ from server.documents.common import (
     Values,
 )
 from server.documents.coupons import Coupon, CouponsDocument, Failure, Statistic
+from server.documents.fastener import FastenerDocument
 from server.documents.member import (
     Analysis,
     AngleProfile,
@@ -63,6 +64,7 @@ __all__ = [
     "Factors",
     "Failure",
     "Fastener",
+    "FastenerDocument",
     "IProfile",
     "Joint",
     "LimitState",

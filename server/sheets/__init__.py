@@ -1,23 +1,27 @@
 """Results drawn for people: PDF, terminal, given values and drawings. It draws stored results and never reckons."""
 
-from server.sheets.composition import STANDING_CAUTION, SheetData
+from server.sheets.composition import STANDING_CAUTION, SheetData, given_values, headline
 from server.sheets.diagrams import diagram_svg, flow_svg, joint_svg
 from server.sheets.dot_plot import dot_plot_svg
 from server.sheets.evidence import EvidenceData, FactorLine, Reply, area_as_typed, load_as_typed
 from server.sheets.given import Group, Row, given
 from server.sheets.history import Point, history_svg, in_words
 from server.sheets.loads_drawing import loads_svg
-from server.sheets.pdf import UnprintableError, evidence_pdf, pdf, unprintable
+from server.sheets.one_page import OnePage
+from server.sheets.one_pages import ONE_PAGES
+from server.sheets.pdf import UnprintableError, evidence_pdf, pdf, unprintable, unprintable_boxes
 from server.sheets.probability_plot import probability_plot_svg
 from server.sheets.section_drawing import section_svg
 from server.sheets.terminal import terminal
 from server.sheets.values import governing, in_units, quantity, utilisation, verdict
 
 __all__ = [
+    "ONE_PAGES",
     "STANDING_CAUTION",
     "EvidenceData",
     "FactorLine",
     "Group",
+    "OnePage",
     "Point",
     "Reply",
     "Row",
@@ -29,7 +33,9 @@ __all__ = [
     "evidence_pdf",
     "flow_svg",
     "given",
+    "given_values",
     "governing",
+    "headline",
     "history_svg",
     "in_units",
     "in_words",
@@ -42,6 +48,7 @@ __all__ = [
     "section_svg",
     "terminal",
     "unprintable",
+    "unprintable_boxes",
     "utilisation",
     "verdict",
 ]

@@ -11,6 +11,7 @@ from typing import Any, Literal
 
 from server.sheets import tables
 from server.sheets.given import Group, given
+from server.sheets.one_pages import ONE_PAGES
 from server.sheets.steps import working_groups
 from server.sheets.values import governing, in_units, utilisation, verdict
 from server.working import typst_math
@@ -28,7 +29,7 @@ FOOT = (
 )
 PRECEDENCE = "Local building, road, marine and machinery rules, and licensed practice, take precedence over this sheet."
 DIAGRAM_HEIGHT = 172.0
-KINDS = {"member": "Check of a built-up member"}
+KINDS = {"member": "Check of a built-up member"} | {kind: page.title for kind, page in ONE_PAGES.items()}
 
 
 @dataclass(frozen=True)
@@ -74,7 +75,7 @@ def compose(sheet: SheetData, drawings: Drawings) -> Part:
         "verdict": {
             "word": verdict(sheet.result),
             "utilisation": utilisation(sheet.result.get("utilisation")),
-            "governing": governing(sheet.result, sheet.display),
+            "governing": headline(sheet.result, sheet.display),
         },
         "parts": list(_numbered(sheet, drawings)),
         "foot": {
@@ -83,6 +84,18 @@ def compose(sheet: SheetData, drawings: Drawings) -> Part:
             "limits": FOOT,
         },
     }
+
+
+def given_values(document: Mapping[str, Any], values_used: Mapping[str, Any], display: str) -> tuple[Group, ...]:
+    """The given values of a check of any kind."""
+    page = ONE_PAGES.get(str(document.get("kind")))
+    return given(document, values_used, display) if page is None else page.given(document, values_used, display)
+
+
+def headline(result: Mapping[str, Any], display: str) -> str:
+    """The line under the verdict, for every kind of check."""
+    page = ONE_PAGES.get(str(result.get("kind")))
+    return governing(result, display) if page is None else page.headline(result, display)
 
 
 @dataclass(frozen=True)
@@ -126,6 +139,19 @@ def _numbered(sheet: SheetData, drawings: Drawings) -> Iterator[Part]:
 
 
 def _sections(sheet: SheetData, drawings: Drawings) -> Iterator[tuple[str, Iterable[Part]]]:
+    yield from _one_page(sheet) if str(sheet.result.get("kind")) in ONE_PAGES else _member(sheet, drawings)
+    yield from _common(sheet)
+
+
+def _one_page(sheet: SheetData) -> Iterator[tuple[str, Iterable[Part]]]:
+    page = ONE_PAGES[str(sheet.result["kind"])]
+    groups = page.given(sheet.document, sheet.result.get("values_used") or {}, sheet.display)
+    yield "Given values", _given_parts(groups, sheet)
+    for title, parts in page.blocks(sheet.result, sheet.display):
+        yield title, [dict(part) for part in parts]
+
+
+def _member(sheet: SheetData, drawings: Drawings) -> Iterator[tuple[str, Iterable[Part]]]:
     result, display = sheet.result, sheet.display
     groups = given(sheet.document, result.get("values_used") or {}, display)
     basis = [group for group in groups if group.title in ("Basis", "Combinations")]
@@ -137,6 +163,11 @@ def _sections(sheet: SheetData, drawings: Drawings) -> Iterator[tuple[str, Itera
     yield "Joints", tables.joints(result, display)
     yield "Pieces", tables.pieces(result, display)
     yield "Deflection", tables.deflection(result, display)
+
+
+def _common(sheet: SheetData) -> Iterator[tuple[str, Iterable[Part]]]:
+    """What every kind of check ends with."""
+    result, display = sheet.result, sheet.display
     yield "What is missing", _list(in_units(str(line), display) for line in result.get("missing", ()))
     yield "Cautions and replies", _cautions(result, sheet.replies, display)
     yield "Working", working(result, display)

@@ -118,13 +118,7 @@ class _Writer:
 
     def used(self, value: object, kind: str) -> str:
         """The value the check used, in the unit of the display; '' for words and plain factors."""
-        if kind in ("", "factor") or isinstance(value, bool) or not isinstance(value, str | int | float):
-            return ""
-        try:
-            number = units.parse("", value, kind)
-        except InputError:
-            return ""
-        return unit(units.KINDS[kind].unit, self.display).full(number, 6)
+        return used_text(value, kind, self.display)
 
     def row(self, label: str, value: object, kind: str) -> Row:
         """One row for one value."""
@@ -342,6 +336,17 @@ def provenance(entry: Typed) -> str:
         if entry.get(field):
             words.append(str(entry[field]))
     return "; ".join(word for word in words if word)
+
+
+def used_text(value: object, kind: str, display: str) -> str:
+    """A quantity as the check used it, in the unit of the display; '' for words and plain factors."""
+    if kind in ("", "factor") or isinstance(value, bool) or not isinstance(value, str | int | float):
+        return ""
+    try:
+        number = units.parse("", value, kind)
+    except InputError:
+        return ""
+    return unit(units.KINDS[kind].unit, display).full(number, 6)
 
 
 def typed_text(value: object) -> str:

@@ -9,6 +9,7 @@ from __future__ import annotations
 import json
 import re
 import threading
+from collections.abc import Mapping
 from functools import lru_cache
 from typing import Any, Final
 
@@ -127,6 +128,16 @@ def _set(main: str, data: dict[str, Any], timestamp: int) -> bytes:
 def unprintable(text: str) -> list[str]:
     """The characters of a text that the sheet's fonts do not have, each once, in the order in which they stand."""
     return [each for each in dict.fromkeys(text) if not _printable(each)]
+
+
+def unprintable_boxes(boxes: Mapping[str, str]) -> dict[str, str]:
+    """What to say beside each box of a form whose text the sheet could not print later."""
+    found = {name: unprintable(text) for name, text in boxes.items() if not text.isascii()}
+    return {
+        name: f"The sheet's fonts have no “{'”, “'.join(characters[:5])}”; use other letters or signs here."
+        for name, characters in found.items()
+        if characters
+    }
 
 
 @lru_cache(maxsize=4096)

@@ -7,9 +7,10 @@ from collections.abc import Iterable, Iterator, Mapping, Sequence
 from typing import Any
 
 from server.sheets import coupon_tables, tables
-from server.sheets.composition import PRECEDENCE, STANDING_CAUTION
+from server.sheets.composition import PRECEDENCE, STANDING_CAUTION, headline
+from server.sheets.one_pages import ONE_PAGES
 from server.sheets.steps import working_groups
-from server.sheets.values import governing, in_units, utilisation, verdict
+from server.sheets.values import in_units, utilisation, verdict
 from server.working import plain
 
 WIDTH = 80
@@ -29,7 +30,7 @@ def terminal(result: Mapping[str, Any], display: str | None = None) -> str:
 
 def _lines(result: Mapping[str, Any], display: str) -> Iterator[str]:
     yield from _head(result, display)
-    for title, parts in coupon_tables.blocks(result, display) if _coupons(result) else _member(result, display):
+    for title, parts in _blocks(result, display):
         yield from _block(title, parts)
     yield from _listed("What is missing", (in_units(str(line), display) for line in result.get("missing", ())))
     yield from _listed("Cautions", (in_units(_caution(each), display) for each in result.get("cautions", ())))
@@ -37,6 +38,13 @@ def _lines(result: Mapping[str, Any], display: str) -> Iterator[str]:
     yield from _listed("Not checked", (str(line) for line in result.get("not_checked", ())))
     yield from ["", *_wrapped(PRECEDENCE), "", *_wrapped(STANDING_CAUTION), ""]
     yield str(result.get("engine", ""))
+
+
+def _blocks(result: Mapping[str, Any], display: str) -> Iterable[tuple[str, Iterable[Part]]]:
+    page = ONE_PAGES.get(str(result.get("kind")))
+    if page is not None:
+        return page.blocks(result, display)
+    return coupon_tables.blocks(result, display) if _coupons(result) else _member(result, display)
 
 
 def _coupons(result: Mapping[str, Any]) -> bool:
@@ -55,8 +63,8 @@ def _head(result: Mapping[str, Any], display: str) -> Iterator[str]:
     word = verdict(result)
     used = result.get("utilisation")
     yield f"{word}   utilisation {utilisation(used)}" if used is not None else word
-    headline = coupon_tables.headline if _coupons(result) else governing
-    yield from _wrapped(headline(result, display))
+    line = coupon_tables.headline if _coupons(result) else headline
+    yield from _wrapped(line(result, display))
     if result.get("title"):
         yield from ["", *_wrapped(str(result["title"]))]
 
@@ -66,7 +74,7 @@ def _title(text: str) -> list[str]:
 
 
 def _block(title: str, parts: Iterable[Part]) -> Iterator[str]:
-    listed = list(parts)
+    listed = [part for part in parts if part["kind"] != "drawing"]
     if not listed:
         return
     yield from _title(title)
@@ -75,7 +83,12 @@ def _block(title: str, parts: Iterable[Part]) -> Iterator[str]:
             yield from ["", *_wrapped(part["title"] + (f" ({part['about']})" if part["about"] else ""))]
         elif part["kind"] == "pairs":
             for name, value in part["pairs"]:
-                yield f"{name:<34}{value}"
+                yield from _wrapped(f"{name:<33} {value}".rstrip(), "", " " * 34)
+        elif part["kind"] == "text":
+            yield from _wrapped(part["text"])
+        elif part["kind"] == "list":
+            for line in part["items"]:
+                yield from _wrapped(line, "- ", "  ")
         elif part["kind"] == "table":
             if number and listed[number - 1]["kind"] == "table":
                 yield ""

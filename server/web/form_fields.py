@@ -70,6 +70,7 @@ class Box:
     wide: bool = False
     whole: bool = False  # a whole number
     shapes: tuple[str, ...] = ()  # the shapes of piece it belongs to; none: every shape
+    lines: int = 0  # a box of several lines
 
     @property
     def place(self) -> str:

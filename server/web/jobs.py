@@ -10,6 +10,7 @@ from fastapi.responses import Response
 
 from server import jobs
 from server.errors import DocumentError
+from server.sheets import ONE_PAGES
 from server.web.inputs import DbSession, FormValues, Id, whole
 from server.web.pages import Boxes, beside, page, see
 
@@ -56,7 +57,8 @@ def create_job(request: Request, session: DbSession, values: FormValues) -> Resp
 @router.get("/{job_id}", name="show_job")
 def show_job(request: Request, session: DbSession, job_id: Id) -> Response:
     """Show a job's heading and its checks."""
-    return page(request, "job/show.html", job=jobs.get(session, job_id), checks=jobs.checks_of(session, job_id))
+    job, checks = jobs.get(session, job_id), jobs.checks_of(session, job_id)
+    return page(request, "job/show.html", job=job, checks=checks, one_pages=tuple(ONE_PAGES.values()))
 
 
 @router.get("/{job_id}/heading", name="edit_job")

@@ -3,39 +3,27 @@
 from __future__ import annotations
 
 from collections.abc import Iterable, Mapping
-from dataclasses import dataclass, replace
+from dataclasses import replace
 from typing import Any
 
 from fastapi import APIRouter, Request
 from fastapi.responses import Response
-from markupsafe import Markup
 
-from server import checks, documents, jobs, library, sheets, working
+from server import checks, documents, jobs, library, sheets
 from server.errors import Fault, JointError
+from server.sheets import ONE_PAGES
+from server.sheets.asked import RECORDS
 from server.storage import Session
-from server.web import form_shape, form_words, forms, layouts
+from server.web import form_shape, form_words, forms, layouts, one_page
 from server.web.errors import faults_of
 from server.web.form_fields import VALUE_GROUPS
 from server.web.form_view import Form
 from server.web.inputs import DbSession, FormValues, Id, whole
 from server.web.pages import page, path_for, see
-from server.web.panel import panel
+from server.web.panel import Judged, panel, records_offered
+from server.web.steps import working_of
 
 router = APIRouter(include_in_schema=False)
-
-_RECORD_GROUPS = {"adhesives": "bonds", "fasteners": "fasteners", "materials": "materials"}
-_MOST_RECORDS = 500
-
-
-@dataclass(frozen=True)
-class Judged:
-    """One form, read and checked: a result, or what stands in its way."""
-
-    raw: Mapping[str, Any]
-    result: Mapping[str, Any] | None
-    messages: Mapping[str, str]
-    on_top: tuple[str, ...] = ()
-    waiting: tuple[str, ...] = ()
 
 
 def judge(session: Session, values: Mapping[str, str], *, patient: bool = True, working: bool = True) -> Judged:
@@ -58,17 +46,8 @@ def judge(session: Session, values: Mapping[str, str], *, patient: bool = True, 
     return Judged(reading.raw, None if messages or on_top else result, messages, tuple(on_top))
 
 
-LONG_LINE = 60  # characters of numbers beyond which a line may have to be scrolled, so it takes the keyboard's focus
-
-
 def _unprintable(values: Mapping[str, str]) -> dict[str, str]:
-    """Say at entry which characters the sheet could not print later."""
-    found = {name: sheets.unprintable(text) for name, text in values.items() if not text.isascii()}
-    return {
-        name: f"The sheet's fonts have no “{'”, “'.join(characters[:5])}”; use other letters or signs here."
-        for name, characters in found.items()
-        if characters and forms.is_box(name)
-    }
+    return sheets.unprintable_boxes({name: text for name, text in values.items() if forms.is_box(name)})
 
 
 def _still_to_enter(values: Mapping[str, str], raw: Mapping[str, Any]) -> Iterable[str]:
@@ -130,6 +109,8 @@ def save_check(request: Request, session: DbSession, values: FormValues, job_id:
 def edit_check(request: Request, session: DbSession, check_id: Id, revision: str = "") -> Response:
     """Show the form filled with a revision of a check, the newest unless one is named."""
     saved = jobs.revision_of(session, check_id, whole(revision))
+    if saved.result["kind"] in ONE_PAGES:
+        return one_page.edit(request, session, saved)
     values = forms.write(saved.document) | {"mark": saved.mark}
     job = jobs.get(session, saved.job_id)
     return _page(request, session, job, values, judge(session, values, patient=False), check_id)
@@ -138,7 +119,11 @@ def edit_check(request: Request, session: DbSession, check_id: Id, revision: str
 @router.post("/checks/{check_id}/revisions", name="revise_check")
 def revise_check(request: Request, session: DbSession, values: FormValues, check_id: Id) -> Response:
     """Save the form as the next revision of a check, or give it back as typed."""
-    return _save(request, session, dict(values), jobs.revision_of(session, check_id).job_id, check_id)
+    saved = jobs.revision_of(session, check_id)
+    if saved.result["kind"] in ONE_PAGES:
+        asked = one_page.kind_of(str(saved.result["kind"]))
+        return one_page.save(request, session, asked, dict(values), saved.job_id, check_id)
+    return _save(request, session, dict(values), saved.job_id, check_id)
 
 
 def _save(request: Request, session: Session, values: dict[str, str], job_id: int, check_id: int = 0) -> Response:
@@ -234,29 +219,5 @@ def _shown(judged: Judged, values: Mapping[str, str]) -> dict[str, Any]:
 
 def _library(session: Session) -> dict[str, tuple[tuple[str, str], ...]]:
     """Return the records to choose from, by group of the form."""
-    found = {
-        name: library.search(session, group=_RECORD_GROUPS[name], limit=_MOST_RECORDS).records for name in VALUE_GROUPS
-    }
-    return {
-        name: tuple(
-            (record.key, f"{record.key}  {record.name}, rev {record.revision} {record.status}") for record in records
-        )
-        for name, records in found.items()
-    }
-
-
-def working_of(result: Mapping[str, Any]) -> list[tuple[str, list[dict[str, object]]]]:
-    """Return the stored steps by their groups, formulas as MathML in the units shown."""
-    display = "US" if result.get("display") == "US" else "SI"
-    groups: dict[str, list[dict[str, object]]] = {}
-    for step in result["steps"]:
-        groups.setdefault(step.get("group") or "Check", []).append(
-            {
-                "title": sheets.in_units(step["title"], display),
-                "long": len(step["substituted"]) > LONG_LINE,
-                "math": Markup(working.mathml(step, display)),  # noqa: S704 -- our own printer escapes every text
-                "note": sheets.in_units(step.get("note", ""), display),
-                "source": sheets.in_units(step["source"], display),
-            }
-        )
-    return list(groups.items())
+    offered = records_offered(session)
+    return {name: offered[RECORDS[name]] for name in VALUE_GROUPS}

@@ -12,13 +12,16 @@ from typing import Any
 
 from markupsafe import Markup
 
-from server import sheets
+from server import library, sheets
 from server.sheets import values as written
+from server.sheets.asked import RECORDS
 from server.sheets.section_view import joint_numbers
+from server.storage import Session
 from server.working import exceeds
 
 Result = Mapping[str, Any]
 QUANTITIES = ("shear", "moment", "deflection", "deflection_long_term")
+_MOST_RECORDS = 500
 _SPLITS = {"cut": "clean cut", "symmetry": "by symmetry", "field": "by field"}
 
 
@@ -75,41 +78,105 @@ class Caution:
 
 
 @dataclass(frozen=True)
-class Panel:
-    """Everything the result panel shows."""
+class Judged:
+    """One form, read and checked: a result, or what stands in its way."""
 
+    raw: Mapping[str, Any]
+    result: Mapping[str, Any] | None
+    messages: Mapping[str, str]
+    on_top: tuple[str, ...] = ()
+    waiting: tuple[str, ...] = ()
+
+
+@dataclass(frozen=True)
+class Found:
+    """What the result panel of every kind shows; ``template`` draws what is the kind's own."""
+
+    template: str
     verdict: str
     utilisation: str
     governing: str
+    missing: tuple[str, ...]
+    cautions: tuple[Caution, ...]
+    not_checked: tuple[str, ...]
+
+
+@dataclass(frozen=True)
+class OnePagePanel(Found):
+    """The result of a check that fits on one page: its blocks, as they are printed."""
+
+    blocks: tuple[tuple[str, tuple[Mapping[str, Any], ...]], ...]
+
+
+@dataclass(frozen=True)
+class Panel(Found):
+    """The result of a member check."""
+
     section: Markup
     loads: Markup
     diagrams: tuple[Markup, ...]
     joints: tuple[JointRow, ...]
     pieces: tuple[PieceRow, ...]
     sags: tuple[SagRow, ...]
-    missing: tuple[str, ...]
-    cautions: tuple[Caution, ...]
-    not_checked: tuple[str, ...]
     extremes: tuple[tuple[str, str], ...]
     units: Mapping[str, str]
+
+
+def any_panel(result: Result, display: str) -> Found:
+    """Return the panel of a result of any kind."""
+    if result["kind"] in sheets.ONE_PAGES:
+        return one_page_panel(result, display)
+    return panel(result, display)
+
+
+def one_page_panel(result: Result, display: str) -> OnePagePanel:
+    """Return the panel of a check that fits on one page."""
+    found = sheets.ONE_PAGES[str(result["kind"])].blocks(result, display)
+    blocks = ((title, tuple(_part(each) for each in parts)) for title, parts in found)
+    return OnePagePanel(
+        **_of_every_kind(result, display, "check/_found_parts.html"),
+        blocks=tuple((title, parts) for title, parts in blocks if parts),
+    )
+
+
+def _part(part: Mapping[str, Any]) -> Mapping[str, Any]:
+    return {**part, "svg": _drawn(part["svg"])} if part["kind"] == "drawing" else part
+
+
+def _of_every_kind(result: Result, display: str, template: str) -> dict[str, Any]:
+    return {
+        "template": template,
+        "verdict": str(result["verdict"]),
+        "utilisation": written.utilisation(result.get("utilisation")),
+        "governing": sheets.headline(result, display),
+        "missing": _together(written.in_units(str(line), display) for line in result["missing"]),
+        "cautions": tuple(_cautions(result, display)),
+        "not_checked": tuple(result["not_checked"]),
+    }
+
+
+def records_offered(session: Session) -> dict[str, tuple[tuple[str, str], ...]]:
+    """Return the library's records to choose from, by their group."""
+    found = {group: library.search(session, group=group, limit=_MOST_RECORDS).records for group in RECORDS.values()}
+    return {
+        group: tuple(
+            (record.key, f"{record.key}  {record.name}, rev {record.revision} {record.status}") for record in records
+        )
+        for group, records in found.items()
+    }
 
 
 def panel(result: Result, display: str) -> Panel:
     """Return the panel of a result, in SI or US units."""
     numbers = joint_numbers(result)
     return Panel(
-        verdict=str(result["verdict"]),
-        utilisation=written.utilisation(result.get("utilisation")),
-        governing=written.governing(result, display),
+        **_of_every_kind(result, display, "check/_found_member.html"),
         section=_drawn(sheets.section_svg(result, display=display)),
         loads=_drawn(sheets.loads_svg(result, display=display)),
         diagrams=_diagrams(result, display),
         joints=tuple(_joint(joint, numbers.get(joint["id"], 0), display) for joint in result["joints"]),
         pieces=tuple(_piece(piece, display) for piece in result["pieces"]),
         sags=tuple(_sag(each, display) for each in result.get("deflection_limits", ())),
-        missing=_together(written.in_units(str(line), display) for line in result["missing"]),
-        cautions=tuple(_cautions(result, display)),
-        not_checked=tuple(result["not_checked"]),
         extremes=tuple(_extremes(result["member"], display)),
         units={stored: written.unit(stored, display).text for stored in ("N/mm", "mm", "MPa")},
     )
@@ -181,7 +248,7 @@ def _sag(each: Mapping[str, Any], display: str) -> SagRow:
 
 def _cautions(result: Result, display: str) -> Iterable[Caution]:
     """Put cautions on one subject together; a sentence said of several joints or pieces names them all once."""
-    ids = {str(part["id"]) for group in ("joints", "pieces") for part in result[group]}
+    ids = {str(part["id"]) for group in ("joints", "pieces") for part in result.get(group, ())}
     subjects: dict[tuple[str, bool], dict[str, list[str]]] = {}
     for each in result["cautions"]:
         sentences = subjects.setdefault((str(each["about"]), bool(each.get("answer"))), {})

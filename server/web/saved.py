@@ -15,9 +15,9 @@ from server import jobs, library, sheets
 from server.jobs import Moved, SavedRevision
 from server.storage import Session
 from server.web.inputs import DbSession, FormValues, Id
-from server.web.member import working_of
 from server.web.pages import page, see
-from server.web.panel import panel
+from server.web.panel import any_panel
+from server.web.steps import working_of
 
 router = APIRouter(prefix="/checks", include_in_schema=False)
 
@@ -112,10 +112,10 @@ def _page(request: Request, session: Session, saved: SavedRevision) -> Response:
         job=jobs.get(session, saved.job_id),
         saved=saved,
         revisions=jobs.revisions_of(session, saved.check_id),
-        given=sheets.given(saved.document, saved.values_used, display),
+        given=sheets.given_values(saved.document, saved.values_used, display),
         used=used,
         notices=[value for value in used if value.today],
-        panel=panel(saved.result, display),
+        panel=any_panel(saved.result, display),
         waiting=(),
         faults_on_page=(),
         swap=False,

@@ -28,6 +28,7 @@ VALUES = {
     "old": "1",
     "new": "1",
     "group": "bonds",
+    "kind": "fastener",
     "key": "B-001",
     "person_id": "7",
 }

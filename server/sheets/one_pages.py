@@ -1,0 +1,8 @@
+"""The kinds of check that fit on one page. A new one is one line here."""
+
+from __future__ import annotations
+
+from server.sheets import fastener
+from server.sheets.one_page import OnePage
+
+ONE_PAGES: dict[str, OnePage] = {page.kind: page for page in (fastener.PAGE,)}
