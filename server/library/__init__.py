@@ -4,7 +4,9 @@ from server.library.acts import approve, approve_invented, put_forward, set_stat
 from server.library.coupon_sets import coupon_document, coupon_result, document_of
 from server.library.finding import search
 from server.library.groups import ALL, EVIDENCE, GROUPS, STATUSES, Group
+from server.library.history import Point, history
 from server.library.obstacles import Obstacle, obstacles
+from server.library.pasted import LineFault, Pasted, read_coupons
 from server.library.properties import PROPERTIES, Property
 from server.library.questions import Question, answer, questions
 from server.library.reading import acts, get, in_force, revisions
@@ -12,6 +14,7 @@ from server.library.record import Act, Approval, Factor, Found, Link, NotFoundEr
 from server.library.records import add, edit
 from server.library.references import assembled, entry, multiplication, resolve, standing
 from server.library.rules import Rules, rules, set_rules
+from server.library.sets import ValueDraft, exclude, include, retention_of, value_draft
 from server.library.uses import Use, where_used
 
 __all__ = [
@@ -25,14 +28,18 @@ __all__ = [
     "Factor",
     "Found",
     "Group",
+    "LineFault",
     "Link",
     "NotFoundError",
     "Obstacle",
+    "Pasted",
+    "Point",
     "Property",
     "Question",
     "Record",
     "Rules",
     "Use",
+    "ValueDraft",
     "acts",
     "add",
     "answer",
@@ -44,19 +51,25 @@ __all__ = [
     "document_of",
     "edit",
     "entry",
+    "exclude",
     "get",
+    "history",
     "in_force",
+    "include",
     "multiplication",
     "obstacles",
     "put_forward",
     "questions",
+    "read_coupons",
     "resolve",
+    "retention_of",
     "revisions",
     "rules",
     "search",
     "set_rules",
     "set_status",
     "standing",
+    "value_draft",
     "waiting",
     "where_used",
 ]

@@ -6,9 +6,10 @@ A question is known by its words: where a new revision raises the same one, the 
 from __future__ import annotations
 
 import hashlib
-from collections.abc import Iterator, Mapping, Sequence
+from collections.abc import Iterable, Iterator, Mapping, Sequence
 from dataclasses import dataclass
 from datetime import datetime
+from typing import Any
 
 from sqlalchemy import select
 
@@ -17,6 +18,7 @@ from server.errors import DocumentError, Fault
 from server.library import fields, reading
 from server.library.coupon_sets import coupon_document, coupon_result
 from server.library.lots import expired_lots
+from server.library.properties import PROPERTIES
 from server.library.record import NotFoundError, Record
 from server.people import Person
 from server.storage import Session
@@ -26,6 +28,7 @@ from server.storage.tables import RecordRevision as RevisionRow
 
 # Cautions of the check that it only mentions, and that an approval may not pass over.
 _ALSO_ASKED = ("identical readings",)
+LEAST_STRESS = 0.05  # MPa; common practice: a bond that breaks below it is none
 BELOW_GLASS_TRANSITION = 20.0  # K; CEN/TS 19101 (scope): service temperature at most Tg - 20 degC
 
 
@@ -68,14 +71,27 @@ def question_key(*words: str) -> str:
 
 def questions(session: Session, record: Record) -> list[Question]:
     """Return what is asked about a set, or about a value: its own questions, then those of the set behind it."""
-    asked = list(_asked(session, record))
-    given = answers(session, "record", [record.revision_id]).get(record.revision_id, {})
-    before = _earlier(session, record) if asked else {}
-    found = [_question(record, about, text, given, before) for about, text in asked]
     behind = record.links.get("set")
-    if record.group == "values" and behind is not None:
-        found += questions(session, reading.get(session, behind.key, behind.revision))
-    return found
+    if record.group != "values" or behind is None:
+        return _answered(session, record, _asked(session, record))
+    coupons = reading.get(session, behind.key, behind.revision)
+    statistic = record.values.get("statistic")
+    of_the_set = _answered(session, coupons, _asked(session, coupons))
+    own = list(_of_a_value(record))
+    if statistic:  # the set's questions about its own distribution are not this value's
+        mine = dict.fromkeys(_of_the_check(coupons, statistic))
+        theirs = set(_of_the_check(coupons))
+        of_the_set = [each for each in of_the_set if (each.about, each.text) not in theirs - set(mine)]
+        own += [each for each in mine if each not in theirs]
+    return _answered(session, record, own) + of_the_set
+
+
+def _answered(session: Session, record: Record, asked: Iterable[tuple[str, str]]) -> list[Question]:
+    """Questions about one revision with what was answered."""
+    listed = list(dict.fromkeys(asked))
+    given = answers(session, "record", [record.revision_id]).get(record.revision_id, {})
+    before = _earlier(session, record) if listed else {}
+    return [_question(record, about, text, given, before) for about, text in listed]
 
 
 def _question(
@@ -162,16 +178,29 @@ def _earlier(session: Session, record: Record) -> dict[str, Answer]:
 def _asked(session: Session, record: Record) -> Iterator[tuple[str, str]]:
     if record.group == "sets":
         yield from _of_the_check(record)
+        yield from _loads(record)
         yield from _cured(session, record)
         yield from expired_lots(session, record)
     elif record.group == "values":
         yield from _of_a_value(record)
 
 
-def _of_the_check(record: Record) -> Iterator[tuple[str, str]]:
-    for caution in coupon_result(record)["cautions"]:
+def _of_the_check(record: Record, statistic: Mapping[str, Any] | None = None) -> Iterator[tuple[str, str]]:
+    for caution in coupon_result(record, statistic)["cautions"]:
         if caution["answer"] or caution["about"] in _ALSO_ASKED:
             yield str(caution["about"]), str(caution["text"])
+
+
+def _loads(record: Record) -> Iterator[tuple[str, str]]:
+    """Loads so small that they look like stresses typed in a load's place."""
+    result, coupons = coupon_result(record), record.values["coupons"]
+    loads = all("load" in coupon for coupon in coupons)
+    if loads and PROPERTIES[record.values["property"]].kind == "stress" and 0 < result["mean_stress"] < LEAST_STRESS:
+        yield (
+            "stress for load",
+            f"The loads give {units.show(result['mean_stress'], 'stress')} on average, less than any bond holds: were "
+            "stresses typed where loads were asked, or is the unit of the loads wrong?",
+        )
 
 
 def _cured(session: Session, record: Record) -> Iterator[tuple[str, str]]:
