@@ -5,7 +5,6 @@ Nothing of ``server.working`` takes part in the arithmetic here: the printed lin
 
 from __future__ import annotations
 
-import json
 import math
 from collections.abc import Iterator
 from functools import cache
@@ -16,10 +15,11 @@ from typing import Any
 import numpy as np
 import pytest
 
-from server import checks, documents, library, storage
+from server import checks, documents, jobs, storage
+from server.jobs import demo
 from tests.checks.oracle_documents import DOCUMENTS
 
-SEED = Path(__file__).parents[2] / "seed_data"
+ROOT = Path(__file__).parents[2]
 CALCULATOR = {
     "__builtins__": {}, "sqrt": math.sqrt, "exp": math.exp, "log": math.log, "tanh": math.tanh, "cosh": math.cosh,
     "sinh": math.sinh, "pi": math.pi, "abs": abs, "max": max, "min": min,
@@ -31,34 +31,41 @@ ON_ARRAYS = {
 LEFT_OUT = "... ("  # a sum of more than twelve terms prints its first two and its last
 
 
-def _demo_documents() -> Iterator[tuple[str, Any]]:
-    for file in sorted(SEED.glob("checks/*.json")):
+def _demo_files() -> Iterator[tuple[str, Any]]:
+    for file in sorted((ROOT / "seed_data/checks").glob("*.json")):
         if file.name != "wrong.json":
-            yield file.name, json.loads(file.read_text("utf-8"))
-    for job in json.loads((SEED / "jobs.json").read_text("utf-8")):
-        for check in job["checks"]:
-            for number, each in enumerate([check, *check.get("then", [])], 1):
-                yield f"{job['number']} {check['mark']} revision {number}", each["document"]
+            yield file.name, checks.run(documents.read(file.read_bytes()))
 
 
-@cache
-def results() -> dict[str, dict[str, Any]]:
-    """The results of all demo documents, filled from the demo shop's records, and of the oracle's documents."""
+def _demo_shop() -> Iterator[tuple[str, Any]]:
+    """What the demo shop has saved: every revision of every check."""
     with TemporaryDirectory() as folder:
         engine = storage.engine(Path(folder) / "book.db")
         storage.migrate(engine)
+        demo.fill(engine)
         with storage.reading(engine) as session:
-            for record in json.loads((SEED / "library.json").read_text("utf-8")):
-                library.add(session, **record, made_by="demo", reason="demo")
-            found = {name: checks.run(library.resolve(session, documents.read(raw))) for name, raw in _demo_documents()}
+            for job in jobs.search(session).jobs:
+                for check in jobs.checks_of(session, job.id):
+                    for line in jobs.revisions_of(session, check.id):
+                        saved = jobs.revision_of(session, check.id, line.revision)
+                        yield f"{saved.mark} revision {saved.revision}", saved.result
         engine.dispose()
-    return found | {name: checks.run(documents.read(raw)) for name, raw in DOCUMENTS.items()}
+
+
+@cache
+def results() -> dict[str, Any]:
+    """The results of all demo documents, as the demo shop has saved them, and of the oracle's documents."""
+    return {
+        **dict(_demo_files()),
+        **dict(_demo_shop()),
+        **{name: checks.run(documents.read(raw)) for name, raw in DOCUMENTS.items()},
+    }
 
 
 def steps() -> Iterator[tuple[str, dict[str, Any]]]:
     """Every step with a formula, with where it stands."""
     for name, result in results().items():
-        for step in result["steps"]:  # type: ignore[attr-defined]
+        for step in result["steps"]:
             if step["formula"]:
                 yield f"{name}, {step['group']}: {step['title']}", step
 
