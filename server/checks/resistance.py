@@ -11,7 +11,7 @@ from __future__ import annotations
 from collections.abc import Iterable, Sequence
 from dataclasses import dataclass, field
 from functools import lru_cache
-from typing import Literal
+from typing import Literal, Protocol
 
 import numpy as np
 from numpy.typing import NDArray
@@ -110,27 +110,40 @@ class Weighed:
         return float(self.claim.at[self.row])
 
 
-class Judge:
+class Combinations(Protocol):
+    """The combinations that strengths are weighed over; ``strength`` picks those for strength among ``names``."""
+
+    @property
+    def names(self) -> tuple[str, ...]: ...
+
+    @property
+    def durations(self) -> tuple[str | None, ...]: ...
+
+    @property
+    def strength(self) -> tuple[int, ...]: ...
+
+    @property
+    def strength_names(self) -> tuple[str, ...]: ...
+
+
+class Judged(Protocol):
+    """What is read of a document: how strengths are divided."""
+
+    @property
+    def basis(self) -> documents.Allowable | documents.LimitState: ...
+
+
+class Weigher:
     """Gathers strengths for one document, with what is missing or doubtful about them, and weighs claims."""
 
-    def __init__(
-        self,
-        document: documents.MemberDocument,
-        actions: Actions,
-        working: Working,
-        findings: Findings,
-        places: Places | None = None,
-    ) -> None:
-        self.document, self.actions, self.working, self.findings = document, actions, working, findings
-        self.places = places or Places(document)
+    def __init__(self, document: Judged, actions: Combinations, working: Working, findings: Findings) -> None:
+        self.basis, self.combinations, self.working, self.findings = document.basis, actions, working, findings
         self._durations: dict[tuple[str, str], tuple[float, ...]] = {}
         self._common: float | None = None
 
-    def with_divisor(self, divisor: float | None) -> Judge:
-        """A judge of the same check that divides every strength by one factor, such as the fall-back's."""
-        other = Judge(self.document, self.actions, self.working, self.findings, self.places)
-        other._common = divisor
-        return other
+    def place(self, at: float) -> str:
+        """What stands at a place, in words; '' where nothing has a name."""
+        return ""
 
     def strength(
         self,
@@ -158,7 +171,7 @@ class Judge:
         )
 
     def _divisor(self, kind: Kind, owner: str) -> float:
-        found = self.document.basis.factor(kind, owner)
+        found = self.basis.factor(kind, owner)
         assert found is not None  # documents refuses a basis without a factor that the check uses
         return found
 
@@ -170,8 +183,8 @@ class Judge:
         label = f"{kind} {owner!r}"
         table = holder.duration_factors
         found = []
-        for k in self.actions.strength:
-            wanted = self.actions.durations[k]
+        for k in self.combinations.strength:
+            wanted = self.combinations.durations[k]
             if wanted is None or not table:
                 found.append(1.0)
             elif wanted in table:
@@ -179,8 +192,8 @@ class Judge:
             else:
                 found.append(np.nan)
                 self.findings.miss(
-                    f"duration factor of {label} for {wanted!r} (combination {self.actions.names[k]!r}): its table "
-                    f"has only {', '.join(table)}; add it to the record from the code you work to."
+                    f"duration factor of {label} for {wanted!r} (combination {self.combinations.names[k]!r}): its "
+                    f"table has only {', '.join(table)}; add it to the record from the code you work to."
                 )
         if not table:
             self.findings.caution(
@@ -229,8 +242,8 @@ class Judge:
         claim, row = weighed.claim, weighed.row
         found, unit = claim.strength, claim.strength.unit
         given, resists = STRENGTH_SYMBOL[unit], RESISTANCE_SYMBOL[unit]
-        combination = self.actions.strength_names[row]
-        duration = self.actions.durations[self.actions.strength[row]]
+        combination = self.combinations.strength_names[row]
+        duration = self.combinations.durations[self.combinations.strength[row]]
         named = "".join(f"; k_{i} = {name}" for i, (name, _) in enumerate(found.factors, 1))
         demand = float(claim.demand[row])
         resistance = self.working.step(
@@ -260,12 +273,38 @@ class Judge:
             "reductions": [],
             "combination": combination,
             "at": weighed.at,
-            "place": self.places.at(weighed.at),
+            "place": self.place(weighed.at),
             "strength": found.value,
             "duration_factor": found.duration[row],
             "factors": dict(found.factors),
             "safety_factor": found.divisor,
         }
+
+
+class Judge(Weigher):
+    """Weighs the claims of a member, whose places have names."""
+
+    def __init__(
+        self,
+        document: documents.MemberDocument,
+        actions: Actions,
+        working: Working,
+        findings: Findings,
+        places: Places | None = None,
+    ) -> None:
+        super().__init__(document, actions, working, findings)
+        self.document, self.actions = document, actions
+        self.places = places or Places(document)
+
+    def with_divisor(self, divisor: float | None) -> Judge:
+        """A judge of the same check that divides every strength by one factor, such as the fall-back's."""
+        other = Judge(self.document, self.actions, self.working, self.findings, self.places)
+        other._common = divisor
+        return other
+
+    def place(self, at: float) -> str:
+        """What stands at a place of the member."""
+        return self.places.at(at)
 
 
 def _resistances(claims: Sequence[Claim], columns: int) -> NDArray[np.float64]:

@@ -16,6 +16,7 @@ from server.documents.common import (
 )
 from server.documents.coupons import Coupon, CouponsDocument, Failure, Statistic
 from server.documents.fastener import FastenerDocument
+from server.documents.lasting import Block, Fatigue, FatigueStrength
 from server.documents.member import (
     Analysis,
     AngleProfile,
@@ -44,6 +45,7 @@ from server.documents.member import (
     Tube,
 )
 from server.documents.reading import GROUPS, KINDS, KINDS_TO_COME, fill, kind_of, read, schema
+from server.documents.splice import SpliceDocument, SpliceLoad
 
 __all__ = [
     "GROUPS",
@@ -55,6 +57,7 @@ __all__ = [
     "AngleProfile",
     "AreaLoad",
     "Basis",
+    "Block",
     "Channel",
     "Combination",
     "CoupleLoad",
@@ -65,6 +68,8 @@ __all__ = [
     "Failure",
     "Fastener",
     "FastenerDocument",
+    "Fatigue",
+    "FatigueStrength",
     "IProfile",
     "Joint",
     "LimitState",
@@ -85,6 +90,8 @@ __all__ = [
     "SelfWeight",
     "Service",
     "SpacingZone",
+    "SpliceDocument",
+    "SpliceLoad",
     "Statistic",
     "Strengths",
     "Support",

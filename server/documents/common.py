@@ -5,13 +5,16 @@ from __future__ import annotations
 from collections.abc import Mapping
 from typing import Annotated, Any, ClassVar, Literal
 
-from pydantic import BaseModel, ConfigDict, Discriminator, Field, PrivateAttr, Tag, model_validator
+from pydantic import Discriminator, Field, PrivateAttr, Tag, model_validator
 
+from server.documents.lasting import FatigueStrength
+from server.documents.model import Model as Model
 from server.documents.quantities import (
     Creep,
     Density,
     Expansion,
     Line,
+    MoistureExpansion,
     Name,
     Peel,
     Poisson,
@@ -19,10 +22,12 @@ from server.documents.quantities import (
     Resistance,
     Revision,
     Safety,
+    Share,
     Size,
     Stiffness,
     Strain,
     Stress,
+    Temperature,
     Text,
 )
 from server.errors import JointError
@@ -32,12 +37,6 @@ from server.errors import JointError
 MARK = "\x00"
 
 Status = Literal["approved", "provisional", "indicative", "draft", "on hold", "withdrawn", "superseded"]
-
-
-class Model(BaseModel):
-    """Base of every part: unknown names are refused, nothing changes after reading."""
-
-    model_config = ConfigDict(extra="forbid", frozen=True)
 
 
 class Lineage(Model):
@@ -103,7 +102,10 @@ class Strengths(Model):
 
 
 class Material(Values):
-    """One material: stiffness, density, strengths. ``kind`` chooses the hatching."""
+    """One material: stiffness, density, strengths. ``kind`` chooses the hatching.
+
+    ``moisture_expansion`` is the strain along the member for 1 % of moisture content.
+    """
 
     E: Stress
     G: Stress | None = None
@@ -111,6 +113,7 @@ class Material(Values):
     nu: Poisson | None = None
     density: Density | None = None
     expansion: Expansion | None = None
+    moisture_expansion: MoistureExpansion | None = None
     yield_: Stress | None = Field(default=None, alias="yield")
     creep: Creep | None = None
     strengths: Strengths = Field(default_factory=Strengths)
@@ -119,7 +122,11 @@ class Material(Values):
 
 
 class Adhesive(Values):
-    """One adhesive as bonded and tested by the shop."""
+    """One adhesive as bonded and tested by the shop.
+
+    ``glass_transition``: temperature at which it softens; ``creep_limit``: the share of its resistance that a lasting
+    load may use; ``fatigue``: what it bears of a load that repeats.
+    """
 
     shear_strength: Stress | None = None
     peel_strength: Peel | None = None
@@ -129,6 +136,9 @@ class Adhesive(Values):
     creep: Creep | None = None
     shear_yield: Stress | None = None
     shear_strain_limit: Strain | None = None
+    glass_transition: Temperature | None = None
+    creep_limit: Share | None = None
+    fatigue: FatigueStrength | None = None
     kind: Line = ""
 
 

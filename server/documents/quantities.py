@@ -165,6 +165,7 @@ Peel = Annotated[
 Stiffness = Annotated[float, Quantity("stiffness", above=0.0)]
 Density = Annotated[float, Quantity("density", above=0.0)]
 Expansion = Annotated[float, Quantity("expansion")]
+MoistureExpansion = Annotated[float, Quantity("factor", least=0.0, most=1.0)]
 Temperature = Annotated[float, Quantity("temperature")]
 Moisture = Annotated[float, Quantity("moisture")]
 Angle = Annotated[float, Quantity("angle")]

@@ -9,7 +9,7 @@ from typing import Any, TypeVar
 from pydantic import BaseModel, ValidationError
 
 from server import units
-from server.documents import coupons, fastener, fields, rules
+from server.documents import coupons, fastener, fields, rules, splice
 from server.documents.common import Adhesive, Document, Fastener, Material, Reference
 from server.documents.faults import MOST, faults_of, nearest, sorted_once
 from server.documents.member import MemberDocument
@@ -42,8 +42,9 @@ KINDS: dict[str, Kind] = {
     "member": Kind(MemberDocument, _member_rules, _member_rules_of_raw),
     "fastener": Kind(fastener.FastenerDocument, fastener.rules, fastener.rules_of_raw),
     "coupons": Kind(coupons.CouponsDocument, coupons.rules, coupons.rules_of_raw),
+    "splice": Kind(splice.SpliceDocument, splice.rules, splice.rules_of_raw),
 }
-KINDS_TO_COME = frozenset(("splice", "strip-end", "glue-up"))
+KINDS_TO_COME = frozenset(("strip-end", "glue-up"))
 
 GROUPS: Mapping[str, type[Material] | type[Adhesive] | type[Fastener]] = {
     "materials": Material,

@@ -20,14 +20,14 @@ FEWEST = 16  # elements on each half
 
 @dataclass(frozen=True, eq=False)
 class Mesh:
-    """Nodes of a batch of bonds, ``(bonds, elements + 1)`` [mm], from 0 to the length of each."""
+    """Nodes of a batch of bonds, ``(bonds, elements + 1)``, from 0 to the length of each, and ``steps`` between them.
+
+    The steps [mm] are kept beside the nodes: at the far end of a very long bond they are less than the last digit of
+    the places.
+    """
 
     nodes: Array
-
-    @property
-    def steps(self) -> Array:
-        """Element lengths [mm]."""
-        return np.diff(self.nodes, axis=1)
+    steps: Array
 
     def inside(self, shares: Array) -> Array:
         """Places at these shares of every element, ``(bonds, elements, shares)`` [mm]."""
@@ -83,7 +83,9 @@ def graded(length: ArrayLike, rate: ArrayLike, *, growth: float = GROWTH, places
     fixed = np.broadcast_to(np.asarray(places, dtype=float), (len(half), np.size(places)))
     if fixed.size:
         nodes = _apart(np.sort(np.concatenate((nodes, fixed), axis=1), axis=1))
-    return Mesh(nodes)
+        return Mesh(nodes, np.diff(nodes, axis=1))
+    steps = np.diff(left, axis=1)
+    return Mesh(nodes, np.concatenate((steps, steps[:, ::-1]), axis=1))
 
 
 def _growth(total: Array, count: int) -> Array:

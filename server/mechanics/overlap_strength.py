@@ -20,19 +20,21 @@ from server.mechanics.overlap_laps import (
     Response,
     axial_system,
     check,
-    peaks,
     plate_fields,
     respond,
     single_shares,
 )
+from server.mechanics.overlap_load import Shares, greatest_load
 from server.mechanics.overlap_scarf import scarf_limits, scarf_system
 from server.mechanics.overlap_solver import Array, Loads, Solver
 from server.mechanics.overlap_tube import torque_system, tube_system
-from server.mechanics.overlap_yield import Shares, Yielded, at_limit, under
+from server.mechanics.overlap_yield import Yielded, at_limit, under
 
 GROWTH = 0.01  # growth of strength ...
 LONGER = 1.1  # ... for an overlap this much longer, below which length is no use
-FINE = 1.12  # growth of the mesh where the yielded length must be found
+FINE = 1.12  # growth of the mesh where the yielded length must be found ...
+CLOSER = 6  # overlaps tried in each narrowing
+FAIR = 1.2  # ... and where only its strength among many is wanted
 
 
 @dataclass(frozen=True)
@@ -73,7 +75,7 @@ def strengths(response: Response, limits: Limits, *, sign: float = 1.0) -> dict[
 
     Notes
     -----
-    False position on the load with the edge moments that go with it; without edge moments the first step is exact.
+    Newton's method on the load with the edge moments that go with it; without edge moments the first step is exact.
 
     References
     ----------
@@ -87,40 +89,21 @@ def strengths(response: Response, limits: Limits, *, sign: float = 1.0) -> dict[
 
 
 def _least_load(response: Response, name: str, limit: float, sign: float) -> Array:
-    def used(load: Array) -> Array:
-        return np.asarray(peaks(response.under(sign * load))[name] / limit - 1)
-
-    count = len(response.at)
-    low, at_low = np.zeros(count), used(np.zeros(count))
-    high = np.full(count, _first_guess(response, name, limit))
-    at_high = used(high)
-    for _ in range(200):
-        more = at_high < 0
-        if not more.any() or float(high.max()) > 1e250:
-            break
-        low, at_low = np.where(more, high, low), np.where(more, at_high, at_low)
-        high = np.where(more, 4 * high, high)
-        at_high = used(high)
-    endless, none = at_high < 0, used(np.zeros(count)) >= 0
-    for turn in range(80):
-        apart = np.where(at_high > at_low, at_high - at_low, 1.0)
-        middle = (low + high) / 2 if turn % 3 == 2 else low + (high - low) * np.clip(-at_low / apart, 0, 1)
-        at_middle = used(middle)
-        below = at_middle < 0
-        low, at_low = np.where(below, middle, low), np.where(below, at_middle, at_low)
-        high, at_high = np.where(below, high, middle), np.where(below, at_high, at_middle)
-        if np.all((high - low <= 1e-9 * high) | (np.abs(at_middle) < 1e-10) | endless | none):
-            low = high = middle
-            break
-    return np.where(none, 0.0, np.where(endless, np.inf, (low + high) / 2))
+    field = response.fields[name]
+    bound = np.full(field.shape[:2], limit)
+    if name == "shear" and "shear_around" in response.fields:
+        # what turns is there already, whatever the axial load
+        turned = np.einsum("bxc,bc->bx", response.fields["shear_around"], response.shares(np.zeros(len(field))))
+        rest = bound**2 - turned**2
+        if (rest < 0).any():
+            return np.zeros(len(field))
+        bound = np.sqrt(rest)
+    low = np.full_like(bound, -np.inf) if name == "peel" else -bound
+    load, _ = greatest_load(field, lambda P: response.shares(sign * P), low, bound, np.zeros(len(field)))
+    return load
 
 
-def _first_guess(response: Response, name: str, limit: float) -> float:
-    columns = np.abs(response.fields[name][..., 0]).max()
-    return float(np.clip(limit / max(float(columns), 1e-300) * 1e-2, 1e-200, 1e200))
-
-
-def yielding(lap: Lap, lengths: Array, action: Action) -> tuple[Solver, Loads, Shares]:
+def yielding(lap: Lap, lengths: Array, action: Action, growth: float = FINE) -> tuple[Solver, Loads, Shares]:
     """The solver, columns and shares of a lap whose bond may yield; axial load, or torque where ``action`` has one.
 
     Raises
@@ -131,7 +114,7 @@ def yielding(lap: Lap, lengths: Array, action: Action) -> tuple[Solver, Loads, S
     check(lap)
     ones = np.ones(len(lengths))
     if lap.layout in ("single-lap", "strap"):
-        solver, loads = axial_system(lap, lengths, action.strain, FINE)
+        solver, loads = axial_system(lap, lengths, action.strain, growth)
         return solver, loads, single_shares(lap, lengths, action)
     if action.moment or action.shear:
         raise InputError(
@@ -141,13 +124,13 @@ def yielding(lap: Lap, lengths: Array, action: Action) -> tuple[Solver, Loads, S
     if lap.layout == "tube-lap" and action.torque:
         if action.strain:
             raise InputError("torque", "torque with a free strain has no elastic-plastic method here.")
-        solver, loads = torque_system(lap, lengths, FINE)
+        solver, loads = torque_system(lap, lengths, growth)
     elif lap.layout == "tube-lap":
-        solver, loads = tube_system(lap, lengths, action.strain, FINE)
+        solver, loads = tube_system(lap, lengths, action.strain, growth)
     elif lap.layout == "scarf":
-        solver, loads = scarf_system(lap, lengths, action.strain, FINE)
+        solver, loads = scarf_system(lap, lengths, action.strain, growth)
     else:
-        solver, loads = axial_system(lap, lengths, action.strain, FINE)
+        solver, loads = axial_system(lap, lengths, action.strain, growth)
     return solver, loads, lambda load: np.stack((load, ones), 1)
 
 
@@ -198,7 +181,7 @@ def yield_strength(
     .. [1] L. J. Hart-Smith, "Adhesive-bonded single-lap joints", NASA CR-112236 (1973), and CR-112235 for double laps.
     """
     lengths = np.atleast_1d(positive("overlap", overlap, "mm"))
-    solver, loads, shares = yielding(lap, lengths, action or Action())
+    solver, loads, shares = yielding(lap, lengths, action or Action(), FINE if whole else FAIR)
     flow, slip = _yield_limits(lap, lengths, shear_yield, strain_limit)
     return at_limit(solver, loads, shares, yield_flow=flow, slip_limit=slip, whole=whole)
 
@@ -296,12 +279,12 @@ def _growing(overlap: Array, found: Array) -> Array:
 def _crossing(strength: Callable[[Array], Array], low: float, high: float) -> float:
     """The last overlap in the range from which 10 % more still gains the bound; narrowed twice."""
     for _ in range(2):
-        tried = np.geomspace(low, high, 7)
+        tried = np.geomspace(low, high, CLOSER)
         found = strength(np.concatenate((tried, LONGER * tried)))
-        now, then = found[:7], found[7:]
+        now, then = found[:CLOSER], found[CLOSER:]
         gain = np.where(now > 0, then / np.where(now > 0, now, 1.0) - 1, -1.0) - GROWTH
         over = np.flatnonzero(gain >= 0)
-        if not over.size or over[-1] == 6:
+        if not over.size or over[-1] == CLOSER - 1:
             return high if over.size else low
         k = int(over[-1])
         part = float(gain[k] / (gain[k] - gain[k + 1]))

@@ -166,7 +166,7 @@ def _radial(lap: Lap, mesh: Mesh, shear: Array) -> tuple[Array, Array, Array]:
     bonds, _, columns = shear.shape
     peel, bent = np.zeros_like(shear), np.zeros((2, *shear.shape))
     for each in range(bonds):
-        h = np.diff(mesh.nodes[each])
+        h = mesh.steps[each]
         value, _first, second = _hermite(h, shares)
         mass = np.einsum("e,g,egi,egj->eij", h, weights, value, value)
         bend = np.einsum("e,g,egi,egj->eij", h, weights, second, second)

@@ -6,19 +6,18 @@ somewhere reaches :math:`s_u = \gamma_u t_a`, the total shear strain limit times
 
 from __future__ import annotations
 
-from collections.abc import Callable
 from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
 from server.errors import InputError
+from server.mechanics.overlap_load import Shares, greatest_load, summed
 from server.mechanics.overlap_solver import Array, Course, Loads, Solver
 
 MOST_ROUNDS = 60
 SETTLED = 1e-7  # relative change of the load in one round
-STRIDE = 1.6  # the slip aimed at grows by this from round to round, so that the yielded length grows steadily
-Shares = Callable[[Array], Array]
+STRIDE = 4.0  # the slip aimed at grows by this from round to round, so that the yielded length grows steadily
 
 
 @dataclass(frozen=True, eq=False)
@@ -95,7 +94,7 @@ def at_limit(
         target = np.minimum(limit, STRIDE * target)
         course = solver.solve(loads, yielded, flow[:, None, None], only_slip=True)
         fresh, found = _load_at(course, shares, target, load)
-        moved = _where(_sum(course.slip_inside, shares(fresh)), at_yield)
+        moved = _where(summed(course.slip_inside, shares(fresh)), at_yield)
         settled = (np.abs(fresh - load) <= SETTLED * np.abs(fresh)) & (target >= limit)
         steady = (moved == yielded).all(axis=(1, 2)) & (target >= limit)
         load, yielded = fresh, moved
@@ -112,11 +111,11 @@ def under(solver: Solver, loads: Loads, shares: Shares, load: ArrayLike, *, yiel
     given, at_yield = _batch(solver, load), flow / stiffness
     act = shares(given)
     course = solver.solve(loads, only_slip=True)
-    yielded = _where(_sum(course.slip_inside, act), at_yield)
+    yielded = _where(summed(course.slip_inside, act), at_yield)
     steady = np.zeros(len(flow), dtype=bool)
     for _ in range(MOST_ROUNDS):
         course = solver.solve(loads, yielded, flow[:, None, None], only_slip=True)
-        moved = _where(_sum(course.slip_inside, act), at_yield)
+        moved = _where(summed(course.slip_inside, act), at_yield)
         steady = (moved == yielded).all(axis=(1, 2))
         yielded = moved
         if steady.all():
@@ -129,39 +128,14 @@ def _batch(solver: Solver, value: ArrayLike) -> Array:
     return np.array(np.broadcast_to(np.asarray(value, dtype=float), len(solver.mesh.nodes)))
 
 
-def _sum(columns: Array, act: Array) -> Array:
-    """All columns times what acts of each; a last column beyond them (what yielded parts do) counts once."""
-    whole: Array = np.einsum("b...c,bc->b...", columns[..., : act.shape[1]], act)
-    return whole + columns[..., -1] if columns.shape[-1] > act.shape[1] else whole
-
-
 def _where(slip: Array, at_yield: Array) -> NDArray[np.int8]:
     return (np.sign(slip) * (np.abs(slip) > at_yield[:, None, None])).astype(np.int8)
 
 
 def _load_at(course: Course, shares: Shares, limit: Array, guess: Array) -> tuple[Array, NDArray[np.bool_]]:
-    """The greatest load at which no slip is beyond ``limit``, and whether there is one above zero.
-
-    The slip is linear in the columns, and what acts of them nearly so in the load: each place allows a range of loads,
-    and all places together the range that is common to them.
-    """
-    load = guess
-    found = np.ones(len(limit), dtype=bool)
-    for _ in range(30):
-        step = np.maximum(1e-4 * np.abs(load), 1e-6)
-        act, next_act = shares(load), shares(load + step)
-        slip = _sum(course.slip, act)
-        slope = (np.einsum("bxc,bc->bx", course.slip[..., : act.shape[1]], next_act - act)) / step[:, None]
-        safe = np.where(np.abs(slope) > 0, slope, 1e-300)
-        rooms = (np.sign(safe) * limit[:, None] - slip) / safe, (-np.sign(safe) * limit[:, None] - slip) / safe
-        most, least = load + rooms[0].min(axis=1), load + rooms[1].max(axis=1)
-        found = (most > least) & (most > 0)
-        fresh = np.where(found, most, 0.0)
-        done = np.abs(fresh - load) <= 1e-12 * np.abs(fresh)
-        load = fresh
-        if done.all():
-            break
-    return load, found
+    """The greatest load at which no slip is beyond ``limit``, and whether there is one above zero."""
+    bound = np.broadcast_to(limit[:, None], course.slip.shape[:2])
+    return greatest_load(course.slip, shares, -bound, bound, guess)
 
 
 def _combined(
@@ -175,7 +149,7 @@ def _combined(
 ) -> Yielded:
     act = shares(load)
     one = {
-        name: _sum(getattr(course, name), act)[..., None]
+        name: summed(getattr(course, name), act)[..., None]
         for name in ("slip", "opening", "force", "shear", "moment", "slip_inside")
         if getattr(course, name).size
     }
