@@ -2,6 +2,8 @@
 
 from server.jobs.export import RecordError, altered, export_revision, print_record
 from server.jobs.headings import FoundJobs, Job, JobLine, create, edit, get, search
+from server.jobs.hindrances import Hindrance, answer, hindrances
+from server.jobs.issuing import Issue, issue, issue_of, issued_pdf, issues
 from server.jobs.moved import Moved, moved
 from server.jobs.revisions import CheckLine, SavedRevision, checks_of, pdf_bytes, revision, revision_of, revisions_of
 from server.jobs.saving import run_again, save
@@ -12,6 +14,8 @@ __all__ = [
     "PAPERS",
     "CheckLine",
     "FoundJobs",
+    "Hindrance",
+    "Issue",
     "Job",
     "JobLine",
     "Moved",
@@ -19,11 +23,17 @@ __all__ = [
     "SavedRevision",
     "Shop",
     "altered",
+    "answer",
     "checks_of",
     "create",
     "edit",
     "export_revision",
     "get",
+    "hindrances",
+    "issue",
+    "issue_of",
+    "issued_pdf",
+    "issues",
     "moved",
     "pdf_bytes",
     "print_record",

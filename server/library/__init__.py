@@ -2,6 +2,7 @@
 
 from server.library.acts import approve, approve_invented, put_forward, set_status, waiting
 from server.library.coupon_sets import coupon_document, coupon_result, document_of
+from server.library.differences import Difference, differences
 from server.library.finding import search
 from server.library.groups import ALL, EVIDENCE, GROUPS, STATUSES, Group
 from server.library.history import Point, history
@@ -15,7 +16,7 @@ from server.library.records import add, edit
 from server.library.references import assembled, entry, multiplication, resolve, standing
 from server.library.rules import Rules, rules, set_rules
 from server.library.sets import ValueDraft, exclude, include, retention_of, value_draft
-from server.library.uses import Use, where_used
+from server.library.uses import LotUses, Use, links_to, lot_uses, standing_on, where_used
 
 __all__ = [
     "ALL",
@@ -25,11 +26,13 @@ __all__ = [
     "STATUSES",
     "Act",
     "Approval",
+    "Difference",
     "Factor",
     "Found",
     "Group",
     "LineFault",
     "Link",
+    "LotUses",
     "NotFoundError",
     "Obstacle",
     "Pasted",
@@ -48,6 +51,7 @@ __all__ = [
     "assembled",
     "coupon_document",
     "coupon_result",
+    "differences",
     "document_of",
     "edit",
     "entry",
@@ -56,6 +60,8 @@ __all__ = [
     "history",
     "in_force",
     "include",
+    "links_to",
+    "lot_uses",
     "multiplication",
     "obstacles",
     "put_forward",
@@ -69,6 +75,7 @@ __all__ = [
     "set_rules",
     "set_status",
     "standing",
+    "standing_on",
     "value_draft",
     "waiting",
     "where_used",

@@ -61,6 +61,8 @@ class SheetData:
     approved: str = ""
     replies: Mapping[str, str] = field(default_factory=dict)
     """Replies to cautions, by the caution's text."""
+    answered: Sequence[tuple[str, str, str]] = ()
+    """Further questions that were answered before the check was issued: what each is about, its text, the reply."""
     content_hash: str = ""
     engine: str = ""
     saved_at: int = 0
@@ -170,6 +172,7 @@ def _common(sheet: SheetData) -> Iterator[tuple[str, Iterable[Part]]]:
     result, display = sheet.result, sheet.display
     yield "What is missing", _list(in_units(str(line), display) for line in result.get("missing", ()))
     yield "Cautions and replies", _cautions(result, sheet.replies, display)
+    yield "Tested as, used as", _answers(sheet.answered, display)
     yield "Working", working(result, display)
     yield "Values used", _values_used(result)
     yield "Not checked", _not_checked(result)
@@ -243,6 +246,19 @@ def _cautions(result: Mapping[str, Any], replies: Mapping[str, str], display: st
         }
 
 
+def _answers(answered: Sequence[tuple[str, str, str]], display: str) -> Iterator[Part]:
+    """What differs between the tests behind a value and its use here, and why it may stand."""
+    for number, (about, text, reply) in enumerate(answered, 1):
+        yield {
+            "kind": "caution",
+            "number": f"{number}",
+            "about": about[:1].upper() + about[1:],
+            "text": in_units(text, display),
+            "answer": True,
+            "reply": reply,
+        }
+
+
 def working(result: Mapping[str, Any], display: str) -> Iterator[Part]:
     """The steps of a result in their groups; a group that repeats another is named once."""
     for group in working_groups(result.get("steps", ())):
@@ -292,6 +308,29 @@ def _values_used(result: Mapping[str, Any]) -> Iterator[Part]:
             tables.column("Source", share=1),
         ]
         yield {"kind": "table", "columns": columns, "rows": rows}
+        yield from _list(_lineage(result.get("values_used") or {}))
+
+
+def _lineage(values_used: Mapping[str, Any]) -> Iterator[str]:
+    """The way from each number of a record back to its coupons, one line a number."""
+    for entries in values_used.values():
+        for name, entry in entries.items():
+            for at, behind in (entry.get("lineage") or {}).items():
+                what = at.replace("_", " ").replace(".", ", ")
+                line = f"{name}, {what}: {behind['record']} rev {behind['revision']}, {behind['status']}"
+                if behind.get("coupon_set"):
+                    out = f", {behind['excluded']} excluded" if behind.get("excluded") else ""
+                    line += (
+                        f", from coupon set {behind['coupon_set']} rev {behind['coupon_set_revision']} "
+                        f"({behind['coupons']} coupons{out}; {behind['statistic']})"
+                    )
+                elif behind.get("origin"):
+                    line += f", {behind['origin']}"
+                if behind.get("approved_by"):
+                    line += f", approved by {behind['approved_by']} on {str(behind.get('approved_at', ''))[:10]}"
+                if behind.get("outside_checker"):
+                    line += f", outside checker {behind['outside_checker']}"
+                yield line
 
 
 def _not_checked(result: Mapping[str, Any]) -> Iterator[Part]:
