@@ -2,15 +2,16 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
-
 import numpy as np
 
 from server import documents
+from server.checks import effective_width, thin_webs
 from server.checks.actions import Actions
-from server.checks.crosssection import Body, Part, Site
+from server.checks.crosssection import Body, Part
 from server.checks.joints import JointCheck
 from server.checks.resistance import Findings
+from server.checks.rules import SKINS, WEBS, chosen
+from server.checks.wide_bonds import extent, wide_bond
 
 NOT_CHECKED = (
     "lateral buckling of the member and local buckling of its pieces",
@@ -32,6 +33,7 @@ def add_cautions(
     _contacts(body, findings)
     _ends(document, body, findings)
     _joints(document, body, joints, findings)
+    _skins(document, body, actions, findings)
     _materials(document, body, actions, findings)
     _member(document, body, actions, findings)
 
@@ -92,7 +94,8 @@ def _joints(document: documents.MemberDocument, body: Body, joints: list[JointCh
             f"{', '.join(ids)}: stiff glue carries nearly all of the flow until it breaks, so the fasteners ({role}) "
             "are held to carry none of it. Their strengths are never added.",
         )
-    _wide_bonds(body, joints, findings)
+    _wide_bonds(document, body, joints, findings)
+    _thin_webs(document, body, findings)
     if slipping:
         findings.caution(
             "slip",
@@ -101,46 +104,76 @@ def _joints(document: documents.MemberDocument, body: Body, joints: list[JointCh
         )
 
 
-@dataclass(frozen=True)
-class WideBond:
-    """A bond wider than its layer spreads the flow over: the rule that says so, and what it would take off."""
-
-    rule: str
-    reduction: float
-
-
-def _wide_bonds(body: Body, joints: list[JointCheck], findings: Findings) -> None:
-    """EN 1995-1-1:2004 expressions (9.10) and (9.14): stress gathers at the edge of a deep or wide bond."""
-    found: dict[WideBond, list[tuple[str, str, float | None]]] = {}
+def _wide_bonds(document: documents.MemberDocument, body: Body, joints: list[JointCheck], findings: Findings) -> None:
+    """EN 1995-1-1:2004 expressions (9.10) and (9.14), where their rule was not chosen: stress gathers at the edge."""
+    rules = chosen(document)
+    found: dict[tuple[str, float, str], list[tuple[str, str, float | None]]] = {}
     for site, check in zip(body.sites, joints, strict=True):
         for part in (site.first, site.second):
-            wide = _wide_bond(site, part, body) if site.bonded and part.rolls else None
-            if wide is not None:
-                found.setdefault(wide, []).append((site.id, part.name, _rolling_use(check, part)))
-    for wide, places in found.items():
+            wide = wide_bond(site, part, body)
+            if wide is not None and wide.rule not in rules:
+                key = (wide.words, round(wide.reduction, 9), wide.rule)
+                found.setdefault(key, []).append((site.id, part.name, _rolling_use(check, part)))
+    for (words, reduction, rule), places in found.items():
         parts = ", ".join(dict.fromkeys(name for _, name, _ in places))
         used = max((use for _, _, use in places if use is not None), default=None)
-        effect = "" if used is None else f" (utilisation {used / wide.reduction:.3g} instead of {used:.3g})"
+        effect = "" if used is None else f" (utilisation {used / reduction:.3g} instead of {used:.3g})"
         findings.caution(
             "wide bond",
-            f"{', '.join(dict.fromkeys(joint for joint, _, _ in places))}: {wide.rule} would multiply the rolling "
-            f"shear strength of {parts} by {wide.reduction:.3f}{effect}; it is not applied here.",
+            f"{', '.join(dict.fromkeys(joint for joint, _, _ in places))}: {words} would multiply the rolling "
+            f"shear strength of {parts}, and the bond's, by {reduction:.3f}{effect}; it is not applied here. Name the "
+            f"rule {rule!r} to apply it.",
             answer=True,
         )
 
 
-def _wide_bond(site: Site, part: Part, body: Body) -> WideBond | None:
-    length = site.contact.length
-    across, up = np.abs(np.asarray(site.contact.end) - np.asarray(site.contact.start))
-    if up > across:
-        bound = 4 * _extent(part, 0) / (2 if _bonded_behind(site, part, body) else 1)
-        words = f"h_f = {length:.4g} mm > 4 b_ef = {bound:.4g} mm. EN 1995-1-1:2004 (9.10)"
-    else:
-        bound = 8 * _extent(part, 1)
-        words = f"b_w = {length:.4g} mm > 8 h_f = {bound:.4g} mm. EN 1995-1-1:2004 (9.14)"
-    if length <= bound * (1 + 1e-9):
-        return None
-    return WideBond(words, round(float((bound / length) ** 0.8), 9))
+def _thin_webs(document: documents.MemberDocument, body: Body, findings: Findings) -> None:
+    """EN 1995-1-1:2004 expressions (9.8) and (9.9), where their rule was not chosen: slender webs buckle in shear."""
+    if WEBS in chosen(document):
+        return
+    slender: dict[str, thin_webs.Web] = {}
+    for stretch in body.stretches:
+        for web in thin_webs.webs(stretch.section):
+            if web.slenderness > thin_webs.BUCKLES and web.part.name not in slender:
+                slender[web.part.name] = web
+    for name, web in slender.items():
+        if web.slenderness > thin_webs.SLENDER:
+            effect = "which is beyond the 70 where expression (9.8) of EN 1995-1-1:2004 stops: stiffen it"
+        else:
+            left = thin_webs.BUCKLES / web.slenderness
+            effect = (
+                f"and EN 1995-1-1:2004 (9.9) would count {left:.3f} of the panel shear that its whole depth carries"
+            )
+        findings.caution(
+            "slender web",
+            f"{name}: its clear depth is {web.slenderness:.4g} times its thickness, {effect}; it is not applied here. "
+            f"Name the rule {WEBS!r} to apply it.",
+            answer=True,
+        )
+
+
+def _skins(document: documents.MemberDocument, body: Body, actions: Actions, findings: Findings) -> None:
+    """EN 1995-1-1:2004 9.1.2: effective width where the rule was not chosen, and skins too wide between ribs."""
+    applied = SKINS in chosen(document)
+    if not applied:
+        for skin, ratio in effective_width.stiffness_ratio(document, body, actions):
+            findings.caution(
+                "effective skin width",
+                f"{skin.part.name}: EN 1995-1-1:2004 9.1.2, Table 9.1 would count {skin.width:.4g} mm of its "
+                f"{extent(skin.part, 0):.4g} mm, which leaves {ratio:.3f} of the bending stiffness; it is not applied "
+                f"here. Name the rule {SKINS!r} to apply it.",
+                answer=True,
+            )
+        return
+    for stretch in body.stretches:
+        for skin in effective_width.skins(document, actions, stretch):
+            widest = effective_width.too_slender(skin)
+            if widest is not None:
+                findings.miss(
+                    f"buckling of {skin.part.name} between its ribs: they stand {widest:.4g} mm clear, over twice "
+                    f"{skin.buckling:.4g} mm (EN 1995-1-1:2004 9.1.2(5)). Set the ribs closer, take a thicker skin, or "
+                    "have its buckling reckoned."
+                )
 
 
 def _rolling_use(check: JointCheck, part: Part) -> float | None:
@@ -150,23 +183,6 @@ def _rolling_use(check: JointCheck, part: Part) -> float | None:
         if limit["what"] == f"rolling shear in {part.name}":
             return float(limit["utilisation"])
     return None
-
-
-def _extent(part: Part, axis: int) -> float:
-    return float(np.ptp(part.outline[:, axis]))
-
-
-def _bonded_behind(site: Site, part: Part, body: Body) -> bool:
-    """Whether the piece is bonded on its other face over the same height (a web between two flange halves)."""
-    low, high = sorted((site.contact.start[1], site.contact.end[1]))
-    for other in body.sites:
-        if other is site or not other.bonded or part not in (other.first, other.second):
-            continue
-        bottom, top = sorted((other.contact.start[1], other.contact.end[1]))
-        apart = abs(other.contact.start[0] - site.contact.start[0]) > 0.5 * _extent(part, 0)
-        if apart and min(high, top) - max(low, bottom) > 0:
-            return True
-    return False
 
 
 def _materials(document: documents.MemberDocument, body: Body, actions: Actions, findings: Findings) -> None:

@@ -7,7 +7,7 @@ section between the ends of its pieces. What the geometry forbids is refused her
 from __future__ import annotations
 
 import math
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 from functools import cached_property
 from itertools import pairwise
@@ -115,12 +115,20 @@ class Site:
 
 @dataclass(frozen=True)
 class CrossSection:
-    """The section over one or more stretches: the parts present and all that follows from them."""
+    """The section over one or more stretches: the parts present and all that follows from them.
+
+    ``shares``: how much of each part counts (effective width); empty where all of every part does.
+    """
 
     parts: tuple[Part, ...]
     sites: tuple[Site, ...]
     pieces: tuple[Piece, ...]
     properties: SectionProperties
+    shares: tuple[float, ...] = ()
+
+    def share(self, position: int) -> float:
+        """How much of the part at a position counts."""
+        return self.shares[position] if self.shares else 1.0
 
     @cached_property
     def shear_stiffness(self) -> float | None:
@@ -139,13 +147,14 @@ class CrossSection:
 
     @cached_property
     def flows(self) -> dict[int, JointFlow]:
-        found = joint_flows(self.pieces, self.properties, _lines(self.parts, self.sites))
+        found = joint_flows(self.pieces, self.properties, lines_of(self.parts, self.sites))
         return {site.index: flow for site, flow in zip(self.sites, found, strict=True)}
 
     @cached_property
     def softened(self) -> tuple[float, float | None]:
         """EI and GA with each piece's E and G divided by 1 + creep."""
-        soft = tuple(_piece(part, creep=True) for part in self.parts)
+        shares = self.shares or (1.0,) * len(self.parts)
+        soft = tuple(_piece(part, creep=True, share=share) for part, share in zip(self.parts, shares, strict=True))
         whole = reweighted(soft, self.properties)
         return whole.EI, shear_stiffness(soft, whole)
 
@@ -206,13 +215,22 @@ def _parts(document: documents.MemberDocument) -> list[Part]:
     return parts
 
 
-def _piece(part: Part, creep: bool = False) -> Piece:
+def with_shares(section: CrossSection, shares: Mapping[int, float]) -> CrossSection:
+    """The section with some parts, by their index, counted only in part: the modulus is taken times the share."""
+    if all(share >= 1.0 for share in shares.values()):
+        return section
+    each = tuple(shares.get(part.index, 1.0) for part in section.parts)
+    pieces = tuple(_piece(part, share=share) for part, share in zip(section.parts, each, strict=True))
+    return CrossSection(section.parts, section.sites, pieces, reweighted(pieces, section.properties), each)
+
+
+def _piece(part: Part, creep: bool = False, share: float = 1.0) -> Piece:
     soften = 1.0 + (part.material.creep or 0.0) if creep else 1.0
     G = part.shear_modulus
     return Piece(
         part.name,
         part.outline,
-        part.material.E / soften,
+        part.material.E * share / soften,
         None if G is None else G / soften,
         part.material.density,
         part.shape.holes,
@@ -342,7 +360,7 @@ def _cross_section(active: tuple[Part, ...], sites: Sequence[Site], start: float
         raise DocumentError(
             [Fault("section.pieces", f"No piece runs {where}; the member is cut through there. Extend a piece.")]
         )
-    loose = tied(len(active), _lines(active, sites))
+    loose = tied(len(active), lines_of(active, sites))
     if loose:
         raise DocumentError(
             [
@@ -358,7 +376,7 @@ def _cross_section(active: tuple[Part, ...], sites: Sequence[Site], start: float
     return CrossSection(active, tuple(sites), pieces, properties(pieces))
 
 
-def _lines(parts: Sequence[Part], sites: Sequence[Site]) -> list[JointLine]:
+def lines_of(parts: Sequence[Part], sites: Sequence[Site]) -> list[JointLine]:
     position = {part.index: i for i, part in enumerate(parts)}
     return [
         JointLine(

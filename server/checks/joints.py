@@ -2,9 +2,10 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 
 import numpy as np
+from numpy.typing import NDArray
 
 from server import documents
 from server.checks.along import FLOW, Along, Demand, RigidAlong, SlidingAlong, leftmost
@@ -13,12 +14,14 @@ from server.checks.fastened import Fastening, claim_fasteners, write_fasteners
 from server.checks.resistance import Claim, Judge, Strength, Weighed, resistance_formula, worst
 from server.checks.slip_steps import write_sliding_flow
 from server.checks.statics import Statics
+from server.checks.wide_bonds import bond_reductions, surface_reductions
 from server.mechanics.flow import JointFlow
 from server.working import formula
 
 MECHANICS = "Jourawski's formula, E-weighted (any mechanics of materials text)"
 FIRST_MOMENT = "abs(sum(E*A*(u - u_0)))"
 STRESS = "q/(b*c)"
+BOND = ("tau", "tau_r")  # what is set against the bonded width: the joint in the whole section, and in the rib alone
 
 
 @dataclass
@@ -34,6 +37,7 @@ class JointCheck:
     demand: Demand | None = None
     claims: list[Claim] = field(default_factory=list)
     incomplete: bool = False
+    times: NDArray[np.float64] | None = None  # what a rib alone has over the whole section, by combination
     governing: Weighed | None = None
     along: Along | None = None
     fastening: Fastening | None = None
@@ -66,7 +70,7 @@ def write_joint(check: JointCheck, weighed: list[Weighed | None], body: Body, ju
         return
     site, group = check.site, f"Joint {check.site.id}"
     _write_flow(check, check.demand, body, judge, statics)
-    bond = [w for w in weighed if w is not None and w.claim.symbol == "tau"]
+    bond = [w for w in weighed if w is not None and w.claim.symbol in BOND]
     limits = [judge.write(w, group) for w in bond]
     if check.fastening is not None:
         force = next((w for w in weighed if w is not None and w.claim.symbol == "F"), None)
@@ -76,13 +80,15 @@ def write_joint(check: JointCheck, weighed: list[Weighed | None], body: Body, ju
         check.result["spacing_needed"] = write_fasteners(check.fastening, force, body, judge, group_of)
         limits += [] if force is None else [judge.write(force, group_of)]
     known = [w for w in weighed if w is not None]
+    limits += [judge.write(w, group) for w in known if w.claim.symbol not in (*BOND, "F")]
     check.result["limits"] = limits
     check.governing = worst(known)
     check.result["utilisation"] = None if check.governing is None else check.governing.utilisation
     if site.bonded:
-        check.result["strength_needed"] = _strength_needed(check, check.demand, judge, group)
+        check.result["strength_needed"] = _strength_needed(check, check.demand, body, judge, group)
         weakest = worst(bond)
-        if weakest is not None and not check.incomplete and len(bond) == len(check.claims) - (len(known) - len(bond)):
+        wanted = sum(claim.symbol in BOND for claim in check.claims)
+        if weakest is not None and not check.incomplete and len(bond) == wanted:
             check.result["width_needed"] = _width_needed(check, check.demand, weakest, judge, group)
 
 
@@ -100,7 +106,7 @@ def _claim(
     check.demand, check.along = demand, flows.along
     if demand is None:
         if flows.rigid.scan.shear and site.bonded:
-            _bond_strengths(site, judge)  # names the values it lacks, so that one look finds all gaps
+            _bond_strengths(site, body, judge)  # names the values it lacks, so that one look finds all gaps
         return check
     if not site.bonded:
         check.fastening = claim_fasteners(site, body, flows.along, demand, judge)
@@ -111,7 +117,7 @@ def _claim(
         check.demand, check.along = rigid, flows.rigid
         carried = rigid if demand is rigid else leftmost(rigid, demand)
     stress = formula(STRESS).array({"q": carried.flow, "b": site.width, "c": site.spec.coverage})
-    strengths = _bond_strengths(site, judge)
+    strengths = _bond_strengths(site, body, judge)
     check.claims = [Claim(s, "tau", stress, carried.at, carried.stretch) for s in strengths if s is not None]
     check.incomplete = None in strengths
     if site.spec.role == "fall-back" and flows.gone is not None:
@@ -163,7 +169,7 @@ def _blank(site: Site) -> dict[str, object]:
     }
 
 
-def _bond_strengths(site: Site, judge: Judge) -> list[Strength | None]:
+def _bond_strengths(site: Site, body: Body, judge: Judge) -> list[Strength | None]:
     """Adhesive, then the surface of either piece; a missing one is None and named in the findings."""
     name, adhesive = _adhesive(site, judge)
     if adhesive.shear_strength is None:
@@ -174,7 +180,8 @@ def _bond_strengths(site: Site, judge: Judge) -> list[Strength | None]:
     bond = judge.strength(
         adhesive.shear_strength, what=f"adhesive {name}", unit="MPa", kind="adhesive", owner=name, holder=adhesive
     )
-    return [bond, *(_surface_strength(part, site, judge) for part in (site.first, site.second))]
+    bond = None if bond is None else replace(bond, reductions=bond_reductions(site, body, judge.rules))
+    return [bond, *(_surface_strength(part, site, body, judge) for part in (site.first, site.second))]
 
 
 def _adhesive(site: Site, judge: Judge) -> tuple[str, documents.Adhesive]:
@@ -185,7 +192,7 @@ def _adhesive(site: Site, judge: Judge) -> tuple[str, documents.Adhesive]:
     return name, adhesive
 
 
-def _surface_strength(part: Part, site: Site, judge: Judge) -> Strength | None:
+def _surface_strength(part: Part, site: Site, body: Body, judge: Judge) -> Strength | None:
     """Shear strength of a piece's surface layer: rolling shear where layered or with its grain across."""
     strengths, word = part.material.strengths, "rolling shear" if part.rolls else "shear"
     value = strengths.rolling_shear if part.rolls else strengths.shear
@@ -194,7 +201,7 @@ def _surface_strength(part: Part, site: Site, judge: Judge) -> Strength | None:
             f"{word} strength of {part.spec.material!r} (surface of {part.name} at joint {site.id}): {word} tests of "
             "the piece (block shear or panel coupons), or its material record."
         )
-    return judge.strength(
+    strength = judge.strength(
         value,
         what=f"{word} in {part.name}",
         unit="MPa",
@@ -202,6 +209,7 @@ def _surface_strength(part: Part, site: Site, judge: Judge) -> Strength | None:
         owner=part.spec.material,
         holder=part.material,
     )
+    return strength and replace(strength, reductions=surface_reductions(site, part, body, judge.rules))
 
 
 def _write_flow(check: JointCheck, demand: Demand, body: Body, judge: Judge, statics: Statics) -> None:
@@ -301,19 +309,21 @@ def _write_first_moment(site: Site, stretch: Stretch, judge: Judge, group: str) 
     return found[0]
 
 
-def _strength_needed(check: JointCheck, demand: Demand, judge: Judge, group: str) -> float | None:
+def _strength_needed(check: JointCheck, demand: Demand, body: Body, judge: Judge, group: str) -> float | None:
     """The characteristic adhesive strength to ask for, whatever strength was or was not given."""
     site = check.site
     name, adhesive = _adhesive(site, judge)
     asked_of = judge.strength(1.0, what="", unit="MPa", kind="adhesive", owner=name, holder=adhesive)
     assert asked_of is not None
+    asked_of = replace(asked_of, reductions=bond_reductions(site, body, judge.rules))
     factors = np.array(asked_of.duration)
     if np.all(np.isnan(factors)):
         return None
-    stress = formula(STRESS).array({"q": demand.flow, "b": site.width, "c": site.spec.coverage})
+    flow = demand.flow if check.times is None else demand.flow * check.times
+    stress = formula(STRESS).array({"q": flow, "b": site.width, "c": site.spec.coverage})
     row = int(np.nanargmax(stress / factors))
     method = "safety factor" if judge.document.basis.method == "allowable" else "partial factor"
-    resists = resistance_formula("1", len(asked_of.factors)).removeprefix("1*")
+    resists = resistance_formula("1", len(asked_of.multipliers)).removeprefix("1*")
     return judge.working.step(
         "Characteristic adhesive shear strength to ask for",
         "f_req",
@@ -326,12 +336,13 @@ def _strength_needed(check: JointCheck, demand: Demand, judge: Judge, group: str
 
 
 def _width_needed(check: JointCheck, demand: Demand, governing: Weighed, judge: Judge, group: str) -> float:
+    times = 1.0 if governing.claim.origin is None or check.times is None else float(check.times[governing.row])
     return judge.working.step(
         "Bonded width needed for the weakest limit",
         "b_req",
         "q/(c*f_d)",
         {
-            "q": (float(demand.flow[governing.row]), "N/mm"),
+            "q": (float(demand.flow[governing.row]) * times, "N/mm"),
             "c": (check.site.spec.coverage, ""),
             "f_d": (governing.resistance, "MPa"),
         },

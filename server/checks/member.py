@@ -8,6 +8,7 @@ from dataclasses import dataclass
 from pydantic import BaseModel
 
 from server import ENGINE, documents
+from server.checks import effective_width
 from server.checks import statics as hand
 from server.checks.actions import Actions, act, envelope
 from server.checks.along import RigidAlong, SlidingAlong
@@ -21,9 +22,13 @@ from server.checks.joints import Flows, JointCheck, claim_joints, write_joint
 from server.checks.pieces import PieceCheck, claim_pieces, write_piece
 from server.checks.places import Places
 from server.checks.resistance import Claim, Findings, Judge, Weighed
+from server.checks.ribs import add_rib_claims
+from server.checks.rules import KNOWN, SKINS, chosen, unknown
+from server.checks.sandwich import add_sandwich_claims
 from server.checks.scan import Scan, scan
-from server.checks.slide import K_U_RULE, Slide, slide
+from server.checks.slide import Slide, slide
 from server.checks.slip_steps import write_effective, write_method
+from server.checks.thin_webs import add_web_claims
 from server.errors import DocumentError, Fault
 from server.working import Working, exceeds
 
@@ -48,12 +53,18 @@ def run(document: documents.MemberDocument, *, working: bool = True) -> dict[str
     _refuse_what_is_to_come(document)
     body = build(document)
     rigid = act(document, body)
+    rules = chosen(document)
+    if SKINS in rules:
+        body = effective_width.narrowed(document, body, rigid)
+        rigid = act(document, body)
     book, findings = Working(record=working), Findings()
     sliding = _slide(document, body, rigid, findings)
     actions = rigid if sliding is None else sliding.actions
     statics = hand.Statics(document, body, actions, book)
     if working:
         statics.loads()
+        if SKINS in rules:
+            effective_width.write(document, body, rigid, book)
         statics.section()
         if sliding is not None:
             write_method(sliding, book, "Slip")
@@ -143,11 +154,8 @@ def _name_what_is_to_come(document: documents.MemberDocument, findings: Findings
     """Name every analysis that was asked for and is not to be had."""
     if document.analysis.field == "always":
         findings.miss("the section's shear field (analysis.field always): not available in this version.")
-    for rule in document.analysis.rules:
-        if rule != K_U_RULE:
-            findings.miss(
-                f"rule {rule!r} (analysis.rules): not applied in this version; see the cautions for its effect."
-            )
+    for rule in unknown(document):
+        findings.miss(f"rule {rule!r} (analysis.rules): not known here; known are {', '.join(map(repr, KNOWN))}.")
     for case, loads in document.loads.items():
         for number, load in enumerate(loads):
             if getattr(load, "offset", 0.0):
@@ -166,6 +174,9 @@ def _judge(
     """Gather every claim, weigh all at once, write joints and pieces in the order of the document."""
     joints = claim_joints(body, flows, judge)
     pieces = claim_pieces(body, scanned, judge, upper_stiffness=upper_stiffness, slide=sliding)
+    add_web_claims(pieces, body, scanned, judge)
+    add_sandwich_claims(joints, pieces, body, judge, upper_stiffness=upper_stiffness)
+    add_rib_claims(joints, pieces, body, judge, sliding=sliding is not None)
     gone: list[PieceCheck] = []
     if flows.gone is not None:
         gone = claim_pieces(body, scanned, judge, upper_stiffness=False, slide=flows.gone.slide, fall_back=True)

@@ -201,13 +201,13 @@ def _shear_sliding(body: Body, slide: Slide) -> dict[int, Sheared]:
 
 
 def _bending_claims(part: Part, bent: Bent, judge: Judge) -> Iterator[Claim]:
-    for word, demand in _fibre_demands(part, bent):
+    for word, demand in fibre_demands(part, bent):
         entry = demand.argmax(axis=0)
         columns = np.arange(demand.shape[1])
         worst_of = demand[entry, columns]
         if worst_of.max() <= 0:  # never in tension, or never in compression: nothing to judge
             continue
-        strength = _strength(part, word, f"{word} in {part.name}", judge)
+        strength = piece_strength(part, word, f"{word} in {part.name}", judge)
         if strength is None:
             judge.findings.miss(
                 f"bending strength of {part.spec.material!r} (piece {part.name}), or its {word} strength: the "
@@ -217,7 +217,7 @@ def _bending_claims(part: Part, bent: Bent, judge: Judge) -> Iterator[Claim]:
         yield Claim(strength, "sigma", np.maximum(worst_of, 0.0), bent.at[entry, columns], bent.stretch[entry])
 
 
-def _fibre_demands(part: Part, bent: Bent) -> list[tuple[str, NDArray[np.float64]]]:
+def fibre_demands(part: Part, bent: Bent) -> list[tuple[str, NDArray[np.float64]]]:
     """What each strength is set against: the extreme fibre by bending, the mean by tension or compression.
 
     Where bending is not given, the extreme fibre is judged by tension and compression.
@@ -235,7 +235,7 @@ def _fibre_demands(part: Part, bent: Bent) -> list[tuple[str, NDArray[np.float64
 def _shear_claim(part: Part, sheared: Sheared, judge: Judge) -> Iterator[Claim]:
     word = "rolling_shear" if part.body_rolls else "shear"
     spoken = word.replace("_", " ")
-    strength = _strength(part, word, f"{spoken} in {part.name}", judge)
+    strength = piece_strength(part, word, f"{spoken} in {part.name}", judge)
     if strength is None:
         judge.findings.miss(
             f"{spoken} strength of {part.spec.material!r} (piece {part.name}): the material's record, from its grade "
@@ -248,7 +248,7 @@ def _shear_claim(part: Part, sheared: Sheared, judge: Judge) -> Iterator[Claim]:
     yield Claim(strength, "tau", sheared.stress[entry, columns], sheared.at[entry, columns], stretches)
 
 
-def _strength(part: Part, word: str, what: str, judge: Judge) -> Strength | None:
+def piece_strength(part: Part, word: str, what: str, judge: Judge) -> Strength | None:
     return judge.strength(
         getattr(part.material.strengths, word),
         what=what,
@@ -267,7 +267,7 @@ def _write_bending(check: PieceCheck, bent: Bent, weighed: list[Weighed], body: 
         entry, row = (int(i) for i in np.unravel_index(int(size.argmax()), size.shape))
     else:
         row, word = governing.row, governing.claim.strength.what.removesuffix(f" in {check.part.name}")
-        entry = int(dict(_fibre_demands(check.part, bent))[word][:, row].argmax())
+        entry = int(dict(fibre_demands(check.part, bent))[word][:, row].argmax())
     stretch = body.stretches[int(bent.stretch[entry])]
     whole, part = stretch.section.properties, check.part
     if check.slide is not None:

@@ -19,6 +19,7 @@ from numpy.typing import NDArray
 from server import documents
 from server.checks.actions import TIE, Actions
 from server.checks.places import Places
+from server.checks.rules import Origin, Printed, Reduction, chosen
 from server.working import Working, formula
 
 Kind = Literal["adhesive", "fastener", "material"]
@@ -57,7 +58,8 @@ class Strength:
     """One characteristic strength with everything that multiplies and divides it.
 
     ``owner`` is the value's name in the document; ``duration`` one factor a strength combination,
-    NaN where the value's table has none for it.
+    NaN where the value's table has none for it; ``reductions`` what rules take off; ``before`` steps that led to the
+    value.
     """
 
     what: str
@@ -68,13 +70,20 @@ class Strength:
     factors: tuple[tuple[str, float], ...]
     divisor: float
     source: str
+    reductions: tuple[Reduction, ...] = ()
+    before: tuple[Printed, ...] = ()
+
+    @property
+    def multipliers(self) -> tuple[tuple[str, float], ...]:
+        """Every named factor on the strength: the value's own, then what rules take off."""
+        return (*self.factors, *((reduction.rule, reduction.value) for reduction in self.reductions))
 
     def arguments(self, row: int) -> dict[str, tuple[float, str]]:
         """What multiplies and divides the strength in one combination, with units, for a printed step."""
         return {
             "k_dur": (self.duration[row], ""),
             "gamma": (self.divisor, ""),
-            **{f"k_{i}": (value, "") for i, (_, value) in enumerate(self.factors, 1)},
+            **{f"k_{i}": (value, "") for i, (_, value) in enumerate(self.multipliers, 1)},
         }
 
 
@@ -82,7 +91,7 @@ class Strength:
 class Claim:
     """A demand set against a strength, one entry a strength combination, with the place and stretch of each.
 
-    ``symbol`` is the demand's in the printed working.
+    ``symbol`` is the demand's in the printed working; ``origin`` how it came about, where no other step says so.
     """
 
     strength: Strength
@@ -90,6 +99,7 @@ class Claim:
     demand: NDArray[np.float64]
     at: NDArray[np.float64]
     stretch: NDArray[np.intp]
+    origin: Origin | None = None
 
 
 @dataclass(frozen=True, eq=False)
@@ -244,12 +254,16 @@ class Weigher:
         given, resists = STRENGTH_SYMBOL[unit], RESISTANCE_SYMBOL[unit]
         combination = self.combinations.strength_names[row]
         duration = self.combinations.durations[self.combinations.strength[row]]
-        named = "".join(f"; k_{i} = {name}" for i, (name, _) in enumerate(found.factors, 1))
+        named = "".join(f"; k_{i} = {name}" for i, (name, _) in enumerate(found.multipliers, 1))
         demand = float(claim.demand[row])
+        if claim.origin is not None:
+            claim.origin.write(self.working, group, claim.symbol, unit, row, weighed.stretch)
+        for printed in (*found.before, *(reduction.step for reduction in found.reductions)):
+            printed.write(self.working, group)
         resistance = self.working.step(
             f"Resistance: {found.what}",
             resists,
-            resistance_formula(given, len(found.factors)),
+            resistance_formula(given, len(found.multipliers)),
             {given: (found.value, unit), **found.arguments(row)},
             unit=unit,
             source=f"{found.source}; k_dur: {duration or 'no duration stated'}{named}",
@@ -270,7 +284,7 @@ class Weigher:
             "demand_unit": unit,
             "resistance": resistance,
             "utilisation": utilisation,
-            "reductions": [],
+            "reductions": [{"rule": each.rule, "value": each.value} for each in found.reductions],
             "combination": combination,
             "at": weighed.at,
             "place": self.place(weighed.at),
@@ -293,7 +307,7 @@ class Judge(Weigher):
         places: Places | None = None,
     ) -> None:
         super().__init__(document, actions, working, findings)
-        self.document, self.actions = document, actions
+        self.document, self.actions, self.rules = document, actions, chosen(document)
         self.places = places or Places(document)
 
     def with_divisor(self, divisor: float | None) -> Judge:
@@ -311,7 +325,7 @@ def _resistances(claims: Sequence[Claim], columns: int) -> NDArray[np.float64]:
     """Resistances (claims, combinations); one evaluation of the printed formula for all with as many factors."""
     alike: dict[int, list[int]] = {}
     for i, claim in enumerate(claims):
-        alike.setdefault(len(claim.strength.factors), []).append(i)
+        alike.setdefault(len(claim.strength.multipliers), []).append(i)
     found = np.empty((len(claims), columns))
     for factors, places in alike.items():
         strengths = [claims[i].strength for i in places]
@@ -321,7 +335,7 @@ def _resistances(claims: Sequence[Claim], columns: int) -> NDArray[np.float64]:
             "gamma": np.array([[s.divisor] for s in strengths]),
         }
         for n in range(factors):
-            values[f"k_{n + 1}"] = np.array([[s.factors[n][1]] for s in strengths])
+            values[f"k_{n + 1}"] = np.array([[s.multipliers[n][1]] for s in strengths])
         found[places] = formula(resistance_formula("f_k", factors)).array(values)
     return found
 

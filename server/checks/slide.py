@@ -13,6 +13,7 @@ from server import documents
 from server.checks.actions import Actions, Curve, largest
 from server.checks.crosssection import Body
 from server.checks.holds import Hold, Holds
+from server.checks.rules import ULTIMATE_SLIP, chosen
 from server.errors import DocumentError, Fault, InputError
 from server.mechanics import beam as mechanics
 from server.mechanics.beam import Beam, Response, solve
@@ -20,7 +21,7 @@ from server.mechanics.slip import Curves, FlexibleJoint, Layer, LayeredMember, S
 
 Array = NDArray[np.float64]
 ULTIMATE = 2 / 3  # K_u / K_ser, EN 1995-1-1:2004 expression (2.1)
-K_U_RULE = "EN 1995-1-1 2.2.2"
+K_U_RULE = ULTIMATE_SLIP
 
 
 @dataclass(frozen=True, eq=False)
@@ -84,7 +85,8 @@ def layers(body: Body, *, creep: bool = False) -> list[Layer]:
         pieces = stretch.section.properties.pieces
         for position, part in enumerate(stretch.section.parts):
             if part.index not in found:
-                E = part.material.E / (1 + (part.material.creep or 0.0) if creep else 1.0)
+                E = part.material.E * stretch.section.share(position)
+                E /= 1 + (part.material.creep or 0.0) if creep else 1.0
                 area, inertia = float(pieces.area[position]), float(pieces.inertia[position, 0])
                 height = float(pieces.centroid[position, 1])
                 found[part.index] = Layer(part.start, part.end, E * area, E * inertia, height)
@@ -127,7 +129,7 @@ def slide(document: documents.MemberDocument, body: Body, actions: Actions, held
     deform, loads, factors = actions.shear_deformation, actions.case_loads, actions.factors
     whole = _solve(layered(document, body, held.each, deform=deform, creep=False), loads)
     combined = whole.combine(factors)
-    ultimate = document.basis.method == "limit-state" and K_U_RULE in document.analysis.rules
+    ultimate = document.basis.method == "limit-state" and K_U_RULE in chosen(document)
     strength = combined
     if ultimate:
         member = layered(document, body, held.each, deform=deform, creep=False, share=ULTIMATE)

@@ -190,5 +190,31 @@ class Section:
             reached |= more
 
 
+def rib_alone(section: Section) -> tuple[str, float, Section] | None:
+    """The rib that bends most under the load on its own strip of the skin, the strip's part of it, rib with strip.
+
+    One skin on single ribs, which stand further apart than the section is deep; else None.
+    """
+    for skin in section.boxes:
+        ribs = sorted(
+            (box for t in section.touches for box in section.boxes
+             if {t.first, t.second} == {skin.name, box.name} and skin.right - skin.left > skin.top - skin.bottom
+             and (box.top <= skin.bottom + 1 or box.bottom >= skin.top - 1)),
+            key=lambda box: box.left,
+        )  # fmt: skip
+        deep = max(b.top for b in section.boxes) - min(b.bottom for b in section.boxes)
+        if len(ribs) < 2 or min(b.left - a.right for a, b in pairwise(ribs)) <= deep:
+            continue
+        edges = [skin.left, *((a.right + b.left) / 2 for a, b in pairwise(ribs)), skin.right]
+        found = []
+        for rib, (left, right) in zip(ribs, pairwise(edges), strict=True):
+            strip = Box(skin.name, left, skin.bottom, right, skin.top, skin.E)
+            alone = Section((rib, strip), tuple(t for t in section.touches if rib.name in (t.first, t.second)))
+            found.append((rib.name, (right - left) / (skin.right - skin.left), alone))
+        most = max(found, key=lambda each: each[1] / each[2].EI)
+        return most if most[1] / most[2].EI > (1 + 1e-6) / section.EI else None
+    return None
+
+
 def _second(width: float, low: float, high: float) -> float:
     return width * (high**3 - low**3) / 3

@@ -10,8 +10,10 @@ from typing import Any
 import numpy as np
 
 from tests.checks.oracle import Array, Limit, Oracle, number
-from tests.checks.oracle_section import Section
+from tests.checks.oracle_section import Section, rib_alone
 from tests.checks.oracle_statics import Fields, largest
+
+RIB = ", the rib with its own width"
 
 
 @dataclass
@@ -75,7 +77,8 @@ class Verdict(Oracle):
         if "adhesive" in joint:
             self._bond(joint, found, peaks / (width * coverage))
             numbers["stress"] = top[0] / (width * coverage)
-            if len(found.limits) == 3:
+            self._rib_bond(joint, found, peaks / (width * coverage))
+            if len(found.limits) in (3, 6):
                 numbers["width_needed"] = width * max(limit.utilisation for limit in found.limits.values())
         else:
             self._fasteners(joint, found, flows)
@@ -94,6 +97,21 @@ class Verdict(Oracle):
             rolls = self.rolls(piece, bool(self.material(piece).get("layered")))
             word = "rolling_shear" if rolls else "shear"
             self._limit(found, piece, word, stress)
+
+    def _rib_bond(self, joint: dict[str, Any], found: Found, stress: Array) -> None:
+        """The bond of the most loaded rib once more, the rib alone with its own width of the skin."""
+        between = tuple(joint["between"])
+        for _, _, section in self.sections:
+            alone = rib_alone(section)
+            if alone is None or alone[0] not in between:
+                continue
+            _, S, share = section.share_of(between)
+            rib, load, own = alone
+            times = load * own.first_moment({rib}) / own.EI / (S * share / section.EI)
+            for what, limit in list(found.limits.items()):
+                found.limits[what + RIB] = Limit(what + RIB, limit.demand * times, limit.resistance)
+            unit = self.resistance("adhesive", joint["adhesive"], 1.0)
+            found.numbers["strength_needed"] = float((stress * max(times, 1.0) / unit).max())
 
     def _limit(self, found: Found, piece: str, word: str, demand: Array) -> None:
         """Set a demand on a piece against one of its material's strengths."""
@@ -163,9 +181,34 @@ class Verdict(Oracle):
             if wanted and max(demands[word]) > 1e-9 * max(demands["bending"]):
                 self._limit(found, name, word, np.array(demands[word]))
         self._edges(found, places)
+        self._rib_piece(found, name)
         rolls = self.rolls(name, box.right - box.left > box.top - box.bottom)
         self._limit(found, name, "rolling_shear" if rolls else "shear", np.array(demands["shear"]))
         return found
+
+    def _rib_piece(self, found: Found, name: str) -> None:
+        """Bending of the most loaded rib once more, alone with its own width of the skin."""
+        for start, end, section in self.sections:
+            alone = rib_alone(section)
+            if alone is None or alone[0] != name:
+                continue
+            _, load, own = alone
+            box = self.pieces[name]
+            demands: dict[str, list[float]] = {what.split(" ")[0]: [] for what in found.limits}
+            for combination in self.strength:
+                x, M = self.curve("moment", combination)
+                M = load * M[(x[:, 0] >= start) & (x[:, -1] <= end)]
+                top, bottom, mean = (
+                    -box.E * M * (u - own.axis[1]) / own.EI for u in (box.top, box.bottom, box.middle[1])
+                )
+                for word, values in (
+                    ("bending", np.maximum(np.abs(top), np.abs(bottom))), ("tension", mean), ("compression", -mean),
+                ):  # fmt: skip
+                    if word in demands:
+                        demands[word].append(max(float(values.max()), 0.0))
+            for word, values in demands.items():
+                limit = found.limits[f"{word} in {name}"]
+                found.limits[limit.what + RIB] = Limit(limit.what + RIB, np.array(values), limit.resistance)
 
     def _stresses(self, run: Fields, name: str) -> tuple[Array, Array, Array, Array, Array]:
         """Places, and normal stress at top, bottom and centroid, and the largest shear stress on a level cut."""
