@@ -14,7 +14,23 @@ from fastapi.telemetry import TelemetryConfig
 from server import ENGINE
 from server.paths import data_folder
 from server.settings import Settings
-from server.web import api, errors, gate, jobs, library, member, one_page, people, saved, security, shop
+from server.web import (
+    acts,
+    api,
+    errors,
+    evidence_page,
+    gate,
+    jobs,
+    library,
+    member,
+    one_page,
+    people,
+    rules,
+    saved,
+    security,
+    sets,
+    shop,
+)
 from server.web.records import Records
 
 _NO_TELEMETRY: TelemetryConfig = {
@@ -57,7 +73,7 @@ def create_app(settings: Settings) -> FastAPI:
     app.add_middleware(security.Guard, settings=settings)
     app.mount("/static", StaticFiles(directory=data_folder("static")), name="static")
     app.add_api_route("/", _start, name="start", include_in_schema=False)
-    for room in (jobs, library, shop, member, one_page, saved, people, api):
+    for room in (jobs, sets, rules, acts, evidence_page, library, shop, member, one_page, saved, people, api):
         app.include_router(room.router)
     api.describe(app)
     return app

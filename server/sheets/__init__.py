@@ -10,6 +10,7 @@ from server.sheets.loads_drawing import loads_svg
 from server.sheets.one_page import OnePage
 from server.sheets.one_pages import ONE_PAGES
 from server.sheets.pdf import UnprintableError, evidence_pdf, pdf, unprintable, unprintable_boxes
+from server.sheets.plotting import texts_of
 from server.sheets.probability_plot import probability_plot_svg
 from server.sheets.section_drawing import section_svg
 from server.sheets.terminal import terminal
@@ -47,6 +48,7 @@ __all__ = [
     "quantity",
     "section_svg",
     "terminal",
+    "texts_of",
     "unprintable",
     "unprintable_boxes",
     "utilisation",

@@ -5,7 +5,7 @@ A person may have several roles; each includes reading. ``NOBODY`` marks what is
 
 from __future__ import annotations
 
-from server.people import KEEPS_THE_BOOK, PREPARES, READS, Person
+from server.people import APPROVES, KEEPS_THE_BOOK, PREPARES, READS, Person
 
 NOBODY = "nobody"
 
@@ -72,6 +72,15 @@ RULES: dict[str, str] = {
     "create_record": PREPARES,
     "edit_record": PREPARES,
     "save_record": PREPARES,
+    "preview_set": PREPARES,
+    "shape_set": PREPARES,
+    "answer_question": PREPARES,
+    "put_forward": PREPARES,
+    "approve_record": APPROVES,
+    "set_record_state": APPROVES,
+    "evidence_page": READS,
+    "edit_rules": KEEPS_THE_BOOK,
+    "save_rules": KEEPS_THE_BOOK,
     # for programs
     "openapi": READS,
     "run_check": READS,

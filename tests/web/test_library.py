@@ -202,7 +202,8 @@ class TestList:
 
     def test_an_empty_library_says_what_to_do(self, client: TestClient) -> None:
         text = client.get("/library").text
-        assert text.count("Nothing here yet") == 3
+        assert "Nothing here yet" in text
+        assert "Nothing here yet" in client.get("/library?group=bonds").text
         assert "/library/new/bonds" in text
 
     @pytest.mark.parametrize(
@@ -212,9 +213,9 @@ class TestList:
         assert client.get(f"/library?{query}").status_code == 200
 
     def test_many_records_come_in_pages(self, client: TestClient) -> None:
-        for _ in range(201):
+        for _ in range(51):
             client.post("/library/new/fasteners", data=FASTENER)
         first = client.get("/library").text
-        assert "Records 1 to 200 of 201" in first
-        assert "F-201" not in first
-        assert "F-201" in client.get("/library?start=200").text
+        assert "Records 1 to 50 of 51" in first
+        assert "F-051" not in first
+        assert "F-051" in client.get("/library?start=50").text

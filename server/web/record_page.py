@@ -1,0 +1,164 @@
+"""One record's page: what it is and stands on, who stands for it, what keeps it from approval, where it is used."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass
+from typing import Any
+
+from fastapi import Request
+from fastapi.responses import Response
+from markupsafe import Markup
+
+from server import library, sheets
+from server.errors import InputError
+from server.library import ALL, Link, Record, reading
+from server.mechanics.control_chart import Chart, control_chart
+from server.storage import Session
+from server.web import record_form
+from server.web.coupon_panel import as_measured, panel
+from server.web.evidence_fields import LINKS, TITLES
+from server.web.pages import Boxes, page
+from server.web.set_columns import SHARES
+from server.web.who import signed
+
+NEXT = {
+    "draft": ("on hold", "withdrawn"),
+    "indicative": ("on hold", "withdrawn"),
+    "provisional": ("on hold", "withdrawn"),
+    "approved": ("on hold", "withdrawn", "superseded"),
+    "on hold": ("draft", "withdrawn"),
+    "superseded": (),
+    "withdrawn": (),
+}
+"""What may be done with a revision, beside putting it forward and approving it."""
+IN_WORDS = {
+    "on hold": "Put on hold",
+    "withdrawn": "Withdraw",
+    "superseded": "Mark as superseded",
+    "draft": "Take back to work (draft)",
+}
+
+
+@dataclass(frozen=True)
+class Standing:
+    """One record that another stands on: its role in words, and what it counts as today."""
+
+    label: str
+    link: Link
+    name: str
+    status: str
+    short: str
+
+
+def show(request: Request, session: Session, record: Record, *, errors: Mapping[str, str] | None = None,
+         values: Mapping[str, str] | None = None) -> Response:  # fmt: skip
+    """Return the page of one revision; with ``errors``, what was refused comes back as typed."""
+    group = ALL[record.group]
+    targets = reading.many(session, [*record.links.values(), *(pair for each in record.chain for pair in _pair(each))])
+    coupon_set = record if record.group == "sets" else _behind(record, targets)
+    result = result_of(record, coupon_set) if coupon_set is not None else None
+    points, chart = history_of(session, record)
+    person = signed(request)
+    return page(
+        request,
+        "library/show.html",
+        status=422 if errors else 200,
+        record=record,
+        group=group,
+        title=TITLES[record.group],
+        standing=library.standing(record),
+        values_shown=record_form.shown(record),
+        value_text=record_form.value_text(record, _display(coupon_set)) if record.group == "values" else "",
+        details=[(label, record.details[name]) for name, label in group.details.items() if record.details.get(name)],
+        links=_standings(record, targets, pinned=False),
+        pins=_standings(record, targets, pinned=True),
+        chain=record.chain,
+        multiplication=library.multiplication(record.chain, _strength(record, targets)),
+        coupon_set=coupon_set,
+        panel=panel(result, _display(coupon_set)) if result is not None else None,
+        history=Markup(sheets.history_svg(points, chart, display=_display(coupon_set))) if len(points) > 1 else "",  # noqa: S704 -- our own drawing
+        history_says=sheets.in_words(points, chart) if chart is not None else (),
+        questions=library.questions(session, record),
+        obstacles=library.obstacles(session, record, person) if _may_be_approved(record) else (),
+        forward=_may_be_put_forward(record),
+        steps=[(status, IN_WORDS[status]) for status in NEXT[record.status]],
+        acts=library.acts(session, record.key, record.revision),
+        revisions=library.revisions(session, record.key),
+        uses=library.where_used(session, record.key) if group.section else (),
+        errors=Boxes(errors or {}),
+        typed=Boxes(values or {}),
+        shares=SHARES,
+        load_as_typed=sheets.load_as_typed,
+        area_as_typed=sheets.area_as_typed,
+    )
+
+
+def _pair(factor: library.Factor) -> list[Link]:
+    return [pair for pair in (factor.dry, factor.conditioned) if pair is not None]
+
+
+def _behind(record: Record, targets: Mapping[Link, Record]) -> Record | None:
+    link = record.links.get("set")
+    return targets.get(link) if link is not None else None
+
+
+def result_of(record: Record, coupon_set: Record) -> Mapping[str, Any]:
+    """Return the result of the set behind a value, by the value's own statistic where it has one."""
+    statistic = record.values.get("statistic") if record.group == "values" else None
+    return as_measured(library.coupon_result(coupon_set, statistic), coupon_set.values["property"])
+
+
+def _display(coupon_set: Record | None) -> str:
+    return "US" if coupon_set is not None and coupon_set.values.get("display") == "US" else "SI"
+
+
+def _standings(record: Record, targets: Mapping[Link, Record], *, pinned: bool) -> list[Standing]:
+    found = []
+    for role, link in record.links.items():
+        target = targets.get(link)
+        is_pin = role not in LINKS
+        if target is None or is_pin is not pinned:
+            continue
+        label = LINKS.get(role) or record_form.pins(record.group).get(role, role)
+        found.append(Standing(label, link, target.name, library.standing(target), record_form.in_short(target)))
+    return found
+
+
+def _strength(record: Record, targets: Mapping[Link, Record]) -> str:
+    """The first strength of a record, for the line of multiplication."""
+    for link in record.pins.values():
+        if link in targets:
+            return record_form.value_text(targets[link])
+    shown = [text for label, text in record_form.shown(record) if text[:1].isdecimal() and "strength" in label.lower()]
+    return shown[0] if shown else ""
+
+
+def _may_be_approved(record: Record) -> bool:
+    return record.status in ("draft", "indicative", "provisional", "on hold")
+
+
+def _may_be_put_forward(record: Record) -> bool:
+    return record.status in ("draft", "indicative", "provisional") and record.revision == record.newest
+
+
+def history_of(session: Session, record: Record) -> tuple[list[sheets.Point], Chart | None]:
+    """Return the sets of one value over time, and their chart from the second set on."""
+    if record.group not in ("values", "sets"):
+        return [], None
+    found = library.history(session, record)
+    points = [sheets.Point(each.key, each.date, each.mean) for each in found]
+    try:
+        return points, control_chart([point.value for point in points])
+    except InputError:
+        return points, None
+
+
+def boxes_of_draft(session: Session, key: str, system: str) -> dict[str, str]:
+    """Return the boxes of a new value that is found from a coupon set."""
+    coupon_set = library.get(session, key)
+    if coupon_set.group != "sets":
+        raise library.NotFoundError(f"{coupon_set.itself} is no coupon set; choose one under Library, Coupon sets.")
+    draft = library.value_draft(coupon_set)
+    boxes = record_form.content("values", draft.values, draft.details, {**coupon_set.links, **draft.links}, system)
+    return boxes | {"name": draft.name, "status": "draft", "units": system}
