@@ -14,7 +14,7 @@ from server.checks.crosssection import Body
 from server.errors import DocumentError, Fault, InputError
 from server.mechanics import beam as mechanics
 from server.mechanics.beam import Beam, Couple, LineLoad, PointLoad, Response, solve
-from server.mechanics.piecewise import Candidates, Extremes, candidates, extremes
+from server.mechanics.piecewise import Candidates, Extremes, candidates, evaluate, extremes
 
 GRAVITY = 9.80665  # m/s2, standard (ISO 80000-3)
 TIE = 1e-9  # relative difference under which two extremes are the same
@@ -42,6 +42,17 @@ class Curve:
         if first is None or last is None:
             return extremes(self.breaks, self.coefficients, start, end)
         return self._candidates.over(first, last)
+
+    def sizes(
+        self, start: float, end: float, places: NDArray[np.float64]
+    ) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
+        """Places between two others, breaks and turning points among them, and the largest size there of every row."""
+        known = np.concatenate([places, self.breaks, self._candidates.at.ravel(), [start, end]])
+        at = np.unique(known[(known >= start) & (known <= end)])
+        left = np.abs(evaluate(self.breaks, self.coefficients, at, "left"))
+        right = np.abs(evaluate(self.breaks, self.coefficients, at, "right"))
+        left[:, 0], right[:, -1] = right[:, 0], left[:, -1]  # inside the part, not beyond its ends
+        return at, np.maximum(left, right)
 
     @cached_property
     def whole(self) -> Extremes:

@@ -48,6 +48,15 @@ def leftmost(left: Demand, right: Demand) -> Demand:
     )
 
 
+Profile = tuple[NDArray[np.float64], NDArray[np.float64]]  # places, and flows (combinations, places)
+
+
+def _side_by_side(parts: list[Profile]) -> Profile:
+    if not parts:
+        return np.zeros(0), np.zeros((0, 0))
+    return np.concatenate([x for x, _ in parts]), np.concatenate([q for _, q in parts], axis=1)
+
+
 class Along(Protocol):
     """Where a joint's flow is greatest over a part of the member."""
 
@@ -57,6 +66,10 @@ class Along(Protocol):
 
     def over(self, site: Site, low: float, high: float) -> Demand | None:
         """Largest flow of one joint between two places; None where it is not there or not known."""
+        ...
+
+    def profile(self, site: Site, places: NDArray[np.float64]) -> Profile:
+        """Size of one joint's flow at the places and wherever it may be greatest, of every strength combination."""
         ...
 
     def unsettled(self, site: Site) -> str:
@@ -103,6 +116,16 @@ class RigidAlong:
             found = here if found is None else leftmost(found, here)
         return found
 
+    def profile(self, site: Site, places: NDArray[np.float64]) -> Profile:
+        """Stretch by stretch, where the joint is."""
+        parts: list[Profile] = []
+        for stretch in self.body.stretches:
+            flow = stretch.section.flows.get(site.index)
+            if self.scan.curve is not None and flow is not None and flow.share is not None:
+                x, V = self.scan.curve.sizes(stretch.start, stretch.end, places)
+                parts.append((x, V * (abs(flow.share) / stretch.section.properties.EI)))
+        return _side_by_side(parts)
+
     def unsettled(self, site: Site) -> str:
         """The reason a cut or symmetry does not settle the share."""
         for stretch in self.body.stretches:
@@ -138,6 +161,17 @@ class SlidingAlong:
             here = Demand(self._shear(at), q, at, np.full(len(at), t, dtype=np.intp))
             found = here if found is None else leftmost(found, here)
         return found
+
+    def profile(self, site: Site, places: NDArray[np.float64]) -> Profile:
+        """Stretch by stretch, where both pieces of the joint are."""
+        curve = self.slide.flows[site.index]
+        return _side_by_side(
+            [
+                curve.sizes(stretch.start, stretch.end, places)
+                for stretch in self.slide.body.stretches
+                if site.present(stretch.start, stretch.end)
+            ]
+        )
 
     def _shear(self, at: NDArray[np.float64]) -> NDArray[np.float64]:
         curve = self.slide.actions.shear

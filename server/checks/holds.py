@@ -6,12 +6,14 @@ joint's stiffness needs and does not have is named here.
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass, replace
 from typing import Literal
 
 from server import documents
 from server.checks.crosssection import Body, Site
 from server.mechanics.slip import Zone
+from server.mechanics.spacing import SpacedZone
 from server.working import formula
 
 BOND = "G_a*b*c/t_a"
@@ -112,6 +114,19 @@ def _fasteners(document: documents.MemberDocument, site: Site, length: float, mi
         for start, end, spacing in zones
     )
     return Hold(site, "fasteners", found, fastener.creep or 0.0)
+
+
+def respaced(document: documents.MemberDocument, held: Holds, chosen: Mapping[int, Sequence[SpacedZone]]) -> Holds:
+    """The same joints with other spacings of their fasteners, by the joint's number."""
+    each = []
+    for hold in held.each:
+        spaced = chosen.get(hold.site.index)
+        if spaced is None or hold.by != "fasteners" or hold.site.spec.fastener is None:
+            each.append(hold)
+            continue
+        nK = hold.site.spec.rows * (document.fastener(hold.site.spec.fastener).slip_modulus or 0.0)
+        each.append(replace(hold, zones=tuple(Zone(z.start, z.end, nK / z.spacing) for z in spaced)))
+    return replace(held, each=tuple(each))
 
 
 def spacing_zones(site: Site, length: float) -> list[SpacingZone]:

@@ -17,6 +17,7 @@ from server.checks.crosssection import Body, CrossSection, build
 from server.checks.deflection import Sag, check_deflection
 from server.checks.drawing import diagrams, drawing
 from server.checks.fall_back import FallBack, glue_gone, judge_fall_back
+from server.checks.fits import refuse_misfits
 from server.checks.holds import holds
 from server.checks.joints import Flows, JointCheck, claim_joints, write_joint
 from server.checks.pieces import PieceCheck, claim_pieces, write_piece
@@ -26,6 +27,7 @@ from server.checks.ribs import add_rib_claims
 from server.checks.rules import KNOWN, SKINS, chosen, unknown
 from server.checks.sandwich import add_sandwich_claims
 from server.checks.scan import Scan, scan
+from server.checks.schedule import add_schedules
 from server.checks.slide import Slide, slide
 from server.checks.slip_steps import write_effective, write_method
 from server.checks.thin_webs import add_web_claims
@@ -52,6 +54,7 @@ def run(document: documents.MemberDocument, *, working: bool = True) -> dict[str
     """
     _refuse_what_is_to_come(document)
     body = build(document)
+    refuse_misfits(document, body)
     rigid = act(document, body)
     rules = chosen(document)
     if SKINS in rules:
@@ -75,6 +78,7 @@ def run(document: documents.MemberDocument, *, working: bool = True) -> dict[str
     judge = Judge(document, actions, book, findings, Places(document))
     flows = _flows(document, body, rigid, sliding, findings)
     joints, pieces, fall_back = _judge(body, scan(body, actions), judge, statics, flows, sliding, upper)
+    add_schedules(document, body, rigid, joints, flows, book)
     if working:
         statics.deflection()
     sags = check_deflection(document, actions, book, findings, upper_stiffness=upper)

@@ -124,8 +124,13 @@ def layered(
     )
 
 
-def slide(document: documents.MemberDocument, body: Body, actions: Actions, held: Holds) -> Slide:
-    """Solve the member with slip, combine the cases, and put what it does in the place of the rigid member's."""
+def slide(
+    document: documents.MemberDocument, body: Body, actions: Actions, held: Holds, *, flows_only: bool = False
+) -> Slide:
+    """Solve the member with slip, combine the cases, and put what it does in the place of the rigid member's.
+
+    ``flows_only`` leaves long-term deflection and the effective stiffness out.
+    """
     deform, loads, factors = actions.shear_deformation, actions.case_loads, actions.factors
     whole = _solve(layered(document, body, held.each, deform=deform, creep=False), loads)
     combined = whole.combine(factors)
@@ -134,7 +139,7 @@ def slide(document: documents.MemberDocument, body: Body, actions: Actions, held
     if ultimate:
         member = layered(document, body, held.each, deform=deform, creep=False, share=ULTIMATE)
         strength = _solve(member, loads).combine(factors)
-    long_term = _long_term(document, body, actions, held, whole)
+    long_term = None if flows_only else _long_term(document, body, actions, held, whole)
     response, places = combined.response, combined.stations
     firm = strength.curves_at(places)
 
@@ -152,7 +157,7 @@ def slide(document: documents.MemberDocument, body: Body, actions: Actions, held
         long_term=curve(long_term, actions.deflection),
         slips=True,
     )
-    rigid_sag, sliding_sag = _sags(document, body, actions, held, combined)
+    rigid_sag, sliding_sag = (0.0, 0.0) if flows_only else _sags(document, body, actions, held, combined)
     ratio = rigid_sag / sliding_sag if sliding_sag > 0 else 1.0
     return Slide(held, body, sliding, combined, strength, ratio, rigid_sag, sliding_sag, ultimate)
 
