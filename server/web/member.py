@@ -213,7 +213,7 @@ def _shown(judged: Judged, values: Mapping[str, str]) -> dict[str, Any]:
     faults = [(name, form_words.label_of(name, values), text) for name, text in judged.messages.items()]
     faults += [("", "", text) for text in judged.on_top]
     display = "US" if judged.raw.get("display") == "US" else "SI"
-    found = panel(judged.result, display) if judged.result else None
+    found = panel(judged.result, display, values.get("shade", "")) if judged.result else None
     return {"panel": found, "waiting": judged.waiting, "faults_on_page": faults}
 
 

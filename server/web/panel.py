@@ -120,13 +120,15 @@ class Panel(Found):
     sags: tuple[SagRow, ...]
     extremes: tuple[tuple[str, str], ...]
     units: Mapping[str, str]
+    shade: str = ""
+    outside: str = ""
 
 
-def any_panel(result: Result, display: str) -> Found:
-    """Return the panel of a result of any kind."""
+def any_panel(result: Result, display: str, shade: str = "") -> Found:
+    """Return the panel of a result of any kind; ``shade`` names the joint whose outside area is shaded."""
     if result["kind"] in sheets.ONE_PAGES:
         return one_page_panel(result, display)
-    return panel(result, display)
+    return panel(result, display, shade)
 
 
 def one_page_panel(result: Result, display: str) -> OnePagePanel:
@@ -166,12 +168,13 @@ def records_offered(session: Session) -> dict[str, tuple[tuple[str, str], ...]]:
     }
 
 
-def panel(result: Result, display: str) -> Panel:
-    """Return the panel of a result, in SI or US units."""
+def panel(result: Result, display: str, shade: str = "") -> Panel:
+    """Return the panel of a result, in SI or US units; ``shade`` names the joint whose outside area is shaded."""
     numbers = joint_numbers(result)
+    shaded = next((joint for joint in result["joints"] if joint["id"] == shade), None)
     return Panel(
         **_of_every_kind(result, display, "check/_found_member.html"),
-        section=_drawn(sheets.section_svg(result, display=display)),
+        section=_drawn(sheets.section_svg(result, display=display, shade_joint=shade or None)),
         loads=_drawn(sheets.loads_svg(result, display=display)),
         diagrams=_diagrams(result, display),
         joints=tuple(_joint(joint, numbers.get(joint["id"], 0), display) for joint in result["joints"]),
@@ -179,6 +182,21 @@ def panel(result: Result, display: str) -> Panel:
         sags=tuple(_sag(each, display) for each in result.get("deflection_limits", ())),
         extremes=tuple(_extremes(result["member"], display)),
         units={stored: written.unit(stored, display).text for stored in ("N/mm", "mm", "MPa")},
+        shade=shade if shaded else "",
+        outside=_outside(shaded, display) if shaded else "",
+    )
+
+
+def _outside(joint: Mapping[str, Any], display: str) -> str:
+    """What is shaded, and its first moment, in words."""
+    if joint.get("first_moment") is None:
+        return "Nothing is shaded: what this joint holds is not settled."
+    if not joint.get("cut_off"):
+        return "Nothing is shaded: by symmetry this joint carries no flow."
+    names, moment = ", ".join(joint["cut_off"]), written.quantity(joint["first_moment"], "mm3", display)
+    return (
+        f"Shaded: {names}. First moment about the neutral axis {moment}; all else gives the same with the other sign, "
+        "as the working shows."
     )
 
 

@@ -115,7 +115,7 @@ def _page(request: Request, session: Session, saved: SavedRevision) -> Response:
         given=sheets.given_values(saved.document, saved.values_used, display),
         used=used,
         notices=[value for value in used if value.today],
-        panel=any_panel(saved.result, display),
+        panel=any_panel(saved.result, display, request.query_params.get("shade", "")),
         waiting=(),
         faults_on_page=(),
         swap=False,

@@ -92,6 +92,15 @@ class TestStart:
 
 
 class TestPreview:
+    def test_the_outside_area_of_a_chosen_joint_is_shaded(self, shop: TestClient) -> None:
+        plain = shop.post(PREVIEW, data=WHOLE).text
+        assert 'class="outside"' not in plain
+        shaded = shop.post(PREVIEW, data=WHOLE | {"shade": "top flange/web L"}).text
+        assert 'class="outside"' in shaded
+        assert "Shaded: top flange. First moment about the neutral axis" in shaded
+        assert '<option value="top flange/web L" selected>' in shaded
+        assert 'class="outside"' not in shop.post(PREVIEW, data=WHOLE | {"shade": "<b>no such"}).text
+
     def test_the_verdict_stands_as_word_and_number(self, shop: TestClient) -> None:
         text = shop.post(PREVIEW, data=WHOLE).text
         assert verdict(text).startswith("Pass 0.92 utilisation")

@@ -43,6 +43,12 @@ class TestShow:
         assert verdict(text).startswith("Pass 0.92")
         assert "<math" in text
 
+    def test_the_outside_area_of_a_chosen_joint_is_shaded(self, book: TestClient) -> None:
+        assert 'class="outside"' not in book.get("/checks/1").text
+        shaded = book.get("/checks/1", params={"shade": "top flange/web L"}).text
+        assert 'class="outside"' in shaded
+        assert "Shaded: top flange" in shaded
+
     def test_values_name_their_record_and_revision(self, book: TestClient) -> None:
         text = book.get("/checks/1/revisions/1").text
         assert "/library/B-002?revision=1" in text
