@@ -1,4 +1,4 @@
-"""The command line: serve, demo, check, backup, restore, person."""
+"""The command line: serve, demo, check, backup, restore, export, import, person."""
 
 from __future__ import annotations
 
@@ -77,6 +77,16 @@ def _parser() -> argparse.ArgumentParser:
     restore.add_argument("source", type=Path)
     _data(restore, DATA)
     restore.set_defaults(run=_restore)
+    export = commands.add_parser("export", help="write the whole library as plain files (JSON, CSV)")
+    export.add_argument("target", type=Path, help="a folder, or a file whose name ends in .json or .csv")
+    _data(export, DATA)
+    export.set_defaults(run=_export)
+
+    bring = commands.add_parser("import", help="show what a library file would change; with --apply, change it")
+    bring.add_argument("file", type=Path, help="a file that export wrote, or one like it (JSON or CSV)")
+    bring.add_argument("--apply", action="store_true", help="import what is not refused")
+    _data(bring, DATA)
+    bring.set_defaults(run=_import)
     _person(commands)
     return parser
 
@@ -302,18 +312,18 @@ def _check(options: argparse.Namespace) -> int:
     return PASS if result["verdict"] == "pass" else NOT_PASSED
 
 
-def _text(file: Path) -> bytes:
+def _text(file: Path, largest: int = LARGEST_FILE) -> bytes:
     """The document's bytes, bounded; what cannot be read is said in words."""
     try:
         if str(file) == "-":
-            data = sys.stdin.buffer.read(LARGEST_FILE + 1)
+            data = sys.stdin.buffer.read(largest + 1)
         else:
             with file.open("rb") as stream:
-                data = stream.read(LARGEST_FILE + 1)
+                data = stream.read(largest + 1)
     except OSError as error:
         raise JointError(f"{file} cannot be read ({error.strerror}); give the path of a check document.") from error
-    if len(data) > LARGEST_FILE:
-        raise JointError(f"{file} is larger than {LARGEST_FILE // 1024} KiB; a check document is far smaller.")
+    if len(data) > largest:
+        raise JointError(f"{file} is larger than {largest // 1024} KiB; such a file is far smaller.")
     return data
 
 
@@ -349,6 +359,53 @@ def _backup(options: argparse.Namespace) -> int:
     made = storage.backup(storage.engine(_book(Settings(data=options.data))), options.target)
     print(f"Copied to {made}")
     return PASS
+
+
+def _export(options: argparse.Namespace) -> int:
+    """Write the library: a folder gets all files, a file name says which of them."""
+    from server import storage
+    from server.library import exporting
+
+    target: Path = options.target
+    with storage.reading(_book_of(options)) as session:
+        kind = target.suffix.lower()
+        tables = exporting.export_csv(session) if kind != ".json" else {}
+        whole = "".join(exporting.export_lines(session)) if kind != ".csv" else ""
+    if kind == ".csv":
+        _write(target, tables["records.csv"].encode())
+    elif kind == ".json":
+        _write(target, whole.encode())
+    else:
+        try:
+            target.mkdir(parents=True, exist_ok=True)
+        except OSError as error:
+            raise JointError(f"The folder {target} cannot be made ({error.strerror}); choose another place.") from error
+        for name, text in {"library.json": whole, **tables}.items():
+            _write(target / name, text.encode())
+    print(f"Exported to {target}")
+    return PASS
+
+
+def _import(options: argparse.Namespace) -> int:
+    """Show the plan of an import, or carry it out; 1 where a row is refused."""
+    from server import storage
+    from server.library import importing
+    from server.library.import_files import LARGEST
+    from server.people import Person
+    from server.settings import Settings
+
+    try:
+        text = _text(options.file, LARGEST).decode("utf-8-sig")
+    except UnicodeDecodeError as error:
+        raise JointError(f"{options.file} is not UTF-8 text (byte {error.start}); save it as UTF-8.") from None
+    act = importing.apply if options.apply else importing.plan
+    with storage.reading(_opened(Settings(data=options.data))) as session:
+        made = act(session, text, by=Person(0, AT_THE_MACHINE), name=options.file.name)
+    for line in importing.summary(made):
+        print(line)
+    if not options.apply and made.count(importing.ADD) + made.count(importing.CHANGE):
+        print("Nothing was changed. Run it again with --apply to import what is not refused.")
+    return NOT_PASSED if made.refused else PASS
 
 
 def _restore(options: argparse.Namespace) -> int:

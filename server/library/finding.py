@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Sequence
 from typing import Any
 
-from sqlalchemy import ColumnElement, column, func, literal_column, or_, select, table
+from sqlalchemy import ColumnElement, column, exists, func, literal_column, or_, select, table
 from sqlalchemy.orm import aliased
 
 from server import storage
@@ -37,7 +37,8 @@ def search(
 
     Each record comes once, as its newest revision. ``status`` finds records whose newest revision, or whose revision
     in force, has it: an approved bond with a newer draft is found as both. ``adherend`` finds words of the materials
-    bonded; ``property`` is one of ``PROPERTIES``. A few hundred finds come best match first, more come by key.
+    bonded; ``property`` is one of ``PROPERTIES``. A few hundred finds come best match first, more come newest record
+    first; without words they come by key.
     """
     groups = [group] if isinstance(group, str) else list(group or ())
     terms = _terms(text, adherend)
@@ -51,12 +52,17 @@ def search(
         conditions.append(or_(HeadRow.status == status, HeadRow.in_force_status == status))
     if property:
         conditions.append(HeadRow.property == property)
-    if terms:
-        conditions += [_SEARCH.c.rowid == HeadRow.record_id, _SEARCH.c.record_search.op("MATCH")(terms)]
-    total = session.scalar(select(func.count()).select_from(HeadRow).where(*conditions)) or 0
+    matching: list[ColumnElement[bool]] = [_SEARCH.c.record_search.op("MATCH")(terms)] if terms else []
+    counted = select(func.count()).select_from(HeadRow if conditions or not terms else _SEARCH)
+    if terms and conditions:
+        matching.append(_SEARCH.c.rowid == HeadRow.record_id)
+    total = session.scalar(counted.where(*conditions, *matching)) or 0
     order: list[Any] = [HeadRow.key]
-    if terms and total <= _MOST_RANKED:
-        order = [literal_column("record_search.rank"), HeadRow.key]
+    if terms:
+        conditions += [_SEARCH.c.rowid == HeadRow.record_id, matching[0]]
+        ranked = [literal_column("record_search.rank"), HeadRow.key]
+        # The index gives its entries in order of their numbers: a page of many is there without sorting them all.
+        order = ranked if total <= _MOST_RANKED else [_SEARCH.c.rowid.desc()]
     # First the page's keys, on the slim table; only then their revisions with all they hold.
     wanted = select(HeadRow.newest_id).where(*conditions).order_by(*order)
     wanted = wanted.limit(min(max(limit, 0), 500)).offset(min(max(offset, 0), MOST))
@@ -78,11 +84,14 @@ def _terms(text: str, adherend: str) -> str | None:
 
 def waiting_ids(session: Session, limit: int) -> list[tuple[str, int]]:
     """Keys and revisions that were put forward and not decided upon since, oldest first."""
-    other = aliased(ActRow)
-    last = select(func.max(other.id)).where(other.record_revision_id == HeadRow.newest_id)
+    later = aliased(ActRow)
+    decided = exists().where(later.record_revision_id == ActRow.record_revision_id, later.id > ActRow.id)
     query = (
         select(HeadRow.key, HeadRow.newest)
-        .join(ActRow, ActRow.id == last.correlate(HeadRow).scalar_subquery())
+        .select_from(ActRow)
+        .join(RevisionRow, RevisionRow.id == ActRow.record_revision_id)
+        .join(HeadRow, HeadRow.record_id == RevisionRow.record_id)
+        .where(HeadRow.newest_id == RevisionRow.id, ~decided)
         .where(HeadRow.status.in_(("draft", "indicative", "provisional")))
         .where(func.json_extract(ActRow.detail, '$."put forward"') == 1)
         .order_by(ActRow.id)

@@ -189,7 +189,7 @@ def _status(faults: list[Fault], group: Group, status: str) -> str:
     if status == "approved":
         message = "Nobody enters 'approved': save the record as a draft, then have another person approve it."
         faults.append(Fault("status", message))
-    elif group.name == "values" and status != "draft" and status in STATUSES:
+    elif group.name == "values" and status in ("indicative", "provisional", "superseded"):
         message = "A value starts as a draft; its number of coupons decides what it counts as once it is put forward."
         faults.append(Fault("status", message))
     return status

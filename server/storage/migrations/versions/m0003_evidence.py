@@ -73,7 +73,7 @@ SEARCH = """
 CREATE TEMP TABLE old_search AS SELECT rowid AS id, key, name, words FROM record_search;
 DROP TABLE record_search;
 CREATE VIRTUAL TABLE record_search USING fts5 (
-  key, name, words, adherend, prefix = '2 3', tokenize = 'unicode61 remove_diacritics 2'
+  key, name, words, adherend, prefix = '1 2 3', tokenize = 'unicode61 remove_diacritics 2'
 );
 INSERT INTO record_search (rowid, key, name, words, adherend)
   SELECT old.id, old.key, old.name, old.words,
