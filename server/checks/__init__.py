@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from server import documents
-from server.checks import coupons, fastener, member, splice
+from server.checks import coupons, fastener, member, splice, strip_end
 from server.errors import DocumentError, Fault
 
 
@@ -33,4 +33,6 @@ def run(document: documents.Document, *, working: bool = True) -> dict[str, obje
         return fastener.run(document, working=working)
     if isinstance(document, documents.SpliceDocument):
         return splice.run(document, working=working)
+    if isinstance(document, documents.StripEndDocument):
+        return strip_end.run(document, working=working)
     raise DocumentError([Fault("kind", f"kind {document.kind!r} cannot be checked in this version.")])

@@ -20,8 +20,8 @@ NOT_CHECKED = (
     "web stiffeners",
     "vibration",
     "fire",
-    "fatigue, and creep rupture of adhesives under lasting load",
-    "movement of unlike materials with temperature and moisture",
+    "fatigue, and creep rupture of adhesives under lasting load, where no combination says how its load repeats or "
+    "stays",
 )
 LEAST_ADHESIVE_FACTOR = 2.0  # common practice: an adhesive at least twice as strong as the largest stress
 
@@ -31,7 +31,6 @@ def add_cautions(
 ) -> None:
     """Everything that deserves a word; the order is the order in which the sheet prints them."""
     _contacts(body, findings)
-    _ends(document, body, findings)
     _joints(document, body, joints, findings)
     _skins(document, body, actions, findings)
     _materials(document, body, actions, findings)
@@ -47,26 +46,6 @@ def _contacts(body: Body, findings: Findings) -> None:
                 "contact without a joint",
                 f"{pair} touch over {contact.length:.4g} mm but no joint names this contact: it carries nothing.",
             )
-
-
-def _ends(document: documents.MemberDocument, body: Body, findings: Findings) -> None:
-    """A bonded piece that stops inside the member: its end picks up its force at once."""
-    for part in body.parts:
-        sites = [s for s in body.sites if s.bonded and part in (s.first, s.second)]
-        for at in (part.start, part.end):
-            if sites and 0 < at < body.length:
-                findings.miss(
-                    f"end of {part.name} at {at:g} mm from the left: end shear and peel where a bonded piece stops "
-                    "are not reckoned in this version. Needed: a strip-end calculation with the pull-off (flatwise "
-                    "tension) strength of the bond, from pull-off tests."
-                )
-                findings.caution(
-                    "end peel",
-                    f"{part.name} stops {at:g} mm from the left end. The bond's end carries shear and peel well above "
-                    "the mean along the joint: run it on towards the support, taper it, or hold its end down with "
-                    "fasteners.",
-                    answer=True,
-                )
 
 
 def _joints(document: documents.MemberDocument, body: Body, joints: list[JointCheck], findings: Findings) -> None:
@@ -244,11 +223,6 @@ def _member(document: documents.MemberDocument, body: Body, actions: Actions, fi
         findings.caution(
             "movement",
             "No service conditions were given: movement with temperature and moisture was not reckoned.",
-        )
-    else:
-        findings.caution(
-            "movement",
-            "Service conditions are given, but movement of unlike materials is not reckoned in this version.",
         )
 
 

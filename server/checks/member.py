@@ -17,10 +17,10 @@ from server.checks.crosssection import Body, CrossSection, build
 from server.checks.deflection import Sag, check_deflection
 from server.checks.drawing import diagrams, drawing
 from server.checks.fall_back import FallBack, glue_gone, judge_fall_back
-from server.checks.field_steps import write_fields
 from server.checks.fits import refuse_misfits
 from server.checks.holds import holds
 from server.checks.joints import Flows, JointCheck, claim_joints, write_joint
+from server.checks.member_ends import MemberEnds, after_bonding, check_ends
 from server.checks.pieces import PieceCheck, claim_pieces, write_piece
 from server.checks.places import Places
 from server.checks.resistance import Claim, Findings, Judge, Weighed
@@ -29,7 +29,6 @@ from server.checks.rules import KNOWN, SKINS, chosen, unknown
 from server.checks.sandwich import add_sandwich_claims
 from server.checks.scan import Scan, scan
 from server.checks.schedule import add_schedules
-from server.checks.section_field import doubts
 from server.checks.slide import Slide, slide
 from server.checks.slip_steps import write_effective, write_method
 from server.checks.thin_webs import add_web_claims
@@ -71,16 +70,12 @@ def run(document: documents.MemberDocument, *, working: bool = True) -> dict[str
         if SKINS in rules:
             effective_width.write(document, body, rigid, book)
         statics.section()
-        write_fields(body, book)
         if sliding is not None:
             write_method(sliding, book, "Slip")
             write_effective(sliding, body.stretches[0].section.properties.EI, book, "Slip")
         statics.member()
     upper = sliding is None and _upper_stiffness(document, body, findings)
     _name_what_is_to_come(document, findings)
-    for section in body.sections:
-        for text in doubts(section.settled, [site.id for site in section.sites]):
-            findings.miss(text)
     judge = Judge(document, actions, book, findings, Places(document))
     flows = _flows(document, body, rigid, sliding, findings)
     joints, pieces, fall_back = _judge(body, scan(body, actions), judge, statics, flows, sliding, upper)
@@ -88,8 +83,9 @@ def run(document: documents.MemberDocument, *, working: bool = True) -> dict[str
     if working:
         statics.deflection()
     sags = check_deflection(document, actions, book, findings, upper_stiffness=upper)
+    ends = check_ends(document, body, actions, judge, book, findings, after=_shared(document, body, findings))
     add_cautions(document, body, actions, joints, findings)
-    governing = _governing(body, judge, joints, pieces, sags, fall_back)
+    governing = _governing(body, judge, joints, pieces, sags, fall_back, ends)
     return {
         "format": document.format,
         "kind": document.kind,
@@ -105,6 +101,8 @@ def run(document: documents.MemberDocument, *, working: bool = True) -> dict[str
         "pieces": [c.result for c in pieces],
         "deflection_limits": [s.result for s in sags],
         "fall_back": None if fall_back is None else fall_back.result,
+        "ends": ends.ends,
+        "movement": ends.movement,
         "cautions": findings.cautions,
         "missing": findings.missing,
         "not_checked": list(NOT_CHECKED),
@@ -160,8 +158,22 @@ def _upper_stiffness(document: documents.MemberDocument, body: Body, findings: F
     return document.analysis.slip or bool(fastened)
 
 
+def _shared(document: documents.MemberDocument, body: Body, findings: Findings) -> Actions | None:
+    """The actions that the bonds share, where some act on the unpropped pieces before bonding."""
+    before = document.analysis.before_bonding
+    if not before:
+        return None
+    findings.miss(
+        f"stresses of the pieces and deflection with load before bonding ({', '.join(before)}): until the glue has "
+        "set the pieces carry it as they are held; only the ends of bonds are reckoned with what is added afterwards."
+    )
+    return act(after_bonding(document, before), body)
+
+
 def _name_what_is_to_come(document: documents.MemberDocument, findings: Findings) -> None:
     """Name every analysis that was asked for and is not to be had."""
+    if document.analysis.field == "always":
+        findings.miss("the section's shear field (analysis.field always): not available in this version.")
     for rule in unknown(document):
         findings.miss(f"rule {rule!r} (analysis.rules): not known here; known are {', '.join(map(repr, KNOWN))}.")
     for case, loads in document.loads.items():
@@ -212,6 +224,7 @@ def _governing(
     pieces: Sequence[PieceCheck],
     sags: Sequence[Sag],
     fall_back: FallBack | None,
+    ends: MemberEnds,
 ) -> Candidate | None:
     candidates = [
         Candidate(
@@ -227,6 +240,9 @@ def _governing(
     ]
     if fall_back is not None and fall_back.utilisation is not None:
         candidates.append(Candidate(fall_back.utilisation, fall_back.line, body.stretches[0].section))
+    for each in ends.governs:
+        section = next(s.section for s in body.stretches if each.at <= s.end)
+        candidates.append(Candidate(each.utilisation, each.line, section))
     for sag in sags:
         result = sag.result
         at = float(str(result["at"]))
@@ -267,7 +283,7 @@ def _verdict(governing: Candidate | None, findings: Findings) -> dict[str, objec
 
 
 def _section(section: CrossSection, sliding: Slide | None) -> dict[str, object]:
-    whole, field = section.properties, section.settled.field
+    whole = section.properties
     return {
         "area": whole.area,
         "mass_per_length": whole.mass_per_length,
@@ -276,9 +292,9 @@ def _section(section: CrossSection, sliding: Slide | None) -> dict[str, object]:
         "EI_lateral": whole.EI_lateral,
         "EI_product": whole.EI_product,
         "neutral_axis": [float(x) for x in whole.neutral_axis],
-        "shear_centre": None if field is None else field.shear_centre.tolist(),
+        "shear_centre": None,
         "GA": section.shear_stiffness,
-        "GJ": None if field is None else field.GJ,
+        "GJ": None,
         "effective_EI": whole.EI if sliding is None else whole.EI * sliding.ratio,
     }
 

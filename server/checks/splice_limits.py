@@ -2,12 +2,12 @@
 
 from __future__ import annotations
 
-import math
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
+from server.checks import surfaces
 from server.checks.resistance import Claim, Findings, Kind, Strength, Weigher
 from server.checks.splice_model import SIDES, Model
 from server.working import Working
@@ -20,8 +20,6 @@ SYMBOLS = {
     "inner_turn": "tau_i",
     "outer_turn": "tau_o",
 }
-YIELD_SHEAR = "f_y/sqrt(3)"
-VON_MISES = "von Mises' yield condition"
 
 
 @dataclass(frozen=True)
@@ -79,14 +77,14 @@ def limits_of(model: Model, demands: Demands | None, judge: Weigher, book: Worki
     pulled = demands is None or demands.peel > 0
     found = []
     if elastic:
-        found.append(("shear", _shear_yield(model, judge)))
+        found.append(("shear", surfaces.shear_yield(judge, model.document.bond, model.adhesive)))
     if pulled:
-        found.append(("peel", _peel(model, judge)))
+        found.append(("peel", surfaces.peel(judge, model.document.bond, model.adhesive)))
     for side, name in enumerate(SIDES):
         found.append((name, _stretched(model, side, judge)))
         found.append(("shear", _surface_shear(model, side, judge, book)))
         if demands is not None and demands.turning[side]:
-            found.append((f"{name}_turn", _surface_shear(model, side, judge, Working(record=False), "wall")))
+            found.append((f"{name}_turn", _wall(_surface_shear(model, side, judge, Working(record=False)))))
         if pulled:
             found.append(("peel", _surface_peel(model, side, judge)))
     return [Limit(demand, strength) for demand, strength in found if strength is not None]
@@ -101,36 +99,17 @@ def claim(limit: Limit, demands: Demands) -> Claim:
     )
 
 
-def _adhesive(model: Model, judge: Weigher, value: float | None, what: str, unit: str = "MPa") -> Strength | None:
-    name = model.document.bond
-    return judge.strength(
-        value, what=f"adhesive {name}, {what}", unit=unit, kind="adhesive", owner=name, holder=model.adhesive
-    )
-
-
-def _shear_yield(model: Model, judge: Weigher) -> Strength | None:
-    if model.adhesive.shear_yield is None:
-        judge.findings.miss(
-            f"shear_yield of adhesive {model.document.bond!r}: the peak at the end of a bond stands against the yield "
-            "stress of the adhesive itself, from thick-adherend shear tests (ISO 11003-2, ASTM D5656). A lap coupon's "
-            "strength is a mean over that coupon's overlap and cannot stand in for it."
-        )
-    return _adhesive(model, judge, model.adhesive.shear_yield, "shear yield")
-
-
-def _peel(model: Model, judge: Weigher) -> Strength | None:
-    if model.adhesive.peel_strength is None:
-        judge.findings.miss(
-            f"peel_strength of adhesive {model.document.bond!r}: the tension across the bond at its end stands "
-            "against pull-off or flatwise tension tests of these surfaces (ISO 4624, ASTM C297); a peel test's force "
-            "per width is another quantity."
-        )
-    return _adhesive(model, judge, model.adhesive.peel_strength, "peel")
-
-
 def joint_load(model: Model, ultimate: float, judge: Weigher) -> Strength | None:
     """The load at which a yielding bond reaches its strain limit, as a strength of the adhesive."""
-    return _adhesive(model, judge, ultimate, "shear strain of the yielding bond", "N")
+    name = model.document.bond
+    return judge.strength(
+        ultimate,
+        what=f"adhesive {name}, shear strain of the yielding bond",
+        unit="N",
+        kind="adhesive",
+        owner=name,
+        holder=model.adhesive,
+    )
 
 
 def yield_values(model: Model, findings: Findings) -> tuple[float, float] | None:
@@ -168,42 +147,22 @@ def _stretched(model: Model, side: int, judge: Weigher) -> Strength | None:
     return _material(model, side, judge, value, f"{word} of the {name} adherend")
 
 
-def _surface_shear(model: Model, side: int, judge: Weigher, book: Working, where: str = "surface") -> Strength | None:
-    material, name = model.materials[side], SIDES[side]
-    rolls = model.rolls(side)
-    word = "rolling shear" if rolls else "shear"
-    value = material.strengths.rolling_shear if rolls else material.strengths.shear
-    if value is None and material.yield_ is not None and not rolls:
-        again = side == 1 and model.names[0] == model.names[1]
-        derive = book.step if not again else Working(record=False).step
-        value = derive(
-            f"Shear yield of {model.names[side]}",
-            "f_v",
-            YIELD_SHEAR,
-            {"f_y": (material.yield_, "MPa")},
-            "MPa",
-            VON_MISES,
-        )
-    if value is None:
-        judge.findings.miss(
-            f"{word} strength of {model.names[side]!r} (surface of the {name} adherend): {word} tests of the piece, "
-            "or its material record."
-        )
-    return _material(model, side, judge, value, f"{word} in the {where} of the {name} adherend")
+def _surface_shear(model: Model, side: int, judge: Weigher, book: Working) -> Strength | None:
+    again = side == 1 and model.names[0] == model.names[1]
+    return surfaces.surface_shear(
+        judge,
+        model.names[side],
+        model.materials[side],
+        f"the {SIDES[side]} adherend",
+        rolls=model.rolls(side),
+        book=Working(record=False) if again else book,
+    )
 
 
 def _surface_peel(model: Model, side: int, judge: Weigher) -> Strength | None:
-    material, name = model.materials[side], SIDES[side]
-    across = material.strengths.tension_across
-    value = across if across is not None else material.yield_
-    if value is None:
-        judge.findings.miss(
-            f"tension_across of {model.names[side]!r} (surface of the {name} adherend): the surface layer is pulled "
-            "off at the overlap's end; pull-off tests that break in it (ISO 4624) give the value."
-        )
-    return _material(model, side, judge, value, f"tension across in the surface of the {name} adherend")
+    return surfaces.surface_peel(judge, model.names[side], model.materials[side], f"the {SIDES[side]} adherend")
 
 
-def least(weighed_resistances: Mapping[str, list[float]], name: str) -> float:
-    """The least resistance against a demand; infinite where there is none."""
-    return min(weighed_resistances.get(name, []), default=math.inf)
+def _wall(strength: Strength | None) -> Strength | None:
+    """The shear strength of a tube's wall is that of its surface."""
+    return None if strength is None else replace(strength, what=strength.what.replace("in the surface", "in the wall"))

@@ -46,6 +46,7 @@ from server.documents.member import (
 )
 from server.documents.reading import GROUPS, KINDS, KINDS_TO_COME, fill, kind_of, read, schema
 from server.documents.splice import SpliceDocument, SpliceLoad
+from server.documents.strip_end import BondedStrip, StripEndDocument
 
 __all__ = [
     "GROUPS",
@@ -58,6 +59,7 @@ __all__ = [
     "AreaLoad",
     "Basis",
     "Block",
+    "BondedStrip",
     "Channel",
     "Combination",
     "CoupleLoad",
@@ -94,6 +96,7 @@ __all__ = [
     "SpliceLoad",
     "Statistic",
     "Strengths",
+    "StripEndDocument",
     "Support",
     "Tee",
     "Tube",

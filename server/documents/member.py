@@ -287,12 +287,13 @@ class Combination(Model):
 
 
 class Analysis(Model):
-    """How the member is reckoned."""
+    """How the member is reckoned. ``before_bonding``: load cases that act, unpropped, before the glue has set."""
 
     slip: bool = Field(default=False, strict=True)
     shear_deformation: bool = Field(default=True, strict=True)
     field: Literal["auto", "always", "never"] = "auto"
     rules: list[Line] = Field(default_factory=list, max_length=50)
+    before_bonding: list[Name] = Field(default_factory=list, max_length=100)
     spacing_step: Size | None = None
 
 
@@ -304,7 +305,7 @@ class Service(Model):
     moisture_change: dict[Name, Moisture] = Field(default_factory=dict, max_length=100)
 
 
-def _all_cases(data: dict[str, Any]) -> dict[str, Combination]:
+def all_cases(data: dict[str, Any]) -> dict[str, Combination]:
     """The combination that stands where none is given: all cases x 1.0, without a duration."""
     return {"all": Combination(factors=dict.fromkeys(data.get("loads", {}), 1.0))}
 
@@ -317,6 +318,6 @@ class MemberDocument(Document):
     section: Section
     member: Member
     loads: dict[Name, Annotated[list[LoadEntry], Field(max_length=1000)]] = Field(min_length=1, max_length=100)
-    combinations: dict[Name, Combination] = Field(default_factory=_all_cases, min_length=1, max_length=100)
+    combinations: dict[Name, Combination] = Field(default_factory=all_cases, min_length=1, max_length=100)
     analysis: Analysis = Field(default_factory=Analysis)
     service: Service | None = None

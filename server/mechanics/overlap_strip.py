@@ -21,7 +21,11 @@ from server.mechanics.overlap_solver import GAUSS, Adherend, Array, Loads, Pair,
 
 @dataclass(frozen=True)
 class Host:
-    """The section without the strip: EA [N], EI [N mm2], distance from its neutral axis to its bonded face [mm]."""
+    """The section without the strip: EA [N], EI [N mm2], distance from its neutral axis to its bonded face [mm].
+
+    Either stiffness may be infinite: by symmetry, as in the half of a core between two strips alike, which does not
+    stretch under a moment and does not bend under a free strain.
+    """
 
     EA: float
     EI: float
@@ -30,13 +34,27 @@ class Host:
 
 @dataclass(frozen=True)
 class Strip:
-    """The strip: modulus [MPa], width, thickness; ``taper`` the length over which either end thins to ``tip`` [mm]."""
+    """The strip: modulus [MPa], width, thickness; ``taper`` the length over which either end thins to ``tip`` [mm].
+
+    A strip that is no rectangle has an ``area`` [mm2], ``inertia`` [mm4] and ``distance`` from its axis to its bonded
+    face [mm] of its own, and does not taper.
+    """
 
     E: float
     width: float
     thickness: float
     taper: float = 0.0
     tip: float = 0.0
+    area: float | None = None
+    inertia: float | None = None
+    distance: float | None = None
+
+    def beam(self, thickness: Array | float, rise: Array | float, bond_line: float) -> Adherend:
+        """The strip as a beam where it is so thick."""
+        E, b = self.E, self.width
+        if self.area is not None and self.inertia is not None and self.distance is not None:
+            return Adherend(1 / (E * self.area), 1 / (E * self.inertia), self.distance + bond_line / 2)
+        return Adherend(1 / (E * b * thickness), 12 / (E * b * thickness**3), (thickness + bond_line) / 2, rise)
 
 
 @dataclass(frozen=True, eq=False)
@@ -121,10 +139,10 @@ def strip_course(
     b = float(strip.width if bonded_width is None else positive("bonded_width", bonded_width, "mm"))
     stiffness = shear_modulus * b / bond_line, E * b / bond_line
     thinnest = strip.tip if strip.taper else strip.thickness
-    soft = Adherend(1 / (strip.E * strip.width * thinnest), 12 / (strip.E * strip.width * thinnest**3))
-    a, d = float(np.asarray(soft.stretch)), float(np.asarray(soft.bend))
+    soft = strip.beam(thinnest, 0.0, bond_line)
+    a, d, own = (float(np.asarray(each)) for each in (soft.stretch, soft.bend, soft.arm))
     arm = host.distance + bond_line / 2
-    slip = stiffness[0] * (a + 1 / host.EA + ((strip.thickness + bond_line) / 2) ** 2 * d + arm**2 / host.EI)
+    slip = stiffness[0] * (a + 1 / host.EA + own**2 * d + arm**2 / host.EI)
     lift = (stiffness[1] * (d + 1 / host.EI)) ** 0.25
     ends = [strip.taper, length - strip.taper] if strip.taper else []
     mesh = graded(length, max(np.sqrt(slip), lift), places=np.array([*ends, *np.ravel(breaks)]))
@@ -150,9 +168,10 @@ def strip_course(
 
 
 def _check(host: Host, strip: Strip, shear_modulus: float, E: float, bond_line: float, length: float) -> None:
+    for name, stiffness in (("host.EA", host.EA), ("host.EI", host.EI)):
+        if not stiffness > 0:
+            raise InputError(name, f"{name} is {stiffness:g}; a stiffness greater than 0 is needed.")
     for name, value, unit in (
-        ("host.EA", host.EA, "N"),
-        ("host.EI", host.EI, "N mm2"),
         ("strip.E", strip.E, "MPa"),
         ("strip.width", strip.width, "mm"),
         ("strip.thickness", strip.thickness, "mm"),
@@ -170,11 +189,9 @@ def _check(host: Host, strip: Strip, shear_modulus: float, E: float, bond_line: 
 
 def _beam(strip: Strip, places: Array, length: float, bond_line: float) -> Adherend:
     """The strip at every collocation point."""
-    E, b = strip.E, strip.width
     if not strip.taper:
-        t = strip.thickness
-        return Adherend(1 / (E * b * t), 12 / (E * b * t**3), (t + bond_line) / 2)
+        return strip.beam(strip.thickness, 0.0, bond_line)
     slope = (strip.thickness - strip.tip) / strip.taper
     thick = np.minimum(strip.thickness, strip.tip + slope * np.minimum(places, length - places))
     rise = np.where(places < strip.taper, slope, np.where(places > length - strip.taper, -slope, 0.0)) / 2
-    return Adherend(1 / (E * b * thick), 12 / (E * b * thick**3), (thick + bond_line) / 2, rise)
+    return strip.beam(thick, rise, bond_line)

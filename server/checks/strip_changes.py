@@ -1,0 +1,131 @@
+"""What would help at the end of a bonded strip: moved, tapered, a thicker or softer line, held down by fasteners."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Iterator, Sequence
+from dataclasses import replace
+
+import numpy as np
+
+from server.checks.actions import Curve
+from server.checks.resistance import Findings
+from server.checks.strip_ends import EndCheck, Strain, Stresses, stresses_at, use_of
+from server.errors import InputError
+
+TIP = 1.5  # mm, to which a taper thins; common practice: 1 to 2 mm
+TAPERS = (50.0, 200.0)  # mm
+HALVINGS = 6
+
+
+def tried(check: EndCheck, moment: Curve, strains: Sequence[Strain]) -> list[dict[str, object]]:
+    """Each change with what it brings, reckoned anew."""
+    found = [_told(what, check, stresses) for what, stresses in _each(check, moment, strains)]
+    moved = _moved(check, moment, strains)
+    return [*([moved] if moved is not None else []), *found]
+
+
+def _each(check: EndCheck, moment: Curve, strains: Sequence[Strain]) -> Iterator[tuple[str, Stresses]]:
+    end, bond = check.end, check.bond
+    thicker, softer = (
+        replace(bond, thickness=3 * bond.thickness),
+        replace(bond, shear_modulus=bond.shear_modulus / 4, E=bond.E / 4),
+    )
+    yield f"bond line {thicker.thickness:g} mm thick", stresses_at(end, thicker, moment, strains)
+    yield "adhesive a quarter as stiff", stresses_at(end, softer, moment, strains)
+    assert end.bonded is not None
+    strip = end.bonded.strip
+    for taper in TAPERS:
+        if strip.area is None and strip.thickness > TIP and 2 * taper < end.bonded.length:
+            words = f"end tapered to {TIP:g} mm over {taper:g} mm"
+            yield words, stresses_at(end, bond, moment, strains, taper=taper, tip=TIP)
+
+
+def _told(what: str, check: EndCheck, found: Stresses) -> dict[str, object]:
+    row = int(found.peak_shear.argmax()) if check.governing is None else check.governing.row
+    return {
+        "what": what,
+        "end_shear": float(found.peak_shear[row]),
+        "end_peel": float(found.peak_peel[row]),
+        "utilisation": use_of(check, found),
+    }
+
+
+def _moved(check: EndCheck, moment: Curve, strains: Sequence[Strain]) -> dict[str, object] | None:
+    """How far out the end must run for its limits to hold; None where it holds already or nothing is judged."""
+    end = check.end
+    if check.governing is None or check.governing.utilisation <= 1 or not end.inside:
+        return None
+    bonded = end.bonded
+    assert bonded is not None
+    limit = 0.0 if end.side == "left" else float(moment.breaks[-1])
+    solve = _solver(check, moment, strains)
+    try:
+        furthest = solve(limit)
+    except InputError:
+        return None
+    used = use_of(check, furthest)
+    if used is None:
+        return None
+    if used > 1:
+        return _told(f"end run out to {limit:g} mm, the member's own end: still not enough", check, furthest)
+    holds, fails, best = limit, end.at, furthest
+    for _ in range(HALVINGS):
+        middle = (holds + fails) / 2
+        stresses = solve(middle)
+        if (use_of(check, stresses) or 0.0) <= 1:
+            holds, best = middle, stresses
+        else:
+            fails = middle
+    shown = np.floor(holds) if end.side == "left" else np.ceil(holds)
+    return _told(f"end run out to {shown:g} mm from the left", check, best)
+
+
+def _solver(check: EndCheck, moment: Curve, strains: Sequence[Strain]) -> Callable[[float], Stresses]:
+    end, bond = check.end, check.bond
+
+    def solve(place: float) -> Stresses:
+        if end.side == "left":
+            return stresses_at(end, bond, moment, strains, start=place)
+        return stresses_at(end, bond, moment, strains, stop=place)
+
+    return solve
+
+
+def hold_down(check: EndCheck) -> tuple[float, float]:
+    """The pull that fasteners at the end must hold [N], and how far from the end it reaches [mm]."""
+    bonded, end, course = check.end.bonded, check.end, check.stresses.course
+    assert bonded is not None
+    row = int(check.stresses.peak_peel.argmax()) if check.governing is None else check.governing.row
+    at = course.at if end.side == "left" else course.at[-1] - course.at[::-1]
+    peel = course.peel[:, row] if end.side == "left" else course.peel[::-1, row]
+    if peel[0] <= 0:
+        return 0.0, 0.0
+    first = int(np.argmax(peel < 0)) or len(peel)
+    return float(np.trapezoid(peel[:first], at[:first]) * bonded.width), float(at[first - 1])
+
+
+def words(check: EndCheck, others: Sequence[EndCheck], findings: Findings) -> None:
+    """The caution of a piece's worse end: how it stands, and what to change; its other end in a few words."""
+    end, bonded = check.end, check.end.bonded
+    assert bonded is not None
+    row = int(check.stresses.peak_shear.argmax()) if check.governing is None else check.governing.row
+    taken = check.result["force_to_pick_up"]
+    pull, reach = hold_down(check)
+    held = f" End fasteners would have to hold {pull:.4g} N within {reach:.3g} mm." if pull > 0 else ""
+    told = "; ".join(
+        f"{c['what']} ({c['utilisation']:.2f})" for c in check.changes if isinstance(c["utilisation"], float)
+    )
+    changes = f" What helps, with the utilisation it brings: {told}." if told else ""
+    other = "".join(
+        f" Its other end, at {each.end.at:g} mm, has {each.stresses.peak_shear.max():.3g} and "
+        f"{each.stresses.peak_peel.max():.3g} MPa."
+        for each in others
+    )
+    findings.caution(
+        "end of a bonded piece",
+        f"{end.title[:1].upper() + end.title[1:]}: {bonded.part.name} must pick up {taken:.4g} N there at once: shear "
+        f"{check.stresses.peak_shear[row]:.3g} MPa and peel {check.stresses.peak_peel[row]:.3g} MPa, against a mean of "
+        f"{check.result['mean_shear_at_end']:.3g} MPa.{other}{changes}{held} Linear elastic, an upper estimate: the "
+        "wood's own shear and a fillet of adhesive relieve the end.",
+        answer=True,
+    )
