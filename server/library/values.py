@@ -44,6 +44,8 @@ def check_entry(
     except DocumentError as error:
         faults += [Fault(f"values.{fault.path}" if fault.path else "values", fault.message) for fault in error.faults]
         return {}
+    if group.model is evidence.Value and _was_found(values):
+        typed.pop("value", None)  # found anew from the set that it stands on now
     found = list(_model_faults(group, placeholders(typed, pinned, faults)))
     if found:
         faults += found
@@ -55,6 +57,12 @@ def check_entry(
     else:
         fields.printable(faults, "values", text)
     return typed
+
+
+def _was_found(values: Mapping[str, Any]) -> bool:
+    """Whether the number of an earlier revision came from its coupons and was not typed lower."""
+    found = values.get(FOUND)
+    return isinstance(found, Mapping) and not found.get("typed", False) and values.get("origin") == "coupon set"
 
 
 def _model_faults(group: Group, values: Mapping[str, Any]) -> list[Fault]:
@@ -151,7 +159,9 @@ def complete_value(
             most = units.show(shown, property.kind, str(entry.get("display", "SI")))
             message = f"{units.given(entry['value'])} is more than the coupons show ({most}); enter that or less."
             faults.append(Fault("values.value", message))
-    completed = {**entry, "value": entry.get("value", shown) or shown, FOUND: _found(result)}
+    typed = entry.get("value")
+    completed = {**entry, "value": shown if typed is None else typed}
+    completed[FOUND] = {**_found(result), "typed": typed is not None}
     return completed, {**behind.details, **details}
 
 
