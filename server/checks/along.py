@@ -15,7 +15,7 @@ from server.checks.slide import Slide
 from server.mechanics.piecewise import evaluate
 from server.working import formula
 
-FLOW = {"cut": "V*S/EI", "symmetry": "c_s*V*S/EI"}
+FLOW = {"cut": "V*S/EI", "symmetry": "c_s*V*S/EI", "field": "V*S_j/EI"}
 SLIDING_FLOW = "k*s"
 
 
@@ -127,11 +127,12 @@ class RigidAlong:
         return _side_by_side(parts)
 
     def unsettled(self, site: Site) -> str:
-        """The reason a cut or symmetry does not settle the share."""
+        """The reason that neither a cut, symmetry nor the field settles the share."""
         for stretch in self.body.stretches:
             flow = stretch.section.flows.get(site.index)
             if flow is not None and flow.split is None:
-                return flow.reason
+                why_not = stretch.section.settled.why_not
+                return f"{flow.reason} The field of shear was not solved: {why_not}." if why_not else flow.reason
         return ""
 
 
@@ -184,7 +185,7 @@ class SlidingAlong:
     def unsettled(self, site: Site) -> str:
         """Why the layers alone do not settle the joint: a closed ring, or partners of unlike stiffness."""
         for stretch in self.slide.body.stretches:
-            flow = stretch.section.flows.get(site.index)
+            flow = stretch.section.hand_flows.get(site.index)
             if flow is None:
                 continue
             if flow.split is None:

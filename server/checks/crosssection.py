@@ -8,7 +8,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from functools import cached_property
 from itertools import pairwise
 
@@ -17,8 +17,11 @@ from numpy.typing import NDArray
 
 from server import documents
 from server.checks.outlines import outlines
+from server.checks.section_field import Settled, Wanted, bond_of, settle
 from server.errors import DocumentError, Fault
 from server.mechanics.contacts import Contact, contacts, in_order, overlap
+from server.mechanics.field import Bond, remembered_field
+from server.mechanics.field_cuts import field_cuts
 from server.mechanics.flow import JointFlow, JointLine, joint_flows, tied
 from server.mechanics.outlines import nearest
 from server.mechanics.polygon import Edges, edges_of
@@ -89,6 +92,13 @@ class Part:
             return self.material.G_rolling
         return self.material.G
 
+    @property
+    def field_modulus(self) -> float | None:
+        """The modulus of the section's field: the rolling one for a layered piece or one with its grain across."""
+        if self.rolls and self.material.G_rolling is not None:
+            return self.material.G_rolling
+        return self.material.G
+
     def coexists(self, other: Part) -> bool:
         return min(self.end, other.end) > max(self.start, other.start)
 
@@ -125,6 +135,7 @@ class CrossSection:
     pieces: tuple[Piece, ...]
     properties: SectionProperties
     shares: tuple[float, ...] = ()
+    wanted: Wanted = "auto"
 
     def share(self, position: int) -> float:
         """How much of the part at a position counts."""
@@ -132,7 +143,21 @@ class CrossSection:
 
     @cached_property
     def shear_stiffness(self) -> float | None:
+        """GA from the field where it was solved and takes the modulus that bending sees, else from horizontal cuts."""
+        field = self.settled.field
+        if field is not None and self._sees_alike:
+            return self.properties.EI**2 / float(field.energy[0, 0])
         return shear_stiffness(self.pieces, self.properties)
+
+    @property
+    def by_field(self) -> bool:
+        """Whether GA comes from the field."""
+        return self.settled.field is not None and self._sees_alike
+
+    @property
+    def _sees_alike(self) -> bool:
+        """False where a panel stands on edge: it shears in its plane, which the field takes as rolling."""
+        return all(part.field_modulus == part.shear_modulus for part in self.parts)
 
     @cached_property
     def centroids(self) -> dict[int, float]:
@@ -142,13 +167,41 @@ class CrossSection:
 
     @cached_property
     def cuts(self) -> dict[int, HorizontalCut]:
-        found = largest_cuts(self.pieces, self.properties)
+        field = self.settled.field
+        if field is None:
+            found = largest_cuts(self.pieces, self.properties)
+        else:
+            found = field_cuts(self.pieces, self.properties, self.bonds, field)
         return {part.index: cut for part, cut in zip(self.parts, found, strict=True)}
 
     @cached_property
+    def bonds(self) -> tuple[Bond, ...]:
+        """The joints as the field sees them."""
+        position = {part.index: i for i, part in enumerate(self.parts)}
+        return tuple(
+            bond_of(position[s.first.index], position[s.second.index], s.contact, s.spec.width) for s in self.sites
+        )
+
+    @cached_property
+    def settled(self) -> Settled:
+        """Flows by hand, and by the field where it is wanted."""
+        alike = tuple(replace(p, G=part.field_modulus) for p, part in zip(self.pieces, self.parts, strict=True))
+        hand = joint_flows(alike, self.properties, lines_of(self.parts, self.sites))
+        return settle(alike, self.properties, hand, self.bonds, wanted=self.wanted)
+
+    @cached_property
     def flows(self) -> dict[int, JointFlow]:
-        found = joint_flows(self.pieces, self.properties, lines_of(self.parts, self.sites))
-        return {site.index: flow for site, flow in zip(self.sites, found, strict=True)}
+        """Flow of every joint, by its place in the document."""
+        return {site.index: flow for site, flow in zip(self.sites, self.settled.flows, strict=True)}
+
+    @cached_property
+    def hand_flows(self) -> dict[int, JointFlow]:
+        """What cuts and symmetry alone say, by the joint's place in the document."""
+        return {site.index: flow for site, flow in zip(self.sites, self.settled.hand, strict=True)}
+
+    def place(self, site: Site) -> int:
+        """Of a joint of the document among those of this section."""
+        return next(place for place, other in enumerate(self.sites) if other.index == site.index)
 
     @cached_property
     def softened(self) -> tuple[float, float | None]:
@@ -156,6 +209,8 @@ class CrossSection:
         shares = self.shares or (1.0,) * len(self.parts)
         soft = tuple(_piece(part, creep=True, share=share) for part, share in zip(self.parts, shares, strict=True))
         whole = reweighted(soft, self.properties)
+        if self.by_field:
+            return whole.EI, whole.EI**2 / float(remembered_field(soft, whole, self.bonds).energy[0, 0])
         return whole.EI, shear_stiffness(soft, whole)
 
 
@@ -178,6 +233,11 @@ class Body:
     contacts: tuple[Contact, ...]
     stretches: tuple[Stretch, ...]
 
+    @cached_property
+    def sections(self) -> list[CrossSection]:
+        """Every section once, from left to right."""
+        return list({id(stretch.section): stretch.section for stretch in self.stretches}.values())
+
     def stretches_of(self, part: Part) -> list[tuple[int, Stretch]]:
         return [(i, s) for i, s in enumerate(self.stretches) if part.start <= s.start and part.end >= s.end]
 
@@ -189,7 +249,7 @@ def build(document: documents.MemberDocument) -> Body:
     _refuse_overlaps(parts, edges)
     found = _contacts(document, parts, edges)
     sites = tuple(_sites(document, parts, found))
-    stretches = tuple(_stretches(document.member.length, parts, sites))
+    stretches = tuple(_stretches(document.member.length, parts, sites, document.analysis.field))
     return Body(document.member.length, parts, sites, tuple(found), stretches)
 
 
@@ -341,7 +401,7 @@ def _how_far(first: Part, second: Part, allowed: float) -> str:
     return "touch only at a point, or nowhere along flats that face each other"
 
 
-def _stretches(length: float, parts: Sequence[Part], sites: Sequence[Site]) -> list[Stretch]:
+def _stretches(length: float, parts: Sequence[Part], sites: Sequence[Site], wanted: Wanted) -> list[Stretch]:
     ends = sorted({0.0, length, *(p.start for p in parts), *(p.end for p in parts)})
     known: dict[tuple[int, ...], CrossSection] = {}
     stretches: list[Stretch] = []
@@ -349,12 +409,15 @@ def _stretches(length: float, parts: Sequence[Part], sites: Sequence[Site]) -> l
         active = tuple(p for p in parts if p.start <= start and p.end >= end)
         key = tuple(p.index for p in active)
         if key not in known:
-            known[key] = _cross_section(active, [s for s in sites if s.present(start, end)], start, end)
+            here = [site for site in sites if site.present(start, end)]
+            known[key] = _cross_section(active, here, start, end, wanted)
         stretches.append(Stretch(start, end, known[key]))
     return stretches
 
 
-def _cross_section(active: tuple[Part, ...], sites: Sequence[Site], start: float, end: float) -> CrossSection:
+def _cross_section(
+    active: tuple[Part, ...], sites: Sequence[Site], start: float, end: float, wanted: Wanted
+) -> CrossSection:
     where = f"between {start:g} and {end:g} mm from the left end"
     if not active:
         raise DocumentError(
@@ -373,7 +436,7 @@ def _cross_section(active: tuple[Part, ...], sites: Sequence[Site], start: float
             ]
         )
     pieces = tuple(_piece(part) for part in active)
-    return CrossSection(active, tuple(sites), pieces, properties(pieces))
+    return CrossSection(active, tuple(sites), pieces, properties(pieces), wanted=wanted)
 
 
 def lines_of(parts: Sequence[Part], sites: Sequence[Site]) -> list[JointLine]:

@@ -11,6 +11,7 @@ from server import documents
 from server.checks.along import FLOW, Along, Demand, RigidAlong, SlidingAlong, leftmost
 from server.checks.crosssection import Body, Part, Site, Stretch
 from server.checks.fastened import Fastening, claim_fasteners, write_fasteners
+from server.checks.field_steps import beside_hand, write_share
 from server.checks.resistance import Claim, Judge, Strength, Weighed, resistance_formula, worst
 from server.checks.slip_steps import write_sliding_flow
 from server.checks.statics import Statics
@@ -99,8 +100,8 @@ def _claim(
     reason = flows.along.unsettled(site)
     if reason:
         judge.findings.miss(
-            f"joint {site.id}: its share of the shear flow. {reason} A method for the field of shear in the whole "
-            "section would be needed; until then change the section so that a cut or symmetry fixes the share."
+            f"joint {site.id}: its share of the shear flow. {reason} Let the field of shear be solved (analysis.field "
+            "auto, rigid joints, G of every piece), or change the section so that a cut or symmetry fixes the share."
         )
         demand = None
     check.demand, check.along = demand, flows.along
@@ -228,7 +229,9 @@ def _write_flow(check: JointCheck, demand: Demand, body: Body, judge: Judge, sta
     if isinstance(check.along, SlidingAlong):
         flow, check.result["slip"] = write_sliding_flow(site, check.along.slide, demand, judge, group)
     else:
-        flow = _rigid_flow(demand, stretch, shared, first, combination, judge, group)
+        own = write_share(site, stretch, first, judge, group) if shared.split == "field" else first
+        flow = _rigid_flow(demand, stretch, shared, own, combination, judge, group)
+        check.result.update(beside_hand(site, stretch, float(demand.shear[row]), judge, group))
     check.result["first_moment"] = working.step(
         "First moment on the reference modulus",
         "Q",
@@ -270,6 +273,8 @@ def _rigid_flow(
     }
     if shared.split == "symmetry":
         values["c_s"] = (abs(shared.share or 0.0) / first if first else 0.0, "")
+    elif shared.split == "field":
+        values["S_j"] = values.pop("S")
     return judge.working.step(
         "Shear flow",
         "q",

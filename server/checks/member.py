@@ -17,6 +17,7 @@ from server.checks.crosssection import Body, CrossSection, build
 from server.checks.deflection import Sag, check_deflection
 from server.checks.drawing import diagrams, drawing
 from server.checks.fall_back import FallBack, glue_gone, judge_fall_back
+from server.checks.field_steps import write_fields
 from server.checks.fits import refuse_misfits
 from server.checks.holds import holds
 from server.checks.joints import Flows, JointCheck, claim_joints, write_joint
@@ -29,6 +30,7 @@ from server.checks.rules import KNOWN, SKINS, chosen, unknown
 from server.checks.sandwich import add_sandwich_claims
 from server.checks.scan import Scan, scan
 from server.checks.schedule import add_schedules
+from server.checks.section_field import doubts
 from server.checks.slide import Slide, slide
 from server.checks.slip_steps import write_effective, write_method
 from server.checks.thin_webs import add_web_claims
@@ -70,12 +72,16 @@ def run(document: documents.MemberDocument, *, working: bool = True) -> dict[str
         if SKINS in rules:
             effective_width.write(document, body, rigid, book)
         statics.section()
+        write_fields(body, book)
         if sliding is not None:
             write_method(sliding, book, "Slip")
             write_effective(sliding, body.stretches[0].section.properties.EI, book, "Slip")
         statics.member()
     upper = sliding is None and _upper_stiffness(document, body, findings)
     _name_what_is_to_come(document, findings)
+    for section in body.sections:
+        for text in doubts(section.settled, [site.id for site in section.sites]):
+            findings.miss(text)
     judge = Judge(document, actions, book, findings, Places(document))
     flows = _flows(document, body, rigid, sliding, findings)
     joints, pieces, fall_back = _judge(body, scan(body, actions), judge, statics, flows, sliding, upper)
@@ -172,8 +178,6 @@ def _shared(document: documents.MemberDocument, body: Body, findings: Findings) 
 
 def _name_what_is_to_come(document: documents.MemberDocument, findings: Findings) -> None:
     """Name every analysis that was asked for and is not to be had."""
-    if document.analysis.field == "always":
-        findings.miss("the section's shear field (analysis.field always): not available in this version.")
     for rule in unknown(document):
         findings.miss(f"rule {rule!r} (analysis.rules): not known here; known are {', '.join(map(repr, KNOWN))}.")
     for case, loads in document.loads.items():
@@ -283,7 +287,7 @@ def _verdict(governing: Candidate | None, findings: Findings) -> dict[str, objec
 
 
 def _section(section: CrossSection, sliding: Slide | None) -> dict[str, object]:
-    whole = section.properties
+    whole, field = section.properties, section.settled.field
     return {
         "area": whole.area,
         "mass_per_length": whole.mass_per_length,
@@ -292,9 +296,9 @@ def _section(section: CrossSection, sliding: Slide | None) -> dict[str, object]:
         "EI_lateral": whole.EI_lateral,
         "EI_product": whole.EI_product,
         "neutral_axis": [float(x) for x in whole.neutral_axis],
-        "shear_centre": None,
+        "shear_centre": None if field is None else field.shear_centre.tolist(),
         "GA": section.shear_stiffness,
-        "GJ": None,
+        "GJ": None if field is None else field.GJ,
         "effective_EI": whole.EI if sliding is None else whole.EI * sliding.ratio,
     }
 

@@ -88,10 +88,15 @@ class Statics:
             )  # fmt: skip
             GA = section.shear_stiffness
             if self.actions.shear_deformation and GA is not None:
+                how = (
+                    "tau from the field of shear (warping of the section included)."
+                    if section.by_field
+                    else "tau = V S/(EI b) on horizontal cuts; integrated exactly between the corners of the pieces "
+                    "(Gauss-Legendre)."
+                )
                 self.working.note(
                     f"Shear stiffness{extent}",
-                    "GA = V^2 / integral of tau^2/G over the section, with tau = V S/(EI b) on horizontal cuts; "
-                    "integrated exactly between the corners of the pieces (Gauss-Legendre).",
+                    f"GA = V^2 / integral of tau^2/G over the section, with {how}",
                     value=GA, unit="N", source="strain energy of shear (form factor)", group="Section",
                 )  # fmt: skip
 

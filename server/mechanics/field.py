@@ -7,8 +7,10 @@ every piece, found by finite elements; joints are rigid or springs. The same mat
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections import OrderedDict
+from collections.abc import Hashable, Sequence
 from dataclasses import astuple, dataclass, field
+from threading import Lock
 
 import numpy as np
 
@@ -22,7 +24,7 @@ from server.mechanics.field_system import Solved, bonded_parts, put_together, yi
 from server.mechanics.polygon import Array
 from server.mechanics.section import Piece, SectionProperties
 
-__all__ = ["PARTS", "Bond", "Field", "shear_field"]
+__all__ = ["PARTS", "Bond", "Field", "remembered_field", "shear_field"]
 
 TARGET = 0.005  # estimated error of every flow, of itself
 _CAUTION = 2.0  # the difference between two solutions may flatter the better one
@@ -132,6 +134,56 @@ def shear_field(
         if found.converged:
             break
         found = _attempt(layout, E, G, properties, bonds, fineness)
+    return found
+
+
+_KEPT = 24  # solutions: a shop's people look at a few sections at a time
+_kept: OrderedDict[Hashable, Field] = OrderedDict()
+_lock = Lock()
+
+
+def remembered_field(pieces: Sequence[Piece], properties: SectionProperties, bonds: Sequence[Bond]) -> Field:
+    """As ``shear_field``, from a small store where the same section was solved before: shapes, moduli and joints count.
+
+    Parameters
+    ----------
+    pieces : sequence of Piece
+        The n pieces; lengths in [mm], E and G in [MPa].
+    properties : SectionProperties
+        Of the same pieces.
+    bonds : sequence of Bond
+        The joints [mm], [N/mm3].
+
+    Returns
+    -------
+    Field
+        See there.
+
+    Raises
+    ------
+    InputError
+        As ``shear_field``.
+
+    References
+    ----------
+    .. [1] As ``shear_field``.
+    """
+    key = (
+        tuple((p.outline.tobytes(), *(hole.tobytes() for hole in p.holes), p.E, p.G) for p in pieces),
+        tuple(
+            (b.first, b.second, b.start.tobytes(), b.end.tobytes(), b.gap, b.width, b.stiffness, b.ring is None)
+            for b in bonds
+        ),
+    )
+    with _lock:
+        if key in _kept:
+            _kept.move_to_end(key)
+            return _kept[key]
+    found = shear_field(pieces, properties, bonds)
+    with _lock:
+        _kept[key] = found
+        while len(_kept) > _KEPT:
+            _kept.popitem(last=False)
     return found
 
 

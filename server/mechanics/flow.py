@@ -19,7 +19,7 @@ from server.mechanics.graph import Ends, bridges, components, ring_through
 from server.mechanics.section import Piece, SectionProperties
 from server.mechanics.symmetry import Failure, JointLine, Symmetry, SymmetryFinder
 
-__all__ = ["JointFlow", "JointLine", "joint_flows", "tied"]
+__all__ = ["JointFlow", "JointLine", "joint_flows", "listed", "tied"]
 
 
 @dataclass(frozen=True)
@@ -31,10 +31,10 @@ class JointFlow:
     opposite; ``share`` this joint's part of it [N mm], with the sign of the flow on the joint's first piece;
     ``cut_off`` pieces of the cut-off part; ``partners`` the joints that are cut together, in equal shares (this one
     included); ``reason`` in words. For a joint that carries nothing by symmetry ``cut_off`` is empty and both moments
-    are 0; where ``split`` is None the numbers are None.
+    are 0; where ``split`` is None the numbers are None; "field" comes from the field of shear alone.
     """
 
-    split: Literal["cut", "symmetry"] | None
+    split: Literal["cut", "symmetry", "field"] | None
     first_moment: float | None
     first_moment_other_side: float | None
     share: float | None
@@ -105,7 +105,7 @@ def joint_flows(pieces: Sequence[Piece], properties: SectionProperties, joints: 
             raise InputError(f"joints[{number}]", f"Joint {number + 1} joins pieces {a} and {b}; name two pieces.")
     loose = tied(len(pieces), joints)
     if loose:
-        names = _listed([pieces[place].name for place in loose])
+        names = listed([pieces[place].name for place in loose])
         raise InputError("joints", f"No chain of joints ties {names} to {pieces[0].name}; add a joint.")
     cuts = bridges(len(pieces), ends)
     section = _Section(pieces, properties, joints, ends)
@@ -284,10 +284,10 @@ class _Section:
         return sum(self.moment[piece] for piece in part), sum(self.moment[piece] for piece in rest)
 
     def _names(self, places: Sequence[int]) -> str:
-        return _listed([self.pieces[place].name for place in places])
+        return listed([self.pieces[place].name for place in places])
 
     def _joint_names(self, places: Sequence[int]) -> str:
-        return _listed(["/".join(self.pieces[piece].name for piece in self.ends[place]) for place in places])
+        return listed(["/".join(self.pieces[piece].name for piece in self.ends[place]) for place in places])
 
     def _why_not(self, joint: int, looks: Sequence[Symmetry | Failure]) -> str:
         """Which ring is closed, and why symmetry does not open it."""
@@ -320,6 +320,6 @@ def _by_which(symmetries: Sequence[Symmetry]) -> str:
     return f"The section is its own mirror image about {' and '.join(abouts)}:"
 
 
-def _listed(names: Sequence[str]) -> str:
+def listed(names: Sequence[str]) -> str:
     """Names in a row: a, b and c."""
     return names[0] if len(names) == 1 else f"{', '.join(names[:-1])} and {names[-1]}"
