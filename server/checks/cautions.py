@@ -10,7 +10,7 @@ from server.checks.actions import Actions
 from server.checks.crosssection import Body, Part
 from server.checks.joints import JointCheck
 from server.checks.resistance import Findings
-from server.checks.rules import SKINS, WEBS, chosen
+from server.checks.rules import SKINS, ULTIMATE_SLIP, WEBS, chosen
 from server.checks.wide_bonds import extent, wide_bond
 
 NOT_CHECKED = (
@@ -68,11 +68,13 @@ def _joints(document: documents.MemberDocument, body: Body, joints: list[JointCh
             answer=True,
         )
     for role, ids in fastened.items():
+        carried = "are judged as if it were gone" if role == "fall-back" else f"({role}) are held to carry none of it"
         findings.caution(
             "fasteners with adhesive",
-            f"{', '.join(ids)}: stiff glue carries nearly all of the flow until it breaks, so the fasteners ({role}) "
-            "are held to carry none of it. Their strengths are never added.",
+            f"{', '.join(ids)}: stiff glue carries nearly all of the flow until it breaks, so the fasteners {carried}. "
+            "Their strengths are never added.",
         )
+    _slip_modulus(document, body, findings)
     _wide_bonds(document, body, joints, findings)
     _thin_webs(document, body, findings)
     if slipping:
@@ -80,6 +82,19 @@ def _joints(document: documents.MemberDocument, body: Body, joints: list[JointCh
             "slip",
             f"{', '.join(slipping)}: fasteners slip. Flow and spacing are those of a rigid joint; stresses of the "
             "pieces and deflection are estimates with too great a stiffness.",
+        )
+
+
+def _slip_modulus(document: documents.MemberDocument, body: Body, findings: Findings) -> None:
+    """Limit states of EN 1995-1-1 take a softer fastener for strength; that is a rule to be named."""
+    carrying = [site.id for site in body.sites if site.spec.effective_role in ("sole", "fall-back")]
+    slips = document.analysis.slip or any(site.spec.role == "fall-back" for site in body.sites)
+    if document.basis.method == "limit-state" and slips and carrying and ULTIMATE_SLIP not in chosen(document):
+        findings.caution(
+            "slip modulus",
+            f"{', '.join(carrying)}: strength stands on the slip modulus as given. EN 1995-1-1 2.2.2 takes two thirds "
+            f"of it in ultimate limit states, which loads the pieces more and the fasteners less: name "
+            f"{ULTIMATE_SLIP!r} in analysis.rules where you work to it.",
         )
 
 

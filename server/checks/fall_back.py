@@ -10,13 +10,14 @@ from server.checks.actions import largest
 from server.checks.along import SlidingAlong
 from server.checks.crosssection import Body
 from server.checks.deflection import spans
+from server.checks.gamma import write_annex_b
 from server.checks.holds import Holds, holds
 from server.checks.joints import JointCheck
 from server.checks.pieces import PieceCheck, write_piece
 from server.checks.resistance import Findings, Judge, Weighed
 from server.checks.slide import Slide
 from server.checks.slip_steps import write_effective, write_method
-from server.working import Working, exceeds
+from server.working import exceeds
 
 GROUP = "Glue gone"
 
@@ -55,6 +56,7 @@ def judge_fall_back(
         "Share of the stiffness left", "r", "EI_eff/EI", {"EI_eff": (left, "N*mm2"), "EI": (EI, "N*mm2")},
         unit="", source="with the glue gone, against the glued member", group=GROUP,
     )  # fmt: skip
+    annex_b = write_annex_b(document, slide, slide.actions, working, "EN 1995-1-1 Annex B with the glue gone")
     blocks = [_joint_block(check) for check in joints if check.gone is not None]
     judged = [(check, _write_piece(check, weighed, slide.body, judge)) for check, weighed in pieces]
     uses = [
@@ -79,6 +81,7 @@ def judge_fall_back(
         "text": words,
         "stiffness_left": share,
         "effective_EI": left,
+        "annex_b": annex_b,
         "factor": document.basis.fall_back(),
         "deflection": _deflection(slide, document),
         "utilisation": None if worst is None else worst[0],
@@ -146,8 +149,3 @@ def _words(proven: bool, holds_well: bool, worst: tuple[float, str] | None, shar
     if not proven or worst is None:
         return f"Not proven: {left}; what is missing is named."
     return f"There is a fall-back: {left}, and {worst[1]} is used most, to {worst[0]:.3g}."
-
-
-def begin(working: Working) -> None:
-    """Put what follows under the heading of the fall-back."""
-    working.begin(GROUP)

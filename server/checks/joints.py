@@ -77,7 +77,8 @@ def write_joint(check: JointCheck, weighed: list[Weighed | None], body: Body, ju
         force = next((w for w in weighed if w is not None and w.claim.symbol == "F"), None)
         group_of = f"{group}, glue gone" if check.gone is not None else group
         if check.gone is not None and force is not None:
-            write_sliding_flow(site, check.gone.slide, check.fastening.demand, judge, group_of)
+            _, slip = write_sliding_flow(site, check.gone.slide, check.fastening.demand, judge, group_of)
+            check.result["slip"] = slip if check.result["slip"] is None else check.result["slip"]
         check.result["spacing_needed"] = write_fasteners(check.fastening, force, body, judge, group_of)
         limits += [] if force is None else [judge.write(force, group_of)]
     known = [w for w in weighed if w is not None]
@@ -167,6 +168,9 @@ def _blank(site: Site) -> dict[str, object]:
         "schedule_note": "",
         "setting_out": None,
         "slip": None,
+        "sharing": None,
+        "share": None,
+        "handed_over": None,
         "width_needed": None,
         "cut_off": [],
         "partners": [],

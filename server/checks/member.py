@@ -19,6 +19,7 @@ from server.checks.drawing import diagrams, drawing
 from server.checks.fall_back import FallBack, glue_gone, judge_fall_back
 from server.checks.field_steps import write_fields
 from server.checks.fits import refuse_misfits
+from server.checks.gamma import write_annex_b
 from server.checks.holds import holds
 from server.checks.joints import Flows, JointCheck, claim_joints, write_joint
 from server.checks.member_ends import MemberEnds, after_bonding, check_ends
@@ -31,6 +32,7 @@ from server.checks.sandwich import add_sandwich_claims
 from server.checks.scan import Scan, scan
 from server.checks.schedule import add_schedules
 from server.checks.section_field import doubts
+from server.checks.sharing import state_sharing
 from server.checks.slide import Slide, slide
 from server.checks.slip_steps import write_effective, write_method
 from server.checks.thin_webs import add_web_claims
@@ -67,6 +69,7 @@ def run(document: documents.MemberDocument, *, working: bool = True) -> dict[str
     sliding = _slide(document, body, rigid, findings)
     actions = rigid if sliding is None else sliding.actions
     statics = hand.Statics(document, body, actions, book)
+    annex_b = None
     if working:
         statics.loads()
         if SKINS in rules:
@@ -77,6 +80,8 @@ def run(document: documents.MemberDocument, *, working: bool = True) -> dict[str
             write_method(sliding, book, "Slip")
             write_effective(sliding, body.stretches[0].section.properties.EI, book, "Slip")
         statics.member()
+    if sliding is not None:
+        annex_b = write_annex_b(document, sliding, actions, book, "EN 1995-1-1 Annex B, for comparison")
     upper = sliding is None and _upper_stiffness(document, body, findings)
     _name_what_is_to_come(document, findings)
     for section in body.sections:
@@ -85,6 +90,7 @@ def run(document: documents.MemberDocument, *, working: bool = True) -> dict[str
     judge = Judge(document, actions, book, findings, Places(document))
     flows = _flows(document, body, rigid, sliding, findings)
     joints, pieces, fall_back = _judge(body, scan(body, actions), judge, statics, flows, sliding, upper)
+    state_sharing(body, joints, judge)
     add_schedules(document, body, rigid, joints, flows, book)
     if working:
         statics.deflection()
@@ -106,6 +112,7 @@ def run(document: documents.MemberDocument, *, working: bool = True) -> dict[str
         "joints": [c.result for c in joints],
         "pieces": [c.result for c in pieces],
         "deflection_limits": [s.result for s in sags],
+        "annex_b": annex_b,
         "fall_back": None if fall_back is None else fall_back.result,
         "ends": ends.ends,
         "movement": ends.movement,

@@ -7,6 +7,8 @@ composite action (Newmark, Siess and Viest 1951), not taken from anywhere.
 from __future__ import annotations
 
 import math
+import tomllib
+from pathlib import Path
 from typing import Any
 
 import numpy as np
@@ -16,6 +18,8 @@ from scipy.integrate import solve_bvp
 from server import checks, documents
 from tests.checks.made import STACK, Raw, changed, run
 
+PUBLISHED = tomllib.loads((Path(__file__).parents[1] / "published" / "slip.toml").read_text(encoding="utf-8"))["case"]
+PUBLISHED_GAMMA = next(case for case in PUBLISHED if case["kind"] == "gamma2")
 IN, LBF, FT = 25.4, 4.4482216152605, 304.8
 PSI = LBF / IN**2
 
@@ -383,3 +387,115 @@ def test_the_gangway_with_three_adhesives(G: float, t: float, least: float, most
     share = result["section"]["effective_EI"] / result["section"]["EI"]
     assert share == pytest.approx(5 * w * L**4 / (384 * EI_inf) / sag, rel=1e-7)
     assert least < share <= most
+
+
+class TestAnnexB:
+    """EN 1995-1-1 Annex B beside the exact solution; the expected values are in tests/published/slip.toml."""
+
+    def floor(self, case: Raw, **changes: object) -> Raw:
+        given = case["inputs"]
+        L = 1000 * given["L_m"]
+        pieces: Raw = {}
+        materials: Raw = {}
+        up = sum(1000 * layer["h_m"] for layer in given["layers"])
+        for i, layer in enumerate(given["layers"], 1):
+            b, h = 1000 * layer["b_m"], 1000 * layer["h_m"]
+            up -= h
+            materials[f"m{i}"] = {"E": layer["E_Pa"] / 1e6}
+            pieces[f"layer {i}"] = {
+                "shape": "rectangle",
+                "width": b,
+                "depth": h,
+                "at": [-b / 2, up],
+                "material": f"m{i}",
+            }
+        joints = [
+            {"between": [f"layer {i}", f"layer {i + 1}"], "fastener": "nail", "spacing": 1000 * s}
+            for i, s in enumerate(given["s_m"], 1)
+        ]
+        raw = {
+            "format": "bondwright/1",
+            "kind": "member",
+            "basis": {"method": "allowable", "safety_factor": 2.0},
+            "materials": materials,
+            "fasteners": {"nail": {"shear_resistance": 1500, "slip_modulus": given["K_N_per_m"][0] / 1000}},
+            "section": {"pieces": pieces, "joints": joints},
+            "member": {"length": L, "supports": [{"at": 0, "kind": "pin"}, {"at": L, "kind": "pin"}]},
+            "loads": {"all": [{"kind": "line", "from": 0, "to": L, "value": given["w_N_per_m"] / 1000}]},
+            "analysis": {"slip": True},
+        }
+        return changed(raw, **changes)
+
+    @pytest.mark.parametrize("case", [c for c in PUBLISHED if c["kind"].startswith("gamma")], ids=lambda c: c["id"])
+    def test_gamma_stiffness_and_force(self, case: Raw) -> None:
+        found = run(self.floor(case))["annex_b"]
+        expected = {name: part["value"] for name, part in case["expected"].items()}
+        assert found["EI_ef"] == pytest.approx(1e6 * expected["EI_ef_Nm2"], rel=1e-6)
+        assert found["gamma"][0] == pytest.approx(expected["gamma_1"], rel=1e-6)
+        assert found["flow"][0] * 1000 * case["inputs"]["s_m"][0] == pytest.approx(expected["F_1_N"], rel=1e-6)
+
+    def test_it_stands_near_the_exact_solution_under_a_uniform_load(self) -> None:
+        result = run(self.floor(PUBLISHED_GAMMA))
+        assert result["annex_b"]["EI_ef"] == pytest.approx(result["section"]["effective_EI"], rel=0.01)
+
+    def test_limit_states_take_two_thirds_of_the_slip_modulus_for_strength(self) -> None:
+        basis = {"method": "limit-state", "partial_factor": 1.3}
+        result = run(self.floor(PUBLISHED_GAMMA, basis=basis, combinations={"u": {"factors": {"all": 1.0}}}))
+        EA = [layer["E_Pa"] / 1e6 * layer["b_m"] * layer["h_m"] * 1e6 for layer in PUBLISHED_GAMMA["inputs"]["layers"]]
+        k = 2 / 3 * PUBLISHED_GAMMA["inputs"]["K_N_per_m"][0] / 1000 / 100
+        gamma = 1 / (1 + math.pi**2 * EA[0] / (k * 4200**2))
+        assert result["annex_b"]["gamma"][0] == pytest.approx(gamma, rel=1e-9)
+        assert any(caution["about"] == "slip modulus" for caution in result["cautions"])
+
+    def test_what_is_no_stack_of_two_or_three_layers_has_no_annex_b(self) -> None:
+        assert run(planks(section__pieces__upper__to=2000))["annex_b"] is None
+
+
+def flitch(stacked: bool = False) -> Raw:
+    """A steel plate between two planks, bolted; or on top of one."""
+    steel = {"shape": "rectangle", "width": 6, "depth": 200, "at": [50, 0], "material": "steel"}
+    pieces: Raw = {
+        "left": {"shape": "rectangle", "width": 50, "depth": 200, "at": [0, 0], "material": "pine"},
+        "plate": steel,
+        "right": {"shape": "rectangle", "width": 50, "depth": 200, "at": [56, 0], "material": "pine"},
+    }
+    if stacked:
+        pieces["plate"] = {**steel, "width": 106, "depth": 6, "at": [0, 200]}
+        pieces["left"]["width"] = 106
+        del pieces["right"]
+    pairs = [["left", "plate"]] if stacked else [["left", "plate"], ["plate", "right"]]
+    return {
+        "format": "bondwright/1",
+        "kind": "member",
+        "basis": {"method": "allowable", "safety_factor": 2.0},
+        "materials": {"pine": {"E": 10000, "strengths": {"bending": 30, "shear": 3}}, "steel": {"E": 210000}},
+        "fasteners": {"bolt": {"shear_resistance": 8000, "slip_modulus": 6000}},
+        "section": {"pieces": pieces, "joints": [{"between": p, "fastener": "bolt", "spacing": 400} for p in pairs]},
+        "member": {"length": 4000, "supports": [{"at": 0, "kind": "pin"}, {"at": 4000, "kind": "pin"}]},
+        "loads": {"all": [{"kind": "line", "from": 0, "to": 4000, "value": 5}]},
+        "analysis": {"slip": True},
+    }
+
+
+class TestFlitch:
+    def test_side_by_side_the_parts_share_by_stiffness(self) -> None:
+        result = run(flitch())
+        timber, steel = 10000 * 50 * 200**3 / 12, 210000 * 6 * 200**3 / 12
+        EI = 2 * timber + steel
+        for joint in result["joints"]:
+            assert joint["sharing"] == "side by side"
+            assert joint["share"] == pytest.approx(timber / EI)
+            assert joint["shear_flow"] == pytest.approx(0, abs=1e-9)
+            assert joint["handed_over"] == pytest.approx(timber / EI * 10000)
+        plate = next(piece for piece in result["pieces"] if piece["id"] == "plate")
+        assert plate["stress_bottom"] == pytest.approx(210000 * 1e7 / EI * 100, rel=1e-9)
+        assert result["section"]["effective_EI"] == pytest.approx(EI)
+        assert any(caution["about"] == "load sharing" and caution["answer"] for caution in result["cautions"])
+        assert any("share by stiffness" in step["note"] for step in result["steps"])
+
+    def test_stacked_they_share_by_the_flow_along_the_joint(self) -> None:
+        result = run(flitch(stacked=True))
+        (joint,) = result["joints"]
+        assert joint["sharing"] == "stacked"
+        assert joint["shear_flow"] > 1
+        assert any("stacked, so the flow" in step["note"] for step in result["steps"])
