@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass, field, replace
+from dataclasses import dataclass, field
 
 import numpy as np
 from numpy.typing import NDArray
@@ -188,7 +188,7 @@ def _bond_strengths(site: Site, body: Body, judge: Judge) -> list[Strength | Non
     bond = judge.strength(
         adhesive.shear_strength, what=f"adhesive {name}", unit="MPa", kind="adhesive", owner=name, holder=adhesive
     )
-    bond = None if bond is None else replace(bond, reductions=bond_reductions(site, body, judge.rules))
+    bond = bond and bond.reduced(bond_reductions(site, body, judge.rules))
     return [bond, *(_surface_strength(part, site, body, judge) for part in (site.first, site.second))]
 
 
@@ -217,7 +217,7 @@ def _surface_strength(part: Part, site: Site, body: Body, judge: Judge) -> Stren
         owner=part.spec.material,
         holder=part.material,
     )
-    return strength and replace(strength, reductions=surface_reductions(site, part, body, judge.rules))
+    return strength and strength.reduced(surface_reductions(site, part, body, judge.rules))
 
 
 def _write_flow(check: JointCheck, demand: Demand, body: Body, judge: Judge, statics: Statics) -> None:
@@ -327,7 +327,7 @@ def _strength_needed(check: JointCheck, demand: Demand, body: Body, judge: Judge
     name, adhesive = _adhesive(site, judge)
     asked_of = judge.strength(1.0, what="", unit="MPa", kind="adhesive", owner=name, holder=adhesive)
     assert asked_of is not None
-    asked_of = replace(asked_of, reductions=bond_reductions(site, body, judge.rules))
+    asked_of = asked_of.reduced(bond_reductions(site, body, judge.rules))
     factors = np.array(asked_of.duration)
     if np.all(np.isnan(factors)):
         return None

@@ -9,8 +9,8 @@ governing cell of each row is then written out step by step.
 from __future__ import annotations
 
 from collections.abc import Iterable, Sequence
-from dataclasses import dataclass, field
-from functools import lru_cache
+from dataclasses import dataclass, field, replace
+from functools import cached_property, lru_cache
 from typing import Literal, Protocol
 
 import numpy as np
@@ -73,10 +73,16 @@ class Strength:
     reductions: tuple[Reduction, ...] = ()
     before: tuple[Printed, ...] = ()
 
-    @property
+    @cached_property
     def multipliers(self) -> tuple[tuple[str, float], ...]:
         """Every named factor on the strength: the value's own, then what rules take off."""
+        if not self.reductions:
+            return self.factors
         return (*self.factors, *((reduction.rule, reduction.value) for reduction in self.reductions))
+
+    def reduced(self, reductions: tuple[Reduction, ...]) -> Strength:
+        """The same strength with what rules take off."""
+        return replace(self, reductions=reductions) if reductions else self
 
     def arguments(self, row: int) -> dict[str, tuple[float, str]]:
         """What multiplies and divides the strength in one combination, with units, for a printed step."""

@@ -43,12 +43,16 @@ def wide_bond(site: Site, part: Part, body: Body) -> WideBond | None:
 
 def bond_reductions(site: Site, body: Body, rules: frozenset[str]) -> tuple[Reduction, ...]:
     """What the chosen rules put on the bond itself: the more severe of its two panels'."""
+    if not rules:
+        return ()
     found = [wide for part in (site.first, site.second) if (wide := wide_bond(site, part, body)) and wide.rule in rules]
     return (min(found, key=lambda wide: wide.reduction).applied(),) if found else ()
 
 
 def surface_reductions(site: Site, part: Part, body: Body, rules: frozenset[str]) -> tuple[Reduction, ...]:
     """What the chosen rules put on a panel's surface at a bond."""
+    if not rules:
+        return ()
     wide = wide_bond(site, part, body)
     return (wide.applied(),) if wide and wide.rule in rules else ()
 

@@ -203,17 +203,15 @@ def _texts(
     target = form(value)
     texts: Texts = {}
     rounded: dict[str, float | list[float]] = {}
-    rest = values
     for digits in numbers.LADDER:
-        for name, each in rest.items():
+        for name, each in values.items():
             if isinstance(each, list):
                 written = [form(item, digits) for item in each]
                 texts[name], rounded[name] = written, [float(text) for text in written]
             else:
                 texts[name] = text = form(each, digits)
                 rounded[name] = float(text)
-        rest = {name: each for name, each in rest.items() if rounded[name] != each}
-        if not rest:
+        if rounded == values:
             return digits, texts
         try:
             if form(known.value(rounded, lists)) == target:
