@@ -125,6 +125,7 @@ def test_what_cannot_be_read_keeps_its_text_when_the_boxes_are_marked_anew():
 
 KIND_OF = {
     "size": "length",
+    "area": "area",
     "position": "length",
     "force": "force",
     "line_load": "line_load",
