@@ -9,11 +9,13 @@ import numpy as np
 from numpy.typing import NDArray
 
 from server.checks.crosssection import Body, Part, Stretch
+from server.checks.joints import FIRST_MOMENT
 from server.checks.resistance import Claim, Judge, Strength, Weighed, worst
 from server.checks.scan import Scan
 from server.checks.slide import Slide
 from server.checks.slip_pieces import CUT, SlidingShear, fibres, sliding_shear, write_stress
 from server.checks.slip_pieces import MECHANICS as SLIDING
+from server.mechanics.cuts import above
 from server.working import formula
 
 BENDING = "-E*M*(u - u_0)/EI"
@@ -262,36 +264,58 @@ def piece_strength(part: Part, word: str, what: str, judge: Judge) -> Strength |
 def _write_bending(check: PieceCheck, bent: Bent, weighed: list[Weighed], body: Body, judge: Judge, group: str) -> None:
     """Stresses where the piece is used most: by its limits on normal stress, else where they are largest."""
     size = np.abs(bent.stress[:2]).max(axis=0)
-    governing = worst(weighed)
+    governing, demands = worst(weighed), dict(fibre_demands(check.part, bent)) if weighed else {}
     if governing is None:
         entry, row = (int(i) for i in np.unravel_index(int(size.argmax()), size.shape))
     else:
         row, word = governing.row, governing.claim.strength.what.removesuffix(f" in {check.part.name}")
-        entry = int(dict(fibre_demands(check.part, bent))[word][:, row].argmax())
+        entry = int(demands[word][:, row].argmax())
     stretch = body.stretches[int(bent.stretch[entry])]
-    whole, part = stretch.section.properties, check.part
+    part = check.part
     if check.slide is not None:
         at, top = float(bent.at[entry, row]), float(bent.stress[0, entry, row])
         found = write_stress(check.slide, part, stretch, at, row, top, judge, group)
         check.result.update(zip(("stress_top", "stress_bottom", "stress_mean"), found, strict=True))
         return
-    where = f"{MECHANICS}; at {bent.at[entry, row]:.6g} mm, combination {judge.actions.strength_names[row]}"
-    for name, height in zip(FIBRES, _heights(part, stretch), strict=True):
-        check.result[f"stress_{name}"] = judge.working.step(
-            "Normal stress at its centroid" if name == "mean" else f"Normal stress at its {name}",
-            f"sigma_{name}",
-            BENDING,
-            {
-                "E": (part.material.E, "MPa"),
-                "M": (float(bent.moment[entry, row]), "N*mm"),
-                "u": (height, "mm"),
-                "u_0": (float(whole.neutral_axis[1]), "mm"),
-                "EI": (whole.EI, "N*mm2"),
-            },
-            unit="MPa",
-            source=where,
-            group=group,
-        )
+    for name in FIBRES:
+        check.result[f"stress_{name}"] = _write_stress(part, bent, entry, row, name, body, judge, group)
+    for other in weighed:
+        word = other.claim.strength.what.removesuffix(f" in {part.name}")
+        there = int(demands[word][:, other.row].argmax())
+        if (there, other.row) != (entry, row):
+            fibre = _fibre_of(part, word, bent.stress[:, there, other.row])
+            _write_stress(part, bent, there, other.row, fibre, body, judge, group)
+
+
+def _fibre_of(part: Part, word: str, stress: NDArray[np.float64]) -> str:
+    """Which fibre a limit looks at: the mean, or of top and bottom the one that is stressed more in its way."""
+    if word != "bending" and part.material.strengths.bending is not None:
+        return "mean"
+    sized = {"bending": np.abs(stress), "tension": stress, "compression": -stress}[word]
+    return FIBRES[int(sized[:2].argmax())]
+
+
+def _write_stress(
+    part: Part, bent: Bent, entry: int, row: int, fibre: str, body: Body, judge: Judge, group: str
+) -> float:
+    """The step of one normal stress."""
+    stretch = body.stretches[int(bent.stretch[entry])]
+    whole = stretch.section.properties
+    return judge.working.step(
+        "Normal stress at its centroid" if fibre == "mean" else f"Normal stress at its {fibre}",
+        f"sigma_{fibre}",
+        BENDING,
+        {
+            "E": (part.material.E, "MPa"),
+            "M": (float(bent.moment[entry, row]), "N*mm"),
+            "u": (dict(zip(FIBRES, _heights(part, stretch), strict=True))[fibre], "mm"),
+            "u_0": (float(whole.neutral_axis[1]), "mm"),
+            "EI": (whole.EI, "N*mm2"),
+        },
+        unit="MPa",
+        source=f"{MECHANICS}; at {bent.at[entry, row]:.6g} mm, combination {judge.actions.strength_names[row]}",
+        group=group,
+    )
 
 
 def _write_shear(check: PieceCheck, sheared: Sheared, body: Body, judge: Judge, group: str) -> None:
@@ -301,6 +325,7 @@ def _write_shear(check: PieceCheck, sheared: Sheared, body: Body, judge: Judge, 
         return
     stretch = body.stretches[sheared.stretch[entry]]
     cut = stretch.section.cuts[check.part.index]
+    _write_cut(stretch, cut.up, judge, group)
     check.result["shear_stress"] = judge.working.step(
         "Largest shear stress on a horizontal cut",
         "tau",
@@ -313,6 +338,29 @@ def _write_shear(check: PieceCheck, sheared: Sheared, body: Body, judge: Judge, 
         },
         unit="MPa",
         source=f"{MECHANICS}; cut {cut.up:.6g} mm up, b of all pieces cut there",
+        group=group,
+    )
+
+
+def _write_cut(stretch: Stretch, up: float, judge: Judge, group: str) -> None:
+    """First moment of all that lies above a horizontal cut, piece by piece."""
+    if not judge.working.record:
+        return
+    section = stretch.section
+    area, height = above(section.properties.bands, up)
+    over = np.flatnonzero(area > 1e-12 * area.sum()).tolist()
+    judge.working.step(
+        f"E-weighted first moment above the cut at {up:.6g} mm",
+        "S",
+        FIRST_MOMENT,
+        {
+            "E": ([section.pieces[i].E for i in over], "MPa"),
+            "A": (area[over].tolist(), "mm2"),
+            "u": (height[over].tolist(), "mm"),
+            "u_0": (float(section.properties.neutral_axis[1]), "mm"),
+        },
+        unit="N*mm",
+        source=f"areas above the cut, heights of their centroids: {', '.join(section.parts[i].name for i in over)}",
         group=group,
     )
 

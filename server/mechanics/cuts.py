@@ -101,6 +101,44 @@ def bands(edges: Edges) -> Bands:
     return Bands(levels[:-1], levels[1:], low, high)
 
 
+def above(cut: Bands, up: float) -> tuple[Array, Array]:
+    r"""Area above a horizontal cut and the height of its centroid, of every piece.
+
+    .. math:: A_i = \int_{up}^{top} b_i\,du, \qquad u_i = \frac{1}{A_i} \int_{up}^{top} b_i u\,du
+
+    Parameters
+    ----------
+    cut : Bands
+        Bands of the n pieces [mm].
+    up : float
+        Height of the cut [mm].
+
+    Returns
+    -------
+    tuple of numpy.ndarray
+        (n,) areas [mm2] and (n,) heights [mm]; height 0 where nothing of a piece lies above.
+
+    References
+    ----------
+    .. [1] Trapezoids; any table of areas.
+
+    Examples
+    --------
+    >>> from server.mechanics.section import Piece, properties, rectangle
+    >>> plank = [Piece("plank", rectangle(100.0, 200.0, (0.0, 0.0)), E=10_000.0)]
+    >>> [float(each[0]) for each in above(properties(plank).bands, 150.0)]
+    [5000.0, 175.0]
+    """
+    low = np.clip(up, cut.low, cut.high)
+    height = cut.high - low
+    slope = (cut.width_high - cut.width_low) / (cut.high - cut.low)
+    bottom = cut.width_low + slope * (low - cut.low)
+    area = height * (bottom + cut.width_high) / 2
+    moment = area * low + height**2 * (bottom + 2 * cut.width_high) / 6
+    total = area.sum(axis=1)
+    return total, moment.sum(axis=1) / np.where(total > 0, total, np.inf)
+
+
 @dataclass(frozen=True, eq=False)
 class _Inward:
     """The bands as seen from outside in: ``s`` runs from 0 at the end away from the neutral axis to 1.
