@@ -3,11 +3,12 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
-from itertools import pairwise
 
 from server import documents
 from server.checks.actions import Actions, Curve, Peak, largest
+from server.checks.crosssection import Body
 from server.checks.resistance import Findings
+from server.checks.sag_steps import AT_ONCE, LASTING, spans, write_sag
 from server.working import Working
 
 LIMIT = {"span": "L/n", "overhang": "2*L/n"}
@@ -24,32 +25,45 @@ class Sag:
 
 def check_deflection(
     document: documents.MemberDocument,
+    body: Body,
     actions: Actions,
     working: Working,
     findings: Findings,
     *,
     upper_stiffness: bool,
 ) -> list[Sag]:
-    """Judge each span and overhang; say so where a limit stands but nothing can be judged against it."""
+    """Write each deflection and judge each span and overhang; say so where a limit stands but cannot be judged."""
+    limit = _limit(document, actions, findings, upper_stiffness)
+    found: list[Sag] = []
+    for curve, long_term in ((actions.sag, False), (actions.long_term, True)):
+        if curve is None:
+            continue
+        if working.record:
+            write_sag(document, body, actions, curve, LASTING if long_term else AT_ONCE, working)
+        if limit is not None:
+            found += _sags(document, curve, limit, working, long_term=long_term)
+    return found
+
+
+def _limit(
+    document: documents.MemberDocument, actions: Actions, findings: Findings, upper_stiffness: bool
+) -> float | None:
+    """The limit to judge by; None where there is none or nothing can be judged against it, which is said."""
     limit = document.member.deflection_limit
     if limit is None:
         findings.caution("deflection", "No deflection limit was given, so deflection was not judged.")
-        return []
-    if actions.sag is None:
+    elif actions.sag is None:
         findings.miss(
             "deflection: a limit is given but no combination is for deflection; add one (for: deflection or both)."
         )
-        return []
-    if upper_stiffness:
+    elif upper_stiffness:
         findings.miss(
             "deflection: fasteners carry a joint and their slip is not reckoned, so the deflection shown is too "
             "small; the limit is not judged until slip is reckoned."
         )
-        return []
-    found = _sags(document, actions.sag, limit, working, long_term=False)
-    if actions.long_term is not None:
-        found += _sags(document, actions.long_term, limit, working, long_term=True)
-    return found
+    else:
+        return limit
+    return None
 
 
 def _sags(
@@ -59,17 +73,6 @@ def _sags(
         _sag(start, end, kind, largest(*curve.over(start, end).absolute()), limit, curve.names, working, long_term)
         for start, end, kind in spans(document.member)
     ]
-
-
-def spans(member: documents.Member) -> list[tuple[float, float, str]]:
-    """The lengths between supports ("span") and beyond the outer ones ("overhang"), left to right."""
-    places = sorted(s.at for s in member.supports)
-    found = [(a, b, "span") for a, b in pairwise(places)]
-    if places[0] > 0:
-        found.insert(0, (0.0, places[0], "overhang"))
-    if places[-1] < member.length:
-        found.append((places[-1], member.length, "overhang"))
-    return found
 
 
 def _sag(
@@ -83,7 +86,7 @@ def _sag(
     long_term: bool,
 ) -> Sag:
     combination = names[peak.row]
-    group = "Long-term deflection" if long_term else "Deflection"
+    group = LASTING if long_term else AT_ONCE
     where = f"{kind} {start:g} to {end:g} mm"
     allowed = working.step(
         f"Deflection limit, {where}", "u_lim", LIMIT[kind], {"L": (end - start, "mm"), "n": (limit, "")},

@@ -9,12 +9,12 @@ from server import documents
 from server.checks.actions import largest
 from server.checks.along import SlidingAlong
 from server.checks.crosssection import Body
-from server.checks.deflection import spans
 from server.checks.gamma import write_annex_b
 from server.checks.holds import Holds, holds
 from server.checks.joints import JointCheck
 from server.checks.pieces import PieceCheck, write_piece
 from server.checks.resistance import Findings, Judge, Weighed
+from server.checks.sag_steps import spans
 from server.checks.slide import Slide
 from server.checks.slip_steps import write_effective, write_method
 from server.working import exceeds

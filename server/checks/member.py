@@ -92,9 +92,7 @@ def run(document: documents.MemberDocument, *, working: bool = True) -> dict[str
     joints, pieces, fall_back = _judge(body, scan(body, actions), judge, statics, flows, sliding, upper)
     state_sharing(body, joints, judge)
     add_schedules(document, body, rigid, joints, flows, book)
-    if working:
-        statics.deflection()
-    sags = check_deflection(document, actions, book, findings, upper_stiffness=upper)
+    sags = check_deflection(document, body, actions, book, findings, upper_stiffness=upper)
     ends = check_ends(document, body, actions, judge, book, findings, after=_shared(document, body, findings))
     add_cautions(document, body, actions, joints, findings)
     governing = _governing(body, judge, joints, pieces, sags, fall_back, ends)

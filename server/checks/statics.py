@@ -6,15 +6,12 @@ that a reader can follow them with a pocket calculator.
 
 from __future__ import annotations
 
-from collections.abc import Iterable
 from dataclasses import dataclass
-
-import numpy as np
 
 from server import documents
 from server.checks.actions import GRAVITY, Actions, Peak, largest
 from server.checks.crosssection import Body, CrossSection
-from server.mechanics.beam import Couple, LineLoad, Load, PointLoad
+from server.mechanics.beam import Couple, LineLoad, PointLoad
 from server.working import Working
 from server.working.record import Given
 
@@ -22,9 +19,6 @@ STATICS = "equilibrium"
 REACTION = "(sum(W*(a - x_1)) - C)/(x_2 - x_1)"
 SHEAR = "sum(F)"
 MOMENT = "sum(F*(x - a)) - C"
-POINT_SAG = "sum(P*b*x*(L**2 - b**2 - x**2)/(6*L*EI))"
-UNIFORM_SAG = "w*x*(L**3 - 2*L*x**2 + x**3)/(24*EI)"
-BEAM_TABLE = "beam formula tables (AWC Design Aid No. 6, figures 1 and 8; superposition)"
 
 
 @dataclass(frozen=True)
@@ -213,96 +207,6 @@ class Statics:
                         forces.append(factor * force)
                         places.append(place)
         return Resultants(forces, places, couple)
-
-    def deflection(self) -> None:
-        """The greatest deflection by beam tables where they hold, else the method by name."""
-        actions = self.actions
-        if actions.sag is None:
-            return
-        sag = actions.sag.whole
-        peak = largest(*sag.absolute())
-        k = actions.deflection[peak.row]
-        if actions.slips:
-            self.working.note(
-                f"Greatest deflection, combination {actions.names[k]}",
-                f"Deflection of the layers that slide, with shear deformation by GA; at {peak.at:.6g} mm.",
-                value=peak.value, unit="mm", source="exact solution between breaks (see Slip)", group="Deflection",
-            )  # fmt: skip
-        elif self._tabulated(k):
-            self._table_steps(peak, k)
-        else:
-            self.working.note(
-                f"Greatest deflection, combination {actions.names[k]}",
-                f"The moment and shear polynomials over EI and GA, integrated exactly between the breaks; at "
-                f"{peak.at:.6g} mm, where the slope is nil or changes sign.",
-                value=peak.value if largest(sag.max, sag.at_max).value == peak.value else -peak.value,
-                unit="mm", source="Euler-Bernoulli with Timoshenko's shear part", group="Deflection",
-            )  # fmt: skip
-
-    def _tabulated(self, k: int) -> bool:
-        """Two pins at the ends, one section, point loads and full uniform loads only."""
-        supports = self.document.member.supports
-        ends = sorted(s.at for s in supports)
-        return (
-            ends == [0.0, self.body.length]
-            and all(s.kind == "pin" for s in supports)
-            and not self.document.member.hinges
-            and len(_distinct(self.body)) == 1
-            and all(self._in_tables(load) for load in self._loads_of(k))
-        )
-
-    def _in_tables(self, load: Load) -> bool:
-        if isinstance(load, LineLoad):
-            return load.start == 0 and load.end == self.body.length and load.value_start == load.value_end
-        return isinstance(load, PointLoad) or load.value == 0
-
-    def _loads_of(self, k: int) -> Iterable[Load]:
-        for factor, loads in zip(self.actions.factors[k], self.actions.case_loads, strict=True):
-            if factor:
-                yield from loads
-
-    def _table_steps(self, peak: Peak, k: int) -> None:
-        L, x, name = self.body.length, peak.at, self.actions.names[k]
-        section = self.body.stretches[0].section
-        EI = (section.properties.EI, "N*mm2")
-        points: list[tuple[float, float]] = []
-        uniform = 0.0
-        for factor, loads in zip(self.actions.factors[k], self.actions.case_loads, strict=True):
-            for load in loads:
-                if isinstance(load, PointLoad):
-                    points.append((factor * load.value, load.at))
-                elif not isinstance(load, Couple):
-                    uniform += factor * load.value_start
-        title, group = f"at {x:.6g} mm, combination {name}", "Deflection"
-        total = {}
-        if points:
-            P, a = (np.array(column) for column in zip(*points, strict=True))
-            right = a >= x
-            total["u_P"] = self.working.step(
-                f"Deflection from point loads {title}", "u_P", POINT_SAG,
-                {
-                    "P": (P, "N"), "b": (np.where(right, L - a, a), "mm"), "x": (np.where(right, x, L - x), "mm"),
-                    "L": (L, "mm"), "EI": EI,
-                },
-                unit="mm", source=f"{BEAM_TABLE}; b and x from the end beyond the load", group=group,
-            )  # fmt: skip
-        if uniform or not points:
-            total["u_w"] = self.working.step(
-                f"Deflection from uniform load {title}", "u_w", UNIFORM_SAG,
-                {"w": (uniform, "N/mm"), "x": (x, "mm"), "L": (L, "mm"), "EI": EI},
-                unit="mm", source=BEAM_TABLE, group=group,
-            )  # fmt: skip
-        if self.actions.shear_deformation:
-            assert section.shear_stiffness is not None
-            total["u_V"] = self.working.step(
-                f"Deflection from shear {title}", "u_V", "M/GA",
-                {"M": (_moment_of(self._left(k, x, True), x), "N*mm"), "GA": (section.shear_stiffness, "N")},
-                unit="mm", source="simple span: integral of V/GA is M/GA", group=group,
-            )  # fmt: skip
-        self.working.step(
-            f"Greatest deflection {title}", "u", " + ".join(total),
-            {key: (value, "mm") for key, value in total.items()}, unit="mm", source="superposition", group=group,
-        )  # fmt: skip
 
 
 def _line_resultants(load: LineLoad, at: float) -> list[tuple[float, float]]:

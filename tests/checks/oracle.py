@@ -127,8 +127,7 @@ class Oracle:
         hinges = [number(at) for at in self.raw["member"].get("hinges", [])]
         stretches = []
         for start, end, section in self.sections:
-            boxes = [self._softened(box) for box in section.boxes] if creep else section.boxes
-            worked = Section(tuple(boxes), section.touches)
+            worked = self.softened(section) if creep else section
             stretches.append(Stretch(start, end, worked.EI, worked.GA if self.shears and worked.GA else math.inf))
         places = {0.0, self.length, *hinges, *(s.at for s in supports), *(s.start for s in stretches)}
         for loads in self.loads.values():
@@ -144,6 +143,10 @@ class Oracle:
     def shears(self) -> bool:
         wanted = self.raw.get("analysis", {}).get("shear_deformation", True)
         return bool(wanted and all(box.G is not None for box in self.pieces.values()))
+
+    def softened(self, section: Section) -> Section:
+        """The section with each piece's moduli over 1 + creep."""
+        return Section(tuple(self._softened(box) for box in section.boxes), section.touches)
 
     def _softened(self, box: Box) -> Box:
         soft = 1 + self.material(box.name).get("creep", 0.0)

@@ -15,6 +15,7 @@ from tests.checks.oracle_documents import DOCUMENTS
 from tests.checks.oracle_verdict import Found, Verdict
 
 CLOSE = 2e-7  # relative: what 400 samples and a parabola leave of a smooth extreme
+QUANTITIES = {"V": "shear", "M": "moment", "u": "deflection", "u_fin": "deflection_long_term"}
 NOTHING = 1e-6  # N, mm, MPa: what rounding leaves where the loads cancel
 Result = Mapping[str, Any]
 
@@ -181,14 +182,17 @@ def _steps(result: Result, oracle: Verdict) -> Iterator[str]:
         size = 0.0
         if step["symbol"] == "u_0" and step["group"] == "Section":
             wanted = [section.axis[1] for _, _, section in oracle.sections]
+        elif step["symbol"] in ("u_0", "EI") and step["group"] == "Long-term deflection":
+            soft = [oracle.softened(section) for _, _, section in oracle.sections]
+            wanted = [section.axis[1] if step["symbol"] == "u_0" else section.EI for section in soft]
         elif step["symbol"] == "EI":
             wanted = [section.EI for _, _, section in oracle.sections]
         elif step["symbol"] == "w" and step["group"] == "Loads":
             wanted = [abs(line[2]) for loads in oracle.loads.values() for line in loads.lines]
         elif step["symbol"] in ("R_1", "R_2"):
             wanted = [float(force) for force in oracle.response(combination).force]
-        elif step["symbol"] in ("V", "M", "u") and combination in oracle.combinations:
-            quantity = {"V": "shear", "M": "moment", "u": "deflection"}[step["symbol"]]
+        elif step["symbol"] in QUANTITIES and combination in oracle.combinations:
+            quantity = QUANTITIES[step["symbol"]]
             wanted = values_at(oracle, quantity, combination, at)
             size = float(np.abs(oracle.curve(quantity, combination)[1]).max())
         if wanted:

@@ -109,3 +109,27 @@ def test_few_sums_are_too_long_to_print_whole() -> None:
 def test_every_step_says_its_unit_and_where_its_formula_is_from() -> None:
     wrong = [where for where, step in steps() if not step["title"] or not step["symbol"] or not step["source"]]
     assert wrong == []
+
+
+FOUND = {
+    "V", "M", "S", "EI", "GA", "q", "tau", "sigma", "F", "f_d", "R_d", "R_2", "u", "u_lim", "u_P", "u_w", "u_V", "u_i",
+    "u_s", "M_P", "M_w", "w",
+}  # fmt: skip
+"""Symbols of what the check finds; all others stand for what was given, for plain geometry, or for a chosen place."""
+
+
+def test_what_a_line_uses_was_found_in_a_line_above() -> None:
+    """From the loads to the verdict without a gap, in every document that the demo shop brings."""
+    gaps = []
+    for name, result in results().items():
+        above: list[float] = []
+        for step in result["steps"] if name not in DOCUMENTS and result["kind"] == "member" else []:
+            for symbol, given in step["values"].items():
+                used = given["value"]
+                height = symbol == "u" and step["formula"] != "u/u_lim"  # the one letter that stands for two things
+                if symbol not in FOUND or height or isinstance(used, list) or used == 0:
+                    continue
+                if not any(math.isclose(abs(used), each, rel_tol=1e-9) for each in above):
+                    gaps.append(f"{name}, {step['group']}: {step['title']} uses {symbol} = {used}")
+            above += [abs(step["value"])] if step["value"] is not None else []
+    assert gaps == []
