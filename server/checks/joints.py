@@ -349,12 +349,23 @@ def _strength_needed(check: JointCheck, demand: Demand, body: Body, judge: Judge
 
 def _width_needed(check: JointCheck, demand: Demand, governing: Weighed, judge: Judge, group: str) -> float:
     times = 1.0 if governing.claim.origin is None or check.times is None else float(check.times[governing.row])
+    flow = float(demand.flow[governing.row])
+    if times > 1:
+        flow = judge.working.step(
+            "Flow with the rib's own width",
+            "q_r",
+            "k_r*q",
+            {"k_r": (times, ""), "q": (flow, "N/mm")},
+            unit="N/mm",
+            source="k_r: flow of the rib alone over that in the whole section",
+            group=group,
+        )
     return judge.working.step(
         "Bonded width needed for the weakest limit",
         "b_req",
         "q/(c*f_d)",
         {
-            "q": (float(demand.flow[governing.row]) * times, "N/mm"),
+            "q": (flow, "N/mm"),
             "c": (check.site.spec.coverage, ""),
             "f_d": (governing.resistance, "MPa"),
         },
