@@ -15,8 +15,8 @@ import numpy as np
 from server import documents
 from server.checks.actions import Actions, largest
 from server.checks.crosssection import Body
-from server.checks.deflection import spans
 from server.checks.holds import Hold
+from server.checks.sag_steps import spans
 from server.checks.slide import ULTIMATE, Slide, layers
 from server.mechanics.graph import neighbours
 from server.working import Working

@@ -119,7 +119,7 @@ FOUND = {
 
 
 BY_HAND = ("Loads", "Section", "Member", "Joint ", "Piece ", "Deflection", "Long-term deflection")
-"""The groups of a member that a pocket calculator manages; the ends of strips and the movement of parts are not such."""
+"""The groups of a member that a pocket calculator manages; ends of strips and movement of parts are not such."""
 
 
 def test_what_a_line_uses_was_found_in_a_line_above() -> None:
