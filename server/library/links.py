@@ -73,10 +73,10 @@ def _key_of(given: Given) -> tuple[str, int | None]:
         return given.key, given.revision
     if isinstance(given, Mapping):
         key, revision = given.get("record", ""), given.get("revision")
-    elif isinstance(given, str):
-        key, revision = given, None
-    else:
+    elif isinstance(given, list | tuple):
         key, revision = (*given, None, None)[:2]
+    else:
+        key, revision = given, None
     number = revision if isinstance(revision, int) and not isinstance(revision, bool) else None
     if isinstance(revision, str) and revision.strip().isdecimal() and len(revision.strip()) < 10:
         number = int(revision)
