@@ -135,9 +135,10 @@ def _side(a: Array, b: Array, p: Array) -> Array:
 
 
 def _to(p: Array, a: Array, b: Array) -> Array:
-    """Distance of points from segments."""
+    """Distance of points from segments; one without length, such as a closing corner typed again, is a point."""
     along = b - a
-    share = np.clip(((p - a) * along).sum(axis=1) / (along * along).sum(axis=1), 0.0, 1.0)
+    squared = (along * along).sum(axis=1)
+    share = np.clip(((p - a) * along).sum(axis=1) / np.where(squared > 0, squared, 1.0), 0.0, 1.0)
     off = p - a - share[:, None] * along
     result: Array = np.hypot(off[:, 0], off[:, 1])
     return result

@@ -118,3 +118,5 @@ def test_nearest_is_the_distance_between_two_outlines():
     one, other = rings(SQUARE), rings(box(130, 140, 10, 10))
     assert nearest(one, other) == pytest.approx(50.0)
     assert nearest(one, rings(box(50, 50, 100, 10))) == 0.0
+    closed = rings([*SQUARE, SQUARE[0]])  # the closing corner typed again is a side without length
+    assert nearest(closed, other) == pytest.approx(50.0)
