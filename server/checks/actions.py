@@ -10,6 +10,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from server import documents
+from server.checks import moving
 from server.checks.crosssection import Body
 from server.errors import DocumentError, Fault, InputError
 from server.mechanics import beam as mechanics
@@ -27,6 +28,8 @@ class Curve:
     breaks: NDArray[np.float64]
     coefficients: NDArray[np.float64]
     names: tuple[str, ...]
+    asked: list[tuple[float, float]] | None = None
+    """Where axles move: collects the parts of the member that were asked for and not foreseen."""
 
     @cached_property
     def _candidates(self) -> Candidates:
@@ -39,6 +42,8 @@ class Curve:
     def over(self, start: float, end: float) -> Extremes:
         """Extremes of every row between two places, inside them on both sides of every jump."""
         first, last = self._index.get(start), self._index.get(end)
+        if self.asked is not None and (start, end) not in self.asked:
+            self.asked.append((start, end))
         if first is None or last is None:
             return extremes(self.breaks, self.coefficients, start, end)
         return self._candidates.over(first, last)
@@ -60,12 +65,22 @@ class Curve:
 
 
 @dataclass(frozen=True, eq=False)
+class Moving:
+    """What rows with moving axles are: the position of each, the true envelopes, how many cases are the document's."""
+
+    question: moving.Question
+    written: moving.WrittenOut
+    cases: int
+
+
+@dataclass(frozen=True, eq=False)
 class Actions:
     """Responses of the member: every combination, and the curves of those that are for strength or deflection.
 
     ``shear`` and ``moment`` are None where no combination is for strength, ``sag`` and ``long_term`` where none is
     for deflection; ``long_term`` also where no material creeps. ``sustained`` shares of each case that stay;
-    ``slips`` whether the joints' slip is in all of it.
+    ``slips`` whether the joints' slip is in all of it. With ``moving`` axles a combination has several rows, one for
+    each position of the axles that governs something.
     """
 
     names: tuple[str, ...]
@@ -83,6 +98,7 @@ class Actions:
     shear_deformation: bool
     sustained: NDArray[np.float64]
     slips: bool = False
+    moving: Moving | None = None
 
     @property
     def breaks(self) -> NDArray[np.float64]:
@@ -92,44 +108,113 @@ class Actions:
     def strength_names(self) -> tuple[str, ...]:
         return tuple(self.names[k] for k in self.strength)
 
+    @cached_property
+    def labels(self) -> tuple[str, ...]:
+        """The combination of every row, with the place of its axles where they move."""
+        if self.moving is None:
+            return self.names
+        placed = (moving.words(each) for each in self.moving.written.parked)
+        return tuple(f"{name} ({where})" if where else name for name, where in zip(self.names, placed, strict=True))
 
-def act(document: documents.MemberDocument, body: Body) -> Actions:
-    """Solve every case once and combine; mechanics' complaints come back with the document's path."""
-    cases = tuple(document.loads)
-    loads = tuple(tuple(_loads(document, body, case)) for case in cases)
-    combinations = document.combinations
-    factors = np.array([[c.factors.get(case, 0.0) for case in cases] for c in combinations.values()])
+    @property
+    def asked(self) -> tuple[tuple[float, float], ...]:
+        """The parts of the member whose shear was asked for without being foreseen, where axles move."""
+        if self.moving is None or self.shear is None or self.shear.asked is None:
+            return ()
+        known = {*self.moving.question.shear, *self.moving.question.wants.ranges}
+        return tuple(each for each in self.shear.asked if each not in known)
+
+
+@dataclass(frozen=True)
+class _Rows:
+    """The rows of the combinations, and the cases that stand in them."""
+
+    combination: tuple[int, ...]
+    factors: NDArray[np.float64]
+    shares: NDArray[np.float64]
+    loads: tuple[tuple[mechanics.Load, ...], ...]
+    moving: Moving | None = None
+
+
+def act(document: documents.MemberDocument, body: Body, wants: moving.Wants | None = None) -> Actions:
+    """Solve every case once and combine; mechanics' complaints come back with the document's path.
+
+    ``wants`` what an earlier round of a check with moving axles found that it needs.
+    """
+    combinations = list(document.combinations.values())
     deform = document.analysis.shear_deformation and all(s.section.shear_stiffness is not None for s in body.stretches)
-    solved = _solve(_beam(document, body, deform), loads)
-    combined = solved.combine(factors)
-    shares = np.array([[c.sustained.get(case, 0.0) for case in cases] for c in combinations.values()])
-    long_term = _long_term(document, body, deform, loads, solved, factors, shares)
-    names, kinds = tuple(combinations), [c.for_ for c in combinations.values()]
+    rows = _rows(document, body, deform, wants or moving.Wants())
+    solved = _solve(_beam(document, body, deform), rows.loads)
+    combined = solved.combine(rows.factors)
+    long_term = _long_term(document, body, deform, rows.loads, solved, rows.factors, rows.shares)
+    names = tuple(list(document.combinations)[k] for k in rows.combination)
+    kinds = [combinations[k].for_ for k in rows.combination]
     strength = tuple(k for k, kind in enumerate(kinds) if kind in ("both", "strength"))
     deflection = tuple(k for k, kind in enumerate(kinds) if kind in ("both", "deflection"))
 
-    def curve(coefficients: NDArray[np.float64] | None, chosen: tuple[int, ...]) -> Curve | None:
+    def curve(
+        coefficients: NDArray[np.float64] | None,
+        chosen: tuple[int, ...],
+        asked: list[tuple[float, float]] | None = None,
+    ) -> Curve | None:
         if coefficients is None or not chosen:
             return None
         picked = coefficients if len(chosen) == len(names) else coefficients[list(chosen)]
-        return Curve(combined.breaks, picked, tuple(names[k] for k in chosen))
+        return Curve(combined.breaks, picked, tuple(names[k] for k in chosen), asked)
 
     return Actions(
         names=names,
-        durations=tuple(c.duration for c in combinations.values()),
+        durations=tuple(combinations[k].duration for k in rows.combination),
         strength=strength,
         deflection=deflection,
-        factors=factors,
-        cases=cases,
-        case_loads=loads,
+        factors=rows.factors,
+        cases=tuple(document.loads),
+        case_loads=rows.loads,
         response=combined,
-        shear=curve(combined.shear, strength),
+        shear=curve(combined.shear, strength, None if rows.moving is None else []),
         moment=curve(combined.moment, strength),
         sag=curve(combined.deflection, deflection),
         long_term=curve(long_term, deflection),
         shear_deformation=deform,
-        sustained=shares,
+        sustained=rows.shares,
+        moving=rows.moving,
     )
+
+
+def _rows(document: documents.MemberDocument, body: Body, deform: bool, wants: moving.Wants) -> _Rows:
+    """One row a combination; several where axles move."""
+    combinations = list(document.combinations.values())
+    factors, shares = (
+        np.array([[getattr(c, name).get(case, 0.0) for case in document.loads] for c in combinations])
+        for name in ("factors", "sustained")
+    )
+    loads = tuple(tuple(_loads(document, body, case)) for case in document.loads)
+    movers = moving.movers_of(document)
+    if not movers:
+        return _Rows(tuple(range(len(combinations))), factors, shares, loads)
+    beam = _beam(document, body, deform)
+    creeps = any(part.material.creep is not None for part in body.parts)
+    soft = _beam(document, body, deform, creep=True) if creeps else None
+    stretches = tuple((s.start, s.end) for s in body.stretches)
+    question = moving.Question(
+        movers=movers,
+        beam=beam,
+        soft=soft,
+        still=_solve(beam, loads),
+        still_soft=None if soft is None else _solve(soft, loads),
+        factors=factors,
+        shares=shares,
+        strength=tuple(c.for_ in ("both", "strength") for c in combinations),
+        deflection=tuple(c.for_ in ("both", "deflection") for c in combinations),
+        shear=stretches,
+        moment=stretches,
+        spans=tuple((a, b) for a, b, _ in mechanics.span_ends(beam)),
+        stepped=document.analysis.slip or any(j.effective_role == "fall-back" for j in document.section.joints),
+        wants=wants,
+    )
+    written = moving.write_out(question, loads)
+    whole = Moving(question, written, len(loads))
+    return _Rows(written.combination, written.factors, written.shares, written.loads, whole)
 
 
 def _solve(beam: Beam, loads: Sequence[Sequence[mechanics.Load]]) -> Response:
@@ -163,7 +248,7 @@ def _loads(document: documents.MemberDocument, body: Body, case: str) -> Iterabl
         elif isinstance(load, documents.AreaLoad):
             per_length = load.value * load.width
             yield LineLoad(load.from_, load.to, per_length, per_length)
-        else:
+        elif isinstance(load, documents.SelfWeight):
             yield from _self_weight(body)
 
 

@@ -247,7 +247,7 @@ def _uplift(document: documents.MemberDocument, actions: Actions, findings: Find
     for i, support in enumerate(document.member.supports):
         lifting = np.flatnonzero(forces[:, i] < -1e-9 * scale)
         if len(lifting):
-            k = int(lifting[0])
+            k = int(forces[:, i].argmin())
             findings.caution(
                 "uplift",
                 f"The support at {support.at:g} mm pulls the member down with {-forces[k, i]:,.4g} N in combination "

@@ -2,6 +2,9 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping, Sequence
+from typing import Any
+
 import numpy as np
 from numpy.typing import NDArray
 
@@ -10,9 +13,11 @@ from server.checks.actions import Actions
 from server.checks.crosssection import Body, Site
 from server.checks.slide import Slide
 from server.mechanics.beam import Couple, Load, PointLoad
+from server.mechanics.moving_envelope import Envelope
 
 MOST_POINTS = 120
 LEAST_STEPS, MOST_STEPS = 4, 16
+ENVELOPE_STEPS = 8
 WIDEST_SEEN = 2000  # parts of the member's length: what is narrower than one is not seen
 
 
@@ -38,9 +43,29 @@ def drawing(document: documents.MemberDocument, body: Body, actions: Actions) ->
             "hinges": list(document.member.hinges),
         },
         "loads": [
-            _load(case, load) for case, loads in zip(actions.cases, actions.case_loads, strict=True) for load in loads
+            *(
+                _load(case, load)
+                for case, loads in zip(actions.cases, actions.case_loads, strict=False)
+                for load in loads
+            ),
+            *_moving(document),
         ],
     }
+
+
+def _moving(document: documents.MemberDocument) -> list[dict[str, object]]:
+    return [
+        {
+            "case": case,
+            "kind": "moving",
+            "axles": [[offset, force] for offset, force in load.axles],
+            "from": 0.0 if load.from_ is None else load.from_,
+            "to": document.member.length if load.to is None else load.to,
+        }
+        for case, loads in document.loads.items()
+        for load in loads
+        if isinstance(load, documents.MovingLoad)
+    ]
 
 
 def _contacts(body: Body) -> list[dict[str, object]]:
@@ -82,10 +107,11 @@ def diagrams(body: Body, actions: Actions, sliding: Slide | None = None) -> dict
     breaks = actions.breaks
     shown = _shown(breaks, body.length) if sliding is not None else np.arange(len(breaks) - 1)
     widths = np.diff(breaks)[shown]
-    steps = int(np.clip(MOST_POINTS // len(widths), 2 if sliding is not None else LEAST_STEPS, MOST_STEPS))
+    least = 2 if sliding is not None else LEAST_STEPS if actions.moving is None else ENVELOPE_STEPS
+    steps = int(np.clip(MOST_POINTS // len(widths), least, MOST_STEPS))
     local = widths[:, None] * np.linspace(0.0, 1.0, steps)
     at = breaks[:-1][shown, None] + local
-    found: dict[str, object] = {"at": at.ravel().tolist()}
+    found: dict[str, Any] = {"at": at.ravel().tolist()}
     curves = {
         "shear": actions.shear,
         "moment": actions.moment,
@@ -93,15 +119,29 @@ def diagrams(body: Body, actions: Actions, sliding: Slide | None = None) -> dict
         "deflection_long_term": actions.long_term,
     }
     found.update({name: _band(_sample(c.coefficients[:, shown], local)) for name, c in curves.items() if c is not None})
+    if actions.moving is not None and sliding is None:
+        _widen(found, actions.moving.written.envelopes, at)
     if sliding is not None:
         for name, each in (("joints", sliding.flows), ("slips", sliding.slips)):
             found[name] = {
                 site.id: _band(_sample(each[site.index].coefficients[:, shown], local)) for site in body.sites
             }
     elif actions.shear is not None:
-        shear = _sample(actions.shear.coefficients, local)
+        shear = np.stack([np.reshape(found["shear"][end], at.shape) for end in ("max", "min")])
         found["joints"] = {s.id: _flow(s, body, breaks, shear) for s in body.sites}
     return found
+
+
+def _widen(found: dict[str, Any], envelopes: Mapping[str, Sequence[Envelope]], at: NDArray[np.float64]) -> None:
+    """Let the bands reach to the true envelopes of moving axles; the rows alone touch them where they govern."""
+    right = np.ones(at.shape, dtype=bool)
+    right[:, -1] = False
+    for name, each in envelopes.items():
+        for envelope in each:
+            high, low = envelope.at(at.ravel(), right.ravel())[0]
+            band = found[name]
+            band["max"] = np.maximum(band["max"], high).tolist()
+            band["min"] = np.minimum(band["min"], low).tolist()
 
 
 def _shown(breaks: NDArray[np.float64], length: float) -> NDArray[np.intp]:

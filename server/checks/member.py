@@ -8,7 +8,7 @@ from dataclasses import dataclass
 from pydantic import BaseModel
 
 from server import ENGINE, documents
-from server.checks import effective_width
+from server.checks import effective_width, moving, moving_rounds
 from server.checks import statics as hand
 from server.checks.actions import Actions, act, envelope
 from server.checks.along import RigidAlong, SlidingAlong
@@ -58,13 +58,26 @@ def run(document: documents.MemberDocument, *, working: bool = True) -> dict[str
         Where the geometry, supports or loads cannot be checked; every fault names its field.
     """
     _refuse_what_is_to_come(document)
+    wants: moving.Wants | None = moving.Wants()
+    for _ in range(moving_rounds.ROUNDS):
+        assert wants is not None
+        result, wants = _round(document, wants, working=working)
+        if wants is None:
+            break
+    return result
+
+
+def _round(
+    document: documents.MemberDocument, wants: moving.Wants, *, working: bool
+) -> tuple[dict[str, object], moving.Wants | None]:
+    """One round of the check, and what another one needs where axles move (see ``moving_rounds``)."""
     body = build(document)
     refuse_misfits(document, body)
-    rigid = act(document, body)
+    rigid = act(document, body, wants)
     rules = chosen(document)
     if SKINS in rules:
         body = effective_width.narrowed(document, body, rigid)
-        rigid = act(document, body)
+        rigid = act(document, body, wants)
     book, findings = Working(record=working), Findings()
     sliding = _slide(document, body, rigid, findings)
     actions = rigid if sliding is None else sliding.actions
@@ -95,8 +108,10 @@ def run(document: documents.MemberDocument, *, working: bool = True) -> dict[str
     sags = check_deflection(document, body, actions, book, findings, upper_stiffness=upper)
     ends = check_ends(document, body, actions, judge, book, findings, after=_shared(document, body, findings))
     add_cautions(document, body, actions, joints, findings)
+    moving_rounds.caution(actions, findings)
+    slides = [each for each in (sliding, None if flows.gone is None else flows.gone.slide) if each is not None]
     governing = _governing(body, judge, joints, pieces, sags, fall_back, ends)
-    return {
+    result = {
         "format": document.format,
         "kind": document.kind,
         "title": document.title,
@@ -123,6 +138,7 @@ def run(document: documents.MemberDocument, *, working: bool = True) -> dict[str
         "values_used": _values_used(document, body),
         "engine": ENGINE,
     }
+    return result, moving_rounds.further(rigid, slides)
 
 
 def _refuse_what_is_to_come(document: documents.MemberDocument) -> None:
@@ -169,7 +185,7 @@ def _upper_stiffness(document: documents.MemberDocument, body: Body, findings: F
     return document.analysis.slip or bool(fastened)
 
 
-def _shared(document: documents.MemberDocument, body: Body, findings: Findings) -> Actions | None:
+def _shared(document: documents.MemberDocument, body: Body, findings: Findings, wants: moving.Wants) -> Actions | None:
     """The actions that the bonds share, where some act on the unpropped pieces before bonding."""
     before = document.analysis.before_bonding
     if not before:
@@ -178,6 +194,12 @@ def _shared(document: documents.MemberDocument, body: Body, findings: Findings) 
         f"stresses of the pieces and deflection with load before bonding ({', '.join(before)}): until the glue has "
         "set the pieces carry it as they are held; only the ends of bonds are reckoned with what is added afterwards."
     )
+    if moving.movers_of(document):
+        findings.miss(
+            "ends of bonds with moving axles and load before bonding: the two are not reckoned together, so the ends are "
+            "judged under the whole load; leave analysis.before_bonding out, or let the axles stand."
+        )
+        return None
     return act(after_bonding(document, before), body)
 
 
@@ -309,19 +331,8 @@ def _section(section: CrossSection, sliding: Slide | None) -> dict[str, object]:
 
 
 def _member(document: documents.MemberDocument, actions: Actions) -> dict[str, object]:
-    response = actions.response
     found: dict[str, object] = {
-        "reactions": {
-            name: [
-                {
-                    "at": support.at,
-                    "force": float(response.reaction_force[k, i]),
-                    "couple": float(response.reaction_couple[k, i]),
-                }
-                for i, support in enumerate(document.member.supports)
-            ]
-            for k, name in enumerate(actions.names)
-        },
+        "reactions": moving_rounds.reactions(actions, [support.at for support in document.member.supports]),
         "shear": envelope(actions.shear),
         "moment": envelope(actions.moment),
         "deflection": envelope(actions.sag),

@@ -189,7 +189,7 @@ def _short_term(body: Body, actions: Actions, x: float, k: int, book: Working) -
     section = body.stretches[0].section
     GA = section.shear_stiffness if actions.shear_deformation else None
     span = _Span(body.length, x, section.properties.EI, GA, AT_ONCE, "", book)
-    title = f"Greatest deflection at {x:.6g} mm, combination {actions.names[k]}"
+    title = f"Greatest deflection at {x:.6g} mm, combination {actions.labels[k]}"
     span.sag(_loaded(actions, actions.factors[k]), "u", title)
 
 
@@ -206,7 +206,7 @@ def _long_term(body: Body, actions: Actions, x: float, k: int, book: Working) ->
         EI, GA = _softened(section, actions.shear_deformation, group, book)
         span = _Span(body.length, x, EI, GA, group, ": the shares that stay", book)
         parts["u_s"] = (span.sag(lasting, "u_s", "Deflection from the load that stays, on softened stiffness"), "mm")
-    title = f"Greatest long-term deflection at {x:.6g} mm, combination {actions.names[k]}"
+    title = f"Greatest long-term deflection at {x:.6g} mm, combination {actions.labels[k]}"
     book.step(title, "u_fin", " + ".join(parts), parts, "mm", CREEP, group)
 
 

@@ -112,7 +112,7 @@ class Statics:
 
     def _reactions(self, k: int) -> None:
         actions, supports = self.actions, sorted(self.document.member.supports, key=lambda s: s.at)
-        name, group = actions.names[k], "Member"
+        name, group = actions.labels[k], "Member"
         whole = self._resultants(k, self.body.length, inclusive=True)
         if len(supports) == 2 and not self.document.member.hinges and all(s.kind != "fixed" for s in supports):
             first, second = supports
@@ -146,7 +146,7 @@ class Statics:
         self._shear_done.add((at, k))
         left = min(self._both_sides(k, at), key=lambda side: abs(abs(sum(side.force)) - size))
         self.working.step(
-            f"Shear at {at:.6g} mm, combination {self.actions.names[k]}", "V", SHEAR, {"F": (left.force, "N")},
+            f"Shear at {at:.6g} mm, combination {self.actions.labels[k]}", "V", SHEAR, {"F": (left.force, "N")},
             unit="N", source=f"{STATICS} of the part to the left: reactions up, loads down", group=group,
         )  # fmt: skip
 
@@ -154,7 +154,7 @@ class Statics:
         signed = peak.value if word == "sagging" else -peak.value
         left = min(self._both_sides(k, peak.at), key=lambda side: abs(_moment_of(side, peak.at) - signed))
         self.working.step(
-            f"Greatest {word} moment, at {peak.at:.6g} mm, combination {self.actions.names[k]}", "M", MOMENT,
+            f"Greatest {word} moment, at {peak.at:.6g} mm, combination {self.actions.labels[k]}", "M", MOMENT,
             {
                 "F": (left.force, "N"), "a": (left.at, "mm"), "x": (peak.at, "mm"), "C": (left.couple, "N*mm"),
             },

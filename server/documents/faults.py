@@ -15,10 +15,6 @@ from server.documents.common import MARK, Reference
 from server.documents.text import path_of
 from server.errors import Fault
 
-NOT_YET: Mapping[str, frozenset[str]] = {
-    # field: texts the contract names and this version does not read
-    "kind": frozenset(("moving",)),
-}
 MOST = 200  # faults reported at once
 
 Location = tuple[int | str, ...]
@@ -96,8 +92,6 @@ def _choice(details: ErrorDetails, model: type[BaseModel]) -> _Said:
     if field not in value:
         return f"missing; enter one of {listed}.", (field,)
     given = value[field]
-    if isinstance(given, str) and given in NOT_YET.get(field, ()):
-        return f"{units.given(given)} is not available yet in this version; use one of {listed}.", (field,)
     return f"{units.given(given)} is not accepted; {nearest(given, known)}", (field,)
 
 

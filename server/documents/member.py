@@ -60,6 +60,7 @@ class Rectangle(_Placed):
     chamfer: Radius = 0.0
 
 
+MOST_AXLES = 30
 Points = Annotated[list[tuple[Length, Length]], Field(min_length=3, max_length=500)]
 
 
@@ -264,15 +265,27 @@ class SelfWeight(Model):
     kind: Literal["self-weight"]
 
 
-LOADS = frozenset(("point", "line", "couple", "area", "self-weight"))
-LOADS_TO_COME = frozenset(("moving",))
-Load = PointLoad | LineLoad | CoupleLoad | AreaLoad | SelfWeight
+class MovingLoad(Model):
+    """Axles that travel over the member: places right of a datum that moves, and forces.
+
+    An axle carries on ``from`` to ``to`` alone; left out, these are the member's ends.
+    """
+
+    kind: Literal["moving"]
+    axles: Annotated[list[tuple[Length, Force]], Field(min_length=1, max_length=MOST_AXLES)]
+    from_: Place | None = Field(default=None, alias="from")
+    to: Place | None = None
+
+
+LOADS = frozenset(("point", "line", "couple", "area", "self-weight", "moving"))
+Load = PointLoad | LineLoad | CoupleLoad | AreaLoad | SelfWeight | MovingLoad
 LoadEntry = Annotated[
     Annotated[PointLoad, Tag(MARK + "point")]
     | Annotated[LineLoad, Tag(MARK + "line")]
     | Annotated[CoupleLoad, Tag(MARK + "couple")]
     | Annotated[AreaLoad, Tag(MARK + "area")]
-    | Annotated[SelfWeight, Tag(MARK + "self-weight")],
+    | Annotated[SelfWeight, Tag(MARK + "self-weight")]
+    | Annotated[MovingLoad, Tag(MARK + "moving")],
     tag_of("kind", LOADS),
 ]
 

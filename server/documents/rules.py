@@ -17,6 +17,7 @@ from server.documents.member import (
     Joint,
     LineLoad,
     Load,
+    MovingLoad,
     PointLoad,
     SelfWeight,
     SpacingZone,
@@ -25,6 +26,7 @@ from server.documents.parts import Parts
 from server.errors import Fault
 
 LOADS_AT_MOST = 1000
+MOVING_AT_MOST = 10
 
 
 def faults(parts: Parts) -> Iterator[Fault]:
@@ -245,19 +247,33 @@ def _loads(parts: Parts) -> Iterator[Fault]:
                 heavy = heavy or isinstance(load, SelfWeight)
     if heavy:
         yield from _weightless(parts)
+    moving = sum(isinstance(load, MovingLoad) for loads in parts.loads.values() for load in loads)
+    if moving > MOVING_AT_MOST:
+        yield Fault("loads", f"holds {moving} moving loads; at most {MOVING_AT_MOST} are read.")
 
 
 def _load(parts: Parts, path: str, load: Load) -> Iterator[Fault]:
     if isinstance(load, (PointLoad, CoupleLoad)):
         yield from _outside(parts, f"{path}.at", load.at)
-    if isinstance(load, (LineLoad, AreaLoad)):
+    if isinstance(load, (LineLoad, AreaLoad, MovingLoad)):
         yield from _run(parts, path, load.from_, load.to)
+    if isinstance(load, MovingLoad):
+        yield from _axles(parts, path, load)
     if parts.held_sideways and isinstance(load, (PointLoad, LineLoad)) and load.lateral != 0:
         yield Fault(
             f"{path}.lateral",
             "the member is held sideways, so a lateral load would be left out; make member.held_sideways false, or "
             "leave lateral out.",
         )
+
+
+def _axles(parts: Parts, path: str, load: MovingLoad) -> Iterator[Fault]:
+    if all(force == 0 for _, force in load.axles):
+        yield Fault(f"{path}.axles", "every axle weighs nothing; enter the forces, such as [[0, 5000], [1200, 5000]].")
+    if load.to is None and load.from_ is not None and load.from_ == parts.length:
+        yield Fault(f"{path}.from", "the axles would carry from the member's end on; enter a smaller place.")
+    if load.from_ is None and load.to == 0:
+        yield Fault(f"{path}.to", "the axles would carry up to the member's beginning; enter a larger place.")
 
 
 def _weightless(parts: Parts) -> Iterator[Fault]:

@@ -52,10 +52,11 @@ class Train:
 
 @dataclass(frozen=True)
 class Placing:
-    """A train at one position: the axles that carry there, places [mm] and forces [N]."""
+    """A train at one position: its datum, and the axles that carry there, places [mm] and forces [N]."""
 
     at: tuple[float, ...]
     forces: tuple[float, ...]
+    datum: float
     turned: bool
 
     def loads(self) -> list[PointLoad]:
@@ -156,16 +157,18 @@ def _one_way(lines: Lines, knots: Array, train: Train, turned: bool) -> Both:
     cubic = _sum(lines, knots, at, a[..., None] + offset, inside * force)
     s = np.concatenate([np.stack([np.zeros_like(width), width]), _turns(cubic, width)])
     values = cubic[..., 0] + s * (cubic[..., 1] + s * (cubic[..., 2] + s * cubic[..., 3]))
-    values[:, width <= SAME * float(knots[-1])] = np.nan
+    values[:, (width <= SAME * float(knots[-1])) | ~inside.any(2)] = np.nan  # nothing lies there, or no axle is on
     flat = np.moveaxis(values, 0, -1).reshape(n, -1)
     # Exactly where two neighbours meet, axles on both ends of [start, end] carry.
     exact, exact_inside = _exactly(lines, knots, train, u)
+    on = np.concatenate([exact_inside.any(2)] * 2, axis=1)
     row = np.arange(n)
 
     def furthest(sense: int) -> Travel:
         worth = np.where(np.isnan(flat), -np.inf, sense * flat)
-        pick, spot = worth.argmax(1), (sense * exact).argmax(1)
-        best, here = worth[row, pick], sense * exact[row, spot]
+        met = np.where(on, sense * exact, -np.inf)
+        pick, spot = worth.argmax(1), met.argmax(1)
+        best, here = worth[row, pick], met[row, spot]
         closed = here > best + 1e-12 * np.abs(here)
         interval, which, spot = pick // len(s), pick % len(s), spot % u.shape[1]
         datum = np.where(closed, u[row, spot], a[row, interval] + s[which, row, interval])
@@ -208,7 +211,7 @@ def _exactly(lines: Lines, knots: Array, train: Train, u: Array) -> tuple[Array,
     return np.concatenate(sides, axis=1), inside
 
 
-def placing(train: Train, found: Travel, index: int, influence: Influence) -> Placing:
+def placing(train: Train, found: Travel, index: int, influence: Influence, ends: Sequence[float] = ()) -> Placing:
     """The axles as they stand where one action is extreme.
 
     Parameters
@@ -222,6 +225,8 @@ def placing(train: Train, found: Travel, index: int, influence: Influence) -> Pl
     influence : Influence
         The member; an axle exactly over a support is moved off it by a millionth of the length, to the side on which
         the extreme lies.
+    ends : sequence of float
+        Other places that an axle is moved off likewise: the ends of the parts looked at [mm].
 
     Returns
     -------
@@ -235,10 +240,10 @@ def placing(train: Train, found: Travel, index: int, influence: Influence) -> Pl
     turned = bool(found.turned[index])
     offsets = train.turned.offsets if turned else train.offsets
     datum, length = float(found.datum[index]), influence.beam.length
-    at = datum + np.array(offsets)
-    over = np.abs(at[:, None] - influence.supports) <= influence.beam.same_place
+    edges = np.append(influence.supports, ends)
+    over = np.abs((datum + np.array(offsets))[:, None] - edges) <= 2 * influence.beam.same_place
     if found.way[index] and over.any():
-        at = at + float(found.way[index]) * NUDGE * length
+        datum += float(found.way[index]) * NUDGE * length
     carries = found.inside[index]
-    places = tuple(float(p) for p in np.clip(at[carries], 0.0, length))
-    return Placing(places, tuple(f for f, c in zip(train.forces, carries, strict=True) if c), turned)
+    places = tuple(float(p) for p in np.clip((datum + np.array(offsets))[carries], 0.0, length))
+    return Placing(places, tuple(f for f, c in zip(train.forces, carries, strict=True) if c), datum, turned)

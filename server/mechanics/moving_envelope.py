@@ -37,43 +37,46 @@ Static = Callable[[Array, NDArray[np.bool_]], Array]
 
 
 @dataclass(frozen=True)
+class Runner:
+    """A train that travels on its own, and what its axles act on.
+
+    Parameters
+    ----------
+    train : Train
+        Its axles [mm, N].
+    on : sequence of (Influence, float)
+        The states of the member that carry it with the factor of each, such as the member as built, and as it is after
+        creep for the part of the load that stays [-].
+    """
+
+    train: Train
+    on: Sequence[tuple[Influence, float]]
+
+
+@dataclass(frozen=True)
 class Envelope:
     """What trains that travel independently of each other add to the actions of loads that stay.
 
     Parameters
     ----------
-    influence : Influence
-        The member.
-    trains : sequence of (Train, float)
-        Trains with the factor of each [mm, N, -].
+    runners : sequence of Runner
+        The trains; all states are of one member, with the same supports and breaks [mm, N, -].
     quantity : str
         "shear", "moment" or "deflection" [-].
     static : callable
         What the other loads give at places x [mm], just left or just right of them.
     breaks : numpy.ndarray
         Where that curve may jump or bend [mm].
-    more : sequence of (Influence, float)
-        Other states of the member, whose lines are added with the factor, such as the part of a load that stays on the
-        member after creep; the first state then has its own factor ``share``.
-    share : float
-        Factor of the lines of ``influence`` [-].
     """
 
-    influence: Influence
-    trains: Sequence[tuple[Train, float]]
+    runners: Sequence[Runner]
     quantity: Quantity
     static: Static
     breaks: Array
-    more: Sequence[tuple[Influence, float]] = ()
-    share: float = 1.0
 
-    def _lines(self, x: Array, right: NDArray[np.bool_]) -> Lines:
-        found = self.influence.lines(self.quantity, x, right)
-        left, after = self.share * found.left, self.share * found.right
-        for other, factor in self.more:
-            lines = other.lines(self.quantity, x, right)
-            left, after = left + factor * lines.left, after + factor * lines.right
-        return Lines(x, left, after)
+    @property
+    def _member(self) -> Influence:
+        return self.runners[0].on[0][0]
 
     def at(self, x: Array, right: NDArray[np.bool_]) -> tuple[Array, list[Both]]:
         """The envelope at places x: greatest and least values (2, n), and where every train stands for them.
@@ -85,13 +88,18 @@ class Envelope:
         right : numpy.ndarray
             Whether just right of each place, else just left [-].
         """
-        lines = self._lines(x, right)
         total = np.array([self.static(x, right)] * 2, dtype=float)
+        known: dict[int, Lines] = {}
         runs: list[Both] = []
-        for train, factor in self.trains:
-            high, low = travel(lines, self.influence.knots, train)
-            run = (high, low) if factor >= 0 else (low, high)
-            total += factor * np.array([run[0].value, run[1].value])
+        for runner in self.runners:
+            left, after = np.zeros(1), np.zeros(1)
+            for influence, factor in runner.on:
+                if id(influence) not in known:
+                    known[id(influence)] = influence.lines(self.quantity, x, right)
+                lines = known[id(influence)]
+                left, after = left + factor * lines.left, after + factor * lines.right
+            run = travel(Lines(x, left, after), self._member.knots, runner.train)
+            total += np.array([run[0].value, run[1].value])
             runs.append(run)
         return total, runs
 
@@ -103,7 +111,7 @@ class Envelope:
         ranges : sequence of (float, float)
             From where to where [mm].
         """
-        same = self.influence.beam.same_place
+        same = self._member.beam.same_place
         x, right = self._sampled(ranges)
         values, _ = self.at(x, right)
         best: list[_Best] = []
@@ -121,7 +129,7 @@ class Envelope:
                 ]
         for _ in range(ROUNDS):
             near = self._closer(near, best)
-        return self._written(best)
+        return self._written(best, sorted({end for each in ranges for end in each}))
 
     def _closer(self, near: list[_Near], best: list[_Best]) -> list[_Near]:
         """Look between the neighbours of every top once more; keep what is better."""
@@ -141,7 +149,7 @@ class Envelope:
             closer.append(_Near(each.of, float(x[row, max(top - 1, 0)]), float(x[row, min(top + 1, CLOSER)])))
         return closer
 
-    def _written(self, best: Sequence[_Best]) -> list[tuple[Extreme, Extreme]]:
+    def _written(self, best: Sequence[_Best], ends: Sequence[float]) -> list[tuple[Extreme, Extreme]]:
         """The extremes with the positions of all trains, in pairs."""
         values, runs = self.at(np.array([each.at for each in best]), np.array([each.right for each in best]))
         found = [
@@ -149,8 +157,8 @@ class Envelope:
                 float(values[i % 2, i]),
                 each.at,
                 tuple(
-                    placing(train, run[i % 2], i, self.influence)
-                    for (train, _), run in zip(self.trains, runs, strict=True)
+                    placing(runner.train, run[i % 2], i, self._member, ends)
+                    for runner, run in zip(self.runners, runs, strict=True)
                 ),
             )
             for i, each in enumerate(best)
@@ -159,9 +167,10 @@ class Envelope:
 
     def _sampled(self, ranges: Sequence[tuple[float, float]]) -> tuple[Array, NDArray[np.bool_]]:
         """Places over all ranges: both sides of every special one, and some between."""
-        same = self.influence.beam.same_place
+        same = self._member.beam.same_place
         low, high = min(r[0] for r in ranges), max(r[1] for r in ranges)
-        wanted = [*self.influence.knots, *self.breaks, *(e for t, _ in self.trains for e in (t.start, t.end))]
+        wanted = [*self._member.knots, *self.breaks]
+        wanted += [end for runner in self.runners for end in (runner.train.start, runner.train.end)]
         wanted += [end for each in ranges for end in each]
         specials = np.unique([low, high, *(place for place in wanted if low + same < place < high - same)])
         specials = specials[np.append(True, np.diff(specials) > same)]
@@ -176,10 +185,10 @@ class Envelope:
     def _bends(self, low: float, high: float) -> Array:
         """Where one axle stands while another meets a key place or an end of its stretch: the envelope may bend."""
         found = []
-        for train, _ in self.trains:
+        for train in (runner.train for runner in self.runners):
             offset = np.array(train.offsets)
             apart = np.unique((offset[:, None] - offset).ravel())
-            at = np.array([*self.influence.knots, train.start, train.end])
+            at = np.array([*self._member.knots, train.start, train.end])
             if apart.size * at.size > MOST_BENDS:
                 at = at[-2:]
             found.append((at[:, None] + apart).ravel()[:MOST_BENDS])

@@ -179,7 +179,12 @@ class _Writer:
     def _load(self, load: Typed) -> Iterable[tuple[str, object, str]]:
         kind = load.get("kind", "")
         of = {"point": "force", "line": "line_load", "area": "area_load", "couple": "couple"}.get(kind, "")
-        yield "", kind, ""
+        yield "", "moving axles" if kind == "moving" else kind, ""
+        for number, axle in enumerate(load.get("axles") or ()):
+            if isinstance(axle, Sequence) and not isinstance(axle, str) and len(axle) == 2:
+                yield "," if number else "", "", ""
+                yield "", axle[1], "force"
+                yield "at", axle[0], "length"
         value = load.get("value")
         if isinstance(value, Sequence) and not isinstance(value, str):
             for words, each in zip(("", "to"), value, strict=False):

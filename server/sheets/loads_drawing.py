@@ -19,6 +19,7 @@ LINE_HEIGHT = 24.0
 POINT_HEIGHT = 26.0
 LEAST = {"line": 7.0, "point": 15.0, "couple": 0.0}
 LETTERS = FONT_SIZE + 3
+TRAVEL = 12.0  # px below the line, for the stretch that axles run over
 LANES = 6
 """Most rows for one load case; what does not fit is counted in words."""
 
@@ -95,15 +96,19 @@ def loads_svg(result: Mapping[str, Any], *, display: str = "SI", width: float = 
 
 
 def _values(load: Mapping[str, Any]) -> tuple[float, float]:
-    """A load's value at its start and at its end."""
+    """A load's value at its start and at its end; of axles the greatest and the least force."""
+    if load["kind"] == "moving":
+        forces = [float(force) for _, force in load["axles"]]
+        return max(forces), min(forces)
     value = load["value"]
     return (float(value[0]), float(value[1])) if isinstance(value, list | tuple) else (float(value), float(value))
 
 
 def _frame(member: Mapping[str, Any], loads: Sequence[Mapping[str, Any]], display: str, width: float) -> Frame:
+    kinds = {"point": ("point", "moving"), "line": ("line",), "couple": ("couple",)}
     greatest = {
-        kind: max((abs(v) for load in loads if load["kind"] == kind for v in _values(load)), default=0.0)
-        for kind in ("point", "line", "couple")
+        kind: max((abs(v) for load in loads if load["kind"] in own for v in _values(load)), default=0.0)
+        for kind, own in kinds.items()
     }
     length = float(member["length"])
     scale = (width - 2 * MARGIN) / length
@@ -148,6 +153,8 @@ def _case(drawing: Drawing, frame: Frame, case: str, loads: Sequence[Mapping[str
 def _label(frame: Frame, load: Mapping[str, Any]) -> str:
     """What is lettered at a load."""
     first, last = _values(load)
+    if load["kind"] == "moving":
+        return _axles_label(frame, load)
     if load["kind"] == "couple":
         return f"{frame.couple.full(first)} at {drafting.place_text(load['at'], frame.display)}"
     if load["kind"] == "point":
@@ -159,10 +166,27 @@ def _label(frame: Frame, load: Mapping[str, Any]) -> str:
     return f"{value}, {start} to {end}"
 
 
+def _axles_label(frame: Frame, load: Mapping[str, Any]) -> str:
+    """The forces of the axles in their order, how far apart they stand, and where they run."""
+    axles = sorted(load["axles"])
+    forces = " + ".join(frame.force.text(force) for _, force in axles[:5]) + (" + …" if len(axles) > 5 else "")
+    apart = [drafting.place_text(b[0] - a[0], frame.display) for a, b in pairwise(axles[:5])]
+    spaced = f", {' and '.join(dict.fromkeys(apart))} apart" if apart else ""
+    ends = " to ".join(drafting.place_text(load[end], frame.display) for end in ("from", "to"))
+    return f"{forces} {frame.force.unit}{spaced}, moving over {ends}"
+
+
+def _axle_places(load: Mapping[str, Any]) -> list[tuple[float, float]]:
+    """The axles in the middle of their stretch, for the drawing: place and force; none beyond its ends."""
+    offsets = [offset for offset, _ in load["axles"]]
+    middle = 0.5 * (load["from"] + load["to"]) - 0.5 * (min(offsets) + max(offsets))
+    return [(min(max(middle + o, load["from"]), load["to"]), f) for o, f in load["axles"]]
+
+
 def _label_place(frame: Frame, load: Mapping[str, Any]) -> tuple[float, float]:
     """Centre and half width of a load's lettering, kept on the drawing."""
     half = 0.5 * text_width(_label(frame, load))
-    middle = 0.5 * (load["from"] + load["to"]) if load["kind"] == "line" else load["at"]
+    middle = 0.5 * (load["from"] + load["to"]) if load["kind"] in ("line", "moving") else load["at"]
     low, high = frame.left - MARGIN + half + 4, frame.x(frame.length) + MARGIN - half - 4
     return min(max(frame.x(middle), low), max(low, high)), half
 
@@ -176,6 +200,9 @@ def _placed(frame: Frame, load: Mapping[str, Any]) -> Placed:
     if load["kind"] == "line":
         own = frame.x(load["from"]), frame.x(load["to"])
         heights = [frame.high("line", v) for v in _values(load)]
+    elif load["kind"] == "moving":
+        own = frame.x(load["from"]), frame.x(load["to"])
+        heights = [*(frame.high("point", v) for v in _values(load)), -TRAVEL]
     else:
         own = frame.x(load["at"]) - 3, frame.x(load["at"]) + 3
         heights = [frame.high("point", _values(load)[0])]
@@ -194,15 +221,31 @@ def _load(drawing: Drawing, frame: Frame, load: Mapping[str, Any], base: float) 
     elif load["kind"] == "couple":
         _couple(drawing, frame.x(load["at"]), base, _values(load)[0])
         top = base - 12
+    elif load["kind"] == "moving":
+        top = min(_arrow(drawing, frame, at, force, base) for at, force in _axle_places(load))
+        _travel(drawing, frame.x(load["from"]), frame.x(load["to"]), base + TRAVEL - 3)
     else:
-        top = base - frame.high("point", _values(load)[0])
-        x = frame.x(load["at"])
-        down = 1 if top < base else -1
-        if top != base:
-            drawing.line("heavy", x, top, x, base - 6 * down)
-            drawing.arrow(x, base, 0, down, 9, 3.2)
+        top = _arrow(drawing, frame, load["at"], _values(load)[0], base)
     baseline = top - 4 if top <= base else top + 2 * CAP * FONT_SIZE + 4
     drawing.text(centre, baseline, _label(frame, load), "middle")
+
+
+def _arrow(drawing: Drawing, frame: Frame, at: float, force: float, base: float) -> float:
+    """One force; returns where its shaft begins."""
+    top = base - frame.high("point", force)
+    x = frame.x(at)
+    down = 1 if top < base else -1
+    if top != base:
+        drawing.line("heavy", x, top, x, base - 6 * down)
+        drawing.arrow(x, base, 0, down, 9, 3.2)
+    return top
+
+
+def _travel(drawing: Drawing, left: float, right: float, y: float) -> None:
+    """The stretch that axles run over: a thin line with a head at either end."""
+    drawing.line("thin", left, y, right, y)
+    drawing.arrow(left, y, -1, 0)
+    drawing.arrow(right, y, 1, 0)
 
 
 def _line_load(drawing: Drawing, frame: Frame, load: Mapping[str, Any], base: float) -> float:

@@ -85,7 +85,7 @@ def actions(result: Result, display: str) -> Iterator[Part]:
     force, couple, length = unit("N", display), unit("N*mm", display), unit("mm", display)
     reactions = member.get("reactions") or {}
     rows: list[list[Cell]] = [
-        [name, length.number(each.get("at")), force.number(each.get("force")), _unless_zero(each.get("couple"), couple)]
+        [name, length.number(each.get("at")), _held(each, "force", force), _held(each, "couple", couple)]
         for name, listed in reactions.items()
         for each in listed
     ]
@@ -104,8 +104,15 @@ def actions(result: Result, display: str) -> Iterator[Part]:
     yield from extremes(lines, length)
 
 
-def _unless_zero(value: object, of: Unit) -> str:
-    return of.number(value) if isinstance(value, int | float) and value else DASH
+def _held(reaction: Result, what: str, of: Unit) -> str:
+    """A reaction's force or couple; from least to greatest where axles move; no couple is a dash."""
+    least, most = ("min", "max") if what == "force" else ("couple_min", "couple_max")
+    if most not in reaction:
+        value = reaction.get(what)
+        return of.number(value) if value or what == "force" else DASH
+    if what == "couple" and not reaction[most] and not reaction[least]:
+        return DASH
+    return f"{of.number(reaction[least])} to {of.number(reaction[most])}"
 
 
 def extremes(lines: Sequence[tuple[str, Any, Unit]], length: Unit) -> Iterator[Part]:

@@ -124,7 +124,7 @@ def test_all_faults_are_said_at_once() -> None:
         data["section"]["joints"][3]["role"] = "press"
         data["loads"]["snow"][0]["value"] = [1, "4 kg"]
         data["loads"]["snow"][1] |= {"value": "4 lb", "at": "5 m"}
-        data["loads"]["snow"][2]["kind"] = "moving"
+        data["loads"]["snow"][2] = {"kind": "moving", "axles": [[0, "4 kg"]]}
         data["loads"]["snow"][3]["kind"] = "cuple"
         data["combinations"]["A"]["sustained"] = {"wind": 0.2}
         data["combinations"]["B"] |= {"for": "both of", "factors": {"wind": 1}}
@@ -144,7 +144,7 @@ def test_all_faults_are_said_at_once() -> None:
         "loads.snow[0].value[1]",
         "loads.snow[1].value",
         "loads.snow[1].at",
-        "loads.snow[2].kind",
+        "loads.snow[2].axles[0][1]",
         "loads.snow[3].kind",
         "combinations.A.sustained.wind",
         "combinations.B.for",
@@ -156,7 +156,7 @@ def test_all_faults_are_said_at_once() -> None:
     assert "did you mean 'width'?" in found["section.pieces.web L.widht"]
     assert "did you mean 'deal'?" in found["section.pieces.bottom.material"]
     assert "known: 'angle', 'channel'" in found["section.pieces.top.shape"]
-    assert "not available yet" in found["loads.snow[2].kind"]
+    assert "it weighs 4 kgf" in found["loads.snow[2].axles[0][1]"]
     assert "it weighs 4 lbf (17.79 N)" in found["loads.snow[1].value"]
     assert "did you mean 'couple'?" in found["loads.snow[3].kind"]
 

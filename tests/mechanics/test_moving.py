@@ -12,7 +12,7 @@ from hypothesis import strategies as st
 from server.mechanics.beam import Beam, LineLoad, PointLoad, Stretch, Support, evaluate, solve
 from server.mechanics.influence import Influence
 from server.mechanics.moving import Train, placing, travel
-from server.mechanics.moving_envelope import Envelope, standing
+from server.mechanics.moving_envelope import Envelope, Runner, standing
 
 L = 8000.0
 EI = 4e12
@@ -129,7 +129,10 @@ def test_envelopes_agree_with_stepping(name, which):
     found = stepped(beam, train, stays, 200)
     for quantity in ("shear", "moment", "deflection"):
         envelope = Envelope(
-            influence, [(train, 1.0)], quantity, standing(static.breaks, getattr(static, quantity)[0]), static.breaks
+            [Runner(train, [(influence, 1.0)])],
+            quantity,
+            standing(static.breaks, getattr(static, quantity)[0]),
+            static.breaks,
         )
         ((high, low),) = envelope.extremes([(0.0, beam.length)])
         most, least = found[quantity]
@@ -146,7 +149,10 @@ def test_the_position_found_gives_the_value_found(name):
     static, influence = solve(beam, [stays]), Influence(beam)
     for quantity in ("shear", "moment", "deflection"):
         envelope = Envelope(
-            influence, [(train, 1.5)], quantity, standing(static.breaks, getattr(static, quantity)[0]), static.breaks
+            [Runner(train, [(influence, 1.5)])],
+            quantity,
+            standing(static.breaks, getattr(static, quantity)[0]),
+            static.breaks,
         )
         for pair in envelope.extremes([(0.0, beam.length), (0.3 * beam.length, 0.6 * beam.length)]):
             for extreme in pair:
@@ -166,7 +172,7 @@ def test_two_axles_on_a_simple_span_have_the_absolute_greatest_moment_of_the_clo
     (absolute maximum moment: resultant and axle equidistant from midspan; any text on moving loads)."""
     one, two, apart = 70e3, 45e3, 1800.0
     train = Train((0.0, apart), (one, two), 0.0, L)
-    envelope = Envelope(Influence(simple()), [(train, 1.0)], "moment", none, NOTHING)
+    envelope = Envelope([Runner(train, [(Influence(simple()), 1.0)])], "moment", none, NOTHING)
     ((high, low),) = envelope.extremes([(0.0, L)])
     e = two * apart / (one + two)
     assert high.value == pytest.approx((one + two) / L * (L / 2 - e / 2) ** 2, rel=1e-7)
@@ -178,7 +184,7 @@ def test_two_axles_on_a_simple_span_have_the_shear_and_the_support_force_of_stat
     one, two, apart = 70e3, 45e3, 1800.0
     train = Train((0.0, apart), (one, two), 0.0, L)
     influence = Influence(simple())
-    ((high, low),) = Envelope(influence, [(train, 1.0)], "shear", none, NOTHING).extremes([(0.0, L)])
+    ((high, low),) = Envelope([Runner(train, [(influence, 1.0)])], "shear", none, NOTHING).extremes([(0.0, L)])
     wanted = one + two * (L - apart) / L
     assert high.value == pytest.approx(wanted, rel=1e-9)
     assert low.value == pytest.approx(-wanted, rel=1e-9)
@@ -192,14 +198,16 @@ def test_two_axles_on_a_simple_span_have_the_shear_and_the_support_force_of_stat
 def test_the_middle_axle_of_a_wheel_pair_straddling_midspan_sags_most():
     """Two equal axles a apart, symmetric about midspan: y = P (L - a) (3 L^2 - (L - a)^2) / (48 EI) * 2 / 2 each."""
     train = Train((0.0, 2000.0), (20e3, 20e3), 0.0, L)
-    ((high, _),) = Envelope(Influence(simple()), [(train, 1.0)], "deflection", none, NOTHING).extremes([(0.0, L)])
+    ((high, _),) = Envelope([Runner(train, [(Influence(simple()), 1.0)])], "deflection", none, NOTHING).extremes(
+        [(0.0, L)]
+    )
     b = (L - 2000.0) / 2
     assert high.value == pytest.approx(2 * 20e3 * b * (3 * L**2 - 4 * b**2) / (48 * EI), rel=1e-9)
 
 
 def test_an_axle_off_its_stretch_carries_nothing():
     train = Train((0.0, 3000.0), (1e4, 5e4), 2000.0, 4000.0)
-    envelope = Envelope(Influence(simple()), [(train, 1.0)], "moment", none, NOTHING)
+    envelope = Envelope([Runner(train, [(Influence(simple()), 1.0)])], "moment", none, NOTHING)
     ((high, _),) = envelope.extremes([(0.0, L)])
     assert high.value == pytest.approx(5e4 * L / 4)
     assert high.placings[0].at == (pytest.approx(4000.0),)
@@ -208,8 +216,17 @@ def test_an_axle_off_its_stretch_carries_nothing():
 
 def test_a_point_to_stand_on_is_a_stretch_too():
     train = Train((0.0,), (1e4,), 2000.0, 2000.0)
-    ((high, _),) = Envelope(Influence(simple()), [(train, 1.0)], "moment", none, NOTHING).extremes([(0.0, L)])
+    ((high, _),) = Envelope([Runner(train, [(Influence(simple()), 1.0)])], "moment", none, NOTHING).extremes([(0.0, L)])
     assert high.value == pytest.approx(1e4 * 2000 * 6000 / L)
+
+
+def test_between_an_axle_that_left_and_one_that_is_to_come_there_is_no_position():
+    """A stretch shorter than the axles are apart: one axle is always on it, so the cantilever always hogs."""
+    beam = Beam(L, [Support(0, "fixed")], [], [Stretch(0, L, EI)])
+    train = Train((0.0, 3000.0), (1e4, 1e4), 5000.0, 6000.0)
+    ((high, low),) = Envelope([Runner(train, [(Influence(beam), 1.0)])], "moment", none, NOTHING).extremes([(0.0, 1.0)])
+    assert high.value == pytest.approx(-1e4 * 4999)
+    assert low.value == pytest.approx(-1e4 * 6000)
 
 
 def test_trains_that_travel_apart_add_up():
@@ -218,9 +235,12 @@ def test_trains_that_travel_apart_add_up():
     at = np.array([0.4 * L, L, 1.7 * L])
     sides = np.ones(3, dtype=bool)
     alone = [
-        Envelope(influence, [(t, f)], "moment", none, NOTHING).at(at, sides)[0] for t, f in ((one, 1.5), (two, -0.5))
+        Envelope([Runner(t, [(influence, f)])], "moment", none, NOTHING).at(at, sides)[0]
+        for t, f in ((one, 1.5), (two, -0.5))
     ]
-    both = Envelope(influence, [(one, 1.5), (two, -0.5)], "moment", none, NOTHING).at(at, sides)[0]
+    both = Envelope([Runner(one, [(influence, 1.5)]), Runner(two, [(influence, -0.5)])], "moment", none, NOTHING).at(
+        at, sides
+    )[0]
     assert both == pytest.approx(alone[0] + alone[1])
 
 
@@ -245,7 +265,7 @@ def test_the_envelope_lies_on_or_outside_every_single_position(name, offsets, fo
     train = Train(tuple(sorted(offsets)), tuple(forces[: len(offsets)]), 0.0, beam.length)
     influence = Influence(beam)
     x, sides = np.linspace(0.01, 0.99, 7) * beam.length, np.ones(7, dtype=bool)
-    high, low = Envelope(influence, [(train, 1.0)], quantity, none, NOTHING).at(x, sides)[0]
+    high, low = Envelope([Runner(train, [(influence, 1.0)])], quantity, none, NOTHING).at(x, sides)[0]
     least, most = train.reach
     u = least + where * (most - least)
     axles = [PointLoad(u + o, f) for o, f in zip(train.offsets, train.forces, strict=True) if 0 <= u + o <= beam.length]
