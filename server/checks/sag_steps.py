@@ -15,7 +15,7 @@ from numpy.typing import NDArray
 from server import documents
 from server.checks.actions import Actions, Curve, largest
 from server.checks.crosssection import Body, CrossSection
-from server.mechanics.beam import Couple, LineLoad, Load, PointLoad
+from server.mechanics.beam import LineLoad, Load, PointLoad
 from server.working import Working
 from server.working.record import Given
 
@@ -83,7 +83,6 @@ def _loaded(actions: Actions, factors: NDArray[np.float64]) -> Loaded:
         for factor, loads in zip(factors.tolist(), actions.case_loads, strict=True)
         if factor
         for load in loads
-        if not isinstance(load, Couple)  # one that is nil: others are in no table
     ]
 
 

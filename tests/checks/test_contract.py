@@ -346,6 +346,14 @@ class TestDeflection:
         assert cautions(run(STACK), "deflection")
         assert cautions(run(STACK, member__deflection_limit=300), "deflection") == []
 
+    def test_a_couple_is_in_no_beam_table(self) -> None:
+        """Where the tables do not hold, the working names the method and gives the number it found."""
+        couple = {"kind": "couple", "at": 1000, "value": 300_000}
+        result = run(STACK, loads__turn=[couple])
+        (step,) = [s for s in result["steps"] if s["title"].startswith("Greatest deflection")]
+        assert step["formula"] == ""
+        assert step["value"] == pytest.approx(result["member"]["deflection"]["max"])
+
     def test_what_is_not_named_as_sustained_does_not_stay(self) -> None:
         result = run(
             STACK,
