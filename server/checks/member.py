@@ -185,7 +185,7 @@ def _upper_stiffness(document: documents.MemberDocument, body: Body, findings: F
     return document.analysis.slip or bool(fastened)
 
 
-def _shared(document: documents.MemberDocument, body: Body, findings: Findings, wants: moving.Wants) -> Actions | None:
+def _shared(document: documents.MemberDocument, body: Body, findings: Findings) -> Actions | None:
     """The actions that the bonds share, where some act on the unpropped pieces before bonding."""
     before = document.analysis.before_bonding
     if not before:
@@ -196,8 +196,8 @@ def _shared(document: documents.MemberDocument, body: Body, findings: Findings, 
     )
     if moving.movers_of(document):
         findings.miss(
-            "ends of bonds with moving axles and load before bonding: the two are not reckoned together, so the ends are "
-            "judged under the whole load; leave analysis.before_bonding out, or let the axles stand."
+            "ends of bonds with moving axles and load before bonding: the two are not reckoned together, so the ends "
+            "are judged under the whole load; leave analysis.before_bonding out, or let the axles stand."
         )
         return None
     return act(after_bonding(document, before), body)
