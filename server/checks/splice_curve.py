@@ -15,7 +15,7 @@ from server.mechanics.overlap_strength import LONGER, Curve, Limits, curve, stre
 from server.mechanics.overlap_tube import sections
 
 Array = NDArray[np.float64]
-DRAWN = 2.5  # the curve is drawn to this many times the overlap, or the useful one
+DRAWN = 2.5  # the curve is drawn to this many times the overlap, or a little beyond the useful one
 COARSE = 1.35  # ratio of neighbouring overlaps where the bond yields, which takes longer to reckon
 
 
@@ -80,8 +80,8 @@ def strength_curve(lap: Lap, action: Action, length: float, holds: Holds) -> Cur
 
 def drawn(found: Curve, length: float) -> dict[str, list[float]]:
     """The part of the curve that is drawn."""
-    end = DRAWN * max(length, min(found.useful or length, 10 * length))
-    kept = (found.overlap <= end * 1.3) & (found.overlap >= min(length, found.useful or length) / 20)
+    end = max(DRAWN * length, 1.3 * min(found.useful or length, 10 * length))
+    kept = (found.overlap <= end * 1.2) & (found.overlap >= min(length, found.useful or length) / 20)
     return {"overlap": found.overlap[kept].tolist(), "strength": found.strength[kept].tolist()}
 
 

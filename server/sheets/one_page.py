@@ -36,10 +36,14 @@ class OnePage:
     waits_for: Callable[[Mapping[str, Any]], Iterable[str]] = lambda raw: ()
     """What must be typed before a result is worth looking for, in words; while any is left, nobody is found at
     fault."""
+    fixed: tuple[tuple[str, str], ...] = ()
+    """Places of the document that the form fills by itself, such as the names of its values."""
+    normal: Callable[[Mapping[str, Any]], Mapping[str, Any]] = lambda raw: raw
+    """The same document with its names as the form has them, for one that was written elsewhere."""
 
     def given(self, raw: Mapping[str, Any], values_used: Mapping[str, Any], display: str) -> tuple[Group, ...]:
         """The given values, as typed and as used."""
-        return given(self.groups, raw, values_used, display, self.kind)
+        return given(self.groups, self.normal(raw), self.normal({**raw, **values_used}), display, self.kind)
 
 
 def figure(svg: str, caption: str, share: float = 0.86, alt: str = "") -> dict[str, Any]:

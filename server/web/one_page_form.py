@@ -52,6 +52,8 @@ def read(page: OnePage, values: Values) -> Reading:
         if values.get(name):
             reading.raw[name] = values[name]
     reading.raw["display"] = values.get("display") or system
+    for path, fixed in page.fixed:
+        _put(reading.raw, path, fixed)
     asked = shown(page, values)
     picked = [ask.path + "." for ask in asked.values() if ask.record and values.get(ask.path, "").strip()]
     for path, ask in asked.items():
@@ -105,6 +107,7 @@ def _put(raw: dict[str, Any], path: str, value: object) -> None:
 
 def write(page: OnePage, raw: Mapping[str, Any]) -> dict[str, str]:
     """Return the boxes of the form that say ``raw``; ``read`` gives the same document again."""
+    raw = page.normal(raw)
     system = "US" if raw.get("display") == "US" else "SI"
     values = {"units": system, "display": system}
     values |= {name: str(raw.get(name) or "") for name in COMMON}
