@@ -122,10 +122,14 @@ def diagrams(body: Body, actions: Actions, sliding: Slide | None = None) -> dict
     if actions.moving is not None and sliding is None:
         _widen(found, actions.moving.written.envelopes, at)
     if sliding is not None:
-        for name, each in (("joints", sliding.flows), ("slips", sliding.slips)):
-            found[name] = {
-                site.id: _band(_sample(each[site.index].coefficients[:, shown], local)) for site in body.sites
-            }
+        flows, slips = {}, {}
+        for site in body.sites:
+            q, slip = (
+                _sample(each[site.index].coefficients[:, shown], local) for each in (sliding.flows, sliding.slips)
+            )
+            sign = _sense(actions, slip, shown, local)
+            flows[site.id], slips[site.id] = _band(sign * q), _band(sign * slip)
+        found["joints"], found["slips"] = flows, slips
     elif actions.shear is not None:
         shear = np.stack([np.reshape(found["shear"][end], at.shape) for end in ("max", "min")])
         found["joints"] = {s.id: _flow(s, body, breaks, shear) for s in body.sites}
@@ -142,6 +146,14 @@ def _widen(found: dict[str, Any], envelopes: Mapping[str, Sequence[Envelope]], a
             band = found[name]
             band["max"] = np.maximum(band["max"], high).tolist()
             band["min"] = np.minimum(band["min"], low).tolist()
+
+
+def _sense(actions: Actions, slip: NDArray[np.float64], shown: NDArray[np.intp], local: NDArray[np.float64]) -> float:
+    """The sign that draws a slip the way of the shear force, whichever piece a joint names first."""
+    if actions.shear is None:
+        return 1.0
+    V = _sample(actions.shear.coefficients[:, shown], local)
+    return -1.0 if V.shape == slip.shape and float((V * slip).sum()) < 0 else 1.0
 
 
 def _shown(breaks: NDArray[np.float64], length: float) -> NDArray[np.intp]:

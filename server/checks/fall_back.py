@@ -71,7 +71,7 @@ def judge_fall_back(
     ]
     proven = len(blocks) == sum(site.spec.role == "fall-back" for site in slide.body.sites)
     proven = proven and all(block["utilisation"] is not None for block in blocks)
-    worst = max(uses, default=None)
+    worst = max(uses, key=lambda use: float(f"{use[0]:.9g}"), default=None)  # of equals the first
     holds_well = worst is not None and not exceeds(worst[0])
     words = _words(proven, holds_well, worst, share)
     result: dict[str, object] = {

@@ -6,7 +6,7 @@ from server.jobs.hindrances import Hindrance, answer, hindrances
 from server.jobs.issuing import Issue, issue, issue_of, issued_pdf, issues
 from server.jobs.moved import Moved, moved
 from server.jobs.revisions import CheckLine, SavedRevision, checks_of, pdf_bytes, revision, revision_of, revisions_of
-from server.jobs.saving import run_again, save
+from server.jobs.saving import run_again, save, sheet_of
 from server.jobs.shop import DISPLAYS, PAPERS, Shop, set_shop, shop
 
 __all__ = [
@@ -44,5 +44,6 @@ __all__ = [
     "save",
     "search",
     "set_shop",
+    "sheet_of",
     "shop",
 ]

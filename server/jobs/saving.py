@@ -226,6 +226,17 @@ def sheet_data(content: Mapping[str, Any], sha256: str) -> sheets.SheetData:
     )
 
 
+def sheet_of(saved: SavedRevision) -> sheets.SheetData:
+    """Return what a further page of a saved revision is drawn from: as it was saved, nothing reckoned."""
+    content = {
+        "heading": saved.heading,
+        "document": saved.document,
+        "result": saved.result,
+        "engine": saved.engine,
+    }
+    return sheet_data(content, saved.sha256)
+
+
 def _store(session: Session, job_id: int, check_id: int | None, kept: Mapping[str, Any], checked: _Checked) -> int:
     heading, result = kept["heading"], kept["result"]
     if check_id is None:

@@ -9,7 +9,7 @@ from collections.abc import Callable, Iterable, Iterator, Mapping, Sequence
 from dataclasses import dataclass, field
 from typing import Any, Literal
 
-from server.sheets import tables
+from server.sheets import slip_parts, tables
 from server.sheets.given import Group, given
 from server.sheets.one_pages import ONE_PAGES
 from server.sheets.steps import working_groups
@@ -73,7 +73,7 @@ def compose(sheet: SheetData, drawings: Drawings) -> Part:
     """The whole sheet as data for the template."""
     return {
         "paper": {"A4": "a4", "Letter": "us-letter"}[sheet.paper],
-        "head": _head(sheet),
+        "head": head_of(sheet),
         "verdict": {
             "word": verdict(sheet.result),
             "utilisation": utilisation(sheet.result.get("utilisation")),
@@ -108,9 +108,11 @@ class Drawings:
     loads: Callable[..., str]
     diagram: Callable[..., str]
     flow: Callable[..., str]
+    slip: Callable[..., str]
 
 
-def _head(sheet: SheetData) -> Part:
+def head_of(sheet: SheetData) -> Part:
+    """What stands in the title block, and runs on at the head of further pages."""
     title = sheet.title or str(sheet.result.get("title") or sheet.document.get("title") or "Untitled check")
     revision = "" if sheet.revision is None else str(sheet.revision)
     names = [f"job {sheet.job}" if sheet.job else "", sheet.mark, f"revision {revision}" if revision else "", title]
@@ -163,6 +165,7 @@ def _member(sheet: SheetData, drawings: Drawings) -> Iterator[tuple[str, Iterabl
     yield "Section properties", tables.section(result, display)
     yield "Reactions, shear, moment", tables.actions(result, display)
     yield "Joints", tables.joints(result, display)
+    yield from slip_parts.blocks(result, display)
     yield "Pieces", tables.pieces(result, display)
     yield "Deflection", tables.deflection(result, display)
 
@@ -220,6 +223,8 @@ def _drawing_parts(result: Mapping[str, Any], display: str, drawings: Drawings) 
             yield {**_figure(svg, "", 0.86), "alt": f"{name}, envelope over the combinations"}
     if (result.get("diagrams") or {}).get("joints"):
         yield {**_figure(drawings.flow(result, display=display), "", 0.86), "alt": "Shear flow in the joints"}
+    if (result.get("diagrams") or {}).get("slips"):
+        yield {**_figure(drawings.slip(result, display=display), "", 0.86), "alt": "Slip of the joints"}
 
 
 def _figure(svg: str, caption: str, share: float) -> Part:

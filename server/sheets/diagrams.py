@@ -47,6 +47,7 @@ QUANTITIES = {
     "deflection_long_term": Quantity("Long-term deflection", "deflection", True, "downward positive, drawn down"),
 }
 FLOW = Quantity("Shear flow", "flow", False, "sign as the shear force")
+SLIP = Quantity("Slip", "deflection", False, FLOW.rule)
 
 
 def diagram_svg(
@@ -96,20 +97,28 @@ def joint_svg(
 
 def flow_svg(result: Mapping[str, Any], *, display: str = "SI", width: float = 640.0, prefix: str = "") -> str:
     """Draw the flow of every joint along the member, one lane a joint (alike joints share one), all to one scale."""
+    return _lanes_svg(result, "joints", FLOW, display, width, prefix)
+
+
+def slip_svg(result: Mapping[str, Any], *, display: str = "SI", width: float = 640.0, prefix: str = "") -> str:
+    """Draw the slip of every joint along the member, one lane a joint (alike joints share one), all to one scale."""
+    return _lanes_svg(result, "slips", SLIP, display, width, prefix)
+
+
+def _lanes_svg(result: Mapping[str, Any], key: str, drawn: Quantity, display: str, width: float, prefix: str) -> str:
     drawing = Drawing(width)
     title = str(result.get("title") or "the member")
-    bands = result["diagrams"].get("joints") or {}
+    what = f"{drawn.name} in the joints"
+    bands = result["diagrams"].get(key) or {}
     at = np.asarray(result["diagrams"]["at"], dtype=float)
     if not bands or not len(at):
         drawing.height = 26
-        drawing.text(8, 17, "Shear flow in the joints: there is no joint, or no load combination asks for it.")
-        return drawing.svg(
-            "diagram flow", f"Joint flow, {title}", f"Shear flow in the joints of {title}: nothing to draw"
-        )
+        drawing.text(8, 17, f"{what}: there is no joint, or no load combination asks for it.")
+        return drawing.svg(f"diagram {drawn.kind}", f"{what}, {title}", f"{what} of {title}: nothing to draw")
     lanes = _lanes(bands)
     high = max(0.0, *(float(lane.high.max()) for lane in lanes))
     low = min(0.0, *(float(lane.low.min()) for lane in lanes))
-    scale = drafting.scale_for("flow", max(high, -low), display)
+    scale = drafting.scale_for(drawn.kind, max(high, -low), display)
     tall = next(lane for most, lane in LANES if len(lanes) <= most)
     bottom = HEAD + len(lanes) * (tall + LETTERS) + 4
     frame = _Plot(result, at, low, high, scale, False, display, width, HEAD, bottom)
@@ -127,11 +136,12 @@ def flow_svg(result: Mapping[str, Any], *, display: str = "SI", width: float = 6
         said = plot.label_lane(drawing, peak, lane, numbers)
         words.append(said)
     several = "; solid greatest, dashed least" if any(np.any(lane.high != lane.low) for lane in lanes) else ""
-    drawing.text(LEFT, 13, f"Shear flow in the joints [{scale.unit}]", bold=True)
-    drawing.text(width - RIGHT, 13, f"{FLOW.rule}; all to one scale{several}", "end", size=9.5)
+    drawing.text(LEFT, 13, f"{what} [{scale.unit}]", bold=True)
+    drawing.text(width - RIGHT, 13, f"{drawn.rule}; all to one scale{several}", "end", size=9.5)
     drawing.height = bottom + 28
-    summary = f"Shear flow in the joints of {title}: {'; '.join(words)}"
-    return drawing.svg("diagram flow", f"Joint flow, {title}", summary, prefix=prefix)
+    summary = f"{what} of {title}: {'; '.join(words)}"
+    head = f"Joint flow, {title}" if drawn.kind == "flow" else f"{what}, {title}"
+    return drawing.svg(f"diagram {drawn.kind}", head, summary, prefix=prefix)
 
 
 @dataclass(frozen=True)

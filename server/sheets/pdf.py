@@ -18,12 +18,13 @@ import typst
 from server import paths
 from server.errors import JointError
 from server.sheets.composition import KINDS, Drawings, SheetData, compose
-from server.sheets.diagrams import diagram_svg, flow_svg
+from server.sheets.diagrams import diagram_svg, flow_svg, slip_svg
 from server.sheets.evidence import EvidenceData, compose_evidence
 from server.sheets.loads_drawing import loads_svg
 from server.sheets.section_drawing import section_svg
+from server.sheets.setting_out_page import compose_setting_out
 
-DRAWINGS = Drawings(section_svg, loads_svg, diagram_svg, flow_svg)
+DRAWINGS = Drawings(section_svg, loads_svg, diagram_svg, flow_svg, slip_svg)
 STANDARD: Final = "a-2b"
 _UNSHOWN = re.compile(r'the text `"(.*?)"` could not be displayed')
 _PROBE = b"""
@@ -105,6 +106,11 @@ def pdf(sheet: SheetData) -> bytes:
     if kind not in KINDS:
         raise JointError(f"There is no PDF for checks of kind {str(kind)[:40]!r} yet; leave the PDF out.")
     return _set("sheet.typ", compose(sheet, DRAWINGS), sheet.saved_at)
+
+
+def setting_out_pdf(sheet: SheetData) -> bytes:
+    """The setting-out page of a check as a PDF file; raises as ``pdf`` does, and where nothing is set out."""
+    return _set("setting_out.typ", compose_setting_out(sheet), sheet.saved_at)
 
 
 def evidence_pdf(page: EvidenceData) -> bytes:

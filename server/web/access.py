@@ -51,6 +51,7 @@ RULES: dict[str, str] = {
     "show_revision": READS,
     "check_pdf": READS,
     "check_document": READS,
+    "setting_out_pdf": READS,
     "compare_revisions": READS,
     "new_check": PREPARES,
     "preview_check": PREPARES,

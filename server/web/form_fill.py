@@ -60,7 +60,7 @@ def fill(raw: Raw, *, simple_case: str, slip_by_itself: bool) -> Values:
     _member(raw.get("member") or {}, values, system)
     _loads(raw, values, system, simple_case)
     _combinations(raw, values)
-    _analysis(raw.get("analysis") or {}, values, slip_by_itself)
+    _analysis(raw.get("analysis") or {}, values, slip_by_itself, system)
     _service(raw.get("service") or {}, values, system)
     return values
 
@@ -201,7 +201,9 @@ def _combinations(raw: Raw, values: Values) -> None:
             values.pop(f"combinations[{index}].factors", None)
 
 
-def _analysis(analysis: Raw, values: Values, slip_by_itself: bool) -> None:
+def _analysis(analysis: Raw, values: Values, slip_by_itself: bool, system: str) -> None:
+    if analysis.get("spacing_step") is not None:
+        values["spacing_step"] = show(analysis["spacing_step"], "size", system)
     slip = analysis.get("slip")
     values["slip"] = "auto" if slip is None or bool(slip) == slip_by_itself else ("yes" if slip else "no")
     values["shear_deformation"] = "no" if analysis.get("shear_deformation") is False else "yes"

@@ -164,7 +164,7 @@ _PARTS: dict[str, tuple[str, ...]] = {
     "loads": ("loads", "load_case"),
     "member": ("held_sideways", "deflection_limit", "supports", "hinges"),
     "basis": tuple(name for name in SINGLES if name.startswith("basis.")),
-    "analysis": ("slip", "shear_deformation", "field", "rules"),
+    "analysis": ("slip", "shear_deformation", "field", "spacing_step", "rules"),
     "service": ("lowest", "highest", "cure", "moisture"),
     "sheet": ("display", "note", "shop_note"),
 }

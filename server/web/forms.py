@@ -370,6 +370,8 @@ def _read_analysis(values: Mapping[str, str], reading: Reading) -> None:
     }
     if values.get("rules"):
         analysis["rules"] = split(values["rules"])
+    if values.get("spacing_step"):
+        analysis["spacing_step"] = with_unit(values["spacing_step"], "size", system_of(values))
     reading.raw["analysis"] = analysis
 
 

@@ -122,6 +122,7 @@ class Panel(Found):
     units: Mapping[str, str]
     shade: str = ""
     outside: str = ""
+    blocks: tuple[tuple[str, tuple[Mapping[str, Any], ...]], ...] = ()
 
 
 def any_panel(result: Result, display: str, shade: str = "") -> Found:
@@ -184,6 +185,9 @@ def panel(result: Result, display: str, shade: str = "") -> Panel:
         units={stored: written.unit(stored, display).text for stored in ("N/mm", "mm", "MPa")},
         shade=shade if shaded else "",
         outside=_outside(shaded, display) if shaded else "",
+        blocks=tuple(
+            (title, tuple(_part(each) for each in parts)) for title, parts in sheets.slip_blocks(result, display)
+        ),
     )
 
 
@@ -210,6 +214,8 @@ def _diagrams(result: Result, display: str) -> tuple[Markup, ...]:
     drawn = [_drawn(sheets.diagram_svg(result, name, display=display)) for name in QUANTITIES if found.get(name)]
     if found.get("joints"):
         drawn.append(_drawn(sheets.flow_svg(result, display=display)))
+    if found.get("slips"):
+        drawn.append(_drawn(sheets.slip_svg(result, display=display)))
     return tuple(drawn)
 
 

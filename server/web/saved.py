@@ -58,6 +58,15 @@ def check_pdf(session: DbSession, check_id: Id, revision: Id) -> Response:
     return Response(jobs.pdf_bytes(session, saved.id), media_type="application/pdf", headers=headers)
 
 
+@router.get("/{check_id}/revisions/{revision}/setting-out.pdf", name="setting_out_pdf")
+def setting_out_pdf(session: DbSession, check_id: Id, revision: Id) -> Response:
+    """Hand out the setting-out page: the fasteners of the saved result alone, drawn and not reckoned."""
+    saved = jobs.revision_of(session, check_id, revision)
+    headers = {"Content-Disposition": f'inline; filename="{file_name(saved)}-setting-out.pdf"'}
+    page_of = sheets.setting_out_pdf(jobs.sheet_of(saved))
+    return Response(page_of, media_type="application/pdf", headers=headers)
+
+
 @router.get("/{check_id}/revisions/{revision}/document.json", name="check_document")
 def check_document(session: DbSession, check_id: Id, revision: Id) -> Response:
     """Hand out the check document as typed, for the command line or another program."""
@@ -115,6 +124,7 @@ def _page(request: Request, session: Session, saved: SavedRevision) -> Response:
         given=sheets.given_values(saved.document, saved.values_used, display),
         used=used,
         notices=[value for value in used if value.today],
+        sets_out=bool(sheets.laid_out(saved.result)),
         panel=any_panel(saved.result, display, request.query_params.get("shade", "")),
         waiting=(),
         faults_on_page=(),
