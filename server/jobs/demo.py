@@ -11,6 +11,7 @@ from server import library, storage
 from server.jobs import headings, saving
 from server.jobs.shop import set_shop
 from server.paths import data_folder
+from server.people import Person
 
 WHO = "demo"
 APPROVER = "M. Invented (demo)"
@@ -36,8 +37,14 @@ def fill(engine: Engine) -> bool:
 
 def _add(session: storage.Session, record: dict[str, Any]) -> None:
     """Add a seed record; what it says is approved gets the approval of an invented person, marked as invented."""
-    approved = record.get("status") == "approved"
+    approved, answers = record.get("status") == "approved", record.pop("answers", {})
+    put_forward = record.pop("put_forward", False)
     made = library.add(session, **(record | {"status": "draft"} if approved else record), made_by=WHO, reason=REASON)
+    for question in library.questions(session, made) if answers else ():
+        text = answers[question.about]
+        library.answer(session, made.key, made.revision, question.key, text, by=Person(0, WHO))
+    if put_forward:
+        library.put_forward(session, made.key, by=Person(0, WHO), reason=REASON)
     if approved:
         library.approve_invented(session, made.key, who=APPROVER)
 

@@ -206,20 +206,21 @@ def _thickness(where: str, tested: Description, used: Description) -> Iterator[D
 
 
 def _temperature(where: str, tested: Description, used: Description, value: Record | None) -> Iterator[Difference]:
-    given = value.values if value is not None else {}
+    given, by = (value.values, tested.what) if value is not None else ({}, tested.what)
     allowed = given.get("service_temperature")
     if allowed is not None:
         span = tuple(units.parse("", each, "temperature") for each in allowed)
-        low, high, shown = span[0], span[1], f"for {span[0]:g} to {span[1]:g} °C"
+        low, high, shown = span[0], span[1], f"stated for {span[0]:g} to {span[1]:g} °C"
+        by = str(value.itself) if value is not None else by
     elif tested.temperatures is not None:
         low, high = tested.temperatures[0] - TEMPERATURE_WITHIN, tested.temperatures[1] + TEMPERATURE_WITHIN
         first, last = tested.temperatures
-        shown = f"at {first:g} °C" if first == last else f"at {first:g} to {last:g} °C"
+        shown = f"tested at {first:g} °C" if first == last else f"tested at {first:g} to {last:g} °C"
     else:
         return
     told = NOT_SAID if used.temperatures is None else "{:g} to {:g} °C".format(*used.temperatures)
     if used.temperatures is None or used.temperatures[0] < low or used.temperatures[1] > high:
-        text = f"Temperature: tested {shown} ({tested.what}), used at {told}. Why does the value hold?"
+        text = f"Temperature: {shown} ({by}), used at {told}. Why does the value hold?"
         yield _difference("temperature", where, shown, told, text)
     softens = number(given.get("glass_transition"), "temperature")
     if softens is not None and used.temperatures and used.temperatures[1] > softens - BELOW_GLASS_TRANSITION:

@@ -83,7 +83,7 @@ def _terms(text: str, adherend: str) -> str | None:
 
 
 def waiting_ids(session: Session, limit: int) -> list[tuple[str, int]]:
-    """Keys and revisions that were put forward and not decided upon since, oldest first."""
+    """Keys and revisions that were put forward and not decided upon since, oldest first; never what only indicates."""
     later = aliased(ActRow)
     decided = exists().where(later.record_revision_id == ActRow.record_revision_id, later.id > ActRow.id)
     query = (
@@ -92,7 +92,7 @@ def waiting_ids(session: Session, limit: int) -> list[tuple[str, int]]:
         .join(RevisionRow, RevisionRow.id == ActRow.record_revision_id)
         .join(HeadRow, HeadRow.record_id == RevisionRow.record_id)
         .where(HeadRow.newest_id == RevisionRow.id, ~decided)
-        .where(HeadRow.status.in_(("draft", "indicative", "provisional")))
+        .where(HeadRow.status.in_(("draft", "provisional")))
         .where(func.json_extract(ActRow.detail, '$."put forward"') == 1)
         .order_by(ActRow.id)
         .limit(limit)

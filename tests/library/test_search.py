@@ -4,6 +4,7 @@ import pytest
 
 from server import library
 from server.storage import Session
+from tests.library.evidence import MADE_OF, add_set, add_value, coupons
 from tests.library.samples import add_bond, put
 
 
@@ -96,3 +97,25 @@ def test_pages(filled: Session) -> None:
     assert keys(filled, limit=2, offset=2) == ["M-001"]
     assert keys(filled, offset=10**30) == []
     assert keys(filled, limit=-1) == []
+
+
+def test_adherend_and_property(session: Session) -> None:
+    behind = add_set(session)
+    add_value(session, behind)
+    add_set(session, name="steel", details=MADE_OF | {"surface_a_material": "steel S235"}, note="no softwood here")
+    assert sorted(keys(session, adherend="softw")) == ["T-001", "T-002", "V-001"]  # ply is softwood on both
+    assert keys(session, adherend="steel s2") == ["T-002"]
+    assert keys(session, adherend="spruce") == []
+    assert keys(session, "R2", adherend="softwood", group=("values", "bonds")) == ["V-001"]
+    assert sorted(keys(session, property="bond shear")) == ["T-001", "T-002", "V-001"]
+    assert keys(session, property="bond shear", status="draft", group="values") == ["V-001"]
+    assert keys(session, property="pull-off") == []
+    assert keys(session, property="glue strength") == []
+    for nonsense in NONSENSE:
+        assert len(keys(session, "softwood", adherend=nonsense)) <= 3
+
+
+def test_a_set_is_found_by_its_lots_and_not_by_its_numbers(session: Session) -> None:
+    add_set(session, values={"coupons": coupons(lot="24-117")})
+    assert keys(session, "24-117") == ["T-001"]
+    assert keys(session, "1.92") == []

@@ -72,7 +72,7 @@ def test_the_number_of_coupons_decides_what_a_value_counts_as(session: Session, 
     found = library.put_forward(session, value.key, by=ANN)
     assert (found.status, found.put_forward) == (status, True)
     assert ("number of coupons" in abouts(session, found)) == (n < 10)
-    assert [each.key for each in library.waiting(session)] == [value.key]
+    assert [each.key for each in library.waiting(session)] == ([value.key] if n >= 5 else [])
 
 
 def test_the_rules_are_the_shops(session: Session) -> None:
