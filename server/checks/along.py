@@ -51,7 +51,7 @@ def leftmost(left: Demand, right: Demand) -> Demand:
 Profile = tuple[NDArray[np.float64], NDArray[np.float64]]  # places, and flows (combinations, places)
 
 
-def _side_by_side(parts: list[Profile]) -> Profile:
+def side_by_side(parts: list[Profile]) -> Profile:
     if not parts:
         return np.zeros(0), np.zeros((0, 0))
     return np.concatenate([x for x, _ in parts]), np.concatenate([q for _, q in parts], axis=1)
@@ -124,7 +124,7 @@ class RigidAlong:
             if self.scan.curve is not None and flow is not None and flow.share is not None:
                 x, V = self.scan.curve.sizes(stretch.start, stretch.end, places)
                 parts.append((x, V * (abs(flow.share) / stretch.section.properties.EI)))
-        return _side_by_side(parts)
+        return side_by_side(parts)
 
     def unsettled(self, site: Site) -> str:
         """The reason that neither a cut, symmetry nor the field settles the share."""
@@ -166,7 +166,7 @@ class SlidingAlong:
     def profile(self, site: Site, places: NDArray[np.float64]) -> Profile:
         """Stretch by stretch, where both pieces of the joint are."""
         curve = self.slide.flows[site.index]
-        return _side_by_side(
+        return side_by_side(
             [
                 curve.sizes(stretch.start, stretch.end, places)
                 for stretch in self.slide.body.stretches

@@ -22,6 +22,7 @@ from server.errors import DocumentError, Fault
 from server.mechanics.contacts import Contact, contacts, in_order, overlap
 from server.mechanics.field import Bond, remembered_field
 from server.mechanics.field_cuts import field_cuts
+from server.mechanics.field_stress import torsion_stress
 from server.mechanics.flow import JointFlow, JointLine, joint_flows, tied
 from server.mechanics.outlines import nearest
 from server.mechanics.polygon import Edges, edges_of
@@ -199,6 +200,16 @@ class CrossSection:
         """What cuts and symmetry alone say, by the joint's place in the document."""
         return {site.index: flow for site, flow in zip(self.sites, self.settled.hand, strict=True)}
 
+    @cached_property
+    def torsion_stress(self) -> dict[int, float]:
+        """Shear stress in each part per torque, by its index; empty without the field."""
+        field = self.settled.field
+        if field is None:
+            return {}
+        alike = [replace(p, G=part.field_modulus) for p, part in zip(self.pieces, self.parts, strict=True)]
+        found = torsion_stress(alike, self.properties, field).tolist()
+        return {part.index: value for part, value in zip(self.parts, found, strict=True)}
+
     def place(self, site: Site) -> int:
         """Of a joint of the document among those of this section."""
         return next(place for place, other in enumerate(self.sites) if other.index == site.index)
@@ -249,8 +260,20 @@ def build(document: documents.MemberDocument) -> Body:
     _refuse_overlaps(parts, edges)
     found = _contacts(document, parts, edges)
     sites = tuple(_sites(document, parts, found))
-    stretches = tuple(_stretches(document.member.length, parts, sites, document.analysis.field))
+    stretches = tuple(_stretches(document.member.length, parts, sites, _wanted(document)))
     return Body(document.member.length, parts, sites, tuple(found), stretches)
+
+
+def _wanted(document: documents.MemberDocument) -> Wanted:
+    """When to solve the field: eccentric loads need it beside whatever was asked for."""
+    if document.analysis.field == "auto" and eccentric(document):
+        return "always"
+    return document.analysis.field
+
+
+def eccentric(document: documents.MemberDocument) -> bool:
+    """Whether any load acts beside the shear centre."""
+    return any(getattr(load, "offset", 0.0) for loads in document.loads.values() for load in loads)
 
 
 def _stiffness_key(site: Site) -> object:

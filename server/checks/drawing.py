@@ -12,6 +12,7 @@ from server import documents
 from server.checks.actions import Actions
 from server.checks.crosssection import Body, Site
 from server.checks.slide import Slide
+from server.checks.twist import Twist, rates_of
 from server.mechanics.beam import Couple, Load, PointLoad
 from server.mechanics.moving_envelope import Envelope
 
@@ -102,7 +103,9 @@ def _load(case: str, load: Load) -> dict[str, object]:
     }
 
 
-def diagrams(body: Body, actions: Actions, sliding: Slide | None = None) -> dict[str, object]:
+def diagrams(
+    body: Body, actions: Actions, sliding: Slide | None = None, twisted: Twist | None = None
+) -> dict[str, object]:
     """Envelopes over the combinations as polylines; every interval keeps both its ends, so jumps stay upright."""
     breaks = actions.breaks
     shown = _shown(breaks, body.length) if sliding is not None else np.arange(len(breaks) - 1)
@@ -132,7 +135,11 @@ def diagrams(body: Body, actions: Actions, sliding: Slide | None = None) -> dict
         found["joints"], found["slips"] = flows, slips
     elif actions.shear is not None:
         shear = np.stack([np.reshape(found["shear"][end], at.shape) for end in ("max", "min")])
-        found["joints"] = {s.id: _flow(s, body, breaks, shear) for s in body.sites}
+        torque = None
+        if twisted is not None:
+            shear, torque = _sample(actions.shear.coefficients, local), _sample(twisted.torque.coefficients, local)
+            found["torque"] = _band(torque)
+        found["joints"] = {s.id: _flow(s, body, breaks, shear, torque) for s in body.sites}
     return found
 
 
@@ -173,13 +180,21 @@ def _band(values: NDArray[np.float64]) -> dict[str, list[float]]:
     return {"max": values.max(axis=0).ravel().tolist(), "min": values.min(axis=0).ravel().tolist()}
 
 
-def _flow(site: Site, body: Body, breaks: NDArray[np.float64], shear: NDArray[np.float64]) -> dict[str, list[float]]:
-    """Flow per interval: shear x the joint's share there, none where the joint is not."""
+def _flow(
+    site: Site,
+    body: Body,
+    breaks: NDArray[np.float64],
+    shear: NDArray[np.float64],
+    torque: NDArray[np.float64] | None,
+) -> dict[str, list[float]]:
+    """Flow per interval: shear x the joint's share there, and its part of the torque; none where the joint is not."""
     middles = 0.5 * (breaks[:-1] + breaks[1:])
-    rate = np.zeros(len(middles))
+    rate, turn = np.zeros((2, len(middles)))
     for stretch in body.stretches:
         flow = stretch.section.flows.get(site.index)
         if flow is not None and flow.share is not None:
             inside = (middles > stretch.start) & (middles < stretch.end)
             rate[inside] = abs(flow.share) / stretch.section.properties.EI
-    return _band(shear * rate[:, None])
+            if torque is not None:
+                rate[inside], turn[inside] = rates_of(site, stretch) or (0.0, 0.0)
+    return _band(shear * rate[:, None] if torque is None else shear * rate[:, None] + torque * turn[:, None])

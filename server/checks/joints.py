@@ -15,6 +15,7 @@ from server.checks.field_steps import beside_hand, write_share
 from server.checks.resistance import Claim, Judge, Strength, Weighed, resistance_formula, worst
 from server.checks.slip_steps import write_sliding_flow
 from server.checks.statics import Statics
+from server.checks.twist import TwistedAlong, write_twisted_flow
 from server.checks.wide_bonds import bond_reductions, surface_reductions
 from server.mechanics.flow import JointFlow
 from server.working import formula
@@ -232,6 +233,9 @@ def _write_flow(check: JointCheck, demand: Demand, body: Body, judge: Judge, sta
     first = _write_first_moment(site, stretch, judge, group)
     if isinstance(check.along, SlidingAlong):
         flow, check.result["slip"] = write_sliding_flow(site, check.along.slide, demand, judge, group)
+    elif isinstance(check.along, TwistedAlong):
+        flow, run = write_twisted_flow(check.along, site, demand, judge, group)
+        check.result.update(run)
     else:
         own = write_share(site, stretch, first, judge, group) if shared.split == "field" else first
         flow = _rigid_flow(demand, stretch, shared, own, combination, judge, group)

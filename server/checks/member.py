@@ -36,6 +36,7 @@ from server.checks.sharing import state_sharing
 from server.checks.slide import Slide, slide
 from server.checks.slip_steps import write_effective, write_method
 from server.checks.thin_webs import add_web_claims
+from server.checks.twist import Twist, TwistedAlong, twist
 from server.errors import DocumentError, Fault
 from server.working import Working, exceeds
 
@@ -101,8 +102,9 @@ def _round(
         for text in doubts(section.settled, [site.id for site in section.sites]):
             findings.miss(text)
     judge = Judge(document, actions, book, findings, Places(document))
-    flows = _flows(document, body, rigid, sliding, findings)
-    joints, pieces, fall_back = _judge(body, scan(body, actions), judge, statics, flows, sliding, upper)
+    twisted = twist(document, body, rigid, findings)
+    flows = _flows(document, body, rigid, sliding, twisted, findings)
+    joints, pieces, fall_back = _judge(body, scan(body, actions), judge, statics, flows, sliding, upper, twisted)
     state_sharing(body, joints, judge)
     add_schedules(document, body, rigid, joints, flows, book)
     sags = check_deflection(document, body, actions, book, findings, upper_stiffness=upper)
@@ -133,7 +135,7 @@ def _round(
         "missing": findings.missing,
         "not_checked": list(NOT_CHECKED),
         "drawing": drawing(document, body, actions),
-        "diagrams": diagrams(body, actions, sliding),
+        "diagrams": diagrams(body, actions, sliding, twisted),
         "steps": book.steps,
         "values_used": _values_used(document, body),
         "engine": ENGINE,
@@ -166,9 +168,15 @@ def _slide(document: documents.MemberDocument, body: Body, rigid: Actions, findi
 
 
 def _flows(
-    document: documents.MemberDocument, body: Body, rigid: Actions, sliding: Slide | None, findings: Findings
+    document: documents.MemberDocument,
+    body: Body,
+    rigid: Actions,
+    sliding: Slide | None,
+    twisted: Twist | None,
+    findings: Findings,
 ) -> Flows:
-    along = RigidAlong(body, scan(body, rigid))
+    scanned = scan(body, rigid)
+    along = RigidAlong(body, scanned) if twisted is None else TwistedAlong(body, scanned, twisted)
     held = glue_gone(document, body, findings)
     gone = None if held is None or rigid.shear is None else SlidingAlong(slide(document, body, rigid, held))
     return Flows(along if sliding is None else SlidingAlong(sliding), along, gone)
@@ -207,10 +215,6 @@ def _name_what_is_to_come(document: documents.MemberDocument, findings: Findings
     """Name every analysis that was asked for and is not to be had."""
     for rule in unknown(document):
         findings.miss(f"rule {rule!r} (analysis.rules): not known here; known are {', '.join(map(repr, KNOWN))}.")
-    for case, loads in document.loads.items():
-        for number, load in enumerate(loads):
-            if getattr(load, "offset", 0.0):
-                findings.miss(f"torsion of load {number + 1} of case {case!r} (offset): not reckoned in this version.")
 
 
 def _judge(
@@ -221,10 +225,11 @@ def _judge(
     flows: Flows,
     sliding: Slide | None,
     upper_stiffness: bool,
+    twisted: Twist | None,
 ) -> tuple[list[JointCheck], list[PieceCheck], FallBack | None]:
     """Gather every claim, weigh all at once, write joints and pieces in the order of the document."""
     joints = claim_joints(body, flows, judge)
-    pieces = claim_pieces(body, scanned, judge, upper_stiffness=upper_stiffness, slide=sliding)
+    pieces = claim_pieces(body, scanned, judge, upper_stiffness=upper_stiffness, slide=sliding, twist=twisted)
     add_web_claims(pieces, body, scanned, judge)
     add_sandwich_claims(joints, pieces, body, judge, upper_stiffness=upper_stiffness)
     add_rib_claims(joints, pieces, body, judge, sliding=sliding is not None)

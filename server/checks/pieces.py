@@ -15,11 +15,13 @@ from server.checks.scan import Scan
 from server.checks.slide import Slide
 from server.checks.slip_pieces import CUT, SlidingShear, fibres, sliding_shear, write_stress
 from server.checks.slip_pieces import MECHANICS as SLIDING
+from server.checks.twist import Twist, twisted_shear
 from server.mechanics.cuts import above
 from server.working import formula
 
 BENDING = "-E*M*(u - u_0)/EI"
 SHEAR = "V*S/(EI*b)"
+TWISTED_SHEAR = "V*S/(EI*b) + T*t_T"
 MECHANICS = "plane sections, E-weighted (any mechanics of materials text)"
 FIBRES = ("top", "bottom", "mean")
 
@@ -38,7 +40,8 @@ class Bent:
 class Sheared:
     """Largest shear stress on horizontal cuts through one piece: stretches x combinations.
 
-    ``cuts`` stretch by stretch where the joints slide, with the piece's place among those of the stretch.
+    ``cuts`` stretch by stretch where the joints slide, with the piece's place among those of the stretch; ``torque``
+    likewise to ``shear`` where loads are eccentric.
     """
 
     stress: NDArray[np.float64]
@@ -46,6 +49,7 @@ class Sheared:
     at: NDArray[np.float64]
     stretch: tuple[int, ...]
     cuts: tuple[tuple[SlidingShear, int], ...] = ()
+    torque: NDArray[np.float64] | None = None
 
 
 @dataclass
@@ -62,16 +66,24 @@ class PieceCheck:
 
 
 def claim_pieces(
-    body: Body, scan: Scan, judge: Judge, *, upper_stiffness: bool, slide: Slide | None = None, fall_back: bool = False
+    body: Body,
+    scan: Scan,
+    judge: Judge,
+    *,
+    upper_stiffness: bool,
+    slide: Slide | None = None,
+    fall_back: bool = False,
+    twist: Twist | None = None,
 ) -> list[PieceCheck]:
     """Stresses of every piece and, where its material has strengths, the limits that are to be weighed.
 
     ``upper_stiffness``: fasteners carry a joint and slip is not reckoned, so the stresses are estimates
     and no limit is judged on them. ``slide``: the stresses are those of the member whose joints slide; ``fall_back``:
-    judged with the factor for what stands with the glue gone.
+    judged with the factor for what stands with the glue gone; ``twist``: torsion adds to their shear.
     """
     if slide is None:
-        bent, sheared = _bend(body, scan), _shear(body, scan)
+        bent = _bend(body, scan)
+        sheared = _shear(body, scan) if twist is None else _shear_twisted(body, twist)
     else:
         bent, sheared = _bend_sliding(body, slide), _shear_sliding(body, slide)
     judge = judge.with_divisor(judge.document.basis.fall_back()) if fall_back else judge
@@ -169,6 +181,17 @@ def _shear(body: Body, scan: Scan) -> dict[int, Sheared]:
     for index, each in rows.items():
         stresses, shears, places, stretches = zip(*each, strict=True)
         found[index] = Sheared(np.array(stresses), np.array(shears), np.array(places), stretches)
+    return found
+
+
+def _shear_twisted(body: Body, twist: Twist) -> dict[int, Sheared]:
+    """Shear on horizontal cuts and by torsion together, piece by piece."""
+    found = {}
+    for part in body.parts:
+        stretches = body.stretches_of(part)
+        if stretches:
+            each = twisted_shear(twist, part.index, stretches)
+            found[part.index] = Sheared(each.stress, each.shear, each.at, each.stretch, torque=each.torque)
     return found
 
 
@@ -324,20 +347,28 @@ def _write_shear(check: PieceCheck, sheared: Sheared, body: Body, judge: Judge, 
         _write_sliding_shear(check, sheared, entry, row, body, judge, group)
         return
     stretch = body.stretches[sheared.stretch[entry]]
-    cut = stretch.section.cuts[check.part.index]
-    _write_cut(stretch, cut.up, judge, group)
+    section = stretch.section
+    cut = section.cuts[check.part.index]
+    if section.settled.field is None:
+        _write_cut(stretch, cut.up, judge, group)
+    values: dict[str, tuple[float, str]] = {
+        "V": (float(sheared.shear[entry, row]), "N"),
+        "S": (abs(cut.first_moment), "N*mm"),
+        "b": (cut.width, "mm"),
+        "EI": (section.properties.EI, "N*mm2"),
+    }
+    of = "b of all pieces cut there" if section.settled.field is None else "S and b of this piece alone, by the field"
+    if sheared.torque is not None:
+        values["T"] = (float(sheared.torque[entry, row]), "N*mm")
+        values["t_T"] = (section.torsion_stress[check.part.index], "1/mm3")
+        of = f"{of}; t_T: stress of a unit torque, as sizes, short of the peaks at inward corners"
     check.result["shear_stress"] = judge.working.step(
-        "Largest shear stress on a horizontal cut",
+        "Largest shear stress on a horizontal cut" + ("" if sheared.torque is None else ", with that of torsion"),
         "tau",
-        SHEAR,
-        {
-            "V": (float(sheared.shear[entry, row]), "N"),
-            "S": (abs(cut.first_moment), "N*mm"),
-            "b": (cut.width, "mm"),
-            "EI": (stretch.section.properties.EI, "N*mm2"),
-        },
+        SHEAR if sheared.torque is None else TWISTED_SHEAR,
+        values,
         unit="MPa",
-        source=f"{MECHANICS}; cut {cut.up:.6g} mm up, b of all pieces cut there",
+        source=f"{MECHANICS}; cut {cut.up:.6g} mm up, {of}",
         group=group,
     )
 
