@@ -55,8 +55,8 @@ def twist(document: documents.MemberDocument, body: Body, actions: Actions, find
         return None
     if actions.moving is not None:
         findings.miss(
-            "torsion of eccentric loads (offset): not reckoned together with moving axles; place the axles as point loads "
-            "with their offsets."
+            "torsion of eccentric loads (offset): not reckoned together with moving axles; place the axles as point "
+            "loads with their offsets."
         )
         return None
     fields = [stretch.section.settled.field for stretch in body.stretches]
