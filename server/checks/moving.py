@@ -25,6 +25,8 @@ from server.mechanics.moving_envelope import Envelope, Runner, standing
 Array = NDArray[np.float64]
 Ranges = tuple[tuple[float, float], ...]
 STEPS = 36  # positions over the reach of a train at which slip is looked at first
+ARMS = (0.0, 40.0, -40.0, 400.0, -400.0)  # mm, between moment and shear where a bond ends
+INSIDE = (0.0, 6.0, -6.0, 12.0, -12.0, 25.0, -25.0, 60.0, -60.0, 150.0, -150.0)  # mm, of an axle from such an end
 SAME_PLACE = 1e-6  # mm, within which axles stand alike
 
 
@@ -175,6 +177,7 @@ def _rows(question: Question, k: int) -> Iterator[Row]:
     if question.strength[k]:
         yield from _of(k, question.envelope(k, "shear"), (*question.shear, *question.wants.ranges))
         yield from _of(k, question.envelope(k, "moment"), question.moment)
+        yield from _about_ends(question, k)
     if question.deflection[k]:
         yield from _of(k, question.envelope(k, "deflection"), question.spans)
         if question.soft is not None:
@@ -189,6 +192,46 @@ def _of(k: int, envelope: Envelope, ranges: Ranges) -> Iterator[Row]:
     for pair in envelope.extremes(ranges):
         for extreme in pair:
             yield Row(k, extreme.placings)
+
+
+def _about_ends(question: Question, k: int) -> Iterator[Row]:
+    """Where pieces begin and stop: the worst positions for weighted sums of moment and shear there.
+
+    The end of a bond answers to both at once, M + l V with a length l of its own; what stays on the member does not
+    change the worst position for one place, so the lines of the moving load alone decide. The bond picks its force up
+    over a short length, so an axle is worst somewhat inside the end: each one stands at several short distances too.
+    """
+    length, influence = question.beam.length, question.influence
+    ends = [end for _, end in question.moment if end < length]
+    if not ends:
+        return
+    x = np.repeat(np.array(ends), 2 * len(ARMS))
+    right = np.tile(np.repeat([False, True], len(ARMS)), len(ends))
+    arms = np.tile(np.array(ARMS), 2 * len(ends))[:, None, None]
+    moment, shear = influence.moment(x, right), influence.shear(x, right)
+    runs = []
+    for mover in question.moves(k):
+        f = float(question.factors[k, mover.case])
+        left, after = f * (moment.left + arms * shear.left), f * (moment.right + arms * shear.right)
+        runs.append((mover, travel(Lines(x, left, after), influence.knots, mover.train)))
+    for index in range(len(x)):
+        for sense in (0, 1):
+            placed = [placing(mover.train, run[sense], index, influence, ends) for mover, run in runs]
+            yield Row(k, tuple(placed))
+            if index % len(ARMS) == 0 and not right[index]:
+                yield from _beside(k, x[index], [mover for mover, _ in runs], placed)
+
+
+def _beside(k: int, end: float, movers: Sequence[Mover], placed: Sequence[Placing]) -> Iterator[Row]:
+    """Every axle at short distances from an end, the other trains as they stand."""
+    for position, mover in enumerate(movers):
+        for turned, faced in ((False, mover.train), (True, mover.train.turned)):
+            for offset in faced.offsets:
+                for distance in INSIDE:
+                    moved = list(placed)
+                    moved[position] = stand(mover.train, end + distance - offset, turned=turned)
+                    if moved[position].at:
+                        yield Row(k, tuple(moved))
 
 
 def _of_reactions(question: Question, k: int) -> Iterator[Row]:

@@ -272,3 +272,25 @@ def test_load_before_bonding_with_axles_is_not_passed_over():
     found = run(RAIL | {"analysis": {"before_bonding": ["dead"]}})
     assert found["verdict"] != "pass"
     assert any("moving axles and load before bonding" in text for text in found["missing"])
+
+
+def test_the_ends_of_bonds_inside_the_member_find_their_worst_position():
+    document = copy.deepcopy(RAIL)
+    document["adhesives"]["glue"] |= {
+        "shear_modulus": 300,
+        "E": 800,
+        "thickness": 0.5,
+        "shear_yield": 8,
+        "peel_strength": 4,
+    }
+    document["section"]["pieces"]["plate"] = {
+        "shape": "rectangle", "width": 120, "depth": 20, "at": [0, 200], "material": "oak", "from": 1000, "to": 3000,
+    }  # fmt: skip
+    document["section"]["joints"].append({"between": ["upper", "plate"], "adhesive": "glue"})
+    found, still = run(document), standing(document, 75)
+    assert found["ends"]
+    for number, end in enumerate(found["ends"]):
+        for key in ("end_shear", "end_peel"):
+            if isinstance(end.get(key), int | float):
+                worst = max(abs(s["ends"][number][key]) for s in still)
+                assert abs(end[key]) >= worst * (1 - 2e-3), (number, key)
