@@ -5,6 +5,7 @@ from pathlib import Path
 
 import pytest
 from alembic.autogenerate import compare_metadata
+from alembic.config import Config
 from alembic.runtime.migration import MigrationContext
 from sqlalchemy import Engine, text
 
@@ -78,3 +79,36 @@ def test_a_file_of_a_newer_version_is_refused(book: Engine) -> None:
         session.execute(text("UPDATE alembic_version SET version_num = '9999'"))
     with pytest.raises(storage.StorageError, match="newer version"):
         storage.migrate(book)
+
+
+def test_a_book_of_the_version_before_evidence_keeps_its_records(tmp_path: Path) -> None:
+    from alembic import command
+
+    from server import library
+    from server.storage import upgrade
+
+    engine = storage.engine(tmp_path / "book.db")
+    config = Config()
+    config.set_main_option("script_location", str(Path(upgrade.__file__).parent / "migrations"))
+    with storage.writing(engine) as session:
+        config.attributes["connection"] = session.connection()
+        command.upgrade(config, "0002")
+        session.execute(text("INSERT INTO records VALUES (1, 'B-001', 'bonds', '')"))
+        for n, status in ((1, "approved"), (2, "draft")):
+            row = f"({n}, 1, {n}, 'Epoxy {n}', '{status}', '{{\"shear_strength\": {n}}}', "
+            row += "'{\"surface_a_material\": \"spruce\"}', 'report 1', '', 'Ann', '', '')"
+            session.execute(text(f"INSERT INTO record_revisions VALUES {row}".replace(":", r"\:")))
+        session.execute(text("INSERT INTO record_search (rowid, key, name, words) VALUES (1, 'B-001', 'Epoxy 2', 'w')"))
+    storage.migrate(engine)
+    with storage.reading(engine) as session:
+        record = library.get(session, "B-001")
+        assert (record.revision, record.status, record.in_force, record.in_force_status) == (2, "draft", 1, "approved")
+        assert (record.links, record.chain) == ({}, ())
+        for found in (
+            library.search(session, "epoxy"),
+            library.search(session, adherend="spruce"),
+            library.search(session, status="approved"),
+        ):
+            assert [each.key for each in found.records] == ["B-001"]
+        library.edit(session, "B-001", note="later", made_by="Bo")
+        assert library.get(session, "B-001").revision == 3
