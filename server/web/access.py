@@ -5,7 +5,7 @@ A person may have several roles; each includes reading. ``NOBODY`` marks what is
 
 from __future__ import annotations
 
-from server.people import APPROVES, KEEPS_THE_BOOK, PREPARES, READS, Person
+from server.people import APPROVES, CHECKS, KEEPS_THE_BOOK, PREPARES, READS, Person
 
 NOBODY = "nobody"
 
@@ -66,6 +66,9 @@ RULES: dict[str, str] = {
     "edit_check": PREPARES,
     "revise_check": PREPARES,
     "run_again": PREPARES,
+    "answer_hindrance": PREPARES,
+    "issue_check": CHECKS,
+    "issued_pdf": READS,
     # the library
     "list_records": READS,
     "show_record": READS,

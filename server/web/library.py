@@ -176,6 +176,7 @@ def _form(
         links=record_form.links(group),
         link_groups=ALL[group].links,
         pins=record_form.pins(group),
+        pinned_now=[role for role in list(record_form.pins(group))[2:] if values.get(f"links.{role}")],
         factors=record_form.factor_rows(values) if record_form.has_chain(group) else (),
         factor_boxes=record_form.FACTOR_BOXES,
         offered=offered(session),

@@ -243,8 +243,8 @@ def content(
         }
     else:
         for box in _all(group):
-            text = _plain(_at(values, box.place))
-            filled[box.name] = text + (_unit_after(_at(values, box.place), box) if text else "")
+            text = _plain(at(values, box.place))
+            filled[box.name] = text + (_unit_after(at(values, box.place), box) if text else "")
     filled |= {f"details.{name}": text for name, text in details.items()}
     return filled | {f"links.{role}": _link_text(target) for role, target in linked.items()}
 
@@ -320,7 +320,7 @@ def shown(record: Record) -> list[tuple[str, str]]:
     """Return the record's values as typed: (label, text) for every box that says something."""
     found = []
     for box in _all(record.group):
-        value = _at(record.values, box.place)
+        value = at(record.values, box.place)
         if value is None or value == "" or value == {}:
             continue
         if (record.group, box.name) == ("values", "value"):
@@ -329,7 +329,7 @@ def shown(record: Record) -> list[tuple[str, str]]:
             text = ", ".join(f"{name} {_plain(factor)}" for name, factor in value.items())
         else:
             text = _plain(value) + _unit_after(value, box)
-        found.append((box.label, text))
+        found.append((box.label, _shown(text)))
     return found
 
 
@@ -357,7 +357,8 @@ def in_short(record: Record) -> str:
     return "; ".join([*(f"{label} {text}" for label, text in numbers[:3]), *([pinned] if pinned else [])])
 
 
-def _at(values: Mapping[str, Any], place_: str) -> Any:
+def at(values: Mapping[str, Any], place_: str) -> Any:
+    """Return what stands at a place such as 'strengths.bending' or 'thickness[0]'; None where nothing does."""
     value: Any = values
     for part in re.findall(r"\w+", place_):
         if isinstance(value, Mapping):
@@ -375,6 +376,11 @@ def _plain(value: object) -> str:
     if isinstance(value, bool):
         return "yes" if value else "no"
     return f"{value:g}" if isinstance(value, float) else str(value)
+
+
+def _shown(text: str) -> str:
+    """A typed quantity as people read it."""
+    return text.replace("degC", "°C").replace("degF", "°F")
 
 
 def _unit_after(value: object, box: Box) -> str:

@@ -2,7 +2,8 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+import math
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 from typing import Any
 
@@ -10,10 +11,12 @@ from fastapi import Request
 from fastapi.responses import Response
 from markupsafe import Markup
 
-from server import library, sheets
+from server import library, sheets, units
 from server.errors import InputError
 from server.library import ALL, Link, Record, reading
+from server.library.obstacles import others_who_may
 from server.mechanics.control_chart import Chart, control_chart
+from server.people import APPROVES, Person
 from server.storage import Session
 from server.web import record_form
 from server.web.coupon_panel import as_measured, panel
@@ -60,6 +63,8 @@ def show(request: Request, session: Session, record: Record, *, errors: Mapping[
     result = result_of(record, coupon_set) if coupon_set is not None else None
     points, chart = history_of(session, record)
     person = signed(request)
+    obstacles = library.obstacles(session, record, person) if _may_be_approved(record) else []
+    lot = library.lot_uses(session, str(record.values["number"])) if record.group == "lots" else None
     return page(
         request,
         "library/show.html",
@@ -74,18 +79,21 @@ def show(request: Request, session: Session, record: Record, *, errors: Mapping[
         links=_standings(record, targets, pinned=False),
         pins=_standings(record, targets, pinned=True),
         chain=record.chain,
-        multiplication=library.multiplication(record.chain, _strength(record, targets)),
+        multiplication=_multiplication(record, targets),
         coupon_set=coupon_set,
         panel=panel(result, _display(coupon_set)) if result is not None else None,
         history=Markup(sheets.history_svg(points, chart, display=_display(coupon_set))) if len(points) > 1 else "",  # noqa: S704 -- our own drawing
         history_says=sheets.in_words(points, chart) if chart is not None else (),
         questions=library.questions(session, record),
-        obstacles=library.obstacles(session, record, person) if _may_be_approved(record) else (),
+        obstacles=obstacles,
+        may_approve=_may_be_approved(record) and _approvable(session, person, obstacles),
         forward=_may_be_put_forward(record),
         steps=[(status, IN_WORDS[status]) for status in NEXT[record.status]],
         acts=library.acts(session, record.key, record.revision),
         revisions=library.revisions(session, record.key),
-        uses=library.where_used(session, record.key) if group.section else (),
+        uses=library.standing_on(session, record.key) if record.group != "lots" else lot.uses if lot else (),
+        lot=lot,
+        linked_from=_linked_from(session, record),
         errors=Boxes(errors or {}),
         typed=Boxes(values or {}),
         shares=SHARES,
@@ -125,17 +133,53 @@ def _standings(record: Record, targets: Mapping[Link, Record], *, pinned: bool) 
     return found
 
 
-def _strength(record: Record, targets: Mapping[Link, Record]) -> str:
-    """The first strength of a record, for the line of multiplication."""
-    for link in record.pins.values():
-        if link in targets:
-            return record_form.value_text(targets[link])
-    shown = [text for label, text in record_form.shown(record) if text[:1].isdecimal() and "strength" in label.lower()]
-    return shown[0] if shown else ""
+def _linked_from(session: Session, record: Record) -> list[tuple[str, Link]]:
+    """What links to a record, of each other record its newest revision that does, with the role in words."""
+    newest: dict[tuple[str, str], Link] = {}
+    for role, link in library.links_to(session, record.key):
+        newest[role, link.key] = link
+    return [(_role_words(role), link) for (role, _), link in newest.items()]
+
+
+def _role_words(role: str) -> str:
+    head, _, tail = role.partition(":")
+    if head == "value":
+        return f"as its {tail.replace('strengths.', '').replace('_', ' ')}"
+    return f"in its factor {tail}" if head == "factor" else f"as its {LINKS.get(role, role).lower()}"
+
+
+def _multiplication(record: Record, targets: Mapping[Link, Record]) -> str:
+    """The chain as one line on the record's first strength: '1.58 MPa × 0.85 (moisture) = 1.34 MPa'."""
+    if not record.chain:
+        return ""
+    field, kind = STRENGTHS[record.group]
+    pin = record.pins.get(field)
+    pinned = targets.get(pin) if pin is not None else None
+    value = pinned.values.get("value") if pinned is not None else record_form.at(record.values, field)
+    if value is None:
+        return library.multiplication(record.chain)
+    number, product = units.parse("", value, kind), math.prod(factor.value for factor in record.chain)
+    line = library.multiplication(record.chain, units.show(number, kind))
+    return f"{line.rsplit(' = ', 1)[0]} = {units.show(number * product, kind)}"
+
+
+STRENGTHS = {
+    "bonds": ("shear_strength", "stress"),
+    "fasteners": ("shear_resistance", "force"),
+    "materials": ("strengths.bending", "stress"),
+}
+"""The value that a record's chain is shown on."""
 
 
 def _may_be_approved(record: Record) -> bool:
     return record.status in ("draft", "indicative", "provisional", "on hold")
+
+
+def _approvable(session: Session, person: Person, obstacles: Sequence[library.Obstacle]) -> bool:
+    """Whether nothing stands against it, or only who asks, in a shop where an outside checker may look it over."""
+    if any(each.about != "person" for each in obstacles):
+        return False
+    return not obstacles or (person.may(APPROVES) and not others_who_may(session, person, APPROVES))
 
 
 def _may_be_put_forward(record: Record) -> bool:

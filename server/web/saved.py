@@ -14,10 +14,12 @@ from fastapi.responses import Response
 from server import jobs, library, sheets
 from server.jobs import Moved, SavedRevision
 from server.storage import Session
+from server.web import issue_panel
 from server.web.inputs import DbSession, FormValues, Id
 from server.web.pages import page, see
 from server.web.panel import any_panel
 from server.web.steps import working_of
+from server.web.who import signed
 
 router = APIRouter(prefix="/checks", include_in_schema=False)
 
@@ -36,18 +38,20 @@ class ValueUsed:
     status: str
     source: str
     today: str
+    lineage: tuple[tuple[str, Mapping[str, Any]], ...] = ()
+    """Each value that was pinned to it, with the value's record and the coupon set behind it."""
 
 
 @router.get("/{check_id}", name="show_check")
 def show_check(request: Request, session: DbSession, check_id: Id) -> Response:
     """Show the newest revision of a check."""
-    return _page(request, session, jobs.revision_of(session, check_id))
+    return show(request, session, jobs.revision_of(session, check_id))
 
 
 @router.get("/{check_id}/revisions/{revision}", name="show_revision")
 def show_revision(request: Request, session: DbSession, check_id: Id, revision: Id) -> Response:
     """Show one saved revision as it was stored."""
-    return _page(request, session, jobs.revision_of(session, check_id, revision))
+    return show(request, session, jobs.revision_of(session, check_id, revision))
 
 
 @router.get("/{check_id}/revisions/{revision}/sheet.pdf", name="check_pdf")
@@ -112,12 +116,20 @@ def _flipped(moved: Iterable[Moved]) -> Moved | None:
     return next((each for each in moved if each.what == "verdict"), None)
 
 
-def _page(request: Request, session: Session, saved: SavedRevision) -> Response:
+def show(
+    request: Request,
+    session: Session,
+    saved: SavedRevision,
+    errors: Mapping[str, str] | None = None,
+    values: Mapping[str, str] | None = None,
+) -> Response:
+    """Return the page of a saved revision; with ``errors``, what was refused on it comes back as typed."""
     display = str(saved.heading["display"])
     used = list(_values_used(session, saved.values_used))
     return page(
         request,
         "check/saved.html",
+        status=422 if errors else 200,
         job=jobs.get(session, saved.job_id),
         saved=saved,
         revisions=jobs.revisions_of(session, saved.check_id),
@@ -130,6 +142,7 @@ def _page(request: Request, session: Session, saved: SavedRevision) -> Response:
         faults_on_page=(),
         swap=False,
         working=working_of({**saved.result, "display": display}),
+        **issue_panel.context(session, saved, signed(request), errors, values),
     )
 
 
@@ -144,6 +157,7 @@ def _values_used(session: Session, values_used: Mapping[str, Any]) -> Iterable[V
                 status=str(entry.get("status") or ""),
                 source=str(entry.get("source") or ""),
                 today=_today(session, entry),
+                lineage=tuple((entry.get("lineage") or {}).items()),
             )
 
 

@@ -218,7 +218,7 @@ def _way_of(coupons: Sequence[Mapping[str, Any]], system: str) -> str:
     for coupon in coupons:
         for key, way in WAYS.items():
             text = coupon.get(way.field)
-            if isinstance(text, str) and text.endswith(f" {way.unit}"):
+            if isinstance(text, str) and _bare(text, way) != text:
                 counted[key] = counted.get(key, 0) + 1
     if counted:
         return max(counted, key=lambda key: counted[key])
@@ -230,10 +230,21 @@ def _way_of(coupons: Sequence[Mapping[str, Any]], system: str) -> str:
 def _without(reading: object, way: Way) -> str:
     """A reading without the unit that the grid says anyway; a plain number says its own (N or MPa)."""
     if isinstance(reading, str):
-        return reading.removesuffix(f" {way.unit}")
+        return _bare(reading, way)
     own = "N" if way.field == "load" else "MPa"
     text = _text(reading, "")
     return text if own == way.unit else f"{text} {own}"
+
+
+_SAME_UNIT = {"MPa": ("N/mm2", "N/mm²"), "kgf": ("kp",), "kgf/cm2": ("kgf/cm²", "kp/cm2")}
+
+
+def _bare(reading: str, way: Way) -> str:
+    """A reading without the unit of the grid, however that is spelled."""
+    for unit in (way.unit, *_SAME_UNIT.get(way.unit, ())):
+        if reading.endswith(f" {unit}"):
+            return reading.removesuffix(f" {unit}")
+    return reading
 
 
 def _text(value: object, unit: str) -> str:

@@ -334,7 +334,7 @@ class TestPlainRecords:
         made = client.post("/library/new/bonds", data=bond)
         assert made.status_code == 303, text_of(made)
         text = text_of(client.get(made.headers["location"]))
-        assert "1.275 MPa × 0.85 (moisture) × 0.6 (long term) = 1.275 MPa × 0.51" in text
+        assert "1.275 MPa × 0.85 (moisture) × 0.6 (long term) = 0.6503 MPa" in text
         assert "V-001 rev 1" in text
         assert "A-001 rev 1 Brackwater R2" in text
         twice = client.post("/library/new/bonds", data=bond | {"chain[1].name": "moisture"})
