@@ -81,7 +81,8 @@ def write_joint(check: JointCheck, weighed: list[Weighed | None], body: Body, ju
             _, slip = write_sliding_flow(site, check.gone.slide, check.fastening.demand, judge, group_of)
             check.result["slip"] = slip if check.result["slip"] is None else check.result["slip"]
         check.result["spacing_needed"] = write_fasteners(check.fastening, force, body, judge, group_of)
-        limits += [] if force is None else [judge.write(force, group_of)]
+        if force is not None:
+            limits.append({**judge.write(force, group_of), "state": "glue gone" if check.gone is not None else ""})
     known = [w for w in weighed if w is not None]
     limits += [judge.write(w, group) for w in known if w.claim.symbol not in (*BOND, "F")]
     check.result["limits"] = limits

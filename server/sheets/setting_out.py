@@ -14,7 +14,7 @@ from server.sheets import drafting
 from server.sheets.section_view import joint_numbers
 from server.sheets.svg import Drawing, shorten
 from server.sheets.tables import column, table
-from server.sheets.values import DASH, unit
+from server.sheets.values import DASH, in_units, unit
 
 Part = dict[str, Any]
 Result = Mapping[str, Any]
@@ -245,7 +245,7 @@ def schedule(result: Result, display: str) -> Iterator[Part]:
     """The zones that the flow asks for, beside the spacing given; in words where there are none."""
     length = unit("mm", display)
     rows = []
-    notes = []
+    notes: dict[str, list[str]] = {}
     numbers = joint_numbers(result) if result.get("drawing") else {}
     alike: dict[str, list[int]] = {}
     zones: dict[str, Any] = {}
@@ -257,7 +257,7 @@ def schedule(result: Result, display: str) -> Iterator[Part]:
             alike.setdefault(key, []).append(number)
             zones[key] = listed
         elif joint.get("schedule_note"):
-            notes.append(f"Joint {number}: no zones, for {joint['schedule_note']}")
+            notes.setdefault(str(joint["schedule_note"]), []).append(str(number))
     for key, joints in alike.items():
         name = ", ".join(str(each) for each in joints)
         for zone in zones[key]:
@@ -279,4 +279,5 @@ def schedule(result: Result, display: str) -> Iterator[Part]:
         ]  # fmt: skip
         yield table(columns, rows)
     if notes:
-        yield {"kind": "list", "items": notes}
+        items = [f"Joint {', '.join(joints)}: no zones; {in_units(note, display)}" for note, joints in notes.items()]
+        yield {"kind": "list", "items": items}

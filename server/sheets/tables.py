@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Iterator, Mapping, Sequence
 from typing import Any
 
-from server.sheets.values import DASH, Unit, quantity, unit, utilisation
+from server.sheets.values import DASH, Unit, quantity, said, unit, utilisation
 from server.working import exceeds, readable
 
 Part = dict[str, Any]
@@ -233,7 +233,7 @@ def limit_rows(owner: Result, length: Unit, display: str) -> Iterator[list[Cell]
     for limit in owner.get("limits") or ():
         own = str(limit.get("demand_unit") or "MPa")
         yield [
-            str(limit.get("what", "")),
+            said(limit),
             quantity(limit.get("strength"), own, display),
             quantity(limit.get("resistance"), own, display),
             quantity(limit.get("demand"), own, display),

@@ -94,14 +94,14 @@ def governing(result: Mapping[str, Any], display: str) -> str:
     what, limit = found
     place = quantity(limit.get("at"), "mm", display)
     return (
-        f"{what}: {utilisation(limit.get('utilisation'))} of what is allowed, {place} from the left end, "
-        f"combination {limit.get('combination', DASH)}"
+        f"{what}: {utilisation(limit.get('utilisation'))} of what is allowed, {place} from the left end"
+        f"{': ' + limit['place'] if limit.get('place') else ''}, combination {limit.get('combination', DASH)}"
     )
 
 
 def _governing_limit(result: Mapping[str, Any]) -> tuple[str, Mapping[str, Any]] | None:
     limits = [
-        (f"{word} {part['id']}, {limit['what']}", limit)
+        (f"{word} {part['id']}, {said(limit)}", limit)
         for word, group in (("Joint", "joints"), ("Piece", "pieces"))
         for part in result.get(group, ())
         for limit in part.get("limits", ())
@@ -111,4 +111,11 @@ def _governing_limit(result: Mapping[str, Any]) -> tuple[str, Mapping[str, Any]]
         for each in result.get("deflection_limits", ())
     ]
     known = [(what, limit) for what, limit in limits if isinstance(limit.get("utilisation"), int | float)]
-    return max(known, key=lambda each: float(each[1]["utilisation"]), default=None)
+    return max(
+        known, key=lambda each: float(f"{float(each[1]['utilisation']):.9g}"), default=None
+    )  # of equals the first
+
+
+def said(limit: Mapping[str, Any]) -> str:
+    """What a limit is, with the state it is judged in where that is not the member as built."""
+    return f"{limit['what']}, {limit['state']}" if limit.get("state") else str(limit.get("what", ""))
