@@ -116,7 +116,7 @@ class View:
 def joint_numbers(result: Mapping[str, Any]) -> dict[str, int]:
     """Numbers of the joints as in circles on the drawing: their order in the result."""
     names = [joint["id"] for joint in result.get("joints") or ()]
-    names += [contact["id"] for contact in result["drawing"]["contacts"] if contact["joined"]]
+    names += [contact["id"] for contact in result["drawing"].get("contacts", ()) if contact["joined"]]
     return {name: i + 1 for i, name in enumerate(dict.fromkeys(names))}
 
 
