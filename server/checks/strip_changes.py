@@ -111,7 +111,7 @@ def words(check: EndCheck, others: Sequence[EndCheck], findings: Findings) -> No
     row = int(check.stresses.peak_shear.argmax()) if check.governing is None else check.governing.row
     taken = check.result["force_to_pick_up"]
     pull, reach = hold_down(check)
-    held = f" End fasteners would have to hold {pull:.4g} N within {reach:.3g} mm." if pull > 0 else ""
+    held = f" End fasteners would have to hold {pull:.0f} N within {reach:.3g} mm." if pull > 0 else ""
     told = "; ".join(
         f"{c['what']} ({c['utilisation']:.2f})" for c in check.changes if isinstance(c["utilisation"], float)
     )
@@ -123,9 +123,9 @@ def words(check: EndCheck, others: Sequence[EndCheck], findings: Findings) -> No
     )
     findings.caution(
         "end of a bonded piece",
-        f"{end.title[:1].upper() + end.title[1:]}: {bonded.part.name} must pick up {taken:.4g} N there at once: shear "
+        f"{end.title[:1].upper() + end.title[1:]}: {bonded.part.name} must pick up {taken:.0f} N there at once: shear "
         f"{check.stresses.peak_shear[row]:.3g} MPa and peel {check.stresses.peak_peel[row]:.3g} MPa, against a mean of "
         f"{check.result['mean_shear_at_end']:.3g} MPa.{other}{changes}{held} Linear elastic, an upper estimate: the "
-        "wood's own shear and a fillet of adhesive relieve the end.",
+        "softer piece's own shear and a fillet of adhesive relieve the end.",
         answer=True,
     )

@@ -124,7 +124,7 @@ def _named(fault: Fault, strip: str) -> Fault:
 
 
 def _verdict(ends: MemberEnds, findings: Findings) -> dict[str, object]:
-    worst = max(ends.governs, key=lambda each: each.utilisation, default=None)
+    worst = max(ends.governs, key=lambda each: float(f"{each.utilisation:.9g}"), default=None)  # of equals the first
     if worst is None and not findings.missing:
         findings.miss("anything to judge: no combination is for strength, or nothing acts after bonding.")
     failed = worst is not None and exceeds(worst.utilisation)

@@ -316,8 +316,8 @@ def _near(end: End, found: Stresses, row: int) -> dict[str, list[float]]:
     at = found.course.at
     inward = at if end.side == "left" else at[-1] - at
     shear = np.abs(found.course.shear[:, row])
-    settled = inward[shear > 0.02 * shear.max()]
-    reach = min(max(float(settled.max(initial=0.0)) * 1.2, at[-1] / 200), at[-1] / 2)
+    high = inward[shear > 0.15 * shear.max()] if shear.max() > 0 else inward[:1]
+    reach = min(max(float(high.max(initial=0.0)) * 1.8, at[-1] / 500), at[-1] / 2)
     kept = inward <= reach
     order = np.argsort(inward[kept])
     sign = 1.0 if end.side == "left" else -1.0

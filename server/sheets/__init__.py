@@ -1,5 +1,6 @@
 """Results drawn for people: PDF, terminal, given values and drawings. It draws stored results and never reckons."""
 
+from server.sheets.bond_ends import blocks as end_blocks
 from server.sheets.composition import STANDING_CAUTION, SheetData, given_values, headline
 from server.sheets.diagrams import diagram_svg, flow_svg, joint_svg, slip_svg
 from server.sheets.dot_plot import dot_plot_svg
@@ -33,6 +34,7 @@ __all__ = [
     "area_as_typed",
     "diagram_svg",
     "dot_plot_svg",
+    "end_blocks",
     "evidence_pdf",
     "flow_svg",
     "given",

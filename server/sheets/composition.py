@@ -10,6 +10,7 @@ from dataclasses import dataclass, field
 from typing import Any, Literal
 
 from server.sheets import slip_parts, tables
+from server.sheets.bond_ends import blocks as end_blocks
 from server.sheets.given import Group, given
 from server.sheets.one_pages import ONE_PAGES
 from server.sheets.steps import working_groups
@@ -168,6 +169,7 @@ def _member(sheet: SheetData, drawings: Drawings) -> Iterator[tuple[str, Iterabl
     yield from slip_parts.blocks(result, display)
     yield "Pieces", tables.pieces(result, display)
     yield "Deflection", tables.deflection(result, display)
+    yield from ((title, [dict(part) for part in parts]) for title, parts in end_blocks(result, display))
 
 
 def _common(sheet: SheetData) -> Iterator[tuple[str, Iterable[Part]]]:

@@ -38,6 +38,8 @@ class OnePage:
     fault."""
     fixed: tuple[tuple[str, str], ...] = ()
     """Places of the document that the form fills by itself, such as the names of its values."""
+    finish: Callable[[dict[str, Any]], None] = lambda raw: None
+    """What the answers still need to be a document, put in after they are read."""
     normal: Callable[[Mapping[str, Any]], Mapping[str, Any]] = lambda raw: raw
     """The same document with its names as the form has them, for one that was written elsewhere."""
 

@@ -43,7 +43,7 @@ def value_asks(name: str, *, start: Mapping[str, tuple[str, str]], tube: bool = 
     wooden = ((f"{place}.kind", WOODEN),)
     return (
         Ask(place, "From the library", record=True),
-        Ask(f"{place}.kind", "Sort", choices=KINDS),
+        Ask(f"{place}.kind", "Sort", choices=KINDS, start=at("kind")),
         Ask(f"{place}.E", "Modulus E", "stress", start=at("E")),
         Ask(f"{place}.nu", "Poisson's ratio", hint="blank: 0", start=at("nu")),
         Ask(f"{place}.yield", "Yield", "stress", start=at("yield"), hint="metals: stands in for the strengths"),

@@ -7,6 +7,7 @@ from collections.abc import Iterable, Iterator, Mapping, Sequence
 from typing import Any
 
 from server.sheets import coupon_tables, tables
+from server.sheets.bond_ends import blocks as end_blocks
 from server.sheets.composition import PRECEDENCE, STANDING_CAUTION, headline
 from server.sheets.one_pages import ONE_PAGES
 from server.sheets.steps import working_groups
@@ -55,6 +56,7 @@ def _member(result: Mapping[str, Any], display: str) -> Iterator[tuple[str, Iter
     yield "Joints", tables.joints(result, display)
     yield "Pieces", tables.pieces(result, display)
     yield "Deflection", tables.deflection(result, display)
+    yield from end_blocks(result, display)
     yield "Section", tables.section(result, display)
     yield "Reactions, shear, moment", tables.actions(result, display)
 

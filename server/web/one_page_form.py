@@ -61,6 +61,7 @@ def read(page: OnePage, values: Values) -> Reading:
         text = values.get(path, "").strip()
         if (text or ask.answers) and not path.startswith(tuple(picked)):
             _put(reading.raw, path, _read(ask, text, system, reading))
+    page.finish(reading.raw)
     return reading
 
 

@@ -135,11 +135,16 @@ def any_panel(result: Result, display: str, shade: str = "") -> Found:
 def one_page_panel(result: Result, display: str) -> OnePagePanel:
     """Return the panel of a check that fits on one page."""
     found = sheets.ONE_PAGES[str(result["kind"])].blocks(result, display)
-    blocks = ((title, tuple(_part(each) for each in parts)) for title, parts in found)
     return OnePagePanel(
         **_of_every_kind(result, display, "check/_found_parts.html"),
-        blocks=tuple((title, parts) for title, parts in blocks if parts),
+        blocks=_blocks(found),
     )
+
+
+def _blocks(found: Iterable[tuple[str, Iterable[Mapping[str, Any]]]]) -> tuple[tuple[str, tuple[Any, ...]], ...]:
+    """Titled parts with something in them, drawings as markup."""
+    drawn = ((title, tuple(_part(each) for each in parts)) for title, parts in found)
+    return tuple((title, parts) for title, parts in drawn if parts)
 
 
 def _part(part: Mapping[str, Any]) -> Mapping[str, Any]:
@@ -185,9 +190,7 @@ def panel(result: Result, display: str, shade: str = "") -> Panel:
         units={stored: written.unit(stored, display).text for stored in ("N/mm", "mm", "MPa")},
         shade=shade if shaded else "",
         outside=_outside(shaded, display) if shaded else "",
-        blocks=tuple(
-            (title, tuple(_part(each) for each in parts)) for title, parts in sheets.slip_blocks(result, display)
-        ),
+        blocks=_blocks((*sheets.slip_blocks(result, display), *sheets.end_blocks(result, display))),
     )
 
 
