@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from server import documents
-from server.checks import coupons, fastener, member, splice, strip_end
+from server.checks import coupons, fastener, load_slip, member, splice, strip_end
 from server.errors import DocumentError, Fault
 
 
@@ -31,6 +31,8 @@ def run(document: documents.Document, *, working: bool = True) -> dict[str, obje
         return coupons.run(document, working=working)
     if isinstance(document, documents.FastenerDocument):
         return fastener.run(document, working=working)
+    if isinstance(document, documents.LoadSlipDocument):
+        return load_slip.run(document, working=working)
     if isinstance(document, documents.SpliceDocument):
         return splice.run(document, working=working)
     if isinstance(document, documents.StripEndDocument):

@@ -17,6 +17,7 @@ from server.documents.common import (
 from server.documents.coupons import Coupon, CouponsDocument, Failure, Statistic
 from server.documents.fastener import FastenerDocument
 from server.documents.lasting import Block, Fatigue, FatigueStrength
+from server.documents.load_slip import LoadSlipDocument
 from server.documents.member import (
     Analysis,
     AngleProfile,
@@ -78,6 +79,7 @@ __all__ = [
     "LimitState",
     "LineLoad",
     "Load",
+    "LoadSlipDocument",
     "Material",
     "Member",
     "MemberDocument",

@@ -9,7 +9,7 @@ from typing import Any, TypeVar
 from pydantic import BaseModel, ValidationError
 
 from server import units
-from server.documents import coupons, fastener, fields, rules, splice, strip_end
+from server.documents import coupons, fastener, fields, load_slip, rules, splice, strip_end
 from server.documents.common import Adhesive, Document, Fastener, Material, Reference
 from server.documents.faults import MOST, faults_of, nearest, sorted_once
 from server.documents.member import MemberDocument
@@ -42,6 +42,7 @@ KINDS: dict[str, Kind] = {
     "member": Kind(MemberDocument, _member_rules, _member_rules_of_raw),
     "fastener": Kind(fastener.FastenerDocument, fastener.rules, fastener.rules_of_raw),
     "coupons": Kind(coupons.CouponsDocument, coupons.rules, coupons.rules_of_raw),
+    "load-slip": Kind(load_slip.LoadSlipDocument, load_slip.rules, load_slip.rules_of_raw),
     "splice": Kind(splice.SpliceDocument, splice.rules, splice.rules_of_raw),
     "strip-end": Kind(strip_end.StripEndDocument, strip_end.rules, strip_end.rules_of_raw),
 }

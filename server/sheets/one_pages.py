@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
-from server.sheets import fastener, splice, strip_end
+from server.sheets import fastener, load_slip, splice, strip_end
 from server.sheets.one_page import OnePage
 
-ONE_PAGES: dict[str, OnePage] = {page.kind: page for page in (fastener.PAGE, splice.PAGE, strip_end.PAGE)}
+ONE_PAGES: dict[str, OnePage] = {
+    page.kind: page for page in (fastener.PAGE, load_slip.PAGE, splice.PAGE, strip_end.PAGE)
+}
