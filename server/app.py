@@ -19,6 +19,7 @@ from server.web import (
     api,
     errors,
     evidence_page,
+    exchange,
     gate,
     issue,
     jobs,
@@ -74,7 +75,22 @@ def create_app(settings: Settings) -> FastAPI:
     app.add_middleware(security.Guard, settings=settings)
     app.mount("/static", StaticFiles(directory=data_folder("static")), name="static")
     app.add_api_route("/", _start, name="start", include_in_schema=False)
-    for room in (jobs, sets, rules, acts, evidence_page, issue, library, shop, member, one_page, saved, people, api):
+    for room in (
+        jobs,
+        sets,
+        rules,
+        acts,
+        evidence_page,
+        exchange,
+        issue,
+        library,
+        shop,
+        member,
+        one_page,
+        saved,
+        people,
+        api,
+    ):
         app.include_router(room.router)
     api.describe(app)
     return app

@@ -83,6 +83,11 @@ RULES: dict[str, str] = {
     "approve_record": APPROVES,
     "set_record_state": APPROVES,
     "evidence_page": READS,
+    "exchange": READS,
+    "export_json": READS,
+    "export_csv": READS,
+    "plan_import": KEEPS_THE_BOOK,
+    "apply_import": KEEPS_THE_BOOK,
     "edit_rules": KEEPS_THE_BOOK,
     "save_rules": KEEPS_THE_BOOK,
     # for programs

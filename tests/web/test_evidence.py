@@ -362,6 +362,67 @@ class TestRules:
         assert f'id="f-{next(iter(wrong))}-message"' in answer.text
 
 
+def ten_faulty_rows() -> str:
+    """A table of products: one good row, then ten that each break something."""
+    good = ["products", "A-100", "Good resin", "draft", "2", "-10 degC"]
+    wrong = [
+        ["nonsense", "A-101", "X", "draft", "2", ""],
+        ["products", "a b/c", "X", "draft", "2", ""],
+        ["products", "A-103", "", "draft", "2", ""],
+        ["products", "A-104", "X", "blessed", "2", ""],
+        ["products", "A-105", "X", "draft", "nine", ""],
+        ["products", "A-106", "X", "draft", "77", ""],
+        ["products", "A-107", "X", "draft", "2", "hot"],
+        ["products", "A-108", "X", "draft", "2", "4 kg"],
+        ["", "A-109", "X", "draft", "2", ""],
+        ["products", "", "X", "draft", "two", ""],
+    ]
+    head = "group,key,name,status,values.parts,values.glass_transition"
+    return "\n".join([head, *(",".join(row) for row in [good, *wrong])]) + "\n"
+
+
+class TestExchange:
+    def planned(self, answer: object) -> dict[str, str]:
+        text = answer.text  # type: ignore[attr-defined]
+        return {"planned": re.findall(r'name="planned" value="(\w+)"', text)[0], "name": "t.csv"}
+
+    def test_each_faulty_row_is_named_and_nothing_changes_before_it_is_wanted(self, client: TestClient) -> None:
+        file = {"file": ("t.csv", ten_faulty_rows().encode(), "text/csv")}
+        plan = client.post("/library/form/exchange/plan", files=file)
+        assert plan.status_code == 200
+        assert "10 rows are refused" in plan.text, text_of(plan)
+        named = [int(line) for line in re.findall(r"<li>Line (\d+)", plan.text)]
+        assert named == list(range(3, 13))
+        assert client.get("/library/A-100").status_code == 404
+        done = client.post("/library/form/exchange/apply", data=self.planned(plan) | {"text": ten_faulty_rows()})
+        assert "1 added" in text_of(done)
+        assert client.get("/library/A-100").status_code == 200
+
+    def test_a_plan_that_no_longer_holds_is_shown_again(self, client: TestClient) -> None:
+        plan = client.post("/library/form/exchange/plan", data={"text": ten_faulty_rows()})
+        made = {"name": "Taken meanwhile", "key": "A-100", "units": "SI"}
+        assert client.post("/library/new/products", data=made).status_code == 303
+        late = client.post("/library/form/exchange/apply", data=self.planned(plan) | {"text": ten_faulty_rows()})
+        assert late.status_code == 422
+        assert "changed since" in late.text
+        assert "Taken meanwhile" in client.get("/library/A-100").text
+
+    def test_what_goes_out_comes_in_unchanged(self, client: TestClient, coupon_set: str) -> None:
+        out = client.get("/library/form/exchange/library.json")
+        assert "attachment" in out.headers["content-disposition"]
+        back = client.post("/library/form/exchange/plan", data={"text": out.text})
+        assert "0 to add, 0 to give a new revision" in text_of(back)
+        for name in ("records.csv", "coupons.csv"):
+            assert "T-001" in client.get(f"/library/form/exchange/tables/{name}").text
+        assert client.get("/library/form/exchange/tables/people.csv").status_code == 404
+
+    @pytest.mark.parametrize("text", ["", "  ", "{", "[]", "nonsense", "a,b\n1,2"])
+    def test_what_is_no_library_is_refused_in_words(self, client: TestClient, text: str) -> None:
+        answer = client.post("/library/form/exchange/plan", data={"text": text})
+        assert answer.status_code in (200, 422)
+        assert 'class="faults"' in answer.text
+
+
 class TestTwoPeople:
     @pytest.fixture
     def house(self, tmp_path: Path) -> Iterator[dict[str, TestClient]]:
