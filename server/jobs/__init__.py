@@ -1,6 +1,7 @@
 """Jobs and their saved checks: save, print again, run again with today's values, see what moved, export."""
 
 from server.jobs.export import RecordError, altered, export_revision, print_record
+from server.jobs.fastener_record import keep_fastener, may_be_kept
 from server.jobs.headings import FoundJobs, Job, JobLine, create, edit, get, search
 from server.jobs.hindrances import Hindrance, answer, hindrances
 from server.jobs.issuing import Issue, issue, issue_of, issued_pdf, issues
@@ -34,6 +35,8 @@ __all__ = [
     "issue_of",
     "issued_pdf",
     "issues",
+    "keep_fastener",
+    "may_be_kept",
     "moved",
     "pdf_bytes",
     "print_record",

@@ -66,6 +66,7 @@ RULES: dict[str, str] = {
     "edit_check": PREPARES,
     "revise_check": PREPARES,
     "run_again": PREPARES,
+    "keep_fastener": PREPARES,
     "answer_hindrance": PREPARES,
     "issue_check": CHECKS,
     "issued_pdf": READS,

@@ -88,6 +88,14 @@ def run_again(request: Request, session: DbSession, values: FormValues, check_id
     return see(request, "compare_revisions", check_id=check_id, old=old.revision, new=new.revision)
 
 
+@router.post("/{check_id}/revisions/{revision}/record", name="keep_fastener")
+def keep_fastener(request: Request, session: DbSession, values: FormValues, check_id: Id, revision: Id) -> Response:
+    """Make a draft record of a fastener that was checked or tested, and show it."""
+    saved = jobs.revision_of(session, check_id, revision)
+    record = jobs.keep_fastener(session, saved.id, made_by=values.get("made_by", ""))
+    return see(request, "show_record", key=record.key)
+
+
 @router.get("/{check_id}/compare/{old}/{new}", name="compare_revisions")
 def compare_revisions(request: Request, session: DbSession, check_id: Id, old: Id, new: Id) -> Response:
     """Show what moved between two revisions of a check."""
@@ -136,6 +144,7 @@ def show(
         given=sheets.given_values(saved.document, saved.values_used, display),
         used=used,
         notices=[value for value in used if value.today],
+        may_be_kept=jobs.may_be_kept(saved),
         sets_out=bool(sheets.laid_out(saved.result)),
         panel=any_panel(saved.result, display, request.query_params.get("shade", "")),
         waiting=(),

@@ -113,6 +113,26 @@ def test_save_show_print_change_and_run_again(client, job):
     assert client.get("/checks/1/revisions/1/document.json").json()["fastener"]["diameter"] == "3.1 mm"
 
 
+def test_a_fastener_goes_into_the_library_as_a_draft_that_names_its_sheet(client, job):
+    client.post(f"{job}/checks/fastener", data=fresh(title="Cleat nail", mark="N1"))
+    assert "Put it in the library" in client.get("/checks/1").text
+    kept = client.post("/checks/1/revisions/1/record", data={})
+    assert kept.status_code == 303
+    record = client.get(f"/api/records/{kept.headers['location'].rsplit('/', 1)[1]}").json()
+    assert record["group"] == "fasteners"
+    assert record["status"] == "draft"
+    found = client.post("/api/checks/run", json=client.get("/checks/1/revisions/1/document.json").json()).json()
+    assert "job J-7, N1 revision 1" in record["entry"]["source"]
+    assert float(str(record["entry"]["shear_resistance"]).split()[0]) == pytest.approx(found["shear_resistance"])
+
+
+def test_what_is_not_proven_or_no_fastener_stays_out_of_the_library(client, job):
+    client.post(f"{job}/checks/fastener", data=fresh(main__thickness="12"))
+    assert "Put it in the library" not in client.get("/checks/1").text
+    assert client.post("/checks/1/revisions/1/record", data={}).status_code == 422
+    assert client.get("/api/records?group=fasteners").json()["total"] == 0
+
+
 def test_units_of_the_boxes_change_and_typed_numbers_keep_theirs(client, job):
     answer = client.post(f"{job}/checks/fastener/form", data=fresh(units_of_boxes="yes") | {"display": "US"})
     assert 'name="fastener.diameter" value="3.1 mm"' in answer.text
