@@ -2,21 +2,23 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from typing import Protocol
 
 import numpy as np
 from numpy.typing import NDArray
 
-from server.checks.actions import TIE
-from server.checks.crosssection import Body, Site
+from server.checks.actions import TIE, Curve
+from server.checks.crosssection import Body, Site, Stretch
 from server.checks.scan import Scan
 from server.checks.slide import Slide
+from server.checks.slip_shares import Shares, field_shares
 from server.mechanics.piecewise import evaluate
 from server.working import formula
 
 FLOW = {"cut": "V*S/EI", "symmetry": "c_s*V*S/EI", "field": "V*S_j/EI"}
 SLIDING_FLOW = "k*s"
+SHARED_FLOW = "c_f*q_L"
 
 
 @dataclass(frozen=True, eq=False)
@@ -141,6 +143,7 @@ class SlidingAlong:
     """Flow where the joints slide: stiffness along the member times slip."""
 
     slide: Slide
+    _known: dict[tuple[int, frozenset[int]], Shares] = field(default_factory=dict)
 
     def demands(self) -> dict[int, Demand]:
         """Joint by joint over the whole member."""
@@ -152,7 +155,7 @@ class SlidingAlong:
 
     def over(self, site: Site, low: float, high: float) -> Demand | None:
         """Stretch by stretch where both pieces of the joint are."""
-        body, curve = self.slide.body, self.slide.flows[site.index]
+        body, curve = self.slide.body, self.flow(site)
         found: Demand | None = None
         for t, stretch in enumerate(body.stretches):
             start, end = max(low, stretch.start), min(high, stretch.end)
@@ -183,18 +186,47 @@ class SlidingAlong:
         return np.asarray(np.maximum(np.abs(left), np.abs(right)))
 
     def unsettled(self, site: Site) -> str:
-        """Why the layers alone do not settle the joint: a closed ring, or partners of unlike stiffness."""
+        """Why the layers alone do not settle the joint: a ring that the field does not open, unlike partners."""
         for stretch in self.slide.body.stretches:
             flow = stretch.section.hand_flows.get(site.index)
             if flow is None:
                 continue
             if flow.split is None:
-                return flow.reason
+                why_not = self.shares(stretch, site).why_not
+                if why_not:
+                    return f"{flow.reason} {why_not}"
+                continue
             partners = [stretch.section.sites[place] for place in flow.partners]
             if any(not self._alike(site, other) for other in partners):
                 names = ", ".join(other.id for other in partners)
                 return f"Symmetry would make {names} share alike, but they are not equally stiff."
         return ""
+
+    def shares(self, stretch: Stretch, site: Site) -> Shares:
+        """Shares of the joints parallel to one that neither a cut nor symmetry settles."""
+        key = (id(stretch), frozenset((site.first.index, site.second.index)))
+        if key not in self._known:
+            self._known[key] = field_shares(self.slide, stretch, site)
+        return self._known[key]
+
+    def by_field(self, site: Site, stretch: Stretch) -> bool:
+        """Whether the field divides the flow of this joint and its neighbours."""
+        flow = stretch.section.hand_flows.get(site.index)
+        return flow is not None and flow.split is None and bool(self.shares(stretch, site).weight)
+
+    def flow(self, site: Site) -> Curve:
+        """The joint's flow: that of its own slip, or its share of the layer's where the field divides it."""
+        curve = self.slide.flows[site.index]
+        found = curve
+        for stretch in self.slide.body.stretches:
+            if not site.present(stretch.start, stretch.end) or not self.by_field(site, stretch):
+                continue
+            shared = self.shares(stretch, site)
+            inside = (curve.breaks[:-1] >= stretch.start - 1e-9) & (curve.breaks[1:] <= stretch.end + 1e-9)
+            whole = sum(sign * self.slide.flows[index].coefficients for index, sign in shared.sign.items())
+            own = shared.weight[site.index] * shared.sign[site.index] * np.asarray(whole)
+            found = Curve(curve.breaks, np.where(inside[:, None], own, found.coefficients), curve.names)
+        return found
 
     def _alike(self, one: Site, other: Site) -> bool:
         a, b = (

@@ -78,7 +78,7 @@ def write_joint(check: JointCheck, weighed: list[Weighed | None], body: Body, ju
         force = next((w for w in weighed if w is not None and w.claim.symbol == "F"), None)
         group_of = f"{group}, glue gone" if check.gone is not None else group
         if check.gone is not None and force is not None:
-            _, slip = write_sliding_flow(site, check.gone.slide, check.fastening.demand, judge, group_of)
+            _, slip = write_sliding_flow(site, check.gone, check.fastening.demand, judge, group_of)
             check.result["slip"] = slip if check.result["slip"] is None else check.result["slip"]
         check.result["spacing_needed"] = write_fasteners(check.fastening, force, body, judge, group_of)
         if force is not None:
@@ -233,7 +233,7 @@ def _write_flow(check: JointCheck, demand: Demand, body: Body, judge: Judge, sta
         statics.shear(float(demand.at[row]), judge.actions.strength[row], float(demand.shear[row]), group)
     first = _write_first_moment(site, stretch, judge, group)
     if isinstance(check.along, SlidingAlong):
-        flow, check.result["slip"] = write_sliding_flow(site, check.along.slide, demand, judge, group)
+        flow, check.result["slip"] = write_sliding_flow(site, check.along, demand, judge, group)
     elif isinstance(check.along, TwistedAlong):
         flow, run = write_twisted_flow(check.along, site, demand, judge, group)
         check.result.update(run)

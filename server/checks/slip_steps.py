@@ -4,8 +4,8 @@ from __future__ import annotations
 
 import numpy as np
 
-from server.checks.along import SLIDING_FLOW, Demand
-from server.checks.crosssection import Site
+from server.checks.along import SHARED_FLOW, SLIDING_FLOW, Demand, SlidingAlong
+from server.checks.crosssection import Site, Stretch
 from server.checks.holds import BOND, FASTENERS, Hold, spacing_zones
 from server.checks.resistance import Judge
 from server.checks.slide import ULTIMATE, Slide
@@ -16,10 +16,15 @@ from server.working import Working
 METHOD = "layers that bend together and slide (Newmark, Siess and Viest 1951), solved exactly between breaks"
 
 
-def write_sliding_flow(site: Site, slide: Slide, demand: Demand, judge: Judge, group: str) -> tuple[float, float]:
+def write_sliding_flow(
+    site: Site, along: SlidingAlong, demand: Demand, judge: Judge, group: str
+) -> tuple[float, float]:
     """Stiffness, slip and flow at the governing place; return flow and slip."""
-    row = demand.peak
+    row, slide = demand.peak, along.slide
     at, flow = float(demand.at[row]), float(demand.flow[row])
+    stretch = slide.body.stretches[int(demand.stretch[row])]
+    if along.by_field(site, stretch):
+        return _write_share(site, along, stretch, demand, judge, group)
     hold = slide.holds.each[site.index]
     zone = _zone_at(hold, slide, site, at, row, flow)
     k = _write_stiffness(site, hold, zone, slide, judge, group)
@@ -39,6 +44,28 @@ def write_sliding_flow(site: Site, slide: Slide, demand: Demand, judge: Judge, g
         unit="N/mm", source=f"stiffness x slip; combination {combination}, at {at:.6g} mm", group=group,
     )  # fmt: skip
     return q, slip
+
+
+def _write_share(
+    site: Site, along: SlidingAlong, stretch: Stretch, demand: Demand, judge: Judge, group: str
+) -> tuple[float, float]:
+    """The layer's flow and this joint's share of it by the field."""
+    row, slide = demand.peak, along.slide
+    at, weight = float(demand.at[row]), abs(along.shares(stretch, site).weight[site.index])
+    whole = float(demand.flow[row]) / weight if weight > 0 else 0.0
+    judge.working.note(
+        "Flow of all joints between the two pieces",
+        f"{METHOD}; at {at:.6g} mm, combination {judge.actions.strength_names[row]}.",
+        value=whole, unit="N/mm", source="layers that slide", group=group, symbol="q_L",
+    )  # fmt: skip
+    flow = judge.working.step(
+        "Shear flow", "q", SHARED_FLOW, {"c_f": (weight, ""), "q_L": (whole, "N/mm")},
+        unit="N/mm",
+        source="c_f: share by the field of shear in the section, every joint with its own stiffness (finite elements)",
+        group=group,
+    )  # fmt: skip
+    curve = slide.slips[site.index]
+    return flow, float(curve.over(stretch.start, stretch.end).absolute()[0][row])
 
 
 def _zone_at(hold: Hold, slide: Slide, site: Site, at: float, row: int, flow: float) -> Zone | None:

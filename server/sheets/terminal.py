@@ -6,7 +6,7 @@ import textwrap
 from collections.abc import Iterable, Iterator, Mapping, Sequence
 from typing import Any
 
-from server.sheets import coupon_tables, tables
+from server.sheets import coupon_tables, slip_parts, tables
 from server.sheets.bond_ends import blocks as end_blocks
 from server.sheets.composition import PRECEDENCE, STANDING_CAUTION, headline
 from server.sheets.one_pages import ONE_PAGES
@@ -54,6 +54,7 @@ def _coupons(result: Mapping[str, Any]) -> bool:
 
 def _member(result: Mapping[str, Any], display: str) -> Iterator[tuple[str, Iterable[Part]]]:
     yield "Joints", tables.joints(result, display)
+    yield from slip_parts.blocks(result, display)
     yield "Pieces", tables.pieces(result, display)
     yield "Deflection", tables.deflection(result, display)
     yield from end_blocks(result, display)

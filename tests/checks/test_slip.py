@@ -499,3 +499,59 @@ class TestFlitch:
         assert joint["sharing"] == "stacked"
         assert joint["shear_flow"] > 1
         assert any("stacked, so the flow" in step["note"] for step in result["steps"])
+
+
+def trough(G: float, **changes: object) -> Raw:
+    """A plank on a trough with a thin and a thick wall: two joints between the same pieces."""
+    wall = [[0, 0], [200, 0], [200, 100], [160, 100], [160, 20], [20, 20], [20, 100], [0, 100]]
+    raw = {
+        "format": "bondwright/1",
+        "kind": "member",
+        "basis": {"method": "allowable", "safety_factor": 2.0},
+        "materials": {"wood": {"E": 10000, "G": 600, "strengths": {"bending": 40, "shear": 6}}},
+        "adhesives": {"glue": {"shear_strength": 6, "shear_modulus": G, "thickness": 0.04}},
+        "section": {
+            "pieces": {
+                "trough": {"shape": "polygon", "points": wall, "material": "wood"},
+                "plank": {"shape": "rectangle", "width": 200, "depth": 30, "at": [0, 100], "material": "wood"},
+            },
+            "joints": [{"between": ["trough", "plank"], "adhesive": "glue", "segment": n} for n in (1, 2)],
+        },
+        "member": {"length": 3000, "supports": [{"at": 0, "kind": "pin"}, {"at": 3000, "kind": "pin"}]},
+        "loads": {"live": [{"kind": "line", "from": 0, "to": 3000, "value": 3}]},
+        "analysis": {"slip": True},
+    }
+    return changed(raw, **changes)
+
+
+class TestParallelJoints:
+    def test_soft_joints_share_the_layers_flow_by_their_stiffness(self) -> None:
+        one, two = run(trough(0.002))["joints"]
+        assert two["shear_flow"] == pytest.approx(2 * one["shear_flow"], rel=0.01)  # walls of 20 and 40 mm
+        assert {joint["split"] for joint in (one, two)} == {"field"}
+
+    def test_stiff_joints_share_it_as_the_rigid_field_does(self) -> None:
+        stiff, rigid = run(trough(1e5)), run(trough(1e5, analysis={"slip": False}))
+        for one, other in zip(stiff["joints"], rigid["joints"], strict=True):
+            assert one["shear_flow"] == pytest.approx(other["shear_flow"], rel=0.02)
+        assert not any("share" in text for text in stiff["missing"])
+
+    def test_both_together_carry_the_flow_of_the_layer(self) -> None:
+        result = run(trough(3.0))
+        areas, up = (2 * 10**4 - 140 * 80, 200 * 30), (0.0, 115.0)
+        centre = (2e4 * 50 - 140 * 80 * 60) / areas[0]
+        own = 200 * 100**3 / 12 + 2e4 * (50 - centre) ** 2 - 140 * 80**3 / 12 - 140 * 80 * (60 - centre) ** 2
+        layer = two_layers(
+            3000,
+            3.0,
+            (1e4 * areas[0], 1e4 * areas[1]),
+            (1e4 * own, 1e4 * 200 * 30**3 / 12),
+            up[1] - centre,
+            3.0 * 60 / 0.04,
+        )
+        assert sum(joint["shear_flow"] for joint in result["joints"]) == pytest.approx(layer["flow"], rel=1e-4)
+
+    def test_without_G_the_share_is_not_proven(self) -> None:
+        result = run(trough(3.0, materials__wood__G=...))
+        assert result["verdict"] == "not proven"
+        assert any("shear modulus G of trough, plank" in text for text in result["missing"])
