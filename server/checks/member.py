@@ -23,6 +23,7 @@ from server.checks.gamma import write_annex_b
 from server.checks.holds import holds
 from server.checks.joints import Flows, JointCheck, claim_joints, write_joint
 from server.checks.member_ends import MemberEnds, after_bonding, check_ends
+from server.checks.member_lasting import check_lasting
 from server.checks.pieces import PieceCheck, claim_pieces, write_piece
 from server.checks.places import Places
 from server.checks.resistance import Claim, Findings, Judge, Weighed
@@ -109,6 +110,7 @@ def _round(
     add_schedules(document, body, rigid, joints, flows, book)
     sags = check_deflection(document, body, actions, book, findings, upper_stiffness=upper)
     ends = check_ends(document, body, actions, judge, book, findings, after=_shared(document, body, findings))
+    lasting = check_lasting(document, body, actions, joints, book, findings, ends)
     add_cautions(document, body, actions, joints, findings)
     moving_rounds.caution(actions, findings)
     slides = [each for each in (sliding, None if flows.gone is None else flows.gone.slide) if each is not None]
@@ -131,6 +133,7 @@ def _round(
         "fall_back": None if fall_back is None else fall_back.result,
         "ends": ends.ends,
         "movement": ends.movement,
+        "lasting": lasting,
         "cautions": findings.cautions,
         "missing": findings.missing,
         "not_checked": list(NOT_CHECKED),

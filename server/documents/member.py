@@ -7,6 +7,7 @@ from typing import Annotated, Any, Literal
 from pydantic import Field, Tag
 
 from server.documents.common import MARK, Basis, Document, Model, Number, number_or, tag_of
+from server.documents.lasting import Fatigue
 from server.documents.quantities import (
     Angle,
     AreaForce,
@@ -291,12 +292,13 @@ LoadEntry = Annotated[
 
 
 class Combination(Model):
-    """Cases with their factors, what they serve for, and how much of each case stays."""
+    """Cases with their factors, what they serve for, how much of each case stays, and how the whole repeats."""
 
     factors: dict[Name, LoadFactor] = Field(min_length=1, max_length=100)
     duration: Name | None = None
     for_: Literal["both", "strength", "deflection"] = Field(default="both", alias="for")
     sustained: dict[Name, Share] = Field(default_factory=dict, max_length=100)
+    fatigue: Fatigue | None = None
 
 
 class Analysis(Model):
