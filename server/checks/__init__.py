@@ -4,13 +4,17 @@ from __future__ import annotations
 
 from server import documents
 from server.checks import coupons, fastener, load_slip, member, splice, strip_end
+from server.checks.contours import Look
 from server.errors import DocumentError, Fault
 
+__all__ = ["Look", "run"]
 
-def run(document: documents.Document, *, working: bool = True) -> dict[str, object]:
+
+def run(document: documents.Document, *, working: bool = True, look: Look | None = None) -> dict[str, object]:
     """Run a document's check and return its result as the contract says.
 
-    ``working`` false leaves the steps out (the numbers are the same), for an answer while somebody types.
+    ``working`` false leaves the steps out (the numbers are the same), for an answer while somebody types; ``look`` asks
+    for the stresses of a member's section at a chosen place, which a result with its working shows where they are most.
 
     Raises
     ------
@@ -26,7 +30,7 @@ def run(document: documents.Document, *, working: bool = True) -> dict[str, obje
             ]
         )
     if isinstance(document, documents.MemberDocument):
-        return member.run(document, working=working)
+        return member.run(document, working=working, look=look)
     if isinstance(document, documents.CouponsDocument):
         return coupons.run(document, working=working)
     if isinstance(document, documents.FastenerDocument):

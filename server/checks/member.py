@@ -13,6 +13,7 @@ from server.checks import statics as hand
 from server.checks.actions import Actions, act, envelope
 from server.checks.along import RigidAlong, SlidingAlong
 from server.checks.cautions import NOT_CHECKED, add_cautions
+from server.checks.contours import Look, contours
 from server.checks.crosssection import Body, CrossSection, build
 from server.checks.deflection import Sag, check_deflection
 from server.checks.drawing import diagrams, drawing
@@ -51,7 +52,7 @@ class Candidate:
     section: CrossSection
 
 
-def run(document: documents.MemberDocument, *, working: bool = True) -> dict[str, object]:
+def run(document: documents.MemberDocument, *, working: bool = True, look: Look | None = None) -> dict[str, object]:
     """Check a member as contract.md's kind "member" says.
 
     Raises
@@ -63,14 +64,14 @@ def run(document: documents.MemberDocument, *, working: bool = True) -> dict[str
     wants: moving.Wants | None = moving.Wants()
     for _ in range(moving_rounds.ROUNDS):
         assert wants is not None
-        result, wants = _round(document, wants, working=working)
+        result, wants = _round(document, wants, working=working, look=look)
         if wants is None:
             break
     return result
 
 
 def _round(
-    document: documents.MemberDocument, wants: moving.Wants, *, working: bool
+    document: documents.MemberDocument, wants: moving.Wants, *, working: bool, look: Look | None
 ) -> tuple[dict[str, object], moving.Wants | None]:
     """One round of the check, and what another one needs where axles move (see ``moving_rounds``)."""
     body = build(document)
@@ -137,6 +138,7 @@ def _round(
         "cautions": findings.cautions,
         "missing": findings.missing,
         "not_checked": list(NOT_CHECKED),
+        "contours": contours(body, actions, twisted, look) if working or look else None,
         "drawing": drawing(document, body, actions),
         "diagrams": diagrams(body, actions, sliding, twisted),
         "steps": book.steps,

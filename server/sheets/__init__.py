@@ -16,12 +16,15 @@ from server.sheets.probability_plot import probability_plot_svg
 from server.sheets.section_drawing import section_svg
 from server.sheets.setting_out import laid_out, setting_out_svg
 from server.sheets.slip_parts import blocks as slip_blocks
+from server.sheets.stress_drawing import TITLES as STRESSES
+from server.sheets.stress_drawing import stress_svg
 from server.sheets.terminal import terminal
 from server.sheets.values import governing, in_units, quantity, utilisation, verdict
 
 __all__ = [
     "ONE_PAGES",
     "STANDING_CAUTION",
+    "STRESSES",
     "EvidenceData",
     "FactorLine",
     "Group",
@@ -56,6 +59,7 @@ __all__ = [
     "setting_out_svg",
     "slip_blocks",
     "slip_svg",
+    "stress_svg",
     "terminal",
     "texts_of",
     "unprintable",

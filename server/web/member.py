@@ -14,13 +14,14 @@ from server.errors import Fault, JointError
 from server.sheets import ONE_PAGES
 from server.sheets.asked import RECORDS
 from server.storage import Session
+from server.units import parse
 from server.web import form_shape, form_words, forms, layouts, one_page
 from server.web.errors import faults_of
 from server.web.form_fields import VALUE_GROUPS
 from server.web.form_view import Form
 from server.web.inputs import DbSession, FormValues, Id, whole
 from server.web.pages import page, path_for, see
-from server.web.panel import Judged, panel, records_offered
+from server.web.panel import Asked, Judged, panel, records_offered
 from server.web.steps import working_of
 
 router = APIRouter(include_in_schema=False)
@@ -37,13 +38,25 @@ def judge(session: Session, values: Mapping[str, str], *, patient: bool = True, 
     if waiting:
         return Judged(reading.raw, None, {}, waiting=waiting)
     try:
-        result = checks.run(library.resolve(session, documents.read(reading.raw)), working=working)
+        document = library.resolve(session, documents.read(reading.raw))
+        result = checks.run(document, working=working, look=_look(values))
         faults: Iterable[Fault] = ()
     except JointError as error:
         result, faults = {}, faults_of(error)
     beside, on_top = forms.place(faults, reading.paths)
     messages = {**beside, **reading.faults, **_unprintable(values)}
     return Judged(reading.raw, None if messages or on_top else result, messages, tuple(on_top))
+
+
+def _look(values: Mapping[str, str]) -> checks.Look | None:
+    """Where the section's stresses are asked for; a place that cannot be read is none."""
+    if not values.get("stress"):
+        return None
+    try:
+        at = parse("stress_at", values.get("stress_at", "").strip(), "length")
+    except JointError:
+        at = None
+    return checks.Look(at, values.get("stress_for") or None)
 
 
 def _unprintable(values: Mapping[str, str]) -> dict[str, str]:
@@ -213,7 +226,8 @@ def _shown(judged: Judged, values: Mapping[str, str]) -> dict[str, Any]:
     faults = [(name, form_words.label_of(name, values), text) for name, text in judged.messages.items()]
     faults += [("", "", text) for text in judged.on_top]
     display = "US" if judged.raw.get("display") == "US" else "SI"
-    found = panel(judged.result, display, values.get("shade", "")) if judged.result else None
+    asked = Asked(values.get("shade", ""), *(values.get(name, "") for name in ("stress", "stress_at", "stress_for")))
+    found = panel(judged.result, display, asked) if judged.result else None
     return {"panel": found, "waiting": judged.waiting, "faults_on_page": faults}
 
 

@@ -109,6 +109,24 @@ class OnePagePanel(Found):
 
 
 @dataclass(frozen=True)
+class Asked:
+    """What somebody wants to see of a section: the outside area of a joint, a stress, its place and combination."""
+
+    shade: str = ""
+    stress: str = ""
+    at: str = ""
+    combination: str = ""
+
+
+def asked_of(query: Mapping[str, str]) -> Asked:
+    """What the address of a saved check asks to see; its stresses stand where they are greatest."""
+    return Asked(query.get("shade", ""), query.get("stress", ""))
+
+
+_NOTHING = Asked()
+
+
+@dataclass(frozen=True)
 class Panel(Found):
     """The result of a member check."""
 
@@ -122,14 +140,19 @@ class Panel(Found):
     units: Mapping[str, str]
     shade: str = ""
     outside: str = ""
+    stress: Markup | None = None
+    stress_where: str = ""
+    asked: Asked = _NOTHING
+    combinations: tuple[str, ...] = ()
+    by_field: bool = False
     blocks: tuple[tuple[str, tuple[Mapping[str, Any], ...]], ...] = ()
 
 
-def any_panel(result: Result, display: str, shade: str = "") -> Found:
-    """Return the panel of a result of any kind; ``shade`` names the joint whose outside area is shaded."""
+def any_panel(result: Result, display: str, asked: Asked = _NOTHING) -> Found:
+    """Return the panel of a result of any kind, with what is asked to be seen of a member's section."""
     if result["kind"] in sheets.ONE_PAGES:
         return one_page_panel(result, display)
-    return panel(result, display, shade)
+    return panel(result, display, asked)
 
 
 def one_page_panel(result: Result, display: str) -> OnePagePanel:
@@ -174,9 +197,10 @@ def records_offered(session: Session) -> dict[str, tuple[tuple[str, str], ...]]:
     }
 
 
-def panel(result: Result, display: str, shade: str = "") -> Panel:
-    """Return the panel of a result, in SI or US units; ``shade`` names the joint whose outside area is shaded."""
-    numbers = joint_numbers(result)
+def panel(result: Result, display: str, asked: Asked = _NOTHING) -> Panel:
+    """Return the panel of a result, in SI or US units, with what is asked to be seen of its section."""
+    numbers, shade = joint_numbers(result), asked.shade
+    svg, where = _stress(result, asked.stress, display)
     shaded = next((joint for joint in result["joints"] if joint["id"] == shade), None)
     return Panel(
         **_of_every_kind(result, display, "check/_found_member.html"),
@@ -190,8 +214,25 @@ def panel(result: Result, display: str, shade: str = "") -> Panel:
         units={stored: written.unit(stored, display).text for stored in ("N/mm", "mm", "MPa")},
         shade=shade if shaded else "",
         outside=_outside(shaded, display) if shaded else "",
+        stress=svg,
+        stress_where=where,
+        asked=asked,
+        combinations=tuple(result["member"]["reactions"]),
+        by_field=result["section"].get("shear_centre") is not None,
         blocks=_blocks((*sheets.slip_blocks(result, display), *sheets.end_blocks(result, display))),
     )
+
+
+def _stress(result: Result, which: str, display: str) -> tuple[Markup | None, str]:
+    """The drawing of a stress, and where it stands in words; none where the result has none."""
+    picture = (result.get("contours") or {}).get(which)
+    if picture is None:
+        return None, ""
+    title = sheets.STRESSES[which]
+    where = f"{title} {written.quantity(picture['at'], 'mm', display)} from the left end, {picture['combination']}"
+    if which == "shear":
+        where += "; beside the bond lines the run of stress along each bond where its flow is largest"
+    return _drawn(sheets.stress_svg(result, which, display=display)), f"{where}."
 
 
 def _outside(joint: Mapping[str, Any], display: str) -> str:

@@ -17,7 +17,7 @@ from server.storage import Session
 from server.web import issue_panel
 from server.web.inputs import DbSession, FormValues, Id
 from server.web.pages import page, see
-from server.web.panel import any_panel
+from server.web.panel import any_panel, asked_of
 from server.web.steps import working_of
 from server.web.who import signed
 
@@ -146,7 +146,7 @@ def show(
         notices=[value for value in used if value.today],
         may_be_kept=jobs.may_be_kept(saved),
         sets_out=bool(sheets.laid_out(saved.result)),
-        panel=any_panel(saved.result, display, request.query_params.get("shade", "")),
+        panel=any_panel(saved.result, display, asked_of(request.query_params)),
         waiting=(),
         faults_on_page=(),
         swap=False,

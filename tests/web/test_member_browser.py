@@ -198,3 +198,25 @@ def test_without_javascript_a_button_shows_the_boxes_of_a_shape(page: Any) -> No
     page.click("#row-pieces\\[0\\] noscript button, #row-pieces\\[0\\] button:has-text('Show the boxes')")
     page.fill("[name='pieces[0].diameter']", "60")
     assert page.locator("[name='pieces[0].width']").get_attribute("type") == "hidden"
+
+
+def test_a_ring_of_four_unlike_pieces_shows_its_stresses(page: Any) -> None:
+    """No cut, no symmetry: the field settles the joints; its outside area and its stresses are drawn when asked for."""
+    fill_first_view(page)
+    strip(page, "Not proven")
+    page.click("#fold-pieces > summary")
+    page.fill("[name='pieces[3].width']", "20")
+    page.wait_for_selector("#result :text('by field')", timeout=15000)
+    page.select_option("#shade", index=1)
+    page.wait_for_selector("#result .drawing.section .outside", timeout=15000)
+    page.select_option("#stress", "shear")
+    page.wait_for_selector("#result svg.stress.shear", timeout=15000)
+    assert page.locator("#result svg.stress path[fill^='#']").count() > 4
+    assert "MPa" in page.locator("#result svg.stress").text_content()
+    assert page.locator("#result .outside").count()  # the shading stays
+    page.fill("#stress_at", "1.5 m")
+    page.press("#stress_at", "Tab")
+    page.wait_for_selector("#result figcaption >> text=/1500.mm from the left end/", timeout=15000)
+    page.select_option("#stress", "bending")
+    page.wait_for_selector("#result svg.stress.bending", timeout=15000)
+    assert "compression" in page.locator("#result svg.stress").text_content()
