@@ -6,7 +6,8 @@ A narrow search stays within 5 times the bare page, a broad one within 25, and t
 from __future__ import annotations
 
 import gc
-from collections.abc import Iterator
+import time
+from collections.abc import Callable, Iterator
 
 import pytest
 from fastapi import FastAPI
@@ -18,7 +19,7 @@ from server import library, storage
 from server.app import create_app
 from server.settings import Settings
 from tests.benchmarks.large_library import MANY, fill
-from tests.benchmarks.test_pages import ADDRESS, median
+from tests.benchmarks.test_pages import ADDRESS
 
 NARROW, BROAD = 5.0, 25.0
 ROUNDS = 15
@@ -33,6 +34,17 @@ def shop(tmp_path_factory: pytest.TempPathFactory) -> Iterator[TestClient]:
     book.dispose()
     with TestClient(create_app(settings), base_url=ADDRESS, follow_redirects=False) as client:
         yield client
+
+
+def quickest(*calls: Callable[[], object]) -> list[float]:
+    """The least time of each call, taken in turns: what else the machine does falls on all alike, or is left out."""
+    times: list[list[float]] = [[] for _ in calls]
+    for _ in range(ROUNDS):
+        for taken, call in zip(times, calls, strict=True):
+            start = time.perf_counter()
+            call()
+            taken.append(time.perf_counter() - start)
+    return [min(taken) for taken in times]
 
 
 def bare(size: int) -> TestClient:
@@ -60,8 +72,7 @@ def test_a_search_against_the_bare_page(
     assert answer.json()["total"] == total
     empty = bare(len(answer.content))
     gc.collect()
-    alone = median(lambda: empty.get("/"), ROUNDS)
-    whole = median(lambda: shop.get(address), ROUNDS)
+    alone, whole = quickest(lambda: empty.get("/"), lambda: shop.get(address))
     with capsys.disabled():
         print(f"\nsearch {query or 'for nothing'} / bare page: {whole / alone:.1f} (budget {budget:g})")
     assert whole / alone < budget

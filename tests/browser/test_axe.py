@@ -17,6 +17,9 @@ SCREENS = (
     "/checks/1", "/checks/2/revisions/1", "/checks/4", "/checks/2/compare/1/2",
     "/library", "/library?group=bonds", "/library?group=fasteners", "/library?group=materials&q=ply",
     "/library/new/bonds", "/library/new/fasteners", "/library/new/materials",
+    "/library/new/sets", "/library/new/values", "/library/new/products", "/library/new/preparations",
+    "/library/new/cures", "/library/new/lots", "/library/T-001", "/library/T-001/edit?exclude=2", "/library/V-014",
+    "/library/V-014/edit", "/library/V-016", "/library/V-017", "/library/form/exchange", "/library/form/rules",
     "/library/B-001", "/library/B-001/edit", "/library/F-001", "/library/M-002", "/shop", "/jobs/999", "/nowhere",
 )  # fmt: skip
 

@@ -21,6 +21,7 @@ from server.app import create_app
 from server.settings import Settings
 from tests.browser.conftest import violations
 from tests.checks.coupon_sets import ROLLING_SHEAR
+from tests.web.test_evidence import ten_faulty_rows
 
 PASSWORDS = {"ann": "seven planed boards", "bo": "nine sharp chisels"}
 # Demo 1's twelve coupons (invented): the low one broke off the surface.
@@ -233,6 +234,27 @@ def issue_it(bo: Seat) -> None:
     bo.clean()
 
 
+def import_faulty_rows(bo: Seat) -> None:
+    """A file with ten faulty rows: each named with its line, the good one taken when it is wanted."""
+    page = bo.page
+    page.goto("/library")
+    page.click("text=In and out")
+    page.set_input_files("[name=file]", {"name": "resins.csv", "mimeType": "text/csv", "buffer": FAULTY})
+    page.click("text=Show what would change")
+    page.wait_for_selector("text=10 rows are refused")
+    bo.look("import")
+    named = page.locator("#refused li").all_inner_texts()
+    assert [int(re.findall(r"Line (\d+)", line)[0]) for line in named] == list(range(3, 13))
+    bo.clean()
+    page.click("text=Do this, without the refused rows")
+    page.wait_for_selector("text=1 added")
+    page.goto("/library/A-100")
+    assert "Good resin" in bo.text()
+
+
+FAULTY = ten_faulty_rows().encode()
+
+
 @pytest.mark.parametrize(("javascript", "width"), [(True, 1280), (False, 800)])
 def test_from_coupons_to_an_issued_sheet(
     open_page: Callable[..., Any], house: House, javascript: bool, width: int
@@ -256,6 +278,7 @@ def test_from_coupons_to_an_issued_sheet(
     issue_it(bo)
     if folder:
         Path(folder, "issued.pdf").write_bytes(bo.page.request.get("/checks/1/revisions/1/issued.pdf").body())
+    import_faulty_rows(bo)
     bo.page.goto("/library/T-001")
     assert "B1" in bo.page.inner_text("main table:last-of-type >> nth=-1")
     assert bo.page.evaluate("document.documentElement.scrollWidth") <= width
