@@ -22,7 +22,7 @@ from tests.benchmarks.large_library import MANY, fill
 from tests.benchmarks.test_pages import ADDRESS
 
 NARROW, BROAD = 5.0, 25.0
-ROUNDS = 15
+ROUNDS = 40
 
 
 @pytest.fixture(scope="module")
