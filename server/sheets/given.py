@@ -44,6 +44,7 @@ _MATERIAL = {
     "nu": ("Poisson's ratio", "factor"),
     "density": ("Density", "density"),
     "expansion": ("Expansion with temperature", "expansion"),
+    "moisture_expansion": ("Strain for 1 % of moisture", "factor"),
     "yield": ("Yield strength", "stress"),
     "creep": ("Creep factor", "factor"),
     "layered": ("Layered", ""),
@@ -57,6 +58,8 @@ _ADHESIVE = {
     "thickness": ("Bond-line thickness", "length"),
     "shear_yield": ("Shear yield", "stress"),
     "shear_strain_limit": ("Shear strain limit", "factor"),
+    "glass_transition": ("Softens at", "temperature"),
+    "creep_limit": ("Creep limit", "factor"),
     "kind": ("Kind", ""),
 }
 _FASTENER = {
