@@ -178,8 +178,14 @@ CHECK = {
     "title": "Roof box beam",
     "basis": {"method": "allowable", "safety_factor": 3},
     "materials": {
-        "softwood": {"E": 11000, "G": 690, "strengths": {"bending": 30, "shear": 4}, "density": 450},
-        "ply": {"E": 6500, "G": 600, "layered": True, "strengths": {"bending": 40, "shear": 12, "rolling_shear": 3}},
+        "softwood": {"E": 11000, "G": 690, "strengths": {"bending": 30, "shear": 4}, "density": 450, "expansion": 4e-6},
+        "ply": {
+            "E": 6500,
+            "G": 600,
+            "layered": True,
+            "strengths": {"bending": 40, "shear": 12, "rolling_shear": 3},
+            "expansion": 4e-6,
+        },
     },
     "adhesives": {"glue": {"record": "B-001"}},
     "section": {
@@ -193,7 +199,7 @@ CHECK = {
     },
     "member": {"length": "6 m", "supports": [{"at": 0, "kind": "pin"}, {"at": "6 m", "kind": "pin"}]},
     "loads": {"roof": [{"kind": "line", "from": 0, "to": "6 m", "value": "2.5 kN/m"}]},
-    "service": {"temperature": [-10, 50]},
+    "service": {"temperature": [-10, 50], "cure_temperature": 20},
 }
 
 
