@@ -126,26 +126,26 @@ def softening(document: documents.MemberDocument, body: Body, findings: Findings
         if softens is None:
             findings.caution(
                 "softening",
-                f"No glass transition is given for adhesive {name!r}: whether it softens at {hottest:g} degC is not "
+                f"No glass transition is given for adhesive {name!r}: whether it softens at {hottest:g} °C is not "
                 "known.",
                 answer=True,
             )
         elif softens <= coldest:
             findings.caution(
                 "softening",
-                f"Adhesive {name!r} softens at {softens:g} degC and works as a rubber over the whole of service, "
-                f"{coldest:g} to {hottest:g} degC: its values must come from tests of that state, and it creeps.",
+                f"Adhesive {name!r} softens at {softens:g} °C and works as a rubber over the whole of service, "
+                f"{coldest:g} to {hottest:g} °C: its values must come from tests of that state, and it creeps.",
                 answer=True,
             )
         elif hottest >= softens:
             findings.miss(
-                f"strength of adhesive {name!r} at {hottest:g} degC: that is above its glass transition at "
-                f"{softens:g} degC, where its values no longer hold. Choose another adhesive, or test it hot."
+                f"strength of adhesive {name!r} at {hottest:g} °C: that is above its glass transition at "
+                f"{softens:g} °C, where its values no longer hold. Choose another adhesive, or test it hot."
             )
         elif hottest > softens - BELOW_SOFTENING:
             findings.caution(
                 "softening",
-                f"Service reaches {hottest:g} degC and adhesive {name!r} softens at {softens:g} degC: less than "
+                f"Service reaches {hottest:g} °C and adhesive {name!r} softens at {softens:g} °C: less than "
                 f"{BELOW_SOFTENING:g} K apart. Its values must come from tests at that temperature.",
                 answer=True,
             )

@@ -9,6 +9,7 @@ from collections.abc import Iterable, Iterator, Mapping, Sequence
 from dataclasses import dataclass
 from typing import Any, Literal
 
+from server import units
 from server.mechanics.control_chart import Chart
 from server.sheets import coupon_tables
 from server.sheets.composition import PRECEDENCE, STANDING_CAUTION, Part, working
@@ -305,7 +306,7 @@ def area_as_typed(coupon: Mapping[str, Any]) -> str:
 def _typed(value: object, of: str) -> str:
     if isinstance(value, int | float) and not isinstance(value, bool):
         return f"{readable(float(value))} {of}"
-    return "" if value is None else str(value)
+    return "" if value is None else units.degrees(str(value))
 
 
 def _shares(failure: Mapping[str, Any] | None) -> list[str]:

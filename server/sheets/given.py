@@ -358,14 +358,14 @@ def used_text(value: object, kind: str, display: str) -> str:
 
 
 def typed_text(value: object) -> str:
-    """A value as it was typed; plain numbers without needless digits."""
+    """A value as it was typed, read by people: plain numbers without needless digits, degrees with their sign."""
     if value is None:
         return ""
     if isinstance(value, bool):
         return "yes" if value else "no"
     if isinstance(value, float):
         return f"{value:.12g}"
-    return str(value)
+    return units.degrees(str(value))
 
 
 def _joined(line: str, words: str, value: str) -> str:

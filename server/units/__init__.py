@@ -11,7 +11,7 @@ and is refused. A mass is never taken for a force, except ``kg/m2`` and ``lb/ft2
 """
 
 from server.units.reading import LONGEST, given, parse
-from server.units.showing import THIN, digits, display_unit, scale_of, show, unit_of
+from server.units.showing import THIN, degrees, digits, display_unit, scale_of, show, unit_of
 from server.units.table import GRAVITY, KINDS, Kind
 
 __all__ = [
@@ -20,6 +20,7 @@ __all__ = [
     "LONGEST",
     "THIN",
     "Kind",
+    "degrees",
     "digits",
     "display_unit",
     "given",

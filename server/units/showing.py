@@ -74,6 +74,15 @@ def show(value: float, kind: str, display: str = "SI") -> str:
     return f"{text}{unit}" if unit == "°" else f"{text} {unit}"
 
 
+def degrees(text: str) -> str:
+    """Return a typed quantity with the sign of a degree where the unit was spelt for the keyboard.
+
+    >>> degrees("-10 degC to 104 degF")
+    '-10 °C to 104 °F'
+    """
+    return text.replace("degC", "°C").replace("degF", "°F")
+
+
 def digits(number: float, separator: str = THIN, whole: float = 1e6) -> str:
     """Four significant digits without trailing noughts; whole digits below ``whole`` are kept, in groups of three."""
     size = abs(number)

@@ -8,7 +8,7 @@ from datetime import UTC, datetime
 from fastapi import APIRouter
 from fastapi.responses import Response
 
-from server import ENGINE, jobs, library, sheets
+from server import ENGINE, jobs, library, sheets, units
 from server.library import Link, Record, reading
 from server.storage import Session
 from server.web import record_form
@@ -120,7 +120,7 @@ def _set_facts(coupon_set: Record) -> Iterator[tuple[str, str]]:
         ("cured_days", "Days of cure before the test"),
     ):
         if values.get(name) is not None:
-            yield label, str(values[name])
+            yield label, units.degrees(str(values[name]))
     if coupon_set.source:
         yield "Test report", coupon_set.source
 

@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Mapping, Sequence
 from typing import Any
 
+from server import units
 from server.web.form_fields import GROUPS, SINGLES
 
 Raw = Mapping[str, Any]
@@ -162,7 +163,7 @@ def _service(service: Raw) -> str:
         said.append(f"cured at {service['cure_temperature']}")
     if service.get("moisture_change"):
         said.append("moisture change " + ", ".join(f"{n} {c}" for n, c in service["moisture_change"].items()))
-    return "; ".join(said)
+    return units.degrees("; ".join(said))
 
 
 def _some(parts: Sequence[str], between: str = ", ") -> str:

@@ -329,7 +329,7 @@ def shown(record: Record) -> list[tuple[str, str]]:
             text = ", ".join(f"{name} {_plain(factor)}" for name, factor in value.items())
         else:
             text = _plain(value) + _unit_after(value, box)
-        found.append((box.label, _shown(text)))
+        found.append((box.label, units.degrees(text)))
     return found
 
 
@@ -376,11 +376,6 @@ def _plain(value: object) -> str:
     if isinstance(value, bool):
         return "yes" if value else "no"
     return f"{value:g}" if isinstance(value, float) else str(value)
-
-
-def _shown(text: str) -> str:
-    """A typed quantity as people read it."""
-    return text.replace("degC", "°C").replace("degF", "°F")
 
 
 def _unit_after(value: object, box: Box) -> str:

@@ -200,7 +200,21 @@ def breakable(node: Layout) -> Layout:
             return ["row", *_in_line(over, _additive(over)), ["sign", "/"], *_in_line(under, under[0] == "row")]
         case ["brackets", inner] if width(node) > WIDEST:
             return ["row", *_in_line(inner, True)]
+        case ["root", inner] if width(node) > WIDEST:  # a root sign cannot break; the exponent 1/2 says the same
+            *kept, last = _in_line(inner, True)
+            return ["row", *kept, ["power", last, ["row", number(1, 1), ["sign", "/"], number(2, 1)]]]
+        case ["function", name, *inner] if width(node) > WIDEST:
+            listed = [["sign", ","] if part is None else part for part in _listed(inner)]
+            return ["row", ["word", name], ["sign", "("], *listed, ["sign", ")"]]
     return node
+
+
+def _listed(arguments: list[Layout]) -> list[Layout | None]:
+    """The parts of a function's arguments in one row; None stands between two arguments."""
+    found: list[Layout | None] = []
+    for each in arguments:
+        found += [*([None] if found else []), *spread(breakable(each))]
+    return found
 
 
 def _in_line(node: Layout, brackets: bool) -> list[Layout]:

@@ -2,8 +2,11 @@
 
 from __future__ import annotations
 
+import re
 import shutil
+import subprocess
 from dataclasses import replace
+from pathlib import Path
 from typing import Any
 
 import pytest
@@ -165,6 +168,26 @@ def test_what_people_typed_is_set_as_it_stands() -> None:
 def test_a_sign_without_a_glyph_is_named() -> None:
     with pytest.raises(UnprintableError, match="U\\+1F600"):
         evidence_pdf(evidence(name="good \U0001f600"))
+
+
+@needs_pdftotext
+@pytest.mark.parametrize("paper", ["A4", "Letter"])
+@pytest.mark.parametrize("n", [11, 30, 200])
+def test_nothing_runs_off_the_paper(n: int, paper: str, tmp_path: Path) -> None:
+    shares = {"adhesive": 10, "special_cohesive": 20, "cohesive": 30, "substrate": 40}
+    listed = [
+        {"load": f"{2250 + 37 * (i * i % 23)} N", "width": "50 mm", "length": "25.4 mm", "failure": shares}
+        | {"lot": f"24-{i % 7}", "thickness": f"0.1{i % 5} mm", "date_tested": f"2026-03-{16 + i % 5}"}
+        for i in range(n)
+    ]
+    raw = sets.document(listed)
+    made = tmp_path / "evidence.pdf"
+    made.write_bytes(evidence_pdf(evidence(result=checks.run(documents.read(raw)), document=raw, paper=paper)))
+    boxes = subprocess.run(["pdftotext", "-bbox", made, "-"], capture_output=True, text=True, check=True).stdout
+    width = float(re.findall(r'<page width="([\d.]+)"', boxes)[0])
+    ends = [float(each) for each in re.findall(r'xMax="([\d.]+)"', boxes)]
+    assert len(ends) > 200
+    assert max(ends) < width - 39  # the right margin is 14 mm: 39.7 points
 
 
 def test_a_long_set_and_long_words_still_print() -> None:

@@ -67,6 +67,18 @@ def test_a_wide_fraction_is_set_in_a_row_that_can_break():
     assert typst_math(w.steps[0])["formula"][0] == "fraction", "the symbols are short enough"
 
 
+@pytest.mark.parametrize(("text", "last"), [("sqrt(sum(x*x))", "power"), ("max(sum(x*x), 1)", "sign")])
+def test_a_root_or_a_function_over_a_long_sum_is_set_in_a_row_that_can_break(text, last):
+    w = Working()
+    w.step("Long", "s", text, {"x": ([1.2345 + i for i in range(11)], "")})
+    row = typst_math(w.steps[0])["numbers"]
+    assert row[0] == "row"
+    assert row.count(["sign", "+"]) == 10, "every plus stands where a line may break"
+    assert row[-1][0] == last
+    signs = str(row)
+    assert signs.count("'('") == signs.count("')'")
+
+
 @pytest.mark.parametrize(
     ("text", "line"),
     [
