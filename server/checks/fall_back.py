@@ -98,7 +98,8 @@ def _joint_block(check: JointCheck) -> dict[str, object]:
     assert gone is not None
     limits = check.result["limits"]
     assert isinstance(limits, list)
-    own = [limit for limit in limits if limit["demand_unit"] == "N"]
+    own = [limit for limit in limits if limit["demand_unit"] == "N"]  # as one section, then the rib alone
+    most: dict[str, float] = max(own, key=lambda limit: float(limit["utilisation"]), default={})
     row = fastening.demand.peak
     slips = gone.slide.slips[check.site.index]
     return {
@@ -108,8 +109,9 @@ def _joint_block(check: JointCheck) -> dict[str, object]:
         "at": float(fastening.demand.at[row]),
         "slip": largest(*slips.whole.absolute()).value,
         "force": own[0]["demand"] if own else None,
+        "force_judged": most["demand"] if own else None,
         "resistance": own[0]["resistance"] if own else None,
-        "utilisation": own[0]["utilisation"] if own else None,
+        "utilisation": most["utilisation"] if own else None,
         "spacing_needed": check.result["spacing_needed"],
     }
 

@@ -84,7 +84,12 @@ def write_joint(check: JointCheck, weighed: list[Weighed | None], body: Body, ju
         if force is not None:
             limits.append({**judge.write(force, group_of), "state": "glue gone" if check.gone is not None else ""})
     known = [w for w in weighed if w is not None]
-    limits += [judge.write(w, group) for w in known if w.claim.symbol not in (*BOND, "F")]
+    state = {"state": "glue gone" if check.gone is not None else ""}
+    for other in known:
+        if other.claim.symbol == "F_r":  # the rib with its own width
+            limits.append({**judge.write(other, f"{group}, glue gone" if check.gone is not None else group), **state})
+        elif other.claim.symbol not in (*BOND, "F"):
+            limits.append(judge.write(other, group))
     check.result["limits"] = limits
     check.governing = worst(known)
     check.result["utilisation"] = None if check.governing is None else check.governing.utilisation

@@ -241,6 +241,7 @@ def _judge(
     gone: list[PieceCheck] = []
     if flows.gone is not None:
         gone = claim_pieces(body, scanned, judge, upper_stiffness=False, slide=flows.gone.slide, fall_back=True)
+        add_rib_claims([], gone, body, judge, sliding=True)
     claimed = [*(joint.claims for joint in joints), *(piece.claims for piece in (*pieces, *gone))]
     weighed = _in_groups(judge.weigh([claim for claims in claimed for claim in claims]), claimed)
     for joint, own in zip(joints, weighed, strict=False):
@@ -303,7 +304,7 @@ def _governing(
 def _state(check: JointCheck | PieceCheck) -> str:
     """With the glue gone, where that is what governs a joint."""
     gone = isinstance(check, JointCheck) and check.gone is not None
-    return " with the glue gone" if gone and check.governing and check.governing.claim.symbol == "F" else ""
+    return " with the glue gone" if gone and check.governing and check.governing.claim.symbol in ("F", "F_r") else ""
 
 
 def _verdict(governing: Candidate | None, findings: Findings) -> dict[str, object]:

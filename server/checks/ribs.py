@@ -164,14 +164,14 @@ def _joint_claims(joint: JointCheck, ribs: Mapping[int, Rib], body: Body, judge:
         return
     factor = np.array([times.get(t, 1.0) for t in joint.demand.stretch.tolist()])
     joint.times = np.maximum(factor, 1.0)
-    judged = "tau" if joint.site.bonded else "F"
-    joint.claims += [_scaled(claim, times, before) for claim in joint.claims if claim.symbol == judged]
+    joint.claims += [_scaled(claim, times, before) for claim in joint.claims if claim.symbol in ("tau", "F")]
     if joint.fastening is not None:
         judge.findings.caution(
             "rib with its own width",
             f"{joint.site.id}: alone with its own width of the skin the rib has {max(times.values()):.3f} times the "
-            "flow that it has in the whole section; the spacing needed is to be divided by that"
-            + (", with the glue gone as well." if joint.site.bonded else "."),
+            "flow that it has in the whole section. The fasteners are judged with that"
+            + (", with the glue gone as well" if joint.site.bonded else "")
+            + ", and the zones of spacing have it in them; the one spacing needed is to be divided by it.",
         )
 
 

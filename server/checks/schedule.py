@@ -51,11 +51,16 @@ def step_of(document: documents.MemberDocument) -> float:
 
 
 def needed(
-    document: documents.MemberDocument, fastenings: Sequence[Fastening], along: Along, again: Again | None
+    document: documents.MemberDocument,
+    fastenings: Sequence[Fastening],
+    along: Along,
+    again: Again | None,
+    times: Mapping[int, float],
 ) -> dict[int, Chosen | str]:
     """Zones that the flow asks for, joint by joint; in words why there are none.
 
-    ``again`` reckons the member with other zones where the joints slip: a tighter spacing draws more flow.
+    ``again`` reckons the member with other zones where the joints slip: a tighter spacing draws more flow. ``times``
+    the flow of a joint is to be taken, by its number: a rib alone may have more than it has in the whole section.
     """
     carrying = [f for f in fastenings if f.strength is not None and f.demand.flow.max() > 0]
     worst: dict[int, tuple[NDArray[np.float64], NDArray[np.float64]]] = {}
@@ -65,6 +70,7 @@ def needed(
             site = fastening.site
             grid = np.arange(*_ends(site), step_of(document) / 2)
             x, q = along.profile(site, grid)
+            q = q * times.get(site.index, 1.0)
             if site.index in worst:
                 before = worst[site.index]
                 q = np.maximum(q, np.array([np.interp(x, before[0], row) for row in before[1]]))
@@ -73,7 +79,7 @@ def needed(
         if again is None or any(isinstance(each, str) for each in found.values()):
             break
         along = again({index: each.zones for index, each in found.items() if not isinstance(each, str)})
-        if all(_holds(fastening, found[fastening.site.index], along, document) for fastening in carrying):
+        if all(_holds(each, found[each.site.index], along, times.get(each.site.index, 1.0)) for each in carrying):
             break
     return found
 
@@ -137,12 +143,12 @@ def _half(spacing: float, step: float, length: float) -> float:
     return float(min(whole if whole > 0 else half, length / 4))
 
 
-def _holds(fastening: Fastening, chosen: Chosen | str, along: Along, document: documents.MemberDocument) -> bool:
+def _holds(fastening: Fastening, chosen: Chosen | str, along: Along, times: float) -> bool:
     """Whether the zones still hold with the flow that they themselves bring about."""
     if isinstance(chosen, str):
         return False
     x, q = along.profile(fastening.site, np.zeros(0))
-    limit = _limit(fastening, q)
+    limit = _limit(fastening, q * times)
     spacing = np.max([np.where((x >= z.start) & (x <= z.end), z.spacing, 0.0) for z in chosen.zones], axis=0)
     return bool((spacing <= limit * (1 + 1e-6)).all())
 
@@ -205,11 +211,12 @@ def add_schedules(
 ) -> None:
     """Put the zones that are needed and the fasteners as set out into every joint's block of the result."""
     chosen: dict[int, Chosen | str] = {}
+    times = {check.site.index: float(check.times.max()) for check in joints if check.times is not None}
     alone = [check.fastening for check in joints if check.fastening is not None and check.gone is None]
     beside = [check.fastening for check in joints if check.fastening is not None and check.gone is not None]
     for fastenings, along in ((alone, flows.along), (beside, flows.gone)):
         if fastenings and along is not None:
-            chosen |= needed(document, fastenings, along, _again(document, body, rigid, along))
+            chosen |= needed(document, fastenings, along, _again(document, body, rigid, along), times)
     for check in joints:
         if check.site.spec.fastener is None:
             continue

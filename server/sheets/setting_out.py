@@ -12,7 +12,7 @@ from typing import Any
 
 from server.sheets import drafting
 from server.sheets.section_view import joint_numbers
-from server.sheets.svg import Drawing, shorten
+from server.sheets.svg import Drawing, shorten, text_width
 from server.sheets.tables import column, table
 from server.sheets.values import DASH, in_units, unit
 
@@ -50,6 +50,14 @@ class Laid:
         if n == list(range(n[0], n[-1] + 1)):
             return f"Joints {n[0]} to {n[-1]}"
         return "Joints " + ", ".join(str(each) for each in n)
+
+    def named(self) -> str:
+        """'skin to rib 1, rib 2, rib 3': pieces that several joints share are written once where they all share one."""
+        pairs = [tuple(name.split("/", 1)) for name in self.names]
+        for side in (0, 1):
+            if len(pairs) > 1 and all(len(pair) == 2 for pair in pairs) and len({pair[side] for pair in pairs}) == 1:
+                return f"{pairs[0][side]} to {', '.join(pair[1 - side] for pair in pairs)}"
+        return ", ".join(self.names)
 
 
 def laid_out(result: Result) -> list[Laid]:
@@ -96,13 +104,14 @@ def setting_out_svg(result: Result, *, display: str = "SI", width: float = 640.0
 
 def _lane(drawing: Drawing, laid: Laid, scale: float, length: float, y: float, display: str, width: float) -> float:
     out = laid.out
-    names = ", ".join(laid.names)
     rows = f", {out['rows']} rows" if int(out["rows"]) > 1 else ""
     head = f"{laid.numbered()}: {laid.fastener}{rows}, {out['count']} in each" if len(laid.names) > 1 else (
         f"{laid.numbered()}: {laid.fastener}{rows}, {out['count']}"
     )  # fmt: skip
-    drawing.text(MARGIN, y + 13, shorten(head, 0.62 * width), bold=True)
-    drawing.text(width - MARGIN, y + 13, shorten(names, 0.32 * width, 9.5), "end", size=9.5)
+    head = shorten(head, 0.62 * width)
+    drawing.text(MARGIN, y + 13, head, bold=True)
+    room = width - 2 * MARGIN - 1.1 * text_width(head) - 12
+    drawing.text(width - MARGIN, y + 13, shorten(laid.named(), room, 9.5), "end", size=9.5)
     line = y + 34
     left, right = MARGIN, MARGIN + length * scale
     start, end = MARGIN + float(out["from"]) * scale, MARGIN + float(out["to"]) * scale
@@ -221,6 +230,8 @@ def remarks(result: Result, display: str) -> Iterator[Part]:
     for each in laid_out(result):
         out = each.out
         size = unit("mm", display)
+        if len(each.names) > 1:
+            lines.append(f"{each.numbered()}: {each.named()}, all set out alike.")
         if out["as"] == "needed":
             lines.append(f"{each.numbered()}: no spacing was given; these are the zones that the flow asks for.")
         if not out.get("end_distance_given"):

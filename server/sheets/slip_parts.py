@@ -78,7 +78,7 @@ def _fall_back(result: Result, display: str) -> Iterator[Part]:
     rows = [
         [
             str(numbers.get(joint["id"], "")), joint["id"], flow.number(joint.get("shear_flow")),
-            length.number(joint.get("slip")), quantity(joint.get("force"), "N", display),
+            length.number(joint.get("slip")), quantity(joint.get("force_judged", joint.get("force")), "N", display),
             quantity(joint.get("resistance"), "N", display), used(joint.get("utilisation")),
         ]
         for joint in found.get("joints") or ()
@@ -90,6 +90,11 @@ def _fall_back(result: Result, display: str) -> Iterator[Part]:
             column("Resistance", side="right"), column("Utilisation", side="right"),
         ]  # fmt: skip
         yield table(columns, rows)
+        own = [j for j in found["joints"] if j.get("force_judged", j.get("force")) != j.get("force")]
+        if own:
+            named = ", ".join(str(numbers.get(j["id"], j["id"])) for j in own)
+            words = "Force each with the rib's own width of the skin, which is more than its share in the whole section"
+            yield {"kind": "text", "text": f"Joint {named}: {words[0].lower()}{words[1:]}."}
     limits = [
         [piece["id"], row[0], row[2], row[3], row[6]]
         for piece in found.get("pieces") or ()

@@ -89,6 +89,12 @@ def deck_by_hand(span_ft: float) -> Raw:
     )
 
 
+def _first_of_deck() -> float:
+    """First moment of the skin about the neutral axis of the whole deck [psi, in]."""
+    EA = (1.2e6 * 48 * 0.703, 1.3e6 * 5 * 1.5 * 3.5)
+    return EA[0] * EA[1] / sum(EA) * (0.703 + 3.5) / 2
+
+
 class TestTheStageDeck:
     @pytest.mark.parametrize(
         ("span", "left", "force", "verdict"), [(8, 0.44, 299, "there is none"), (4, 0.35, 55, "there is a fall-back")]
@@ -111,21 +117,37 @@ class TestTheStageDeck:
         result, by_hand = run(deck(8)), deck_by_hand(8)
         for joint in result["joints"]:
             assert joint["shear_flow"] == pytest.approx(24.5219, rel=1e-5)  # 140 lbf/in: a rib's first moment over EI
-            limit = joint["limits"][-1]
-            assert limit["what"] == "fastener screw"
+            limit = next(own for own in joint["limits"] if own["what"] == "fastener screw")
             assert limit["demand"] == pytest.approx(by_hand["flow"] / 5 * 6 * IN, rel=1e-6)
             assert limit["resistance"] == pytest.approx(350 / 3 * LBF)
             assert joint["spacing_needed"] == pytest.approx(350 / 3 * LBF / (by_hand["flow"] / 5), rel=1e-6)
-            worst = max(
-                each["utilisation"] for each in joint["limits"][:-1]
-            )  # of inner ribs: alone, with their own width
+            worst = max(own["utilisation"] for own in joint["limits"] if own["demand_unit"] == "MPa")  # own width too
             assert joint["width_needed"] == pytest.approx(joint["bonded_width"] * worst)
         assert result["verdict"] == "fail"
         assert "glue gone" in result["governing"]
 
+    def test_an_inner_rib_alone_has_more_of_everything_with_the_glue_gone_too(self) -> None:
+        """A quarter of the load on one rib, not a fifth: screws and ribs as often over as the rigid strip says."""
+        result = run(deck(4))
+        E_ply, E_pine, b = 1.2e6, 1.3e6, 11.625
+        EA, bend = (E_ply * b * 0.703, E_pine * 5.25), (E_ply * b * 0.703**3 / 12, E_pine * 1.5 * 3.5**3 / 12)
+        reduced, r = EA[0] * EA[1] / sum(EA), (0.703 + 3.5) / 2
+        EI, first = sum(bend) + reduced * r**2, reduced * r
+        whole = deck_by_hand(4)["EI"] / (LBF * IN**2)
+        own, together = b / 48 * first / EI, _first_of_deck() / 5 / whole
+        inner, edge = result["fall_back"]["joints"][2], result["fall_back"]["joints"][0]
+        assert inner["force_judged"] / inner["force"] == pytest.approx(own / together, rel=1e-4)
+        assert inner["utilisation"] == pytest.approx(inner["force_judged"] / inner["resistance"])
+        assert edge["force_judged"] == edge["force"]
+        ribs = {piece["id"]: piece for piece in result["fall_back"]["pieces"]}
+        ratio = ribs["rib 3"]["utilisation"] / ribs["rib 1"]["utilisation"]
+        assert ratio == pytest.approx(b / 48 * whole / EI, rel=1e-4)
+        limit = next(each for each in ribs["rib 3"]["limits"] if "own width" in each["what"])
+        assert limit["safety_factor"] == 3
+
     def test_its_own_factor_stands_in_for_all_that_is_judged_with_the_glue_gone(self) -> None:
         result = run(deck(4), basis__fall_back_factor=1.5)
-        limit = result["joints"][0]["limits"][-1]
+        limit = next(own for own in result["joints"][0]["limits"] if own["what"] == "fastener screw")
         assert (limit["safety_factor"], limit["resistance"]) == (1.5, pytest.approx(350 / 1.5 * LBF))
         assert result["joints"][0]["limits"][0]["safety_factor"] == 3.0
         assert {own["safety_factor"] for piece in result["fall_back"]["pieces"] for own in piece["limits"]} == {1.5}
