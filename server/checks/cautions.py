@@ -68,6 +68,13 @@ def _joints(document: documents.MemberDocument, body: Body, joints: list[JointCh
             answer=True,
         )
     for role, ids in fastened.items():
+        if role == "hybrid":
+            findings.caution(
+                "fasteners with adhesive",
+                f"{', '.join(ids)}: judged by what the shop's own tests of this joint gave with glue and fasteners "
+                "together, at that spacing. The two strengths are never added; a joint built otherwise has no value.",
+            )
+            continue
         carried = "are judged as if it were gone" if role == "fall-back" else f"({role}) are held to carry none of it"
         findings.caution(
             "fasteners with adhesive",

@@ -12,6 +12,7 @@ from server.checks.along import FLOW, Along, Demand, RigidAlong, SlidingAlong, l
 from server.checks.crosssection import Body, Part, Site, Stretch
 from server.checks.fastened import Fastening, claim_fasteners, write_fasteners
 from server.checks.field_steps import beside_hand, write_share
+from server.checks.hybrid import hybrid_strength
 from server.checks.resistance import Claim, Judge, Strength, Weighed, resistance_formula, worst
 from server.checks.slip_steps import write_sliding_flow
 from server.checks.statics import Statics
@@ -187,6 +188,10 @@ def _blank(site: Site) -> dict[str, object]:
 def _bond_strengths(site: Site, body: Body, judge: Judge) -> list[Strength | None]:
     """Adhesive, then the surface of either piece; a missing one is None and named in the findings."""
     name, adhesive = _adhesive(site, judge)
+    if site.spec.role == "hybrid":
+        bond = hybrid_strength(site, name, adhesive, judge)
+        bond = bond and bond.reduced(bond_reductions(site, body, judge.rules))
+        return [bond, *(_surface_strength(part, site, body, judge) for part in (site.first, site.second))]
     if adhesive.shear_strength is None:
         judge.findings.miss(
             f"shear strength of adhesive {name!r} (joint {site.id}): bond shear coupons of these two surfaces, "

@@ -21,6 +21,7 @@ from server.documents.quantities import (
     Reduction,
     Resistance,
     Revision,
+    Rows,
     Safety,
     Share,
     Size,
@@ -125,7 +126,8 @@ class Adhesive(Values):
     """One adhesive as bonded and tested by the shop.
 
     ``glass_transition``: temperature at which it softens; ``creep_limit``: the share of its resistance that a lasting
-    load may use; ``fatigue``: what it bears of a load that repeats.
+    load may use; ``fatigue``: what it bears of a load that repeats. ``hybrid_shear_strength`` is that of glue and
+    fasteners tested together, over the bonded width, with ``hybrid_fastener`` in ``hybrid_rows`` at ``hybrid_spacing``.
     """
 
     shear_strength: Stress | None = None
@@ -139,6 +141,10 @@ class Adhesive(Values):
     glass_transition: Temperature | None = None
     creep_limit: Share | None = None
     fatigue: FatigueStrength | None = None
+    hybrid_shear_strength: Stress | None = None
+    hybrid_fastener: Line = ""
+    hybrid_spacing: Size | None = None
+    hybrid_rows: Rows | None = None
     kind: Line = ""
 
 

@@ -16,6 +16,7 @@ from server.documents.quantities import (
     Quantity,
     Reduction,
     Revision,
+    Rows,
     Size,
     Stress,
     Temperature,
@@ -66,7 +67,10 @@ class Lot(Model):
 
 
 class CouponSet(Model):
-    """Broken coupons of one kind: one product, two surfaces, one cure, one test."""
+    """Broken coupons of one kind: one product, two surfaces, one cure, one test.
+
+    Of glue and fasteners together: which fastener, at which spacing, in how many rows.
+    """
 
     property: Name
     coupons: Annotated[list[Coupon], Field(min_length=1, max_length=MOST)]
@@ -74,6 +78,9 @@ class CouponSet(Model):
     thickness: Size | None = None
     temperature: Temperature | None = None
     cured_days: Days | None = None
+    hybrid_fastener: Line = ""
+    hybrid_spacing: Size | None = None
+    hybrid_rows: Rows | None = None
     display: Literal["SI", "US"] = "SI"
 
 
@@ -87,6 +94,9 @@ class Value(Model):
     thickness: Range | None = None
     service_temperature: Temperatures | None = None
     glass_transition: Temperature | None = None
+    hybrid_fastener: Line = ""
+    hybrid_spacing: Size | None = None
+    hybrid_rows: Rows | None = None
 
 
 class Factor(Model):

@@ -31,7 +31,7 @@ from server.documents.quantities import (
     Temperature,
 )
 
-Role = Literal["sole", "fall-back", "peel-stop", "press"]
+Role = Literal["sole", "fall-back", "peel-stop", "press", "hybrid"]
 
 
 class _Piece(Model):

@@ -127,7 +127,7 @@ def _joint_roles(path: str, joint: Joint) -> Iterator[Fault]:
             f"{path}.role",
             "'sole' means that fasteners carry the whole flow, and the joint has an adhesive too; strengths of glue "
             "and fasteners are never added. Take the adhesive out, or give the fasteners another role: 'fall-back', "
-            "'peel-stop' or 'press'.",
+            "'peel-stop', 'press', or 'hybrid' where the shop has tested that very joint with both.",
         )
     if joint.role not in (None, "sole") and joint.adhesive is None:
         yield Fault(

@@ -30,6 +30,9 @@ PROPERTIES = {
         Property("adhesive modulus", "adhesives", "E", "stress", "mean"),
         Property("bond shear yield", "adhesives", "shear_yield", "stress"),
         Property("bond shear strain limit", "adhesives", "shear_strain_limit", "factor"),
+        Property(
+            "hybrid joint shear", "adhesives", "hybrid_shear_strength", "stress", note="glue and fasteners together"
+        ),
         Property("peel", "adhesives", "", "line_load", note="a workmanship value; no check uses it"),
         Property("fastener shear", "fasteners", "shear_resistance", "force"),
         Property("slip modulus", "fasteners", "slip_modulus", "stiffness", "mean"),
@@ -50,6 +53,9 @@ PROPERTIES = {
 BY_FIELD = {(each.section, each.field): each for each in PROPERTIES.values() if each.field}
 # What coupons can be broken for: their stress, or for a fastener their load.
 FROM_COUPONS = tuple(each.name for each in PROPERTIES.values() if each.kind in ("stress", "force"))
+HYBRID = "hybrid joint shear"
+HYBRID_FIELDS = ("hybrid_fastener", "hybrid_spacing", "hybrid_rows")
+"""What a strength of glue and fasteners together holds for; a value has it from its coupons, a bond from its value."""
 PINNED = "value:"
 
 

@@ -12,6 +12,7 @@ from server.library import reading
 from server.library.coupon_sets import in_words
 from server.library.groups import ALL, BY_SECTION, STOPPED, Group
 from server.library.nearest import nearest_words
+from server.library.properties import HYBRID, HYBRID_FIELDS
 from server.library.record import Factor, Link, NotFoundError, Record
 from server.storage import Session
 
@@ -74,6 +75,8 @@ def assembled(session: Session, record: Record) -> dict[str, Any]:
         head, _, tail = at.partition(".")
         value = pinned[link].values["value"]
         found[head] = {**found.get(head, {}), tail: value} if tail else value
+        if pinned[link].values["property"] == HYBRID:  # holds for the fasteners that were tested, whatever was typed
+            found |= {name: pinned[link].values[name] for name in HYBRID_FIELDS if name in pinned[link].values}
     found["status"] = worst([found["status"], *(each["status"] for each in lineage.values())])
     found["lineage"] = lineage
     if "source" not in found:

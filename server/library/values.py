@@ -16,7 +16,7 @@ from server.library import fields
 from server.library.coupon_sets import coupon_result, document_of, result_value
 from server.library.groups import Group
 from server.library.links import placeholders
-from server.library.properties import FROM_COUPONS, PROPERTIES, Property
+from server.library.properties import FROM_COUPONS, HYBRID, HYBRID_FIELDS, PROPERTIES, Property
 from server.library.record import Record
 from server.storage.tables import compact
 
@@ -85,6 +85,15 @@ def _set_faults(values: Mapping[str, Any]) -> list[Fault]:
     if isinstance(property, str) and property not in FROM_COUPONS:
         message = f"{property[:60]!r} is not found from coupons here; choose one of {', '.join(FROM_COUPONS)}."
         found.append(Fault("values.property", message))
+    if property == HYBRID:
+        found += [
+            Fault(f"values.{name}", f"Missing; {wanted}, for the value holds for that alone.")
+            for name, wanted in (
+                ("hybrid_fastener", "name the fastener that was in the coupons, or the key of its record"),
+                ("hybrid_spacing", "enter the spacing of the fasteners in the coupons"),
+            )
+            if not values.get(name)
+        ]
     try:
         document = documents.read(document_of(values))
     except DocumentError as error:
@@ -103,6 +112,12 @@ def _value_faults(values: Mapping[str, Any]) -> list[Fault]:
     if known is None:
         message = f"{values['property']!r} is not known here; choose one of {', '.join(PROPERTIES)}."
         return [Fault("values.property", message)]
+    if known.name == HYBRID and values["origin"] != "coupon set":
+        message = (
+            "Strengths of glue and fasteners are never added; the strength of both together is the shop's own test of "
+            "that very joint. Name its coupon set."
+        )
+        return [Fault("values.origin", message)]
     if values.get("value") is None:
         if values["origin"] == "coupon set":
             return []
@@ -161,6 +176,7 @@ def complete_value(
             faults.append(Fault("values.value", message))
     typed = entry.get("value")
     completed = {**entry, "value": shown if typed is None else typed}
+    completed |= {name: behind.values[name] for name in HYBRID_FIELDS if behind.values.get(name)}
     completed[FOUND] = {**_found(result), "typed": typed is not None}
     return completed, {**behind.details, **details}
 

@@ -60,6 +60,10 @@ _ADHESIVE = {
     "shear_strain_limit": ("Shear strain limit", "factor"),
     "glass_transition": ("Softens at", "temperature"),
     "creep_limit": ("Creep limit", "factor"),
+    "hybrid_shear_strength": ("Shear strength with fasteners", "stress"),
+    "hybrid_fastener": ("Tested with", ""),
+    "hybrid_spacing": ("at a spacing of", "length"),
+    "hybrid_rows": ("Rows when tested", ""),
     "kind": ("Kind", ""),
 }
 _FASTENER = {

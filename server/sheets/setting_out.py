@@ -24,6 +24,7 @@ ROLE_WORDS = {
     "fall-back": "fall-back if the glue is lost",
     "peel-stop": "stop end peel",
     "press": "press while the glue cures",
+    "hybrid": "carry with the glue, as tested together",
 }
 
 

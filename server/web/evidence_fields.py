@@ -54,6 +54,9 @@ BOXES: dict[str, tuple[Box, ...]] = {
         Box("value", "Value", hint="with its unit; blank: what the coupons show. It may be typed lower, never higher"),
         *_THICKNESS,
         *_SERVICE,
+        Box("hybrid_fastener", "With the fastener", hint="glue and fasteners together: from the set", more=True),
+        Box("hybrid_spacing", "Spacing when tested", "size", more=True),
+        Box("hybrid_rows", "Rows when tested", whole=True, more=True),
         Box(
             "distribution",
             "Distribution",

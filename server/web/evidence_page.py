@@ -118,6 +118,9 @@ def _set_facts(coupon_set: Record) -> Iterator[tuple[str, str]]:
         ("thickness", "Glue line, nominal"),
         ("temperature", "Cured and tested in"),
         ("cured_days", "Days of cure before the test"),
+        ("hybrid_fastener", "Fastener in the coupons"),
+        ("hybrid_spacing", "Spacing of the fasteners"),
+        ("hybrid_rows", "Rows of fasteners"),
     ):
         if values.get(name) is not None:
             yield label, units.degrees(str(values[name]))

@@ -19,7 +19,14 @@ from server.web.set_columns import COLUMNS, DEFAULTS, FIRST_ROWS, MOST_ROWS, ROW
 _ROW = re.compile(r"coupons\[(\d{1,4})\]\.(\w+)")
 _OUT = re.compile(r"excluded\[(\d{1,4})\]\.(\w+)")
 _LONGEST = 2000
-CONDITIONS = {"thickness": "size", "temperature": "temperature", "cured_days": ""}
+CONDITIONS = {
+    "thickness": "size",
+    "temperature": "temperature",
+    "cured_days": "",
+    "hybrid_fastener": "",
+    "hybrid_spacing": "size",
+    "hybrid_rows": "",
+}
 """Boxes about the whole set, with their units."""
 SPARE_EXCLUSIONS = 1
 

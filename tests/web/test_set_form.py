@@ -154,3 +154,16 @@ def test_every_column_and_share_is_a_field_of_a_coupon() -> None:
 
     assert {*COLUMNS, *(way.field for way in WAYS.values())} <= set(Coupon.model_fields)
     assert set(SHARES) == set(Failure.model_fields)
+
+
+def test_a_set_of_a_hybrid_joint_says_its_fasteners_and_gives_them_back() -> None:
+    boxes = {
+        "property": "hybrid joint shear", "units": "US", "way": "stress psi", "coupons[0].reading": "430",
+        "set.hybrid_fastener": "No. 8 screw", "set.hybrid_spacing": "6", "set.hybrid_rows": "1",
+    }  # fmt: skip
+    values = set_form.read(boxes).values
+    assert values["hybrid_spacing"] == "6 in"
+    filled = set_form.fill(values)
+    assert filled["set.hybrid_fastener"] == "No. 8 screw"
+    assert filled["set.hybrid_rows"] == "1"
+    assert filled["set.hybrid_spacing"].startswith("6")
