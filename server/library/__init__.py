@@ -1,11 +1,13 @@
 """The library: records with revisions and the evidence behind them, and the way from a reference to its values."""
 
 from server.library.acts import approve, approve_invented, put_forward, set_status, waiting
-from server.library.coupon_sets import coupon_document, coupon_result, document_of
+from server.library.chains import ValueChain, chain_line, chains_on
+from server.library.coupon_sets import coupon_document, coupon_result, document_of, measured_result
 from server.library.differences import Difference, differences
 from server.library.finding import search
 from server.library.groups import ALL, EVIDENCE, GROUPS, STATUSES, Group
-from server.library.history import Point, history
+from server.library.history import Point, charted, history
+from server.library.kept_pages import KeptPage, evidence_pdf, kept_page, kept_pdf
 from server.library.obstacles import Obstacle, obstacles
 from server.library.pasted import LineFault, Pasted, read_coupons
 from server.library.properties import PROPERTIES, Property
@@ -17,6 +19,7 @@ from server.library.references import assembled, entry, multiplication, resolve,
 from server.library.rules import Rules, rules, set_rules
 from server.library.sets import ValueDraft, exclude, include, retention_of, value_draft
 from server.library.uses import LotUses, Use, links_to, lot_uses, standing_on, where_used
+from server.library.values import value_text
 
 __all__ = [
     "ALL",
@@ -30,6 +33,7 @@ __all__ = [
     "Factor",
     "Found",
     "Group",
+    "KeptPage",
     "LineFault",
     "Link",
     "LotUses",
@@ -42,6 +46,7 @@ __all__ = [
     "Record",
     "Rules",
     "Use",
+    "ValueChain",
     "ValueDraft",
     "acts",
     "add",
@@ -49,19 +54,26 @@ __all__ = [
     "approve",
     "approve_invented",
     "assembled",
+    "chain_line",
+    "chains_on",
+    "charted",
     "coupon_document",
     "coupon_result",
     "differences",
     "document_of",
     "edit",
     "entry",
+    "evidence_pdf",
     "exclude",
     "get",
     "history",
     "in_force",
     "include",
+    "kept_page",
+    "kept_pdf",
     "links_to",
     "lot_uses",
+    "measured_result",
     "multiplication",
     "obstacles",
     "put_forward",
@@ -77,6 +89,7 @@ __all__ = [
     "standing",
     "standing_on",
     "value_draft",
+    "value_text",
     "waiting",
     "where_used",
 ]

@@ -8,7 +8,7 @@ from typing import Any
 
 from server import storage
 from server.errors import DocumentError, Fault
-from server.library import fields, heads, reading
+from server.library import fields, heads, kept_pages, reading
 from server.library.finding import waiting_ids
 from server.library.groups import ALL
 from server.library.obstacles import entered_by, obstacles, others_who_may
@@ -181,19 +181,20 @@ def _act(
         row = session.get(RevisionRow, record.revision_id)
         if row is None:
             raise NotFoundError(f"There is no {record.itself}.")
-        session.add(
-            ActRow(
-                record_revision_id=row.id,
-                status=status,
-                who=by.name,
-                person_id=by.id or None,
-                at=at,
-                reason=reason,
-                detail=dict(detail),
-            )
+        act = ActRow(
+            record_revision_id=row.id,
+            status=status,
+            who=by.name,
+            person_id=by.id or None,
+            at=at,
+            reason=reason,
+            detail=dict(detail),
         )
+        session.add(act)
         session.flush()
         heads.refresh(session, row.record_id)
+        if status == "approved" and record.group == "values":
+            kept_pages.keep(session, reading.get(session, record.key, record.revision), act.id, at)
         storage.note(
             session,
             at=at,

@@ -9,6 +9,7 @@ from typing import Any
 from server import checks, documents
 from server.library.properties import PROPERTIES
 from server.library.record import Record
+from server.sheets import coupon_tables
 from server.storage.tables import compact
 
 # A fastener breaks at a load, not at a stress: reckoned as if on one square millimetre, so that MPa reads as N.
@@ -51,6 +52,17 @@ def coupon_document(record: Record, statistic: Mapping[str, Any] | None = None) 
 def coupon_result(record: Record, statistic: Mapping[str, Any] | None = None) -> Mapping[str, Any]:
     """Return the result of a set's check, with and without the excluded coupons; kept, as revisions never change."""
     return _run(compact(coupon_document(record, statistic)))
+
+
+def measured_result(record: Record, statistic: Mapping[str, Any] | None = None) -> Mapping[str, Any]:
+    """Return the result of a set in the unit of its property: a fastener's coupons break at loads."""
+    return as_measured(coupon_result(record, statistic), record.values["property"])
+
+
+def as_measured(result: Mapping[str, Any], property: object) -> Mapping[str, Any]:
+    """Return a result in the unit of its property."""
+    known = PROPERTIES.get(str(property))
+    return coupon_tables.in_newtons(result) if known is not None and known.kind == "force" else result
 
 
 @lru_cache(maxsize=256)

@@ -30,6 +30,17 @@ MADE_OF_LINKS = {
     "cure": "cures",
 }
 
+LINK_LABELS = {
+    "product": "Adhesive product",
+    "adherend_a": "Surface A: material",
+    "preparation_a": "Surface A: preparation",
+    "adherend_b": "Surface B: material",
+    "preparation_b": "Surface B: preparation",
+    "cure": "Cure",
+    "set": "Coupon set",
+}
+"""What each link is called, in the order in which they are shown."""
+
 
 @dataclass(frozen=True)
 class Group:

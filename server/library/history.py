@@ -4,11 +4,14 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
+from server import sheets
+from server.errors import InputError
 from server.library import reading
 from server.library.coupon_sets import coupon_result
 from server.library.groups import MADE_OF
 from server.library.record import Record
 from server.library.references import standing
+from server.mechanics.control_chart import Chart, control_chart
 from server.storage import Session
 from server.storage.evidence_tables import HeadRow
 from server.storage.tables import RecordRevision as RevisionRow
@@ -54,6 +57,17 @@ def history(session: Session, record: Record) -> list[Point]:
     every = reading.records(session, session.execute(query).all())
     points = [_point(each) for each in every if same_coupons(each, mine) and standing(each) != "withdrawn"]
     return sorted(points, key=lambda point: (point.date, point.key))
+
+
+def charted(session: Session, record: Record) -> tuple[list[sheets.Point], Chart | None]:
+    """Return the sets of one value over time, and their chart from the second set on; nothing for other groups."""
+    if record.group not in ("values", "sets"):
+        return [], None
+    points = [sheets.Point(each.key, each.date, each.mean) for each in history(session, record)]
+    try:
+        return points, control_chart([point.value for point in points])
+    except InputError:
+        return points, None
 
 
 def same_coupons(one: Record, other: Record) -> bool:

@@ -192,3 +192,11 @@ def _found(result: Mapping[str, Any]) -> dict[str, Any]:
         "failure": result["failure"],
         "engine": ENGINE,
     }
+
+
+def value_text(record: Record, display: str = "SI") -> str:
+    """Return the number of a value record with its unit: as typed or, where it was found, in four digits."""
+    value, known = record.values.get("value"), PROPERTIES.get(str(record.values.get("property")))
+    if isinstance(value, int | float) and known is not None:
+        return units.show(float(value), known.kind, display)
+    return "" if value is None else units.degrees(str(value))

@@ -2,9 +2,10 @@
 
 from server.sheets.bond_ends import blocks as end_blocks
 from server.sheets.composition import STANDING_CAUTION, SheetData, given_values, headline
+from server.sheets.coupon_tables import headline as coupon_headline
 from server.sheets.diagrams import diagram_svg, flow_svg, joint_svg, slip_svg
 from server.sheets.dot_plot import dot_plot_svg
-from server.sheets.evidence import EvidenceData, FactorLine, Reply, area_as_typed, load_as_typed
+from server.sheets.evidence import ChainLines, EvidenceData, FactorLine, Reply, area_as_typed, load_as_typed
 from server.sheets.given import Group, Row, given
 from server.sheets.history import Point, history_svg, in_words
 from server.sheets.loads_drawing import loads_svg
@@ -25,6 +26,7 @@ __all__ = [
     "ONE_PAGES",
     "STANDING_CAUTION",
     "STRESSES",
+    "ChainLines",
     "EvidenceData",
     "FactorLine",
     "Group",
@@ -35,6 +37,7 @@ __all__ = [
     "SheetData",
     "UnprintableError",
     "area_as_typed",
+    "coupon_headline",
     "diagram_svg",
     "dot_plot_svg",
     "end_blocks",

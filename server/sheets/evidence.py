@@ -48,6 +48,15 @@ class FactorLine:
 
 
 @dataclass(frozen=True)
+class ChainLines:
+    """The chain of one record that uses the value: which record, the line of multiplication, its factors."""
+
+    of: str
+    line: str
+    factors: Sequence[FactorLine]
+
+
+@dataclass(frozen=True)
 class Reply:
     """A question that was put to people, and what they answered; ``by`` with the day."""
 
@@ -82,8 +91,8 @@ class EvidenceData:
     document: Mapping[str, Any] | None = None
     history: Sequence[Point] = ()
     chart: Chart | None = None
-    chain: Sequence[FactorLine] = ()
-    multiplication: str = ""
+    chains: Sequence[ChainLines] = ()
+    """The knock-down chains that multiply the value, one for each record that uses it."""
     replies: Sequence[Reply] = ()
     people: Sequence[tuple[str, str, str]] = ()
     """Role, name and day: who entered, put forward, approved it."""
@@ -97,6 +106,8 @@ class EvidenceData:
     display: Literal["SI", "US"] = "SI"
     engine: str = ""
     content_hash: str = ""
+    kept: bool = False
+    """Whether this is the page that is kept at approval, and not one drawn later."""
     made_at: int = 0
     unit: str = "MPa"
 
@@ -122,8 +133,13 @@ def compose_evidence(page: EvidenceData) -> Part:
         },
         "value": {"state": page.state.upper(), "number": page.value, "says": page.says},
         "parts": list(_numbered(page)),
-        "foot": {"engine": page.engine, "hash": page.content_hash or "not kept", "limits": FOOT},
+        "foot": {"engine": page.engine, "hash": page.content_hash, "limits": _foot(page)},
     }
+
+
+def _foot(page: EvidenceData) -> str:
+    drawn = "Kept as it was approved." if page.kept else "Drawn from the library as it stands; not a kept page."
+    return f"{drawn} {FOOT}"
 
 
 def _numbered(page: EvidenceData) -> Iterator[Part]:
@@ -150,7 +166,7 @@ def _sections(page: EvidenceData) -> Iterator[tuple[str, Iterable[Part]]]:
         yield "Tests of the set", _tests(result, display)
         yield "What one more coupon, or less scatter, would buy", coupon_tables.ahead(result, display)
     yield "History of the sets", _history(page)
-    yield "Knock-down chain", _chain(page)
+    yield "Knock-down chain", _chains(page)
     yield "Cautions and questions, with their answers", _questions(page)
     if result is not None:
         yield "Working", _working(result, display)
@@ -354,16 +370,15 @@ def _history(page: EvidenceData) -> Iterator[Part]:
     yield from _list(said or ["Nothing in the history speaks against chance."])
 
 
-def _chain(page: EvidenceData) -> Iterator[Part]:
-    if not page.chain:
-        return
-    if page.multiplication:
-        yield {"kind": "text", "text": page.multiplication}
-    rows = [[each.name, each.value, each.source or "not stated", each.evidence or DASH] for each in page.chain]
-    yield table(
-        [column("Factor"), column("Value", side="right"), column("Source", share=1.4), column("Evidence", share=1)],
-        rows,
-    )
+def _chains(page: EvidenceData) -> Iterator[Part]:
+    for chain in page.chains:
+        yield {"kind": "text", "text": chain.of}
+        yield {"kind": "text", "text": chain.line}
+        rows = [[each.name, each.value, each.source or "not stated", each.evidence or DASH] for each in chain.factors]
+        yield table(
+            [column("Factor"), column("Value", side="right"), column("Source", share=1.4), column("Evidence", share=1)],
+            rows,
+        )
 
 
 def _questions(page: EvidenceData) -> Iterator[Part]:

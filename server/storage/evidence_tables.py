@@ -1,7 +1,7 @@
 """The tables of the evidence behind the records: acts that move a status, links, answers, issued sheets, rules.
 
-Acts, links, answers and issues are never changed or deleted (triggers refuse it). ``HeadRow`` is derived: it says where
-each record stands today, so that a list of thousands does not look through every revision.
+Acts, links, answers, kept pages and issues are never changed or deleted (triggers refuse it). ``HeadRow`` is derived:
+it says where each record stands today, so that a list of thousands does not look through every revision.
 """
 
 from __future__ import annotations
@@ -94,6 +94,21 @@ class IssueRow(Base):
     outside_checker: Mapped[str] = mapped_column(Text)
     checked_on: Mapped[str] = mapped_column(Text)
     answers: Mapped[list[dict[str, Any]]] = mapped_column(Json)
+    pdf: Mapped[bytes] = mapped_column(LargeBinary, deferred=True)
+    pdf_sha256: Mapped[str] = mapped_column(Text)
+    at: Mapped[str] = mapped_column(Text)
+
+
+class EvidencePageRow(Base):
+    """The evidence page of a value as it was approved: what it stands on, and its bytes."""
+
+    __tablename__ = "evidence_pages"
+    __table_args__ = (Index("evidence_pages_by_revision", "record_revision_id"), STRICT)
+
+    act_id: Mapped[int] = mapped_column(ForeignKey("record_acts.id"), primary_key=True)
+    record_revision_id: Mapped[int] = mapped_column(ForeignKey("record_revisions.id"))
+    content: Mapped[dict[str, Any]] = mapped_column(Json, deferred=True)
+    sha256: Mapped[str] = mapped_column(Text)
     pdf: Mapped[bytes] = mapped_column(LargeBinary, deferred=True)
     pdf_sha256: Mapped[str] = mapped_column(Text)
     at: Mapped[str] = mapped_column(Text)

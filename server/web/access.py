@@ -84,6 +84,7 @@ RULES: dict[str, str] = {
     "approve_record": APPROVES,
     "set_record_state": APPROVES,
     "evidence_page": READS,
+    "kept_evidence": READS,
     "exchange": READS,
     "export_json": READS,
     "export_csv": READS,

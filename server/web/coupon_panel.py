@@ -11,7 +11,7 @@ from typing import Any
 
 from markupsafe import Markup
 
-from server import library, sheets
+from server import sheets
 from server.sheets import coupon_tables
 from server.sheets.values import unit
 
@@ -71,12 +71,6 @@ def panel(result: Mapping[str, Any], display: str) -> CouponPanel:
         unit=shown.text,
         numbers=sheets.texts_of([each["stress"] * shown.factor for each in result["coupons"]]),
     )
-
-
-def as_measured(result: Mapping[str, Any], property: object) -> Mapping[str, Any]:
-    """Return a result in the unit of its property: a fastener's coupons break at loads."""
-    known = library.PROPERTIES.get(str(property))
-    return coupon_tables.in_newtons(result) if known is not None and known.kind == "force" else result
 
 
 def _pairs(parts: Iterable[Mapping[str, Any]]) -> list[list[str]]:

@@ -6,6 +6,7 @@ The boxes are those of form_fields.py, so that one table serves reading, filling
 from __future__ import annotations
 
 from server.library import PROPERTIES
+from server.library.groups import LINK_LABELS
 from server.web.form_fields import Box
 from server.web.set_columns import DISTRIBUTIONS
 
@@ -72,15 +73,7 @@ BOXES: dict[str, tuple[Box, ...]] = {
 }
 VALUE_UNITS = {"stress": "stress", "force": "fastener_force", "stiffness": "slip", "density": "density"}
 """The unit of a bare number in a value's box, by the unit kind of its property."""
-LINKS = {
-    "product": "Adhesive product",
-    "adherend_a": "Surface A: material",
-    "preparation_a": "Surface A: preparation",
-    "adherend_b": "Surface B: material",
-    "preparation_b": "Surface B: preparation",
-    "cure": "Cure",
-    "set": "Coupon set",
-}
+LINKS = LINK_LABELS
 TITLES = {
     "bonds": "Bonds",
     "values": "Values",

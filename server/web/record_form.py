@@ -9,7 +9,7 @@ from typing import Any, TypedDict
 
 from server import units
 from server.errors import Fault
-from server.library import ALL, PROPERTIES, Group, Link, Record
+from server.library import ALL, PROPERTIES, Group, Link, Record, value_text
 from server.web import forms
 from server.web.evidence_fields import BOXES, LINKS, VALUE_UNITS
 from server.web.form_fields import GROUPS as ROWS
@@ -331,14 +331,6 @@ def shown(record: Record) -> list[tuple[str, str]]:
             text = _plain(value) + _unit_after(value, box)
         found.append((box.label, units.degrees(text)))
     return found
-
-
-def value_text(record: Record, display: str = "SI") -> str:
-    """Return the value of a value record with its unit, as typed or, where it was found, in four digits."""
-    value, known = record.values.get("value"), PROPERTIES.get(str(record.values.get("property")))
-    if isinstance(value, int | float) and known is not None:
-        return units.show(float(value), known.kind, display)
-    return _plain(value)
 
 
 def in_short(record: Record) -> str:

@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import math
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 from typing import Any
@@ -11,15 +10,13 @@ from fastapi import Request
 from fastapi.responses import Response
 from markupsafe import Markup
 
-from server import library, sheets, units
-from server.errors import InputError
+from server import library, sheets
 from server.library import ALL, Link, Record, reading
 from server.library.obstacles import others_who_may
-from server.mechanics.control_chart import Chart, control_chart
 from server.people import APPROVES, Person
 from server.storage import Session
 from server.web import record_form
-from server.web.coupon_panel import as_measured, panel
+from server.web.coupon_panel import panel
 from server.web.evidence_fields import LINKS, TITLES
 from server.web.pages import Boxes, page
 from server.web.set_columns import SHARES
@@ -60,8 +57,8 @@ def show(request: Request, session: Session, record: Record, *, errors: Mapping[
     group = ALL[record.group]
     targets = reading.many(session, [*record.links.values(), *(pair for each in record.chain for pair in _pair(each))])
     coupon_set = record if record.group == "sets" else _behind(record, targets)
-    result = result_of(record, coupon_set) if coupon_set is not None else None
-    points, chart = history_of(session, record)
+    result = _result_of(record, coupon_set) if coupon_set is not None else None
+    points, chart = library.charted(session, record)
     person = signed(request)
     obstacles = library.obstacles(session, record, person) if _may_be_approved(record) else []
     lot = library.lot_uses(session, str(record.values["number"])) if record.group == "lots" else None
@@ -74,12 +71,14 @@ def show(request: Request, session: Session, record: Record, *, errors: Mapping[
         title=TITLES[record.group],
         standing=library.standing(record),
         values_shown=record_form.shown(record),
-        value_text=record_form.value_text(record, _display(coupon_set)) if record.group == "values" else "",
+        value_text=library.value_text(record, _display(coupon_set)) if record.group == "values" else "",
         details=[(label, record.details[name]) for name, label in group.details.items() if record.details.get(name)],
         links=_standings(record, targets, pinned=False),
         pins=_standings(record, targets, pinned=True),
         chain=record.chain,
         multiplication=_multiplication(record, targets),
+        chains_on=library.chains_on(session, record, _display(coupon_set)),
+        kept=library.kept_page(session, record) if record.group == "values" else None,
         coupon_set=coupon_set,
         panel=panel(result, _display(coupon_set)) if result is not None else None,
         history=Markup(sheets.history_svg(points, chart, display=_display(coupon_set))) if len(points) > 1 else "",  # noqa: S704 -- our own drawing
@@ -111,10 +110,10 @@ def _behind(record: Record, targets: Mapping[Link, Record]) -> Record | None:
     return targets.get(link) if link is not None else None
 
 
-def result_of(record: Record, coupon_set: Record) -> Mapping[str, Any]:
-    """Return the result of the set behind a value, by the value's own statistic where it has one."""
+def _result_of(record: Record, coupon_set: Record) -> Mapping[str, Any]:
+    """The result of the set behind a value, by the value's own statistic where it has one."""
     statistic = record.values.get("statistic") if record.group == "values" else None
-    return as_measured(library.coupon_result(coupon_set, statistic), coupon_set.values["property"])
+    return library.measured_result(coupon_set, statistic)
 
 
 def _display(coupon_set: Record | None) -> str:
@@ -158,9 +157,7 @@ def _multiplication(record: Record, targets: Mapping[Link, Record]) -> str:
     value = pinned.values.get("value") if pinned is not None else record_form.at(record.values, field)
     if value is None:
         return library.multiplication(record.chain)
-    number, product = units.parse("", value, kind), math.prod(factor.value for factor in record.chain)
-    line = library.multiplication(record.chain, units.show(number, kind))
-    return f"{line.rsplit(' = ', 1)[0]} = {units.show(number * product, kind)}"
+    return library.chain_line(record.chain, value, kind)
 
 
 STRENGTHS = {
@@ -184,18 +181,6 @@ def _approvable(session: Session, person: Person, obstacles: Sequence[library.Ob
 
 def _may_be_put_forward(record: Record) -> bool:
     return record.status in ("draft", "indicative", "provisional") and record.revision == record.newest
-
-
-def history_of(session: Session, record: Record) -> tuple[list[sheets.Point], Chart | None]:
-    """Return the sets of one value over time, and their chart from the second set on."""
-    if record.group not in ("values", "sets"):
-        return [], None
-    found = library.history(session, record)
-    points = [sheets.Point(each.key, each.date, each.mean) for each in found]
-    try:
-        return points, control_chart([point.value for point in points])
-    except InputError:
-        return points, None
 
 
 def boxes_of_draft(session: Session, key: str, system: str) -> dict[str, str]:

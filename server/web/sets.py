@@ -12,10 +12,11 @@ from fastapi.responses import Response
 from server import checks, documents, library
 from server.errors import DocumentError, Fault, JointError
 from server.library import ALL, Record
+from server.library.coupon_sets import as_measured
 from server.library.properties import FROM_COUPONS
 from server.storage import Session
 from server.web import record_form, set_form
-from server.web.coupon_panel import CouponPanel, as_measured, panel
+from server.web.coupon_panel import CouponPanel, panel
 from server.web.errors import faults_of
 from server.web.evidence_lists import offered
 from server.web.form_fields import shown_unit

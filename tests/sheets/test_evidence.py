@@ -13,7 +13,7 @@ import pytest
 
 from server import checks, documents
 from server.mechanics.control_chart import control_chart
-from server.sheets import EvidenceData, FactorLine, Point, Reply, UnprintableError, evidence_pdf
+from server.sheets import ChainLines, EvidenceData, FactorLine, Point, Reply, UnprintableError, evidence_pdf
 from server.sheets.evidence import compose_evidence
 from tests.checks import coupon_sets as sets
 from tests.sheets.test_pdf import text_of
@@ -50,8 +50,13 @@ def evidence(**changes: Any) -> EvidenceData:
         document=raw,
         history=[Point(f"T-{i}", "2026-03-02", value) for i, value in enumerate(MEANS)],
         chart=control_chart(MEANS),
-        chain=(FactorLine("moisture", "0.85", "pair of sets", "T-004 against T-001"),),
-        multiplication="1.58 MPa × 0.85 (moisture) = 1.34 MPa",
+        chains=[
+            ChainLines(
+                of="B-001 rev 1 Web to flange (approved)",
+                line="1.58 MPa × 0.85 (moisture) = 1.34 MPa",
+                factors=[FactorLine("moisture", "0.85", "pair of sets", "T-004 against T-001")],
+            )
+        ],
         replies=(
             Reply("outlier", "Coupon 8 lies apart.", "closed too late", "P. Ferry, 2026-03-17"),
             Reply("scatter", "?"),
