@@ -13,7 +13,7 @@ from server.web.form_text import Reading, couples, points, schedule, with_unit
 from server.web.forms import FIELD, rows, system_of
 from server.web.pieces_boxes import boxes_of, profile_of
 
-_BUTTONS = ("add", "remove", "reshape", "start", "set_out", "units_of_boxes", "calculate")
+_BUTTONS = ("add", "remove", "reshape", "start", "set_out", "units_of_boxes", "needed_zones", "calculate")
 
 
 @dataclass(frozen=True)

@@ -20,7 +20,7 @@ class Form:
     """The boxes as typed, the messages beside them, and where the form's buttons lead.
 
     ``messages`` are by box. ``records`` are the library's records to choose from, by group. ``opened`` is the part
-    that was just changed, ``focus`` the box or button in it to go on from.
+    that was just changed, ``focus`` the box or button in it to go on from; ``told`` what a button has to say.
     """
 
     values: Mapping[str, str]
@@ -34,6 +34,7 @@ class Form:
     library: Mapping[str, Options] = field(default_factory=dict)
     opened: str = ""
     focus: str = ""
+    told: str = ""
     revising: bool = False
 
     @property
@@ -86,6 +87,11 @@ class Form:
     def can_set_out(self) -> bool:
         """Whether the layout's own pieces are still there, so that their places follow from their sizes."""
         return layouts.set_out(self.values) is not None
+
+    @property
+    def fastened(self) -> bool:
+        """Whether a joint has fasteners, for which a spacing may be asked."""
+        return any(text.strip() for name, text in self.values.items() if name.endswith("].fastener"))
 
     def group(self, name: str) -> Group:
         """Return a group of rows."""

@@ -15,7 +15,7 @@ from server.sheets import ONE_PAGES
 from server.sheets.asked import RECORDS
 from server.storage import Session
 from server.units import parse
-from server.web import form_shape, form_words, forms, layouts, one_page
+from server.web import form_shape, form_words, forms, layouts, needed_zones, one_page
 from server.web.errors import faults_of
 from server.web.form_fields import VALUE_GROUPS
 from server.web.form_view import Form
@@ -99,15 +99,21 @@ def preview_working(request: Request, session: DbSession, values: FormValues, jo
 
 @router.post("/jobs/{job_id}/checks/form", name="shape_check")
 def shape_check(request: Request, session: DbSession, values: FormValues, job_id: Id, check: str = "") -> Response:
-    """Do what a button of the form asks (rows, layout, units, calculate) and give the page back as typed."""
-    shaped = form_shape.shape(dict(values))
+    """Do what a button of the form asks (rows, layout, units, zones, calculate) and give the page back as typed."""
+    shaped, told = form_shape.shape(dict(values)), ""
+    if values.get(needed_zones.BUTTON):
+        typed = form_shape.shape(dict(values)).values
+        reading, found = forms.reading_of(typed), judge(session, typed, working=False)
+        shaped, told = needed_zones.put(typed, found, reading.paths, forms.system_of(typed))
     job, check_id = jobs.get(session, job_id), whole(check) or 0
     if "HX-Request" in request.headers:
         # Only the boxes are taken from this answer; they then ask for a preview themselves.
         judged = Judged(forms.reading_of(shaped.values).raw, None, {})
     else:
         judged = judge(session, shaped.values)
-    answer = _page(request, session, job, shaped.values, judged, check_id, opened=shaped.opened, focus=shaped.focus)
+    answer = _page(
+        request, session, job, shaped.values, judged, check_id, opened=shaped.opened, focus=shaped.focus, told=told
+    )
     answer.headers["HX-Trigger"] = "shaped"
     return answer
 
@@ -181,6 +187,7 @@ def _page(
     status: int = 200,
     opened: str = "",
     focus: str = "",
+    told: str = "",
 ) -> Response:
     form = _form(request, values, judged, job.id, check_id)
     return page(
@@ -189,7 +196,7 @@ def _page(
         status=status,
         job=job,
         check=jobs.revision_of(session, check_id) if check_id else None,
-        form=replace(form, library=_library(session), opened=opened, focus=focus),
+        form=replace(form, library=_library(session), opened=opened, focus=focus, told=told),
         layouts=layouts.LAYOUTS,
         refused=status == 422,
         lazily=True,

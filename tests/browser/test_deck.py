@@ -172,6 +172,12 @@ def test_both_options_of_the_stage_deck(open_page: Callable[..., Any], address: 
     page.wait_for_selector("#result >> text=There is a fall-back", timeout=20000)
     assert "Pass" in page.inner_text("#verdict-strip")
     compare(told(page), 48)
+    form.unfold("joints")
+    form.press("#needed_zones-yes")
+    page.wait_for_selector("#rows-joints >> text=The zones are put in for 5 joints")
+    assert [page.input_value(f"[name='joints[{i}].spacing']") for i in (0, 2)] == ["12", "10"]
+    for i in range(RIBS):  # what the shop means to build
+        form.fill(f"joints[{i}].spacing", "6")
     form.fill("reason", "middle legs")
     form.press("[name=save]")
     page.wait_for_url("**/revisions/2")
