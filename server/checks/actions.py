@@ -3,15 +3,15 @@
 from __future__ import annotations
 
 from collections.abc import Iterable, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from functools import cached_property
 
 import numpy as np
 from numpy.typing import NDArray
 
 from server import documents
-from server.checks import moving
-from server.checks.crosssection import Body
+from server.checks import moving, sideways
+from server.checks.crosssection import Body, both_ways
 from server.errors import DocumentError, Fault, InputError
 from server.mechanics import beam as mechanics
 from server.mechanics.beam import Beam, Couple, LineLoad, PointLoad, Response, solve
@@ -99,6 +99,8 @@ class Actions:
     sustained: NDArray[np.float64]
     slips: bool = False
     moving: Moving | None = None
+    across: Actions | None = None
+    """Where the member bends about both axes: the lateral plane, to the right as this one is downward."""
 
     @property
     def breaks(self) -> NDArray[np.float64]:
@@ -141,12 +143,44 @@ def act(document: documents.MemberDocument, body: Body, wants: moving.Wants | No
 
     ``wants`` what an earlier round of a check with moving axles found that it needs.
     """
-    combinations = list(document.combinations.values())
+    if both_ways(document, body):
+        return _act_both_ways(document, body)
     deform = document.analysis.shear_deformation and all(s.section.shear_stiffness is not None for s in body.stretches)
     rows = _rows(document, body, deform, wants or moving.Wants())
     solved = _solve(_beam(document, body, deform), rows.loads)
-    combined = solved.combine(rows.factors)
     long_term = _long_term(document, body, deform, rows.loads, solved, rows.factors, rows.shares)
+    return _actions(document, rows, solved, long_term, deform)
+
+
+def _act_both_ways(document: documents.MemberDocument, body: Body) -> Actions:
+    """Both planes together; the lateral one stands beside the vertical one."""
+    sideways.refuse_moving(document)
+    deform = document.analysis.shear_deformation and all(
+        s.section.shear_flexibility is not None for s in body.stretches
+    )
+    rows = _rows(document, body, deform=False, wants=moving.Wants())
+    across = replace(rows, loads=sideways.lateral_loads(document))
+    beam = _beam(document, body, deform=False)
+    solved = sideways.solve_both(beam, body, rows.loads, across.loads, deform=deform)
+    soft: tuple[Response | None, Response | None] = (None, None)
+    if any(part.material.creep is not None for part in body.parts):
+        soft = sideways.solve_both(beam, body, rows.loads, across.loads, deform=deform, creep=True)
+    down, right = (
+        _actions(document, of, hard, None if late is None else _lasting(hard, late, of.factors, of.shares), deform)
+        for of, hard, late in zip((rows, across), solved, soft, strict=True)
+    )
+    return replace(down, across=right)
+
+
+def _actions(
+    document: documents.MemberDocument,
+    rows: _Rows,
+    solved: Response,
+    long_term: NDArray[np.float64] | None,
+    deform: bool,
+) -> Actions:
+    combinations = list(document.combinations.values())
+    combined = solved.combine(rows.factors)
     names = tuple(list(document.combinations)[k] for k in rows.combination)
     kinds = [combinations[k].for_ for k in rows.combination]
     strength = tuple(k for k, kind in enumerate(kinds) if kind in ("both", "strength"))
@@ -276,7 +310,12 @@ def _long_term(
     """
     if all(part.material.creep is None for part in body.parts):
         return None
-    soft = _solve(_beam(document, body, deform, creep=True), loads)
+    return _lasting(solved, _solve(_beam(document, body, deform, creep=True), loads), factors, shares)
+
+
+def _lasting(
+    solved: Response, soft: Response, factors: NDArray[np.float64], shares: NDArray[np.float64]
+) -> NDArray[np.float64]:
     short_part = np.tensordot(factors - shares, solved.deflection, 1)
     return np.asarray(short_part + np.tensordot(shares, soft.deflection, 1))
 

@@ -50,17 +50,28 @@ def contours(body: Body, actions: Actions, twist: Twist | None, look: Look | Non
         stretch = next(s for s in body.stretches if at <= s.end)
         if stretch.section.settled.field is None:
             return None
-        V, M, T = (
+        across = actions.across
+        V, M, T, V_l, M_l = (
             max((_value(curve, row, at, side) for side in ("left", "right")), key=abs)
-            for curve in (shear, moment, None if twist is None else twist.torque)
+            for curve in (
+                shear,
+                moment,
+                None if twist is None else twist.torque,
+                None if across is None else across.shear,
+                None if across is None else across.moment,
+            )
         )
-        picture = _shear(stretch, V, T) if name == "shear" else _bending(stretch, M)
+        if name == "shear":
+            picture = _shear(stretch, _rates(stretch, across, V, V_l), T)
+        else:
+            picture = _bending(stretch, _rates(stretch, across, M, M_l))
         found[name] = {
             "at": at,
             "combination": actions.strength_names[row],
             "shear": V,
             "moment": M,
             "torque": T,
+            **({} if across is None else {"shear_lateral": V_l, "moment_lateral": M_l}),
             "pieces": [part.name for part in stretch.section.parts],
             **picture,
         }
@@ -71,25 +82,33 @@ def _value(curve: Any, row: int, at: float, side: Any) -> float:
     return 0.0 if curve is None else float(evaluate(curve.breaks, curve.coefficients[row], at, side))
 
 
-def _shear(stretch: Stretch, V: float, T: float) -> dict[str, Any]:
+def _rates(stretch: Stretch, across: Actions | None, down: float, right: float) -> tuple[float, float]:
+    """Curvatures of moments, or their change with shears; sideways none where the member is held."""
+    if across is None:
+        return down / stretch.section.properties.EI, 0.0
+    found = stretch.section.bending_flexibility @ (down, right)
+    return float(found[0]), float(found[1])
+
+
+def _shear(stretch: Stretch, rates: tuple[float, float], T: float) -> dict[str, Any]:
     section = stretch.section
     field = section.settled.field
     assert field is not None
     alike = [replace(p, G=part.field_modulus) for p, part in zip(section.pieces, section.parts, strict=True)]
     points, triangles, unit, area = stress_grid(alike, section.properties, field)
-    stress = unit[:, :, 0] * (V / section.properties.EI) + unit[:, :, 2] * (T / field.GJ)
+    stress = unit[:, :, 0] * rates[0] - unit[:, :, 1] * rates[1] + unit[:, :, 2] * (T / field.GJ)
     return _bands(points, triangles, np.hypot(stress[:, 0], stress[:, 1]), area)
 
 
-def _bending(stretch: Stretch, M: float) -> dict[str, Any]:
+def _bending(stretch: Stretch, rates: tuple[float, float]) -> dict[str, Any]:
     section = stretch.section
     field = section.settled.field
     assert field is not None
     mesh = field.mesh
     E = np.empty(len(mesh.points))
     E[mesh.triangles] = np.array([piece.E for piece in section.pieces])[mesh.piece][:, None]
-    u_0, EI = float(section.properties.neutral_axis[1]), section.properties.EI
-    return _bands(mesh.points, mesh.triangles, -E * M * (mesh.points[:, 1] - u_0) / EI, None)
+    arms = mesh.points - section.properties.neutral_axis
+    return _bands(mesh.points, mesh.triangles, E * (rates[1] * arms[:, 0] - rates[0] * arms[:, 1]), None)
 
 
 def _bands(points: Array, triangles: NDArray[np.intp], values: Array, area: Array | None) -> dict[str, Any]:

@@ -19,12 +19,14 @@ from server import documents
 from server.checks.outlines import outlines
 from server.checks.section_field import Settled, Wanted, bond_of, settle
 from server.errors import DocumentError, Fault
+from server.mechanics.beam_two_planes import bending_flexibility, shear_flexibility
 from server.mechanics.contacts import Contact, contacts, in_order, overlap
-from server.mechanics.field import Bond, remembered_field
+from server.mechanics.field import Bond, Field, remembered_field
 from server.mechanics.field_cuts import field_cuts
 from server.mechanics.field_stress import torsion_stress
 from server.mechanics.flow import JointFlow, JointLine, joint_flows, tied
 from server.mechanics.outlines import nearest
+from server.mechanics.plane_cuts import PlaneCuts, plane_cuts
 from server.mechanics.polygon import Edges, edges_of
 from server.mechanics.round_contacts import Round, round_contacts
 from server.mechanics.section import (
@@ -38,6 +40,7 @@ from server.mechanics.section import (
 )
 from server.mechanics.shapes import Shape
 
+LEVEL = 1e-9  # of sqrt(EI EI_lateral): a product below it is rounding
 GAP = 0.05  # mm two faces may stand apart and still touch
 
 
@@ -161,6 +164,32 @@ class CrossSection:
         return all(part.field_modulus == part.shear_modulus for part in self.parts)
 
     @cached_property
+    def bending_flexibility(self) -> NDArray[np.float64]:
+        """(2, 2) curvatures per moment, down and to the right."""
+        whole = self.properties
+        return bending_flexibility(whole.EI, whole.EI_lateral, whole.EI_product)
+
+    @cached_property
+    def shear_flexibility(self) -> NDArray[np.float64] | None:
+        """(2, 2) shear strains per shear force, down and to the right; None without the field."""
+        if self.settled.field is None:
+            return None
+        return shear_flexibility(self.bending_flexibility, self._bent_field(self.pieces, self.properties).energy)
+
+    def _bent_field(self, pieces: Sequence[Piece], whole: SectionProperties) -> Field:
+        """The field with the moduli that bending sees."""
+        return remembered_field(pieces, whole, self.bonds)
+
+    @cached_property
+    def softened_both_ways(self) -> tuple[NDArray[np.float64], NDArray[np.float64] | None]:
+        """As the two flexibilities, with each piece's E and G divided by 1 + creep."""
+        soft, whole = self._soft
+        bending = bending_flexibility(whole.EI, whole.EI_lateral, whole.EI_product)
+        if self.settled.field is None:
+            return bending, None
+        return bending, shear_flexibility(bending, self._bent_field(soft, whole).energy)
+
+    @cached_property
     def centroids(self) -> dict[int, float]:
         """Height of each part's centroid, by its index."""
         heights = self.properties.pieces.centroid[:, 1].tolist()
@@ -173,6 +202,12 @@ class CrossSection:
             found = largest_cuts(self.pieces, self.properties)
         else:
             found = field_cuts(self.pieces, self.properties, self.bonds, field)
+        return {part.index: cut for part, cut in zip(self.parts, found, strict=True)}
+
+    @cached_property
+    def plane_cuts(self) -> dict[int, PlaneCuts]:
+        """Level and upright cuts of each part, by its index, where the member bends about both axes."""
+        found = plane_cuts(self.pieces, self.properties, self.bonds, self.settled.field)
         return {part.index: cut for part, cut in zip(self.parts, found, strict=True)}
 
     @cached_property
@@ -217,12 +252,16 @@ class CrossSection:
     @cached_property
     def softened(self) -> tuple[float, float | None]:
         """EI and GA with each piece's E and G divided by 1 + creep."""
-        shares = self.shares or (1.0,) * len(self.parts)
-        soft = tuple(_piece(part, creep=True, share=share) for part, share in zip(self.parts, shares, strict=True))
-        whole = reweighted(soft, self.properties)
+        soft, whole = self._soft
         if self.by_field:
             return whole.EI, whole.EI**2 / float(remembered_field(soft, whole, self.bonds).energy[0, 0])
         return whole.EI, shear_stiffness(soft, whole)
+
+    @cached_property
+    def _soft(self) -> tuple[tuple[Piece, ...], SectionProperties]:
+        shares = self.shares or (1.0,) * len(self.parts)
+        soft = tuple(_piece(part, creep=True, share=share) for part, share in zip(self.parts, shares, strict=True))
+        return soft, reweighted(soft, self.properties)
 
 
 @dataclass(frozen=True)
@@ -260,13 +299,14 @@ def build(document: documents.MemberDocument) -> Body:
     _refuse_overlaps(parts, edges)
     found = _contacts(document, parts, edges)
     sites = tuple(_sites(document, parts, found))
-    stretches = tuple(_stretches(document.member.length, parts, sites, _wanted(document)))
+    wanted, free = _wanted(document), not document.member.held_sideways
+    stretches = tuple(_stretches(document.member.length, parts, sites, wanted, free))
     return Body(document.member.length, parts, sites, tuple(found), stretches)
 
 
 def _wanted(document: documents.MemberDocument) -> Wanted:
     """When to solve the field: eccentric loads need it beside whatever was asked for."""
-    if document.analysis.field == "auto" and eccentric(document):
+    if document.analysis.field == "auto" and (eccentric(document) or pushed_sideways(document)):
         return "always"
     return document.analysis.field
 
@@ -274,6 +314,25 @@ def _wanted(document: documents.MemberDocument) -> Wanted:
 def eccentric(document: documents.MemberDocument) -> bool:
     """Whether any load acts beside the shear centre."""
     return any(getattr(load, "offset", 0.0) for loads in document.loads.values() for load in loads)
+
+
+def pushed_sideways(document: documents.MemberDocument) -> bool:
+    """Whether the member is free to bend sideways and a load pushes it that way."""
+    if document.member.held_sideways:
+        return False
+    return any(getattr(load, "lateral", 0.0) for loads in document.loads.values() for load in loads)
+
+
+def both_ways(document: documents.MemberDocument, body: Body) -> bool:
+    """Whether the member bends about both axes: it is free to, and a load or its own section makes it."""
+    if document.member.held_sideways:
+        return False
+    return pushed_sideways(document) or any(lopsided(section.properties) for section in body.sections)
+
+
+def lopsided(whole: SectionProperties) -> bool:
+    """Whether load straight down bends the section sideways as well."""
+    return abs(whole.EI_product) > LEVEL * math.sqrt(whole.EI * whole.EI_lateral)
 
 
 def _stiffness_key(site: Site) -> object:
@@ -304,7 +363,9 @@ def with_shares(section: CrossSection, shares: Mapping[int, float]) -> CrossSect
         return section
     each = tuple(shares.get(part.index, 1.0) for part in section.parts)
     pieces = tuple(_piece(part, share=share) for part, share in zip(section.parts, each, strict=True))
-    return CrossSection(section.parts, section.sites, pieces, reweighted(pieces, section.properties), each)
+    return CrossSection(
+        section.parts, section.sites, pieces, reweighted(pieces, section.properties), each, section.wanted
+    )
 
 
 def _piece(part: Part, creep: bool = False, share: float = 1.0) -> Piece:
@@ -424,7 +485,10 @@ def _how_far(first: Part, second: Part, allowed: float) -> str:
     return "touch only at a point, or nowhere along flats that face each other"
 
 
-def _stretches(length: float, parts: Sequence[Part], sites: Sequence[Site], wanted: Wanted) -> list[Stretch]:
+def _stretches(
+    length: float, parts: Sequence[Part], sites: Sequence[Site], wanted: Wanted, free: bool
+) -> list[Stretch]:
+    """``free`` to bend sideways: then a lopsided section needs its field."""
     ends = sorted({0.0, length, *(p.start for p in parts), *(p.end for p in parts)})
     known: dict[tuple[int, ...], CrossSection] = {}
     stretches: list[Stretch] = []
@@ -433,7 +497,10 @@ def _stretches(length: float, parts: Sequence[Part], sites: Sequence[Site], want
         key = tuple(p.index for p in active)
         if key not in known:
             here = [site for site in sites if site.present(start, end)]
-            known[key] = _cross_section(active, here, start, end, wanted)
+            section = _cross_section(active, here, start, end, wanted)
+            if free and wanted == "auto" and lopsided(section.properties):
+                section = replace(section, wanted="always")
+            known[key] = section
         stretches.append(Stretch(start, end, known[key]))
     return stretches
 

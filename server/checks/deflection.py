@@ -8,7 +8,7 @@ from server import documents
 from server.checks.actions import Actions, Curve, Peak, largest
 from server.checks.crosssection import Body
 from server.checks.resistance import Findings
-from server.checks.sag_steps import AT_ONCE, LASTING, spans, write_sag
+from server.checks.sag_steps import AT_ONCE, LASTING, SIDEWAYS, spans, write_sag
 from server.working import Working
 
 LIMIT = {"span": "L/n", "overhang": "2*L/n"}
@@ -40,6 +40,12 @@ def check_deflection(
             continue
         if working.record:
             write_sag(document, body, actions, curve, LASTING if long_term else AT_ONCE, working)
+            aside = None
+            if actions.across is not None:
+                aside = actions.across.long_term if long_term else actions.across.sag
+            if aside is not None:
+                group = (LASTING if long_term else AT_ONCE) + SIDEWAYS
+                write_sag(document, body, actions, aside, group, working)
         if limit is not None:
             found += _sags(document, curve, limit, working, long_term=long_term)
     return found

@@ -10,9 +10,11 @@ from numpy.typing import NDArray
 
 from server import documents
 from server.checks.actions import Actions
+from server.checks.combined_flow import CombinedAlong
 from server.checks.crosssection import Body, Site
+from server.checks.scan import Scan
 from server.checks.slide import Slide
-from server.checks.twist import Twist, rates_of
+from server.checks.twist import Twist
 from server.mechanics.beam import Couple, Load, PointLoad
 from server.mechanics.moving_envelope import Envelope
 
@@ -121,6 +123,14 @@ def diagrams(
         "deflection": actions.sag,
         "deflection_long_term": actions.long_term,
     }
+    if actions.across is not None:
+        across = actions.across
+        curves |= {
+            "shear_lateral": across.shear,
+            "moment_lateral": across.moment,
+            "deflection_lateral": across.sag,
+            "deflection_lateral_long_term": across.long_term,
+        }
     found.update({name: _band(_sample(c.coefficients[:, shown], local)) for name, c in curves.items() if c is not None})
     if actions.moving is not None and sliding is None:
         _widen(found, actions.moving.written.envelopes, at)
@@ -135,11 +145,14 @@ def diagrams(
         found["joints"], found["slips"] = flows, slips
     elif actions.shear is not None:
         shear = np.stack([np.reshape(found["shear"][end], at.shape) for end in ("max", "min")])
-        torque = None
         if twisted is not None:
-            shear, torque = _sample(actions.shear.coefficients, local), _sample(twisted.torque.coefficients, local)
-            found["torque"] = _band(torque)
-        found["joints"] = {s.id: _flow(s, body, breaks, shear, torque) for s in body.sites}
+            found["torque"] = _band(_sample(twisted.torque.coefficients, local))
+        if twisted is not None or actions.across is not None:
+            along = CombinedAlong(body, Scan(actions.shear, (), ()), actions.across, twisted)
+            causes = [_sample(cause.coefficients, local) for cause in along.causes()]
+            found["joints"] = {s.id: _combined(s, along, breaks, causes) for s in body.sites}
+        else:
+            found["joints"] = {s.id: _flow(s, body, breaks, shear) for s in body.sites}
     return found
 
 
@@ -180,21 +193,26 @@ def _band(values: NDArray[np.float64]) -> dict[str, list[float]]:
     return {"max": values.max(axis=0).ravel().tolist(), "min": values.min(axis=0).ravel().tolist()}
 
 
-def _flow(
-    site: Site,
-    body: Body,
-    breaks: NDArray[np.float64],
-    shear: NDArray[np.float64],
-    torque: NDArray[np.float64] | None,
-) -> dict[str, list[float]]:
-    """Flow per interval: shear x the joint's share there, and its part of the torque; none where the joint is not."""
+def _flow(site: Site, body: Body, breaks: NDArray[np.float64], shear: NDArray[np.float64]) -> dict[str, list[float]]:
+    """Flow per interval: shear x the joint's share there; none where the joint is not."""
     middles = 0.5 * (breaks[:-1] + breaks[1:])
-    rate, turn = np.zeros((2, len(middles)))
+    rate = np.zeros(len(middles))
     for stretch in body.stretches:
         flow = stretch.section.flows.get(site.index)
         if flow is not None and flow.share is not None:
             inside = (middles > stretch.start) & (middles < stretch.end)
             rate[inside] = abs(flow.share) / stretch.section.properties.EI
-            if torque is not None:
-                rate[inside], turn[inside] = rates_of(site, stretch) or (0.0, 0.0)
-    return _band(shear * rate[:, None] if torque is None else shear * rate[:, None] + torque * turn[:, None])
+    return _band(shear * rate[:, None])
+
+
+def _combined(
+    site: Site, along: CombinedAlong, breaks: NDArray[np.float64], causes: Sequence[NDArray[np.float64]]
+) -> dict[str, list[float]]:
+    """Flow per interval from all causes, with signs."""
+    middles = 0.5 * (breaks[:-1] + breaks[1:])
+    rate = np.zeros((len(causes), len(middles)))
+    for stretch in along.body.stretches:
+        inside = (middles > stretch.start) & (middles < stretch.end)
+        rate[:, inside] = np.reshape(along.rates(site, stretch) or (0.0,) * len(causes), (-1, 1))
+    flow = np.asarray(sum(cause * own[:, None] for cause, own in zip(causes, rate, strict=True)))
+    return _band(-flow if float((flow * causes[0]).sum()) < 0 else flow)  # drawn the way of the shear force

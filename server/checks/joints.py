@@ -9,6 +9,7 @@ from numpy.typing import NDArray
 
 from server import documents
 from server.checks.along import FLOW, Along, Demand, RigidAlong, SlidingAlong, leftmost
+from server.checks.combined_flow import CombinedAlong, write_combined_flow
 from server.checks.crosssection import Body, Part, Site, Stretch
 from server.checks.fastened import Fastening, claim_fasteners, write_fasteners
 from server.checks.field_steps import beside_hand, write_share
@@ -16,7 +17,6 @@ from server.checks.hybrid import hybrid_strength
 from server.checks.resistance import Claim, Judge, Strength, Weighed, resistance_formula, worst
 from server.checks.slip_steps import write_sliding_flow
 from server.checks.statics import Statics
-from server.checks.twist import TwistedAlong, write_twisted_flow
 from server.checks.wide_bonds import bond_reductions, surface_reductions
 from server.mechanics.flow import JointFlow
 from server.working import formula
@@ -239,13 +239,13 @@ def _write_flow(check: JointCheck, demand: Demand, body: Body, judge: Judge, sta
     shared = stretch.section.flows[site.index]
     assert shared.split is not None
     combination = judge.actions.strength_names[row]
-    if not isinstance(check.along, SlidingAlong):
+    if not isinstance(check.along, SlidingAlong | CombinedAlong):
         statics.shear(float(demand.at[row]), judge.actions.strength[row], float(demand.shear[row]), group)
     first = _write_first_moment(site, stretch, judge, group)
     if isinstance(check.along, SlidingAlong):
         flow, check.result["slip"] = write_sliding_flow(site, check.along, demand, judge, group)
-    elif isinstance(check.along, TwistedAlong):
-        flow, run = write_twisted_flow(check.along, site, demand, judge, group)
+    elif isinstance(check.along, CombinedAlong):
+        flow, run = write_combined_flow(check.along, site, demand, judge, statics, group)
         check.result.update(run)
     else:
         own = write_share(site, stretch, first, judge, group) if shared.split == "field" else first

@@ -8,11 +8,12 @@ from dataclasses import dataclass
 from pydantic import BaseModel
 
 from server import ENGINE, documents
-from server.checks import effective_width, moving, moving_rounds
+from server.checks import effective_width, moving, moving_rounds, sideways
 from server.checks import statics as hand
 from server.checks.actions import Actions, act, envelope
 from server.checks.along import RigidAlong, SlidingAlong
 from server.checks.cautions import NOT_CHECKED, add_cautions
+from server.checks.combined_flow import CombinedAlong
 from server.checks.contours import Look, contours
 from server.checks.crosssection import Body, CrossSection, build
 from server.checks.deflection import Sag, check_deflection
@@ -38,8 +39,7 @@ from server.checks.sharing import state_sharing
 from server.checks.slide import Slide, slide
 from server.checks.slip_steps import write_effective, write_method
 from server.checks.thin_webs import add_web_claims
-from server.checks.twist import Twist, TwistedAlong, twist
-from server.errors import DocumentError, Fault
+from server.checks.twist import Twist, twist
 from server.working import Working, exceeds
 
 
@@ -60,7 +60,6 @@ def run(document: documents.MemberDocument, *, working: bool = True, look: Look 
     DocumentError
         Where the geometry, supports or loads cannot be checked; every fault names its field.
     """
-    _refuse_what_is_to_come(document)
     wants: moving.Wants | None = moving.Wants()
     for _ in range(moving_rounds.ROUNDS):
         assert wants is not None
@@ -78,7 +77,7 @@ def _round(
     refuse_misfits(document, body)
     rigid = act(document, body, wants)
     rules = chosen(document)
-    if SKINS in rules:
+    if SKINS in rules and rigid.across is None:
         body = effective_width.narrowed(document, body, rigid)
         rigid = act(document, body, wants)
     book, findings = Working(record=working), Findings()
@@ -88,7 +87,7 @@ def _round(
     annex_b = None
     if working:
         statics.loads()
-        if SKINS in rules:
+        if SKINS in rules and rigid.across is None:
             effective_width.write(document, body, rigid, book)
         statics.section()
         write_fields(body, book)
@@ -100,6 +99,7 @@ def _round(
         annex_b = write_annex_b(document, sliding, actions, book, "EN 1995-1-1 Annex B, for comparison")
     upper = sliding is None and _upper_stiffness(document, body, findings)
     _name_what_is_to_come(document, findings)
+    sideways.name_what_is_left_out(document, body, findings)
     for section in body.sections:
         for text in doubts(section.settled, [site.id for site in section.sites]):
             findings.miss(text)
@@ -148,23 +148,9 @@ def _round(
     return result, moving_rounds.further(rigid, slides)
 
 
-def _refuse_what_is_to_come(document: documents.MemberDocument) -> None:
-    """Unsymmetrical bending has no method here yet; a number for it would be wrong without a sign of it."""
-    if not document.member.held_sideways:
-        raise DocumentError(
-            [
-                Fault(
-                    "member.held_sideways",
-                    "held_sideways is false; bending about both axes is not available in this version. Hold the "
-                    "member sideways and enter true.",
-                )
-            ]
-        )
-
-
 def _slide(document: documents.MemberDocument, body: Body, rigid: Actions, findings: Findings) -> Slide | None:
     """The member with slip where it is asked for; what it lacks is named, and without it nothing is reckoned."""
-    if not document.analysis.slip:
+    if not document.analysis.slip or rigid.across is not None:
         return None
     held = holds(document, body, "as built")
     for text in held.missing:
@@ -181,8 +167,10 @@ def _flows(
     findings: Findings,
 ) -> Flows:
     scanned = scan(body, rigid)
-    along = RigidAlong(body, scanned) if twisted is None else TwistedAlong(body, scanned, twisted)
-    held = glue_gone(document, body, findings)
+    along: RigidAlong = RigidAlong(body, scanned)
+    if twisted is not None or rigid.across is not None:
+        along = CombinedAlong(body, scanned, rigid.across, twisted)
+    held = None if rigid.across is not None else glue_gone(document, body, findings)
     gone = None if held is None or rigid.shear is None else SlidingAlong(slide(document, body, rigid, held))
     return Flows(along if sliding is None else SlidingAlong(sliding), along, gone)
 
@@ -237,7 +225,8 @@ def _judge(
     pieces = claim_pieces(body, scanned, judge, upper_stiffness=upper_stiffness, slide=sliding, twist=twisted)
     add_web_claims(pieces, body, scanned, judge)
     add_sandwich_claims(joints, pieces, body, judge, upper_stiffness=upper_stiffness)
-    add_rib_claims(joints, pieces, body, judge, sliding=sliding is not None)
+    if judge.actions.across is None:
+        add_rib_claims(joints, pieces, body, judge, sliding=sliding is not None)
     gone: list[PieceCheck] = []
     if flows.gone is not None:
         gone = claim_pieces(body, scanned, judge, upper_stiffness=False, slide=flows.gone.slide, fall_back=True)
@@ -350,6 +339,27 @@ def _member(document: documents.MemberDocument, actions: Actions) -> dict[str, o
     }
     if actions.long_term is not None:
         found["deflection_long_term"] = envelope(actions.long_term)
+    if actions.across is not None:
+        found |= _sideways(actions, found["reactions"])
+    return found
+
+
+def _sideways(actions: Actions, reactions: object) -> dict[str, object]:
+    """The lateral plane, to the right positive; its reactions stand beside the vertical ones."""
+    across = actions.across
+    assert across is not None
+    assert isinstance(reactions, dict)
+    for row, name in enumerate(across.names):
+        for support, each in enumerate(reactions[name]):
+            each["lateral"] = -float(across.response.reaction_force[row, support])
+            each["couple_lateral"] = -float(across.response.reaction_couple[row, support])
+    found: dict[str, object] = {
+        "shear_lateral": envelope(across.shear),
+        "moment_lateral": envelope(across.moment),
+        "deflection_lateral": envelope(across.sag),
+    }
+    if across.long_term is not None:
+        found["deflection_lateral_long_term"] = envelope(across.long_term)
     return found
 
 

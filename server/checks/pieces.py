@@ -8,8 +8,19 @@ from dataclasses import dataclass, field
 import numpy as np
 from numpy.typing import NDArray
 
+from server.checks.actions import Actions
 from server.checks.crosssection import Body, Part, Stretch
 from server.checks.joints import FIRST_MOMENT
+from server.checks.pieces_both_ways import (
+    HIGHEST,
+    LOWEST,
+    CornerStress,
+    CutShear,
+    corner_stress,
+    cut_shear,
+    write_corner,
+    write_cut_shear,
+)
 from server.checks.resistance import Claim, Judge, Strength, Weighed, worst
 from server.checks.scan import Scan
 from server.checks.slide import Slide
@@ -28,12 +39,18 @@ FIBRES = ("top", "bottom", "mean")
 
 @dataclass(frozen=True, eq=False)
 class Bent:
-    """Normal stresses of one piece: fibres x entries x combinations, an entry for each stretch x moment extreme."""
+    """Normal stresses of one piece: fibres x entries x combinations, an entry for each stretch x moment extreme.
+
+    Where the member bends both ways: an entry for each place that a corner's stress is greatest at; ``range`` the
+    highest and the lowest corner there (2, entries, combinations), ``corners`` where each entry comes from.
+    """
 
     stress: NDArray[np.float64]
     moment: NDArray[np.float64]
     at: NDArray[np.float64]
     stretch: NDArray[np.intp]
+    range: NDArray[np.float64] | None = None
+    corners: tuple[tuple[CornerStress, int], ...] = ()
 
 
 @dataclass(frozen=True, eq=False)
@@ -50,6 +67,7 @@ class Sheared:
     stretch: tuple[int, ...]
     cuts: tuple[tuple[SlidingShear, int], ...] = ()
     torque: NDArray[np.float64] | None = None
+    both_ways: CutShear | None = None
 
 
 @dataclass
@@ -81,7 +99,9 @@ def claim_pieces(
     and no limit is judged on them. ``slide``: the stresses are those of the member whose joints slide; ``fall_back``:
     judged with the factor for what stands with the glue gone; ``twist``: torsion adds to their shear.
     """
-    if slide is None:
+    if slide is None and judge.actions.across is not None:
+        bent, sheared = _bend_both_ways(body, judge.actions), _shear_both_ways(body, judge.actions, twist)
+    elif slide is None:
         bent = _bend(body, scan)
         sheared = _shear(body, scan) if twist is None else _shear_twisted(body, twist)
     else:
@@ -195,6 +215,35 @@ def _shear_twisted(body: Body, twist: Twist) -> dict[int, Sheared]:
     return found
 
 
+def _bend_both_ways(body: Body, actions: Actions) -> dict[int, Bent]:
+    """Normal stresses at the corners of every piece where any of them is greatest."""
+    found: dict[int, Bent] = {}
+    for part in body.parts:
+        rows = [(t, corner_stress(actions, part, stretch)) for t, stretch in body.stretches_of(part)]
+        if not rows:
+            continue
+        each = [one for _, one in rows]
+        found[part.index] = Bent(
+            np.concatenate([one.fibres() for one in each], axis=1),
+            np.concatenate([one.moments[0] for one in each]),
+            np.concatenate([one.at for one in each]),
+            np.repeat(np.array([t for t, _ in rows], dtype=np.intp), [len(one.at) for one in each]),
+            np.concatenate([one.range() for one in each], axis=1),
+            tuple((one, entry) for one in each for entry in range(len(one.at))),
+        )
+    return found
+
+
+def _shear_both_ways(body: Body, actions: Actions, twist: Twist | None) -> dict[int, Sheared]:
+    """Shear on level and upright cuts of every piece, with that of torsion."""
+    found = {}
+    for part in body.parts:
+        each = cut_shear(actions, twist, body, part)
+        if each is not None:
+            found[part.index] = Sheared(each.stress, each.causes[..., 0], each.at, each.stretch, both_ways=each)
+    return found
+
+
 def _bend_sliding(body: Body, slide: Slide) -> dict[int, Bent]:
     """Normal stresses where any fibre of a piece is greatest or least, from its own force and bending."""
     found: dict[int, Bent] = {}
@@ -248,10 +297,11 @@ def fibre_demands(part: Part, bent: Bent) -> list[tuple[str, NDArray[np.float64]
     Where bending is not given, the extreme fibre is judged by tension and compression.
     """
     top, bottom, mean = bent.stress
+    high, low = (np.maximum(top, bottom), np.minimum(top, bottom)) if bent.range is None else bent.range
     given = part.material.strengths
     if given.bending is None:
-        return [("tension", np.maximum(top, bottom)), ("compression", -np.minimum(top, bottom))]
-    demands = [("bending", np.maximum(np.abs(top), np.abs(bottom)))]
+        return [("tension", high), ("compression", -low)]
+    demands = [("bending", np.maximum(np.abs(high), np.abs(low)))]
     demands += [("tension", mean)] if given.tension is not None else []
     demands += [("compression", -mean)] if given.compression is not None else []
     return demands
@@ -305,6 +355,14 @@ def _write_bending(check: PieceCheck, bent: Bent, weighed: list[Weighed], body: 
     for other in weighed:
         word = other.claim.strength.what.removesuffix(f" in {part.name}")
         there = int(demands[word][:, other.row].argmax())
+        if bent.corners and word != "bending" and part.material.strengths.bending is None:
+            corners, own = bent.corners[there]
+            title = f"Normal stress at the corner in most {word}"
+            extreme = HIGHEST if word == "tension" else LOWEST
+            write_corner(
+                corners, part, body.stretches[int(bent.stretch[there])], title, extreme, own, other.row, judge, group
+            )
+            continue
         if (there, other.row) != (entry, row):
             fibre = _fibre_of(part, word, bent.stress[:, there, other.row])
             _write_stress(part, bent, there, other.row, fibre, body, judge, group)
@@ -324,8 +382,13 @@ def _write_stress(
     """The step of one normal stress."""
     stretch = body.stretches[int(bent.stretch[entry])]
     whole = stretch.section.properties
+    title = "Normal stress at its centroid" if fibre == "mean" else f"Normal stress at its {fibre}"
+    if bent.corners:
+        found, own = bent.corners[entry]
+        title = title if fibre == "mean" else f"{title}, the worse corner"
+        return write_corner(found, part, stretch, title, FIBRES.index(fibre), own, row, judge, group)
     return judge.working.step(
-        "Normal stress at its centroid" if fibre == "mean" else f"Normal stress at its {fibre}",
+        title,
         f"sigma_{fibre}",
         BENDING,
         {
@@ -342,6 +405,9 @@ def _write_stress(
 
 
 def _write_shear(check: PieceCheck, sheared: Sheared, body: Body, judge: Judge, group: str) -> None:
+    if sheared.both_ways is not None:
+        check.result["shear_stress"] = write_cut_shear(sheared.both_ways, check.part, body, judge, group)
+        return
     entry, row = (int(i) for i in np.unravel_index(int(sheared.stress.argmax()), sheared.stress.shape))
     if sheared.cuts:
         _write_sliding_shear(check, sheared, entry, row, body, judge, group)

@@ -20,6 +20,7 @@ from server.working import Working
 from server.working.record import Given
 
 AT_ONCE, LASTING = "Deflection", "Long-term deflection"
+SIDEWAYS = ", sideways"
 POINT_SAG = "sum(P*b*x*(L**2 - b**2 - x**2)/(6*L*EI))"
 UNIFORM_SAG = "w*x*(L**3 - 2*L*x**2 + x**3)/(24*EI)"
 POINT_MOMENT = "sum(P*b*x/L)"
@@ -50,7 +51,7 @@ def write_sag(
     """The greatest deflection of one curve: by tables for a simple span, else of every span and overhang."""
     peak = largest(*curve.whole.absolute())
     k = actions.deflection[peak.row]
-    if not _tabulated(document, body, actions, k):
+    if SIDEWAYS in group or not _tabulated(document, body, actions, k):
         _name_method(document, actions, curve, book, group)
     elif group == AT_ONCE:
         _short_term(body, actions, peak.at, k, book)
@@ -66,6 +67,7 @@ def _tabulated(document: documents.MemberDocument, body: Body, actions: Actions,
         and all(s.kind == "pin" for s in supports)
         and not document.member.hinges
         and not actions.slips
+        and actions.across is None
         and all(s.section is body.stretches[0].section for s in body.stretches)
         and all(_in_tables(load, body.length) for _, load in _loaded(actions, actions.factors[k]))
     )
@@ -88,7 +90,7 @@ def _loaded(actions: Actions, factors: NDArray[np.float64]) -> Loaded:
 
 def _name_method(document: documents.MemberDocument, actions: Actions, curve: Curve, book: Working, group: str) -> None:
     """The method, with the greatest deflection it gives for each length between supports."""
-    lasting = group == LASTING
+    lasting = LASTING in group
     how, source = (
         "The moment and shear polynomials over EI and GA, integrated exactly between the breaks",
         ("Euler-Bernoulli with Timoshenko's shear part"),
@@ -98,15 +100,22 @@ def _name_method(document: documents.MemberDocument, actions: Actions, curve: Cu
             "Deflection of the layers that slide, with shear deformation by GA",
             "exact solution between breaks",
         )
+    if actions.across is not None or SIDEWAYS in group:
+        how, source = (
+            "Curvatures (EI_l M + EI_p M_l)/(EI EI_l - EI_p^2) down and (EI_p M + EI M_l)/(EI EI_l - EI_p^2) sideways, "
+            "with the strains of shear, integrated exactly between the breaks, both planes together",
+            "unsymmetrical bending (Timoshenko and Gere, Mechanics of Materials)",
+        )
     if lasting:
         how += "; the load that stays on stiffnesses over 1 + creep, the rest on the full ones"
         source += f"; {CREEP}"
+    way = ", to the right positive" if SIDEWAYS in group else ""
     for start, end, kind in spans(document.member):
         found = curve.over(start, end)
         peak = largest(*found.absolute())
         upward = largest(found.max, found.at_max).value < peak.value
         book.note(
-            f"Greatest {'long-term ' if lasting else ''}deflection, {kind} {start:g} to {end:g} mm",
+            f"Greatest {'long-term ' if lasting else ''}deflection{way}, {kind} {start:g} to {end:g} mm",
             f"{how}; at {peak.at:.6g} mm, combination {curve.names[peak.row]}.",
             value=-peak.value if upward else peak.value, unit="mm", source=source, group=group,
         )  # fmt: skip

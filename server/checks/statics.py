@@ -30,11 +30,41 @@ class Resultants:
     couple: float
 
 
+@dataclass(frozen=True)
+class Words:
+    """How the quantities of one plane are called."""
+
+    reaction: str
+    shear: str
+    moments: tuple[str, str]
+    symbols: tuple[str, str, str]
+    signs: str
+    group: str
+
+
+UPRIGHT = Words(
+    "Reaction", "Shear", ("sagging moment", "hogging moment"), ("R", "V", "M"), "reactions up, loads down", "Member"
+)
+SIDEWAYS = Words(
+    "Lateral reaction",
+    "Lateral shear",
+    ("lateral moment, right-hand side in tension", "lateral moment, left-hand side in tension"),
+    ("R_l", "V_l", "M_l"),
+    "reactions to the left, loads to the right",
+    "Member, sideways",
+)
+
+
 class Statics:
     """Adds the steps for the places that govern, each once."""
 
-    def __init__(self, document: documents.MemberDocument, body: Body, actions: Actions, working: Working) -> None:
-        self.document, self.body, self.actions, self.working = document, body, actions, working
+    def __init__(
+        self, document: documents.MemberDocument, body: Body, actions: Actions, working: Working, words: Words = UPRIGHT
+    ) -> None:
+        self.document, self.body, self.actions, self.working, self.words = document, body, actions, working, words
+        self.aside: Statics | None = None
+        if actions.across is not None:
+            self.aside = Statics(document, body, actions.across, working, SIDEWAYS)
         self._shear_done: set[tuple[float, int]] = set()
         self._held: dict[int, list[tuple[float, float, float]]] = {}
 
@@ -80,7 +110,9 @@ class Statics:
                 {**values, "I": (parts.inertia[:, 0].tolist(), "mm4"), "u_0": (u_0, "mm")},
                 unit="N*mm2", source="parallel axes (Steiner), E-weighted", group="Section",
             )  # fmt: skip
-            GA = section.shear_stiffness
+            if self.aside is not None:
+                self._both_ways(section, extent)
+            GA = section.shear_stiffness if self.aside is None else None
             if self.actions.shear_deformation and GA is not None:
                 how = (
                     "tau from the field of shear (warping of the section included)."
@@ -92,6 +124,41 @@ class Statics:
                     f"Shear stiffness{extent}",
                     f"GA = V^2 / integral of tau^2/G over the section, with {how}",
                     value=GA, unit="N", source="strain energy of shear (form factor)", group="Section",
+                )  # fmt: skip
+
+    def _both_ways(self, section: CrossSection, extent: str) -> None:
+        """Lateral bending stiffness and product, and what bending about both axes rests on."""
+        parts, whole = section.properties.pieces, section.properties
+        E, A = ([p.E for p in section.pieces], "MPa"), (parts.area.tolist(), "mm2")
+        a = (parts.centroid[:, 0].tolist(), "mm")
+        a_0 = self.working.step(
+            f"Neutral axis across, E-weighted{extent}", "a_0", "sum(E*A*a)/sum(E*A)", {"E": E, "A": A, "a": a},
+            unit="mm", source=f"in order: {', '.join(p.name for p in section.parts)}", group="Section",
+        )  # fmt: skip
+        self.working.step(
+            f"Lateral bending stiffness{extent}", "EI_l", "sum(E*(I + A*(a - a_0)**2))",
+            {"E": E, "A": A, "a": a, "a_0": (a_0, "mm"), "I": (parts.inertia[:, 1].tolist(), "mm4")},
+            unit="N*mm2", source="parallel axes (Steiner), E-weighted", group="Section",
+        )  # fmt: skip
+        self.working.step(
+            f"Product of bending stiffness{extent}", "EI_p", "sum(E*(I + A*(a - a_0)*(u - u_0)))",
+            {
+                "E": E, "A": A, "a": a, "a_0": (a_0, "mm"), "u": (parts.centroid[:, 1].tolist(), "mm"),
+                "u_0": (float(whole.neutral_axis[1]), "mm"), "I": (parts.inertia[:, 2].tolist(), "mm4"),
+            },
+            unit="N*mm2", source="parallel axes, E-weighted; I: own products", group="Section",
+        )  # fmt: skip
+        if self.actions.shear_deformation and section.shear_flexibility is not None:
+            for symbol, (i, j), word in (
+                ("g_v", (0, 0), "down under shear down"),
+                ("g_l", (1, 1), "sideways under shear sideways"),
+                ("g_p", (0, 1), "across to each other"),
+            ):
+                self.working.note(
+                    f"Shear strain per force, {word}{extent}",
+                    "Strain energy of the shear field under both forces.",
+                    value=float(section.shear_flexibility[i, j]), unit="1/N",
+                    source="strain energy of shear (form factor)", group="Section", symbol=symbol,
                 )  # fmt: skip
 
     def member(self) -> None:
@@ -106,18 +173,22 @@ class Statics:
         for row in rows:
             self._reactions(chosen[row])
         self.shear(shear.at, chosen[shear.row], shear.value)
-        for peak, word in zip(moments, ("sagging", "hogging"), strict=True):
+        for peak, upper in zip(moments, (True, False), strict=True):
             if peak.value > 1e-9 * max(abs(moments[0].value), abs(moments[1].value), 1e-300):
-                self._moment(peak, chosen[peak.row], word)
+                self._moment(peak, chosen[peak.row], upper)
+        if self.aside is not None:
+            self.aside.member()
 
     def _reactions(self, k: int) -> None:
         actions, supports = self.actions, sorted(self.document.member.supports, key=lambda s: s.at)
-        name, group = actions.labels[k], "Member"
+        name, group = actions.labels[k], self.words.group
+        word, (R, _, _) = self.words.reaction, self.words.symbols
         whole = self._resultants(k, self.body.length, inclusive=True)
         if len(supports) == 2 and not self.document.member.hinges and all(s.kind != "fixed" for s in supports):
             first, second = supports
+            first_of, second_of = (f"{R}{n}" if "_" in R else f"{R}_{n}" for n in (1, 2))
             right = self.working.step(
-                f"Reaction at {second.at:g} mm, combination {name}", "R_2", REACTION,
+                f"{word} at {second.at:g} mm, combination {name}", second_of, REACTION,
                 {
                     "W": (whole.force, "N"), "a": (whole.at, "mm"), "C": (whole.couple, "N*mm"),
                     "x_1": (first.at, "mm"), "x_2": (second.at, "mm"),
@@ -125,40 +196,42 @@ class Statics:
                 unit="N", source=f"{STATICS}: moments about the left support", group=group,
             )  # fmt: skip
             self.working.step(
-                f"Reaction at {first.at:g} mm, combination {name}", "R_1", "sum(W) - R_2",
-                {"W": (whole.force, "N"), "R_2": (right, "N")}, unit="N", source=STATICS, group=group,
+                f"{word} at {first.at:g} mm, combination {name}", first_of, f"sum(W) - {second_of}",
+                {"W": (whole.force, "N"), second_of: (right, "N")}, unit="N", source=STATICS, group=group,
             )  # fmt: skip
             return
         forces = actions.response.reaction_force[k]
         given = sorted(zip((s.at for s in self.document.member.supports), forces, strict=True))
         listed = "; ".join(f"{at:g} mm: {force:,.5g} N" for at, force in given)
         self.working.note(
-            f"Reactions, combination {name}",
+            f"{word}s, combination {name}",
             f"Direct stiffness method with exact fixed-end forces. {listed}. Equilibrium: the reactions sum to "
             f"{forces.sum():,.6g} N against {sum(whole.force):,.6g} N of load.",
             value=float(forces.sum()), unit="N", source="direct stiffness (matrix structural analysis)", group=group,
         )  # fmt: skip
 
-    def shear(self, at: float, k: int, size: float, group: str = "Member") -> None:
+    def shear(self, at: float, k: int, size: float, group: str = "") -> None:
         """Shear at a governing place, from the forces on its left; each place and combination once."""
         if not self.working.record or (at, k) in self._shear_done:
             return
         self._shear_done.add((at, k))
         left = min(self._both_sides(k, at), key=lambda side: abs(abs(sum(side.force)) - size))
         self.working.step(
-            f"Shear at {at:.6g} mm, combination {self.actions.labels[k]}", "V", SHEAR, {"F": (left.force, "N")},
-            unit="N", source=f"{STATICS} of the part to the left: reactions up, loads down", group=group,
+            f"{self.words.shear} at {at:.6g} mm, combination {self.actions.labels[k]}", self.words.symbols[1], SHEAR,
+            {"F": (left.force, "N")}, unit="N",
+            source=f"{STATICS} of the part to the left: {self.words.signs}", group=group or self.words.group,
         )  # fmt: skip
 
-    def _moment(self, peak: Peak, k: int, word: str) -> None:
-        signed = peak.value if word == "sagging" else -peak.value
+    def _moment(self, peak: Peak, k: int, upper: bool) -> None:
+        signed, word = peak.value if upper else -peak.value, self.words.moments[0 if upper else 1]
         left = min(self._both_sides(k, peak.at), key=lambda side: abs(_moment_of(side, peak.at) - signed))
+        title = f"Greatest {word}, at {peak.at:.6g} mm, combination {self.actions.labels[k]}"
         self.working.step(
-            f"Greatest {word} moment, at {peak.at:.6g} mm, combination {self.actions.labels[k]}", "M", MOMENT,
+            title, self.words.symbols[2], MOMENT,
             {
                 "F": (left.force, "N"), "a": (left.at, "mm"), "x": (peak.at, "mm"), "C": (left.couple, "N*mm"),
             },
-            unit="N*mm", source=f"{STATICS} of the part to the left: reactions up, loads down", group="Member",
+            unit="N*mm", source=f"{STATICS} of the part to the left: {self.words.signs}", group=self.words.group,
         )  # fmt: skip
 
     def _both_sides(self, k: int, at: float) -> list[Resultants]:

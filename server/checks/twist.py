@@ -1,26 +1,23 @@
-"""Eccentric loads in a check: the torque along the member, its part in each joint's flow, the rule on warping."""
+"""Eccentric loads in a check: the torque along the member, the shear it makes in pieces, the rule on warping."""
 
 from __future__ import annotations
 
 from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
-from functools import cached_property
 
 import numpy as np
 from numpy.typing import NDArray
 
 from server import documents
 from server.checks.actions import Actions, Curve
-from server.checks.along import Demand, Profile, RigidAlong, leftmost, side_by_side
-from server.checks.crosssection import Body, CrossSection, Site, Stretch, eccentric
-from server.checks.resistance import Findings, Judge
+from server.checks.crosssection import Body, CrossSection, Stretch, eccentric
+from server.checks.resistance import Findings
 from server.mechanics.field import Field
 from server.mechanics.piecewise import evaluate
 from server.mechanics.torsion import TorqueLoad, torque, warping_part
 
 Array = NDArray[np.float64]
 WARPING = 0.05  # of a torque; contract of the check
-FLOW = "abs(V*S_j/EI + T*c_T)"
 
 
 @dataclass(frozen=True, eq=False)
@@ -85,18 +82,18 @@ def _loads(document: documents.MemberDocument, case: str) -> Iterator[TorqueLoad
             yield TorqueLoad(load.from_, load.to, first * load.offset, last * load.offset)
 
 
-def _field(section: CrossSection) -> Field:
+def field_of(section: CrossSection) -> Field:
     field = section.settled.field
     assert field is not None
     return field
 
 
 def _torsional(section: CrossSection) -> float:
-    return _field(section).GJ
+    return field_of(section).GJ
 
 
 def _warping(section: CrossSection) -> float:
-    return _field(section).EIw
+    return field_of(section).EIw
 
 
 def _size(section: CrossSection) -> float:
@@ -129,122 +126,6 @@ def _judge_warping(
             f"(combination {name!r}), more than {WARPING:.0%}; the flows shown are those of Saint-Venant torsion "
             "alone. Close the section, bring the load nearer to the shear centre, or have warping torsion reckoned."
         )
-
-
-@dataclass(frozen=True, eq=False)
-class TwistedAlong(RigidAlong):
-    """Flow from shear and torsion together, added with sign at each place."""
-
-    twist: Twist
-
-    @cached_property
-    def _curves(self) -> dict[tuple[int, int], Curve]:
-        return {}
-
-    def curve(self, site: Site, t: int) -> Curve | None:
-        """Flow of a joint with its sign, by the section of one stretch; None where it is not there or not known."""
-        key = (site.index, t)
-        if key not in self._curves:
-            rates = rates_of(site, self.body.stretches[t])
-            if rates is None or self.scan.curve is None:
-                return None
-            shear, turn = self.scan.curve.coefficients, self.twist.torque.coefficients
-            both = rates[0] * shear[:, :, : turn.shape[2]] + rates[1] * turn
-            self._curves[key] = Curve(self.scan.curve.breaks, both, self.scan.curve.names)
-        return self._curves[key]
-
-    def demands(self) -> dict[int, Demand]:
-        """Joint by joint over the whole member."""
-        found = {site.index: self.over(site, 0.0, self.body.length) for site in self.body.sites}
-        return {index: demand for index, demand in found.items() if demand is not None}
-
-    def over(self, site: Site, low: float, high: float) -> Demand | None:
-        """Stretch by stretch between the two places."""
-        found: Demand | None = None
-        for t, stretch in enumerate(self.body.stretches):
-            start, end = max(low, stretch.start), min(high, stretch.end)
-            curve = self.curve(site, t) if end > start else None
-            if curve is None:
-                continue
-            q, at = curve.over(start, end).absolute()
-            V = np.array([max(abs(v) for v, _ in self.twist.at(float(x), row)) for row, x in enumerate(at)])
-            here = Demand(V, q, at, np.full(len(at), t, dtype=np.intp))
-            found = here if found is None else leftmost(found, here)
-        return found
-
-    def profile(self, site: Site, places: Array) -> Profile:
-        """Stretch by stretch, where the joint is."""
-        parts = []
-        for t, stretch in enumerate(self.body.stretches):
-            curve = self.curve(site, t)
-            if curve is not None:
-                parts.append(curve.sizes(stretch.start, stretch.end, places))
-        return side_by_side(parts)
-
-    def governing(self, site: Site, demand: Demand, row: int) -> tuple[float, float]:
-        """Shear and torque, with signs, on the side of the governing place on which the flow is found."""
-        stretch = self.body.stretches[int(demand.stretch[row])]
-        rates = rates_of(site, stretch)
-        assert rates is not None
-        wanted = float(demand.flow[row])
-        sides = self.twist.at(float(demand.at[row]), row)
-        return min(sides, key=lambda side: abs(abs(rates[0] * side[0] + rates[1] * side[1]) - wanted))
-
-
-def rates_of(site: Site, stretch: Stretch) -> tuple[float, float] | None:
-    """Flow per shear and per torque [1/mm], with signs; None where the joint is not there or its share not known."""
-    section = stretch.section
-    flow = section.flows.get(site.index)
-    if flow is None or flow.share is None:
-        return None
-    return flow.share / section.properties.EI, float(_field(section).twist[section.place(site)])
-
-
-def write_twisted_flow(
-    along: TwistedAlong, site: Site, demand: Demand, judge: Judge, group: str
-) -> tuple[float, dict[str, object]]:
-    """Torque and flow at the governing place; return the flow, and the run of stress along the bond."""
-    row = demand.peak
-    at, stretch = float(demand.at[row]), along.body.stretches[int(demand.stretch[row])]
-    section = stretch.section
-    field, place = _field(section), section.place(site)
-    V, T = along.governing(site, demand, row)
-    flow = section.flows[site.index]
-    assert flow.share is not None
-    combination = judge.actions.strength_names[row]
-    judge.working.note(
-        f"Torque at {at:.6g} mm, combination {combination}",
-        "Loads x their distance from the shear centre, anticlockwise on the face looked at; the twist is nil at every "
-        "support, overhanging ends are free.",
-        value=T,
-        unit="N*mm",
-        source="Saint-Venant torsion, equal twist in every span",
-        group=group,
-        symbol="T",
-    )
-    q = judge.working.step(
-        "Shear flow from shear and torsion",
-        "q",
-        FLOW,
-        {
-            "V": (V, "N"),
-            "S_j": (flow.share, "N*mm"),
-            "EI": (section.properties.EI, "N*mm2"),
-            "T": (T, "N*mm"),
-            "c_T": (float(field.twist[place]), "1/mm"),
-        },
-        unit="N/mm",
-        source=f"with signs, at one place; S_j: this joint's share, c_T: its flow per torque, from the field; V of "
-        f"combination {combination}. {flow.reason}",
-        group=group,
-    )
-    signed = V * flow.share / section.properties.EI + T * float(field.twist[place])
-    run = field.parts[place] * (V / section.properties.EI) + field.parts_twist[place] * T
-    way = 1.0 if signed >= 0 else -1.0
-    found: dict[str, object] = {"torque": T, "shear_flow_from_shear": abs(V * flow.share / section.properties.EI)}
-    if site.bonded:
-        found["distribution"] = (way * run / site.spec.coverage).tolist()
-    return q, found
 
 
 @dataclass(frozen=True, eq=False)

@@ -219,7 +219,8 @@ def _drawing_parts(result: Mapping[str, Any], display: str, drawings: Drawings) 
     yield _figure(drawings.section(result, display=display), "Section, seen on the right-hand face of a cut", 0.86)
     yield _figure(drawings.loads(result, display=display), "Supports and loads", 0.86)
     names = {"shear": "Shear", "moment": "Bending moment", "deflection": "Deflection"}
-    for quantity, name in names.items():
+    aside = {f"{quantity}_lateral": f"Lateral {name.lower()}" for quantity, name in names.items()}
+    for quantity, name in (names | aside).items():
         if (result.get("diagrams") or {}).get(quantity):
             svg = drawings.diagram(result, quantity, display=display, height=DIAGRAM_HEIGHT)
             yield {**_figure(svg, "", 0.86), "alt": f"{name}, envelope over the combinations"}

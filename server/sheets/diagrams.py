@@ -45,6 +45,12 @@ QUANTITIES = {
     "moment": Quantity("Bending moment", "couple", True, "sagging positive, drawn down (side in tension)"),
     "deflection": Quantity("Deflection", "deflection", True, "downward positive, drawn down"),
     "deflection_long_term": Quantity("Long-term deflection", "deflection", True, "downward positive, drawn down"),
+    "shear_lateral": Quantity("Lateral shear", "force", False, "positive: the part at the left pushes to the left"),
+    "moment_lateral": Quantity("Lateral moment", "couple", True, "positive: right-hand side in tension, drawn down"),
+    "deflection_lateral": Quantity("Lateral deflection", "deflection", True, "to the right positive, drawn down"),
+    "deflection_lateral_long_term": Quantity(
+        "Long-term lateral deflection", "deflection", True, "to the right positive, drawn down"
+    ),
 }
 FLOW = Quantity("Shear flow", "flow", False, "sign as the shear force")
 SLIP = Quantity("Slip", "deflection", False, FLOW.rule)
@@ -59,7 +65,7 @@ def diagram_svg(
     height: float = 210.0,
     prefix: str = "",
 ) -> str:
-    """Draw the envelope of "shear", "moment", "deflection" or "deflection_long_term" along the member as SVG.
+    """Draw the envelope of one of ``QUANTITIES`` along the member as SVG.
 
     Raises InputError where there is no such quantity; one that the result does not have is a drawing that says so.
     """

@@ -84,8 +84,15 @@ def actions(result: Result, display: str) -> Iterator[Part]:
     member = result.get("member") or {}
     force, couple, length = unit("N", display), unit("N*mm", display), unit("mm", display)
     reactions = member.get("reactions") or {}
+    aside = any("lateral" in each for listed in reactions.values() for each in listed)
     rows: list[list[Cell]] = [
-        [name, length.number(each.get("at")), _held(each, "force", force), _held(each, "couple", couple)]
+        [
+            name,
+            length.number(each.get("at")),
+            _held(each, "force", force),
+            _held(each, "couple", couple),
+            *([force.number(each.get("lateral")), couple.number(each.get("couple_lateral"))] if aside else []),
+        ]
         for name, listed in reactions.items()
         for each in listed
     ]
@@ -96,10 +103,14 @@ def actions(result: Result, display: str) -> Iterator[Part]:
             _numbers("Reaction, upward", force),
             _numbers("Couple, anticlockwise", couple),
         ]
+        if aside:
+            columns += [_numbers("Reaction, to the right", force), _numbers("Couple, lateral", couple)]
         yield table(columns, rows)
     lines = [
         ("Shear", member.get("shear"), force),
         ("Bending moment", member.get("moment"), couple),
+        ("Lateral shear", member.get("shear_lateral"), force),
+        ("Lateral moment", member.get("moment_lateral"), couple),
     ]
     yield from extremes(lines, length)
 
@@ -281,6 +292,8 @@ def deflection(result: Result, display: str) -> Iterator[Part]:
     lines = [
         ("Deflection", member.get("deflection"), length),
         ("Long-term deflection", member.get("deflection_long_term"), length),
+        ("Lateral deflection", member.get("deflection_lateral"), length),
+        ("Long-term lateral deflection", member.get("deflection_lateral_long_term"), length),
     ]
     yield from extremes(lines, length)
     rows = [

@@ -13,6 +13,7 @@ from typing import Any
 from markupsafe import Markup
 
 from server import library, sheets
+from server.sheets import diagrams
 from server.sheets import values as written
 from server.sheets.asked import RECORDS
 from server.sheets.section_view import joint_numbers
@@ -20,7 +21,7 @@ from server.storage import Session
 from server.working import exceeds
 
 Result = Mapping[str, Any]
-QUANTITIES = ("shear", "moment", "deflection", "deflection_long_term")
+QUANTITIES = tuple(diagrams.QUANTITIES)
 _MOST_RECORDS = 500
 _SPLITS = {"cut": "clean cut", "symmetry": "by symmetry", "field": "by field"}
 
@@ -363,7 +364,10 @@ def _extremes(member: Mapping[str, Any], display: str) -> Iterable[tuple[str, st
     for name, title in (
         ("deflection", "Largest deflection"),
         ("deflection_long_term", "Largest deflection, long-term"),
+        ("deflection_lateral", "Largest lateral deflection"),
     ):
         if found := member.get(name):
-            place = written.quantity(found["at_max"], "mm", display)
-            yield title, f"{written.quantity(found['max'], 'mm', display)} at {place}"
+            aside = name == "deflection_lateral" and abs(found["min"]) > abs(found["max"])
+            end = "min" if aside else "max"
+            place = written.quantity(found[f"at_{end}"], "mm", display)
+            yield title, f"{written.quantity(found[end], 'mm', display)} at {place}"

@@ -115,7 +115,7 @@ def test_nothing_everywhere_is_a_flat_line(quantity: str) -> None:
     result = fixtures.strip()
     count = len(result["diagrams"]["at"])
     result["diagrams"][quantity] = {"max": [0.0] * count, "min": [0.0] * count}
-    result["member"][quantity] |= {"max": 0.0, "min": 0.0, "at_max": 0.0, "at_min": 0.0}
+    result["member"][quantity] = {**result["member"]["moment"], "max": 0.0, "min": 0.0, "at_max": 0.0, "at_min": 0.0}
     svg = diagram_svg(result, quantity)
     assert "0 everywhere" in texts(svg)
     assert "nan" not in svg
