@@ -16,7 +16,7 @@ from server.mechanics.field_layout import Bond, Layout
 from server.mechanics.field_mesh import Mesh
 from server.mechanics.polygon import Array, Indices
 
-_STEPS, _SMALL = 12, 1e-6  # of conjugate gradients; of the first size, in energy
+_STEPS, _SMALL = 12, 1e-4  # of conjugate gradients; of the first size, in energy
 
 
 @dataclass(frozen=True, eq=False)
