@@ -6,7 +6,7 @@ from collections.abc import Iterator
 
 import numpy as np
 
-from server import documents
+from server import documents, units
 from server.checks.crosssection import Body, Part, Site
 from server.errors import DocumentError, Fault
 
@@ -28,30 +28,37 @@ def _misfits(document: documents.MemberDocument, site: Site) -> Iterator[Fault]:
     fastener = document.fastener(name)
     path = f"section.joints[{site.index}]"
     pair = f"{site.first.name!r} and {site.second.name!r}"
+    display = document.display
     through = any(word in f"{fastener.kind} {name}".lower() for word in THROUGH)
     thick = sum(_thickness(part, site) for part in (site.first, site.second)) + site.contact.gap
     if fastener.length is not None and not through and fastener.length > thick * (1 + SLACK):
         yield Fault(
             f"{path}.fastener",
-            f"{name!r} is {fastener.length:g} mm long, and {pair} are {thick:.4g} mm thick together where it goes in: "
-            "its point would stand out. Choose a shorter one, or give the length that lies in the pieces.",
+            f"{name!r} is {_said(fastener.length, display)} long, and {pair} are {_said(thick, display)} thick "
+            "together where it goes in: its point would stand out. Choose a shorter one, or give the length that lies "
+            "in the pieces.",
         )
-    yield from _rows(site, fastener, path, pair)
+    yield from _rows(site, fastener, path, pair, display)
 
 
-def _rows(site: Site, fastener: documents.Fastener, path: str, pair: str) -> Iterator[Fault]:
+def _said(size: float, display: str) -> str:
+    return units.show(size, "length", display)
+
+
+def _rows(site: Site, fastener: documents.Fastener, path: str, pair: str, display: str) -> Iterator[Fault]:
     diameter = fastener.diameter or 0.0
     between = fastener.row_spacing if fastener.row_spacing is not None else diameter
     edge = fastener.edge_distance if fastener.edge_distance is not None else diameter / 2
     rows = site.spec.rows
     width = (rows - 1) * between + 2 * edge
     if width > site.contact.length * (1 + SLACK):
-        parts = [f"{between:g} mm between rows"] if rows > 1 else []
-        parts.append(f"{edge:g} mm to each edge")
+        parts = [f"{_said(between, display)} between rows"] if rows > 1 else []
+        parts.append(f"{_said(edge, display)} to each edge")
         yield Fault(
             f"{path}.rows",
-            f"{rows} row{'s need' if rows > 1 else ' needs'} {width:.4g} mm across ({', '.join(parts)}), and {pair} "
-            f"touch over {site.contact.length:.4g} mm; take fewer rows, a thinner fastener or a wider contact.",
+            f"{rows} row{'s need' if rows > 1 else ' needs'} {_said(width, display)} across ({', '.join(parts)}), and "
+            f"{pair} touch over {_said(site.contact.length, display)}; take fewer rows, a thinner fastener or a wider "
+            "contact.",
         )
 
 

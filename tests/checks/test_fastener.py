@@ -339,7 +339,7 @@ def test_a_force_across_the_grain_is_never_carried_better(one, two):
 WORDS = st.sampled_from([None, "", "x", "4 kg", "-3 mm", "1e400", True, [], {}, float("1e12"), -1, 0, "12 mm", "9 MPa"])
 
 
-@settings(max_examples=150, deadline=None)
+@settings(max_examples=600, deadline=None)
 @given(
     st.sampled_from([NAIL, BOLT, RIVET, changed(BOLT, side={"thickness": 8, "kind": "steel"})]),
     st.lists(

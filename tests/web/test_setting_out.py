@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import re
 
+import pytest
 from fastapi.testclient import TestClient
 
 from server import documents
@@ -43,6 +44,36 @@ def test_a_check_without_fasteners_offers_no_page(shop: TestClient) -> None:
     answer = shop.get(PAGE)
     assert 400 <= answer.status_code < 500
     assert "sets out no fasteners" in answer.text
+
+
+ZONES = [{"from": 0, "to": "1 ft", "spacing": "6 in"}, {"from": "2 ft", "to": "4 ft", "spacing": "6 in"}]
+
+
+@pytest.mark.parametrize(
+    ("where", "wrong", "box", "words"),
+    [
+        ("fasteners__screw__length", "5 in", "joints[0].fastener", "is 5 in long, and"),
+        ("fasteners__screw__row_spacing", "1 in", "joints[0].rows", "rows need"),
+        ("fasteners__screw__slip_modulus", 0, "fasteners[0].slip_modulus", "enter a stiffness"),
+        ("section__joints__0__spacing", ZONES, "joints[0].spacing", "A gap between the zone that ends at 12 in"),
+    ],
+    ids=["longer than the parts", "rows that do not fit", "slip modulus 0", "gap in the zones"],
+)
+def test_what_cannot_be_is_refused_beside_its_box(
+    shop: TestClient, where: str, wrong: object, box: str, words: str
+) -> None:
+    more = {"section__joints__0__rows": 3} if "row_spacing" in where else {}
+    answer = shop.post(SAVE, data={**forms.write(deck(4, **{where: wrong}, **more)), "mark": "D4", "made_by": "M."})
+    assert answer.status_code == 422
+    said = re.search(rf'id="m-{re.escape(box)}"[^>]*>([^<]+)', answer.text)
+    assert said
+    assert words in said[1]
+
+
+def test_a_spacing_below_the_least_is_saved_as_not_proven(shop: TestClient) -> None:
+    text = save(shop, deck(4, **{f"section__joints__{i}__spacing": "1 in" for i in range(5)}))
+    assert "Not proven" in text
+    assert "skin/rib 1, 0 to 1219.2 mm: under the least, 50.8 mm" in text  # a job in SI
 
 
 def test_the_form_turns_slip_on_by_itself_and_keeps_step_and_distances() -> None:
