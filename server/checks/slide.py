@@ -17,7 +17,7 @@ from server.checks.rules import ULTIMATE_SLIP, chosen
 from server.errors import DocumentError, Fault, InputError
 from server.mechanics import beam as mechanics
 from server.mechanics.beam import Beam, Response, solve
-from server.mechanics.slip import Curves, FlexibleJoint, Layer, LayeredMember, SlipResponse, solve_slip
+from server.mechanics.slip import Curves, FlexibleJoint, Layer, LayeredMember, Share, SlipResponse, solve_slip
 
 Array = NDArray[np.float64]
 ULTIMATE = 2 / 3  # K_u / K_ser, EN 1995-1-1:2004 expression (2.1)
@@ -79,18 +79,21 @@ class Slide:
 
 
 def layers(body: Body, *, creep: bool = False) -> list[Layer]:
-    """Every piece as a layer of its own, in the order of the document."""
+    """Every piece as a layer of its own, in the order of the document; each stretch counts as much as it does."""
     found: dict[int, Layer] = {}
+    shares: dict[int, list[Share]] = {}
     for stretch in body.stretches:
         pieces = stretch.section.properties.pieces
         for position, part in enumerate(stretch.section.parts):
+            share = stretch.section.share(position)
+            if share < 1.0:
+                shares.setdefault(part.index, []).append(Share(stretch.start, stretch.end, share))
             if part.index not in found:
-                E = part.material.E * stretch.section.share(position)
-                E /= 1 + (part.material.creep or 0.0) if creep else 1.0
+                E = part.material.E / (1 + (part.material.creep or 0.0) if creep else 1.0)
                 area, inertia = float(pieces.area[position]), float(pieces.inertia[position, 0])
                 height = float(pieces.centroid[position, 1])
                 found[part.index] = Layer(part.start, part.end, E * area, E * inertia, height)
-    return [found[part.index] for part in body.parts]
+    return [replace(found[part.index], shares=tuple(shares.get(part.index, ()))) for part in body.parts]
 
 
 def layered(

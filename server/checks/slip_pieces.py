@@ -55,14 +55,14 @@ def fibres(slide: Slide, part: Part, stretch: Stretch) -> Fibres:
 
 
 def _piece(part: Part, stretch: Stretch) -> tuple[float, float, float, float]:
-    """E, EA, EI about its own centroid, and the centroid's height."""
+    """E, EA and EI (about its own centroid) of as much of it as counts, and the centroid's height."""
     position = next(i for i, other in enumerate(stretch.section.parts) if other is part)
     pieces = stretch.section.properties.pieces
-    E = part.material.E
+    E, share = part.material.E, stretch.section.share(position)
     return (
         E,
-        E * float(pieces.area[position]),
-        E * float(pieces.inertia[position, 0]),
+        E * share * float(pieces.area[position]),
+        E * share * float(pieces.inertia[position, 0]),
         float(pieces.centroid[position, 1]),
     )
 

@@ -22,11 +22,21 @@ from server.mechanics.beam_model import Load
 from server.mechanics.beam_stability import require_stable
 from server.mechanics.beam_system import FIXED
 from server.mechanics.slip_curves import Curves, Stations, stations, trace
-from server.mechanics.slip_model import FlexibleJoint, Layer, LayeredMember, Zone
+from server.mechanics.slip_model import FlexibleJoint, Layer, LayeredMember, Share, Zone
 from server.mechanics.slip_stacks import Stacks, Tree, plant, stack
 from server.mechanics.slip_system import Chain, assemble, link, solve_system, spread_loads
 
-__all__ = ["Curves", "FlexibleJoint", "Layer", "LayeredMember", "SlipResponse", "Stations", "Zone", "solve_slip"]
+__all__ = [
+    "Curves",
+    "FlexibleJoint",
+    "Layer",
+    "LayeredMember",
+    "Share",
+    "SlipResponse",
+    "Stations",
+    "Zone",
+    "solve_slip",
+]
 
 Array = NDArray[np.float64]
 

@@ -16,6 +16,23 @@ from server.mechanics.beam_model import SAME_PLACE, Beam, Stretch, Support
 
 
 @dataclass(frozen=True, slots=True)
+class Share:
+    """A length of a layer of which only a part counts.
+
+    Parameters
+    ----------
+    start, end : float
+        From where to where [mm].
+    share : float
+        Part of the layer's EA and EI that counts, above 0 [-].
+    """
+
+    start: float
+    end: float
+    share: float
+
+
+@dataclass(frozen=True, slots=True)
 class Layer:
     """What stays plane by itself: one piece, or several that move alike.
 
@@ -29,6 +46,8 @@ class Layer:
         Bending stiffness about its own centroid [N*mm2].
     height : float
         Height of its centroid above any common origin [mm].
+    shares : tuple of Share
+        Lengths over which only a share of EA and EI counts, as of a skin's effective width; 1 elsewhere.
     """
 
     start: float
@@ -36,6 +55,7 @@ class Layer:
     EA: float
     EI: float
     height: float
+    shares: tuple[Share, ...] = ()
 
 
 @dataclass(frozen=True, slots=True)
@@ -142,6 +162,12 @@ class LayeredMember:
             raise InputError(f"{field}.EI", f"EI is {layer.EI:g} N*mm2; enter a number greater than 0 N*mm2.")
         if not math.isfinite(layer.height):
             raise InputError(f"{field}.height", f"height is {layer.height:g} mm; enter a number.")
+        for number, part in enumerate(layer.shares):
+            self._check_run(f"{field}.shares[{number}]", part.start, part.end)
+            if not (math.isfinite(part.share) and part.share > 0):
+                raise InputError(
+                    f"{field}.shares[{number}].share", f"share is {part.share:g}; enter a number greater than 0."
+                )
 
     def _check_run(self, field: str, start: float, end: float) -> None:
         slack = self.same_place
@@ -186,7 +212,7 @@ class LayeredMember:
         """
         places = {0.0, self.length, *(s.start for s in self.shear)}
         for layer in self.layers:
-            places.update((layer.start, layer.end))
+            places.update((layer.start, layer.end, *(end for s in layer.shares for end in (s.start, s.end))))
         for joint in self.joints:
             for zone in joint.zones:
                 places.update((zone.start, zone.end))

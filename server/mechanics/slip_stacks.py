@@ -203,6 +203,10 @@ def stack(member: LayeredMember, tree: Tree, breaks: Array) -> Stacks:
     starts = np.array([layer.start for layer in member.layers])
     ends = np.array([layer.end for layer in member.layers])
     present = (starts < middle[:, None]) & (middle[:, None] < ends)
+    counts = present.astype(float)  # the share of every layer that counts, 0 where it is not
+    for number, layer in enumerate(member.layers):
+        for part in layer.shares:
+            counts[:, number] *= np.where((part.start < middle) & (middle < part.end), part.share, 1.0)
     own = np.zeros((len(middle), len(member.joints)))
     for number, joint in enumerate(member.joints):
         zones = sorted((zone for zone in joint.zones), key=lambda zone: zone.start)
@@ -213,26 +217,29 @@ def stack(member: LayeredMember, tree: Tree, breaks: Array) -> Stacks:
             own[:, number] = k[place] * (inside & present[:, joint.first] & present[:, joint.second])
     edge = np.zeros((len(middle), len(tree.edges)))
     np.add.at(edge.T, tree.of_joint, own.T)
-    rows, of = np.unique(np.hstack([present, edge]), axis=0, return_inverse=True)
+    rows, of = np.unique(np.hstack([counts, edge]), axis=0, return_inverse=True)
     n = len(member.layers)
-    return _modes(member, tree, rows[:, :n] > 0, rows[:, n:], own, of.reshape(-1))
+    return _modes(member, tree, rows[:, :n], rows[:, n:], own, of.reshape(-1))
 
 
-def _modes(member: LayeredMember, tree: Tree, present: NDArray[np.bool_], k: Array, own: Array, of: Indices) -> Stacks:
+def _modes(member: LayeredMember, tree: Tree, counts: Array, k: Array, own: Array, of: Indices) -> Stacks:
+    present = counts > 0
     n, (r, e) = len(member.layers), k.shape
     EA = np.array([layer.EA for layer in member.layers])
     EI = np.array([layer.EI for layer in member.layers])
     z = np.array([layer.height for layer in member.layers])
     z = z - EA @ z / EA.sum()
-    loose = present @ EI
-    tied = loose + present @ (EA * z * z)
+    loose = counts @ EI
+    tied = loose + counts @ (EA * z * z)
     rate, drive = np.zeros((r, n)), np.zeros((r, n))
     force, slide, hold = np.zeros((r, n, n)), np.zeros((r, e, n)), np.zeros((r, e, n))
-    for mask in np.unique(present, axis=0):
-        alike = np.flatnonzero((present == mask).all(1))
+    for shares in np.unique(counts, axis=0):
+        alike = np.flatnonzero((counts == shares).all(1))
+        mask = shares > 0
         here = np.flatnonzero(mask)
-        s = EA[here] * z[here]
-        C = np.diag(EA[here]) - np.outer(s, s) / tied[alike[0]]
+        own_EA = shares[here] * EA[here]
+        s = own_EA * z[here]
+        C = np.diag(own_EA) - np.outer(s, s) / tied[alike[0]]
         root = np.linalg.cholesky(C)  # C = root root^T
         ends = np.zeros((e, n))
         ends[np.arange(e), tree.edges[:, 1]], ends[np.arange(e), tree.edges[:, 0]] = 1, -1
@@ -255,7 +262,7 @@ def _modes(member: LayeredMember, tree: Tree, present: NDArray[np.bool_], k: Arr
         force[alike, :, :size] = np.where(stiff[:, None], through, straight)
         shape = tree.to_sigma[:, here]  # N = to_sigma^T Y, for the layers that are there
         drive[alike, :size] = np.einsum("i,ji,kjm->km", z[here], shape, force[alike, :, :size]) / loose[alike, None]
-    lever = present * (EA * z) / tied[:, None]
+    lever = counts * (EA * z) / tied[:, None]
     return Stacks(of, present, loose, tied, k, own, rate, force, slide, hold, drive, lever)
 
 

@@ -13,6 +13,10 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from server import checks, documents
+from server.checks.actions import act
+from server.checks.crosssection import build
+from server.checks.effective_width import narrowed
+from server.checks.slide import layers
 
 Raw = dict[str, Any]
 CASES = tomllib.loads((Path(__file__).parents[1] / "published" / "ec5_thin.toml").read_text(encoding="utf-8"))["case"]
@@ -366,3 +370,29 @@ def test_a_core_within_a_hundred_times_is_no_sandwich() -> None:
     assert not any("times stiffer" in text for text in result["missing"])
     assert not [e for p in result["pieces"] for e in p["limits"] if "wrinkling" in e["what"]]
     assert math.isclose(70000 / 100, stiff["E"])
+
+
+def test_stiff_joints_that_slip_give_the_stresses_of_rigid_ones_with_every_stretch_at_its_own_width() -> None:
+    """Over the middle support the skin is pulled and more of it counts than in the spans, where it may buckle."""
+    raw = deck(45, 6, SKINS)
+    L = raw["member"]["length"]
+    raw["member"]["supports"] = [{"at": x, "kind": "pin"} for x in (0, L / 2, L)]
+    rib = raw["section"]["pieces"]["rib 0"]
+    low = {**rib, "depth": 20, "at": [rib["at"][0], rib["at"][1] - 20], "from": 0.42 * L, "to": 0.58 * L}
+    raw["section"]["pieces"]["strip"] = low
+    raw["section"]["joints"].append({"between": ["rib 0", "strip"], "adhesive": "glue"})
+    raw["adhesives"]["glue"] |= {"shear_modulus": 1e5, "thickness": 0.1}
+    raw["analysis"] |= {"shear_deformation": False}
+    document = documents.read(raw)
+    body = narrowed(document, build(document), act(document, build(document)))
+    skin = next(part for part in body.parts if part.name == "skin")
+    shares = layers(body)[skin.index].shares
+    assert len({round(each.share, 9) for each in shares}) == 2
+    assert [each.share for each in shares] == [s.section.share(s.section.parts.index(skin)) for s in body.stretches]
+    rigid, slipping = run(raw), run({**raw, "analysis": {**raw["analysis"], "slip": True}})
+    for one, other in zip(rigid["pieces"], slipping["pieces"], strict=True):
+        if one["id"] != "strip":  # at its ends the stress of a rigid joint jumps
+            assert other["stress_top"] == pytest.approx(one["stress_top"], rel=0.01), one["id"]
+            assert other["stress_bottom"] == pytest.approx(one["stress_bottom"], rel=0.01), one["id"]
+    sags = [result["member"]["deflection"]["max"] for result in (rigid, slipping)]
+    assert sags[0] == pytest.approx(sags[1], rel=0.01)

@@ -46,9 +46,13 @@ def solve_by_elements(
     middle = mesh.p[0, mesh.t].mean(0)
     n = len(member.layers)
     there = [(layer.start < middle) & (middle < layer.end) for layer in member.layers]
+    parts = [np.ones_like(middle) for _ in member.layers]
+    for part, layer in zip(parts, member.layers, strict=True):
+        for s in layer.shares:
+            part[(s.start < middle) & (middle < s.end)] *= s.share
     joints = [_stiffness(member, j, middle) * there[j.first] * there[j.second] for j in member.joints]
     nothing = np.zeros_like(middle)
-    D = sum((t * layer.EI for t, layer in zip(there, member.layers, strict=True)), nothing)
+    D = sum((p * t * layer.EI for p, t, layer in zip(parts, there, member.layers, strict=True)), nothing)
     rotated = sum(
         (k * (member.layers[j.second].height - member.layers[j.first].height) ** 2
          for k, j in zip(joints, member.joints, strict=True)), nothing,
@@ -61,7 +65,9 @@ def solve_by_elements(
     for i, layer in enumerate(member.layers):
         own = sum((k for k, j in zip(joints, member.joints, strict=True) if i in (j.first, j.second)), nothing)
         blocks[i + 1][i + 1] = asm(
-            BilinearForm(lambda u, v, w: w.A * dot(grad(u), grad(v))), pull, A=_field(there[i] * layer.EA, pull)
+            BilinearForm(lambda u, v, w: w.A * dot(grad(u), grad(v))),
+            pull,
+            A=_field(parts[i] * there[i] * layer.EA, pull),
         ) + asm(mass, pull, k=_field(own, pull))
         arm = nothing.copy()
         for k, j in zip(joints, member.joints, strict=True):
@@ -101,7 +107,7 @@ def solve_by_elements(
     x = np.zeros(K.shape[0])
     K = K.tocsr()
     x[keep] = spsolve(K[keep][:, keep].tocsc(), f[keep])
-    return _read(member, mesh, bend, pull, x, there, joints)
+    return _read(member, mesh, bend, pull, x, [p * t for p, t in zip(parts, there, strict=True)], joints)
 
 
 def _read(member, mesh, bend, pull, x, there, joints) -> Solved:  # type: ignore[no-untyped-def]

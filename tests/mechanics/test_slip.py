@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
 from itertools import pairwise
 
 import numpy as np
@@ -11,7 +12,7 @@ from hypothesis import strategies as st
 
 from server.errors import InputError
 from server.mechanics.beam import Beam, Couple, LineLoad, Load, PointLoad, Stretch, Support, evaluate, extremes, solve
-from server.mechanics.slip import FlexibleJoint, Layer, LayeredMember, SlipResponse, Zone, solve_slip
+from server.mechanics.slip import FlexibleJoint, Layer, LayeredMember, Share, SlipResponse, Zone, solve_slip
 from tests.mechanics.slip_fem import solve_by_elements
 
 L = 4200.0
@@ -106,8 +107,13 @@ def three_layers(supports: list[Support]) -> LayeredMember:
     ],
     ids=["pins and a fixed end", "a spring between"],
 )
-def test_three_layers_agree_with_finite_elements(supports: list[Support]) -> None:
+@pytest.mark.parametrize("narrowed", [False, True], ids=["whole", "in part"])
+def test_three_layers_agree_with_finite_elements(supports: list[Support], narrowed: bool) -> None:
     member = three_layers(supports)
+    if narrowed:  # as effective widths that differ from stretch to stretch
+        shares = ((Share(400, 900, 0.5),), (Share(400, 900, 0.8), Share(900, 4100, 0.35)), (Share(900, 4100, 0.6),))
+        layers = [replace(layer, shares=each) for layer, each in zip(member.layers, shares, strict=True)]
+        member = LayeredMember(member.length, supports, [], layers, member.joints)
     found = solve_slip(member, [[LineLoad(0, 5000, 2, 5), PointLoad(1200, 3000)]])
     places = [0, 400, 900, 1200, 1500, 2000, 2600, 3000, 4100, 5000]
     other = solve_by_elements(member, places, line=lambda x: 2 + 3 * x / 5000, points=[(1200, 3000)], cells=24)
