@@ -18,7 +18,7 @@ from server.checks.actions import Curve
 from server.checks.bond_ends import Bonded, End
 from server.checks.crosssection import Body, Part, Site
 from server.checks.resistance import Findings
-from server.checks.strip_ends import EndCheck, Strain, stresses_at, use_of
+from server.checks.strip_ends import EndCheck, Strain, near, stresses_at, use_of
 from server.mechanics.overlap_laps import BondLine
 from server.working import Working
 
@@ -195,6 +195,7 @@ def at_end(check: EndCheck, strains: Sequence[Strain], book: Working) -> Moves:
             "transfer_length": 1 / rate,
             "with_load_shear": float(found.peak_shear.max()),
             "with_load_peel": float(found.peak_peel.max()),
+            "distribution": {} if found.free is None else near(end, found.free, k),
             "what_if": [],
         },
         end.title,

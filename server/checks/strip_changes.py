@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterator, Sequence
+from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import replace
 
 import numpy as np
@@ -11,6 +11,7 @@ from server.checks.actions import Curve
 from server.checks.resistance import Findings
 from server.checks.strip_ends import EndCheck, Strain, Stresses, stresses_at, use_of
 from server.errors import InputError
+from server.mechanics.overlap_laps import BondLine
 
 TIP = 1.5  # mm, to which a taper thins; common practice: 1 to 2 mm
 TAPERS = (50.0, 200.0)  # mm
@@ -20,16 +21,40 @@ HALVINGS = 6
 def tried(check: EndCheck, moment: Curve, strains: Sequence[Strain]) -> list[dict[str, object]]:
     """Each change with what it brings, reckoned anew."""
     found = [_told(what, check, stresses) for what, stresses in _each(check, moment, strains)]
-    moved = _moved(check, moment, strains)
-    return [*([moved] if moved is not None else []), *found]
+    moved = [each for each in (_moved(check, moment, strains),) if each is not None]
+    if moved and not any(_holds(each) for each in (*moved, *found)):
+        moved += _together(check, moment, strains)
+    return [*moved, *found]
+
+
+def _holds(told: Mapping[str, object]) -> bool:
+    used = told["utilisation"]
+    return not isinstance(used, float) or used <= 1
+
+
+def _together(check: EndCheck, moment: Curve, strains: Sequence[Strain]) -> list[dict[str, object]]:
+    """No one change is enough: the end run out and tapered, or with a thicker line too; the first that holds."""
+    assert check.end.bonded is not None
+    strip, thick = check.end.bonded.strip, _thicker(check.bond)
+    tapers = strip.area is None and strip.thickness > TIP and 2 * TAPERS[0] < check.end.bonded.length
+    both = [(check.bond, TAPERS[0]), (thick, TAPERS[0])] if tapers else [(thick, 0.0)]
+    found: list[dict[str, object]] = []
+    for bond, taper in both:
+        told = _moved(check, moment, strains, bond, taper)
+        found = [] if told is None else [told]
+        if told is not None and _holds(told):
+            break
+    return found
+
+
+def _thicker(bond: BondLine) -> BondLine:
+    return replace(bond, thickness=3 * bond.thickness)
 
 
 def _each(check: EndCheck, moment: Curve, strains: Sequence[Strain]) -> Iterator[tuple[str, Stresses]]:
     end, bond = check.end, check.bond
-    thicker, softer = (
-        replace(bond, thickness=3 * bond.thickness),
-        replace(bond, shear_modulus=bond.shear_modulus / 4, E=bond.E / 4),
-    )
+    thicker = _thicker(bond)
+    softer = replace(bond, shear_modulus=bond.shear_modulus / 4, E=bond.E / 4)
     yield f"bond line {thicker.thickness:g} mm thick", stresses_at(end, thicker, moment, strains)
     yield "adhesive a quarter as stiff", stresses_at(end, softer, moment, strains)
     assert end.bonded is not None
@@ -50,15 +75,23 @@ def _told(what: str, check: EndCheck, found: Stresses) -> dict[str, object]:
     }
 
 
-def _moved(check: EndCheck, moment: Curve, strains: Sequence[Strain]) -> dict[str, object] | None:
-    """How far out the end must run for its limits to hold; None where it holds already or nothing is judged."""
+def _moved(
+    check: EndCheck, moment: Curve, strains: Sequence[Strain], bond: BondLine | None = None, taper: float = 0.0
+) -> dict[str, object] | None:
+    """How far out the end must run for its limits to hold, with another line or a taper; None where it holds as is."""
     end = check.end
     if check.governing is None or check.governing.utilisation <= 1 or not end.inside:
         return None
-    bonded = end.bonded
+    bonded, line = end.bonded, check.bond if bond is None else bond
     assert bonded is not None
     limit = 0.0 if end.side == "left" else float(moment.breaks[-1])
-    solve = _solver(check, moment, strains)
+
+    def solve(place: float) -> Stresses:
+        start, stop = (place, None) if end.side == "left" else (None, place)
+        return stresses_at(end, line, moment, strains, start=start, stop=stop, taper=taper, tip=TIP if taper else 0.0)
+
+    extra = f", tapered to {TIP:g} mm over {taper:g} mm" if taper else ""
+    extra += f", bond line {line.thickness:g} mm thick" if line is not check.bond else ""
     try:
         furthest = solve(limit)
     except InputError:
@@ -67,7 +100,7 @@ def _moved(check: EndCheck, moment: Curve, strains: Sequence[Strain]) -> dict[st
     if used is None:
         return None
     if used > 1:
-        return _told(f"end run out to {limit:g} mm, the member's own end: still not enough", check, furthest)
+        return _told(f"end run out to {limit:g} mm, the member's own end{extra}: still not enough", check, furthest)
     holds, fails, best = limit, end.at, furthest
     for _ in range(HALVINGS):
         middle = (holds + fails) / 2
@@ -77,18 +110,7 @@ def _moved(check: EndCheck, moment: Curve, strains: Sequence[Strain]) -> dict[st
         else:
             fails = middle
     shown = np.floor(holds) if end.side == "left" else np.ceil(holds)
-    return _told(f"end run out to {shown:g} mm from the left", check, best)
-
-
-def _solver(check: EndCheck, moment: Curve, strains: Sequence[Strain]) -> Callable[[float], Stresses]:
-    end, bond = check.end, check.bond
-
-    def solve(place: float) -> Stresses:
-        if end.side == "left":
-            return stresses_at(end, bond, moment, strains, start=place)
-        return stresses_at(end, bond, moment, strains, stop=place)
-
-    return solve
+    return _told(f"end run out to {shown:g} mm from the left{extra}", check, best)
 
 
 def hold_down(check: EndCheck) -> tuple[float, float]:

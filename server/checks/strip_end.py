@@ -175,7 +175,7 @@ def _drawing(document: documents.StripEndDocument, body: Body, actions: Actions)
     moment = actions.moment
     curve: list[list[float]] = []
     if moment is not None:
-        x = np.linspace(0.0, body.length, 121)
+        x = np.union1d(np.linspace(0.0, body.length, 121), (document.strip.from_, document.strip.to))
         values = evaluate(moment.breaks, moment.coefficients, x)
         row = int(np.abs(values).max(axis=1).argmax())
         curve = [x.tolist(), values[row].tolist()]

@@ -52,6 +52,7 @@ class Stresses:
     strain_shear: Array
     strain_peel: Array
     course: StripCourse
+    free: StripCourse | None = None
 
 
 @dataclass
@@ -185,6 +186,7 @@ def _worst(end: End, loaded: StripCourse, free: StripCourse | None, strains: Seq
         strain_shear=strain_shear,
         strain_peel=strain_peel,
         course=loaded,
+        free=free,
     )
 
 
@@ -198,7 +200,7 @@ def claim_end(
     assert isinstance(adhesive, documents.Adhesive)
     check = EndCheck(end, bond, found, _blank(end, bonded))
     book.begin(group_of(bonded.part.name, end.at))
-    where = f" ({end.title})"
+    where, at_end = f" ({end.title})", f" at the {end.title}"
     shear: list[Strength | None] = []
     pull: list[Strength | None] = []
     pulled = bool((found.peak_peel > 0).any())
@@ -210,10 +212,10 @@ def claim_end(
         name, material = part.spec.material, part.material
         if (found.peak_shear > 0).any():
             shear.append(
-                surfaces.surface_shear(weigher, name, material, part.name, rolls=part.rolls, where=where, book=book)
+                surfaces.surface_shear(weigher, name, material, part.name, rolls=part.rolls, where=at_end, book=book)
             )
         if pulled:
-            pull.append(surfaces.surface_peel(weigher, name, material, part.name, where=where))
+            pull.append(surfaces.surface_peel(weigher, name, material, part.name, where=at_end))
     count = len(found.peak_shear)
     at, stretch = np.full(count, end.at), np.zeros(count, dtype=np.intp)
     check.claims = [Claim(s, "tau_end", found.peak_shear, at, stretch) for s in shear if s is not None]
@@ -254,7 +256,7 @@ def write_end(
     book.note(
         "Moment and shear there",
         f"Combination {name}, from the member's statics; the strip reckons with the moment that stretches it "
-        f"({forces.moment:.5g} N*mm) and the shear towards its middle ({forces.shear:.5g} N).",
+        f"({forces.moment + 0.0:.5g} N·mm) and the shear towards its middle ({forces.shear + 0.0:.5g} N).",
         source="equilibrium",
     )
     closed = strip_steps.published(bonded, check.bond, forces, book)
@@ -296,7 +298,7 @@ def write_end(
         "force_to_pick_up": abs(forces.moment) * bonded.first_moment / bonded.whole.EI,
         "limits": [weigher.write(w, group) for w in known],
         "utilisation": None if check.governing is None else check.governing.utilisation,
-        "distribution": _near(end, found, row),
+        "distribution": near(end, found.course, row),
     }
 
 
@@ -311,20 +313,21 @@ def _pair(values: tuple[float, float]) -> dict[str, float] | None:
     return {"shear": abs(values[0]), "peel": values[1]} if np.isfinite(values).all() else None
 
 
-def _near(end: End, found: Stresses, row: int) -> dict[str, list[float]]:
-    """The stresses over the transfer length next to the end, for a drawing; places from the strip's left end."""
-    at = found.course.at
+def near(end: End, course: StripCourse, row: int) -> dict[str, list[float]]:
+    """The stresses next to the end, far enough in to see them fall to the run of the member, for a drawing."""
+    at = course.at
     inward = at if end.side == "left" else at[-1] - at
-    shear = np.abs(found.course.shear[:, row])
-    high = inward[shear > 0.15 * shear.max()] if shear.max() > 0 else inward[:1]
-    reach = min(max(float(high.max(initial=0.0)) * 1.8, at[-1] / 500), at[-1] / 2)
+    shear = np.abs(course.shear[:, row])
+    half = inward <= at[-1] / 2
+    high = inward[half & (shear > 0.15 * shear[half].max())] if shear[half].max() > 0 else inward[:1]
+    reach = min(max(float(high.max(initial=0.0)) * 2.5, at[-1] / 500), at[-1] / 2)
     kept = inward <= reach
     order = np.argsort(inward[kept])
     sign = 1.0 if end.side == "left" else -1.0
     return {
         "at": inward[kept][order].tolist(),
-        "shear": (sign * found.course.shear[kept, row][order]).tolist(),
-        "peel": found.course.peel[kept, row][order].tolist(),
+        "shear": (sign * course.shear[kept, row][order]).tolist(),
+        "peel": course.peel[kept, row][order].tolist(),
     }
 
 

@@ -6,6 +6,7 @@ from collections.abc import Iterator, Mapping, Sequence
 from typing import Any
 
 from server.sheets.bond_plot import stress_plot
+from server.sheets.drafting import MINUS
 from server.sheets.one_page import Blocks, Part, figure, pairs, sub
 from server.sheets.plotting import Axis, across
 from server.sheets.svg import Drawing
@@ -31,9 +32,8 @@ def ends(result: Result, display: str) -> Iterator[Part]:
     worst = worst_of(listed)
     svg = end_svg(worst, display=display)
     if svg:
-        words = (
-            f"{_where(worst, display)}: stress along the bond from the end inwards, combination {worst['combination']}."
-        )
+        place = _where(worst, display)
+        words = f"{place[:1].upper()}{place[1:]}: stress from the end inwards, combination {worst['combination']}."
         yield figure(svg, words, 0.86)
     of = unit("MPa", display)
     columns = [
@@ -83,14 +83,14 @@ def _facts(end: End, display: str) -> list[tuple[str, str]]:
     limits = end.get("limits") or []
     if limits:
         top = max(limits, key=lambda limit: float(limit["utilisation"]))
-        rows.append(("Governs", f"{top['what']}, {stress(top['resistance'])}"))
+        rows.append(("Governs", f"{top['what']}: it resists {stress(top['resistance'])}"))
     if end.get("free_strain"):
         told = f"{stress(end['peak_shear'])} and {stress(end['peak_peel'])}"
         rows.append(("With free strain, shear and peel", f"{told} ({end['free_strain']})"))
     held = end.get("hold_down")
     if held:
-        pull = quantity(held["force"], "N", display)
-        rows.append(("End fasteners would have to hold", f"{pull} within {quantity(held['within'], 'mm', display, 3)}"))
+        pull = quantity(held["force"], "N", display, 3)
+        rows.append(("End fasteners would have to hold", f"{pull} within {quantity(held['within'], 'mm', display, 2)}"))
     return rows
 
 
@@ -120,7 +120,27 @@ def _changes(end: End, display: str) -> Iterator[Part]:
     yield table(columns, rows)
 
 
-def end_svg(end: End, *, display: str = "SI", width: float = 560.0) -> str:
+def _place(each: End, display: str) -> str:
+    name = str(each["piece"])
+    return f"{name[:1].upper()}{name[1:]}, at {quantity(each['at'], 'mm', display)}"
+
+
+def _strain(value: object) -> str:
+    """A free strain as what people measure: 0.57 mm on a metre."""
+    return f"{float(str(value)) * 1e3:.3g} mm/m".replace("-", MINUS)
+
+
+def _top(listed: Sequence[End], display: str) -> str:
+    """What stands in the way of the worst of them."""
+    worst = worst_of(listed)
+    limits = worst.get("limits") or []
+    if not limits:
+        return ""
+    top = max(limits, key=lambda limit: float(limit["utilisation"]))
+    return f" Governs: {top['what']}, which resists {quantity(top['resistance'], 'MPa', display, 3)}."
+
+
+def end_svg(end: End, *, display: str = "SI", width: float = 560.0, where: str = "") -> str:
     """Shear and peel from an end inwards; "" where the result keeps no course."""
     course = end.get("distribution") or {}
     if len(course.get("at") or ()) < 2:
@@ -136,7 +156,7 @@ def end_svg(end: End, *, display: str = "SI", width: float = 560.0) -> str:
     across(drawing, x, foot + 6, f"From the end [{size.text}]", most=7)
     drawing.height = foot + 44
     return drawing.svg(
-        "bond-end", "Stress at the end of a bond", f"Shear and peel along the bond, {_where(end, display)}."
+        "bond-end", "Stress at the end of a bond", f"Shear and peel along the bond, {where or _where(end, display)}."
     )
 
 
@@ -181,13 +201,20 @@ def movement(result: Result, display: str) -> Iterator[Part]:
             ]
         )
     yield table(columns, rows)
-    causes = dict.fromkeys(f"{each['cause']}: free strain {float(each['free_strain']):.3g}" for each in listed)
-    text = "; ".join(causes)
+    causes = dict.fromkeys(
+        f"{str(each['cause']).replace('-', MINUS)}: free strain {_strain(each['free_strain'])}" for each in listed
+    )
+    text = "; ".join(causes).replace("-", MINUS)
     yield {
         "kind": "text",
         "text": f"{text[:1].upper()}{text[1:]}. Free: movement of half the length if nothing held it. Shear and peel: "
-        "from the free strain alone, an upper estimate; the utilisation counts the loads too.",
+        f"from the free strain alone, an upper estimate; the utilisation counts the loads too.{_top(listed, display)}",
     }
+    worst = worst_of(listed)
+    svg = end_svg({**worst, "limits": ()}, display=display, where=f"movement at {worst['piece']}")
+    if svg:
+        cause = str(worst["cause"]).replace("-", MINUS)
+        yield figure(svg, f"{_place(worst, display)}: stress from the end inwards, free strain alone, {cause}.", 0.86)
     offers = [offer for each in listed for offer in each.get("what_if") or []]
     if offers:
         heads = [column("Another bond line", share=1), column(f"Shear, {of.text}", side="right")]

@@ -48,6 +48,7 @@ def stress_plot(
         if y.low <= value <= y.high:
             drawing.line("chain", x.start, y(value), x.end, y(value))
             told.append((y(value), f"{name} {of.number(value)}"))
+    told.sort()
     placed = spread([place for place, _ in told], [12.0] * len(told), top, top + PLOT, 1)
     for place, (want, words) in zip(placed, told, strict=True):
         if abs(place - want) > 2:

@@ -14,7 +14,7 @@ from server.sheets.bond_ends import blocks as end_blocks
 from server.sheets.given import Group, given
 from server.sheets.one_pages import ONE_PAGES
 from server.sheets.steps import working_groups
-from server.sheets.values import governing, in_units, utilisation, verdict
+from server.sheets.values import governing, in_units, missing, utilisation, verdict
 from server.working import typst_math
 
 Part = dict[str, Any]
@@ -175,7 +175,7 @@ def _member(sheet: SheetData, drawings: Drawings) -> Iterator[tuple[str, Iterabl
 def _common(sheet: SheetData) -> Iterator[tuple[str, Iterable[Part]]]:
     """What every kind of check ends with."""
     result, display = sheet.result, sheet.display
-    yield "What is missing", _list(in_units(str(line), display) for line in result.get("missing", ()))
+    yield "What is missing", _list(missing(result, display))
     yield "Cautions and replies", _cautions(result, sheet.replies, display)
     yield "Tested as, used as", _answers(sheet.answered, display)
     yield "Working", working(result, display)

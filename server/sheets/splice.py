@@ -7,6 +7,7 @@ from typing import Any
 
 from server.sheets.asked import Ask, AskGroup
 from server.sheets.bond_plot import curve_svg
+from server.sheets.drafting import MINUS
 from server.sheets.limits_table import limits_table
 from server.sheets.one_page import Blocks, OnePage, Part, Result, figure, pairs
 from server.sheets.splice_drawing import NAMES, splice_svg
@@ -319,10 +320,16 @@ def _overlap(result: Result, display: str) -> Iterator[Part]:
         columns += [column(f"Strength, {force.text}", side="right"), column("Gain", side="right")]
         ordered = sorted(changes, key=lambda each: -each["gain"])
         rows = [
-            [in_units(each["what"], display), force.number(each["joint_strength"]), f"{each['gain'] * 100:+.0f} %"]
+            [in_units(each["what"], display), force.number(each["joint_strength"]), _gain(each["gain"])]
             for each in ordered
         ]
         yield table(columns, rows)
+
+
+def _gain(gain: float) -> str:
+    """+17 %, −16 %, and 0 % for what rounds to it."""
+    whole = round(gain * 100)
+    return f"{whole:+d} %".replace("-", MINUS) if whole else "0 %"
 
 
 def _force(value: object, display: str) -> str:

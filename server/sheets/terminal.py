@@ -11,7 +11,7 @@ from server.sheets.bond_ends import blocks as end_blocks
 from server.sheets.composition import PRECEDENCE, STANDING_CAUTION, headline
 from server.sheets.one_pages import ONE_PAGES
 from server.sheets.steps import working_groups
-from server.sheets.values import in_units, utilisation, verdict
+from server.sheets.values import in_units, missing, utilisation, verdict
 from server.working import plain
 
 WIDTH = 80
@@ -33,7 +33,7 @@ def _lines(result: Mapping[str, Any], display: str) -> Iterator[str]:
     yield from _head(result, display)
     for title, parts in _blocks(result, display):
         yield from _block(title, parts)
-    yield from _listed("What is missing", (in_units(str(line), display) for line in result.get("missing", ())))
+    yield from _listed("What is missing", missing(result, display))
     yield from _listed("Cautions", (in_units(_caution(each), display) for each in result.get("cautions", ())))
     yield from _working(result, display)
     yield from _listed("Not checked", (str(line) for line in result.get("not_checked", ())))

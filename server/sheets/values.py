@@ -6,6 +6,7 @@ unit in which the working reckons, so that a number in a table is found again in
 
 from __future__ import annotations
 
+import math
 import re
 from collections.abc import Mapping
 from dataclasses import dataclass
@@ -89,7 +90,7 @@ def governing(result: Mapping[str, Any], display: str) -> str:
     if display != "US":
         return line[:1].upper() + line[1:]
     found = _governing_limit(result)
-    if found is None:
+    if found is None:  # what else may govern, such as the end of a bond, says itself in words
         return in_units(line[:1].upper() + line[1:], display)
     what, limit = found
     place = quantity(limit.get("at"), "mm", display)
@@ -111,9 +112,25 @@ def _governing_limit(result: Mapping[str, Any]) -> tuple[str, Mapping[str, Any]]
         for each in result.get("deflection_limits", ())
     ]
     known = [(what, limit) for what, limit in limits if isinstance(limit.get("utilisation"), int | float)]
-    return max(
+    worst = max(
         known, key=lambda each: float(f"{float(each[1]['utilisation']):.9g}"), default=None
     )  # of equals the first
+    used = result.get("utilisation")
+    if worst is None or not isinstance(used, int | float):
+        return worst
+    return worst if math.isclose(float(worst[1]["utilisation"]), used, rel_tol=1e-9) else None
+
+
+def missing(result: Mapping[str, Any], display: str) -> tuple[str, ...]:
+    """What is missing, with lines that miss the same at several places on one: 'shear of X (here; there): test it'."""
+    places: dict[tuple[str, str], list[str]] = {}
+    for line in result.get("missing", ()):
+        text = in_units(str(line), display)
+        match = re.fullmatch(r"([^()]+) \(([^()]+)\): (.+)", text)
+        key, place = ((match[1], match[3]), match[2]) if match else ((text, ""), "")
+        places.setdefault(key, []).append(place)
+    said_once = (f"{what} ({'; '.join(found)}): {step}" if step else what for (what, step), found in places.items())
+    return tuple(line[:1].upper() + line[1:] for line in said_once)
 
 
 def said(limit: Mapping[str, Any]) -> str:

@@ -5,7 +5,6 @@ Nothing is reckoned here; numbers are written by the same functions that write t
 
 from __future__ import annotations
 
-import re
 from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass
 from typing import Any
@@ -181,7 +180,7 @@ def _of_every_kind(result: Result, display: str, template: str) -> dict[str, Any
         "verdict": str(result["verdict"]),
         "utilisation": written.utilisation(result.get("utilisation")),
         "governing": sheets.headline(result, display),
-        "missing": _together(written.in_units(str(line), display) for line in result["missing"]),
+        "missing": written.missing(result, display),
         "cautions": tuple(_cautions(result, display)),
         "not_checked": tuple(result["not_checked"]),
     }
@@ -341,17 +340,6 @@ def _weakest(limits: Sequence[Mapping[str, Any]]) -> str:
 def _over(part: Mapping[str, Any]) -> bool:
     used = part.get("utilisation")
     return isinstance(used, int | float) and exceeds(used)
-
-
-def _together(lines: Iterable[str]) -> tuple[str, ...]:
-    """Put lines that miss the same thing at several places on one: 'shear of X (at joint 1; at joint 2): test it'."""
-    places: dict[tuple[str, str], list[str]] = {}
-    for line in lines:
-        match = re.fullmatch(r"([^()]+) \(([^()]+)\): (.+)", line)
-        key, place = ((match[1], match[3]), match[2]) if match else ((line, ""), "")
-        places.setdefault(key, []).append(place)
-    said = (f"{what} ({'; '.join(found)}): {step}" if step else what for (what, step), found in places.items())
-    return tuple(line[:1].upper() + line[1:] for line in said)
 
 
 def _extremes(member: Mapping[str, Any], display: str) -> Iterable[tuple[str, str]]:

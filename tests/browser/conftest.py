@@ -56,8 +56,9 @@ def approve(settings: Settings, address: str) -> Callable[[str], None]:
     return act
 
 
-@pytest.fixture(scope="module")
+@pytest.fixture(scope="session")
 def demo_address(tmp_path_factory: pytest.TempPathFactory) -> Iterator[str]:
+    """The demo shop, filled once for all tests: they look, and save nothing in it."""
     settings = Settings(data=tmp_path_factory.mktemp("demo"))
     book = engine(settings.records)
     migrate(book)

@@ -280,3 +280,11 @@ def test_a_stack_of_the_same_material_still_ends():
     assert result["ends"][0]["end_shear"] > 5 * result["ends"][0]["mean_shear_at_end"]
     assert math.isfinite(result["utilisation"])
     assert np.isfinite(result["ends"][0]["distribution"]["shear"]).all()
+
+
+def test_where_no_one_change_is_enough_two_together_are_offered_and_hold_as_told():
+    made = changed(LINTEL, materials__timber__strengths={"bending": 40, "shear": 4, "tension_across": 2.0})
+    offered = next(c for c in run(made)["ends"][0]["changes"] if "mm from the left, tapered" in c["what"])
+    assert offered["utilisation"] <= 1
+    alone = [c["utilisation"] for c in run(made)["ends"][0]["changes"] if c is not offered and c != offered]
+    assert min(alone) > 1

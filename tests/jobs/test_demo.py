@@ -65,3 +65,20 @@ def test_the_hindrances_of_the_box_beam_are_few_and_can_be_answered(shop: Sessio
     held = jobs.hindrances(shop, saved(shop, "B1").id)
     assert all(each.answerable for each in held)
     assert [each.about for each in held if each.kind == "difference"] == ["temperature"]
+
+
+def test_the_lintel_fails_at_its_strips_end_against_the_shops_own_pull_off_tests(shop: Session) -> None:
+    lintel = saved(shop, "L7")
+    (joint,) = lintel.result["joints"]
+    assert joint["utilisation"] == pytest.approx(0.55, abs=0.005)
+    assert lintel.result["verdict"] == "fail"
+    assert "start of strip" in lintel.result["governing"].lower()
+    used = lintel.values_used["adhesives"]["E7"]
+    assert used["peel_strength"] == pytest.approx(1.565, abs=0.001)  # 8 coupons, log-normal, EN 14358
+    assert used["shear_strength"] == pytest.approx(3.47, abs=0.005)  # 10 coupons, the one with rust bloom kept
+    assert used["lineage"]["peel_strength"]["coupon_set"] == "T-007"
+
+
+def test_the_gangways_cold_night_is_lived_through_by_the_rubbery_adhesive_alone(shop: Session) -> None:
+    verdicts = {mark: saved(shop, mark).result["verdict"] for mark in ("G1-E", "G1-M", "G1-P")}
+    assert verdicts == {"G1-E": "fail", "G1-M": "fail", "G1-P": "pass"}

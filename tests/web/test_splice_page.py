@@ -142,34 +142,3 @@ def test_a_preview_costs_its_own_calculation_and_little_more(client, job):
     own = median(lambda: checks.run(document, working=False))
     waiting = median(lambda: client.post(f"{job}/checks/splice/preview", data=values | {"overlap": ""}))
     assert preview < 1.5 * (own + 6 * waiting)  # half as much again for a machine that others use too
-
-
-@pytest.mark.browser
-def test_in_a_browser_the_answer_follows_typing(browser, tmp_path):
-    from server.settings import Settings
-    from tests.browser.conftest import running
-
-    serving = running(Settings(data=tmp_path))
-    address = next(serving)
-    context = browser.new_context(viewport={"width": 1280, "height": 900}, base_url=address)
-    page = context.new_page()
-    wrong: list[str] = []
-    page.on("console", lambda message: wrong.append(message.text) if message.type == "error" else None)
-    page.goto("/jobs")
-    made = page.request.post(
-        "/jobs",
-        form={"title": "Gate", "number": "J-9", "paper": "A4", "display": "SI"},
-        headers={"Origin": address},
-        max_redirects=0,
-    )
-    page.goto(made.headers["location"] + "/checks/splice/new")
-    assert page.locator("svg.splice.single-lap").count() == 1
-    page.locator('[name="layout"]').select_option("double-lap")
-    page.locator("svg.splice.double-lap").wait_for(timeout=8000)
-    page.locator('[name="load.axial"]').fill("50")
-    page.get_by_text("Fail", exact=True).first.wait_for(timeout=8000)
-    page.set_viewport_size({"width": 800, "height": 900})
-    assert page.evaluate("document.documentElement.scrollWidth") <= 800
-    assert not wrong
-    context.close()
-    serving.close()

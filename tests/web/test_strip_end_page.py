@@ -116,3 +116,29 @@ def test_a_members_page_shows_its_ends():
     assert [title for title, _ in found.blocks] == ["Ends of bonded pieces"]
     plain = panel(checks.run(documents.read(gangway("epoxy")), working=False), "US")
     assert [title for title, _ in plain.blocks] == ["Movement of unlike materials"]
+
+
+def test_an_end_that_governs_is_named_in_both_units():
+    from server.sheets.values import governing
+
+    result = checks.run(documents.read(LINTEL), working=False)
+    assert governing(result, "SI").startswith("Start of strip, 250 mm")
+    assert governing(result, "US").startswith("Start of strip, 9.843")
+
+
+def test_the_drawn_stress_ends_where_it_has_fallen_to_the_members_own():
+    """The other end of the strip peaks as high: it must not stretch the drawing over half the member."""
+    end = checks.run(documents.read(LINTEL), working=False)["ends"][0]
+    course = end["distribution"]
+    assert 50 < course["at"][-1] < 300
+    assert abs(course["shear"][-1]) < 1.3 * end["mean_shear_at_end"]
+
+
+def test_what_is_missing_at_both_ends_is_said_once():
+    from server.sheets.values import missing
+    from tests.checks.strips import changed
+
+    result = checks.run(documents.read(changed(PLATE, materials__beam__strengths={"shear": 6})), working=False)
+    (line,) = [each for each in missing(result, "SI") if "ension_across" in each]
+    assert "surface of beam at the start of strip" in line
+    assert "surface of beam at the end of strip" in line
