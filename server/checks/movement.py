@@ -27,6 +27,7 @@ SHEAR_LAG = "shear lag of two bars (W. T. Chen and C. W. Nelson, IBM J. Res. Dev
 RATE = "sqrt(G*b/t_a*(1/EA_1 + 1/EA_2))"
 END_SHEAR = "G*abs(Delta_epsilon)/(lamda*t_a)*tanh(lamda*l/2)"
 END_SLIP = "tau*t_a/G"
+SHEARED = "linear elastic bond in shear"
 LEAST = 1e-9  # strain below which nothing moves
 
 
@@ -179,6 +180,7 @@ def at_end(check: EndCheck, strains: Sequence[Strain], book: Working) -> Moves:
     slip = book.step(
         "Slip of the bond at the end", "s_end", END_SLIP,
         {"tau": (shear, "MPa"), "t_a": (bond.thickness, "mm"), "G": (bond.shear_modulus, "MPa")}, "mm",
+        SHEARED,
     )  # fmt: skip
     return Moves(
         {
@@ -270,7 +272,7 @@ def lag(
         "End shear from the free strain", "tau_epsilon", END_SHEAR,
         {**line, "Delta_epsilon": (strain.value, ""), "lamda": (rate, "1/mm"), "l": (length, "mm")}, "MPa", SHEAR_LAG,
     )  # fmt: skip
-    slip = book.step("Slip of the bond at the end", "s_end", END_SLIP, {"tau": (shear, "MPa"), **line}, "mm")
+    slip = book.step("Slip of the bond at the end", "s_end", END_SLIP, {"tau": (shear, "MPa"), **line}, "mm", SHEARED)
     return Moves(
         {
             "piece": part.name,
