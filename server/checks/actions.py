@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Sequence
+from collections.abc import Callable, Iterable, Sequence
 from dataclasses import dataclass, replace
 from functools import cached_property
 
@@ -14,7 +14,7 @@ from server.checks import moving, sideways
 from server.checks.crosssection import Body, both_ways
 from server.errors import DocumentError, Fault, InputError
 from server.mechanics import beam as mechanics
-from server.mechanics.beam import Beam, Couple, LineLoad, PointLoad, Response, solve
+from server.mechanics.beam import Beam, Couple, LineLoad, PointLoad, Response, solve_alike
 from server.mechanics.piecewise import Candidates, Extremes, candidates, evaluate, extremes
 
 GRAVITY = 9.80665  # m/s2, standard (ISO 80000-3)
@@ -30,10 +30,16 @@ class Curve:
     names: tuple[str, ...]
     asked: list[tuple[float, float]] | None = None
     """Where axles move: collects the parts of the member that were asked for and not foreseen."""
+    known: Callable[[], Candidates] | None = None
+    """Gives the turning points where they are found together with those of other curves."""
 
     @cached_property
     def _candidates(self) -> Candidates:
-        return candidates(self.breaks, self.coefficients)
+        return candidates(self.breaks, self.coefficients) if self.known is None else self.known()
+
+    @cached_property
+    def _found(self) -> dict[tuple[float, float], Extremes]:
+        return {}
 
     @cached_property
     def _index(self) -> dict[float, int]:
@@ -41,9 +47,15 @@ class Curve:
 
     def over(self, start: float, end: float) -> Extremes:
         """Extremes of every row between two places, inside them on both sides of every jump."""
-        first, last = self._index.get(start), self._index.get(end)
         if self.asked is not None and (start, end) not in self.asked:
             self.asked.append((start, end))
+        found = self._found.get((start, end))
+        if found is None:
+            found = self._found[start, end] = self._over(start, end)
+        return found
+
+    def _over(self, start: float, end: float) -> Extremes:
+        first, last = self._index.get(start), self._index.get(end)
         if first is None or last is None:
             return extremes(self.breaks, self.coefficients, start, end)
         return self._candidates.over(first, last)
@@ -61,7 +73,26 @@ class Curve:
 
     @cached_property
     def whole(self) -> Extremes:
-        return self._candidates.over()
+        return self._found.setdefault((float(self.breaks[0]), float(self.breaks[-1])), self._candidates.over())
+
+
+class _Together:
+    """Curves whose turning points are found at once, when those of the first are asked for."""
+
+    def __init__(self, breaks: NDArray[np.float64], curves: Sequence[NDArray[np.float64]]) -> None:
+        self.breaks, self.curves = breaks, curves
+
+    @cached_property
+    def _candidates(self) -> Candidates:
+        rows, pieces, _ = self.curves[0].shape
+        padded = np.zeros((len(self.curves), rows, pieces, max(curve.shape[-1] for curve in self.curves)))
+        for place, curve in enumerate(self.curves):
+            padded[place, ..., : curve.shape[-1]] = curve
+        return candidates(self.breaks, padded)
+
+    def of(self, place: int, rows: list[int]) -> Candidates:
+        found = self._candidates
+        return Candidates(found.values[place][rows], found.at[place][rows])
 
 
 @dataclass(frozen=True, eq=False)
@@ -79,8 +110,9 @@ class Actions:
 
     ``shear`` and ``moment`` are None where no combination is for strength, ``sag`` and ``long_term`` where none is
     for deflection; ``long_term`` also where no material creeps. ``sustained`` shares of each case that stay;
-    ``slips`` whether the joints' slip is in all of it. With ``moving`` axles a combination has several rows, one for
-    each position of the axles that governs something.
+    ``each_case`` what every case does by itself with joints that do not slip; ``slips`` whether the joints' slip is in
+    all the rest. With ``moving`` axles a combination has several rows, one for each position of the axles that governs
+    something.
     """
 
     names: tuple[str, ...]
@@ -97,6 +129,7 @@ class Actions:
     long_term: Curve | None
     shear_deformation: bool
     sustained: NDArray[np.float64]
+    each_case: Response
     slips: bool = False
     moving: Moving | None = None
     across: Actions | None = None
@@ -109,6 +142,14 @@ class Actions:
     @cached_property
     def strength_names(self) -> tuple[str, ...]:
         return tuple(self.names[k] for k in self.strength)
+
+    @cached_property
+    def staying_shear(self) -> Curve | None:
+        """The shear of what stays under every combination for strength, before the combination's own factors."""
+        if self.shear is None:
+            return None
+        shares, shear = self.sustained[list(self.strength)], self.each_case.shear
+        return Curve(self.each_case.breaks, np.tensordot(shares, shear, 1), self.strength_names)
 
     @cached_property
     def labels(self) -> tuple[str, ...]:
@@ -147,8 +188,10 @@ def act(document: documents.MemberDocument, body: Body, wants: moving.Wants | No
         return _act_both_ways(document, body)
     deform = document.analysis.shear_deformation and all(s.section.shear_stiffness is not None for s in body.stretches)
     rows = _rows(document, body, deform, wants or moving.Wants())
-    solved = _solve(_beam(document, body, deform), rows.loads)
-    long_term = _long_term(document, body, deform, rows.loads, solved, rows.factors, rows.shares)
+    creeps = any(part.material.creep is not None for part in body.parts)
+    beams = [_beam(document, body, deform), *([_beam(document, body, deform, creep=True)] if creeps else [])]
+    solved, *softened = _solve(beams, rows.loads)
+    long_term = _long_term(solved, softened[0], rows.factors, rows.shares) if softened else None
     return _actions(document, rows, solved, long_term, deform)
 
 
@@ -166,7 +209,7 @@ def _act_both_ways(document: documents.MemberDocument, body: Body) -> Actions:
     if any(part.material.creep is not None for part in body.parts):
         soft = sideways.solve_both(beam, body, rows.loads, across.loads, deform=deform, creep=True)
     down, right = (
-        _actions(document, of, hard, None if late is None else _lasting(hard, late, of.factors, of.shares), deform)
+        _actions(document, of, hard, None if late is None else _long_term(hard, late, of.factors, of.shares), deform)
         for of, hard, late in zip((rows, across), solved, soft, strict=True)
     )
     return replace(down, across=right)
@@ -186,15 +229,15 @@ def _actions(
     strength = tuple(k for k, kind in enumerate(kinds) if kind in ("both", "strength"))
     deflection = tuple(k for k, kind in enumerate(kinds) if kind in ("both", "deflection"))
 
-    def curve(
-        coefficients: NDArray[np.float64] | None,
-        chosen: tuple[int, ...],
-        asked: list[tuple[float, float]] | None = None,
-    ) -> Curve | None:
-        if coefficients is None or not chosen:
+    curves = [combined.shear, combined.moment, combined.deflection, *([] if long_term is None else [long_term])]
+    together = _Together(combined.breaks, curves)
+
+    def curve(place: int, chosen: tuple[int, ...], asked: list[tuple[float, float]] | None = None) -> Curve | None:
+        if place >= len(curves) or not chosen:
             return None
-        picked = coefficients if len(chosen) == len(names) else coefficients[list(chosen)]
-        return Curve(combined.breaks, picked, tuple(names[k] for k in chosen), asked)
+        rows = list(chosen)
+        picked = tuple(names[k] for k in chosen)
+        return Curve(combined.breaks, curves[place][rows], picked, asked, lambda: together.of(place, rows))
 
     return Actions(
         names=names,
@@ -205,12 +248,13 @@ def _actions(
         cases=tuple(document.loads),
         case_loads=rows.loads,
         response=combined,
-        shear=curve(combined.shear, strength, None if rows.moving is None else []),
-        moment=curve(combined.moment, strength),
-        sag=curve(combined.deflection, deflection),
-        long_term=curve(long_term, deflection),
+        shear=curve(0, strength, None if rows.moving is None else []),
+        moment=curve(1, strength),
+        sag=curve(2, deflection),
+        long_term=curve(3, deflection),
         shear_deformation=deform,
         sustained=rows.shares,
+        each_case=solved,
         moving=rows.moving,
     )
 
@@ -229,13 +273,14 @@ def _rows(document: documents.MemberDocument, body: Body, deform: bool, wants: m
     beam = _beam(document, body, deform)
     creeps = any(part.material.creep is not None for part in body.parts)
     soft = _beam(document, body, deform, creep=True) if creeps else None
+    still, *still_soft = _solve([beam] if soft is None else [beam, soft], loads)
     stretches = tuple((s.start, s.end) for s in body.stretches)
     question = moving.Question(
         movers=movers,
         beam=beam,
         soft=soft,
-        still=_solve(beam, loads),
-        still_soft=None if soft is None else _solve(soft, loads),
+        still=still,
+        still_soft=still_soft[0] if still_soft else None,
         factors=factors,
         shares=shares,
         strength=tuple(c.for_ in ("both", "strength") for c in combinations),
@@ -251,9 +296,9 @@ def _rows(document: documents.MemberDocument, body: Body, deform: bool, wants: m
     return _Rows(written.combination, written.factors, written.shares, written.loads, whole)
 
 
-def _solve(beam: Beam, loads: Sequence[Sequence[mechanics.Load]]) -> Response:
+def _solve(beams: Sequence[Beam], loads: Sequence[Sequence[mechanics.Load]]) -> list[Response]:
     try:
-        return solve(beam, loads)
+        return solve_alike(beams, loads)
     except InputError as error:
         raise DocumentError([Fault(f"member.{error.field}", str(error))]) from error
 
@@ -295,27 +340,13 @@ def _self_weight(body: Body) -> Iterable[LineLoad]:
 
 
 def _long_term(
-    document: documents.MemberDocument,
-    body: Body,
-    deform: bool,
-    loads: Sequence[Sequence[mechanics.Load]],
-    solved: Response,
-    factors: NDArray[np.float64],
-    shares: NDArray[np.float64],
-) -> NDArray[np.float64] | None:
+    solved: Response, soft: Response, factors: NDArray[np.float64], shares: NDArray[np.float64]
+) -> NDArray[np.float64]:
     """Deflection with the sustained part on the softened member (EN 1995-1-1:2004 2.2.3).
 
     The sustained share is taken of the case itself, before the combination's factor, so the rest is
     factor minus share.
     """
-    if all(part.material.creep is None for part in body.parts):
-        return None
-    return _lasting(solved, _solve(_beam(document, body, deform, creep=True), loads), factors, shares)
-
-
-def _lasting(
-    solved: Response, soft: Response, factors: NDArray[np.float64], shares: NDArray[np.float64]
-) -> NDArray[np.float64]:
     short_part = np.tensordot(factors - shares, solved.deflection, 1)
     return np.asarray(short_part + np.tensordot(shares, soft.deflection, 1))
 

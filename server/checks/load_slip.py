@@ -131,12 +131,16 @@ def _slips(each: Specimen, reference: float) -> tuple[float, float]:
     return found[0], found[1]
 
 
+READABLE = 1e-6
+"""Slip [mm] that no gauge tells from nothing; a modulus over less would be noise."""
+
+
 def _moduli(tests: Iterable[Tested], share: int, book: Working) -> list[float | None]:
     """Slip modulus of every test, of one fastener and plane; None where its slips are not known or do not grow."""
     book.begin("Slip modulus of each test")
     found: list[float | None] = []
     for each in tests:
-        if not each.v04 > each.v01:
+        if not each.v04 - each.v01 > READABLE:
             found.append(None)
             continue
         writer = book if len(found) < WRITTEN_OUT else Working(record=False)

@@ -111,7 +111,7 @@ def _round(
     add_schedules(document, body, rigid, joints, flows, book)
     sags = check_deflection(document, body, actions, book, findings, upper_stiffness=upper)
     ends = check_ends(document, body, actions, judge, book, findings, after=_shared(document, body, findings))
-    lasting = check_lasting(document, body, actions, joints, book, findings, ends)
+    lasting = check_lasting(document, actions, joints, book, findings, ends)
     add_cautions(document, body, actions, joints, findings)
     moving_rounds.caution(actions, findings)
     slides = [each for each in (sliding, None if flows.gone is None else flows.gone.slide) if each is not None]

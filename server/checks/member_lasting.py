@@ -7,6 +7,7 @@ of its resistance it bears for so many cycles (``fatigue``), and for ever (``cre
 from __future__ import annotations
 
 from collections.abc import Sequence
+from dataclasses import dataclass
 from typing import Literal
 
 import numpy as np
@@ -14,8 +15,7 @@ from numpy.typing import NDArray
 
 from server import documents
 from server.checks import lasting
-from server.checks.actions import Actions, Curve, act
-from server.checks.crosssection import Body
+from server.checks.actions import Actions, Curve
 from server.checks.joints import JointCheck
 from server.checks.member_ends import Governs, MemberEnds
 from server.checks.resistance import Claim, Findings
@@ -23,12 +23,26 @@ from server.checks.strip_ends import resistances
 from server.mechanics.piecewise import evaluate
 from server.working import Working
 
-Array = NDArray[np.float64]
+SIDES: tuple[Literal["left", "right"], ...] = ("left", "right")
+
+
+@dataclass(frozen=True)
+class _Bond:
+    """A glued joint where one combination uses its adhesive most: what part of its resistance, and at what place.
+
+    ``share`` is the shear that stays over the shear that governs there.
+    """
+
+    joint: JointCheck
+    name: str
+    adhesive: documents.Adhesive
+    used: float
+    at: float
+    share: float
 
 
 def check_lasting(
     document: documents.MemberDocument,
-    body: Body,
     actions: Actions,
     joints: Sequence[JointCheck],
     book: Working,
@@ -37,84 +51,73 @@ def check_lasting(
 ) -> list[dict[str, object]]:
     """Every bond under every combination that says how its load repeats or stays; what governs goes to ``found``."""
     told: list[dict[str, object]] = []
-    lasting_actions: Actions | None = None
     for name, combination in document.combinations.items():
         if combination.for_ == "deflection" or not (combination.fatigue or any(combination.sustained.values())):
             continue
-        rows = [i for i, k in enumerate(actions.strength) if actions.names[k] == name]
-        if any(combination.sustained.values()) and lasting_actions is None:
-            lasting_actions = act(_lasting_document(document), body)
-        for joint in joints:
-            told += _joint(document, name, combination, rows, (actions, lasting_actions), joint, book, findings, found)
+        for bond in _bonds(document, name, actions, joints):
+            told += _judge(combination, bond, f"joint {bond.joint.site.id}, combination {name}", book, findings, found)
     return told
 
 
-def _joint(
-    document: documents.MemberDocument,
-    name: str,
-    combination: documents.Combination,
-    rows: Sequence[int],
-    acting: tuple[Actions, Actions | None],
-    joint: JointCheck,
-    book: Working,
-    findings: Findings,
-    found: MemberEnds,
-) -> list[dict[str, object]]:
+def _bonds(
+    document: documents.MemberDocument, name: str, actions: Actions, joints: Sequence[JointCheck]
+) -> list[_Bond]:
+    """The bonds that a combination uses; one with moving axles has several rows, of which the hardest counts."""
+    rows = [i for i, k in enumerate(actions.strength) if actions.names[k] == name]
+    claimed = [(joint, claim) for joint in joints if (claim := _own_claim(joint)) is not None]
+    if not rows or not claimed or actions.shear is None or actions.staying_shear is None:
+        return []
+    claims = [claim for _, claim in claimed]
+    used = (np.array([claim.demand for claim in claims]) / resistances(claims))[:, rows]
+    known = ~np.isnan(used).all(axis=1)
+    hardest = np.where(np.isnan(used), -1.0, used).argmax(axis=1)
+    row = np.array(rows)[hardest]
+    joint = np.arange(len(claims))
+    at = np.array([claim.at for claim in claims])[joint, row]
+    whole = _shear(actions.shear, at)[row, joint]
+    stays = _shear(actions.staying_shear, at)[rows].max(axis=0)
+    share = np.divide(stays, whole, out=np.zeros_like(stays), where=whole > 0)
+    found = []
+    for i in np.flatnonzero(known).tolist():
+        owner = claims[i].strength.owner
+        adhesive = document.adhesives[owner]
+        assert isinstance(adhesive, documents.Adhesive)
+        most = float(used[i, hardest[i]])
+        found.append(_Bond(claimed[i][0], owner, adhesive, most, float(at[i]), float(share[i])))
+    return found
+
+
+def _own_claim(joint: JointCheck) -> Claim | None:
+    """What is asked of a joint's adhesive, not of the surfaces beside it."""
     bond = joint.site.spec.adhesive
-    own = next((c for c in joint.claims if bond is not None and c.strength.owner == bond and c.symbol == "tau"), None)
-    if bond is None or own is None or not rows:
-        return []
-    adhesive = document.adhesives[bond]
-    assert isinstance(adhesive, documents.Adhesive)
-    used = (own.demand / resistances([own])[0])[list(rows)]
-    if np.isnan(used).all():
-        return []
-    where = f"joint {joint.site.id}, combination {name}"
-    row = rows[int(np.nanargmax(used))]
-    whole, at = float(np.nanmax(used)), float(own.at[row])
-    each = [lasting.repeated(combination.fatigue, adhesive, bond, lambda part: part * whole, book, findings, where)]
-    actions, stays = acting
-    share = 0.0 if stays is None else _stays(actions, stays, name, own, row)
+    return next((c for c in joint.claims if bond is not None and c.strength.owner == bond and c.symbol == "tau"), None)
+
+
+def _judge(
+    combination: documents.Combination, bond: _Bond, where: str, book: Working, findings: Findings, found: MemberEnds
+) -> list[dict[str, object]]:
+    def use(part: float) -> float:
+        return part * bond.used
+
+    adhesive, name, share = bond.adhesive, bond.name, bond.share
+    each = [lasting.repeated(combination.fatigue, adhesive, name, use, book, findings, where)]
     if share > 0 and adhesive.creep_limit is not None:
-        each.append(lasting.sustained(share, adhesive, bond, lambda part: part * whole, book, findings, where))
+        each.append(lasting.sustained(share, adhesive, name, use, book, findings, where))
     elif share > 0:
         findings.caution(
             "creep",
-            f"{joint.site.id}: {share * 100:.3g} % of the governing load stays, and adhesive {bond!r} has no "
+            f"{bond.joint.site.id}: {share * 100:.3g} % of the governing load stays, and adhesive {name!r} has no "
             "creep_limit: what it bears for ever was not judged. PVA, hot-melt and rubbery adhesives creep; have "
             "sustained-load tests made.",
             answer=True,
         )
     kept = [one for one in each if one is not None]
-    found.governs += [Governs(one.utilisation, f"{one.line}, {where}", at) for one in kept]
+    found.governs += [Governs(one.utilisation, f"{one.line}, {where}", bond.at) for one in kept]
     return [one.result for one in kept]
 
 
-def _lasting_document(document: documents.MemberDocument) -> documents.MemberDocument:
-    """The document with only what stays of every case, before the combination's own factor."""
-    first = next(iter(document.loads))
-    kept = {
-        name: c.model_copy(update={"factors": dict(c.sustained) or {first: 0.0}})
-        for name, c in document.combinations.items()
-    }
-    return document.model_copy(update={"combinations": kept})
-
-
-def _stays(actions: Actions, lasting_actions: Actions, name: str, own: Claim, row: int) -> float:
-    """The shear that stays over the governing shear, where the joint is used hardest."""
-    if actions.shear is None or lasting_actions.shear is None:
-        return 0.0
-    at = float(own.at[row])
-    whole = _shear(actions.shear, row, at)
-    rows = [i for i, k in enumerate(lasting_actions.strength) if lasting_actions.names[k] == name]
-    stays = max((_shear(lasting_actions.shear, i, at) for i in rows), default=0.0)
-    return stays / whole if whole > 0 else 0.0
-
-
-def _shear(curve: Curve, row: int, at: float) -> float:
-    """The larger shear on both sides of a place [N]."""
-    sides: tuple[Literal["left", "right"], ...] = ("left", "right")
-    x = np.array([min(max(at, float(curve.breaks[0])), float(curve.breaks[-1]))])
-    return max(
-        abs(float(evaluate(curve.breaks, curve.coefficients[row : row + 1], x, side=side)[0, 0])) for side in sides
-    )
+def _shear(curve: Curve, at: NDArray[np.float64]) -> NDArray[np.float64]:
+    """The larger shear on both sides of some places, a row a combination [N]."""
+    places = np.clip(at, curve.breaks[0], curve.breaks[-1])
+    sides = [np.abs(evaluate(curve.breaks, curve.coefficients, places, side)) for side in SIDES]
+    return np.maximum(*sides)

@@ -15,9 +15,16 @@ class Places:
     def __init__(self, document: documents.MemberDocument) -> None:
         self.length = document.member.length
         self._known = list(_stations(document))
+        self._told: dict[float, str] = {}
 
     def at(self, place: float) -> str:
         """What stands there, in words; empty in between."""
+        told = self._told.get(place)
+        if told is None:
+            told = self._told[place] = self._find(place)
+        return told
+
+    def _find(self, place: float) -> str:
         slack = SAME * self.length
         found = dict.fromkeys(words for x, words in self._known if abs(x - place) <= slack)
         return " and ".join(found)

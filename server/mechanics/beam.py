@@ -15,7 +15,7 @@ import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
 from server.errors import InputError
-from server.mechanics.beam_loads import Grid, lay_out
+from server.mechanics.beam_loads import Grid, lay_out, restiffened
 from server.mechanics.beam_model import Beam, Couple, LineLoad, Load, PointLoad, Stretch, Support, span_ends
 from server.mechanics.beam_stability import require_stable
 from server.mechanics.beam_system import FIXED, Sweep, assemble, solve_system, sweep
@@ -37,6 +37,7 @@ __all__ = [
     "extremes",
     "restrict",
     "solve",
+    "solve_alike",
     "span_ends",
 ]
 
@@ -159,10 +160,42 @@ def solve(beam: Beam, cases: Sequence[Sequence[Load]]) -> Response:
     (10000000, 2000)
     """
     require_stable(beam)
-    grid = lay_out(beam, cases)
+    return _solved(lay_out(beam, cases))
+
+
+def solve_alike(beams: Sequence[Beam], cases: Sequence[Sequence[Load]]) -> list[Response]:
+    """Solve members that differ in the stiffness of their stretches only; they are cut and loaded once.
+
+    Parameters
+    ----------
+    beams : sequence of Beam
+        The same member with each set of stiffnesses [mm, N*mm2, N, N/mm].
+    cases : sequence of sequence of Load
+        Loads of each case [N, N/mm, N*mm, mm].
+
+    Returns
+    -------
+    list of Response
+        One a member, as `solve` gives it.
+
+    Raises
+    ------
+    InputError
+        As `solve` does.
+
+    References
+    ----------
+    .. [1] S. P. Timoshenko, "Strength of Materials", part I, 3rd ed. (1955), chapters 5 to 8.
+    """
+    require_stable(beams[0])
+    grid = lay_out(beams[0], cases)
+    return [_solved(grid), *(_solved(restiffened(grid, beam) or lay_out(beam, cases)) for beam in beams[1:])]
+
+
+def _solved(grid: Grid) -> Response:
     swept = sweep(grid)
     A, rhs, scale = assemble(grid, swept)
-    states = solve_system(A, rhs).reshape(len(grid.key), 4, len(cases)) * scale[:, None]
+    states = solve_system(A, rhs).reshape(len(grid.key), 4, grid.load.shape[1]) * scale[:, None]
     return _curves(grid, swept, states)
 
 

@@ -7,7 +7,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from itertools import pairwise
 
 import numpy as np
@@ -45,6 +45,8 @@ class Grid:
         Number of the key place of each support, in the member's order [-].
     first, stop : list of int
         Intervals from one key place to the next [-].
+    bounds : list of int
+        Breaks where the member's stretches start, and the last break [-].
     """
 
     breaks: Array
@@ -60,6 +62,7 @@ class Grid:
     support: Indices
     first: list[int]
     stop: list[int]
+    bounds: list[int]
 
 
 @dataclass(frozen=True)
@@ -163,11 +166,7 @@ def lay_out(beam: Beam, cases: Sequence[Sequence[Load]]) -> Grid:
         _check_loads(beam, cases)
     m = len(breaks) - 1
     bounds = [*(number[stretch.start] for stretch in beam.stretches), m]
-    flexibility = np.repeat(
-        np.array([[1 / s.EI for s in beam.stretches], [1 / s.GA for s in beam.stretches]]),
-        [right - left for left, right in pairwise(bounds)],
-        axis=1,
-    )
+    flexibility = _flexibility(beam, bounds)
     force, couple = np.zeros((2, len(cases), m + 1))
     for target, rows in ((force, loads.points), (couple, loads.couples)):
         for case, at, value in rows:
@@ -190,6 +189,42 @@ def lay_out(beam: Beam, cases: Sequence[Sequence[Load]]) -> Grid:
         support=np.array([position[at] for at in supports]),
         first=key[:-1],
         stop=key[1:],
+        bounds=bounds,
+    )
+
+
+def restiffened(grid: Grid, beam: Beam) -> Grid | None:
+    """The grid of a member that differs from the one laid out in the stiffness of its stretches only.
+
+    Parameters
+    ----------
+    grid : Grid
+        The member laid out, with its loads.
+    beam : Beam
+        The same member with other stiffnesses [N*mm2, N].
+
+    Returns
+    -------
+    Grid or None
+        The same cuts and loads with the other flexibilities; None where the stiffness jumps so much that the state
+        there needs an unknown of its own, and the member must be laid out anew.
+
+    References
+    ----------
+    .. [1] None needed: bookkeeping.
+    """
+    if not set(_steep_changes(beam, grid.bounds)) <= set(grid.key.tolist()):
+        return None
+    bending, shear = _flexibility(beam, grid.bounds)
+    return replace(grid, bending=bending, shear=shear)
+
+
+def _flexibility(beam: Beam, bounds: list[int]) -> Array:
+    """Return 1/EI and 1/GA of every interval, (2, m)."""
+    return np.repeat(
+        np.array([[1 / s.EI for s in beam.stretches], [1 / s.GA for s in beam.stretches]]),
+        [right - left for left, right in pairwise(bounds)],
+        axis=1,
     )
 
 

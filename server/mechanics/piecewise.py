@@ -8,7 +8,7 @@ the member. Positions in mm; values in whatever unit the curve has (N, N*mm, mm)
 from __future__ import annotations
 
 from dataclasses import dataclass
-from functools import lru_cache
+from functools import cached_property, lru_cache
 from math import comb
 from typing import Literal
 
@@ -44,6 +44,10 @@ class Extremes:
 
     def absolute(self) -> tuple[Array, Array]:
         """Return the greatest absolute value and its place; the leftmost place wins a tie."""
+        return self._absolute
+
+    @cached_property
+    def _absolute(self) -> tuple[Array, Array]:
         high, low = np.abs(self.max), np.abs(self.min)
         slack = TIE * np.maximum(high, low)
         low_wins = (low > high + slack) | ((low >= high - slack) & (self.at_min < self.at_max))

@@ -30,8 +30,6 @@ MOST_TERMS = 12
 """A longer sum is printed as its first two terms and its last."""
 
 Value = float | Sequence[float] | NDArray[np.float64]
-Slot = tuple[str, int]  # a quantity and its place in its list, -1 for a single number
-Pieces = tuple[str | Slot, ...]
 
 
 @lru_cache(maxsize=4096)
@@ -49,7 +47,7 @@ class Formula:
         self.names = names(self.tree)
         self.trivial = isinstance(self.tree, Name)
         self._compiled: dict[frozenset[str], Callable[..., float]] = {}
-        self._pieces: dict[tuple[frozenset[str], int], Pieces] = {}
+        self._lines: dict[tuple[frozenset[str], int], str] = {}
 
     def value(self, values: Mapping[str, float | list[float]], lists: frozenset[str]) -> float:
         """The formula's value; ``lists`` names the quantities that are lists (they may stand under ``sum`` only).
@@ -73,20 +71,14 @@ class Formula:
         return np.asarray(compiled(**{name: np.asarray(each, dtype=float) for name, each in values.items()}))
 
     def substituted(self, texts: Mapping[str, str | list[str]], lists: frozenset[str], count: int) -> str:
-        """The formula with the given texts of numbers in it, in characters that can be read back and evaluated."""
-        key = (lists, count)
-        pieces = self._pieces.get(key)
-        if pieces is None:
-            pieces = self._pieces[key] = _pieces_of(self.tree, lists, count)
-        out: list[str] = []
-        for piece in pieces:
-            if isinstance(piece, str):
-                out.append(piece)
-            else:
-                name, index = piece
-                text: str = texts[name] if index < 0 else texts[name][index]  # type: ignore[assignment]
-                out.append(f"({text})" if text[0] == "-" else text)
-        return "".join(out)
+        """The formula with the given texts of numbers in it, in characters that can be read back and evaluated.
+
+        A negative number's text must bring its own brackets.
+        """
+        line = self._lines.get((lists, count))
+        if line is None:
+            line = self._lines[lists, count] = _with_slots(self.tree, lists, count)
+        return line.format_map(texts)
 
 
 def len_of(values: Mapping[str, float | list[float]], lists: frozenset[str]) -> int:
@@ -182,19 +174,14 @@ def _lists_only_under_sum(owner: Formula, lists: frozenset[str]) -> None:
 # --- the line with places for numbers ---------------------------------------------------------------------------------
 
 
-def _pieces_of(tree: Node, lists: frozenset[str], count: int) -> Pieces:
-    merged: list[str | Slot] = []
+def _with_slots(tree: Node, lists: frozenset[str], count: int) -> str:
+    """The line as a format with a slot for every number: ``{V} * {S}``, ``{A[0]} * {u[0]} + {A[1]} * {u[1]}``."""
     whole = _terms(tree.arguments[0], lists, count) if isinstance(tree, Call) and tree.function == "sum" else None
-    for piece in whole or _line(tree, lists, count, None):
-        if isinstance(piece, str) and merged and isinstance(merged[-1], str):
-            merged[-1] += piece
-        else:
-            merged.append(piece)
-    return tuple(merged)
+    return "".join(whole or _line(tree, lists, count, None))
 
 
-def _line(node: Node, lists: frozenset[str], count: int, index: int | None) -> list[str | Slot]:
-    def line(inner: Node, brackets: bool = False) -> list[str | Slot]:
+def _line(node: Node, lists: frozenset[str], count: int, index: int | None) -> list[str]:
+    def line(inner: Node, brackets: bool = False) -> list[str]:
         pieces = _line(inner, lists, count, index)
         return ["(", *pieces, ")"] if brackets else pieces
 
@@ -204,7 +191,7 @@ def _line(node: Node, lists: frozenset[str], count: int, index: int | None) -> l
         case Name(name):
             if name in CONSTANTS:
                 return [name]
-            return [(name, index if index is not None and name in lists else -1)]
+            return [f"{{{name}[{index}]}}" if index is not None and name in lists else f"{{{name}}}"]
         case Negative(of):
             return ["-", *line(of, precedence(of) < 4)]
         case Binary(operator, left, right):
@@ -225,8 +212,8 @@ def shown_terms(count: int) -> list[int | None]:
     return list(range(count)) if count <= MOST_TERMS else [0, 1, None, count - 1]
 
 
-def _terms(term: Node, lists: frozenset[str], count: int) -> list[str | Slot]:
-    out: list[str | Slot] = []
+def _terms(term: Node, lists: frozenset[str], count: int) -> list[str]:
+    out: list[str] = []
     for index in shown_terms(count):
         if out:
             out.append(" + ")

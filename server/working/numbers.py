@@ -23,6 +23,12 @@ def exceeds(utilisation: float) -> bool:
 
 
 @lru_cache(maxsize=65536)  # the same sizes, moduli and loads stand in line after line
+def in_line(value: float, digits: int = DIGITS) -> tuple[str, float]:
+    """A number as it stands among others, a negative one in brackets, and the number that a reader takes from it."""
+    text = canonical(value, digits)
+    return f"({text})" if text[0] == "-" else text, float(text)
+
+
 def canonical(value: float, digits: int = DIGITS) -> str:
     """A number to so many significant digits: ``35.482``, ``-0.25``, ``123456``, ``1.0395e6``, ``2.5e-4``.
 

@@ -85,7 +85,7 @@ class Working:
         kept: dict[str, dict[str, Any]] = {}
         lists = _NO_LISTS
         for name, (given, its_unit) in values.items():
-            if isinstance(given, float | int):
+            if isinstance(given, (float, int)):
                 taken: float | list[float] = float(given)
                 if not isfinite(given):
                     raise InputError(name, _not_finite(name, given, title))
@@ -157,7 +157,7 @@ def _not_finite(name: str, value: object, title: str) -> str:
 
 def _listed(name: str, given: Any, title: str) -> float | list[float]:
     """A numpy scalar, a sequence or an array as plain numbers, all finite."""
-    if np.ndim(given) == 0:
+    if not isinstance(given, (list, tuple)) and np.ndim(given) == 0:
         scalar = float(given)
         if not isfinite(scalar):
             raise InputError(name, _not_finite(name, scalar, title))
@@ -199,22 +199,21 @@ def _texts(
     known: Formula, values: Mapping[str, float | list[float]], lists: frozenset[str], value: float
 ) -> tuple[int, Texts]:
     """How many digits the numbers must show so that the printed line gives the printed value, and the numbers so."""
-    form = numbers.canonical
-    target = form(value)
+    written = numbers.in_line
+    target = written(value)[0]
     texts: Texts = {}
     rounded: dict[str, float | list[float]] = {}
     for digits in numbers.LADDER:
         for name, each in values.items():
             if isinstance(each, list):
-                written = [form(item, digits) for item in each]
-                texts[name], rounded[name] = written, [float(text) for text in written]
+                pairs = [written(item, digits) for item in each]
+                texts[name], rounded[name] = [text for text, _ in pairs], [back for _, back in pairs]
             else:
-                texts[name] = text = form(each, digits)
-                rounded[name] = float(text)
+                texts[name], rounded[name] = written(each, digits)
         if rounded == values:
             return digits, texts
         try:
-            if form(known.value(rounded, lists)) == target:
+            if written(known.value(rounded, lists))[0] == target:
                 return digits, texts
         except (ArithmeticError, ValueError, TypeError):
             continue
