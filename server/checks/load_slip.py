@@ -19,6 +19,7 @@ from server.working import Working
 CODE = "EN 26891:1991"
 NEAR = 0.2  # of the estimate, by which the mean may differ before each test's own greatest load is taken
 WRITTEN_OUT = 30
+READABLE = 1e-6  # mm, a slip that no gauge tells from nothing; a modulus over less would be noise
 NOT_CHECKED = (
     "whether the specimens stand for the joint: wood, moisture, spacing, edge distances, workmanship",
     "duration of load, moisture and repeated load: each needs its own factor",
@@ -129,10 +130,6 @@ def _slips(each: Specimen, reference: float) -> tuple[float, float]:
     except InputError:
         return np.nan, np.nan
     return found[0], found[1]
-
-
-READABLE = 1e-6
-"""Slip [mm] that no gauge tells from nothing; a modulus over less would be noise."""
 
 
 def _moduli(tests: Iterable[Tested], share: int, book: Working) -> list[float | None]:

@@ -59,7 +59,9 @@ def test_a_calculator_reaches_the_printed_value_from_the_printed_line(text):
 def test_a_sum_is_printed_term_by_term_and_reaches_its_value(numbers):
     w = Working()
     value = w.step("t", "y", "k * sum(a*(a - m)**2)", {"a": (np.array(numbers), ""), "k": (2.5, ""), "m": (1.5, "")})
-    assert canonical(float(eval(w.steps[0]["substituted"]))) == canonical(value)
+    reached = float(eval(w.steps[0]["substituted"]))
+    tie = reached == pytest.approx(value, rel=1e-12)  # the last digit may round either way
+    assert tie or canonical(reached) == canonical(value)
     assert w.steps[0]["substituted"].count("**2") == len(numbers)
 
 
