@@ -39,6 +39,7 @@ from server.mechanics.section import (
     shear_stiffness,
 )
 from server.mechanics.shapes import Shape
+from server.remembered import Remembered
 
 LEVEL = 1e-9  # of sqrt(EI EI_lateral): a product below it is rounding
 GAP = 0.05  # mm two faces may stand apart and still touch
@@ -292,8 +293,19 @@ class Body:
         return [(i, s) for i, s in enumerate(self.stretches) if part.start <= s.start and part.end >= s.end]
 
 
+_bodies: Remembered[Body] = Remembered(32)  # with all that was worked out of them: cuts, stiffnesses, flows
+
+
 def build(document: documents.MemberDocument) -> Body:
-    """Place pieces and joints; raise DocumentError for overlaps, loose pieces and joints that touch nothing."""
+    """Place pieces and joints; raise DocumentError for overlaps, loose pieces and joints that touch nothing.
+
+    A body whose pieces, joints and values are those of one asked for before is that one.
+    """
+    content = document.model_dump_json(include={"section", "materials", "adhesives", "analysis"})
+    return _bodies.of((document.member.length, eccentric(document), content), lambda: _build(document))
+
+
+def _build(document: documents.MemberDocument) -> Body:
     parts = tuple(_parts(document))
     edges = edges_of([part.shape.rings for part in parts], [part.shape.curved for part in parts])
     _refuse_overlaps(parts, edges)

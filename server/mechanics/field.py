@@ -7,10 +7,8 @@ every piece, found by finite elements; joints are rigid or springs. The same mat
 
 from __future__ import annotations
 
-from collections import OrderedDict
-from collections.abc import Hashable, Sequence
+from collections.abc import Sequence
 from dataclasses import astuple, dataclass, field
-from threading import Lock
 
 import numpy as np
 
@@ -23,6 +21,7 @@ from server.mechanics.field_sizes import Fineness
 from server.mechanics.field_system import Solved, bonded_parts, put_together, yielding
 from server.mechanics.polygon import Array
 from server.mechanics.section import Piece, SectionProperties
+from server.remembered import Remembered
 
 __all__ = ["PARTS", "Bond", "Field", "remembered_field", "shear_field"]
 
@@ -137,9 +136,7 @@ def shear_field(
     return found
 
 
-_KEPT = 24  # solutions: a shop's people look at a few sections at a time
-_kept: OrderedDict[Hashable, Field] = OrderedDict()
-_lock = Lock()
+_fields: Remembered[Field] = Remembered(24)  # a shop's people look at a few sections at a time
 
 
 def remembered_field(pieces: Sequence[Piece], properties: SectionProperties, bonds: Sequence[Bond]) -> Field:
@@ -175,16 +172,7 @@ def remembered_field(pieces: Sequence[Piece], properties: SectionProperties, bon
             for b in bonds
         ),
     )
-    with _lock:
-        if key in _kept:
-            _kept.move_to_end(key)
-            return _kept[key]
-    found = shear_field(pieces, properties, bonds)
-    with _lock:
-        _kept[key] = found
-        while len(_kept) > _KEPT:
-            _kept.popitem(last=False)
-    return found
+    return _fields.of(key, lambda: shear_field(pieces, properties, bonds))
 
 
 def _shear_modulus(piece: Piece) -> float:

@@ -9,8 +9,9 @@ import numpy as np
 import pytest
 
 from server import checks, documents
-from server.checks import section_field
+from server.checks import crosssection, section_field
 from server.mechanics.section import Piece, properties, rectangle
+from server.remembered import Remembered
 from tests.checks.made import BOX
 from tests.mechanics.field_reference import Reference, bonds_of, lines
 
@@ -91,6 +92,12 @@ def test_always_sets_the_field_beside_the_hand():
     assert result["section"]["shear_centre"] == pytest.approx([57.5, 200.0], abs=0.01)
 
 
+@pytest.fixture
+def nothing_remembered(monkeypatch):
+    monkeypatch.setattr(crosssection, "_bodies", Remembered(1))
+
+
+@pytest.mark.usefixtures("nothing_remembered")
 def test_hand_and_field_that_differ_prove_nothing(monkeypatch):
     solve = section_field.remembered_field
 
@@ -112,6 +119,7 @@ def test_never_leaves_the_joints_open():
     assert result["section"]["shear_centre"] is None
 
 
+@pytest.mark.usefixtures("nothing_remembered")
 def test_the_field_is_not_solved_where_cuts_and_symmetry_settle_all(monkeypatch):
     monkeypatch.setattr(section_field, "remembered_field", None)
     assert run(copy.deepcopy(BOX))["verdict"] == "pass"
@@ -168,3 +176,21 @@ def test_shear_in_each_piece_is_its_own_share():
         middle = V * (share[f"top/{side}"] + web) / (EI * 12.5)
         assert stress[side] == pytest.approx(middle, rel=1e-3)
     assert stress["left"] > 1.4 * stress["right"]
+
+
+def test_a_section_that_was_seen_before_is_not_built_again_and_any_change_of_it_is():
+    raw = copy.deepcopy(BOX)
+    body = crosssection.build(documents.read(raw))
+    raw["title"], raw["member"]["deflection_limit"] = "another job", 123
+    assert crosssection.build(documents.read(raw)) is body
+    for change in (
+        lambda d: d["materials"]["softwood"].update(E=9999),
+        lambda d: d["section"]["pieces"]["top"].update(material="ply"),
+        lambda d: d["section"]["joints"][0].update(coverage=0.5),
+        lambda d: d["member"].update(length="6.1 m"),
+        lambda d: d["analysis"].update(field="always"),
+    ):
+        other = copy.deepcopy(raw)
+        other.setdefault("analysis", {})
+        change(other)
+        assert crosssection.build(documents.read(other)) is not body
