@@ -302,16 +302,16 @@ def build(document: documents.MemberDocument) -> Body:
     A body whose pieces, joints and values are those of one asked for before is that one.
     """
     content = document.model_dump_json(include={"section", "materials", "adhesives", "analysis"})
-    return _bodies.of((document.member.length, eccentric(document), content), lambda: _build(document))
+    wanted, free = _wanted(document), not document.member.held_sideways
+    return _bodies.of((document.member.length, wanted, free, content), lambda: _build(document, wanted, free))
 
 
-def _build(document: documents.MemberDocument) -> Body:
+def _build(document: documents.MemberDocument, wanted: Wanted, free: bool) -> Body:
     parts = tuple(_parts(document))
     edges = edges_of([part.shape.rings for part in parts], [part.shape.curved for part in parts])
     _refuse_overlaps(parts, edges)
     found = _contacts(document, parts, edges)
     sites = tuple(_sites(document, parts, found))
-    wanted, free = _wanted(document), not document.member.held_sideways
     stretches = tuple(_stretches(document.member.length, parts, sites, wanted, free))
     return Body(document.member.length, parts, sites, tuple(found), stretches)
 
