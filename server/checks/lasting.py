@@ -112,10 +112,12 @@ def repeated(
             "repeats is reckoned without it, so that it is not counted twice.",
             group="Lasting and repeated load",
         )
-    value = _one(fatigue, borne, ranges[0], book, name, where) if len(ranges) == 1 else None
-    if value is None:
-        value = _several(fatigue, borne, ranges, book, name, where)
-    if value is None:
+    value, told = 0.0, None
+    if len(ranges) == 1:
+        value, told = _one(fatigue, borne, ranges[0], book, name, where)
+    else:
+        value, told = _several(fatigue, borne, ranges, book, name, where)
+    if told is None:
         findings.miss(
             f"fatigue strength of adhesive {name!r} above {(borne.share or 0) * 100:.3g} % of its static strength "
             f"({where}): it was tested at one level only, and a block of the load is above it."
@@ -128,6 +130,8 @@ def repeated(
             "cycles": [block.cycles for block in fatigue.every],
             "ranges": ranges,
             "impact_left_out": fatigue.impact,
+            "factor": fatigue.factor,
+            **told,
             "utilisation": value,
         },
         value,
@@ -137,7 +141,7 @@ def repeated(
 
 def _one(
     fatigue: documents.Fatigue, borne: documents.FatigueStrength, used: float, book: Working, name: str, where: str
-) -> float | None:
+) -> tuple[float, dict[str, object]]:
     cycles = fatigue.every[0].cycles
     share = borne.share_at(cycles)
     assert share is not None  # cycles beyond the tests were named above
@@ -147,11 +151,12 @@ def _one(
             {"A": (borne.intercept or 0.0, ""), "m": (borne.slope or 0.0, ""), "N": (cycles, "")},
             "", ISO_9664, group="Lasting and repeated load",
         ))  # fmt: skip
-    return book.step(
+    value = book.step(
         f"Repeated load on adhesive {name}, {where}", "eta_N", ONE_LEVEL,
         {"eta_R": (used / fatigue.factor, ""), "gamma_f": (fatigue.factor, ""), "s_N": (share, "")},
         "", f"use under the range, over the share borne for {cycles:.3g} cycles", group="Lasting and repeated load",
     )  # fmt: skip
+    return value, {"borne": share}
 
 
 def _several(
@@ -161,16 +166,17 @@ def _several(
     book: Working,
     name: str,
     where: str,
-) -> float | None:
+) -> tuple[float, dict[str, object] | None]:
     counts, lives = [], []
     for block, share in zip(fatigue.every, used, strict=True):
         life = borne.cycles_at(share) if share > 0 else borne.cycles
         if life is None:
-            return None
+            return 0.0, None
         counts.append(block.cycles)
         lives.append(max(min(life, borne.cycles), 1e-9))
-    return book.step(
+    value = book.step(
         f"Damage sum of the blocks of load on adhesive {name}, {where}", "D_f", DAMAGE,
         {"n": (counts, ""), "N": (lives, "")}, "",
         f"{MINER}; lives from {ISO_9664}, none longer than was tested", group="Lasting and repeated load",
     )  # fmt: skip
+    return value, {"lives": lives}

@@ -86,6 +86,7 @@ def _run(document: documents.SpliceDocument, book: Working, findings: Findings) 
         "response": document.response,
         **result,
         "limits": limits,
+        "lasting": [each.result for each in extra],
         "cautions": findings.cautions,
         "missing": findings.missing,
         "not_checked": list(NOT_CHECKED),

@@ -8,6 +8,7 @@ from server.sheets.dot_plot import dot_plot_svg
 from server.sheets.evidence import ChainLines, EvidenceData, FactorLine, Reply, area_as_typed, load_as_typed
 from server.sheets.given import Group, Row, given
 from server.sheets.history import Point, history_svg, in_words
+from server.sheets.lasting import TITLE as LASTING
 from server.sheets.loads_drawing import loads_svg
 from server.sheets.one_page import OnePage
 from server.sheets.one_pages import ONE_PAGES
@@ -23,6 +24,7 @@ from server.sheets.terminal import terminal
 from server.sheets.values import governing, in_units, quantity, utilisation, verdict
 
 __all__ = [
+    "LASTING",
     "ONE_PAGES",
     "STANDING_CAUTION",
     "STRESSES",

@@ -7,6 +7,8 @@ from typing import Any
 
 from server.sheets.bond_plot import stress_plot
 from server.sheets.drafting import MINUS
+from server.sheets.lasting import TITLE as LASTING
+from server.sheets.lasting import lasting
 from server.sheets.one_page import Blocks, Part, figure, pairs, sub
 from server.sheets.plotting import Axis, across
 from server.sheets.svg import Drawing
@@ -19,9 +21,10 @@ End = Mapping[str, Any]
 
 
 def blocks(result: Result, display: str) -> Blocks:
-    """Ends and movement, where the result has any; older results have neither."""
+    """Ends, movement, and load that stays or repeats, where the result has any; older results have none."""
     yield "Ends of bonded pieces", list(ends(result, display))
     yield "Movement of unlike materials", list(movement(result, display))
+    yield LASTING, list(lasting(result.get("lasting") or []))
 
 
 def ends(result: Result, display: str) -> Iterator[Part]:

@@ -8,6 +8,8 @@ from typing import Any
 from server.sheets.asked import Ask, AskGroup
 from server.sheets.bond_plot import curve_svg
 from server.sheets.drafting import MINUS
+from server.sheets.lasting import TITLE as LASTING
+from server.sheets.lasting import lasting
 from server.sheets.limits_table import limits_table
 from server.sheets.one_page import Blocks, OnePage, Part, Result, figure, pairs
 from server.sheets.splice_drawing import NAMES, splice_svg
@@ -237,6 +239,7 @@ def blocks(result: Result, display: str) -> Blocks:
     yield "Bond", _bond(result, display)
     yield "Adherends", _adherends(result, display)
     yield "Limits", limits_table(result.get("limits") or [], display)
+    yield LASTING, lasting(result.get("lasting") or [])
     yield "Strength and overlap", _overlap(result, display)
 
 

@@ -96,3 +96,29 @@ def test_half_a_line_is_refused(line):
     with pytest.raises(DocumentError) as caught:
         run(adhesives__glue__fatigue=line)
     assert all("adhesives.glue.fatigue" in fault.path for fault in caught.value.faults)
+
+
+def test_every_number_of_it_stands_in_a_table_of_the_sheet():
+    from server import sheets
+    from server.web.panel import panel
+
+    loads = {name: [{"kind": "line", "from": 0, "to": 3000, "value": 0.4}] for name in ("own", "live")}
+    blocks = [{"cycles": 1e4, "range": 1.0}, {"cycles": 1e6, "range": 0.5}]
+    combinations = {
+        "crowd": {"factors": {"own": 1, "live": 1}, "sustained": {"own": 1}, "fatigue": {"cycles": 2e6, "impact": 2}},
+        "traffic": {"factors": {"live": 4.0}, "fatigue": {"blocks": blocks}},
+    }
+    glue = {"adhesives__glue__fatigue": LINE, "adhesives__glue__creep_limit": 0.3}
+    result = run(loads=loads, combinations=combinations, **glue)
+    (part,) = [parts for title, parts in panel(result, "SI").blocks if title == sheets.LASTING]
+    stays, repeats = [each["rows"] for each in part if each["kind"] == "table"]
+    assert stays[0][0] == "joint lower/upper, combination crowd: adhesive glue"
+    assert stays[0][1] == "50 %"
+    assert stays[0][3] == "30 %"
+    sustained = next(each for each in result["lasting"] if "creep_limit" in each)
+    assert stays[0][4] == f"{sustained['utilisation']:.2f}"
+    damage = next(each for each in result["lasting"] if len(each.get("cycles", ())) == 2)
+    parts_of_it = [float(row[5]) for row in repeats[1:3]]
+    assert sum(parts_of_it) == pytest.approx(damage["utilisation"], abs=0.011)
+    assert repeats[3][5] == f"{damage['utilisation']:.2f}"
+    assert "without the dynamic factor of 2" in sheets.terminal(result)
