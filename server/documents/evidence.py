@@ -57,13 +57,14 @@ class Cure(Model):
 
 
 class Lot(Model):
-    """One lot of an adhesive as its label names it."""
+    """One lot of an adhesive as its label names it; once opened it keeps for ``days_after_opening``."""
 
     number: Annotated[Line, Field(min_length=1)]
     hardener_lot: Line = ""
     maker_expiry: Date | None = None
     received: Date | None = None
     opened: Date | None = None
+    days_after_opening: Days | None = None
 
 
 class CouponSet(Model):

@@ -10,6 +10,7 @@ from sqlalchemy import Engine
 from server import library, storage
 from server.jobs import headings, saving
 from server.jobs.shop import set_shop
+from server.library.states import FOUND_GOOD, first
 from server.paths import data_folder
 from server.people import Person
 
@@ -37,9 +38,11 @@ def fill(engine: Engine) -> bool:
 
 def _add(session: storage.Session, record: dict[str, Any]) -> None:
     """Add a seed record; what it says is approved gets the approval of an invented person, marked as invented."""
-    approved, answers = record.get("status") == "approved", record.pop("answers", {})
+    approved, answers = record.get("status") in FOUND_GOOD, record.pop("answers", {})
     put_forward = record.pop("put_forward", False)
-    made = library.add(session, **(record | {"status": "draft"} if approved else record), made_by=WHO, reason=REASON)
+    made = library.add(
+        session, **(record | {"status": first(record["group"])} if approved else record), made_by=WHO, reason=REASON
+    )
     for question in library.questions(session, made) if answers else ():
         text = answers[question.about]
         library.answer(session, made.key, made.revision, question.key, text, by=Person(0, WHO))

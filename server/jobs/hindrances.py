@@ -15,7 +15,7 @@ from server.jobs.export import altered
 from server.jobs.revisions import SavedRevision, revision
 from server.library import Link, NotFoundError, Record
 from server.library.groups import STOPPED
-from server.library.lots import lots_named
+from server.library.lots import barred_lots
 from server.library.questions import Answer, answers, keep_answer, question_key
 from server.people import CHECKS, Person
 from server.storage import Session
@@ -157,13 +157,8 @@ def _standing(name: str, record: Record) -> Iterator[Hindrance]:
 
 
 def _lots(session: Session, record: Record) -> Iterator[Hindrance]:
-    numbers = {str(each["lot"]).strip() for each in record.values["coupons"] if each.get("lot")}
-    for number in sorted(numbers):
-        for lot in lots_named(session, number):
-            state = library.standing(lot)
-            if state in STOPPED:
-                text = f"Lot {number} ({lot.key}), with which coupons of {record.itself} were made, is {state} now."
-                yield _fixed("status", f"lot {number}", text)
+    for number, text in barred_lots(session, record):
+        yield _fixed("status", f"lot {number}", text)
 
 
 def _of_the_person(saved: SavedRevision, by: Person) -> Iterator[Hindrance]:

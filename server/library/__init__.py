@@ -8,6 +8,8 @@ from server.library.finding import search
 from server.library.groups import ALL, EVIDENCE, GROUPS, STATUSES, Group
 from server.library.history import Point, charted, history
 from server.library.kept_pages import KeptPage, evidence_pdf, kept_page, kept_pdf
+from server.library.life import life
+from server.library.lot_life import expiry, lot_state
 from server.library.obstacles import Obstacle, obstacles
 from server.library.pasted import LineFault, Pasted, read_coupons
 from server.library.properties import PROPERTIES, Property
@@ -65,13 +67,16 @@ __all__ = [
     "entry",
     "evidence_pdf",
     "exclude",
+    "expiry",
     "get",
     "history",
     "in_force",
     "include",
     "kept_page",
     "kept_pdf",
+    "life",
     "links_to",
+    "lot_state",
     "lot_uses",
     "measured_result",
     "multiplication",

@@ -11,16 +11,16 @@ from server.errors import DocumentError, Fault
 from server.library import fields, heads, kept_pages, reading
 from server.library.finding import waiting_ids
 from server.library.groups import ALL
+from server.library.lot_acts import read_told
 from server.library.obstacles import entered_by, obstacles, others_who_may
 from server.library.reading import PUT_FORWARD
 from server.library.record import NotFoundError, Record
 from server.library.rules import rules, status_by_number
+from server.library.states import IN_WORK, good, steps, word
 from server.people import APPROVES, PREPARES, Person, anybody
 from server.storage import Session
 from server.storage.evidence_tables import ActRow
 from server.storage.tables import RecordRevision as RevisionRow
-
-SET = ("draft", "on hold", "withdrawn", "superseded")
 
 
 def put_forward(
@@ -35,7 +35,7 @@ def put_forward(
     """Send a revision for approval: a value then counts as its coupons' number says, until somebody approves it."""
     record = reading.get(session, key, revision)
     faults = _not_newest(record)
-    if record.status not in ("draft", "indicative", "provisional"):
+    if record.status not in IN_WORK:
         faults.append(Fault("status", f"{record.itself} is {record.status}; only work in progress is put forward."))
     text = fields.prose(faults, "reason", reason)
     if faults:
@@ -57,6 +57,8 @@ def approve(
 ) -> Record:
     """Approve a revision, as a person who did not enter it; it is frozen from then on.
 
+    A coupon set is accepted so, a lot released. Who approves a value accepts the coupon set behind it in the same act.
+
     Where one person does everything, or nobody signs in, ``outside_checker`` names who looked it over from outside, on
     which day (``checked_on``, year-month-day).
 
@@ -77,7 +79,7 @@ def approve(
     if faults:
         raise DocumentError(faults)
     detail = {"outside_checker": outside, "checked_on": checked_on.strip()} if outside else {}
-    return _act(session, record, "approved", by, words, now, detail)
+    return _found_good(session, record, by, words, now, detail)
 
 
 def approve_invented(
@@ -90,10 +92,21 @@ def approve_invented(
     if anybody(session):
         raise DocumentError([Fault("status", "Approvals are invented for the demo shop alone, before people sign in.")])
     record = reading.get(session, key, revision)
-    against = [each for each in obstacles(session, record) if each.about != "revision"]
+    against = [each for each in obstacles(session, record) if each.about not in ("revision", "expiry")]
     if against:
         raise DocumentError([Fault(each.about, each.text) for each in against])
-    return _act(session, record, "approved", Person(0, who), "", now, {"invented": True})
+    return _found_good(session, record, Person(0, who), "", now, {"invented": True})
+
+
+def _found_good(
+    session: Session, record: Record, by: Person, words: str, now: datetime | None, detail: Mapping[str, Any]
+) -> Record:
+    with storage.write(session):
+        behind = record.links.get("set") if record.group == "values" else None
+        coupons = None if behind is None else reading.get(session, behind.key, behind.revision)
+        if coupons is not None and coupons.status in ("tested", "reviewed"):
+            _act(session, coupons, good("sets"), by, f"with {record.itself}", now, detail)
+        return _act(session, record, good(record.group), by, words, now, detail)
 
 
 def set_status(
@@ -104,24 +117,32 @@ def set_status(
     by: Person,
     reason: str,
     revision: int | None = None,
+    told: Mapping[str, str] | None = None,
     now: datetime | None = None,
 ) -> Record:
-    """Hold, withdraw or supersede a revision, or make one that is on hold a draft again; the reason is kept."""
+    """Bring a revision to another state of its group (``states.steps``): hold, withdraw, reject; the reason is kept.
+
+    ``told`` is what a lot's step needs: ``on``, the day it was opened; ``until`` and ``retest``, the last day and the
+    coupon set of the retest that extends it.
+    """
     record = reading.get(session, key, revision)
     faults: list[Fault] = []
-    fields.choice(faults, "status", status, SET)
+    status = word(record.group, status)
     text = fields.prose(faults, "reason", reason)
     if not text:
         faults.append(Fault("reason", "The reason is empty; write why, for whoever meets this record later."))
     if not (by.may(PREPARES) or by.may(APPROVES)):
         faults.append(Fault("person", f"{by.name} may not change records."))
-    if status == record.status:
+    may_become = steps(record.group, record.status)
+    if status == record.status and status not in may_become:
         faults.append(Fault("status", f"{record.itself} is {status} already."))
-    if status == "draft" and record.status != "on hold":
-        faults.append(Fault("status", f"{record.itself} is {record.status}; save a new revision to work on it."))
+    elif status not in may_become:
+        allowed = f"it may become {', '.join(may_become)}" if may_become else "save a new revision to work on it"
+        faults.append(Fault("status", f"{record.itself} is {record.status}, not {status[:60]!r} next: {allowed}."))
+    detail = read_told(session, faults, record, status, told or {}, now) if record.group == "lots" else {}
     if faults:
         raise DocumentError(faults)
-    return _act(session, record, status, by, text, now, {})
+    return _act(session, record, status, by, text, now, detail)
 
 
 def waiting(session: Session, limit: int = 50) -> list[Record]:

@@ -14,7 +14,7 @@ from server.library.coupon_sets import coupon_document, measured_result
 from server.library.groups import EVIDENCE, LINK_LABELS
 from server.library.history import charted
 from server.library.questions import questions
-from server.library.record import Act, Factor, Link, Record
+from server.library.record import Act, Approval, Factor, Link, Record
 from server.library.references import standing
 from server.library.values import value_text
 from server.storage import Session
@@ -195,6 +195,9 @@ def _factor_line(factor: Factor) -> sheets.FactorLine:
 def _people(record: Record, coupon_set: Record | None, acts: list[Act]) -> Iterator[tuple[str, str, str]]:
     if coupon_set is not None:
         yield "Coupons entered by", coupon_set.made_by, coupon_set.created_at[:10]
+        accepted = coupon_set.approval
+        if accepted is not None:
+            yield "Coupons accepted by", f"{accepted.by}{_invented(accepted)}", accepted.at[:10]
     yield "Value entered by", record.made_by, record.created_at[:10]
     for act in acts:
         if act.detail.get(reading.PUT_FORWARD):
@@ -203,7 +206,10 @@ def _people(record: Record, coupon_set: Record | None, acts: list[Act]) -> Itera
     if approval is None:
         yield "Approved by", "", ""
         return
-    invented = " (invented, demo shop)" if approval.invented else ""
-    yield "Approved by", f"{approval.by}{invented}", approval.at[:10]
+    yield "Approved by", f"{approval.by}{_invented(approval)}", approval.at[:10]
     if approval.outside_checker:
         yield "Looked over from outside by", approval.outside_checker, approval.checked_on
+
+
+def _invented(approval: Approval) -> str:
+    return " (invented, demo shop)" if approval.invented else ""

@@ -16,6 +16,7 @@ from server.library import reading
 from server.library.questions import answers
 from server.library.record import Factor, Link, Record
 from server.library.references import standing
+from server.library.states import first
 from server.library.values import FOUND
 from server.storage import Session
 from server.storage.evidence_tables import AnswerRow, HeadRow
@@ -168,7 +169,7 @@ def _revision(
         "created_at": record.created_at,
         "reason": record.reason,
     }
-    if record.status != "draft" or record.approval is not None or record.put_forward:
+    if record.status != first(record.group) or record.approval is not None or record.put_forward:
         told["acts"] = [
             {"status": act.status, "who": act.who, "at": act.at, "reason": act.reason, "detail": dict(act.detail)}
             for act in reading.acts(session, record.key, record.revision)

@@ -9,10 +9,11 @@ from sqlalchemy import ColumnElement, column, exists, func, literal_column, or_,
 from sqlalchemy.orm import aliased
 
 from server import storage
-from server.library.groups import ALL, STATUSES
+from server.library.groups import ALL
 from server.library.properties import PROPERTIES
 from server.library.reading import records, rows
 from server.library.record import MOST, Found
+from server.library.states import ALL_STATES
 from server.storage import Session
 from server.storage.evidence_tables import ActRow, HeadRow
 from server.storage.tables import RecordRevision as RevisionRow
@@ -42,7 +43,7 @@ def search(
     """
     groups = [group] if isinstance(group, str) else list(group or ())
     terms = _terms(text, adherend)
-    unknown = any(each not in ALL for each in groups) or (status and status not in STATUSES)
+    unknown = any(each not in ALL for each in groups) or (status and status not in ALL_STATES)
     if unknown or (property and property not in PROPERTIES) or terms is None:
         return Found((), 0)
     conditions: list[ColumnElement[bool]] = []
@@ -92,7 +93,7 @@ def waiting_ids(session: Session, limit: int) -> list[tuple[str, int]]:
         .join(RevisionRow, RevisionRow.id == ActRow.record_revision_id)
         .join(HeadRow, HeadRow.record_id == RevisionRow.record_id)
         .where(HeadRow.newest_id == RevisionRow.id, ~decided)
-        .where(HeadRow.status.in_(("draft", "provisional")))
+        .where(HeadRow.status.in_(("draft", "provisional", "tested", "reviewed", "quarantined")))
         .where(func.json_extract(ActRow.detail, '$."put forward"') == 1)
         .order_by(ActRow.id)
         .limit(limit)

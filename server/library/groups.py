@@ -134,5 +134,8 @@ BY_SECTION = {group.section: group for group in GROUPS.values()}
 STATUSES = ("draft", "indicative", "provisional", "approved", "on hold", "withdrawn", "superseded")
 # These say what holds for the record from now on; a draft, indicative or provisional revision beside an approved one
 # is work in progress and leaves the approved one in force.
-DECISIVE = ("approved", "on hold", "withdrawn", "superseded")
-STOPPED = ("on hold", "withdrawn")
+DECISIVE = (
+    *("approved", "on hold", "withdrawn", "superseded"),
+    *("accepted", "rejected", "released", "opened", "extended"),
+)
+STOPPED = ("on hold", "withdrawn", "rejected")

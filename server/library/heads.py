@@ -8,6 +8,7 @@ from typing import Any
 from sqlalchemy import select, text
 
 from server.library.groups import DECISIVE
+from server.library.states import word
 from server.storage import Session
 from server.storage.evidence_tables import ActRow, HeadRow
 from server.storage.tables import Record as RecordRow
@@ -27,7 +28,7 @@ def refresh(session: Session, record_id: int) -> None:
         ActRow.record_revision_id.in_([row.id for row in revisions])
     )
     last = {revision_id: status for revision_id, status in session.execute(acted.order_by(ActRow.id))}  # noqa: C416
-    standing = [(row.id, row.n, last.get(row.id, row.status)) for row in revisions]
+    standing = [(row.id, row.n, word(record.group, last.get(row.id, row.status))) for row in revisions]
     newest_id, newest, status = standing[-1]
     decided = [(n, state) for _, n, state in standing if state in DECISIVE]
     in_force, in_force_status = decided[-1] if decided else (None, None)

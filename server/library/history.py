@@ -8,7 +8,7 @@ from server import sheets
 from server.errors import InputError
 from server.library import reading
 from server.library.coupon_sets import coupon_result
-from server.library.groups import MADE_OF
+from server.library.groups import MADE_OF, STOPPED
 from server.library.record import Record
 from server.library.references import standing
 from server.mechanics.control_chart import Chart, control_chart
@@ -41,7 +41,7 @@ def history(session: Session, record: Record) -> list[Point]:
     """Return the sets that broke the same kind of coupon as ``record`` (a value, or a set), oldest first.
 
     The same kind: the same property, and the same product, surfaces, preparations, cure, exposure and test method.
-    Withdrawn sets are left out.
+    Rejected sets are left out.
     """
     behind = record.links.get("set")
     mine = record if behind is None else reading.get(session, behind.key, behind.revision)
@@ -55,7 +55,7 @@ def history(session: Session, record: Record) -> list[Point]:
         .limit(MOST)
     )
     every = reading.records(session, session.execute(query).all())
-    points = [_point(each) for each in every if same_coupons(each, mine) and standing(each) != "withdrawn"]
+    points = [_point(each) for each in every if same_coupons(each, mine) and standing(each) not in STOPPED]
     return sorted(points, key=lambda point: (point.date, point.key))
 
 

@@ -17,6 +17,7 @@ from server.library.groups import ALL
 from server.library.import_files import CONTENT, Item, read_file
 from server.library.record import NotFoundError, Record
 from server.library.records import Draft, checked, store
+from server.library.states import first, word
 from server.library.values import FOUND
 from server.people import Person
 from server.storage import Session
@@ -209,9 +210,12 @@ def _draft(item: Item, base: Record | None, by: Person, name: str) -> Draft:
 
 
 def _status(item: Item) -> str:
-    if item.status == "approved" or (item.group == "values" and item.status not in ("on hold", "withdrawn")):
+    status = word(item.group, item.status)
+    if item.group in ("sets", "lots"):
+        return status if status == "rejected" else first(item.group)
+    if status == "approved" or (item.group == "values" and status not in ("on hold", "withdrawn")):
         return "draft"
-    return item.status
+    return status
 
 
 def _provenance(item: Item, name: str) -> str:

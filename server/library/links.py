@@ -24,7 +24,8 @@ Given = Link | Mapping[str, Any] | Sequence[Any] | None
 def read_links(
     session: Session, faults: list[Fault], group: Group, given: Mapping[str, Given]
 ) -> dict[str, tuple[Link, Record]]:
-    """Return the links of a record with their targets; without a revision, the one in force, or else the newest.
+    """Return the links of a record with their targets; without a revision, the one in force, or else the newest
+    (of a coupon set the newest).
 
     Faults stand at ``links.ROLE``: a role the group does not have, a record that is not there, one of another group, a
     value of another property than it is pinned for.
@@ -55,7 +56,8 @@ def _target(session: Session, faults: list[Fault], path: str, wanted: str, given
         return None
     try:
         record = reading.get(session, key)
-        chosen = revision or record.in_force or record.newest
+        # Of a coupon set the newest counts, accepted or not: a value is found from it before both are judged.
+        chosen = revision or (None if wanted == "sets" else record.in_force) or record.newest
         record = record if chosen == record.revision else reading.get(session, key, chosen)
     except NotFoundError as error:
         faults.append(Fault(path, str(error)))

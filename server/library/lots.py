@@ -7,6 +7,7 @@ from datetime import date
 
 from sqlalchemy import select
 
+from server.library.lot_life import BARRED, expiry, lot_state
 from server.library.reading import records, rows
 from server.library.record import Record
 from server.storage import Session
@@ -36,14 +37,23 @@ def expired_lots(session: Session, record: Record) -> Iterator[tuple[str, str]]:
             used.setdefault(str(coupon["lot"]).strip(), []).append(date.fromisoformat(coupon["date_bonded"]))
     for number, days in used.items():
         for lot in lots_named(session, number):
-            expiry = lot.values.get("maker_expiry")
-            late = max(days)
-            if expiry and number.casefold() == numbers_of(lot)[0] and late > date.fromisoformat(expiry):
+            last, late = expiry(lot), max(days)
+            if last is not None and number.casefold() == numbers_of(lot)[0] and late > last:
                 yield (
                     "lot",
-                    f"Lot {number} expired on {expiry} ({lot.key}); coupons were bonded with it on {late}. Why may "
+                    f"Lot {number} expired on {last} ({lot.key}); coupons were bonded with it on {late}. Why may "
                     "they count?",
                 )
+
+
+def barred_lots(session: Session, record: Record) -> Iterator[tuple[str, str]]:
+    """Return the lots of a set's coupons on which nothing may rest today: number, and what bars it."""
+    numbers = {str(each["lot"]).strip() for each in record.values["coupons"] if each.get("lot")}
+    for number in sorted(numbers):
+        for lot in lots_named(session, number):
+            state = lot_state(lot)
+            if state in BARRED:
+                yield number, f"Lot {number} ({lot.key}), with which coupons of {record.itself} were made, is {state}."
 
 
 def lot_numbers(session: Session) -> list[str]:

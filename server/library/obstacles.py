@@ -8,11 +8,14 @@ from dataclasses import dataclass
 from server.library import reading
 from server.library.coupon_sets import coupon_result
 from server.library.groups import STOPPED
+from server.library.lot_life import expiry, is_over
+from server.library.lots import barred_lots
 from server.library.properties import PROPERTIES
 from server.library.questions import questions
 from server.library.record import Record
 from server.library.references import standing
 from server.library.rules import Rules, rules
+from server.library.states import IN_WORK
 from server.people import APPROVES, Person, members
 from server.storage import Session
 
@@ -38,10 +41,16 @@ def obstacles(session: Session, record: Record, by: Person | None = None) -> lis
 
 
 def _of_the_state(record: Record) -> Iterator[Obstacle]:
-    if record.status == "approved":
-        yield Obstacle("status", f"{record.itself} is approved already.")
+    if record.status not in (*IN_WORK, "on hold", "withdrawn", "superseded", "rejected"):
+        yield Obstacle("status", f"{record.itself} is {record.status} already.")
     elif record.status in ("withdrawn", "superseded"):
         yield Obstacle("status", f"{record.itself} is {record.status}; save a new revision and have that one approved.")
+    elif record.status == "rejected":
+        yield Obstacle("status", f"{record.itself} is rejected; take it back to work first, with the reason.")
+    if record.group == "lots" and is_over(record):
+        yield Obstacle(
+            "expiry", f"{record.itself} expired on {expiry(record)}; a retest extends it, or it is rejected."
+        )
     if record.revision != record.newest:
         yield Obstacle("revision", f"{record.itself} is not the newest; look at revision {record.newest}.")
 
@@ -76,6 +85,8 @@ def _of_a_value(session: Session, record: Record) -> Iterator[Obstacle]:
     state = standing(coupons)
     if state in STOPPED:
         yield Obstacle("coupon set", f"{coupons.itself} is {state}.")
+    for _, text in barred_lots(session, coupons):
+        yield Obstacle("lot", text)
     if coupons.newest > coupons.revision:
         yield Obstacle(
             "coupon set",
@@ -137,6 +148,8 @@ def entered_by(session: Session, record: Record) -> list[str]:
 def _of_the_person(session: Session, record: Record, by: Person) -> Iterator[Obstacle]:
     if not by.may(APPROVES):
         yield Obstacle("person", f"{by.name} may not approve; ask somebody with the role '{APPROVES}'.")
+    if record.group == "lots":  # who takes a lot in may also release it: the label is compared, nothing is judged
+        return
     names = entered_by(session, record)
     if by.named and by.name.casefold() in {name.casefold() for name in names}:
         yield Obstacle("person", f"{by.name} entered it, or the coupons behind it; another person approves.")

@@ -4,12 +4,15 @@ from __future__ import annotations
 
 import re
 from collections.abc import Iterable, Mapping, Sequence
+from functools import reduce
+from operator import or_
 from typing import Any
 
 from sqlalchemy import Row, Select, func, select
 
 from server.library.nearest import nearest_words
 from server.library.record import MOST, Act, Approval, Factor, Link, NotFoundError, Record
+from server.library.states import FOUND_GOOD, word
 from server.storage import Session
 from server.storage.evidence_tables import ActRow, HeadRow
 from server.storage.tables import Record as RecordRow
@@ -100,13 +103,13 @@ def _acts(session: Session, revision_ids: Sequence[int]) -> list[tuple[int, Act]
 
 def _record(row: Row[RecordRow, RevisionRow, HeadRow], acts: Sequence[Act]) -> Record:
     record, revision, head = row
-    approved = [act for act in acts if act.status == "approved"]
+    approved = [act for act in acts if act.status in FOUND_GOOD]
     return Record(
         key=record.key,
         group=record.group,
         revision=revision.n,
         name=revision.name,
-        status=acts[-1].status if acts else revision.status,
+        status=word(record.group, acts[-1].status if acts else revision.status),
         values=revision.entry,
         details=revision.details,
         source=revision.source,
@@ -121,6 +124,7 @@ def _record(row: Row[RecordRow, RevisionRow, HeadRow], acts: Sequence[Act]) -> R
         chain=tuple(_factor(each) for each in revision.chain),
         approval=_approval(approved[-1]) if approved else None,
         put_forward=bool(acts) and bool(acts[-1].detail.get(PUT_FORWARD)),
+        acted=reduce(or_, (dict(act.detail) for act in acts), {}),
         revision_id=revision.id,
     )
 

@@ -68,7 +68,8 @@ class Record:
 
     ``newest`` is the record's last revision; ``in_force`` the one that a reference without a revision takes, with its
     status (None: no revision was ever approved, put on hold, withdrawn or superseded). ``approval`` is the last one
-    this revision had, whatever became of it since.
+    this revision had (of a set its acceptance, of a lot its release), whatever became of it since; ``acted`` is what
+    was told with its acts, such as the day a lot was opened.
     """
 
     key: str
@@ -90,6 +91,7 @@ class Record:
     chain: tuple[Factor, ...] = ()
     approval: Approval | None = None
     put_forward: bool = False
+    acted: Mapping[str, Any] = field(default_factory=dict)
     revision_id: int = 0
 
     @property

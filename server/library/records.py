@@ -16,6 +16,7 @@ from server.library.groups import ALL, STATUSES, Group
 from server.library.links import Given, pinned_records, read_chain, read_links
 from server.library.reading import get, is_key
 from server.library.record import Factor, Record
+from server.library.states import LOT_STATES, SET_STATES, first, word
 from server.library.values import check_entry, complete_value
 from server.storage import Session
 from server.storage.evidence_tables import LinkRow
@@ -131,6 +132,8 @@ def edit(
 
 def _next_status(old: Record) -> str:
     """A new revision is work in progress: what was approved, or a value put forward, begins again as a draft."""
+    if old.group in ("sets", "lots"):
+        return first(old.group)
     return "draft" if old.group == "values" or old.status == "approved" or old.put_forward else old.status
 
 
@@ -185,7 +188,12 @@ def _chain(
 
 def _status(faults: list[Fault], group: Group, status: str) -> str:
     """A status somebody may enter: never "approved", and of a value only that it is a draft."""
-    fields.choice(faults, "status", status, STATUSES)
+    status = word(group.name, status)
+    known = {"sets": SET_STATES, "lots": LOT_STATES}.get(group.name, STATUSES)
+    fields.choice(faults, "status", status, known)
+    if group.name in ("sets", "lots") and status in known and status not in (first(group.name), "rejected"):
+        message = f"{group.one} begins as {first(group.name)!r}; what comes after is done on its page, under a name."
+        faults.append(Fault("status", message))
     if status == "approved":
         message = "Nobody enters 'approved': save the record as a draft, then have another person approve it."
         faults.append(Fault("status", message))

@@ -11,6 +11,7 @@ from server.errors import DocumentError, Fault
 from server.library import reading
 from server.library.coupon_sets import in_words
 from server.library.groups import ALL, BY_SECTION, STOPPED, Group
+from server.library.lot_life import lot_state
 from server.library.nearest import nearest_words
 from server.library.properties import HYBRID, HYBRID_FIELDS
 from server.library.record import Factor, Link, NotFoundError, Record
@@ -149,6 +150,8 @@ def standing(record: Record) -> str:
     A later hold or withdrawal stops the older revisions too. A later approval makes an older approved or provisional
     revision superseded; a draft or indicative one stays what it was, as superseded would count for more.
     """
+    if record.group == "lots":
+        return lot_state(record)
     later = record.in_force is not None and record.in_force > record.revision
     if later and record.in_force_status is not None and record.in_force_status in STOPPED:
         return record.in_force_status

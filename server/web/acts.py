@@ -10,6 +10,7 @@ from fastapi.responses import RedirectResponse, Response
 from server import library
 from server.errors import DocumentError
 from server.library import Record
+from server.library.lot_acts import TOLD
 from server.storage import Session
 from server.web import record_page
 from server.web.inputs import DbSession, FormValues, Id, whole
@@ -18,7 +19,7 @@ from server.web.who import Who
 
 router = APIRouter(prefix="/library", include_in_schema=False)
 
-_BOXES = ("note", "outside_checker", "checked_on", "reason", "status")
+_BOXES = ("note", "outside_checker", "checked_on", "reason", "status", *TOLD)
 
 
 @router.post("/{key}/revisions/{revision}/answers", name="answer_question")
@@ -66,14 +67,20 @@ def approve_record(request: Request, session: DbSession, values: FormValues, who
 
 @router.post("/{key}/state", name="set_record_state")
 def set_record_state(request: Request, session: DbSession, values: FormValues, who: Who, key: str) -> Response:
-    """Put a revision on hold, withdraw it, or take it back to work, with the reason."""
+    """Bring a revision to another state of its group, with the reason."""
     return _act(
         request,
         session,
         values,
         key,
         lambda n: library.set_status(
-            session, key, values.get("status", ""), by=who, reason=values.get("reason", ""), revision=n
+            session,
+            key,
+            values.get("status", ""),
+            by=who,
+            reason=values.get("reason", ""),
+            revision=n,
+            told={name: values.get(name, "") for name in TOLD},
         ),
     )
 

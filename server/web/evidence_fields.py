@@ -48,6 +48,7 @@ BOXES: dict[str, tuple[Box, ...]] = {
         Box("maker_expiry", "Maker's expiry", hint="year-month-day"),
         Box("received", "Received on", hint="year-month-day"),
         Box("opened", "Opened on", hint="year-month-day"),
+        Box("days_after_opening", "Days of use once opened", hint="the earlier of that and the maker's expiry counts"),
     ),
     "values": (
         Box("property", "Property", choices=tuple((name, name) for name in PROPERTIES)),

@@ -11,7 +11,8 @@ from fastapi.responses import Response
 
 from server import library
 from server.errors import DocumentError
-from server.library import ALL, STATUSES
+from server.library import ALL
+from server.library.states import ALL_STATES
 from server.storage import Session
 from server.web import forms, record_form, record_page, set_form, sets
 from server.web.evidence_fields import TITLES
@@ -44,7 +45,7 @@ def list_records(
         session,
         q,
         group=group if group in ALL else None,
-        status=status if status in STATUSES else None,
+        status=status if status in ALL_STATES else None,
         adherend=adherend,
         property=property if property in library.PROPERTIES else "",
         limit=_A_PAGE,
@@ -56,7 +57,7 @@ def list_records(
         records=found.records,
         titles=TITLES,
         ones={name: known.one for name, known in ALL.items()},
-        statuses=STATUSES,
+        statuses=ALL_STATES,
         properties=list(library.PROPERTIES),
         asked={name: text for name, text in asked.items() if text},
         narrowed=any(text for name, text in asked.items() if name != "group"),
@@ -66,6 +67,7 @@ def list_records(
         a_page=_A_PAGE,
         waiting=() if any(asked.values()) or offset else library.waiting(session, limit=20),
         in_short=record_form.in_short,
+        standing=library.standing,
     )
 
 

@@ -11,7 +11,7 @@ from fastapi.responses import Response
 from markupsafe import Markup
 
 from server import library, sheets
-from server.library import ALL, Link, Record, reading
+from server.library import ALL, Link, Record, reading, states
 from server.library.obstacles import others_who_may
 from server.people import APPROVES, Person
 from server.storage import Session
@@ -22,22 +22,21 @@ from server.web.pages import Boxes, page
 from server.web.set_columns import SHARES
 from server.web.who import signed
 
-NEXT = {
-    "draft": ("on hold", "withdrawn"),
-    "indicative": ("on hold", "withdrawn"),
-    "provisional": ("on hold", "withdrawn"),
-    "approved": ("on hold", "withdrawn", "superseded"),
-    "on hold": ("draft", "withdrawn"),
-    "superseded": (),
-    "withdrawn": (),
-}
-"""What may be done with a revision, beside putting it forward and approving it."""
 IN_WORDS = {
     "on hold": "Put on hold",
     "withdrawn": "Withdraw",
     "superseded": "Mark as superseded",
     "draft": "Take back to work (draft)",
+    "tested": "Take back to work (tested)",
+    "reviewed": "Reviewed",
+    "rejected": "Reject",
+    "quarantined": "Put in quarantine",
+    "opened": "Opened",
+    "extended": "Extended by a retest",
 }
+"""The steps that may be done with a revision, beside putting it forward and finding it good."""
+GOOD_WORDS = {"sets": ("Accept", "Accepted"), "lots": ("Release", "Released")}
+"""What an approval is called where it has another name: the act, and who did it."""
 
 
 @dataclass(frozen=True)
@@ -87,7 +86,9 @@ def show(request: Request, session: Session, record: Record, *, errors: Mapping[
         obstacles=obstacles,
         may_approve=_may_be_approved(record) and _approvable(session, person, obstacles),
         forward=_may_be_put_forward(record),
-        steps=[(status, IN_WORDS[status]) for status in NEXT[record.status]],
+        steps=[(status, IN_WORDS[status]) for status in states.steps(record.group, record.status)],
+        good_words=GOOD_WORDS.get(record.group, ("Approve", "Approved")),
+        life=library.life(record),
         acts=library.acts(session, record.key, record.revision),
         revisions=library.revisions(session, record.key),
         uses=library.standing_on(session, record.key) if record.group != "lots" else lot.uses if lot else (),
@@ -169,7 +170,7 @@ STRENGTHS = {
 
 
 def _may_be_approved(record: Record) -> bool:
-    return record.status in ("draft", "indicative", "provisional", "on hold")
+    return record.status in (*states.IN_WORK, "on hold")
 
 
 def _approvable(session: Session, person: Person, obstacles: Sequence[library.Obstacle]) -> bool:
@@ -180,7 +181,7 @@ def _approvable(session: Session, person: Person, obstacles: Sequence[library.Ob
 
 
 def _may_be_put_forward(record: Record) -> bool:
-    return record.status in ("draft", "indicative", "provisional") and record.revision == record.newest
+    return record.status in states.IN_WORK and record.group != "lots" and record.revision == record.newest
 
 
 def boxes_of_draft(session: Session, key: str, system: str) -> dict[str, str]:

@@ -181,7 +181,7 @@ def test_only_the_newest_revision_that_passes_is_issued(session: Session, saved:
     assert "only the newest" in faults(issue, session, saved)["revision"]
 
 
-@pytest.mark.parametrize(("key", "status"), [("V-001", "on hold"), ("T-001", "withdrawn"), ("B-001", "withdrawn")])
+@pytest.mark.parametrize(("key", "status"), [("V-001", "on hold"), ("T-001", "rejected"), ("B-001", "withdrawn")])
 def test_what_is_stopped_now_holds_a_check_back_for_good(
     session: Session, saved: SavedRevision, key: str, status: str
 ) -> None:
@@ -193,10 +193,12 @@ def test_what_is_stopped_now_holds_a_check_back_for_good(
     assert any(f"is {status} now" in each.text for each in held)
 
 
-def test_a_lot_on_hold_holds_back_the_checks_that_stand_on_its_coupons(session: Session, saved: SavedRevision) -> None:
+def test_a_lot_in_quarantine_holds_back_the_checks_on_its_coupons(session: Session, saved: SavedRevision) -> None:
     lot = library.add(session, group="lots", name="R2", values={"number": "24-117"}, made_by=ANN.name)
+    assert found(session, saved, "status") == ["lot 24-117"]  # it begins in quarantine
+    library.approve(session, lot.key, by=BO)
     assert found(session, saved, "status") == []
-    library.set_status(session, lot.key, "on hold", by=BO, reason="recall")
+    library.set_status(session, lot.key, "quarantined", by=BO, reason="recall")
     assert found(session, saved, "status") == ["lot 24-117"]
 
 

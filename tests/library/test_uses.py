@@ -22,6 +22,7 @@ def add_lot(session: Session, number: str, **values: Any) -> library.Record:
 
 def test_a_lot_leads_to_the_checks_that_stand_on_it(session: Session) -> None:
     lot = add_lot(session, "24-117", hardener_lot="H-9")
+    library.approve(session, lot.key, by=BO)
     value = approved_value(session, values={"coupons": coupons(lot="24-117")})
     add_set(session, values={"coupons": coupons(lot="24-118")}, name="other lot")
     bond = add_bond_on(session, value)
@@ -121,7 +122,7 @@ def test_history_tells_of_sets_that_are_made_alike_oldest_first(session: Session
     add_set(session, details=MADE_OF | {"surface_a_preparation": "sawn"})
     add_set(session, values={"property": "pull-off"})
     gone = add_set(session)
-    library.set_status(session, gone.key, "withdrawn", by=BO, reason="wrong labels")
+    library.set_status(session, gone.key, "rejected", by=BO, reason="wrong labels")
     points = library.history(session, new)
     assert [(point.key, point.date, point.n) for point in points] == [
         (old.key, "2025-05-01", 8),

@@ -98,6 +98,11 @@ def test_a_book_of_the_version_before_evidence_keeps_its_records(tmp_path: Path)
             row = f"({n}, 1, {n}, 'Epoxy {n}', '{status}', '{{\"shear_strength\": {n}}}', "
             row += "'{\"surface_a_material\": \"spruce\"}', 'report 1', '', 'Ann', '', '')"
             session.execute(text(f"INSERT INTO record_revisions VALUES {row}".replace(":", r"\:")))
+        session.execute(text("INSERT INTO records VALUES (2, 'L-001', 'lots', '')"))
+        lot = "(3, 2, 1, 'Epoxy lot', 'approved', '{\"number\": \"7\"}', '{}', '', '', 'Ann', '', '')".replace(
+            ":", r"\:"
+        )
+        session.execute(text(f"INSERT INTO record_revisions VALUES {lot}"))
         session.execute(text("INSERT INTO record_search (rowid, key, name, words) VALUES (1, 'B-001', 'Epoxy 2', 'w')"))
     storage.migrate(engine)
     with storage.reading(engine) as session:
@@ -110,5 +115,7 @@ def test_a_book_of_the_version_before_evidence_keeps_its_records(tmp_path: Path)
             library.search(session, status="approved"),
         ):
             assert [each.key for each in found.records] == ["B-001"]
+        assert library.get(session, "L-001").status == "released"  # an older book's word, read in today's
+        assert [each.key for each in library.search(session, status="released").records] == ["L-001"]
         library.edit(session, "B-001", note="later", made_by="Bo")
         assert library.get(session, "B-001").revision == 3

@@ -284,6 +284,9 @@ class TestValue:
         assert answer.content == client.get(f"{value}/revisions/1/evidence.pdf").content
         assert client.get("/library/T-001/revisions/1/evidence.pdf").status_code == 404
         assert client.get(f"{value}/revisions/2/evidence.pdf").status_code == 404
+        none = client.get(f"{value}/revisions/1/evidence-as-approved.pdf")
+        assert none.status_code == 404
+        assert "one is kept when a value is approved" in text_of(none)
 
 
 PLAIN = {
@@ -459,3 +462,22 @@ class TestTwoPeople:
         assert "Approved by Bo" in text
         assert "faces seen" in text
         assert "Ann" in text
+
+
+class TestLotStates:
+    def test_a_lot_is_released_and_opened_and_what_is_wrong_is_said_beside_its_box(self, client: TestClient) -> None:
+        client.post("/library/new/lots", data={"name": "R2", "number": "24-117", "maker_expiry": "2999-01-31"})
+        page = client.get("/library/L-001").text
+        assert "status-quarantined" in page
+        assert "Release it" in page
+        assert client.post("/library/L-001/approve", data={"revision": "1"}).status_code == 303
+        assert "status-released" in client.get("/library/L-001").text
+        refused = client.post("/library/L-001/state", data={"status": "opened", "reason": "job 7", "on": "3/4/26"})
+        assert refused.status_code == 422
+        assert "year-month-day" in text_of(refused)
+        assert 'value="3/4/26"' in refused.text
+        done = client.post("/library/L-001/state", data={"status": "opened", "reason": "job 7", "on": "2026-04-03"})
+        assert done.status_code == 303
+        assert "2026-04-03" in client.get("/library/L-001").text
+        refused = client.post("/library/L-001/state", data={"status": "extended", "reason": "retest"})
+        assert "name the coupon set of the retest" in text_of(refused)
