@@ -7,7 +7,7 @@ every piece, found by finite elements; joints are rigid or springs. The same mat
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Hashable, Sequence
 from dataclasses import astuple, dataclass, field
 
 import numpy as np
@@ -15,11 +15,11 @@ import numpy as np
 from server.errors import InputError, positive
 from server.mechanics.field_bonds import PARTS, flows, knots, runs
 from server.mechanics.field_elements import elements, reference, unknowns
-from server.mechanics.field_layout import Bond, Layout, lay_out
+from server.mechanics.field_layout import Bond, lay_out
 from server.mechanics.field_mesh import Mesh, mesh
 from server.mechanics.field_sizes import Fineness
-from server.mechanics.field_system import Solved, bonded_parts, put_together, yielding
-from server.mechanics.polygon import Array
+from server.mechanics.field_system import Parts, Solved, bonded_parts, put_together, yielding
+from server.mechanics.polygon import Array, Edges
 from server.mechanics.section import Piece, SectionProperties
 from server.remembered import Remembered
 
@@ -127,16 +127,16 @@ def shear_field(
     for bond in bonds:
         if bond.stiffness is not None:
             positive("stiffness", bond.stiffness, "N/mm3")
-    layout = lay_out(properties.edges, bonds)
-    found = _attempt(layout, E, G, properties, bonds, steps[0])
+    found = _attempt(E, G, properties, bonds, steps[0])
     for fineness in steps[1:]:
         if found.converged:
             break
-        found = _attempt(layout, E, G, properties, bonds, fineness)
+        found = _attempt(E, G, properties, bonds, fineness)
     return found
 
 
 _fields: Remembered[Field] = Remembered(24)  # a shop's people look at a few sections at a time
+_meshes: Remembered[tuple[Mesh, Parts]] = Remembered(12)  # by shapes and joints: new moduli need no new mesh
 
 
 def remembered_field(pieces: Sequence[Piece], properties: SectionProperties, bonds: Sequence[Bond]) -> Field:
@@ -167,12 +167,28 @@ def remembered_field(pieces: Sequence[Piece], properties: SectionProperties, bon
     """
     key = (
         tuple((p.outline.tobytes(), *(hole.tobytes() for hole in p.holes), p.E, p.G) for p in pieces),
-        tuple(
-            (b.first, b.second, b.start.tobytes(), b.end.tobytes(), b.gap, b.width, b.stiffness, b.ring is None)
-            for b in bonds
-        ),
+        tuple((*_line_key(b), b.stiffness) for b in bonds),
     )
     return _fields.of(key, lambda: shear_field(pieces, properties, bonds))
+
+
+def _line_key(bond: Bond) -> tuple[Hashable, ...]:
+    """Where a bond lies."""
+    ring = None if bond.ring is None else bond.ring.tobytes()
+    return (bond.first, bond.second, bond.start.tobytes(), bond.end.tobytes(), bond.gap, bond.width, ring)
+
+
+def _meshed(edges: Edges, bonds: Sequence[Bond], fineness: Fineness) -> tuple[Mesh, Parts]:
+    """The mesh of these shapes and joints, from the store where they were meshed before."""
+
+    def make() -> tuple[Mesh, Parts]:
+        layout = lay_out(edges, bonds)
+        grid = mesh(layout, fineness)
+        return grid, bonded_parts(layout, grid)
+
+    curved = None if edges.curved is None else edges.curved.tobytes()
+    outlines = (edges.start.tobytes(), edges.next.tobytes(), edges.owner.tobytes(), curved)
+    return _meshes.of((outlines, tuple(map(_line_key, bonds)), fineness), make)
 
 
 def _shear_modulus(piece: Piece) -> float:
@@ -181,12 +197,9 @@ def _shear_modulus(piece: Piece) -> float:
     return float(positive(f"G of {piece.name}", piece.G, "MPa"))
 
 
-def _attempt(
-    layout: Layout, E: Array, G: Array, properties: SectionProperties, bonds: Sequence[Bond], fineness: Fineness
-) -> Field:
+def _attempt(E: Array, G: Array, properties: SectionProperties, bonds: Sequence[Bond], fineness: Fineness) -> Field:
     """Solve on one mesh, with all functions and without the finest."""
-    grid = mesh(layout, fineness)
-    parts = bonded_parts(layout, grid)
+    grid, parts = _meshed(properties.edges, bonds, fineness)
     stiff = yielding(parts, bonds) == 0
     numbers = unknowns(grid, parts.one[stiff], parts.other[stiff])
     each = elements(grid, E, G, properties.neutral_axis)
