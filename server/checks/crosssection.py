@@ -45,7 +45,7 @@ LEVEL = 1e-9  # of sqrt(EI EI_lateral): a product below it is rounding
 GAP = 0.05  # mm two faces may stand apart and still touch
 
 
-@dataclass(frozen=True)
+@dataclass(frozen=True, eq=False)  # two parts are never the same by what they hold; comparing that is slow
 class Part:
     """A piece of the document, placed: its outline and how far it runs along the member."""
 
@@ -108,7 +108,7 @@ class Part:
         return min(self.end, other.end) > max(self.start, other.start)
 
 
-@dataclass(frozen=True)
+@dataclass(frozen=True, eq=False)
 class Site:
     """A joint of the document placed on its contact."""
 
