@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 from server import documents
 from server.checks.actions import Actions, Curve, Peak, largest
@@ -48,6 +48,28 @@ def check_deflection(
                 write_sag(document, body, actions, aside, group, working)
         if limit is not None:
             found += _sags(document, curve, limit, working, long_term=long_term)
+    return found
+
+
+def more_deflection(document: documents.MemberDocument, actions: Actions, ratio: float, working: Working) -> list[Sag]:
+    """Judge the side that bears, where pieces side by side hang on fasteners that give: ``ratio`` times the whole."""
+    limit = document.member.deflection_limit
+    found: list[Sag] = []
+    if ratio <= 1 or limit is None:
+        return found
+    for curve, long_term in ((actions.sag, False), (actions.long_term, True)):
+        if curve is None:
+            continue
+        for start, end, kind in spans(document.member):
+            peak = largest(*curve.over(start, end).absolute())
+            more = working.step(
+                "Deflection of what bears, side by side", "u", "k_h*u_w",
+                {"k_h": (ratio, ""), "u_w": (peak.value, "mm")},
+                unit="mm", source="k_h: with the fasteners' give over all pieces as one; u_w: as one",
+                group=LASTING if long_term else AT_ONCE,
+            )  # fmt: skip
+            own = replace(peak, value=more)
+            found.append(_sag(start, end, kind, own, limit, curve.names, working, long_term))
     return found
 
 

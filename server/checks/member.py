@@ -16,7 +16,7 @@ from server.checks.cautions import NOT_CHECKED, add_cautions
 from server.checks.combined_flow import CombinedAlong
 from server.checks.contours import Look, contours
 from server.checks.crosssection import Body, CrossSection, build
-from server.checks.deflection import Sag, check_deflection
+from server.checks.deflection import Sag, check_deflection, more_deflection
 from server.checks.drawing import diagrams, drawing
 from server.checks.fall_back import FallBack, glue_gone, judge_fall_back
 from server.checks.field_steps import write_fields
@@ -36,6 +36,7 @@ from server.checks.scan import Scan, scan
 from server.checks.schedule import add_schedules
 from server.checks.section_field import doubts
 from server.checks.sharing import state_sharing
+from server.checks.side_by_side import Handing, judge_side_by_side
 from server.checks.slide import Slide, slide
 from server.checks.slip_steps import write_effective, write_method
 from server.checks.thin_webs import add_web_claims
@@ -106,10 +107,13 @@ def _round(
     judge = Judge(document, actions, book, findings, Places(document))
     twisted = twist(document, body, rigid, findings)
     flows = _flows(document, body, rigid, sliding, twisted, findings)
-    joints, pieces, fall_back = _judge(body, scan(body, actions), judge, statics, flows, sliding, upper, twisted)
-    state_sharing(body, joints, judge)
+    judged = _judge(body, scan(body, actions), judge, statics, flows, sliding, upper, twisted)
+    joints, pieces, fall_back, handing = judged
+    state_sharing(body, joints, judge, handing)
     add_schedules(document, body, rigid, joints, flows, book)
     sags = check_deflection(document, body, actions, book, findings, upper_stiffness=upper)
+    if handing is not None and not upper:
+        sags += more_deflection(document, actions, handing.ratio, book)
     ends = check_ends(document, body, actions, judge, book, findings, after=_shared(document, body, findings))
     lasting = check_lasting(document, actions, joints, book, findings, ends)
     add_cautions(document, body, actions, joints, findings)
@@ -219,7 +223,7 @@ def _judge(
     sliding: Slide | None,
     upper_stiffness: bool,
     twisted: Twist | None,
-) -> tuple[list[JointCheck], list[PieceCheck], FallBack | None]:
+) -> tuple[list[JointCheck], list[PieceCheck], FallBack | None, Handing | None]:
     """Gather every claim, weigh all at once, write joints and pieces in the order of the document."""
     joints = claim_joints(body, flows, judge)
     pieces = claim_pieces(body, scanned, judge, upper_stiffness=upper_stiffness, slide=sliding, twist=twisted)
@@ -227,6 +231,7 @@ def _judge(
     add_sandwich_claims(joints, pieces, body, judge, upper_stiffness=upper_stiffness)
     if judge.actions.across is None:
         add_rib_claims(joints, pieces, body, judge, sliding=sliding is not None)
+    handing = judge_side_by_side(judge.document, body, joints, pieces, judge, upper_stiffness=upper_stiffness)
     gone: list[PieceCheck] = []
     if flows.gone is not None:
         gone = claim_pieces(body, scanned, judge, upper_stiffness=False, slide=flows.gone.slide, fall_back=True)
@@ -239,8 +244,9 @@ def _judge(
     for piece, own in zip(pieces, rest, strict=False):
         write_piece(piece, own, body, judge)
     if flows.gone is None:
-        return joints, pieces, None
-    return joints, pieces, judge_fall_back(flows.gone, joints, list(zip(gone, rest[len(pieces) :], strict=True)), judge)
+        return joints, pieces, None, handing
+    left = list(zip(gone, rest[len(pieces) :], strict=True))
+    return joints, pieces, judge_fall_back(flows.gone, joints, left, judge), handing
 
 
 def _in_groups(weighed: Sequence[Weighed | None], claimed: Sequence[Sequence[Claim]]) -> list[list[Weighed | None]]:

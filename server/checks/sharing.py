@@ -7,7 +7,8 @@ stiffness; nothing flows along the joint, and what it hands over from one side t
 
 from __future__ import annotations
 
-from typing import Literal
+from collections.abc import Mapping
+from typing import Literal, Protocol
 
 import numpy as np
 
@@ -44,7 +45,17 @@ def sharing(site: Site, stretch: Stretch) -> Sharing:
     return "side by side" if arm <= CENTRED * depth else "upright"
 
 
-def state_sharing(body: Body, joints: list[JointCheck], judge: Judge) -> None:
+class Handed(Protocol):
+    """What was reckoned of fasteners that hand a load over: words by the joint's number, and whether it is judged."""
+
+    @property
+    def told(self) -> Mapping[int, str]: ...
+
+    @property
+    def settled(self) -> bool: ...
+
+
+def state_sharing(body: Body, joints: list[JointCheck], judge: Judge, handed: Handed | None = None) -> None:
     """Put the sharing into each joint's block; side by side, write the shares and say what the joint hands over."""
     for check in joints:
         site = check.site
@@ -57,10 +68,10 @@ def state_sharing(body: Body, joints: list[JointCheck], judge: Judge) -> None:
             "How the two sides share", WORDS[kind], source="read off the drawing", group=f"Joint {site.id}"
         )
         if kind == "side by side" and judge.actions.shear is not None:
-            _by_stiffness(check, stretch, judge)
+            _by_stiffness(check, stretch, judge, handed)
 
 
-def _by_stiffness(check: JointCheck, stretch: Stretch, judge: Judge) -> None:
+def _by_stiffness(check: JointCheck, stretch: Stretch, judge: Judge, judged: Handed | None) -> None:
     site, section, actions = check.site, stretch.section, judge.actions
     assert actions.shear is not None
     group, flow = f"Joint {site.id}", section.flows[site.index]
@@ -85,12 +96,17 @@ def _by_stiffness(check: JointCheck, stretch: Stretch, judge: Judge) -> None:
     )  # fmt: skip
     check.result["share"] = share
     check.result["handed_over"] = handed
+    words = judged.told.get(site.index, "") if judged is not None else ""
+    if words and judged is not None and judged.settled:
+        text = f"{site.id}: side by side, so {names} takes {100 * share:.0f} % of the load by its stiffness; {words}"
+        judge.findings.caution("load sharing", text)
+        return
     judge.findings.caution(
         "load sharing",
         f"{site.id}: side by side, so {names} takes {100 * share:.0f} % of the load by its stiffness, and nothing "
         f"flows along the joint. Where supports and loads bear on the other side alone, it hands {handed:,.4g} N "
         f"over at a support{_fasteners(check, handed, judge)}, and the same share of every point load where it stands: "
-        "see that it can, or let both sides bear.",
+        "see that it can, or let both sides bear." + (f" By the fasteners' give, {words}" if words else ""),
         answer=True,
     )
 

@@ -201,11 +201,12 @@ class Support(Model):
 
 
 class Member(Model):
-    """The member's length and how it is held."""
+    """The member's length and how it is held; ``bears_on`` are the pieces that supports and loads bear on."""
 
     length: Size
     supports: list[Support] = Field(min_length=1, max_length=100)
     hinges: list[Place] = Field(default_factory=list, max_length=100)
+    bears_on: list[Name] = Field(default_factory=list, max_length=200)
     held_sideways: bool = Field(default=True, strict=True)
     deflection_limit: SpanOver | None = None
 

@@ -53,6 +53,7 @@ class Parts:
     length: float | None = None
     supports: list[Support | None] = field(default_factory=list)
     hinges: list[float | None] = field(default_factory=list)
+    bears_on: list[str] = field(default_factory=list)
     held_sideways: bool = True
     loads: dict[str, list[Load | None]] | None = None
     combinations: dict[str, Combination | None] = field(default_factory=dict)
@@ -83,6 +84,7 @@ def parts_of(document: MemberDocument) -> Parts:
         length=member.length,
         supports=list(member.supports),
         hinges=list(member.hinges),
+        bears_on=list(member.bears_on),
         held_sideways=member.held_sideways,
         loads={case: list(loads) for case, loads in document.loads.items()},
         combinations=dict(document.combinations),
@@ -106,11 +108,16 @@ def salvage(raw: Mapping[str, Any]) -> Parts:
         length=_place(member.get("length")) or None,
         supports=_row("support", supports),
         hinges=[_place(hinge) for hinge in hinges] if isinstance(hinges, list) else [],
+        bears_on=[name for name in _list(member.get("bears_on")) if isinstance(name, str)],
         held_sideways=member.get("held_sideways", True) is not False,
         loads={case: _row("load", rows) for case, rows in loads.items()} if loads else None,
         combinations=_table("combination", raw.get("combinations", {})) or {},
         service=_one("service", raw.get("service")),
     )
+
+
+def _list(value: object) -> list[object]:
+    return value if isinstance(value, list) else []
 
 
 def _object(value: object) -> dict[str, Any] | None:

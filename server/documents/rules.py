@@ -41,6 +41,7 @@ def faults(parts: Parts) -> Iterator[Fault]:
     yield from _repeated_joints(parts)
     yield from _supports(parts)
     yield from _hinges(parts)
+    yield from _bearing(parts)
     yield from _loads(parts)
     yield from _combinations(parts)
     yield from _service(parts)
@@ -320,6 +321,12 @@ def _service(parts: Parts) -> Iterator[Fault]:
     for name in parts.service.moisture_change:
         if parts.materials is not None and name not in parts.materials:
             yield Fault(f"service.moisture_change.{name}", unknown(name, "material", parts.materials))
+
+
+def _bearing(parts: Parts) -> Iterator[Fault]:
+    for index, name in enumerate(parts.bears_on):
+        if parts.pieces is not None and name not in parts.pieces:
+            yield Fault(f"member.bears_on[{index}]", unknown(name, "piece", parts.pieces))
 
 
 def _basis(parts: Parts) -> Iterator[Fault]:

@@ -173,6 +173,8 @@ class _Writer:
             yield self.row(f"Hinge {number}", at, "length")
         held = member.get("held_sideways", True)
         yield Row("Held sideways", "yes" if held is True else "no" if held is False else typed_text(held), "")
+        if member.get("bears_on"):
+            yield Row("Supports and loads bear on", ", ".join(map(str, member["bears_on"])), "")
         if member.get("deflection_limit") is not None:
             limit = typed_text(member["deflection_limit"])
             yield Row("Deflection limit", limit if "/" in limit else f"span / {limit}", "")

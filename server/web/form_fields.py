@@ -393,6 +393,13 @@ SINGLES: dict[str, Box] = {
             path="member.held_sideways",
             choices=(("yes", "yes, along its length"), ("no", "no, at its supports only")),
         ),
+        Box(
+            "bears_on",
+            "Supports and loads bear on",
+            path="member.bears_on",
+            wide=True,
+            hint="pieces side by side: those that bear; blank: not said",
+        ),
         Box("deflection_limit", "Deflection limit", path="member.deflection_limit", hint="span over; blank: none"),
         Box(
             "slip",

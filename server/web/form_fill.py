@@ -128,6 +128,7 @@ def _joint(values: Values, index: int, joint: Raw, system: str) -> None:
 
 def _member(member: Raw, values: Values, system: str) -> None:
     values["span"] = show(member.get("length"), "position", system)
+    values["bears_on"] = ", ".join(f'"{each}"' if "," in each else each for each in member.get("bears_on") or ())
     values["held_sideways"] = "no" if member.get("held_sideways") is False else "yes"
     values["deflection_limit"] = show(member.get("deflection_limit"), "", system)
     for index, hinge in enumerate(member.get("hinges") or ()):

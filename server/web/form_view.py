@@ -168,7 +168,7 @@ class Form:
 
 _PARTS: dict[str, tuple[str, ...]] = {
     "loads": ("loads", "load_case"),
-    "member": ("held_sideways", "deflection_limit", "supports", "hinges"),
+    "member": ("held_sideways", "deflection_limit", "bears_on", "supports", "hinges"),
     "basis": tuple(name for name in SINGLES if name.startswith("basis.")),
     "analysis": ("slip", "shear_deformation", "field", "spacing_step", "rules"),
     "service": ("lowest", "highest", "cure", "moisture"),

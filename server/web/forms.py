@@ -291,6 +291,8 @@ def _read_member(
     if hinges:
         member["hinges"] = hinges
     member["held_sideways"] = values.get("held_sideways", "yes") != "no"
+    if names := split(values.get("bears_on", "")):
+        member["bears_on"] = names
     if values.get("deflection_limit"):
         member["deflection_limit"] = values["deflection_limit"]
     reading.raw["member"] = member
