@@ -57,7 +57,7 @@ def keep_fastener(session: Session, revision_id: int, *, made_by: str = "") -> R
         values=_values(saved.document, result),
         source=f"{method}; {sheet}",
         note=_REFERENCE if result.get("method") == "yield-limit" else "",
-        details={"test_method": method},
+        details={"test_method": method, **_members(saved.document)},
         made_by=made_by,
     )
 
@@ -66,6 +66,19 @@ def _method(result: Mapping[str, Any]) -> str:
     if result["kind"] == "load-slip":
         return f"EN 26891, {result['n']} tests of the shop, characteristic value"
     return _METHODS[str(result["method"])]
+
+
+def _members(document: Mapping[str, Any]) -> dict[str, str]:
+    """The parts that the strength was found with: it holds for those."""
+    told = {}
+    for side in ("side", "main"):
+        part = document.get(side)
+        if isinstance(part, Mapping):
+            told[f"{side}_member"] = str(part.get("kind") or "timber")
+    thickness = (document.get("side") or {}).get("thickness")
+    if thickness is not None:
+        told["side_thickness"] = thickness if isinstance(thickness, str) else f"{thickness:.12g} mm"
+    return told
 
 
 def _values(document: Mapping[str, Any], result: Mapping[str, Any]) -> dict[str, str]:

@@ -3,7 +3,8 @@
 from server.library.acts import approve, approve_invented, put_forward, set_status, waiting
 from server.library.chains import ValueChain, chain_line, chains_on
 from server.library.coupon_sets import coupon_document, coupon_result, document_of, measured_result
-from server.library.differences import Difference, differences
+from server.library.differences import differences
+from server.library.differing import Difference
 from server.library.finding import search
 from server.library.groups import ALL, EVIDENCE, GROUPS, STATUSES, Group
 from server.library.history import Point, charted, history

@@ -75,7 +75,15 @@ GROUPS = _by_name(
         "fasteners",
         "F",
         Fastener,
-        {"product": "Product", "test_method": "Test or rule the values come from", "standard": "Product standard"},
+        {
+            "product": "Product",
+            "test_method": "Test or rule the values come from",
+            "standard": "Product standard",
+            "side_member": "Side member it was found with: material",
+            "side_thickness": "Side member: thickness",
+            "main_member": "Main member it was found with: material",
+            "exposure": "Exposure",
+        },
     ),
     Group(
         "materials",

@@ -3,14 +3,16 @@
 from __future__ import annotations
 
 import re
-from collections.abc import Mapping, Sequence
+from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import dataclass
 from typing import Any
 
 from server import documents, units
 from server.errors import InputError
+from server.library import reading
 from server.library.coupon_sets import coupon_document
 from server.library.record import Record
+from server.storage import Session
 
 
 @dataclass(frozen=True)
@@ -66,6 +68,17 @@ def described(record: Record) -> Description:
         temperatures=_temperatures(record) if is_set else None,
         exposure=details.get("exposure", ""),
     )
+
+
+def tests_behind(session: Session, record: Record) -> Iterator[tuple[Description, Record]]:
+    """Return what each value that a record pins was tested as, with the value; the same set once."""
+    seen = set[str]()
+    for value in reading.many(session, record.pins.values()).values():
+        behind = value.links.get("set")
+        tested = value if behind is None else reading.many(session, [behind]).get(behind)
+        if tested is not None and str(tested.itself) not in seen:
+            seen.add(str(tested.itself))
+            yield described(tested), value
 
 
 def number(value: object, kind: str) -> float | None:
@@ -138,6 +151,40 @@ def materials_of(document: Mapping[str, Any]) -> list[tuple[str, str, tuple[str,
         sides = (str(strip["material"]), *dict.fromkeys(str(each["material"]) for each in host.values()))
         found.append((str(document["adhesive"]), "the strip", sides))
     return found
+
+
+@dataclass(frozen=True)
+class Fastened:
+    """One joint that a fastener holds: where, the materials, and the thinner piece [mm] where that is plain."""
+
+    fastener: str
+    place: str
+    materials: tuple[str, ...]
+    thinner: float | None
+
+
+def fastened(document: Mapping[str, Any]) -> list[Fastened]:
+    """Return the joints of a member that fasteners hold; those that only press or stop peel carry nothing."""
+    section = document.get("section")
+    if not isinstance(section, Mapping):
+        return []
+    pieces, found = section.get("pieces", {}), []
+    for joint in section.get("joints", ()):
+        role = joint.get("role") or ("press" if joint.get("adhesive") else "sole")
+        if joint.get("fastener") and role not in ("press", "peel-stop"):
+            both = [pieces[name] for name in joint["between"]]
+            sizes = [size for piece in both if (size := _least_size(piece)) is not None]
+            materials = tuple(str(piece["material"]) for piece in both)
+            thinner = min(sizes) if len(sizes) == 2 else None
+            found.append(Fastened(str(joint["fastener"]), "/".join(joint["between"]), materials, thinner))
+    return found
+
+
+def _least_size(piece: Mapping[str, Any]) -> float | None:
+    if piece.get("shape", "rectangle") != "rectangle":
+        return None
+    sizes = [number(piece.get(name), "length") for name in ("width", "depth")]
+    return None if None in sizes else min(size for size in sizes if size is not None)
 
 
 def pairs(surfaces: Sequence[Surface]) -> Sequence[tuple[Surface, Surface]]:
