@@ -344,11 +344,12 @@ def _strength_needed(check: JointCheck, demand: Demand, body: Body, judge: Judge
     assert asked_of is not None
     asked_of = asked_of.reduced(bond_reductions(site, body, judge.rules))
     factors = np.array(asked_of.duration)
-    if np.all(np.isnan(factors)):
+    unknown = np.isnan(factors)
+    if unknown.all():
         return None
     flow = demand.flow if check.times is None else demand.flow * check.times
     stress = formula(STRESS).array({"q": flow, "b": site.width, "c": site.spec.coverage})
-    row = int(np.nanargmax(stress / factors))
+    row = int(np.where(unknown, -1.0, stress / factors).argmax())
     method = "safety factor" if judge.document.basis.method == "allowable" else "partial factor"
     resists = resistance_formula("1", len(asked_of.multipliers)).removeprefix("1*")
     return judge.working.step(

@@ -47,7 +47,7 @@ class Formula:
         self.names = names(self.tree)
         self.trivial = isinstance(self.tree, Name)
         self._compiled: dict[frozenset[str], Callable[..., float]] = {}
-        self._lines: dict[tuple[frozenset[str], int], str] = {}
+        self._lines: dict[tuple[frozenset[str], int], Callable[..., str]] = {}
 
     def value(self, values: Mapping[str, float | list[float]], lists: frozenset[str]) -> float:
         """The formula's value; ``lists`` names the quantities that are lists (they may stand under ``sum`` only).
@@ -77,8 +77,8 @@ class Formula:
         """
         line = self._lines.get((lists, count))
         if line is None:
-            line = self._lines[lists, count] = _with_slots(self.tree, lists, count)
-        return line.format_map(texts)
+            line = self._lines[lists, count] = _line_maker(self, lists, count)
+        return line(**texts)
 
 
 def len_of(values: Mapping[str, float | list[float]], lists: frozenset[str]) -> int:
@@ -174,10 +174,13 @@ def _lists_only_under_sum(owner: Formula, lists: frozenset[str]) -> None:
 # --- the line with places for numbers ---------------------------------------------------------------------------------
 
 
-def _with_slots(tree: Node, lists: frozenset[str], count: int) -> str:
-    """The line as a format with a slot for every number: ``{V} * {S}``, ``{A[0]} * {u[0]} + {A[1]} * {u[1]}``."""
+def _line_maker(owner: Formula, lists: frozenset[str], count: int) -> Callable[..., str]:
+    """A function of the numbers' texts that writes the line: ``{V} * {S}``, ``{A[0]} * {u[0]} + {A[1]} * {u[1]}``."""
+    tree = owner.tree
     whole = _terms(tree.arguments[0], lists, count) if isinstance(tree, Call) and tree.function == "sum" else None
-    return "".join(whole or _line(tree, lists, count, None))
+    line = "".join(whole or _line(tree, lists, count, None))
+    # As above: only names, numbers and signs that the grammar let in.
+    return eval(f"lambda {', '.join(sorted(owner.names))}: f{line!r}", _MATH)  # type: ignore[no-any-return]  # noqa: S307
 
 
 def _line(node: Node, lists: frozenset[str], count: int, index: int | None) -> list[str]:

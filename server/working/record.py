@@ -85,7 +85,7 @@ class Working:
         kept: dict[str, dict[str, Any]] = {}
         lists = _NO_LISTS
         for name, (given, its_unit) in values.items():
-            if isinstance(given, (float, int)):
+            if type(given) is float or isinstance(given, (float, int)):
                 taken: float | list[float] = float(given)
                 if not isfinite(given):
                     raise InputError(name, _not_finite(name, given, title))
@@ -163,9 +163,9 @@ def _listed(name: str, given: Any, title: str) -> float | list[float]:
             raise InputError(name, _not_finite(name, scalar, title))
         return scalar
     taken = [float(each) for each in given]
-    for position, each in enumerate(taken):
-        if not isfinite(each):
-            raise InputError(name, _not_finite(f"{name}_{position + 1}", each, title))
+    if not all(map(isfinite, taken)):
+        position = next(i for i, each in enumerate(taken) if not isfinite(each))
+        raise InputError(name, _not_finite(f"{name}_{position + 1}", taken[position], title))
     return taken
 
 
