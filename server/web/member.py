@@ -20,7 +20,8 @@ from server.web.errors import faults_of
 from server.web.form_fields import VALUE_GROUPS
 from server.web.form_view import Form
 from server.web.inputs import DbSession, FormValues, Id, whole
-from server.web.pages import page, path_for, see
+from server.web.keeping import Filled, form_page, keep, leave_and_save, with_refusal
+from server.web.pages import page, path_for
 from server.web.panel import Asked, Judged, panel, records_offered
 from server.web.steps import working_of
 
@@ -147,32 +148,13 @@ def revise_check(request: Request, session: DbSession, values: FormValues, check
 
 def _save(request: Request, session: Session, values: dict[str, str], job_id: int, check_id: int = 0) -> Response:
     """Save what the form says; refused, the page comes back with the form as typed and its messages (422)."""
-    job = jobs.get(session, job_id)
-    reading = forms.reading_of(values)
-    messages = {**reading.faults, **_unprintable(values)}
-    on_top: list[str] = []
-    if check_id and not values.get("reason", "").strip():
-        messages["reason"] = (
-            "The reason is empty; say in a few words what changed, such as “customer asked for 150 psf”."
-        )
-    if not messages:
-        try:
-            saved = jobs.save(
-                session,
-                job_id=job_id,
-                raw=reading.raw,
-                check_id=check_id or None,
-                mark=values.get("mark") or None,
-                made_by=values.get("made_by", ""),
-                reason=values.get("reason", ""),
-            )
-            return see(request, "show_revision", check_id=saved.check_id, revision=saved.revision)
-        except JointError as error:
-            messages, on_top = forms.place(faults_of(error), reading.paths | forms.BESIDE)
-    judged = judge(session, values, patient=False)
-    judged = replace(
-        judged, result=None, messages={**judged.messages, **messages}, on_top=tuple(on_top) or judged.on_top
-    )
+    job, reading = jobs.get(session, job_id), forms.reading_of(values)
+    faults = {**reading.faults, **_unprintable(values)}
+    filled = Filled(values, reading.raw, reading.paths, faults, "customer asked for 150 psf")
+    kept = keep(request, session, filled, job_id, check_id)
+    if isinstance(kept, Response):
+        return kept
+    judged = with_refusal(judge(session, values, patient=False), kept)
     return _page(request, session, job, values, judged, check_id, status=422)
 
 
@@ -189,29 +171,22 @@ def _page(
     focus: str = "",
     told: str = "",
 ) -> Response:
-    form = _form(request, values, judged, job.id, check_id)
-    return page(
-        request,
-        "check/edit.html",
-        status=status,
-        job=job,
-        check=jobs.revision_of(session, check_id) if check_id else None,
-        form=replace(form, library=_library(session), opened=opened, focus=focus, told=told),
-        layouts=layouts.LAYOUTS,
-        refused=status == 422,
-        lazily=True,
-        swap=False,
-        working=[] if judged.result is None else working_of(judged.result),
-        **_shown(judged, values),
+    form = replace(
+        _form(request, values, judged, job.id, check_id),
+        library=_library(session),
+        opened=opened,
+        focus=focus,
+        told=told,
+    )
+    shown, boxes = _shown(judged, values), "check/_form.html"
+    return form_page(
+        request, session, job, form, judged, shown, check_id, boxes=boxes, status=status, layouts=layouts.LAYOUTS
     )
 
 
 def _form(request: Request, values: Mapping[str, str], judged: Judged, job_id: int, check_id: int = 0) -> Form:
     of_job = {name: path_for(request, name, job_id=job_id) for name in _JOB_ROUTES}
-    leave, save = path_for(request, "show_job", job_id=job_id), of_job["save_check"]
-    if check_id:
-        leave = path_for(request, "show_check", check_id=check_id)
-        save = path_for(request, "revise_check", check_id=check_id)
+    leave, save = leave_and_save(request, job_id, check_id, of_job["save_check"])
     return Form(
         values=values,
         messages=judged.messages,

@@ -6,7 +6,6 @@ A kind brings its questions, its blocks and its check; nothing here knows which 
 from __future__ import annotations
 
 from collections.abc import Mapping
-from dataclasses import replace
 from typing import Any
 
 from fastapi import APIRouter, Request
@@ -22,10 +21,11 @@ from server.storage import Session
 from server.web import one_page_form as forms
 from server.web.errors import faults_of
 from server.web.form_fields import SINGLES
-from server.web.forms import BESIDE, place
+from server.web.forms import place
 from server.web.inputs import DbSession, FormValues, Id, whole
+from server.web.keeping import Filled, form_page, keep, leave_and_save, with_refusal
 from server.web.one_page_form import OneForm
-from server.web.pages import page, path_for, see
+from server.web.pages import page, path_for
 from server.web.panel import Judged, one_page_panel, records_offered
 from server.web.steps import working_of
 
@@ -126,28 +126,13 @@ def save(
 ) -> Response:
     """Save what the form says; refused, the page comes back with the form as typed and its messages (422)."""
     job, reading = jobs.get(session, job_id), forms.read(asked, values)
-    messages = {**reading.faults, **_unprintable(asked, values)}
-    on_top: list[str] = []
-    if check_id and not values.get("reason", "").strip():
-        messages["reason"] = "The reason is empty; say in a few words what changed, such as “thicker side member”."
-    if not messages:
-        try:
-            saved = jobs.save(
-                session,
-                job_id=job_id,
-                raw=reading.raw,
-                check_id=check_id or None,
-                mark=values.get("mark") or None,
-                made_by=values.get("made_by", ""),
-                reason=values.get("reason", ""),
-            )
-            return see(request, "show_revision", check_id=saved.check_id, revision=saved.revision)
-        except JointError as error:
-            messages, on_top = place(faults_of(error), reading.paths | BESIDE)
-    judged = judge(session, asked, values, patient=False)
-    judged = replace(
-        judged, result=None, messages={**judged.messages, **messages}, on_top=tuple(on_top) or judged.on_top
+    faults = {**reading.faults, **_unprintable(asked, values)}
+    kept = keep(
+        request, session, Filled(values, reading.raw, reading.paths, faults, "thicker side member"), job_id, check_id
     )
+    if isinstance(kept, Response):
+        return kept
+    judged = with_refusal(judge(session, asked, values, patient=False), kept)
     return _page(request, session, job, asked, values, judged, check_id, status=422)
 
 
@@ -162,19 +147,10 @@ def _page(
     *,
     status: int = 200,
 ) -> Response:
-    return page(
-        request,
-        "check/one_page.html",
-        status=status,
-        job=job,
-        check=jobs.revision_of(session, check_id) if check_id else None,
-        form=_form(request, session, asked, values, judged, job.id, check_id),
-        refused=status == 422,
-        lazily=True,
-        swap=False,
-        working=[] if judged.result is None else working_of(judged.result),
-        **_shown(judged, asked, values),
-    )
+    form = _form(request, session, asked, values, judged, job.id, check_id)
+    shown = _shown(judged, asked, values)
+    boxes = "check/_one_page_form.html"
+    return form_page(request, session, job, form, judged, shown, check_id, boxes=boxes, status=status, kind=asked.one)
 
 
 def _form(
@@ -189,10 +165,7 @@ def _form(
     def of_kind(name: str) -> str:
         return path_for(request, name, job_id=job_id, kind=asked.kind)
 
-    leave, save_url = path_for(request, "show_job", job_id=job_id), of_kind("save_kind_check")
-    if check_id:
-        leave = path_for(request, "show_check", check_id=check_id)
-        save_url = path_for(request, "revise_check", check_id=check_id)
+    leave, save_url = leave_and_save(request, job_id, check_id, of_kind("save_kind_check"))
     picks = any(ask.record for ask in asks_of(asked.groups).values())
     return OneForm(
         page=asked,
