@@ -80,6 +80,27 @@ def test_a_search_against_the_bare_page(
         assert whole / alone < budget
 
 
+@pytest.mark.parametrize(
+    ("query", "shown", "budget"),
+    [("q=17342", 1, NARROW), ("q=series", 50, BROAD), ("group=values&status=approved", 50, BROAD), ("", 50, BROAD)],
+)
+def test_the_library_page_against_the_bare_page(
+    shop: TestClient, query: str, shown: int, budget: float, capsys: pytest.CaptureFixture[str]
+) -> None:
+    """The page people see: one screen of records, however many there are."""
+    address = f"/library?{query}"
+    answer = shop.get(address)
+    assert answer.text.count('<th scope="row"') == shown
+    assert len(answer.content) < 100_000
+    empty = bare(len(answer.content))
+    gc.collect()
+    alone, whole = quickest(lambda: empty.get("/"), lambda: shop.get(address))
+    with capsys.disabled():
+        print(f"\nlibrary page {query or 'for nothing'} / bare page: {whole / alone:.1f} (budget {budget:g})")
+    if "PYTEST_XDIST_WORKER" not in os.environ:  # another worker beside it blurs both times
+        assert whole / alone < budget
+
+
 def test_a_search_reads_one_page_of_records(shop: TestClient) -> None:
     with storage.reading(shop.app.state.records.engine) as session:  # type: ignore[attr-defined]
         found = library.search(session, "series", limit=50)
