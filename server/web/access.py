@@ -80,6 +80,7 @@ RULES: dict[str, str] = {
     "preview_set": PREPARES,
     "shape_set": PREPARES,
     "answer_question": PREPARES,
+    "exclude_coupon": PREPARES,
     "put_forward": PREPARES,
     "approve_record": APPROVES,
     "set_record_state": APPROVES,

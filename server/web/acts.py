@@ -8,7 +8,7 @@ from fastapi import APIRouter, Request
 from fastapi.responses import RedirectResponse, Response
 
 from server import library
-from server.errors import DocumentError
+from server.errors import DocumentError, Fault
 from server.library import Record
 from server.library.lot_acts import TOLD
 from server.storage import Session
@@ -37,6 +37,27 @@ def answer_question(
         return record_page.show(request, session, record, errors=faults, values={box: values.get(box, "")})
     back = path_for(request, "show_record", key=values.get("back") or key)
     return RedirectResponse(f"{back}#q-{question}", status_code=303)
+
+
+@router.post("/{key}/exclude", name="exclude_coupon")
+def exclude_coupon(request: Request, session: DbSession, values: FormValues, who: Who, key: str) -> Response:
+    """Leave one coupon of a set out, for its cause, without the grid: for sets that are larger than the grid."""
+    number = whole(values.get("number", ""))
+    try:
+        library.exclude(
+            session,
+            key,
+            -1 if number is None else number - 1,
+            cause=values.get("cause", ""),
+            prevented_by=values.get("prevented_by", ""),
+            by=who,
+            based_on=whole(values.get("revision", "")),
+        )
+    except DocumentError as error:
+        renamed = [Fault("number" if each.path == "index" else each.path, each.message) for each in error.faults]
+        faults = beside(DocumentError(renamed), ("cause", "prevented_by", "number"))
+        return record_page.show(request, session, library.get(session, key), errors=faults, values=values)
+    return see(request, "show_record", key=key)
 
 
 @router.post("/{key}/put-forward", name="put_forward")

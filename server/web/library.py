@@ -110,6 +110,8 @@ def show_record(request: Request, session: DbSession, key: str, revision: str = 
 def edit_record(request: Request, session: DbSession, key: str, exclude: str = "") -> Response:
     """Show the form filled with the newest revision; of a set, with ``exclude`` ready to take a coupon's cause."""
     record = library.get(session, key)
+    if record.group == "sets" and (why := set_form.beyond_the_grid(record.itself, record.values)):
+        return record_page.show(request, session, record, errors={"": why})
     if record.group == "sets":
         boxes = record_form.fill(record, "SI") | set_form.fill(record.values)
         if number := whole(exclude):
@@ -123,6 +125,8 @@ def edit_record(request: Request, session: DbSession, key: str, exclude: str = "
 def save_record(request: Request, session: DbSession, values: UploadValues, key: str) -> Response:
     """Save a new revision, or give the form back as typed."""
     old = library.get(session, key)
+    if old.group == "sets" and (why := set_form.beyond_the_grid(old.itself, old.values)):
+        return record_page.show(request, session, old, errors={"": why})
     if old.group == "sets":
         return _save_set(request, session, dict(values), old)
     typed = record_form.read(old.group, values)

@@ -15,7 +15,7 @@ from server.library import ALL, Link, Record, reading, states
 from server.library.obstacles import others_who_may
 from server.people import APPROVES, Person
 from server.storage import Session
-from server.web import record_form
+from server.web import record_form, set_form
 from server.web.coupon_panel import panel
 from server.web.evidence_fields import LINKS, TITLES
 from server.web.pages import Boxes, page
@@ -97,6 +97,7 @@ def show(request: Request, session: Session, record: Record, *, errors: Mapping[
         errors=Boxes(errors or {}),
         typed=Boxes(values or {}),
         shares=SHARES,
+        beyond_the_grid=record.group == "sets" and bool(set_form.beyond_the_grid(record.itself, record.values)),
         load_as_typed=sheets.load_as_typed,
         area_as_typed=sheets.area_as_typed,
     )

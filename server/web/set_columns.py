@@ -4,6 +4,8 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
+# Each row may have two dozen boxes, and a form sends at most 5000 (settings.max_fields). Larger sets, up to what a
+# document takes, come in and are changed as files.
 MOST_ROWS = 200
 FIRST_ROWS = 12
 

@@ -11,6 +11,7 @@ from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass, field
 from typing import Any
 
+from server.documents.coupons import MOST
 from server.errors import Fault
 from server.web.form_fields import PLAIN_UNITS
 from server.web.form_text import with_unit
@@ -29,6 +30,7 @@ CONDITIONS = {
 }
 """Boxes about the whole set, with their units."""
 SPARE_EXCLUSIONS = 1
+LARGER = f"Bring a larger set, up to {MOST} coupons, in as a file under Library, In and out, or by the API."
 
 
 @dataclass
@@ -65,6 +67,9 @@ def read(boxes: Mapping[str, str]) -> SetReading:
     reading.paths["values.coupons"] = f"coupons[{reading.rows[0]}].reading" if reading.rows else "coupons[0].reading"
     _exclude(typed, coupons, reading)
     reading.values["coupons"] = coupons
+    if reading.rows and reading.rows[-1] >= MOST_ROWS:
+        message = f"Coupon {reading.rows[-1] + 1} is beyond the grid, which takes {MOST_ROWS}. {LARGER}"
+        reading.fault("coupons[0].reading", message)
     if not coupons:
         reading.fault("coupons[0].reading", "No coupon has a reading yet; type at least one, or paste them below.")
     if statistic := _statistic(typed, reading):
@@ -261,6 +266,18 @@ def _text(value: object, unit: str) -> str:
     if isinstance(value, int | float) and not isinstance(value, bool):
         return f"{value:g} {PLAIN_UNITS[unit]}" if unit else f"{value:g}"
     return str(value)
+
+
+def beyond_the_grid(itself: object, values: Mapping[str, Any]) -> str:
+    """Return why a set cannot be changed in the grid, '' where it can: coupons that are not shown would be lost."""
+    coupons = values["coupons"]
+    if len(coupons) <= MOST_ROWS:
+        return ""
+    return (
+        f"coupons: {itself} has {len(coupons)} of them; the grid takes {MOST_ROWS}, and the others would be "
+        "lost. Exclude a coupon below, or take the set out as a file under Library, In and out, change it there, and "
+        "bring it in again."
+    )
 
 
 # --- shaping and placing ----------------------------------------------------------------------------------------------

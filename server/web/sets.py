@@ -96,7 +96,8 @@ def _shaped(boxes: dict[str, str]) -> tuple[dict[str, str], library.Pasted | Non
             return boxes | {"paste": text}, pasted
         already = len(set_form.filled_rows(boxes))
         if already + len(pasted.coupons) > MOST_ROWS:
-            message = f"{already + len(pasted.coupons)} coupons are too many for the grid, which takes {MOST_ROWS}."
+            message = f"{already + len(pasted.coupons)} coupons are too many for the grid, which takes {MOST_ROWS}. "
+            message += set_form.LARGER
             too_many = library.LineFault(pasted.lines[MOST_ROWS - already], "", "", message)
             return boxes | {"paste": text}, library.Pasted([], [], pasted.columns, [too_many])
         return set_form.take(boxes, pasted.coupons), pasted

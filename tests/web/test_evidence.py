@@ -7,9 +7,10 @@ from collections.abc import Iterator
 from pathlib import Path
 
 import pytest
+from fastapi import FastAPI
 from fastapi.testclient import TestClient
 
-from server import people, storage
+from server import library, people, storage
 from server.app import create_app
 from server.settings import Settings
 from server.web.inputs import decoded
@@ -481,3 +482,39 @@ class TestLotStates:
         assert "2026-04-03" in client.get("/library/L-001").text
         refused = client.post("/library/L-001/state", data={"status": "extended", "reason": "retest"})
         assert "name the coupon set of the retest" in text_of(refused)
+
+
+class TestBeyondTheGrid:
+    """The grid takes 200 coupons, a document 2000: what does not fit is refused by name, never dropped."""
+
+    @pytest.fixture
+    def large(self, client: TestClient) -> str:
+        app = client.app
+        assert isinstance(app, FastAPI)
+        values = {"property": "bond shear", "coupons": [{"stress": round(5 + 0.01 * i, 2)} for i in range(201)]}
+        with storage.reading(app.state.records.engine) as session:
+            library.add(session, group="sets", name="Large", values=values, made_by="Ann")
+        return "/library/T-001"
+
+    def test_a_larger_set_is_not_changed_in_the_grid_and_a_coupon_is_excluded_beside_it(
+        self, client: TestClient, large: str
+    ) -> None:
+        for answer in (client.get(f"{large}/edit"), client.post(f"{large}/edit", data={"name": "x", "reason": "y"})):
+            assert answer.status_code == 422
+            assert "coupons: T-001 rev 1 has 201 of them; the grid takes 200" in text_of(answer)
+        for wrong, box in (({"number": "202", "cause": "c"}, "number"), ({"number": "8"}, "cause"), ({}, "number")):
+            refused = client.post(f"{large}/exclude", data={"revision": "1"} | wrong)
+            assert refused.status_code == 422
+            assert f'id="f-{box}-message"' in refused.text
+        done = client.post(f"{large}/exclude", data={"number": "201", "cause": "cut askew", "revision": "1"})
+        assert done.status_code == 303
+        assert "cut askew" in client.get(large).text
+
+    def test_more_rows_than_the_grid_has_are_refused_with_what_to_do(self, client: TestClient) -> None:
+        pasted = "stress MPa\n" + "\n".join(str(5 + i / 100) for i in range(201))
+        answer = client.post("/library/form/sets", data={"do": "take", "paste": pasted, "way": "stress MPa"})
+        assert "201 coupons are too many for the grid, which takes 200. Bring a larger set" in text_of(answer)
+        boxes = {"name": "x", "property": "bond shear", "way": "stress MPa", "coupons[250].reading": "5"}
+        refused = client.post("/library/new/sets", data=boxes)
+        assert refused.status_code == 422
+        assert "Coupon 251 is beyond the grid" in text_of(refused)
