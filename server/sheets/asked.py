@@ -27,10 +27,11 @@ class Ask:
 
     ``unit`` is the unit of a bare number, by its name in the form ("size", "force", "stress"); ``choices`` are (value,
     words); ``flag`` is answered with yes or no; ``whole`` with a whole number; ``rows`` with several lines, one entry
-    each, whose columns are the ``columns``. ``record`` true picks values from the library: the answer's place is then
-    that of a whole entry ("adhesives.glue"), and typed answers below it are left out. ``start`` is what a new form
-    holds, in SI and in US units. ``only`` (a place, its values) says when the question makes sense; at all other times
-    it is neither shown nor read, and what was typed is kept.
+    each, whose columns are the ``columns``; ``into`` names the list that pasted blocks of readings join. ``record``
+    true picks values from the library: the answer's place is then that of a whole entry ("adhesives.glue"), and typed
+    answers below it are left out. ``start`` is what a new form holds, in SI and in US units. ``only`` (a place, its
+    values) says when the question makes sense; at all other times it is neither shown nor read, and what was typed is
+    kept.
     """
 
     path: str
@@ -45,6 +46,7 @@ class Ask:
     record: bool = False
     rows: int = 0
     columns: tuple[Column, ...] = ()
+    into: str = ""
     only: tuple[tuple[str, tuple[str, ...]], ...] = ()
 
     @property
@@ -118,6 +120,9 @@ def _rows(ask: Ask, raw: Raw, values_used: Raw, display: str, kind: str) -> Iter
             return
         text = used_text(taken, _kind(ask.path, kind), display)
         yield Row(ask.label, "", text or typed_text(taken))
+    elif ask.into:
+        for number, entry in enumerate(typed if isinstance(typed, list) else (), 1):
+            yield Row(f"{ask.label} {number}", _readings(entry), "")
     elif ask.rows:
         columns = ", ".join(column.label for column in ask.columns)
         for number, entry in enumerate(typed if isinstance(typed, list) else (), 1):
@@ -125,6 +130,18 @@ def _rows(ask: Ask, raw: Raw, values_used: Raw, display: str, kind: str) -> Iter
     else:
         words = dict(ask.choices).get(str(typed), "") if ask.choices else typed_text(typed)
         yield Row(ask.label, words or typed_text(typed), used_text(typed, _kind(ask.path, kind), display))
+
+
+def _readings(entry: object) -> str:
+    """What pasted readings are, in short: the sheet has their number, the document all of them."""
+    if not isinstance(entry, Mapping):
+        return typed_text(entry)
+    listed = entry.get("readings") or ()
+    last = " to ".join(", ".join(typed_text(part) for part in listed[at]) for at in (0, -1)) if listed else ""
+    words = [typed_text(entry.get("name") or ""), f"{len(listed)} readings", last]
+    if entry.get("excluded"):
+        words.append(f"excluded: {typed_text(entry['excluded'])}")
+    return ": ".join(word for word in words if word)
 
 
 def _entry(ask: Ask, entry: object) -> str:

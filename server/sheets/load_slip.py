@@ -19,14 +19,23 @@ GROUPS = (
             Ask(
                 "specimens",
                 "Specimen",
-                rows=8,
+                rows=5,
                 columns=(
                     Column("maximum", "greatest load", "force"),
                     Column("v01", "slip at a tenth", "size"),
                     Column("v04", "slip at four tenths", "size"),
                     Column("name", "name"),
+                    Column("excluded", "left out because"),
                 ),
                 hint="one line each: greatest load, slip at a tenth of it, slip at four tenths, name",
+            ),
+            Ask(
+                "readings",
+                "Specimen with its readings",
+                rows=10,
+                into="specimens",
+                hint="pasted, one load and slip a line; a name before each specimen, a blank line after it. Units in "
+                "a heading, such as load [N]; slip [mm]",
             ),
             Ask("fastener_count", "Fasteners in a specimen", whole=True, start=("1", "1")),
             Ask("shear_planes", "Shear planes of each", whole=True, start=("1", "1")),
@@ -119,4 +128,24 @@ def _waits_for(raw: Mapping[str, Any]) -> Iterable[str]:
         yield "the specimens"
 
 
-PAGE = OnePage("load-slip", "Tests of fasteners", "set of fastener tests", GROUPS, headline, blocks, _waits_for)
+def finish(raw: dict[str, Any]) -> None:
+    """Put the specimens with readings behind those given by their loads."""
+    pasted = raw.pop("readings", None)
+    if pasted:
+        raw["specimens"] = [*(raw.get("specimens") or ()), *pasted]
+
+
+def normal(raw: Mapping[str, Any]) -> Mapping[str, Any]:
+    """The specimens with readings apart from those without, as the form has them."""
+    listed = raw.get("specimens")
+    if not isinstance(listed, list):
+        return raw
+    pasted = [each for each in listed if isinstance(each, Mapping) and each.get("readings")]
+    plain = [each for each in listed if each not in pasted]
+    return {**raw, "specimens": plain, **({"readings": pasted} if pasted else {})}
+
+
+PAGE = OnePage(
+    "load-slip", "Tests of fasteners", "set of fastener tests", GROUPS, headline, blocks, _waits_for,
+    finish=finish, normal=normal,
+)  # fmt: skip

@@ -13,7 +13,7 @@ from typing import Any
 
 from server.sheets import OnePage
 from server.sheets.asked import RECORDS, Ask, AskGroup, answer, asks_of
-from server.web import form_fill
+from server.web import form_fill, pasted_readings
 from server.web.form_fields import SINGLES, UNITS, Box, shown_unit
 from server.web.form_text import Reading, split, with_unit
 from server.web.form_view import Options
@@ -71,6 +71,11 @@ def _read(ask: Ask, text: str, system: str, reading: Reading) -> object:
         return chosen == "yes" if ask.flag else chosen or None
     if ask.record:
         return {"record": text}
+    if ask.into:
+        found = pasted_readings.readings(text, system, ask.path, reading)
+        before = len(reading.raw.get(ask.into) or ())  # type: ignore[arg-type]
+        reading.paths |= {f"{ask.into}[{before + i}]": ask.path for i in range(len(found))}
+        return found
     if ask.rows:
         return [_row(ask, line, number, system, reading) for number, line in enumerate(_lines(text))]
     if ask.whole and text.isdecimal() and len(text) < 10:
@@ -122,6 +127,8 @@ def write(page: OnePage, raw: Mapping[str, Any]) -> dict[str, str]:
 def _written(ask: Ask, value: Any, system: str) -> str:
     if ask.record:
         return str(value.get("record", "")) if isinstance(value, Mapping) else ""
+    if ask.into and isinstance(value, list):
+        return pasted_readings.write(value)
     if ask.rows and isinstance(value, list):
         return "\n".join(_line(ask, entry, system) for entry in value)
     return "" if isinstance(value, Mapping | list) else form_fill.show(value, ask.unit, system)
