@@ -31,8 +31,13 @@ class Look:
     combination: str | None = None
 
 
-def contours(body: Body, actions: Actions, twist: Twist | None, look: Look | None = None) -> dict[str, Any] | None:
-    """Bands of shear and of bending stress; None where no field was solved or no combination is for strength."""
+def contours(
+    body: Body, actions: Actions, twist: Twist | None, look: Look | None = None, *, unit: float = 1.0
+) -> dict[str, Any] | None:
+    """Bands of shear and of bending stress; None where no field was solved or no combination is for strength.
+
+    ``unit`` what the levels are round in [MPa].
+    """
     shear, moment = actions.shear, actions.moment
     if shear is None or moment is None or actions.slips:
         return None
@@ -62,9 +67,9 @@ def contours(body: Body, actions: Actions, twist: Twist | None, look: Look | Non
             )
         )
         if name == "shear":
-            picture = _shear(stretch, _rates(stretch, across, V, V_l), T)
+            picture = _shear(stretch, _rates(stretch, across, V, V_l), T, unit)
         else:
-            picture = _bending(stretch, _rates(stretch, across, M, M_l))
+            picture = _bending(stretch, _rates(stretch, across, M, M_l), unit)
         found[name] = {
             "at": at,
             "combination": actions.strength_names[row],
@@ -90,17 +95,17 @@ def _rates(stretch: Stretch, across: Actions | None, down: float, right: float) 
     return float(found[0]), float(found[1])
 
 
-def _shear(stretch: Stretch, rates: tuple[float, float], T: float) -> dict[str, Any]:
+def _shear(stretch: Stretch, rates: tuple[float, float], T: float, unit: float) -> dict[str, Any]:
     section = stretch.section
     field = section.settled.field
     assert field is not None
     alike = [replace(p, G=part.field_modulus) for p, part in zip(section.pieces, section.parts, strict=True)]
-    points, triangles, unit, area = stress_grid(alike, section.properties, field)
-    stress = unit[:, :, 0] * rates[0] - unit[:, :, 1] * rates[1] + unit[:, :, 2] * (T / field.GJ)
-    return _bands(points, triangles, np.hypot(stress[:, 0], stress[:, 1]), area)
+    points, triangles, each, area = stress_grid(alike, section.properties, field)
+    stress = each[:, :, 0] * rates[0] - each[:, :, 1] * rates[1] + each[:, :, 2] * (T / field.GJ)
+    return _bands(points, triangles, np.hypot(stress[:, 0], stress[:, 1]), area, unit)
 
 
-def _bending(stretch: Stretch, rates: tuple[float, float]) -> dict[str, Any]:
+def _bending(stretch: Stretch, rates: tuple[float, float], unit: float) -> dict[str, Any]:
     section = stretch.section
     field = section.settled.field
     assert field is not None
@@ -108,10 +113,12 @@ def _bending(stretch: Stretch, rates: tuple[float, float]) -> dict[str, Any]:
     E = np.empty(len(mesh.points))
     E[mesh.triangles] = np.array([piece.E for piece in section.pieces])[mesh.piece][:, None]
     arms = mesh.points - section.properties.neutral_axis
-    return _bands(mesh.points, mesh.triangles, E * (rates[1] * arms[:, 0] - rates[0] * arms[:, 1]), None)
+    return _bands(mesh.points, mesh.triangles, E * (rates[1] * arms[:, 0] - rates[0] * arms[:, 1]), None, unit)
 
 
-def _bands(points: Array, triangles: NDArray[np.intp], values: Array, area: Array | None) -> dict[str, Any]:
+def _bands(
+    points: Array, triangles: NDArray[np.intp], values: Array, area: Array | None, unit: float
+) -> dict[str, Any]:
     """Levels between round numbers, and the closed lines around all that lies above each."""
     top = float(values.max())
     if area is not None:
@@ -119,7 +126,7 @@ def _bands(points: Array, triangles: NDArray[np.intp], values: Array, area: Arra
         share = area[order].cumsum() / area.sum()
         top = float(values[order][int(np.searchsorted(share, _QUANTILE))])
     low = min(float(values.min()), 0.0)
-    step = _round_step((top - low) / BANDS)
+    step = unit * _round_step((top - low) / BANDS / unit)
     if step <= 0:
         return {"levels": [], "above": [], "greatest": float(values.max()), "least": float(values.min())}
     levels = [k * step for k in range(int(np.floor(low / step)), int(np.ceil(top / step)))]

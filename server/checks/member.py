@@ -43,6 +43,8 @@ from server.checks.thin_webs import add_web_claims
 from server.checks.twist import Twist, twist
 from server.working import Working, exceeds
 
+PSI = 4.4482216152605 / 25.4**2  # MPa: pound-force and inch are defined (NIST SP 811)
+
 
 @dataclass(frozen=True)
 class Candidate:
@@ -142,7 +144,7 @@ def _round(
         "cautions": findings.cautions,
         "missing": findings.missing,
         "not_checked": list(NOT_CHECKED),
-        "contours": contours(body, actions, twisted, look) if working or look else None,
+        "contours": contours(body, actions, twisted, look, unit=_level_unit(document)) if working or look else None,
         "drawing": drawing(document, body, actions),
         "diagrams": diagrams(body, actions, sliding, twisted),
         "steps": book.steps,
@@ -150,6 +152,11 @@ def _round(
         "engine": ENGINE,
     }
     return result, moving_rounds.further(rigid, slides)
+
+
+def _level_unit(document: documents.MemberDocument) -> float:
+    """What the levels of drawn stress are round in."""
+    return PSI if document.display == "US" else 1.0
 
 
 def _slide(document: documents.MemberDocument, body: Body, rigid: Actions, findings: Findings) -> Slide | None:

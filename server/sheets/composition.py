@@ -30,6 +30,7 @@ FOOT = (
 )
 PRECEDENCE = "Local building, road, marine and machinery rules, and licensed practice, take precedence over this sheet."
 DIAGRAM_HEIGHT = 172.0
+STRESS_HEIGHT = 230.0
 KINDS = {"member": "Check of a built-up member"} | {kind: page.title for kind, page in ONE_PAGES.items()}
 
 
@@ -110,6 +111,7 @@ class Drawings:
     diagram: Callable[..., str]
     flow: Callable[..., str]
     slip: Callable[..., str]
+    stress: Callable[..., str]
 
 
 def head_of(sheet: SheetData) -> Part:
@@ -163,6 +165,7 @@ def _member(sheet: SheetData, drawings: Drawings) -> Iterator[tuple[str, Iterabl
     yield "Basis", [_lines(group) for group in basis]
     yield "Given values", _given_parts([group for group in groups if group not in basis], sheet)
     yield "Section, loads and actions", _drawing_parts(result, display, drawings)
+    yield "Stress in the section", _stress_parts(result, display, drawings)
     yield "Section properties", tables.section(result, display)
     yield "Reactions, shear, moment", tables.actions(result, display)
     yield "Joints", tables.joints(result, display)
@@ -228,6 +231,15 @@ def _drawing_parts(result: Mapping[str, Any], display: str, drawings: Drawings) 
         yield {**_figure(drawings.flow(result, display=display), "", 0.86), "alt": "Shear flow in the joints"}
     if (result.get("diagrams") or {}).get("slips"):
         yield {**_figure(drawings.slip(result, display=display), "", 0.86), "alt": "Slip of the joints"}
+
+
+def _stress_parts(result: Mapping[str, Any], display: str, drawings: Drawings) -> Iterator[Part]:
+    """Bands of shear and of bending stress where either is greatest, and the run of stress along each bond."""
+    for which in result.get("contours") or ():
+        svg = drawings.stress(result, which, display=display, height=STRESS_HEIGHT)
+        if svg:
+            yield _figure(svg, tables.where_stressed(result, which, display), 0.86)
+    yield from tables.runs(result, display)
 
 
 def _figure(svg: str, caption: str, share: float) -> Part:

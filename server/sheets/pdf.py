@@ -23,8 +23,9 @@ from server.sheets.evidence import EvidenceData, compose_evidence
 from server.sheets.loads_drawing import loads_svg
 from server.sheets.section_drawing import section_svg
 from server.sheets.setting_out_page import compose_setting_out
+from server.sheets.stress_drawing import stress_svg
 
-DRAWINGS = Drawings(section_svg, loads_svg, diagram_svg, flow_svg, slip_svg)
+DRAWINGS = Drawings(section_svg, loads_svg, diagram_svg, flow_svg, slip_svg, stress_svg)
 STANDARD: Final = "a-2b"
 _UNSHOWN = re.compile(r'the text `"(.*?)"` could not be displayed')
 _PROBE = b"""

@@ -6,16 +6,20 @@ print, compression is hatched as well; every band is named in the key by its val
 
 from __future__ import annotations
 
-from collections.abc import Mapping, Sequence
+from collections.abc import Iterator, Mapping, Sequence
+from itertools import pairwise
 from math import hypot
 from typing import Any
 
 from server.sheets import drafting, values
+from server.sheets.labels import Point
 from server.sheets.section_view import MARGIN, View
-from server.sheets.svg import CAP, FONT_SIZE, Drawing, path, polygon, text_width
+from server.sheets.svg import CAP, FONT_SIZE, Drawing, overlaps, path, polygon, text_width
 
 TITLES = {"shear": "Shear stress", "bending": "Bending stress"}
 ROW, SWATCH = 16.0, 24.0
+LETTERS = 9.0
+LEAST_LINE, MOST_TRIED, ON_EDGE = 6.0, 4, 0.35  # pixels, lines, pixels
 COMPRESSED = (
     '<pattern id="~compressed" width="5" height="5" patternUnits="userSpaceOnUse" patternTransform="rotate(45)">'
     '<path d="M0 0V5" stroke="#111" stroke-width=".9"/></pattern>'
@@ -58,6 +62,7 @@ def stress_svg(
     for piece in shown:
         for ring in (piece["outline"], *(piece.get("holes") or ())):
             drawing.pen("outline").append(polygon([view.at(point) for point in ring]))
+    _letter_levels(drawing, view, picture, shown, values.unit("MPa", display))
     if which == "shear":
         _runs(drawing, view, result)
     drawing.top = -REACH - 6
@@ -68,6 +73,72 @@ def stress_svg(
     summary = f"{TITLES[which]} in the section {where}, combination {picture['combination']}"
     words = "; ".join(text for _, text in rows)
     return drawing.svg(f"stress {which}", f"{TITLES[which]} of {view.title}", summary, words)
+
+
+def _letter_levels(
+    drawing: Drawing, view: View, picture: Mapping[str, Any], shown: Sequence[Mapping[str, Any]], unit: values.Unit
+) -> None:
+    """The value of each level on its longest line inside the pieces, where no other value stands."""
+    sides = [
+        (view.at(a), view.at(b))
+        for piece in shown
+        for ring in (piece["outline"], *(piece.get("holes") or ()))
+        for a, b in zip(ring, (*ring[1:], ring[0]), strict=True)
+    ]
+    taken: list[tuple[float, float, float, float]] = []
+    for level, loops in zip(picture["levels"][1:], picture["above"][1:], strict=True):
+        text = unit.number(level)
+        wide, high = text_width(text, LETTERS) + 3, LETTERS
+        for x, y in _places(loops, view, sides):
+            box = (x - wide / 2, y - high / 2, x + wide / 2, y + high / 2)
+            if not overlaps(taken, box):
+                taken.append(box)
+                drawing.backing(box[0], box[1], wide, high)
+                drawing.text(x, y + CAP * LETTERS, text, "middle", size=LETTERS)
+                break
+
+
+def _places(
+    loops: Sequence[Sequence[Sequence[float]]], view: View, sides: Sequence[tuple[Point, Point]]
+) -> Iterator[Point]:
+    """Places on the inner parts of closed lines, from the longest part on, its middle first."""
+    found: list[list[Point]] = []
+    for loop in loops:
+        line = [view.at(point) for point in loop]
+        run: list[Point] = []
+        for a, b in zip(line, (*line[1:], line[0]), strict=True):
+            if any(_on(((a[0] + b[0]) / 2, (a[1] + b[1]) / 2), side) for side in sides):
+                found.append(run)
+                run = []
+            else:
+                run = [*(run or [a]), b]
+        found.append(run)
+    found.sort(key=_length, reverse=True)
+    for run in found[:MOST_TRIED]:
+        if _length(run) >= LEAST_LINE:
+            yield from (_at_share(run, share) for share in (0.5, 0.3, 0.7, 0.15, 0.85))
+
+
+def _length(run: Sequence[Point]) -> float:
+    return sum(hypot(b[0] - a[0], b[1] - a[1]) for a, b in pairwise(run))
+
+
+def _at_share(run: Sequence[Point], share: float) -> Point:
+    left = share * _length(run)
+    for a, b in pairwise(run):
+        step = hypot(b[0] - a[0], b[1] - a[1])
+        if left <= step:
+            return a[0] + (b[0] - a[0]) * left / (step or 1.0), a[1] + (b[1] - a[1]) * left / (step or 1.0)
+        left -= step
+    return run[-1]
+
+
+def _on(point: Point, side: tuple[Point, Point]) -> bool:
+    """Whether a point lies on a side of an outline."""
+    (x1, y1), (x2, y2) = side
+    dx, dy, px, py = x2 - x1, y2 - y1, point[0] - x1, point[1] - y1
+    t = min(max((px * dx + py * dy) / ((dx * dx + dy * dy) or 1.0), 0.0), 1.0)
+    return hypot(px - t * dx, py - t * dy) < ON_EDGE
 
 
 def _filled(data: str, shade: str, stroke: str = 'stroke="none"') -> str:

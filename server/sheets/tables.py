@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterator, Mapping, Sequence
+from math import floor, log10
 from typing import Any
 
 from server.sheets.values import DASH, Unit, quantity, said, unit, utilisation
@@ -144,6 +145,40 @@ def extremes(lines: Sequence[tuple[str, Any, Unit]], length: Unit) -> Iterator[P
     if rows:
         columns = [column("", share=1), column("Value", side="right"), _numbers("At", length), column("Combination")]
         yield table(columns, rows)
+
+
+def where_stressed(result: Result, which: str, display: str) -> str:
+    """What a drawing of stress shows, and where."""
+    picture = result["contours"][which]
+    words = {"shear": "Shear stress", "bending": "Bending stress, tension positive"}[which]
+    place = f"{quantity(picture['at'], 'mm', display)} from the left end, combination {picture['combination']}"
+    beside = "; beside the bond lines the run of stress along each bond, where its flow is largest"
+    return f"{words}, {place}{beside if which == 'shear' else ''}"
+
+
+def runs(result: Result, display: str) -> Iterator[Part]:
+    """The run of stress along each bond, in equal parts of its bonded width, where its flow is largest."""
+    stress = unit("MPa", display)
+    listed = [(n, joint) for n, joint in enumerate(result.get("joints") or (), 1) if joint.get("distribution")]
+    if not listed or not result.get("contours"):
+        return
+    count = len(listed[0][1]["distribution"])
+    about = f"{stress.text}, means over {count} equal parts of the bonded width, from the lower or the left end on"
+    yield {"kind": "sub", "title": "Run of stress along each bond", "about": about}
+    columns = [column("No."), column("Joint", share=1), column("Mean", side="right")]
+    columns += [column(str(part), side="right") for part in range(1, count + 1)]
+    largest = max(abs(value) for _, joint in listed for value in joint["distribution"])
+    fine = 10.0 ** (floor(log10(largest)) - 3) if largest > 0 else 1.0  # what is nothing beside it reads as nothing
+    rows: list[list[Cell]] = [
+        [
+            str(n),
+            str(joint["id"]),
+            stress.number(joint.get("stress")),
+            *(stress.number(round(value / fine) * fine) for value in joint["distribution"]),
+        ]
+        for n, joint in listed
+    ]
+    yield table(columns, rows)
 
 
 def joined_by(joint: Result) -> str:
