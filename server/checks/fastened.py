@@ -5,6 +5,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 import numpy as np
+from numpy.typing import NDArray
 
 from server import documents
 from server.checks.along import Along, Demand, leftmost
@@ -22,13 +23,15 @@ class Fastening:
     """The fasteners of one joint on their way through the check.
 
     ``demand`` the flow they carry; ``strength`` None where it was not given; ``claim`` the force per fastener against
-    it, None where the spacing or the strength is missing.
+    it, None where the spacing or the strength is missing; ``times`` what a rib alone has over the whole section, by
+    combination.
     """
 
     site: Site
     demand: Demand
     strength: Strength | None
     claim: Claim | None
+    times: NDArray[np.float64] | None = None
 
 
 def claim_fasteners(
@@ -96,7 +99,11 @@ def _zone_demand(site: Site, along: Along, zones: list[SpacingZone]) -> Demand |
 
 
 def write_fasteners(
-    fastening: Fastening, weighed: Weighed | None, body: Body, judge: Judge, group: str
+    fastening: Fastening,
+    weighed: Weighed | None,
+    body: Body,
+    judge: Judge,
+    group: str,
 ) -> float | None:
     """The force per fastener at the spacing given; return the spacing needed, None where it is not known."""
     site, working = fastening.site, judge.working
@@ -117,13 +124,25 @@ def write_fasteners(
 
 
 def _spacing_needed(fastening: Fastening, judge: Judge, group: str) -> float | None:
-    demand, strength, site = fastening.demand, fastening.strength, fastening.site
+    demand, strength, site, times = fastening.demand, fastening.strength, fastening.site, fastening.times
     if strength is None or demand.flow.max() <= 0:
         return None
-    weighed = judge.weigh([Claim(strength, "q", demand.flow, demand.at, demand.stretch)])[0]
+    flow = demand.flow if times is None else demand.flow * times
+    weighed = judge.weigh([Claim(strength, "q", flow, demand.at, demand.stretch)])[0]
     if weighed is None:
         return None
     _, fastener = fastener_of(site, judge.document)
+    q = float(demand.flow[weighed.row])
+    if times is not None and times[weighed.row] > 1:
+        q = judge.working.step(
+            "Flow with the rib's own width",
+            "q_r",
+            "k_r*q",
+            {"k_r": (float(times[weighed.row]), ""), "q": (q, "N/mm")},
+            unit="N/mm",
+            source="k_r: flow of the rib alone over that in the whole section",
+            group=group,
+        )
     return judge.working.step(
         "Spacing needed",
         "s_req",
@@ -131,7 +150,7 @@ def _spacing_needed(fastening: Fastening, judge: Judge, group: str) -> float | N
         {
             "n": (site.spec.rows, ""),
             "R_d": (weighed.resistance, "N"),
-            "q": (float(demand.flow[weighed.row]), "N/mm"),
+            "q": (q, "N/mm"),
         },
         unit="mm",
         source=describe(fastener),

@@ -166,12 +166,14 @@ def _joint_claims(joint: JointCheck, ribs: Mapping[int, Rib], body: Body, judge:
     joint.times = np.maximum(factor, 1.0)
     joint.claims += [_scaled(claim, times, before) for claim in joint.claims if claim.symbol in ("tau", "F")]
     if joint.fastening is not None:
+        own = np.array([times.get(t, 1.0) for t in joint.fastening.demand.stretch.tolist()])
+        joint.fastening = replace(joint.fastening, times=np.maximum(own, 1.0))
         judge.findings.caution(
             "rib with its own width",
             f"{joint.site.id}: alone with its own width of the skin the rib has {max(times.values()):.3f} times the "
             "flow that it has in the whole section. The fasteners are judged with that"
             + (", with the glue gone as well" if joint.site.bonded else "")
-            + ", and the zones of spacing have it in them; the one spacing needed is to be divided by it.",
+            + ", and the spacing needed and its zones have it in them.",
         )
 
 
