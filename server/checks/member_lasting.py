@@ -51,12 +51,29 @@ def check_lasting(
 ) -> list[dict[str, object]]:
     """Every bond under every combination that says how its load repeats or stays; what governs goes to ``found``."""
     told: list[dict[str, object]] = []
+    unjudged: list[_Bond] = []
     for name, combination in document.combinations.items():
         if combination.for_ == "deflection" or not (combination.fatigue or any(combination.sustained.values())):
             continue
         for bond in _bonds(document, name, actions, joints):
+            unjudged += [bond] if bond.share > 0 and bond.adhesive.creep_limit is None else []
             told += _judge(combination, bond, f"joint {bond.joint.site.id}, combination {name}", book, findings, found)
+    _caution_creep(unjudged, findings)
     return told
+
+
+def _caution_creep(bonds: Sequence[_Bond], findings: Findings) -> None:
+    """One caution an adhesive, which one answer can settle: its joints, and the most of any one's load that stays."""
+    for name in dict.fromkeys(bond.name for bond in bonds):
+        own = [bond for bond in bonds if bond.name == name]
+        findings.caution(
+            "creep",
+            f"{', '.join(dict.fromkeys(bond.joint.site.id for bond in own))}: up to "
+            f"{max(bond.share for bond in own) * 100:.3g} % of the governing load stays, and adhesive {name!r} has no "
+            "creep_limit: what it bears for ever was not judged. PVA, hot-melt and rubbery adhesives creep; have "
+            "sustained-load tests made.",
+            answer=True,
+        )
 
 
 def _bonds(
@@ -96,6 +113,8 @@ def _own_claim(joint: JointCheck) -> Claim | None:
 def _judge(
     combination: documents.Combination, bond: _Bond, where: str, book: Working, findings: Findings, found: MemberEnds
 ) -> list[dict[str, object]]:
+    """Load that repeats, and load that stays where the adhesive's creep limit is known."""
+
     def use(part: float) -> float:
         return part * bond.used
 
@@ -103,14 +122,6 @@ def _judge(
     each = [lasting.repeated(combination.fatigue, adhesive, name, use, book, findings, where)]
     if share > 0 and adhesive.creep_limit is not None:
         each.append(lasting.sustained(share, adhesive, name, use, book, findings, where))
-    elif share > 0:
-        findings.caution(
-            "creep",
-            f"{bond.joint.site.id}: {share * 100:.3g} % of the governing load stays, and adhesive {name!r} has no "
-            "creep_limit: what it bears for ever was not judged. PVA, hot-melt and rubbery adhesives creep; have "
-            "sustained-load tests made.",
-            answer=True,
-        )
     kept = [one for one in each if one is not None]
     found.governs += [Governs(one.utilisation, f"{one.line}, {where}", bond.at) for one in kept]
     return [one.result for one in kept]

@@ -2,11 +2,13 @@
 
 from __future__ import annotations
 
+import copy
+
 import pytest
 
 from server import checks, documents
 from server.errors import DocumentError
-from tests.checks.made import STACK, changed
+from tests.checks.made import BOX, STACK, changed
 
 
 def run(**changes):
@@ -72,6 +74,18 @@ def test_what_stays_stands_against_the_creep_limit():
     unjudged = run(loads=loads, combinations=combination)
     assert unjudged["lasting"] == []
     assert any(c["about"] == "creep" and c["answer"] for c in unjudged["cautions"])
+
+
+def test_joints_of_one_adhesive_ask_for_one_answer_about_creep():
+    box = {**copy.deepcopy(BOX), "adhesives": {"resin": {"shear_strength": 6}}}
+    case = next(iter(box["loads"]))
+    box["combinations"] = {
+        name: {"factors": {case: 1.0}, "sustained": {case: share}} for name, share in (("a", 0.3), ("b", 0.5))
+    }
+    cautions = [c for c in checks.run(documents.read(box))["cautions"] if c["about"] == "creep"]
+    assert [c["answer"] for c in cautions] == [True]
+    assert all("/".join(joint["between"]) in cautions[0]["text"] for joint in box["section"]["joints"])
+    assert "up to 50 %" in cautions[0]["text"]
 
 
 def test_without_any_of_it_nothing_is_said():
