@@ -343,7 +343,7 @@ def _overlap(model: Model, found: Found, result: dict[str, object]) -> list[Chan
 
 
 def _drawing(model: Model) -> dict[str, object]:
-    document = model.document
+    document, adherends = model.document, model.document.adherends
     return {
         "layout": document.layout,
         "length": model.length,
@@ -358,9 +358,11 @@ def _drawing(model: Model) -> dict[str, object]:
                 "material": model.names[side],
                 "thickness": model.thicknesses[side],
                 "kind": model.materials[side].kind,
-                "grain": (document.adherends.inner, document.adherends.outer)[side].grain,
+                "grain": each.grain,
+                "taper": min(each.taper or 0.0, model.length),
+                "tip": document.blunt_tip or each.tip or 0.0,
             }
-            for side, name in enumerate(SIDES)
+            for side, (name, each) in enumerate(zip(SIDES, (adherends.inner, adherends.outer), strict=True))
         ],
         "load": document.load.model_dump(),
     }

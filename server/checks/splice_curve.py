@@ -123,7 +123,8 @@ def _tried(lap: Lap, length: float) -> Iterator[tuple[str, Lap, float]]:
         yield "bond wider by half", replace(lap, width=1.5 * lap.width), length
     thicker = [replace(plate, thickness=1.5 * plate.thickness) for plate in (lap.inner, lap.outer)]
     if lap.layout == "scarf":
-        yield "pieces thicker by half, same slope", replace(lap, inner=thicker[0], outer=thicker[1]), 1.5 * length
+        scaled = [replace(plate, tip=1.5 * plate.tip) for plate in thicker]
+        yield "pieces thicker by half, same slope", replace(lap, inner=scaled[0], outer=scaled[1]), 1.5 * length
     else:
         yield "both adherends thicker by half", _with(lap, thicker[0], thicker[1]), length
         stiff = [plate.E * plate.thickness * s for plate, s in ((lap.inner, 1.0), (lap.outer, float(lap.bonds)))]
@@ -131,6 +132,7 @@ def _tried(lap: Lap, length: float) -> Iterator[tuple[str, Lap, float]]:
             weak = "inner" if stiff[0] < stiff[1] else "outer"
             pair = (thicker[0], lap.outer) if weak == "inner" else (lap.inner, thicker[1])
             yield f"only the {weak} adherend, the softer one, thicker by half", _with(lap, *pair), length
+    yield from _thinned(lap, length)
     softer = BondLine(bond.shear_modulus / 2, bond.E / 2, bond.thickness)
     yield "adhesive half as stiff", replace(lap, bond=softer), length
     yield "bond line twice as thick", replace(lap, bond=replace(bond, thickness=2 * bond.thickness)), length
@@ -142,6 +144,27 @@ def _tried(lap: Lap, length: float) -> Iterator[tuple[str, Lap, float]]:
             replace(lap, layout=double, outer=both),
             length,
         )
+
+
+THINNED = 4.0  # the tip tried is this much thinner than the adherend ...
+SHALLOW = 10.0  # ... on a slope of 1 to this, over half the overlap at most (common practice)
+
+
+def _thinned(lap: Lap, length: float) -> Iterator[tuple[str, Lap, float]]:
+    """The free ends of plates tapered, where they are not yet."""
+    if lap.layout in ("scarf", "tube-lap") or lap.inner.tip or lap.outer.tip:
+        return
+
+    def thin(plate: Plate) -> Plate:
+        tip = plate.thickness / THINNED
+        return replace(plate, tip=tip, taper=min(SHALLOW * (plate.thickness - tip), length / 2))
+
+    outer = thin(lap.outer)
+    inner = thin(lap.inner) if lap.layout == "single-lap" else lap.inner
+    told = f"free ends tapered to {outer.tip:.3g} mm over {outer.taper:.3g} mm"
+    if lap.layout == "single-lap" and (inner.tip, inner.taper) != (outer.tip, outer.taper):
+        told += f" (inner {inner.tip:.3g} mm over {inner.taper:.3g} mm)"
+    yield told, replace(lap, inner=inner, outer=outer), length
 
 
 def _with(lap: Lap, inner: Plate, outer: Plate) -> Lap:

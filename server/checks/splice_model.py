@@ -87,9 +87,12 @@ def _lap(
             answer=True,
         )
     plates = [
-        Plate(material.E, side.thickness, material.nu or 0.0, material.G)
+        Plate(
+            material.E, side.thickness, material.nu or 0.0, material.G, side.taper or 0.0,
+            document.blunt_tip or side.tip or 0.0,
+        )
         for material, side in zip(materials, (document.adherends.inner, document.adherends.outer), strict=True)
-    ]
+    ]  # fmt: skip
     return Lap(
         layout=document.layout,
         inner=plates[0],

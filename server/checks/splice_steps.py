@@ -40,6 +40,7 @@ SHEAR_LAG_RATE = "sqrt(G/t_a*(c_o + c_i))"
 SHEAR_LAG_SHEAR = "q/l*lamda*l/2*(1/tanh(lamda*l/2) + abs(c_o - c_i)/(c_o + c_i)*tanh(lamda*l/2))"
 FREE_STRAIN_SHEAR = "G*abs(Delta_epsilon)/(lamda*t_a)*tanh(lamda*l/2)"
 SCARF_SHEAR = "P/(b*t)*n/(1 + n**2)"
+BLUNT_SHEAR = "P/(b*(t - 2*t_t))*n/(1 + n**2)"
 SCARF_NORMAL = "P/(b*t)/(1 + n**2)"
 DOUBLE_STRENGTH = "sqrt(4*t_a*tau_y*(gamma_u - gamma_y/2)*K_1*(1 + K_1/K_2))"
 
@@ -63,11 +64,12 @@ def mean_shear(model: Model, book: Working) -> float:
     assert document.width is not None
     if document.layout == "scarf":
         assert document.slope is not None
+        blunt = {"t_t": (document.blunt_tip, "mm")} if document.blunt_tip else {}
         return book.step(
-            "Mean shear on the slope", "tau_mean", SCARF_SHEAR,
+            "Mean shear on the slope", "tau_mean", BLUNT_SHEAR if blunt else SCARF_SHEAR,
             {
                 "P": (abs(model.axial), "N"), "b": (document.width, "mm"), "t": (model.thicknesses[0], "mm"),
-                "n": (document.slope, ""),
+                "n": (document.slope, ""), **blunt,
             },
             "MPa", HART_SMITH_SCARF,
         )  # fmt: skip
@@ -154,8 +156,8 @@ def _plane(E: float, nu: float, whose: str, book: Working) -> float:
 def peaks(model: Model, factors: dict[str, float] | None, found: float, peel: float, book: Working) -> float | None:
     """The closed form of the peak shear where there is one, with its difference from the solution stated; and peel."""
     lap, load = model.lap, model.document.load
-    if lap is None or load.moment or load.shear:
-        return None
+    if lap is None or load.moment or load.shear or lap.inner.tip or lap.outer.tip:
+        return None  # the closed forms are for adherends of one thickness
     book.begin("Peaks by closed form")
     if lap.layout == "single-lap":
         return _lap_peak(model, lap, factors, found, peel, book)
@@ -297,7 +299,7 @@ def _compare(closed: float, found: float, why: str, book: Working) -> None:
 def yield_strength(model: Model, tau: float, strain: float, book: Working) -> float | None:
     """The long-overlap strength of a double lap whose bond yields, without bending, to compare."""
     lap = model.lap
-    if lap is None or lap.layout not in DOUBLE or model.action.strain:
+    if lap is None or lap.layout not in DOUBLE or model.action.strain or lap.outer.tip:
         return None
     book.begin("Strength of the yielding bond")
     inner = lap.inner.plane_modulus * lap.inner.thickness

@@ -14,7 +14,7 @@ from server.checks.splice_model import Model
 NOT_CHECKED = (
     "the adherends away from the joint: net sections, holes, local buckling, stability under compression",
     "peeling by loads that bend the adherends out of plane other than those given",
-    "spew fillets, tapered and rounded ends, and the adherends' own shear: they relieve the ends, and are left out",
+    "spew fillets, rounded ends, and the adherends' own shear: they relieve the ends, and are left out",
     "ageing, moisture and temperature of the adhesive: only by the factors of its value",
     "fire",
     "workmanship: surface preparation, bond-line thickness, cure, voids",
@@ -32,6 +32,13 @@ def add_cautions(
     """Everything that deserves a word, in the order in which the sheet prints it."""
     document = model.document
     _lap_value(model, result, findings)
+    if model.lap is not None and (model.lap.inner.taper or model.lap.outer.taper):
+        findings.caution(
+            "tapered ends",
+            "The taper is reckoned as drawn: its outer face slopes evenly, its bonded face stays straight, and its tip "
+            "is as thick as entered. A tip that is left thicker, or lifts when it is made, brings the end stress back.",
+            answer=True,
+        )
     if stresses is not None:
         _ends(findings)
         _longer(model, result, changes, findings)
@@ -94,7 +101,7 @@ def _longer(model: Model, result: Mapping[str, object], changes: Sequence[Change
     findings.caution(
         "overlap",
         f"Half as much overlap again changes the strength by {longer.gain * 100:+.1f} %; beyond {useful:.4g} mm, 10 % "
-        f"more overlap brings less than 1 %. {why} What helps more here: {told}. Tapered ends help too.",
+        f"more overlap brings less than 1 %. {why} What helps more here: {told}.",
     )
 
 
@@ -151,7 +158,8 @@ def _scarf(model: Model, findings: Findings) -> None:
             f"so that slopes of 1 : {SLOPE_FOR_STRENGTH:g} or flatter give the highest strength, plywood is commonly "
             f"scarfed at 1 : {SLOPE_OF_PLYWOOD:g}, and well-made scarf and finger joints reach up to "
             f"{BEST_EFFICIENCY * 100:.0f} % of clear wood in tension (Wood Handbook, FPL-GTR-282, chapter 10). "
-            "Fingers are scarfs side by side: enter their slope; blunt tips cut the section and are not reckoned. "
+            "Fingers are scarfs side by side: enter half the pitch as thickness, half the blunt tip as tip, and as "
+            "width the piece's own times the number of flanks; blunt tips join nothing and cut the section. "
             "Test bending or tension coupons (EN 15497, ASTM D4688).",
             answer=slope < SLOPE_OF_PLYWOOD,
         )

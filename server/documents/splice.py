@@ -37,10 +37,15 @@ MoistureChange = Annotated[float, Quantity("moisture", least=-100.0)]
 
 
 class Adherend(Model):
-    """One of the pieces joined; ``grain`` across the load makes its surface roll."""
+    """One of the pieces joined; ``grain`` across the load makes its surface roll.
+
+    ``taper`` is the length over which its free end thins to ``tip``; in a scarf ``tip`` alone is its blunt end.
+    """
 
     material: Name
     thickness: Size
+    taper: Size | None = None
+    tip: Size | None = None
     grain: Literal["along", "across"] = "along"
 
 
@@ -69,7 +74,8 @@ class SpliceLoad(Model):
 class SpliceDocument(Document):
     """A check of kind "splice".
 
-    Beyond the contract: ``adherends.*.grain``, ``load.moisture_change`` (by material, with the material's
+    Beyond the contract: ``adherends.*.grain``, ``.taper`` and ``.tip`` (thinned free ends),
+    ``load.moisture_change`` (by material, with the material's
     ``moisture_expansion``), ``sustained`` (the share of the load that stays, against the adhesive's ``creep_limit``),
     ``fatigue`` (see ``lasting``).
     """
@@ -103,7 +109,13 @@ class SpliceDocument(Document):
         if self.overlap is not None:
             return self.overlap
         assert self.slope is not None
-        return self.slope * self.adherends.inner.thickness
+        return self.slope * (self.adherends.inner.thickness - 2 * self.blunt_tip)
+
+    @property
+    def blunt_tip(self) -> float:
+        """Thickness of a scarf's blunt ends [mm], which join nothing; 0 for sharp ones and other layouts."""
+        tips = [each.tip for each in (self.adherends.inner, self.adherends.outer) if each.tip is not None]
+        return tips[0] if tips and self.layout == "scarf" else 0.0
 
 
 def rules(document: SpliceDocument) -> list[Fault]:
@@ -154,6 +166,7 @@ def _faults(given: Mapping[str, Any]) -> Iterator[Fault]:
         yield from _sizes(layout, known)
         if adherends is not None:
             yield from _shapes(layout, adherends, known)
+            yield from _tapers(layout, adherends, known.get("load"))
         if load is not None:
             yield from _loads(layout, load)
     if load is not None:
@@ -169,7 +182,7 @@ def _in_reach(given: Mapping[str, Any], known: Mapping[str, Any]) -> Iterator[Fa
     moduli: dict[str, float | None] = {}
     if adherends is not None:
         for side, each in (("inner", adherends.inner), ("outer", adherends.outer)):
-            sizes[f"adherends.{side}.thickness"] = each.thickness
+            sizes |= {f"adherends.{side}.{name}": getattr(each, name) for name in ("thickness", "taper", "tip")}
             material = given["materials"].get(each.material)
             if isinstance(material, Material):
                 moduli |= {f"materials.{each.material}.E": material.E, f"materials.{each.material}.G": material.G}
@@ -231,14 +244,47 @@ def _shapes(layout: str, adherends: Adherends, known: Mapping[str, Any]) -> Iter
                 f"a scarf joins pieces of one thickness, and the other is {units.show(inner.thickness, 'length')} "
                 "thick.",
             )
-        if slope is not None and overlap is not None and abs(overlap - slope * inner.thickness) > 1e-3 * overlap:
+        long = 0.0 if slope is None else slope * (inner.thickness - 2 * (inner.tip or outer.tip or 0.0))
+        if slope is not None and overlap is not None and abs(overlap - long) > 1e-3 * overlap:
             yield Fault(
                 "overlap",
-                f"the slope makes the scarf {units.show(slope * inner.thickness, 'length')} long; leave the overlap "
+                f"the slope makes the scarf {units.show(long, 'length')} long; leave the overlap "
                 "out, or correct one of them.",
             )
     if overlap is not None and overlap > LONGEST * min(inner.thickness, outer.thickness):
         yield Fault("overlap", "more than a million times as long as an adherend is thick; check both and their units.")
+
+
+def _tapers(layout: str, adherends: Adherends, load: SpliceLoad | None) -> Iterator[Fault]:
+    """Free ends that thin: where there is one, with both of its sizes; blunt ends of scarfs, alike on both pieces."""
+    sides = (("inner", adherends.inner), ("outer", adherends.outer))
+    if layout == "scarf":
+        tips = [each.tip for _, each in sides if each.tip is not None]
+        for name, each in sides:
+            if each.taper is not None:
+                yield Fault(f"adherends.{name}.taper", "a scarf tapers all along; leave it out, and enter its slope.")
+            if each.tip is not None and not each.tip < each.thickness / 2:
+                yield Fault(f"adherends.{name}.tip", "two such tips leave no scarf; each must be under half.")
+        if len(tips) == 2 and abs(tips[0] - tips[1]) > 1e-6 * tips[0]:
+            yield Fault("adherends.outer.tip", "both pieces of a scarf end with the same blunt tip; enter one of them.")
+        if tips and load is not None and (load.moment or load.shear):
+            yield Fault(
+                f"load.{'moment' if load.moment else 'shear'}",
+                "a scarf with blunt tips is reckoned for axial load alone; leave the tips out, or test it in bending.",
+            )
+        return
+    for name, each in sides:
+        if each.taper is None and each.tip is None:
+            continue
+        if layout == "tube-lap" or (name == "inner" and layout != "single-lap"):
+            why = "tubes are reckoned with even walls" if layout == "tube-lap" else "it has no free end under the bond"
+            yield Fault(f"adherends.{name}.taper", f"cannot taper in a {layout}: {why}; leave it out.")
+        elif each.taper is None:
+            yield Fault(f"adherends.{name}.taper", "missing; enter the length over which the end thins to its tip.")
+        elif each.tip is None:
+            yield Fault(f"adherends.{name}.tip", "missing; enter the thickness at the tip, never quite nothing.")
+        elif each.tip > each.thickness:
+            yield Fault(f"adherends.{name}.tip", "the tip is thicker than the adherend; it must be thinner.")
 
 
 def _loads(layout: str, load: SpliceLoad) -> Iterator[Fault]:

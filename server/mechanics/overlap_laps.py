@@ -8,7 +8,7 @@ plain E. Arms are half the thicknesses, the bond line left out. A batch of overl
 from __future__ import annotations
 
 from collections.abc import Callable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Literal
 
 import numpy as np
@@ -17,7 +17,7 @@ from numpy.typing import ArrayLike
 from server.errors import InputError, positive
 from server.mechanics.overlap_edges import hart_smith_factor, strap_factors
 from server.mechanics.overlap_mesh import GROWTH, Mesh, graded
-from server.mechanics.overlap_solver import Adherend, Array, Course, Loads, Pair, Solver
+from server.mechanics.overlap_solver import GAUSS, Adherend, Array, Course, Loads, Pair, Solver
 
 Layout = Literal["single-lap", "double-lap", "strap", "double-strap", "scarf", "tube-lap"]
 PLATES = ("single-lap", "double-lap", "strap", "double-strap")
@@ -26,12 +26,23 @@ DOUBLE = ("double-lap", "double-strap")
 
 @dataclass(frozen=True)
 class Plate:
-    """One adherend: modulus, thickness, Poisson's ratio, shear modulus (tubes in torque; None: E / (2 (1 + nu)))."""
+    """One adherend: modulus, thickness, Poisson's ratio, shear modulus (tubes in torque; None: E / (2 (1 + nu))).
+
+    ``taper`` is the length over which its free end thins to ``tip`` [mm]; in a scarf, whose pieces taper all along,
+    ``tip`` alone is the thickness of the blunt end.
+    """
 
     E: float
     thickness: float
     nu: float = 0.0
     G: float | None = None
+    taper: float = 0.0
+    tip: float = 0.0
+
+    @property
+    def thinnest(self) -> float:
+        """Thickness at its thinnest [mm]."""
+        return self.tip if self.taper else self.thickness
 
     @property
     def plane_modulus(self) -> float:
@@ -174,6 +185,8 @@ def respond(lap: Lap, overlap: ArrayLike, action: Action | None = None) -> Respo
 
 def check(lap: Lap) -> None:
     """Refuse sizes that no joint has, by name."""
+    from server.mechanics.overlap_taper import check_taper
+
     for name, plate in (("inner", lap.inner), ("outer", lap.outer)):
         positive(f"{name}.E", plate.E, "MPa")
         positive(f"{name}.thickness", plate.thickness, "mm")
@@ -191,6 +204,10 @@ def check(lap: Lap) -> None:
         positive("width", lap.width, "mm")
     if lap.layout == "scarf":
         positive("slope", lap.slope, "")
+        tip, t = lap.inner.tip, lap.inner.thickness
+        if tip and not 0 < tip < t / 2:
+            raise InputError("inner.tip", f"two blunt tips of {tip:g} mm leave no scarf in {t:g} mm of thickness.")
+    check_taper(lap)
 
 
 def plate_beam(plate: Plate, width: float, share: float = 1.0) -> Adherend:
@@ -201,11 +218,13 @@ def plate_beam(plate: Plate, width: float, share: float = 1.0) -> Adherend:
 
 def mesh_for(lap: Lap, lengths: Array, growth: float = GROWTH) -> Mesh:
     """A mesh that resolves shear and peel of plates at both ends."""
-    c = [plate_beam(plate, 1.0) for plate in (lap.inner, lap.outer)]
+    from server.mechanics.overlap_taper import breaks_of
+
+    c = [plate_beam(replace(plate, thickness=plate.thinnest), 1.0) for plate in (lap.inner, lap.outer)]
     softness = sum(float(np.asarray(a.stretch)) + float(np.asarray(a.arm)) ** 2 * float(np.asarray(a.bend)) for a in c)
     shear = np.sqrt(2 * lap.bond.shear_modulus / lap.bond.thickness * softness)
     peel = (lap.bond.E / lap.bond.thickness * sum(float(np.asarray(a.bend)) for a in c)) ** 0.25
-    return graded(lengths, np.full(len(lengths), max(shear, peel)), growth=growth)
+    return graded(lengths, np.full(len(lengths), max(shear, peel)), growth=growth, places=breaks_of(lap, lengths))
 
 
 def axial_system(lap: Lap, lengths: Array, strain: float, growth: float = GROWTH) -> tuple[Solver, Loads]:
@@ -216,7 +235,8 @@ def axial_system(lap: Lap, lengths: Array, strain: float, growth: float = GROWTH
     """
     mesh, bond, b = mesh_for(lap, lengths, growth), lap.bond, lap.width
     stiffness = (bond.shear_modulus * b / bond.thickness, bond.E * b / bond.thickness)
-    outer, ones = plate_beam(lap.outer, b), np.ones(len(lengths))
+    outer, inner = _beams(lap, mesh, lengths)
+    ones = np.ones(len(lengths))
     zero = 0 * ones
     if lap.layout in DOUBLE:
         # one outer plate and half of the middle one, which stays straight
@@ -241,10 +261,34 @@ def axial_system(lap: Lap, lengths: Array, strain: float, growth: float = GROWTH
         left=(none, none, none),
         right=(along, slope, at_right),
         axial=along,
-        moment=_moments(start, slope),
+        moment=_about_inner(lap, lengths, along, _moments(start, slope)),
         mismatch=np.stack((zero, zero, zero, zero, zero, ones * strain), 1),
     )
-    return Solver(Pair(outer, plate_beam(lap.inner, b), *stiffness), mesh), loads
+    return Solver(Pair(outer, inner, *stiffness), mesh), loads
+
+
+def _beams(lap: Lap, mesh: Mesh, lengths: Array) -> tuple[Adherend, Adherend]:
+    """Outer plate, which ends at the left, and inner one, which ends at the right, tapered or not."""
+    from server.mechanics.overlap_taper import beam_at
+
+    points = mesh.inside(GAUSS)
+    outer = beam_at(lap.outer, lap.width, points, lengths, "left") if lap.outer.taper else None
+    inner = beam_at(lap.inner, lap.width, points, lengths, "right") if lap.inner.taper else None
+    return outer or plate_beam(lap.outer, lap.width), inner or plate_beam(lap.inner, lap.width)
+
+
+def _about_inner(lap: Lap, lengths: Array, axial: Array, moment: Callable[[Array], Array]) -> Callable[[Array], Array]:
+    """Moments of the whole joint about the inner plate's axis, which rises towards the bond where that plate thins."""
+    from server.mechanics.overlap_taper import thickness_at
+
+    if not lap.inner.taper:
+        return moment
+
+    def shifted(x: Array) -> Array:
+        rise = (lap.inner.thickness - thickness_at(lap.inner, x, lengths, "right")) / 2
+        return np.asarray(moment(x) + rise[..., None] * axial[:, None, None])
+
+    return shifted
 
 
 def _moments(start: Array, slope: Array) -> Callable[[Array], Array]:
@@ -298,14 +342,18 @@ def double_shares(action: Action, count: int) -> Callable[[Array], Array]:
 
 def plate_fields(lap: Lap, course: Course, loads: Loads, lengths: Array) -> dict[str, Array]:
     """Stresses from the course of one outer plate over one bond line; the inner one follows from equilibrium."""
+    from server.mechanics.overlap_taper import thickness_at
+
     count = course.slip.shape[-1]
     b = lap.width
+    t_outer = thickness_at(lap.outer, course.at, lengths, "left")[..., None]
+    t_inner = thickness_at(lap.inner, course.at, lengths, "right")[..., None]
     axial = np.concatenate((loads.axial, np.zeros((len(lengths), count - loads.axial.shape[1]))), axis=1)
     inner_force = axial[:, None] - course.force
     fields = {
         "shear": lap.bond.shear_modulus / lap.bond.thickness * course.slip,
         "peel": lap.bond.E / lap.bond.thickness * course.opening,
-        "outer": _faces(course.force, course.moment, lap.outer.thickness, b),
+        "outer": _faces(course.force, course.moment, t_outer, b),
     }
     if lap.layout in DOUBLE:
         fields["inner"] = 2 * inner_force / (b * lap.inner.thickness)
@@ -313,14 +361,15 @@ def plate_fields(lap: Lap, course: Course, loads: Loads, lengths: Array) -> dict
     total = loads.moment(course.at[:, :, None])[:, :, 0]
     if total.shape[-1] < count:
         total = np.concatenate((total, np.zeros((*total.shape[:2], count - total.shape[-1]))), axis=-1)
-    inner_moment = total + lap.arm * course.force - course.moment
-    fields["inner"] = _faces(inner_force, inner_moment, lap.inner.thickness, b)
+    inner_moment = total + (t_outer + t_inner) / 2 * course.force - course.moment
+    fields["inner"] = _faces(inner_force, inner_moment, t_inner, b)
     return fields
 
 
-def _faces(force: Array, moment: Array, thickness: float, width: float) -> Array:
+def _faces(force: Array, moment: Array, thickness: ArrayLike, width: float) -> Array:
     """Stress on both faces of a plate, one stack of places after the other."""
-    mean, edge = force / (width * thickness), 6 * moment / (width * thickness**2)
+    thick = np.asarray(thickness)
+    mean, edge = force / (width * thick), 6 * moment / (width * thick**2)
     return np.concatenate((mean + edge, mean - edge), axis=1)
 
 
@@ -348,6 +397,8 @@ def _double(lap: Lap, lengths: Array, action: Action) -> Response:
 
 def _odd_fields(lap: Lap, mesh: Mesh, lengths: Array) -> dict[str, Array]:
     """Upper half of a double lap that bends: the middle plate only turns, the outer ones are opposite."""
+    from server.mechanics.overlap_taper import thickness_at
+
     b, h, ones = lap.width, lap.arm, np.ones(len(lengths))
     outer, half = plate_beam(lap.outer, b), plate_beam(lap.inner, b, 0.5)
     inner = Adherend(0.0, half.bend, lap.inner.thickness / 2)
@@ -362,13 +413,15 @@ def _odd_fields(lap: Lap, mesh: Mesh, lengths: Array) -> dict[str, Array]:
         mismatch=np.zeros((len(lengths), 2)),
     )
     bond = lap.bond
-    pair = Pair(outer, inner, bond.shear_modulus * b / bond.thickness, bond.E * b / bond.thickness)
+    thinning = _beams(lap, mesh, lengths)[0]
+    pair = Pair(thinning, inner, bond.shear_modulus * b / bond.thickness, bond.E * b / bond.thickness)
     course = Solver(pair, mesh).solve(loads)
     total = loads.moment(course.at[:, :, None])[:, :, 0]
-    moment = 2 * (total + h * course.force - course.moment)
+    thick = thickness_at(lap.outer, course.at, lengths, "left")[..., None]
+    moment = 2 * (total + (thick + lap.inner.thickness) / 2 * course.force - course.moment)
     return {
         "shear": bond.shear_modulus / bond.thickness * course.slip,
         "peel": bond.E / bond.thickness * course.opening,
-        "outer": _faces(course.force, course.moment, lap.outer.thickness, b),
+        "outer": _faces(course.force, course.moment, thick, b),
         "inner": _faces(0 * moment, moment, lap.inner.thickness, b),
     }

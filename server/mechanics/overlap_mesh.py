@@ -48,7 +48,7 @@ def graded(length: ArrayLike, rate: ArrayLike, *, growth: float = GROWTH, places
     growth : float
         Largest ratio of neighbouring elements [-]; nearer to 1 where something happens away from the ends.
     places : array_like
-        Further places to be nodes, alike for all bonds, such as where a load stands [mm].
+        Further places to be nodes, such as where a load stands, alike for all bonds or one row a bond [mm].
 
     Returns
     -------
@@ -80,7 +80,8 @@ def graded(length: ArrayLike, rate: ArrayLike, *, growth: float = GROWTH, places
     left[:, -1] = half
     nodes = np.concatenate((left, 2 * half[:, None] - left[:, -2::-1]), axis=1)
     nodes[:, 0] = 0.0
-    fixed = np.broadcast_to(np.asarray(places, dtype=float), (len(half), np.size(places)))
+    further = np.asarray(places, dtype=float)
+    fixed = np.broadcast_to(further, (len(half), further.shape[-1]))
     if fixed.size:
         nodes = _apart(np.sort(np.concatenate((nodes, fixed), axis=1), axis=1))
         return Mesh(nodes, np.diff(nodes, axis=1))

@@ -8,6 +8,7 @@ from __future__ import annotations
 
 import numpy as np
 
+from server.errors import InputError
 from server.mechanics.overlap_laps import Action, Lap, Response
 from server.mechanics.overlap_mesh import GROWTH, graded
 from server.mechanics.overlap_solver import GAUSS, Adherend, Array, Loads, Pair, Solver
@@ -16,6 +17,7 @@ from server.mechanics.overlap_solver import GAUSS, Adherend, Array, Loads, Pair,
 def scarf_system(lap: Lap, lengths: Array, strain: float, growth: float = GROWTH) -> tuple[Solver, Loads]:
     """The shear-lag problem of two tapered bars; columns axial, free strain."""
     b, t, bond = lap.width, lap.inner.thickness, lap.bond
+    blunt = lap.inner.tip / t
     soft = [1 / (plate.plane_modulus * t * b) for plate in (lap.inner, lap.outer)]
     stiffness = bond.shear_modulus * b / bond.thickness / _cosine(lap, lengths)
     mesh = graded(lengths, np.sqrt(4 * stiffness * sum(soft)), growth=growth)
@@ -30,13 +32,19 @@ def scarf_system(lap: Lap, lengths: Array, strain: float, growth: float = GROWTH
         mismatch=np.stack((0 * ones, strain * ones), 1),
     )
     # the outer piece grows from its tip at the left, the inner one runs out at the right
-    pair = Pair(Adherend(soft[1] / share), Adherend(soft[0] / (1 - share)), stiffness[:, None, None], bending=False)
+    own = blunt + (1 - 2 * blunt) * share
+    pair = Pair(Adherend(soft[1] / own), Adherend(soft[0] / (1 - own)), stiffness[:, None, None], bending=False)
     return Solver(pair, mesh), loads
+
+
+def scarfed(lap: Lap) -> float:
+    """The thickness that the slope runs through [mm]: all of it but two blunt tips, which join nothing."""
+    return lap.inner.thickness - 2 * lap.inner.tip
 
 
 def _cosine(lap: Lap, lengths: Array) -> Array:
     """The cosine of the slope's angle."""
-    slope = lengths / lap.inner.thickness
+    slope = lengths / scarfed(lap)
     return np.asarray(slope / np.hypot(1.0, slope))
 
 
@@ -70,20 +78,23 @@ def respond_scarf(lap: Lap, lengths: Array, action: Action) -> Response:
     Raises
     ------
     InputError
-        If sizes are beyond all numbers.
+        If sizes are beyond all numbers, or a scarf with blunt tips is bent.
 
     References
     ----------
     .. [1] L. J. Hart-Smith, "Analysis and design of advanced composite bonded joints", NASA CR-112237 (1973).
     """
+    if lap.inner.tip and (action.moment or action.shear):
+        raise InputError("inner.tip", "a scarf with blunt tips is reckoned for axial load; bent ones have no method.")
     solver, loads = scarf_system(lap, lengths, action.strain)
     course = solver.solve(loads)
     b, t = lap.width, lap.inner.thickness
-    slope = lengths / t
+    slope = lengths / scarfed(lap)
+    blunt = lap.inner.tip / t
     cosine2 = _cosine(lap, lengths) ** 2
     flow = np.asarray(solver.pair.shear) * course.slip
     # a solid piece: bending stress from one face to the other, shear stress as a parabola (tip of the outer one below)
-    height = 0.5 - course.at / lengths[:, None]
+    height = (0.5 - blunt) * (1 - 2 * course.at / lengths[:, None])
     bending = 12 * height / (b * t**2)
     parabola = 1.5 * (1 - 4 * height**2) / (b * t)
     across = (cosine2 / slope)[:, None]  # sin cos
@@ -91,15 +102,18 @@ def respond_scarf(lap: Lap, lengths: Array, action: Action) -> Response:
     shear = [cosine2[:, None, None] * flow / b, across * bending, twice * parabola]
     peel = [across[..., None] * flow / b, across / slope[:, None] * bending, -2 * across * parabola]
     share = course.at / lengths[:, None]
-    own = np.clip(np.stack((1 - share, share)), 1e-9, None)
+    thick = blunt + (1 - 2 * blunt) * share
+    own = np.clip(np.stack((1 - thick, thick)), 1e-9, None)
     force = np.stack((loads.axial[:, None] - course.force, course.force))
     inner, outer = force / (b * t * own[..., None])
     ends = np.zeros_like(own[0])
+    if not blunt:
+        inner, outer = _at_root(inner, 0), _at_root(outer, -1)
     fields = {
         "shear": _columns(shear),
         "peel": _columns(peel),
-        "inner": _columns([_at_root(inner, 0), bending + ends, ends]),
-        "outer": _columns([_at_root(outer, -1), bending + ends, ends]),
+        "inner": _columns([inner, bending + ends, ends]),
+        "outer": _columns([outer, bending + ends, ends]),
     }
     ones = np.ones(len(lengths))
     return Response(

@@ -121,6 +121,14 @@ GROUPS = (
         (
             Ask("adherends.inner.thickness", "Thickness", "size", start=("1.6", "0.063")),
             Ask(
+                "adherends.inner.taper",
+                "Taper of its free end",
+                "size",
+                hint="blank: none",
+                only=(("layout", ("single-lap",)),),
+            ),
+            Ask("adherends.inner.tip", "Thickness at the tip", "size", only=(("layout", ("single-lap", "scarf")),)),
+            Ask(
                 "adherends.inner.grain",
                 "Grain",
                 choices=(("along", "along the load"), ("across", "across the load")),
@@ -138,6 +146,10 @@ GROUPS = (
         "Outer adherend",
         (
             Ask("adherends.outer.thickness", "Thickness", "size", start=("1.6", "0.063")),
+            Ask(
+                "adherends.outer.taper", "Taper of its free end", "size", hint="blank: none", only=(("layout", PLATES),)
+            ),
+            Ask("adherends.outer.tip", "Thickness at the tip", "size", only=(("layout", PLATES),)),
             Ask(
                 "adherends.outer.grain",
                 "Grain",

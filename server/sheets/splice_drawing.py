@@ -67,15 +67,20 @@ def _joint(drawing: Drawing, picture: Mapping[str, Any], thick: Sequence[float],
     layout, inner, outer = picture["layout"], thick[0], thick[1]
     kinds = [each["kind"] for each in picture["adherends"]]
     gap = 2.8  # a bond line as drawn
+    tapers = [_taper(each) for each in picture["adherends"]]
     if layout == "scarf":
-        return _scarf(drawing, kinds, inner, top)
+        return _scarf(drawing, kinds, inner, top, tapers[0][1])
+    per_mm = (RIGHT - LEFT) / picture["length"]
+    ends = [(length * per_mm, tip * size) for (length, tip), size in zip(tapers, thick, strict=True)]
     double = layout in ("double-lap", "double-strap")
     straps = layout in ("strap", "double-strap")
     y = top
-    _box(drawing, LEFT, RIGHT + STUB, y, y + outer, kinds[1], 1)
+    _outer(drawing, (y, y + outer), ends[1], kinds[1])
     _bond(drawing, y + outer + gap / 2)
     y += outer + gap
-    _box(drawing, LEFT - STUB, RIGHT, y, y + inner, kinds[0], 0)
+    reach, tip = ends[0]
+    outline = [(LEFT - STUB, y), (RIGHT, y), (RIGHT, y + tip), (RIGHT - reach, y + inner), (LEFT - STUB, y + inner)]
+    _piece(drawing, outline, kinds[0], 0)
     if straps:
         _box(drawing, RIGHT + 3, RIGHT + STUB, y, y + inner, kinds[0], 0)
         drawing.line("bond", RIGHT + 3, y - gap / 2, RIGHT + STUB, y - gap / 2)
@@ -84,7 +89,7 @@ def _joint(drawing: Drawing, picture: Mapping[str, Any], thick: Sequence[float],
         _bond(drawing, y + gap / 2)
         if straps:
             drawing.line("bond", RIGHT + 3, y + gap / 2, RIGHT + STUB, y + gap / 2)
-        _box(drawing, LEFT, RIGHT + STUB, y + gap, y + gap + outer, kinds[1], 1)
+        _outer(drawing, (y + gap + outer, y + gap), ends[1], kinds[1])
         y += gap + outer
     if layout == "tube-lap":
         drawing.line("axis", LEFT - STUB - 8, y + 12, RIGHT + STUB + 8, y + 12)
@@ -93,11 +98,30 @@ def _joint(drawing: Drawing, picture: Mapping[str, Any], thick: Sequence[float],
     return y
 
 
-def _scarf(drawing: Drawing, kinds: Sequence[str], thick: float, top: float) -> float:
+def _taper(each: Mapping[str, Any]) -> tuple[float, float]:
+    """Length of an adherend's taper [mm], and its tip over its thickness; 0 and 1 where it is even."""
+    tip = float(each.get("tip") or 0.0)
+    return float(each.get("taper") or 0.0), tip / each["thickness"] if tip else 1.0
+
+
+def _outer(drawing: Drawing, levels: tuple[float, float], end: tuple[float, float], kind: str) -> None:
+    """An outer plate between its outer and its bonded face; its free end, at the left, may thin on the outer one."""
+    (outside, bonded), (reach, tip) = levels, end
+    thin = bonded + (outside - bonded) * tip / abs(outside - bonded)
+    right = RIGHT + STUB
+    outline = [(LEFT, thin), (LEFT + reach, outside), (right, outside), (right, bonded), (LEFT, bonded)]
+    _piece(drawing, outline if outside < bonded else outline[::-1], kind, 1)
+
+
+def _scarf(drawing: Drawing, kinds: Sequence[str], thick: float, top: float, tip: float) -> float:
     low = top + thick
-    _piece(drawing, [(LEFT - STUB, top), (LEFT, top), (RIGHT, low), (LEFT - STUB, low)], kinds[0], 0)
-    _piece(drawing, [(LEFT, top), (RIGHT + STUB, top), (RIGHT + STUB, low), (RIGHT, low)], kinds[1], 1)
-    drawing.line("bond", LEFT, top, RIGHT, low)
+    blunt = tip * thick if tip < 1 else 0.0
+    upper, lower = top + blunt, low - blunt  # where the slope begins and ends
+    inner = [(LEFT - STUB, top), (LEFT, top), (LEFT, upper), (RIGHT, lower), (RIGHT, low), (LEFT - STUB, low)]
+    outer = [(LEFT, top), (RIGHT + STUB, top), (RIGHT + STUB, low), (RIGHT, low), (RIGHT, lower), (LEFT, upper)]
+    _piece(drawing, inner, kinds[0], 0)
+    _piece(drawing, outer, kinds[1], 1)
+    drawing.line("bond", LEFT, upper, RIGHT, lower)
     return low
 
 

@@ -22,6 +22,13 @@ CONTRACT = {
 }
 
 
+def thinned(side="outer", of=1.62, **sizes):
+    """Adherends of one material, one of them with a taper or tip."""
+    made = sides("aluminium", "aluminium") if of == 1.62 else sides("spruce", "spruce", of, of)
+    made[side] |= sizes
+    return made
+
+
 @pytest.mark.parametrize("layout", SHAPES)
 @pytest.mark.parametrize("response", ["elastic", "elastic-plastic"])
 def test_every_layout_answers_with_every_key_of_the_contract(layout, response):
@@ -224,6 +231,14 @@ def test_a_lightly_stressed_middle_is_asked_for_under_a_load_that_stays():
         ({**PLASTIC, "epoxy": {"shear_strain_limit": 0.01}}, f"{EPOXY}.shear_strain_limit", "yields"),
         ({**SHAPES["scarf"], "adherends": sides("steel", "steel", 2, 3)}, "adherends.outer.thickness", "one thickness"),
         ({"fatigue": {"impact": 2}}, "fatigue", "cycles"),
+        ({"adherends": thinned(taper=5)}, "adherends.outer.tip", "missing"),
+        ({"adherends": thinned(tip=0.5)}, "adherends.outer.taper", "missing"),
+        ({"adherends": thinned(taper=5, tip=9)}, "adherends.outer.tip", "thicker than"),
+        ({"adherends": thinned("inner", taper=5, tip=1), "layout": "strap"}, "adherends.inner.taper", "cannot taper"),
+        ({"adherends": thinned(taper=5, tip=1), **SHAPES["tube-lap"]}, "adherends.outer.taper", "even walls"),
+        ({"adherends": thinned(taper=5), **SHAPES["scarf"]}, "adherends.outer.taper", "tapers all along"),
+        ({"adherends": thinned(tip=1), **SHAPES["scarf"]}, "adherends.outer.tip", "no scarf"),
+        ({"adherends": thinned(tip=0.2), **SHAPES["scarf"], "load": {"moment": 5}}, "load.moment", "axial load alone"),
         ({"colour": 3}, "colour", "not a name"),
     ],
 )  # fmt: skip
@@ -288,6 +303,37 @@ def test_leaving_the_working_out_changes_no_number():
     assert with_steps.pop("steps")
     assert without.pop("steps") == []
     assert with_steps == without
+
+
+def test_a_taper_is_offered_and_brings_what_was_told():
+    made = {
+        "layout": "double-lap",
+        "adherends": sides("steel", "steel", 3, 3),
+        "overlap": 30,
+        "epoxy": {"peel_strength": 8},
+    }
+    told = next(change for change in run(**made)["changes"] if change["what"].startswith("free ends tapered"))
+    assert told["what"] == "free ends tapered to 0.75 mm over 15 mm"
+    thin = copy.deepcopy(made)
+    thin["adherends"]["outer"] |= {"taper": 15, "tip": 0.75}
+    result = run(**thin)
+    assert result["joint_strength"] == pytest.approx(told["joint_strength"], rel=1e-9)
+    assert result["peak_peel"] < run(**made)["peak_peel"]
+    assert result["peak_shear_closed_form"] is None  # it is for adherends of one thickness
+    assert any(c["about"] == "tapered ends" and c["answer"] for c in result["cautions"])
+    assert not any(change["what"].startswith("free ends tapered") for change in result["changes"])
+
+
+def test_blunt_tips_of_a_scarf_join_nothing_and_gather_stress():
+    sharp, blunt = (
+        run(**SHAPES["scarf"], adherends=sides("spruce", "spruce", 12, 12) if tip is None else thinned(tip=tip, of=12))
+        for tip in (None, 1.0)
+    )
+    assert sharp["overlap"] == 96
+    assert blunt["overlap"] == 8 * (12 - 2)
+    assert blunt["mean_shear"] == pytest.approx(sharp["mean_shear"] * 12 / 10)
+    assert blunt["peak_shear"] > 2 * sharp["peak_shear"]
+    assert blunt["joint_strength"] < sharp["joint_strength"]
 
 
 def test_swapping_the_plates_mirrors_the_joint():

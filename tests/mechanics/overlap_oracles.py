@@ -113,3 +113,57 @@ def two_bars_by_energy(length, soft1, soft2, ks, force, *, elements=20000):
     band = np.vstack([main[1:-1], np.append(side[1:-1], 0.0)])
     N = np.concatenate(([0.0], solveh_banded(band, load[1:-1], lower=True), [force]))
     return middle, np.diff(N) / h
+
+
+def two_tapered_beams(length, upper, lower, ks, kp, ends, *, breaks=(), mismatch=0.0, yield_flow=None, points=200):
+    """As ``two_beams`` for beams that change along the bond: ``upper`` and ``lower`` give (EA, EI, arm) at places.
+
+    Moments are taken about the bond, where the flow has no arm and the slope of an axis none either (M_b' = V); those
+    about the axes are M_b + c N of the upper and M_b - c N of the lower beam. Plane sections strain the faces at the
+    bond by N/EA +- c M/EI. Unknowns of each beam: displacement at the bond, N, w, w', M_b, V.
+    """
+    left1, right1, left2 = ends
+    EA1, EI1, c1 = (np.max(each) for each in upper(np.array([0.0, length])))
+    c2 = np.max(lower(np.array([0.0, length]))[2])
+    force = max(abs(right1[0]), abs(left2[0]), abs(mismatch) * EA1 * 1e-2)
+    couple = force * max(c1, c2)
+    bent = couple * length / EI1
+    scale = np.array([force * length / EA1, force, bent * length, bent, couple, couple / length] * 2)
+
+    def equations(t, z):
+        y = z * scale[:, None]
+        (EA1, EI1, c1), (EA2, EI2, c2) = upper(t * length), lower(t * length)
+        q = ks * (y[0] - y[6])
+        q = q if yield_flow is None else np.clip(q, -yield_flow, yield_flow)
+        pull = kp * (y[2] - y[8])
+        curve1, curve2 = (y[4] + c1 * y[1]) / EI1, (y[10] - c2 * y[7]) / EI2
+        rows = [
+            *(y[1] / EA1 + c1 * curve1 + mismatch, q, y[3], curve1, y[5], -pull),
+            *(y[7] / EA2 - c2 * curve2, -q, y[9], curve2, y[11], pull),
+        ]
+        return length * np.vstack(rows) / scale[:, None]
+
+    def boundary(za, zb):
+        rows = []
+        for z, first, (N, V, M), arm in (
+            (za, 0, left1, upper(np.zeros(1))[2]),
+            (zb, 0, right1, upper(np.full(1, length))[2]),
+            (za, 6, left2, -lower(np.zeros(1))[2]),
+        ):
+            state = z * scale
+            rows += [(state[first + 1] - N) / force, (state[first + 5] - V) / scale[5]]
+            rows.append((state[first + 4] - (M - arm[0] * N)) / couple)
+        return np.array([*rows, za[6], za[8], za[9]])
+
+    t = np.unique(np.concatenate(((1 - np.cos(np.pi * np.linspace(0, 1, points))) / 2, np.asarray(breaks) / length)))
+    start = np.zeros((12, t.size))
+    start[1] = t * right1[0] / force
+    found = solve_bvp(equations, boundary, t, start, tol=1e-5, max_nodes=30000)
+    assert found.success, found.message
+    where = (1 - np.cos(np.pi * np.linspace(0, 1, 2001))) / 2
+    y = found.sol(where) * scale[:, None]
+    q = ks * (y[0] - y[6])
+    q = q if yield_flow is None else np.clip(q, -yield_flow, yield_flow)
+    x = where * length
+    c1, c2 = upper(x)[2], lower(x)[2]
+    return x, q, kp * (y[2] - y[8]), (y[1], y[4] + c1 * y[1], y[7], y[10] - c2 * y[7])

@@ -57,6 +57,22 @@ def test_a_document_written_elsewhere_gives_the_same_result_through_the_form(lay
         assert one[key] == pytest.approx(other[key], rel=1e-9), key
 
 
+def test_tapers_and_blunt_tips_go_through_the_form_and_onto_the_drawing():
+    thin = {"material": "aluminium", "thickness": 2, "taper": 8, "tip": 0.5}
+    made = lap(adherends={"inner": thin, "outer": thin}, display="SI")
+    blunt = {"material": "spruce", "thickness": 12, "tip": 1}
+    scarf = lap(**SHAPES["scarf"], adherends={"inner": blunt, "outer": {**blunt, "tip": 1}}, display="SI")
+    for each in (made, scarf):
+        through = forms.read(PAGE, forms.write(PAGE, each)).raw
+        one, other = (checks.run(documents.read(raw), working=False) for raw in (each, through))
+        assert one["peak_shear"] == pytest.approx(other["peak_shear"], rel=1e-9)
+    sharp, dull = (
+        splice_svg(checks.run(documents.read(each), working=False)) for each in (lap(**SHAPES["scarf"]), scarf)
+    )
+    begins = [float(re.search(r'stroke-width="2.8" d="M120.0 ([\d.]+)L', svg)[1]) for svg in (sharp, dull)]
+    assert begins[1] > begins[0] + 2  # the slope begins below a blunt tip
+
+
 def test_boxes_come_and_go_with_the_layout(client, job):
     asked = " ".join(forms.shown(PAGE, fresh()))
     answer = client.post(f"{job}/checks/splice/preview", data=fresh(asked=asked, layout="tube-lap"))
