@@ -8,11 +8,16 @@ from __future__ import annotations
 
 import math
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from itertools import pairwise
+
+import numpy as np
+from numpy.typing import NDArray
 
 from server.errors import InputError
 from server.mechanics.beam_model import SAME_PLACE, Beam, Stretch, Support
+
+Array = NDArray[np.float64]
 
 
 @dataclass(frozen=True, slots=True)
@@ -125,6 +130,8 @@ class LayeredMember:
     layers: tuple[Layer, ...]
     joints: tuple[FlexibleJoint, ...]
     shear: tuple[Stretch, ...]
+    tables: tuple[Array, ...] = field(compare=False, repr=False)
+    """Zones of every joint from left to right: start, end, stiffness."""
 
     def __init__(
         self,
@@ -145,8 +152,8 @@ class LayeredMember:
             raise InputError("layers", "no layer is given; give at least one from 0 to the member's end.")
         for number, layer in enumerate(layers):
             self._check_layer(f"layers[{number}]", layer)
-        for number, joint in enumerate(joints):
-            self._check_joint(f"joints[{number}]", joint)
+        tables = (self._check_joint(f"joints[{number}]", joint) for number, joint in enumerate(joints))
+        object.__setattr__(self, "tables", tuple(tables))
         self._check_covered()
 
     @property
@@ -177,7 +184,8 @@ class LayeredMember:
                 f"it runs from {start:g} to {end:g} mm; it must run to the right, between 0 and {self.length:g} mm.",
             )
 
-    def _check_joint(self, field: str, joint: FlexibleJoint) -> None:
+    def _check_joint(self, field: str, joint: FlexibleJoint) -> Array:
+        """Refuse what is unusable; return the zones in order."""
         for name, layer in (("first", joint.first), ("second", joint.second)):
             if not 0 <= layer < len(self.layers):
                 raise InputError(f"{field}.{name}", f"there is no layer {layer}; name 0 to {len(self.layers) - 1}.")
@@ -195,6 +203,8 @@ class LayeredMember:
                 raise InputError(
                     f"{field}.zones", f"two zones overlap between {right.start:g} and {left.end:g} mm; let them meet."
                 )
+        rows = sorted((zone.start, zone.end, zone.stiffness) for zone in joint.zones)
+        return np.array(rows).reshape(-1, 3)
 
     def _check_covered(self) -> None:
         reached = 0.0
@@ -213,19 +223,17 @@ class LayeredMember:
         places = {0.0, self.length, *(s.start for s in self.shear)}
         for layer in self.layers:
             places.update((layer.start, layer.end, *(end for s in layer.shares for end in (s.start, s.end))))
-        for joint in self.joints:
-            for zone in joint.zones:
-                places.update((zone.start, zone.end))
-        inside = [0.0]
-        for place in sorted(places):
-            if inside[-1] + self.same_place < place < self.length - self.same_place:
+        ends = [table[:, :2].ravel() for table in self.tables]
+        inside, slack = [0.0], self.same_place
+        for place in np.unique(np.concatenate([np.array(sorted(places)), *ends])).tolist():
+            if inside[-1] + slack < place < self.length - slack:
                 inside.append(place)
-        ends = [*inside, self.length]
+        cuts = [*inside, self.length]
         return Beam(
             self.length,
             self.supports,
             self.hinges,
-            [Stretch(a, b, 1.0, self._GA(0.5 * (a + b))) for a, b in pairwise(ends)],
+            [Stretch(a, b, 1.0, self._GA(0.5 * (a + b))) for a, b in pairwise(cuts)],
         )
 
     def _GA(self, at: float) -> float:

@@ -105,8 +105,11 @@ def shapes(mu: Array) -> Waves:
     mu = np.asarray(mu, dtype=float)
     small = mu <= SERIES_BELOW
     degree = _degree(float(mu[small].max(initial=0.0))) if small.any() else 2
-    power = np.zeros((5, *mu.shape, degree + 1))
     left, right = np.zeros((5, *mu.shape)), np.zeros((5, *mu.shape))
+    if small.all():
+        power = _series(mu.ravel(), degree).reshape(5, *mu.shape, degree + 1)
+        return Waves(np.broadcast_to(mu, (5, *mu.shape)), power, left, right)
+    power = np.zeros((5, *mu.shape, degree + 1))
     if small.any():
         power[:, small] = _series(mu[small], degree)
     large = ~small
@@ -148,15 +151,17 @@ def _degree(mu: float) -> int:
 def _series(mu: Array, degree: int) -> Array:
     """Return the five functions as power series, (5, M, degree + 1)."""
     square = mu**2
-    free = np.zeros((5, mu.size, degree + 1))  # cosh, sinh(mu t)/mu, and the particular solutions from rest
-    free[LEFT, :, 0] = free[RIGHT, :, 1] = 1
+    free = np.zeros((degree + 1, 5, mu.size))  # cosh, sinh(mu t)/mu, and the particular solutions from rest
+    free[0, LEFT] = free[1, RIGHT] = 1
     for k in range(degree - 1):
-        free[:, :, k + 2] = square * free[:, :, k]
+        np.multiply(square, free[k], out=free[k + 2])
         if k < 3:
-            free[CONSTANT + k, :, k + 2] += 1 / factorial(k)
-        free[:, :, k + 2] /= (k + 1) * (k + 2)
-    end = free.sum(2)
-    unit = free[RIGHT] / end[RIGHT, :, None]
-    shaped = free - end[:, :, None] * unit
-    shaped[RIGHT] = unit
-    return np.asarray(shaped)
+            free[k + 2, CONSTANT + k] += 1 / factorial(k)
+        free[k + 2] /= (k + 1) * (k + 2)
+    end = free.sum(0)
+    unit = free[:, RIGHT] / end[RIGHT]
+    shaped = np.empty((5, mu.size, degree + 1))
+    for shape in (LEFT, CONSTANT, LINEAR, SQUARE):
+        shaped[shape] = (free[:, shape] - end[shape] * unit).T
+    shaped[RIGHT] = unit.T
+    return shaped

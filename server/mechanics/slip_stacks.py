@@ -123,12 +123,12 @@ def plant(member: LayeredMember) -> Tree:
     of_joint: list[int] = []
     sign: list[float] = []
     weight: list[float] = []
-    for joint in member.joints:
+    for joint, table in zip(member.joints, member.tables, strict=True):
         pair = (min(joint.first, joint.second), max(joint.first, joint.second))
         place = number.setdefault(pair, len(number))
         if place == len(weight):
             weight.append(0.0)
-        weight[place] += sum(zone.stiffness * (zone.end - zone.start) for zone in joint.zones)
+        weight[place] += float(table[:, 2] @ (table[:, 1] - table[:, 0]))
         of_joint.append(place)
         sign.append(1.0 if joint.first == pair[0] else -1.0)
     edges = np.array(list(number), dtype=np.intp).reshape(-1, 2)
@@ -208,18 +208,26 @@ def stack(member: LayeredMember, tree: Tree, breaks: Array) -> Stacks:
         for part in layer.shares:
             counts[:, number] *= np.where((part.start < middle) & (middle < part.end), part.share, 1.0)
     own = np.zeros((len(middle), len(member.joints)))
-    for number, joint in enumerate(member.joints):
-        zones = sorted((zone for zone in joint.zones), key=lambda zone: zone.start)
-        if zones:
-            begin, stop, k = np.array([(zone.start, zone.end, zone.stiffness) for zone in zones]).T
+    for number, (joint, table) in enumerate(zip(member.joints, member.tables, strict=True)):
+        if len(table):
+            begin, stop, k = table.T
             place = np.maximum(np.searchsorted(begin, middle) - 1, 0)
             inside = (begin[place] < middle) & (middle < stop[place])
             own[:, number] = k[place] * (inside & present[:, joint.first] & present[:, joint.second])
     edge = np.zeros((len(middle), len(tree.edges)))
     np.add.at(edge.T, tree.of_joint, own.T)
-    rows, of = np.unique(np.hstack([counts, edge]), axis=0, return_inverse=True)
+    rows, of = distinct(np.hstack([counts, edge]))
     n = len(member.layers)
-    return _modes(member, tree, rows[:, :n], rows[:, n:], own, of.reshape(-1))
+    return _modes(member, tree, rows[:, :n], rows[:, n:], own, of)
+
+
+def distinct(rows: Array | NDArray[np.bool_]) -> tuple[Array, Indices]:
+    """Return the different rows in the order they first come in, and which one each row is."""
+    number: dict[bytes, int] = {}
+    of = np.array([number.setdefault(row.tobytes(), len(number)) for row in np.ascontiguousarray(rows)], dtype=np.intp)
+    first = np.full(len(number), len(rows))
+    np.minimum.at(first, of, np.arange(len(rows)))
+    return np.asarray(rows[first]), of
 
 
 def _modes(member: LayeredMember, tree: Tree, counts: Array, k: Array, own: Array, of: Indices) -> Stacks:
@@ -233,8 +241,9 @@ def _modes(member: LayeredMember, tree: Tree, counts: Array, k: Array, own: Arra
     tied = loose + counts @ (EA * z * z)
     rate, drive = np.zeros((r, n)), np.zeros((r, n))
     force, slide, hold = np.zeros((r, n, n)), np.zeros((r, e, n)), np.zeros((r, e, n))
-    for shares in np.unique(counts, axis=0):
-        alike = np.flatnonzero((counts == shares).all(1))
+    kinds, kind_of = distinct(counts)
+    for number, shares in enumerate(kinds):
+        alike = np.flatnonzero(kind_of == number)
         mask = shares > 0
         here = np.flatnonzero(mask)
         own_EA = shares[here] * EA[here]
@@ -245,29 +254,32 @@ def _modes(member: LayeredMember, tree: Tree, counts: Array, k: Array, own: Arra
         ends[np.arange(e), tree.edges[:, 1]], ends[np.arange(e), tree.edges[:, 0]] = 1, -1
         both = mask[tree.edges].all(1)
         G = ends[:, here] * both[:, None]
-        bare = np.linalg.solve(root, G.T).T  # G root^-T
+        inverse = np.linalg.inv(root)
+        bare = G @ inverse.T  # G root^-T
         size = len(here)
         weight = np.sqrt(k[alike])
         left, single, right = _split(weight[:, :, None] * bare, _free(k[alike] > 0, tree.edges, here))
-        direction = np.linalg.solve(root.T, right.transpose(0, 2, 1))  # Phi, (kinds, size, size)
+        direction = inverse.T @ right  # Phi, (kinds, size, size)
         holding = weight[:, :, None] * left
         rate[alike, :size] = single
         slide[alike, :, :size] = G @ direction
         hold[alike, :, :size] = holding
         straight = tree.to_layers[here].T @ (C @ direction)
         straight[:, tree.root] *= single == 0  # a mode that something holds has no net force
-        safe = np.where(single > 0, single, 1.0)
-        through = tree.to_slips.T @ (holding / safe[:, None])
         stiff = single * member.length > 1e3  # there the joints' own forces keep more digits than C Phi
-        force[alike, :, :size] = np.where(stiff[:, None], through, straight)
-        shape = tree.to_sigma[:, here]  # N = to_sigma^T Y, for the layers that are there
-        drive[alike, :size] = np.einsum("i,ji,kjm->km", z[here], shape, force[alike, :, :size]) / loose[alike, None]
+        if stiff.any():
+            safe = np.where(single > 0, single, 1.0)
+            through = tree.to_slips.T @ (holding / safe[:, None])
+            straight = np.where(stiff[:, None], through, straight)
+        force[alike, :, :size] = straight
+        arms = tree.to_sigma[:, here] @ z[here]  # N = to_sigma^T Y, for the layers that are there
+        drive[alike, :size] = (arms @ straight) / loose[alike, None]
     lever = counts * (EA * z) / tied[:, None]
     return Stacks(of, present, loose, tied, k, own, rate, force, slide, hold, drive, lever)
 
 
 def _split(scaled: Array, free: Indices) -> tuple[Array, Array, Array]:
-    """Return singular vectors and values of each matrix, the last ``free`` of them exactly zero."""
+    """Return singular vectors, left and right as columns, and values of each matrix, the last ``free`` exactly zero."""
     kinds, e, size = scaled.shape
     left, single = np.zeros((kinds, e, size)), np.zeros((kinds, size))
     if not e:
@@ -275,23 +287,24 @@ def _split(scaled: Array, free: Indices) -> tuple[Array, Array, Array]:
     rows = np.square(scaled).sum(2)
     if np.where(rows > 0, rows, np.inf).min() * UNEQUAL > rows.max():  # squared, they keep their digits
         values, vectors = np.linalg.eigh(scaled.transpose(0, 2, 1) @ scaled)
-        right = vectors[:, :, ::-1].transpose(0, 2, 1)
+        right = np.ascontiguousarray(vectors[:, :, ::-1])  # a product with steps backwards would go the slow way
         single = np.sqrt(np.maximum(values[:, ::-1], 0.0))
     else:
-        _, found, right = np.linalg.svd(scaled)
+        _, found, rows = np.linalg.svd(scaled)
+        right = rows.transpose(0, 2, 1)
         single[:, : found.shape[1]] = found
     single[np.arange(size) >= size - free[:, None]] = 0
     held = single > 0
-    left = scaled @ right.transpose(0, 2, 1) * (held / np.where(held, single, 1.0))[:, None]
+    left = scaled @ right * (held / np.where(held, single, 1.0))[:, None]
     return left, single, right
 
 
 def _free(joined: NDArray[np.bool_], edges: Indices, here: Indices) -> Indices:
     """Return how many bodies the layers ``here`` fall into, for each row of joined pairs."""
     position = {int(layer): place for place, layer in enumerate(here)}
-    patterns, of = np.unique(joined, axis=0, return_inverse=True)
+    patterns, of = distinct(joined)
     counts = [
         len(components(len(here), [(position[int(a)], position[int(b)]) for a, b in edges[pattern]]))
         for pattern in patterns
     ]
-    return np.array(counts, dtype=np.intp)[of.reshape(-1)]
+    return np.array(counts, dtype=np.intp)[of]

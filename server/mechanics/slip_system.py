@@ -223,7 +223,7 @@ def assemble(member: LayeredMember, tree: Tree, stacks: Stacks, chain: Chain) ->
     scale = np.full(b, reach**2 * softness * depth)
     scale[n:] = reach**3 * softness, reach**2 * softness, reach, 1.0
     rows *= np.tile(scale, 3)
-    size = np.abs(rows).max(2, keepdims=True)
+    size = np.maximum(rows.max(2, keepdims=True), -rows.min(2, keepdims=True))
     size[size == 0] = 1.0
     rows /= size
     rhs /= size
@@ -240,10 +240,12 @@ def _axial(tree: Tree, stacks: Stacks, chain: Chain, rows: Array, rhs: Array) ->
     w = chain.load
     Yt = Y.transpose(0, 2, 1)
     start, stop, _ = chain.ends
+    own_end, far_end = ((Y * (start[shape] / d[:, None])[:, None]) @ Yt for shape in (LEFT, RIGHT))  # alike from both
     for slope, at, sign in ((start, chain.left, 1.0), (stop, chain.left + 1, -1.0)):
         shift = 0 if slope is start else -b  # seen from the right-hand break, the interval's left one stands before
-        for shape, place in ((LEFT, own), (RIGHT, after)):
-            block = (Y * (sign * slope[shape] / d[:, None])[:, None]) @ Yt
+        for block, place in zip(
+            (own_end, far_end) if slope is start else (far_end, own_end), (own, after), strict=True
+        ):
             rows[at, :n, place.start + shift : place.stop + shift] += block
         by_shear = (Y @ (p * slope[CONSTANT] * d[:, None])[:, :, None])[:, :, 0]
         by_load = mode_load(chain, stacks, slope[CONSTANT:]) / d[:, None]

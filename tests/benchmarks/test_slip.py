@@ -21,14 +21,14 @@ from server.mechanics.slip import FlexibleJoint, Layer, LayeredMember, SlipRespo
 from server.mechanics.slip_stacks import plant, stack
 from server.mechanics.slip_system import System, assemble, banded, link
 
-LAYERS, STATIONS, ZONES, LENGTH = 20, 400, 8, 8000.0
+LAYERS, STATIONS, LENGTH = 20, 400, 8000.0
 
 
-def wide_member() -> tuple[LayeredMember, list[list[Load]]]:
-    """Return 20 unlike layers with joints in eight zones, and a load at each of 399 places in two cases."""
+def wide_member(zones: int) -> tuple[LayeredMember, list[list[Load]]]:
+    """Return 20 unlike layers with joints in so many zones, and a load at each of 399 places in two cases."""
     number = np.random.default_rng(20)
     layers = [Layer(0, LENGTH, 1e7 * a, 1e9 * b, 20.0 * i) for i, (a, b) in enumerate(number.uniform(0.5, 2, (20, 2)))]
-    ends = np.linspace(0, LENGTH, ZONES + 1)
+    ends = np.linspace(0, LENGTH, zones + 1)
     joints = [
         FlexibleJoint(i, i + 1, tuple(Zone(a, b, number.uniform(1, 50)) for a, b in pairwise(ends)))
         for i in range(LAYERS - 1)
@@ -46,9 +46,10 @@ def equations(member: LayeredMember, cases: list[list[Load]]) -> System:
     return assemble(member, tree, stacks, link(grid, stacks))
 
 
+@pytest.mark.parametrize("zones", [8, STATIONS], ids=["eight zones", "every station its own zone"])
 @pytest.mark.benchmark(group="slip")
-def test_wide_member(benchmark: object) -> None:
-    member, cases = wide_member()
+def test_wide_member(benchmark: object, zones: int) -> None:
+    member, cases = wide_member(zones)
     system = equations(member, cases)
     K, b, c = system.rhs.shape
     w = 2 * b - 1
@@ -61,7 +62,7 @@ def test_wide_member(benchmark: object) -> None:
         solve_slip(member, cases)
         bare.append(middle - start)
         whole.append(process_time() - middle)
-    print(f"\n{K * b} unknowns: {median(whole) / median(bare):.2f} times the bare banded solution")
+    print(f"\n{K * b} unknowns, {zones} zones: {median(whole) / median(bare):.2f} times the bare banded solution")
     response: SlipResponse = benchmark(solve_slip, member, cases)  # type: ignore[operator]
     expected = x.reshape(K, b, c) * system.scale[:, None]
     size = np.abs(expected).max(axis=(0, 2), keepdims=True)
