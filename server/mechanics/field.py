@@ -28,6 +28,7 @@ __all__ = ["PARTS", "Bond", "Field", "remembered_field", "shear_field"]
 TARGET = 0.005  # estimated error of every flow, of itself
 _CAUTION = 2.0  # the difference between two solutions may flatter the better one
 _LITTLE = 0.05  # of the largest flow, or of the sum of all sizes along a joint: what is less is held to this
+MOST_UNKNOWNS = 100_000  # of a solution after which no finer one is tried: a few seconds
 STEPS = (Fineness(0.7, 0.2), Fineness(0.5, 0.05), Fineness(0.35, 0.01), Fineness(0.25, 0.002))
 
 
@@ -129,7 +130,7 @@ def shear_field(
             positive("stiffness", bond.stiffness, "N/mm3")
     found = _attempt(E, G, properties, bonds, steps[0])
     for fineness in steps[1:]:
-        if found.converged:
+        if found.converged or found.unknowns > MOST_UNKNOWNS:
             break
         found = _attempt(E, G, properties, bonds, fineness)
     return found

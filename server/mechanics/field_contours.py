@@ -11,11 +11,10 @@ import numpy as np
 
 from server.mechanics.field import Field
 from server.mechanics.field_stress import stress_at
-from server.mechanics.polygon import Array, Indices
+from server.mechanics.polygon import Array, Bools, Indices
 from server.mechanics.section import Piece, SectionProperties
 
 Loop = list[tuple[float, float]]
-Key = int | tuple[int, int]  # a point, or where the level crosses between two
 _SIX = np.array(((0.0, 0.0), (1.0, 0.0), (0.0, 1.0), (0.5, 0.0), (0.5, 0.5), (0.0, 0.5)))
 _FOUR = np.array(((0, 3, 5), (3, 1, 4), (5, 4, 2), (3, 4, 5)))
 
@@ -91,45 +90,63 @@ def above(points: Array, triangles: Indices, values: Array, level: float) -> lis
     """
     over = values > level
     count = over[triangles].sum(axis=1)
-    following: dict[Key, list[Key]] = {}
-    at: dict[Key, tuple[float, float]] = {}
-    edges: set[tuple[Key, Key]] = set()
+    whole, one, two = (triangles[count == many] for many in (3, 1, 2))
+    one, two = _turned(one, over[one]), _turned(two, ~over[two])  # the odd corner first
+    low, high = _crossed(one, two)
+    crossing = np.unique(low * len(points) + high)
 
-    def add(a: Key, b: Key) -> None:
-        if (b, a) in edges:
-            edges.discard((b, a))
-        else:
-            edges.add((a, b))
+    def cross(i: Indices, j: Indices) -> Indices:
+        wanted = np.minimum(i, j) * len(points) + np.maximum(i, j)
+        return len(points) + np.searchsorted(crossing, wanted)
 
-    for corner in triangles[count > 0].tolist():
-        ring: list[Key] = []
-        for i, j in zip(corner, corner[1:] + corner[:1], strict=True):
-            if over[i]:
-                ring.append(i)
-            if over[i] != over[j]:
-                key = (min(i, j), max(i, j))
-                if key not in at:
-                    t = (level - values[key[0]]) / (values[key[1]] - values[key[0]])
-                    x, u = points[key[0]] + t * (points[key[1]] - points[key[0]])
-                    at[key] = (float(x), float(u))
-                ring.append(key)
-        for one, other in zip(ring, ring[1:] + ring[:1], strict=True):
-            add(one, other)
-    for one, other in edges:
-        following.setdefault(one, []).append(other)
-    corners = points.tolist()
-    return [
-        [at[each] if isinstance(each, tuple) else (corners[each][0], corners[each][1]) for each in loop]
-        for loop in _chained(following)
-    ]
+    rings = [whole.T]
+    if len(one):
+        rings.append(np.stack((one[:, 0], cross(one[:, 0], one[:, 1]), cross(one[:, 2], one[:, 0]))))
+    if len(two):
+        k, i, j = two.T
+        rings.append(np.stack((i, j, cross(j, k), cross(k, i))))
+    first = np.concatenate([ring.ravel() for ring in rings])
+    second = np.concatenate([np.roll(ring, -1, axis=0).ravel() for ring in rings])
+    low, high = np.divmod(crossing, len(points))
+    t = (level - values[low]) / (values[high] - values[low])
+    corners = np.concatenate((points, points[low] + t[:, None] * (points[high] - points[low]))).tolist()
+    following: dict[int, list[int]] = {}
+    for start, end in _uncancelled(first, second, len(corners)):
+        following.setdefault(start, []).append(end)
+    return [[(corners[each][0], corners[each][1]) for each in loop] for loop in _chained(following)]
 
 
-def _chained(following: dict[Key, list[Key]]) -> list[list[Key]]:
+def _turned(triangles: Indices, odd: Bools) -> Indices:
+    """Triangles whose one marked corner comes first."""
+    place = (odd.argmax(axis=1)[:, None] + np.arange(3)) % 3
+    found: Indices = np.take_along_axis(triangles, place, axis=1)
+    return found
+
+
+def _crossed(one: Indices, two: Indices) -> tuple[Indices, Indices]:
+    """Ends of the edges that the level crosses, the lower number first."""
+    pairs = np.concatenate([each[:, [0, 1]] for each in (one, two)] + [each[:, [0, 2]] for each in (one, two)])
+    return pairs.min(axis=1), pairs.max(axis=1)
+
+
+def _uncancelled(first: Indices, second: Indices, count: int) -> list[tuple[int, int]]:
+    """Directed edges that no triangle beside passes the other way."""
+    ahead = first < second
+    key = np.where(ahead, first, second) * count + np.where(ahead, second, first)
+    known, number = np.unique(key, return_inverse=True)
+    net = np.bincount(number, np.where(ahead, 1.0, -1.0), len(known))
+    kept = np.flatnonzero(net)
+    low, high = np.divmod(known[kept], count)
+    forward = net[kept] > 0
+    return list(zip(np.where(forward, low, high).tolist(), np.where(forward, high, low).tolist(), strict=True))
+
+
+def _chained(following: dict[int, list[int]]) -> list[list[int]]:
     """Follow directed edges until each is used."""
     loops = []
     while following:
         start = next(iter(following))
-        loop: list[Key] = []
+        loop: list[int] = []
         here = start
         while here in following:
             loop.append(here)

@@ -18,7 +18,7 @@ from server.mechanics.field_rim import Rim, first_cuts, halved, rim_of, rings
 from server.mechanics.field_sizes import Fineness, sizes
 from server.mechanics.polygon import Array, Bools, Indices
 
-MOST_POINTS = 60_000
+MOST_POINTS = 40_000
 _ROUNDS = 16
 _SHAPE = 1.42  # largest circumradius over shortest edge: least angle 20.6 degrees
 _LEAST = 0.35  # of the shortest part of a piece's outline: what is shorter is not cut again
