@@ -195,6 +195,25 @@ def act(document: documents.MemberDocument, body: Body, wants: moving.Wants | No
     return _actions(document, rows, solved, long_term, deform)
 
 
+def added_after(document: documents.MemberDocument, actions: Actions, before: Sequence[str]) -> Actions:
+    """The same rows of combinations, with the same places of the axles, but without the cases that act ``before``.
+
+    What stays on the member moves no axle's worst place for the force at a bond's end, so the rows serve both.
+    """
+    assert actions.moving is not None
+    written = actions.moving.written
+    dropped = [number for number, case in enumerate(actions.cases) if case in before]
+    column = actions.moving.cases  # behind the document's cases stands one for every row and mover
+    for combination in written.combination:
+        for mover in actions.moving.question.moves(combination):
+            dropped += [column] if actions.cases[mover.case] in before else []
+            column += 1
+    factors, shares = actions.factors.copy(), actions.sustained.copy()
+    factors[:, dropped] = shares[:, dropped] = 0.0
+    rows = _Rows(written.combination, factors, shares, actions.case_loads, actions.moving)
+    return _actions(document, rows, actions.each_case, None, actions.shear_deformation)
+
+
 def _act_both_ways(document: documents.MemberDocument, body: Body) -> Actions:
     """Both planes together; the lateral one stands beside the vertical one."""
     sideways.refuse_moving(document)

@@ -10,7 +10,7 @@ from pydantic import BaseModel
 from server import ENGINE, documents
 from server.checks import effective_width, moving, moving_rounds, sideways
 from server.checks import statics as hand
-from server.checks.actions import Actions, act, envelope
+from server.checks.actions import Actions, act, added_after, envelope
 from server.checks.along import RigidAlong, SlidingAlong
 from server.checks.cautions import NOT_CHECKED, add_cautions
 from server.checks.combined_flow import CombinedAlong
@@ -116,7 +116,7 @@ def _round(
     sags = check_deflection(document, body, actions, book, findings, upper_stiffness=upper)
     if handing is not None and not upper:
         sags += more_deflection(document, actions, handing.ratio, book)
-    ends = check_ends(document, body, actions, judge, book, findings, after=_shared(document, body, findings))
+    ends = check_ends(document, body, actions, judge, book, findings, after=_shared(document, body, rigid, findings))
     lasting = check_lasting(document, actions, joints, book, findings, ends)
     add_cautions(document, body, actions, joints, findings)
     moving_rounds.caution(actions, findings)
@@ -197,7 +197,7 @@ def _upper_stiffness(document: documents.MemberDocument, body: Body, findings: F
     return document.analysis.slip or bool(fastened)
 
 
-def _shared(document: documents.MemberDocument, body: Body, findings: Findings) -> Actions | None:
+def _shared(document: documents.MemberDocument, body: Body, rigid: Actions, findings: Findings) -> Actions | None:
     """The actions that the bonds share, where some act on the unpropped pieces before bonding."""
     before = document.analysis.before_bonding
     if not before:
@@ -206,12 +206,8 @@ def _shared(document: documents.MemberDocument, body: Body, findings: Findings) 
         f"stresses of the pieces and deflection with load before bonding ({', '.join(before)}): until the glue has "
         "set the pieces carry it as they are held; only the ends of bonds are reckoned with what is added afterwards."
     )
-    if moving.movers_of(document):
-        findings.miss(
-            "ends of bonds with moving axles and load before bonding: the two are not reckoned together, so the ends "
-            "are judged under the whole load; leave analysis.before_bonding out, or let the axles stand."
-        )
-        return None
+    if rigid.moving is not None:
+        return added_after(document, rigid, before)
     return act(after_bonding(document, before), body)
 
 
