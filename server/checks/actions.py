@@ -381,10 +381,11 @@ class Peak:
 
 def largest(values: NDArray[np.float64], places: NDArray[np.float64]) -> Peak:
     """The greatest of one value a combination; the leftmost place wins a tie, then the first combination."""
-    top = float(values.max())
-    near = np.flatnonzero(values >= top - TIE * max(abs(top), 1e-300))
-    row = int(near[np.argmin(places[near])])
-    return Peak(float(values[row]), float(places[row]), row)
+    each, at = values.tolist(), places.tolist()  # a handful: numpy would take longer to start than to run
+    top = max(each)
+    least = top - TIE * max(abs(top), 1e-300)
+    row = min((i for i, value in enumerate(each) if value >= least), key=at.__getitem__)
+    return Peak(each[row], at[row], row)
 
 
 def envelope(curve: Curve | None) -> dict[str, object] | None:

@@ -18,8 +18,7 @@ from server.checks import lasting
 from server.checks.actions import Actions, Curve
 from server.checks.joints import JointCheck
 from server.checks.member_ends import Governs, MemberEnds
-from server.checks.resistance import Claim, Findings
-from server.checks.strip_ends import resistances
+from server.checks.resistance import Claim, Findings, resistances
 from server.mechanics.piecewise import evaluate
 from server.working import Working
 
@@ -52,10 +51,14 @@ def check_lasting(
     """Every bond under every combination that says how its load repeats or stays; what governs goes to ``found``."""
     told: list[dict[str, object]] = []
     unjudged: list[_Bond] = []
+    claimed = [(joint, claim) for joint in joints if (claim := _own_claim(joint)) is not None]
+    if not claimed:
+        return []
+    used = np.array([claim.demand for _, claim in claimed]) / resistances([claim for _, claim in claimed])
     for name, combination in document.combinations.items():
         if combination.for_ == "deflection" or not (combination.fatigue or any(combination.sustained.values())):
             continue
-        for bond in _bonds(document, name, actions, joints):
+        for bond in _bonds(document, name, actions, claimed, used):
             unjudged += [bond] if bond.share > 0 and bond.adhesive.creep_limit is None else []
             told += _judge(combination, bond, f"joint {bond.joint.site.id}, combination {name}", book, findings, found)
     _caution_creep(unjudged, findings)
@@ -77,15 +80,21 @@ def _caution_creep(bonds: Sequence[_Bond], findings: Findings) -> None:
 
 
 def _bonds(
-    document: documents.MemberDocument, name: str, actions: Actions, joints: Sequence[JointCheck]
+    document: documents.MemberDocument,
+    name: str,
+    actions: Actions,
+    claimed: Sequence[tuple[JointCheck, Claim]],
+    use: NDArray[np.float64],
 ) -> list[_Bond]:
-    """The bonds that a combination uses; one with moving axles has several rows, of which the hardest counts."""
+    """The bonds that a combination uses; one with moving axles has several rows, of which the hardest counts.
+
+    ``use``: what part of its resistance each claim uses in every row.
+    """
     rows = [i for i, k in enumerate(actions.strength) if actions.names[k] == name]
-    claimed = [(joint, claim) for joint in joints if (claim := _own_claim(joint)) is not None]
-    if not rows or not claimed or actions.shear is None or actions.staying_shear is None:
+    if not rows or actions.shear is None or actions.staying_shear is None:
         return []
     claims = [claim for _, claim in claimed]
-    used = (np.array([claim.demand for claim in claims]) / resistances(claims))[:, rows]
+    used = use[:, rows]
     known = ~np.isnan(used).all(axis=1)
     hardest = np.where(np.isnan(used), -1.0, used).argmax(axis=1)
     row = np.array(rows)[hardest]

@@ -336,9 +336,9 @@ def piece_strength(part: Part, word: str, what: str, judge: Judge) -> Strength |
 
 def _write_bending(check: PieceCheck, bent: Bent, weighed: list[Weighed], body: Body, judge: Judge, group: str) -> None:
     """Stresses where the piece is used most: by its limits on normal stress, else where they are largest."""
-    size = np.abs(bent.stress[:2]).max(axis=0)
     governing, demands = worst(weighed), dict(fibre_demands(check.part, bent)) if weighed else {}
     if governing is None:
+        size = np.abs(bent.stress[:2]).max(axis=0)
         entry, row = (int(i) for i in np.unravel_index(int(size.argmax()), size.shape))
     else:
         row, word = governing.row, governing.claim.strength.what.removesuffix(f" in {check.part.name}")
@@ -394,7 +394,7 @@ def _write_stress(
         {
             "E": (part.material.E, "MPa"),
             "M": (float(bent.moment[entry, row]), "N*mm"),
-            "u": (dict(zip(FIBRES, _heights(part, stretch), strict=True))[fibre], "mm"),
+            "u": (_heights(part, stretch)[FIBRES.index(fibre)], "mm"),
             "u_0": (float(whole.neutral_axis[1]), "mm"),
             "EI": (whole.EI, "N*mm2"),
         },

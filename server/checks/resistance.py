@@ -243,13 +243,13 @@ class Weigher:
             return []
         demand = np.array([c.demand for c in claims])
         places = np.array([c.at for c in claims])
-        resistances = _resistances(claims, demand.shape[1])
-        usage = np.where(np.isnan(resistances), -1.0, demand / resistances)
+        resists = resistances(claims)
+        usage = np.where(np.isnan(resists), -1.0, demand / resists)
         top = usage.max(axis=1, keepdims=True)
         near = np.where(usage >= top - TIE * np.maximum(top, 1e-300), places, np.inf)
         rows = near.argmin(axis=1).tolist()
         return [
-            None if usage[i, row] < 0 else Weighed(claim, row, float(resistances[i, row]), float(usage[i, row]))
+            None if usage[i, row] < 0 else Weighed(claim, row, float(resists[i, row]), float(usage[i, row]))
             for i, (claim, row) in enumerate(zip(claims, rows, strict=True))
         ]
 
@@ -327,12 +327,15 @@ class Judge(Weigher):
         return self.places.at(at)
 
 
-def _resistances(claims: Sequence[Claim], columns: int) -> NDArray[np.float64]:
-    """Resistances (claims, combinations); one evaluation of the printed formula for all with as many factors."""
+def resistances(claims: Sequence[Claim]) -> NDArray[np.float64]:
+    """Resistances (claims, combinations), NaN where a duration factor is missing.
+
+    One evaluation of the printed formula serves all claims with as many factors.
+    """
     alike: dict[int, list[int]] = {}
     for i, claim in enumerate(claims):
         alike.setdefault(len(claim.strength.multipliers), []).append(i)
-    found = np.empty((len(claims), columns))
+    found = np.empty((len(claims), len(claims[0].strength.duration)))
     for factors, places in alike.items():
         strengths = [claims[i].strength for i in places]
         values = {

@@ -6,7 +6,7 @@ Free strains (``strains``, from temperature and moisture) act with every combina
 
 from __future__ import annotations
 
-from collections.abc import Mapping, Sequence
+from collections.abc import Sequence
 from dataclasses import dataclass, field, replace
 from typing import Literal
 
@@ -17,11 +17,11 @@ from server import documents
 from server.checks import strip_steps, surfaces
 from server.checks.actions import Curve
 from server.checks.bond_ends import Bonded, End
-from server.checks.resistance import Claim, Strength, Weighed, Weigher, resistance_formula
+from server.checks.resistance import Claim, Strength, Weighed, Weigher, resistances
 from server.mechanics.overlap_laps import BondLine
 from server.mechanics.overlap_strip import Host, StripCourse, strip_course
 from server.mechanics.piecewise import evaluate
-from server.working import Working, formula
+from server.working import Working
 
 Array = NDArray[np.float64]
 ISOTROPIC = 2.7  # E over G of an adhesive with a Poisson's ratio of 0.35 (common practice for epoxies)
@@ -352,21 +352,6 @@ def _slope(curve: Curve, at: float, side: str, row: int) -> float:
     c = curve.coefficients[row, i]
     s = at - breaks[i]
     return float(sum(k * c[k] * s ** (k - 1) for k in range(1, len(c))))
-
-
-def resistances(claims: Sequence[Claim]) -> Array:
-    """What each claim's strength resists in every combination [MPa]; NaN where a duration factor is missing."""
-    rows = []
-    for each in claims:
-        s = each.strength
-        values: Mapping[str, object] = {
-            "f_k": s.value,
-            "k_dur": np.array(s.duration),
-            "gamma": s.divisor,
-            **{f"k_{i}": factor for i, (_, factor) in enumerate(s.factors, 1)},
-        }
-        rows.append(formula(resistance_formula("f_k", len(s.factors))).array(values))  # type: ignore[arg-type]
-    return np.array(rows)
 
 
 def use_of(check: EndCheck, found: Stresses) -> float | None:
