@@ -176,12 +176,40 @@ def write_combined_flow(
         source=f"{_words(along)}, with signs, at one place; combination {combination}. {flow.reason}",
         group=group,
     )
+    if along.across is not None and along.twist is None:
+        found |= _by_field_too(section, site, down, across, judge, group)
     if site.bonded and section.settled.field is not None:
         field = section.settled.field
         run = field.parts[place] * down - field.parts_across[place] * across + field.parts_twist[place] * T
         way = 1.0 if float(run.sum()) >= 0 else -1.0
         found["distribution"] = (way * run / site.spec.coverage).tolist()
     return q, found
+
+
+def _by_field_too(
+    section: CrossSection, site: Site, down: float, across: float, judge: Judge, group: str
+) -> dict[str, object]:
+    """The field's flow beside the hand's, where there are both."""
+    field, place = section.settled.field, section.place(site)
+    apart, aside = section.settled.apart[place], sideways.lateral_differs(section, site)
+    if field is None or apart is None or aside is None:
+        return {}
+    q = judge.working.step(
+        "The same flow by the field",
+        "q_F",
+        BOTH_WAYS,
+        {
+            "chi": (down, "1/mm2"),
+            "S_j": (float(field.share[place]), "N*mm"),
+            "chi_l": (across, "1/mm2"),
+            "S_l": (float(field.share_across[place]), "N*mm"),
+        },
+        unit="N/mm",
+        source=f"S_j and S_l from the field; they differ from the hand's by {apart:.3%} and {aside:.3%}, at most 0.5 % "
+        "is allowed",
+        group=group,
+    )
+    return {"shear_flow_by_field": q, "field_differs": max(apart, aside)}
 
 
 def write_rates(

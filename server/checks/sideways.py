@@ -19,11 +19,13 @@ from server.checks.rules import SKINS, WEBS, chosen
 from server.errors import DocumentError, Fault, InputError
 from server.mechanics.beam import Beam, LineLoad, Load, PointLoad, Response
 from server.mechanics.beam_two_planes import solve_two_planes
+from server.mechanics.field_flow import AGREE
 
 if TYPE_CHECKING:
     from server.checks.resistance import Findings
 
 Array = NDArray[np.float64]
+LITTLE = 0.05
 
 
 def refuse_moving(document: documents.MemberDocument) -> None:
@@ -78,12 +80,16 @@ def _flexibility(section: CrossSection, *, creep: bool) -> tuple[Array, Array | 
 def lateral_share(section: CrossSection, site: Site) -> float | None:
     """The joint's E-weighted first moment for bending sideways, with its sign on the first piece [N mm].
 
-    From the field; by a clean cut where the field was not solved; None where neither gives it.
+    By a clean cut where there is one, else from the field; None where neither gives it.
     """
-    place, field = section.place(site), section.settled.field
-    if field is not None:
-        return float(field.share_across[place])
-    flow = section.settled.flows[place]
+    by_hand = lateral_by_cut(section, site)
+    field = section.settled.field
+    return by_hand if by_hand is not None or field is None else float(field.share_across[section.place(site)])
+
+
+def lateral_by_cut(section: CrossSection, site: Site) -> float | None:
+    """As ``lateral_share``, by a clean cut alone."""
+    flow = section.settled.flows[section.place(site)]
     if flow.split != "cut":
         return None
     parts, whole = section.properties.pieces, section.properties
@@ -92,6 +98,19 @@ def lateral_share(section: CrossSection, site: Site) -> float | None:
     first = next(i for i, part in enumerate(section.parts) if part.index == site.first.index)
     way = 1.0 if first in flow.cut_off else -1.0
     return way * float(moments[list(flow.cut_off)].sum())
+
+
+def lateral_differs(section: CrossSection, site: Site) -> float | None:
+    """By how much cut and field differ for bending sideways, of the field; None where they are not both there.
+
+    A flow that is small beside the section's largest counts as a twentieth of that.
+    """
+    by_hand, field = lateral_by_cut(section, site), section.settled.field
+    if by_hand is None or field is None:
+        return None
+    own = float(field.share_across[section.place(site)])
+    size = max(abs(own), LITTLE * float(np.abs(field.share_across).max()), 1e-300)
+    return abs(by_hand - own) / size
 
 
 def rates(section: CrossSection, site: Site) -> tuple[float, float] | None:
@@ -125,6 +144,14 @@ def name_what_is_left_out(document: documents.MemberDocument, body: Body, findin
                 f"bending about both axes (member.held_sideways false): {what}: reckoned for bending up and down only. "
                 "Hold the member sideways, or have it reckoned."
             )
+    for section in body.sections:
+        for site in section.sites:
+            apart = lateral_differs(section, site)
+            if apart is not None and apart > AGREE:
+                findings.miss(
+                    f"joint {site.id}: its flow in bending sideways by hand and by the field differ by {apart:.2%}, "
+                    f"more than {AGREE:.1%}; look for contacts that the hand cut takes as open, or report the section."
+                )
     if document.analysis.shear_deformation and any(s.shear_flexibility is None for s in body.sections):
         findings.caution(
             "shear deformation",

@@ -87,6 +87,8 @@ def test_a_z_on_two_pins_under_load_straight_down():
     for joint in result["joints"]:
         assert joint["shear_flow"] == pytest.approx(abs(V * (lateral * S_v - product * S_l)) / D, rel=1e-6)
         assert np.mean(joint["distribution"]) == pytest.approx(joint["stress"], rel=1e-6)
+        assert joint["shear_flow_by_field"] == pytest.approx(joint["shear_flow"], rel=0.005)  # beside the hand's
+        assert joint["field_differs"] <= 0.005
     bent = 5 * w * L**4 / 384
     down, right = (result["member"][name]["max"] for name in ("deflection", "deflection_lateral"))
     assert down == pytest.approx(bent * lateral / D, rel=0.01)  # and a little from shear on top of it
