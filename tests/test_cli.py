@@ -5,8 +5,11 @@ from __future__ import annotations
 import io
 import json
 import os
+import random
+import re
 import subprocess
 import sys
+from collections import Counter
 from collections.abc import Mapping, Sequence
 from pathlib import Path
 from typing import Any
@@ -14,11 +17,14 @@ from typing import Any
 import pytest
 
 from server.__main__ import LARGEST_FILE, main
+from tests.checks.test_coupons import any_document
 
 ROOT = Path(__file__).parents[1]
 DEMOS = ROOT / "seed_data" / "checks"
 STATUS = {"pass": 0, "fail": 1, "not-proven": 1, "wrong": 2}
 VERDICT = {"pass": "pass", "fail": "fail", "not-proven": "not proven"}
+
+NAMED = re.compile(r"bondwright: (coupons|statistic|title|display|note|kin|kind|format)\b.*: .{10}")
 
 COUPONS = {
     "format": "bondwright/1", "kind": "coupons", "title": "Block shear, birch on spruce",
@@ -140,6 +146,22 @@ class TestOtherKinds:
         assert result["n"] == 8
         assert result["mean"] == pytest.approx(sum(c["stress"] for c in COUPONS["coupons"]) / 8)
         assert told(capsys, ["check", "check.json"])[1].startswith("PASS")
+
+    def test_coupon_documents_with_nonsense_end_with_2_and_name_the_field_or_give_finite_numbers(
+        self, capsys: pytest.CaptureFixture[str], tmp_path: Path
+    ) -> None:
+        chance, ended = random.Random(41), Counter[int]()
+        for _ in range(60):
+            arguments = ["check", written(tmp_path, any_document(chance)), "--json"]
+            status, out, err = told(capsys, arguments)
+            ended[status] += 1
+            if status == 2:
+                assert out == ""
+                assert all(NAMED.match(line) for line in err.splitlines()), err
+            else:
+                verdict = json.loads(out, parse_constant=pytest.fail)["verdict"]
+                assert verdict == ("pass" if status == 0 else "not proven")
+        assert min(ended[0], ended[1], ended[2]) > 5
 
     def test_one_coupon_alone_is_not_proven(self, capsys: pytest.CaptureFixture[str], tmp_path: Path) -> None:
         status, out, _ = told(capsys, ["check", written(tmp_path, COUPONS | {"coupons": [{"stress": 5}]}), "--json"])

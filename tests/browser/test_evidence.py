@@ -172,6 +172,23 @@ def make_bond(ann: Seat) -> None:
     ann.look("bond")
 
 
+def evidence(seat: Seat, name: str) -> bytes:
+    """The evidence page of the value: as it was kept at its approval, or as it stands today."""
+    body: bytes = seat.page.request.get(f"/library/V-001/revisions/1/{name}.pdf").body()
+    assert body.startswith(b"%PDF")
+    if folder := os.environ.get("MADE_SCREENS"):
+        Path(folder, f"{name}.pdf").write_bytes(body)
+    return body
+
+
+def see_the_chain(seat: Seat) -> None:
+    seat.page.goto("/library/V-001")
+    assert "1.584 MPa × 0.85 (moisture) = 1.347 MPa" in seat.text()
+    assert seat.page.locator("a:has-text('Evidence page as approved')").count() == 1
+    seat.look("value-with-chain")
+    seat.clean()
+
+
 def type_check(ann: Seat) -> None:
     """A new job and its check, typed into the member form: the box layout, the bond picked from the library."""
     page = ann.page
@@ -260,16 +277,16 @@ def test_from_coupons_to_an_issued_sheet(
     assert "V-001 rev 1" in bo.page.inner_text("#waiting + ul")
     bo.look("library")
     approve(bo, "V-001")
-    pdf = bo.page.request.get("/library/V-001/revisions/1/evidence.pdf")
-    assert pdf.body().startswith(b"%PDF")
-    if folder := os.environ.get("MADE_SCREENS"):
-        Path(folder, "evidence.pdf").write_bytes(pdf.body())
+    kept = evidence(bo, "evidence-as-approved")
     make_bond(ann)
     approve(bo, "B-001")
+    see_the_chain(bo)
+    assert evidence(bo, "evidence-as-approved") == kept
+    assert evidence(bo, "evidence") != kept
     type_check(ann)
     use_it(ann)
     issue_it(bo)
-    if folder:
+    if folder := os.environ.get("MADE_SCREENS"):
         Path(folder, "issued.pdf").write_bytes(bo.page.request.get("/checks/1/revisions/1/issued.pdf").body())
     import_faulty_rows(bo)
     bo.page.goto("/library/T-001")
