@@ -45,15 +45,23 @@ def drawing(document: documents.MemberDocument, body: Body, actions: Actions) ->
             "supports": [{"at": s.at, "kind": s.kind} for s in document.member.supports],
             "hinges": list(document.member.hinges),
         },
-        "loads": [
-            *(
-                _load(case, load)
-                for case, loads in zip(actions.cases, actions.case_loads, strict=False)
-                for load in loads
-            ),
-            *_moving(document),
-        ],
+        "loads": [*_loads(actions), *_moving(document)],
     }
+
+
+def _loads(actions: Actions) -> list[dict[str, object]]:
+    """Loads of every case; those to the right are seen from above, as a case of their own."""
+    found = [
+        _load(case, load) for case, loads in zip(actions.cases, actions.case_loads, strict=False) for load in loads
+    ]
+    if actions.across is None:
+        return found
+    aside = [
+        _load(f"{case}, seen from above: to the right drawn down", load)
+        for case, loads in zip(actions.cases, actions.across.case_loads, strict=False)
+        for load in loads
+    ]
+    return [load for load in found if load["value"]] + aside
 
 
 def _moving(document: documents.MemberDocument) -> list[dict[str, object]]:

@@ -16,6 +16,7 @@ from hypothesis import strategies as st
 from server import checks, documents
 from server.errors import DocumentError
 from server.mechanics.section import Piece, properties
+from server.sheets import loads_svg
 from tests.checks.made import BOX
 from tests.mechanics.field_reference import Reference, bonds_of, lines
 
@@ -103,6 +104,10 @@ def test_an_angle_fixed_at_one_end_under_a_force_to_the_right():
     force = {"kind": "point", "at": 4000, "value": 0, "lateral": 120}
     result = run(member(ANGLE, [("leg", "foot")], [force], [{"at": 0, "kind": "fixed"}]))
     D = EI * lateral - product**2
+    (drawn,) = result["drawing"]["loads"]
+    assert drawn["value"] == 120
+    assert "to the right" in drawn["case"]
+    assert "120 N at 4 m" in loads_svg(result)
     reaction = result["member"]["reactions"]["all"][0]
     assert reaction["lateral"] == pytest.approx(-120)
     assert reaction["force"] == pytest.approx(0, abs=1e-6)
