@@ -252,7 +252,8 @@ def _readable(model: type[Any], value: object) -> Any:
 
 def label(index: int, coupon: Coupon) -> str:
     """How people find a coupon: 'coupon 8', or 'coupon 8 (A-17)'."""
-    return f"coupon {index + 1} ({coupon.name})" if coupon.name else f"coupon {index + 1}"
+    number = str(index + 1)
+    return f"coupon {number} ({coupon.name})" if coupon.name not in ("", number) else f"coupon {number}"
 
 
 def _faults(coupons: Sequence[Coupon | None], statistic: Statistic | None) -> Iterator[Fault]:
