@@ -18,7 +18,8 @@ from server.working import exceeds, readable, readable_unit
 DIGITS = 4
 DASH = "–"
 _SI_FOR_PEOPLE = {"N": ("kN", 1e-3), "N*mm": ("kN·m", 1e-6)}
-_IN_WORDS = re.compile(r"(?<![\w.])(\d+(?:\.\d+)?(?:e[+-]?\d+)?) (N/mm|MPa|mm2|mm|N)(?![\w/*·²]|\d)")
+_COUNT = r"\d{1,3}(?:,\d{3})+(?:\.\d+)?|\d+(?:\.\d+)?(?:e[+-]?\d+)?"
+_IN_WORDS = re.compile(rf"(?<![\w.,])({_COUNT}) (N/mm|MPa|mm2|mm|N)(?![\w/*·²]|\d)")
 
 
 @dataclass(frozen=True)
@@ -61,10 +62,16 @@ def in_units(text: str, display: str) -> str:
 
     >>> in_units("the plate stops 250 mm from the left end", "US")
     'the plate stops 9.843 in from the left end'
+    >>> in_units("it hands 2,560 N over", "US")
+    'it hands 575.5 lbf over'
     """
     if display != "US":
         return text
-    return _IN_WORDS.sub(lambda found: quantity(float(found[1]), found[2], display).replace("\u00a0", " "), text)
+    return _IN_WORDS.sub(lambda found: quantity(_number(found[1]), found[2], display).replace("\u00a0", " "), text)
+
+
+def _number(text: str) -> float:
+    return float(text.replace(",", ""))
 
 
 def utilisation(value: object) -> str:

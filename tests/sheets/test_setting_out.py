@@ -11,6 +11,7 @@ from server import checks, documents, sheets
 from server.errors import JointError
 from server.sheets import setting_out, slip_parts
 from server.sheets.svg import Drawing
+from server.sheets.values import in_units
 from tests.checks.made import STACK, Raw, changed
 from tests.checks.test_slip import deck, planks
 from tests.sheets.drawing_reading import texts
@@ -130,3 +131,8 @@ def test_a_result_from_before_this_was_reckoned_has_no_blocks() -> None:
     ]
     assert list(slip_parts.blocks({**old, "joints": joints}, "SI")) == []
     assert changed(old)
+
+
+def test_thousands_with_a_comma_change_units_whole() -> None:
+    said = "the bolt at 200 mm hands 2,560 N over (1,000 N each), 95.2 N in all"
+    assert in_units(said, "US") == "the bolt at 7.874 in hands 575.5 lbf over (224.8 lbf each), 21.4 lbf in all"
