@@ -37,6 +37,8 @@ def put_forward(
     faults = _not_newest(record)
     if record.status not in IN_WORK:
         faults.append(Fault("status", f"{record.itself} is {record.status}; only work in progress is put forward."))
+    if record.group == "lots":
+        faults.append(Fault("status", f"{record.itself} is released on its page; nothing is put forward for it."))
     text = fields.prose(faults, "reason", reason)
     if faults:
         raise DocumentError(faults)

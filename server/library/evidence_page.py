@@ -12,7 +12,7 @@ from server.library import reading
 from server.library.chains import chains_on
 from server.library.coupon_sets import coupon_document, measured_result
 from server.library.groups import EVIDENCE, LINK_LABELS
-from server.library.history import charted
+from server.library.history import charted, history
 from server.library.questions import questions
 from server.library.record import Act, Approval, Factor, Link, Record
 from server.library.references import standing
@@ -37,7 +37,7 @@ _RANGES = (
 
 
 def evidence_content(session: Session, record: Record) -> dict[str, Any]:
-    """Return what an evidence page stands on: value, set, result, answers, acts and program, as plain JSON."""
+    """Return what an evidence page stands on: value, set, result, answers, acts, history, chains, program."""
     behind = _set_of(session, record)
     return {
         "value": _told(record),
@@ -51,6 +51,8 @@ def evidence_content(session: Session, record: Record) -> dict[str, Any]:
             [act.status, act.who, act.at, act.reason, dict(act.detail)]
             for act in reading.acts(session, record.key, record.revision)
         ],
+        "history": [[each.key, each.revision, each.date, each.mean] for each in history(session, record)],
+        "chains": [[str(each.record.itself), each.standing, each.line] for each in chains_on(session, record)],
         "engine": ENGINE,
     }
 

@@ -138,7 +138,7 @@ def compose_evidence(page: EvidenceData) -> Part:
 
 
 def _foot(page: EvidenceData) -> str:
-    drawn = "Kept as it was approved." if page.kept else "Drawn from the library as it stands; not a kept page."
+    drawn = "Kept as it was approved." if page.kept else "Drawn as the library stands today."
     return f"{drawn} {FOOT}"
 
 

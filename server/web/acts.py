@@ -110,8 +110,11 @@ def _act(
     request: Request, session: Session, values: FormValues, key: str, act: Callable[[int | None], Record]
 ) -> Response:
     """Do it and go back to the record; refused, its page says why, with what was typed."""
-    revision = whole(values.get("revision", ""))
+    typed = values.get("revision", "").strip()
+    revision = whole(typed)
     try:
+        if typed and revision is None:  # never the newest in the place of one that cannot be read
+            raise DocumentError([Fault("revision", f"{typed[:40]!r} is no revision; open the record's page again.")])
         act(revision)
     except DocumentError as error:
         faults = beside(error, _BOXES)

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import html
 import re
 from collections.abc import Iterator
 from pathlib import Path
@@ -518,3 +519,57 @@ class TestBeyondTheGrid:
         refused = client.post("/library/new/sets", data=boxes)
         assert refused.status_code == 422
         assert "Coupon 251 is beyond the grid" in text_of(refused)
+
+
+NONSENSE = (
+    "<script>alert(1)</script>",
+    "-4",
+    "1e400",
+    "9" * 1000,
+    "2026-02-30",
+    "T-999 rev 99999999999",
+    "=1+1",
+    "\u202e4",
+)
+NEEDED = {
+    "values": {"property": "bond shear", "origin": "published"},
+    "sets": {"property": "bond shear", "way": "stress MPa", "coupons[0].reading": "5"},
+}
+
+
+class TestNonsenseEverywhere:
+    @pytest.mark.parametrize("group", library.ALL)
+    def test_every_box_of_a_form_takes_nonsense_without_losing_it(self, client: TestClient, group: str) -> None:
+        names = re.findall(r'<(?:input|textarea|select)[^>]* name="([^"]+)"', client.get(f"/library/new/{group}").text)
+        names = [each for each in dict.fromkeys(names) if not re.match(r"coupons\[[1-9]", each)]
+        assert len(names) > 8
+        for text in NONSENSE:
+            answer = client.post(f"/library/new/{group}", data=dict.fromkeys(names, text) | {"units": "SI"})
+            assert answer.status_code == 422 or group == "preparations", text  # which are plain words
+            assert answer.status_code == 303 or text in html.unescape(answer.text)
+            assert "Traceback" not in answer.text
+        for name in names[:: max(len(names) // 6, 1)]:  # and some of them alone
+            alone = {"name": "N", **NEEDED.get(group, {}), name: "1e400"}
+            assert client.post(f"/library/new/{group}", data=alone).status_code in (303, 422), name
+
+    @pytest.mark.parametrize("text", NONSENSE)
+    def test_no_act_and_no_question_of_the_api_stumbles(self, client: TestClient, text: str) -> None:
+        client.post("/library/new/lots", data={"name": "R2", "number": "24-117"})
+        boxes = (
+            "revision",
+            "status",
+            "reason",
+            "note",
+            "outside_checker",
+            "checked_on",
+            "on",
+            "until",
+            "retest",
+            "number",
+        )
+        for act in ("approve", "put-forward", "state", "exclude", "revisions/1/answers"):
+            answer = client.post(f"/library/L-001/{act}", data=dict.fromkeys(boxes, text))
+            assert answer.status_code in (404, 422), act
+        for address in ("/api/records", "/api/records/L-001", "/library", "/library/L-001"):
+            asked = dict.fromkeys(("q", "group", "status", "adherend", "property", "start", "limit", "revision"), text)
+            assert client.get(address, params=asked).status_code in (200, 404), address
