@@ -21,6 +21,7 @@ from server.checks.section_field import Settled, Wanted, bond_of, settle
 from server.errors import DocumentError, Fault
 from server.mechanics.beam_two_planes import bending_flexibility, shear_flexibility
 from server.mechanics.contacts import Contact, contacts, in_order, overlap
+from server.mechanics.cuts import above
 from server.mechanics.field import Bond, Field, remembered_field
 from server.mechanics.field_cuts import field_cuts
 from server.mechanics.field_stress import torsion_stress
@@ -129,6 +130,15 @@ class Site:
 
 
 @dataclass(frozen=True)
+class Beyond:
+    """The parts above a horizontal cut, by their position: area there [mm2] and height of its centroid [mm]."""
+
+    positions: tuple[int, ...]
+    area: list[float]
+    height: list[float]
+
+
+@dataclass(frozen=True)
 class CrossSection:
     """The section over one or more stretches: the parts present and all that follows from them.
 
@@ -195,6 +205,16 @@ class CrossSection:
         """Height of each part's centroid, by its index."""
         heights = self.properties.pieces.centroid[:, 1].tolist()
         return {part.index: height for part, height in zip(self.parts, heights, strict=True)}
+
+    @cached_property
+    def beyond(self) -> dict[int, Beyond]:
+        """What lies above the cut through each part where its shear is largest, by the part's index."""
+        found = {}
+        for index, cut in self.cuts.items():
+            area, height = above(self.properties.bands, cut.up)
+            over = np.flatnonzero(area > 1e-12 * area.sum())
+            found[index] = Beyond(tuple(over.tolist()), area[over].tolist(), height[over].tolist())
+        return found
 
     @cached_property
     def cuts(self) -> dict[int, HorizontalCut]:

@@ -27,7 +27,6 @@ from server.checks.slide import Slide
 from server.checks.slip_pieces import CUT, SlidingShear, fibres, sliding_shear, write_stress
 from server.checks.slip_pieces import MECHANICS as SLIDING
 from server.checks.twist import Twist, twisted_shear
-from server.mechanics.cuts import above
 from server.working import formula
 
 BENDING = "-E*M*(u - u_0)/EI"
@@ -81,6 +80,7 @@ class PieceCheck:
     claims: list[Claim] = field(default_factory=list)
     governing: Weighed | None = None
     slide: Slide | None = None
+    demands: list[tuple[str, NDArray[np.float64]]] = field(default_factory=list)
 
 
 def claim_pieces(
@@ -116,7 +116,8 @@ def claim_pieces(
             continue
         if not upper_stiffness and part.material.strengths.any():
             judge.duration("material", part.spec.material, part.material)
-            check.claims = [*_bending_claims(part, check.bent, judge), *_shear_claim(part, check.sheared, judge)]
+            check.demands = fibre_demands(part, check.bent)
+            check.claims = [*_bending_claims(check, check.bent, judge), *_shear_claim(part, check.sheared, judge)]
     return found
 
 
@@ -274,8 +275,9 @@ def _shear_sliding(body: Body, slide: Slide) -> dict[int, Sheared]:
     }
 
 
-def _bending_claims(part: Part, bent: Bent, judge: Judge) -> Iterator[Claim]:
-    for word, demand in fibre_demands(part, bent):
+def _bending_claims(check: PieceCheck, bent: Bent, judge: Judge) -> Iterator[Claim]:
+    part = check.part
+    for word, demand in check.demands:
         entry = demand.argmax(axis=0)
         columns = np.arange(demand.shape[1])
         worst_of = demand[entry, columns]
@@ -336,7 +338,7 @@ def piece_strength(part: Part, word: str, what: str, judge: Judge) -> Strength |
 
 def _write_bending(check: PieceCheck, bent: Bent, weighed: list[Weighed], body: Body, judge: Judge, group: str) -> None:
     """Stresses where the piece is used most: by its limits on normal stress, else where they are largest."""
-    governing, demands = worst(weighed), dict(fibre_demands(check.part, bent)) if weighed else {}
+    governing, demands = worst(weighed), dict(check.demands)
     if governing is None:
         size = np.abs(bent.stress[:2]).max(axis=0)
         entry, row = (int(i) for i in np.unravel_index(int(size.argmax()), size.shape))
@@ -416,7 +418,7 @@ def _write_shear(check: PieceCheck, sheared: Sheared, body: Body, judge: Judge, 
     section = stretch.section
     cut = section.cuts[check.part.index]
     if section.settled.field is None:
-        _write_cut(stretch, cut.up, judge, group)
+        _write_cut(stretch, check.part.index, judge, group)
     values: dict[str, tuple[float, str]] = {
         "V": (float(sheared.shear[entry, row]), "N"),
         "S": (abs(cut.first_moment), "N*mm"),
@@ -439,25 +441,25 @@ def _write_shear(check: PieceCheck, sheared: Sheared, body: Body, judge: Judge, 
     )
 
 
-def _write_cut(stretch: Stretch, up: float, judge: Judge, group: str) -> None:
-    """First moment of all that lies above a horizontal cut, piece by piece."""
+def _write_cut(stretch: Stretch, index: int, judge: Judge, group: str) -> None:
+    """First moment of all that lies above the horizontal cut through a part, piece by piece."""
     if not judge.working.record:
         return
     section = stretch.section
-    area, height = above(section.properties.bands, up)
-    over = np.flatnonzero(area > 1e-12 * area.sum()).tolist()
+    over = section.beyond[index]
     judge.working.step(
-        f"E-weighted first moment above the cut at {up:.6g} mm",
+        f"E-weighted first moment above the cut at {section.cuts[index].up:.6g} mm",
         "S",
         FIRST_MOMENT,
         {
-            "E": ([section.pieces[i].E for i in over], "MPa"),
-            "A": (area[over].tolist(), "mm2"),
-            "u": (height[over].tolist(), "mm"),
+            "E": ([section.pieces[i].E for i in over.positions], "MPa"),
+            "A": (over.area, "mm2"),
+            "u": (over.height, "mm"),
             "u_0": (float(section.properties.neutral_axis[1]), "mm"),
         },
         unit="N*mm",
-        source=f"areas above the cut, heights of their centroids: {', '.join(section.parts[i].name for i in over)}",
+        source="areas above the cut, heights of their centroids: "
+        + ", ".join(section.parts[i].name for i in over.positions),
         group=group,
     )
 
