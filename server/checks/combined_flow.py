@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from functools import cached_property
 
 import numpy as np
@@ -36,6 +36,8 @@ class CombinedAlong(RigidAlong):
 
     across: Actions | None = None
     twist: Twist | None = None
+    asked: list[tuple[Site, int, float, float]] = field(default_factory=list)
+    """Where axles move: joints, stretches and parts of the member whose worst position was asked for."""
 
     @cached_property
     def _curves(self) -> dict[tuple[int, int], Curve]:
@@ -90,6 +92,7 @@ class CombinedAlong(RigidAlong):
             curve = self.curve(site, t) if end > start else None
             if curve is None:
                 continue
+            self.asked.append((site, t, start, end))
             q, at = curve.over(start, end).absolute()
             V = np.array([max(abs(side[0]) for side in self.at(float(x), row)) for row, x in enumerate(at)])
             here = Demand(V, q, at, np.full(len(at), t, dtype=np.intp))
@@ -179,8 +182,8 @@ def write_combined_flow(
     if along.across is not None and along.twist is None:
         found |= _by_field_too(section, site, down, across, judge, group)
     if site.bonded and section.settled.field is not None:
-        field = section.settled.field
-        run = field.parts[place] * down - field.parts_across[place] * across + field.parts_twist[place] * T
+        whole = section.settled.field
+        run = whole.parts[place] * down - whole.parts_across[place] * across + whole.parts_twist[place] * T
         way = 1.0 if float(run.sum()) >= 0 else -1.0
         found["distribution"] = (way * run / site.spec.coverage).tolist()
     return q, found
@@ -190,9 +193,9 @@ def _by_field_too(
     section: CrossSection, site: Site, down: float, across: float, judge: Judge, group: str
 ) -> dict[str, object]:
     """The field's flow beside the hand's, where there are both."""
-    field, place = section.settled.field, section.place(site)
+    solved, place = section.settled.field, section.place(site)
     apart, aside = section.settled.apart[place], sideways.lateral_differs(section, site)
-    if field is None or apart is None or aside is None:
+    if solved is None or apart is None or aside is None:
         return {}
     q = judge.working.step(
         "The same flow by the field",
@@ -200,9 +203,9 @@ def _by_field_too(
         BOTH_WAYS,
         {
             "chi": (down, "1/mm2"),
-            "S_j": (float(field.share[place]), "N*mm"),
+            "S_j": (float(solved.share[place]), "N*mm"),
             "chi_l": (across, "1/mm2"),
-            "S_l": (float(field.share_across[place]), "N*mm"),
+            "S_l": (float(solved.share_across[place]), "N*mm"),
         },
         unit="N/mm",
         source=f"S_j and S_l from the field; they differ from the hand's by {apart:.3%} and {aside:.3%}, at most 0.5 % "

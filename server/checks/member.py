@@ -8,7 +8,7 @@ from dataclasses import dataclass
 from pydantic import BaseModel
 
 from server import ENGINE, documents
-from server.checks import effective_width, moving, moving_rounds, sideways
+from server.checks import effective_width, moving, moving_rounds, moving_twist, sideways
 from server.checks import statics as hand
 from server.checks.actions import Actions, act, added_after, envelope
 from server.checks.along import RigidAlong, SlidingAlong
@@ -151,7 +151,7 @@ def _round(
         "values_used": _values_used(document, body),
         "engine": ENGINE,
     }
-    return result, moving_rounds.further(rigid, slides)
+    return result, moving_rounds.further(rigid, slides, moving_twist.rows(flows.rigid))
 
 
 def _level_unit(document: documents.MemberDocument) -> float:

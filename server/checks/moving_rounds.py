@@ -21,13 +21,17 @@ from server.mechanics.piecewise import Extremes
 ROUNDS = 4
 
 
-def further(actions: Actions, slides: Sequence[Slide]) -> moving.Wants | None:
-    """What the next round needs beyond this one; None where this one was the last."""
+def further(actions: Actions, slides: Sequence[Slide], turning: Sequence[moving.Row] = ()) -> moving.Wants | None:
+    """What the next round needs beyond this one; None where this one was the last.
+
+    ``turning`` positions that torque beside the axles' shear asks for.
+    """
     if actions.moving is None:
         return None
     had = actions.moving.question.wants
     asked = actions.asked
     rows = () if had.rows else tuple(row for each in slides for row in _closer(actions, each))
+    rows += tuple(turning)
     if not asked and not rows:
         return None
     return moving.Wants((*had.ranges, *asked), (*had.rows, *rows))

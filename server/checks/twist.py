@@ -50,12 +50,6 @@ def twist(document: documents.MemberDocument, body: Body, actions: Actions, find
             "rigid joints as well."
         )
         return None
-    if actions.moving is not None:
-        findings.miss(
-            "torsion of eccentric loads (offset): not reckoned together with moving axles; place the axles as point "
-            "loads with their offsets."
-        )
-        return None
     fields = [stretch.section.settled.field for stretch in body.stretches]
     if any(field is None for field in fields):
         findings.miss(
@@ -67,7 +61,8 @@ def twist(document: documents.MemberDocument, body: Body, actions: Actions, find
     GJ, EIw, size = (_by_interval(body, breaks, of) for of in (_torsional, _warping, _size))
     supports = [support.at for support in document.member.supports]
     cases = np.array([torque(breaks, supports, GJ, list(_loads(document, case))) for case in document.loads])
-    combined = np.tensordot(actions.factors[list(actions.strength)], cases, 1)
+    factors = actions.factors[list(actions.strength), : len(cases)]  # axles that move act through the shear centre
+    combined = np.tensordot(factors, cases, 1)
     curve = Curve(breaks, combined, actions.strength_names)
     _judge_warping(body, supports, GJ, EIw, size, curve, findings)
     return Twist(body, actions, curve)
@@ -115,7 +110,8 @@ def _judge_warping(
     body: Body, supports: list[float], GJ: Array, EIw: Array, size: Array, curve: Curve, findings: Findings
 ) -> None:
     worst: tuple[float, float, float, str] | None = None
-    for name, own in zip(curve.names, curve.coefficients, strict=True):
+    distinct = {own.tobytes(): (name, own) for name, own in zip(curve.names, curve.coefficients, strict=True)}
+    for name, own in distinct.values():
         for start, end, share in warping_part(curve.breaks, supports, GJ, EIw, own, size):
             if share > WARPING and (worst is None or share > worst[2]):
                 worst = (start, end, share, name)
