@@ -5,13 +5,14 @@ from __future__ import annotations
 import math
 from collections.abc import Iterator
 from dataclasses import dataclass, replace
+from functools import lru_cache
 
 import numpy as np
 from numpy.typing import NDArray
 
 from server.errors import InputError
 from server.mechanics.overlap_laps import DOUBLE, Action, BondLine, Lap, Layout, Plate, respond
-from server.mechanics.overlap_strength import LONGER, Curve, Limits, curve, strengths, yield_strength
+from server.mechanics.overlap_strength import LONGER, Curve, Limits, curve, strength, yield_strength
 from server.mechanics.overlap_tube import sections
 
 Array = NDArray[np.float64]
@@ -34,8 +35,7 @@ class Holds:
             tau, strain = self.yields
             found = yield_strength(lap, lengths, action, shear_yield=tau, strain_limit=strain, whole=False)
             return found.load * self.reduction
-        each = strengths(respond(lap, lengths, action), self.limits, sign=self.sign)
-        return np.minimum.reduce(list(each.values())) if each else np.full(len(lengths), math.inf)
+        return strength(respond(lap, lengths, action), self.limits, sign=self.sign)
 
     @property
     def known(self) -> bool:
@@ -57,15 +57,19 @@ def transfer_length(lap: Lap) -> float:
     return math.sqrt(lap.bond.thickness / (lap.bond.shear_modulus * soft))
 
 
+@lru_cache(maxsize=64)
 def strength_curve(lap: Lap, action: Action, length: float, holds: Holds) -> Curve | None:
-    """Strength over overlap with the useful length; None where nothing limits the joint."""
+    """Strength over overlap with the useful length; None where nothing limits the joint.
+
+    Kept by content: the load that is typed does not change it, and neither do a title or a note.
+    """
     if not holds.known:
         return None
     own = transfer_length(lap)
     if lap.layout == "scarf":
         own = lap.inner.thickness
 
-    def strength(lengths: Array) -> Array:
+    def held(lengths: Array) -> Array:
         found = holds.strength(lap, lengths, action)
         if not np.isfinite(found).all():
             raise InputError("load.axial", "no axial load brings this joint to its limits.")
@@ -73,7 +77,7 @@ def strength_curve(lap: Lap, action: Action, length: float, holds: Holds) -> Cur
 
     try:
         step = COARSE if holds.yields is not None else LONGER**2
-        return curve(strength, low=min(own / 2, length / 3), high=max(4 * own, 1.5 * length), step=step)
+        return curve(held, low=min(own / 2, length / 3), high=max(4 * own, 1.5 * length), step=step)
     except InputError:
         return None
 
@@ -94,10 +98,16 @@ class Change:
     gain: float
 
 
-def changes(lap: Lap, action: Action, length: float, strength: float, holds: Holds) -> list[Change]:
+def changes(lap: Lap, action: Action, length: float, now: float, holds: Holds) -> list[Change]:
     """What longer, wider, thicker, softer or double would bring, each reckoned anew with the same limits."""
-    if not holds.known or not 0 < strength < math.inf:
+    if not holds.known or not 0 < now < math.inf:
         return []
+    return [Change(what, new, new / now - 1) for what, new in _strengths_of_changes(lap, action, length, holds)]
+
+
+@lru_cache(maxsize=64)
+def _strengths_of_changes(lap: Lap, action: Action, length: float, holds: Holds) -> tuple[tuple[str, float], ...]:
+    """What each change holds [N]; kept by content, as the curve is."""
     found = []
     for what, changed, longer in _tried(lap, length):
         try:
@@ -105,8 +115,8 @@ def changes(lap: Lap, action: Action, length: float, strength: float, holds: Hol
         except InputError:
             continue
         if math.isfinite(new):
-            found.append(Change(what, new, new / strength - 1))
-    return found
+            found.append((what, new))
+    return tuple(found)
 
 
 def _tried(lap: Lap, length: float) -> Iterator[tuple[str, Lap, float]]:

@@ -72,7 +72,8 @@ def greatest_load(
         least = finite + np.where(still, -np.inf, (away - value) / safe).max(axis=1)
         found = (most > least) & (most > 0) & ~out.any(axis=1)
         fresh = np.where(found, most, 0.0)
-        done = (fresh == load) | (np.abs(fresh - load) <= 1e-10 * np.abs(fresh))
+        with np.errstate(invalid="ignore"):  # nothing limits it now and nothing did before: inf - inf
+            done = (fresh == load) | (np.abs(fresh - load) <= 1e-10 * np.abs(fresh))
         load = fresh
         if done.all():
             break

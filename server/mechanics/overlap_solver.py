@@ -221,7 +221,12 @@ class Solver:
         block = block.reshape(*shape, 3 * size, 3 * size)
         block[..., np.arange(3 * size), np.arange(3 * size)] += 1.0
         given = np.concatenate((matrix, forcing), axis=-1).reshape(*shape, 3 * size, -1)
-        return np.asarray(np.linalg.solve(block, given)).reshape(*shape, 3, size, -1)
+        try:
+            return np.asarray(np.linalg.solve(block, given)).reshape(*shape, 3, size, -1)
+        except np.linalg.LinAlgError as error:
+            raise InputError(
+                "length", "the joint's equations have no answer; check sizes, moduli and loads."
+            ) from error
 
     def solve(
         self,

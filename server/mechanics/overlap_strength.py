@@ -33,6 +33,7 @@ from server.mechanics.overlap_yield import Yielded, at_limit, under
 GROWTH = 0.01  # growth of strength ...
 LONGER = 1.1  # ... for an overlap this much longer, below which length is no use
 FINE = 1.12  # growth of the mesh where the yielded length must be found ...
+SHORTEST = 1e-4  # of the overlap to begin with; where even that does not grow, none does
 CLOSER = 6  # overlaps tried in each narrowing
 FAIR = 1.2  # ... and where only its strength among many is wanted
 
@@ -88,19 +89,37 @@ def strengths(response: Response, limits: Limits, *, sign: float = 1.0) -> dict[
     }
 
 
+def strength(response: Response, limits: Limits, *, sign: float = 1.0) -> Array:
+    """The axial load at which the first of the limits is reached [N], as ``strengths``: all of them in one go."""
+    names = [name for name in ("shear", "peel", "inner", "outer") if np.isfinite(limits.of(name))]
+    if not names:
+        return np.full(len(response.at), np.inf)
+    bounds = [_bounds(response, name, float(positive(name, limits.of(name), "MPa"))) for name in names]
+    fields = np.concatenate([response.fields[name] for name in names], axis=1)
+    low, high = (np.concatenate(each, axis=1) for each in zip(*bounds, strict=True))
+    return _load(response, fields, low, high, sign)
+
+
 def _least_load(response: Response, name: str, limit: float, sign: float) -> Array:
-    field = response.fields[name]
-    bound = np.full(field.shape[:2], limit)
+    return _load(response, response.fields[name], *_bounds(response, name, limit), sign)
+
+
+def _bounds(response: Response, name: str, limit: float) -> tuple[Array, Array]:
+    """What a demand may be at every place: an upper bound below zero where nothing is left for the axial load."""
+    bound = np.full(response.fields[name].shape[:2], limit)
     if name == "shear" and "shear_around" in response.fields:
         # what turns is there already, whatever the axial load
-        turned = np.einsum("bxc,bc->bx", response.fields["shear_around"], response.shares(np.zeros(len(field))))
+        turned = np.einsum("bxc,bc->bx", response.fields["shear_around"], response.shares(np.zeros(len(bound))))
         rest = bound**2 - turned**2
-        if (rest < 0).any():
-            return np.zeros(len(field))
-        bound = np.sqrt(rest)
-    low = np.full_like(bound, -np.inf) if name == "peel" else -bound
-    load, _ = greatest_load(field, lambda P: response.shares(sign * P), low, bound, np.zeros(len(field)))
-    return load
+        bound = np.where((rest < 0).any(axis=1, keepdims=True), -1.0, np.sqrt(np.maximum(rest, 0.0)))
+    return (np.full_like(bound, -np.inf) if name == "peel" else -bound), bound
+
+
+def _load(response: Response, field: Array, low: Array, high: Array, sign: float) -> Array:
+    none_left = np.asarray((high < 0).any(axis=1))
+    above, below = np.where(none_left[:, None], 1.0, high), np.where(none_left[:, None], -1.0, low)
+    load, _ = greatest_load(field, lambda P: response.shares(sign * P), below, above, np.zeros(len(field)))
+    return np.where(none_left, 0.0, load)
 
 
 def yielding(lap: Lap, lengths: Array, action: Action, growth: float = FINE) -> tuple[Solver, Loads, Shares]:
@@ -257,13 +276,13 @@ def curve(strength: Callable[[Array], Array], *, low: float, high: float, step: 
     for widening in range(6):
         grows = _growing(overlap, found)
         steps = np.arange(1.0, 9 * 2**widening)
-        if not grows.any():
+        if not grows.any() and overlap[0] > SHORTEST * low:
             more = np.asarray(overlap[0] * step ** -steps[::-1], dtype=float)
             overlap, found = np.concatenate((more, overlap)), np.concatenate((strength(more), found))
         elif grows[-1]:
             more = np.asarray(overlap[-1] * step**steps, dtype=float)
             overlap, found = np.concatenate((overlap, more)), np.concatenate((found, strength(more)))
-        else:
+        elif grows.any():
             last = int(np.flatnonzero(grows)[-1])
             return Curve(overlap, found, _crossing(strength, overlap[last] / step**0.5, overlap[last + 1] * step**0.5))
     return Curve(overlap, found, None)
@@ -298,6 +317,7 @@ __all__ = [
     "Limits",
     "curve",
     "respond",
+    "strength",
     "strengths",
     "yield_strength",
     "yielded_response",

@@ -188,7 +188,12 @@ def _radial(lap: Lap, mesh: Mesh, shear: Array) -> tuple[Array, Array, Array]:
         given = np.zeros((4 * len(h) + 4, columns))
         for k, places_of in enumerate((dofs[:, :4], dofs[:, 4:])):
             np.add.at(given, places_of, -t[k] / 2 * turned)
-        found = solveh_banded(band, given, lower=True, check_finite=False)
+        try:
+            found = solveh_banded(band, given, lower=True, check_finite=False)
+        except np.linalg.LinAlgError as error:  # elements so short beside the walls that their stiffness drowns
+            raise InputError(
+                "overlap", "this overlap is too short beside the tubes' walls for its radial stresses to be reckoned."
+            ) from error
         value, _first, second = _hermite(h, _SHARES)
         w = [np.einsum("epi,eic->epc", value, found[dofs[:, s]]) for s in (own, other)]
         peel[each] = _strung(bond * (w[1] - w[0]))

@@ -6,6 +6,7 @@ A kind brings its questions, its blocks and its check; nothing here knows which 
 from __future__ import annotations
 
 from collections.abc import Mapping
+from dataclasses import replace
 from typing import Any
 
 from fastapi import APIRouter, Request
@@ -78,8 +79,10 @@ def preview_check(request: Request, session: DbSession, values: FormValues, job_
     """Answer a keystroke: the result, the messages of the boxes concerned, and the boxes where others make sense."""
     asked, typed = kind_of(kind), dict(values)
     judged = judge(session, asked, typed, steps=False)
-    form = _form(request, session, asked, typed, judged, job_id)
+    form = _form(request, asked, typed, judged, job_id)
     reshaped = form.asked_now != typed.get("asked", form.asked_now)
+    if reshaped:  # only new boxes offer the library's records
+        form = _offering(form, session)
     context = _shown(judged, asked, typed)
     return page(
         request, "check/_one_page_preview.html", form=form, lazily=True, swap=True, reshaped=reshaped, **context
@@ -147,15 +150,20 @@ def _page(
     *,
     status: int = 200,
 ) -> Response:
-    form = _form(request, session, asked, values, judged, job.id, check_id)
+    form = _offering(_form(request, asked, values, judged, job.id, check_id), session)
     shown = _shown(judged, asked, values)
     boxes = "check/_one_page_form.html"
     return form_page(request, session, job, form, judged, shown, check_id, boxes=boxes, status=status, kind=asked.one)
 
 
+def _offering(form: OneForm, session: Session) -> OneForm:
+    """The form with the library's records to pick from, where it has boxes for them."""
+    picks = any(ask.record for ask in asks_of(form.page.groups).values())
+    return replace(form, library=records_offered(session)) if picks else form
+
+
 def _form(
     request: Request,
-    session: Session,
     asked: OnePage,
     values: Mapping[str, str],
     judged: Judged,
@@ -166,7 +174,6 @@ def _form(
         return path_for(request, name, job_id=job_id, kind=asked.kind)
 
     leave, save_url = leave_and_save(request, job_id, check_id, of_kind("save_kind_check"))
-    picks = any(ask.record for ask in asks_of(asked.groups).values())
     return OneForm(
         page=asked,
         values=values,
@@ -177,7 +184,6 @@ def _form(
         working_url=of_kind("preview_kind_working"),
         save_url=save_url,
         leave_url=leave,
-        library=records_offered(session) if picks else {},
         revising=bool(check_id),
     )
 
