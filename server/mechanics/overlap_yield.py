@@ -88,6 +88,7 @@ def at_limit(
     course = solver.solve(loads, only_slip=True)
     target = np.minimum(limit, at_yield)
     load, found = _load_at(course, shares, target, np.zeros(len(flow)))
+    first, could = load, found
     yielded = np.zeros(course.slip_inside.shape[:3], dtype=np.int8)
     settled = steady = np.zeros(len(flow), dtype=bool)
     for _ in range(MOST_ROUNDS):
@@ -100,8 +101,69 @@ def at_limit(
         load, yielded = fresh, moved
         if np.all(settled | steady | ~found):
             break
+    lost = could & (first > 0) & ~(settled | steady)
+    if lost.any():
+        load, yielded, held = _bracketed(solver, loads, shares, (load, yielded), lost, first, flow, at_yield, limit)
+        found, settled = found | held, settled | held
+        if not whole:
+            course = solver.solve(loads, yielded, flow[:, None, None], only_slip=True)
     course = solver.solve(loads, yielded, flow[:, None, None]) if whole else course
     return _combined(course, load, shares, flow, stiffness, found, settled | steady)
+
+
+def _bracketed(
+    solver: Solver,
+    loads: Loads,
+    shares: Shares,
+    known: tuple[Array, NDArray[np.int8]],
+    lost: NDArray[np.bool_],
+    first: Array,
+    flow: Array,
+    at_yield: Array,
+    limit: Array,
+) -> tuple[Array, NDArray[np.int8], NDArray[np.bool_]]:
+    """For bonds on which Newton's method lost its way (very long ones, yielded almost throughout): the load between
+    the one at first yield and one that is too great, by false position on the slip, the others left as they are."""
+    load, yielded = known
+
+    def beyond(tried: Array, start: NDArray[np.int8]) -> tuple[Array, NDArray[np.int8]]:
+        """How far the greatest slip is beyond its limit, as a share of it, and where the bond yields."""
+        act = shares(tried)
+        for _ in range(MOST_ROUNDS):
+            course = solver.solve(loads, start, flow[:, None, None], only_slip=True)
+            moved = _where(summed(course.slip_inside, act), at_yield)
+            if (moved == start).all():
+                break
+            start = moved
+        return np.abs(summed(course.slip, act)).max(axis=1) / limit - 1, start
+
+    low, high = np.where(lost, first, load), np.where(lost, 2 * first, load)
+    below, yielded = beyond(low, np.where(lost[:, None, None], 0, yielded).astype(np.int8))
+    above, grown = beyond(high, yielded)
+    for _ in range(WIDENINGS):
+        short = lost & (above < 0)
+        if not short.any():
+            break
+        low, below = np.where(short, high, low), np.where(short, above, below)
+        high = np.where(short, 2 * high, high)
+        above, grown = beyond(high, grown)
+    held = lost & (below <= 0) & (above > 0)
+    for _ in range(NARROWINGS):
+        share = np.clip(np.where(held, below / np.where(held, below - above, 1.0), 0.0), 0.02, 0.98)
+        middle = np.where(held, low + (high - low) * share, load)
+        off, yielded = beyond(middle, yielded)
+        under_it = off <= 0
+        # the side that stays is halved, so that a bowed curve does not hold it for ever (Illinois)
+        above = np.where(under_it, above / 2, off)
+        below = np.where(under_it, off, below / 2)
+        low, high = np.where(under_it, middle, low), np.where(under_it, high, middle)
+        load = np.where(held, middle, load)
+        if (np.abs(off[held]) < SETTLED).all():
+            break
+    return load, yielded, held
+
+
+WIDENINGS, NARROWINGS = 12, 40
 
 
 def under(solver: Solver, loads: Loads, shares: Shares, load: ArrayLike, *, yield_flow: ArrayLike) -> Yielded:

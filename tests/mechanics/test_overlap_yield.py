@@ -17,7 +17,9 @@ from server.mechanics.overlap_strength import (
     strengths,
     yield_strength,
     yielded_response,
+    yielding,
 )
+from server.mechanics.overlap_yield import under
 from tests.mechanics.overlap_oracles import two_bars
 from tests.mechanics.test_overlap_laps import ALUMINIUM, EPOXY, STEEL, beam, ends_of, two_beams
 
@@ -109,6 +111,21 @@ def test_strength_never_falls_with_the_strain_limit_and_carries_its_own_load(len
     assert less.load[0] >= elastic * (1 - 1e-6)
     bound = lap.bonds * lap.bond_width * length * tau * (1 + (thickness / length) ** 2 if layout == "scarf" else 1)
     assert less.load[0] <= bound * (1 + 1e-4)
+
+
+@pytest.mark.parametrize(
+    ("length", "strain", "thickness", "tau"), [(300.0, 1.54, 1.837, 6.347), (253.0, 0.815, 6.0, 5.0)]
+)
+def test_a_very_long_lap_that_yields_almost_throughout_has_a_strength(length, strain, thickness, tau):
+    """Newton's method alone loses its way here; the slip under the load that was found is at its limit."""
+    lap = Lap("single-lap", Plate(70e3, thickness), Plate(70e3, thickness), EPOXY, width=25.0)
+    strain += tau / 1000
+    for whole in (True, False):
+        found = yield_strength(lap, length, shear_yield=tau, strain_limit=strain, whole=whole)
+        assert found.settled.all()
+        solver, loads, shares = yielding(lap, np.array([length]), Action())
+        reached = under(solver, loads, shares, found.load, yield_flow=tau * 25)
+        assert np.abs(reached.course.slip).max() == pytest.approx(strain * 0.2, rel=2e-3 if whole else 0.02)
 
 
 def test_a_strain_limit_below_the_strain_at_yield_is_refused():
