@@ -101,8 +101,8 @@ def at_limit(
         load, yielded = fresh, moved
         if np.all(settled | steady | ~found):
             break
-    lost = could & (first > 0) & ~(settled | steady)
-    if lost.any():
+    lost = could & (first > 0) & ~(found if not whole else settled | steady)
+    if lost.any() and solver.pair.bending:
         load, yielded, held = _bracketed(solver, loads, shares, (load, yielded), lost, first, flow, at_yield, limit)
         found, settled = found | held, settled | held
         if not whole:
@@ -129,7 +129,7 @@ def _bracketed(
     def beyond(tried: Array, start: NDArray[np.int8]) -> tuple[Array, NDArray[np.int8]]:
         """How far the greatest slip is beyond its limit, as a share of it, and where the bond yields."""
         act = shares(tried)
-        for _ in range(MOST_ROUNDS):
+        for _ in range(FEWER_ROUNDS):
             course = solver.solve(loads, start, flow[:, None, None], only_slip=True)
             moved = _where(summed(course.slip_inside, act), at_yield)
             if (moved == start).all():
@@ -163,7 +163,7 @@ def _bracketed(
     return load, yielded, held
 
 
-WIDENINGS, NARROWINGS = 12, 40
+WIDENINGS, NARROWINGS, FEWER_ROUNDS = 12, 25, 25
 
 
 def under(solver: Solver, loads: Loads, shares: Shares, load: ArrayLike, *, yield_flow: ArrayLike) -> Yielded:
