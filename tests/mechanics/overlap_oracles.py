@@ -6,7 +6,7 @@ import numpy as np
 from scipy.integrate import solve_bvp
 
 
-def two_beams(length, upper, lower, ks, kp, ends, *, mismatch=0.0, points=600, yield_flow=None, guided=False):
+def two_beams(length, upper, lower, ks, kp, ends, *, mismatch=0.0, points=600, guided=False):
     """Flow and opening force along the bond of two beams, from their own twelve equations in displacements.
 
     ``upper`` and ``lower`` are (EA, EI, arm); ``ends`` the (N, V, M) of the upper beam at left and right, then of the
@@ -25,8 +25,7 @@ def two_beams(length, upper, lower, ks, kp, ends, *, mismatch=0.0, points=600, y
 
     def bond(y):
         s = y[0] - y[6] + c1 * y[3] + c2 * y[9]
-        q = ks * s if yield_flow is None else np.clip(ks * s, -yield_flow, yield_flow)
-        return q, kp * (y[2] - y[8])
+        return ks * s, kp * (y[2] - y[8])
 
     def equations(x, z):
         y = z * scale[:, None]
