@@ -12,7 +12,7 @@ from server import ENGINE, documents
 from server.checks import lasting, splice_steps
 from server.checks.resistance import Claim, Findings, Weighed, Weigher
 from server.checks.splice_bond import Stresses, elastic, part, ultimate, yielding
-from server.checks.splice_curve import Change, Holds, changes, drawn, strength_curve, transfer_length
+from server.checks.splice_curve import DUCTILE, Change, Holds, changes, drawn, strength_curve, transfer_length
 from server.checks.splice_limits import Limit, cases_of, claim, joint_load, limits_of, yield_values
 from server.checks.splice_model import SIDES, Model, model_of, named
 from server.checks.splice_words import NOT_CHECKED, add_cautions
@@ -71,7 +71,7 @@ def _run(document: documents.SpliceDocument, book: Working, findings: Findings) 
         closed = splice_steps.peaks(model, factors, demands.shear, demands.peel, book)
     extra = _lasting(model, found, book, findings)
     result = _result(model, found, factors, closed)
-    tried = _overlap(model, found, result)
+    tried = _overlap(model, found, result, findings)
     add_cautions(model, found.stresses, result, tried, findings)
     limits = [*(j.result for j in found.judged), *(each.result for each in extra)]
     return {
@@ -329,9 +329,16 @@ def _adherend(model: Model, side: int, stresses: Stresses, judged: Sequence[Judg
     }
 
 
-def _overlap(model: Model, found: Found, result: dict[str, object]) -> list[Change]:
+def _overlap(model: Model, found: Found, result: dict[str, object], findings: Findings) -> list[Change]:
     """The overlap curve, its useful length, and what changes of the joint would bring."""
     if model.lap is None or not found.holds.known or not found.joint_strength:
+        return []
+    if found.holds.sharp(model.lap):
+        findings.caution(
+            "overlap curve",
+            f"The bond yields at less than 1/{DUCTILE:g} of its strain limit, which no adhesive does: curve and "
+            "changes were not reckoned. Check its shear modulus, yield and strain limit.",
+        )
         return []
     run_of = strength_curve(model.lap, model.action, model.length, found.holds)
     if run_of is not None:

@@ -17,6 +17,7 @@ from server.mechanics.overlap_tube import sections
 
 Array = NDArray[np.float64]
 DRAWN = 2.5  # the curve is drawn to this many times the overlap, or a little beyond the useful one
+DUCTILE = 500.0  # strain limit over the strain at yield: beyond it, and beyond any adhesive, each length takes seconds
 COARSE = 1.35  # ratio of neighbouring overlaps where the bond yields, which takes longer to reckon
 
 
@@ -36,6 +37,10 @@ class Holds:
             found = yield_strength(lap, lengths, action, shear_yield=tau, strain_limit=strain, whole=False)
             return found.load * self.reduction
         return strength(respond(lap, lengths, action), self.limits, sign=self.sign)
+
+    def sharp(self, lap: Lap) -> bool:
+        """Whether the bond yields so early, against its limit, that only the joint's own length is reckoned."""
+        return self.yields is not None and self.yields[1] * lap.bond.shear_modulus > DUCTILE * self.yields[0]
 
     @property
     def known(self) -> bool:
