@@ -33,7 +33,8 @@ def scarf_system(lap: Lap, lengths: Array, strain: float, growth: float = GROWTH
     )
     # the outer piece grows from its tip at the left, the inner one runs out at the right
     own = blunt + (1 - 2 * blunt) * share
-    pair = Pair(Adherend(soft[1] / own), Adherend(soft[0] / (1 - own)), stiffness[:, None, None], bending=False)
+    rest = np.maximum(1 - own, np.finfo(float).eps)  # the last place of a long scarf may round to its end
+    pair = Pair(Adherend(soft[1] / own), Adherend(soft[0] / rest), stiffness[:, None, None], bending=False)
     return Solver(pair, mesh), loads
 
 
