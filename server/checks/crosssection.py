@@ -19,6 +19,7 @@ from server import documents
 from server.checks.outlines import outlines
 from server.checks.section_field import Settled, Wanted, bond_of, settle
 from server.errors import DocumentError, Fault
+from server.mechanics.beam_model import SAME_PLACE
 from server.mechanics.beam_two_planes import bending_flexibility, shear_flexibility
 from server.mechanics.contacts import Contact, contacts, in_order, overlap
 from server.mechanics.cuts import above
@@ -379,14 +380,28 @@ def _stiffness_key(site: Site) -> object:
 def _parts(document: documents.MemberDocument) -> list[Part]:
     length = document.member.length
     shapes = outlines(document.section.pieces)
+    ends = _told_apart(document)
     parts = []
     for index, (name, spec) in enumerate(document.section.pieces.items()):
         material = document.materials[spec.material]
         assert isinstance(material, documents.Material)
-        start = 0.0 if spec.from_ is None else spec.from_
-        end = length if spec.to is None else spec.to
+        start = 0.0 if spec.from_ is None else ends[spec.from_]
+        end = length if spec.to is None else ends[spec.to]
         parts.append(Part(index, name, spec, material, shapes[name], start, end))
     return parts
+
+
+def _told_apart(document: documents.MemberDocument) -> dict[float, float]:
+    """Ends of pieces along the member; those too close to tell apart are one, and the member's own ends win."""
+    length = document.member.length
+    slack = SAME_PLACE * length
+    typed = {at for piece in document.section.pieces.values() for at in (piece.from_, piece.to) if at is not None}
+    found: dict[float, float] = {}
+    last = 0.0
+    for at in sorted(typed):
+        last = length if at >= length - slack else at if at - last > slack else last
+        found[at] = last
+    return found
 
 
 def with_shares(section: CrossSection, shares: Mapping[int, float]) -> CrossSection:

@@ -10,6 +10,7 @@ from hypothesis import HealthCheck, given, settings
 from hypothesis import strategies as st
 
 from server import checks, documents
+from tests.checks.made import STACK, changed
 from tests.checks.oracle_compare import differences
 from tests.checks.oracle_verdict import Verdict
 from tests.checks.random_members import Raw, boxes, members, stacks
@@ -308,3 +309,8 @@ def test_a_piece_turned_and_drawn_turned_back_is_the_same_piece(raw: Raw, turn: 
         if turn % 180:
             piece["width"], piece["depth"] = piece["depth"], piece["width"]
     same(run(raw), run(other))
+
+
+def test_pieces_that_end_at_places_too_close_to_tell_apart_end_at_one():
+    raw = changed(STACK, section__pieces__upper__from=1e-200, section__pieces__lower__to=3000 - 1e-9)
+    assert checks.run(documents.read(raw))["utilisation"] == checks.run(documents.read(STACK))["utilisation"]
