@@ -102,7 +102,7 @@ def at_limit(
         if np.all(settled | steady | ~found):
             break
     lost = could & (first > 0) & ~(found if not whole else settled | steady)
-    if lost.any() and solver.pair.bending:
+    if lost.any() and (whole or solver.pair.bending):
         load, yielded, held = _bracketed(solver, loads, shares, (load, yielded), lost, first, flow, at_yield, limit)
         found, settled = found | held, settled | held
         if not whole:

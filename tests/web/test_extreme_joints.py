@@ -19,6 +19,14 @@ def test_every_edge_is_answered_where_the_bond_yields(client: TestClient, joint:
         assert result["utilisation"] is None or result["utilisation"] > 0
 
 
+@pytest.mark.parametrize("joint", JOINTS)
+def test_yielding_never_costs_strength_however_stiff_the_bond(client: TestClient, joint: str) -> None:
+    document = made(joint, "very stiff adhesive")
+    elastic = client.post("/api/checks/run", json=document).json()["utilisation"]
+    yielding = client.post("/api/checks/run", json={**document, "response": "elastic-plastic"}).json()["utilisation"]
+    assert yielding <= elastic * (1 + 1e-6)
+
+
 def test_a_bond_that_yields_far_too_early_is_said_to(client: TestClient) -> None:
     document = {**made("double-lap", "very stiff adhesive"), "response": "elastic-plastic"}
     result = client.post("/api/checks/run", json=document).json()
