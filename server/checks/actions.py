@@ -15,7 +15,7 @@ from server.checks.crosssection import Body, both_ways
 from server.errors import DocumentError, Fault, InputError
 from server.mechanics import beam as mechanics
 from server.mechanics.beam import Beam, Couple, LineLoad, PointLoad, Response, solve_alike
-from server.mechanics.piecewise import Candidates, Extremes, candidates, evaluate, extremes
+from server.mechanics.piecewise import Candidates, Extremes, candidates, candidates_together, evaluate, extremes
 
 GRAVITY = 9.80665  # m/s2, standard (ISO 80000-3)
 TIE = 1e-9  # relative difference under which two extremes are the same
@@ -84,11 +84,7 @@ class _Together:
 
     @cached_property
     def _candidates(self) -> Candidates:
-        rows, pieces, _ = self.curves[0].shape
-        padded = np.zeros((len(self.curves), rows, pieces, max(curve.shape[-1] for curve in self.curves)))
-        for place, curve in enumerate(self.curves):
-            padded[place, ..., : curve.shape[-1]] = curve
-        return candidates(self.breaks, padded)
+        return candidates_together(self.breaks, self.curves)
 
     def of(self, place: int, rows: list[int]) -> Candidates:
         found = self._candidates

@@ -19,7 +19,15 @@ from server.mechanics.beam_loads import Grid, lay_out, restiffened
 from server.mechanics.beam_model import Beam, Couple, LineLoad, Load, PointLoad, Stretch, Support, span_ends
 from server.mechanics.beam_stability import require_stable
 from server.mechanics.beam_system import FIXED, Sweep, assemble, solve_system, sweep
-from server.mechanics.piecewise import Candidates, Extremes, candidates, evaluate, extremes, restrict
+from server.mechanics.piecewise import (
+    Candidates,
+    Extremes,
+    candidates,
+    candidates_together,
+    evaluate,
+    extremes,
+    restrict,
+)
 
 __all__ = [
     "Beam",
@@ -108,10 +116,7 @@ class Response:
 
     def candidates(self) -> Candidates:
         """Return all places of possible extremes of shear, moment and deflection, shape (3, c, m, q)."""
-        c, m, d = self.deflection.shape
-        curves = np.zeros((3, c, m, d))
-        curves[0, ..., :3], curves[1, ..., :4], curves[2] = self.shear, self.moment, self.deflection
-        return candidates(self.breaks, curves)
+        return candidates_together(self.breaks, (self.shear, self.moment, self.deflection))
 
     def extremes(self) -> Extremes:
         """Return the extremes over the whole member: rows shear [N], moment [N*mm], deflection [mm], (3, c)."""

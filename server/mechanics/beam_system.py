@@ -177,15 +177,17 @@ def assemble(grid: Grid, swept: Sweep) -> tuple[Array, Array, Array]:
     return A, rhs, scale
 
 
-def solve_system(A: Array, rhs: Array) -> Array:
+def solve_system(A: Array, rhs: Array, *, banded: bool = True) -> Array:
     """Return the solution of the member's equations, refined once.
 
     Parameters
     ----------
     A : numpy.ndarray
-        Matrix, entries only within 5 places of the diagonal [-].
+        Matrix, entries only within 5 places of the diagonal where it is ``banded`` [-].
     rhs : numpy.ndarray
         Right-hand sides, one a column [N].
+    banded : bool
+        Whether a large system may be solved by its band [-].
 
     Returns
     -------
@@ -208,7 +210,7 @@ def solve_system(A: Array, rhs: Array) -> Array:
        Math. Comp. 35 (1980), 817-832.
     """
     try:
-        if len(A) < BANDED_FROM:
+        if not banded or len(A) < BANDED_FROM:
             x = np.linalg.solve(A, rhs)
             x += np.linalg.solve(A, rhs - A @ x)
         else:

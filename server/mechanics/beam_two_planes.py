@@ -12,12 +12,11 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
-from server.errors import InputError
 from server.mechanics.beam import Response
 from server.mechanics.beam_loads import Grid, lay_out
 from server.mechanics.beam_model import Beam, Load
 from server.mechanics.beam_stability import require_stable
-from server.mechanics.beam_system import AFTER, BEFORE, FIXED, LOADED, SPRINGS, Array, Sweep, sweep
+from server.mechanics.beam_system import AFTER, BEFORE, FIXED, LOADED, SPRINGS, Array, Sweep, solve_system, sweep
 from server.mechanics.polygon import Indices
 
 _DIVISOR = np.array([1.0, 2.0, 3.0])  # shear's coefficients over these: moment's
@@ -190,26 +189,9 @@ def _joined(left: Array, right: Array, T: Array, loads: Array, carried: Array, s
         rhs[at] = side[n]
     A[range(8 * K - 4, 8 * K), [8 * K - 8 + k for k in forces]] = 1
     rows = np.abs(A).max(axis=1)[:, None]
-    found = _solved(A / rows, rhs / rows)
+    found = solve_system(A / rows, rhs / rows, banded=False)
     result: Array = found.reshape(K, 2, 4, c) * scale[:, None]
     return result
-
-
-def _solved(A: Array, rhs: Array) -> Array:
-    """The solution, refined once."""
-    x: Array
-    try:
-        x = np.asarray(np.linalg.solve(A, rhs), dtype=np.float64)
-        x = np.asarray(x + np.linalg.solve(A, rhs - A @ x), dtype=np.float64)
-    except np.linalg.LinAlgError:
-        x = np.full_like(rhs, np.nan)
-    if not np.isfinite(x).all():
-        raise InputError(
-            "supports",
-            "the member's equations cannot be solved: its stiffnesses, springs or loads differ too much in size; bring"
-            " them closer together.",
-        )
-    return x
 
 
 def _curves(system: _System, states: Array, i: int) -> Response:

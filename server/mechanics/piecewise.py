@@ -7,6 +7,7 @@ the member. Positions in mm; values in whatever unit the curve has (N, N*mm, mm)
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 from functools import cached_property, lru_cache
 from math import comb
@@ -145,6 +146,32 @@ def candidates(breaks: ArrayLike, coefficients: ArrayLike) -> Candidates:
             at = _with_slots(at, item, back, x[of] + t * width[of])
     shape = (*lead, m, ends.shape[1])
     return Candidates(ends.reshape(shape), at.reshape(shape))
+
+
+def candidates_together(breaks: ArrayLike, curves: Sequence[Array]) -> Candidates:
+    """Return the candidates of several sets of curves at once, whatever their degrees; the first axis is the set.
+
+    Parameters
+    ----------
+    breaks : array_like
+        Ends of the intervals, ascending, shape (m + 1,) [mm].
+    curves : sequence of numpy.ndarray
+        Ascending coefficients of each set, all of shape (c, m, d) with its own d [unit/mm^k].
+
+    Returns
+    -------
+    Candidates
+        As `candidates` gives them, shape (sets, c, m, q).
+
+    References
+    ----------
+    .. [1] As `candidates`; missing coefficients are zero.
+    """
+    rows, pieces, _ = curves[0].shape
+    padded = np.zeros((len(curves), rows, pieces, max(curve.shape[-1] for curve in curves)))
+    for place, curve in enumerate(curves):
+        padded[place, ..., : curve.shape[-1]] = curve
+    return candidates(breaks, padded)
 
 
 def _with_slots(ends: Array, item: Indices, back: Indices, value: Array) -> Array:

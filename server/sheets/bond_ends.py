@@ -12,9 +12,8 @@ from server.sheets.lasting import lasting
 from server.sheets.one_page import Blocks, Part, figure, pairs, sub
 from server.sheets.plotting import Axis, across
 from server.sheets.svg import Drawing
-from server.sheets.tables import column, table
+from server.sheets.tables import column, table, used
 from server.sheets.values import DASH, in_units, quantity, unit, utilisation
-from server.working import exceeds
 
 Result = Mapping[str, Any]
 End = Mapping[str, Any]
@@ -48,15 +47,13 @@ def ends(result: Result, display: str) -> Iterator[Part]:
     ]
     rows: list[list[Any]] = []
     for end in listed:
-        used = end.get("utilisation")
-        told = DASH if used is None else utilisation(used)
         rows.append(
             [
                 _where(end, display),
                 of.number(end.get("end_shear")),
                 of.number(end.get("end_peel")),
                 of.number(end.get("mean_shear_at_end")),
-                {"strong": told} if used is not None and exceeds(float(used)) else told,
+                used(end.get("utilisation")),
             ]
         )
     yield table(columns, rows)
@@ -190,8 +187,6 @@ def movement(result: Result, display: str) -> Iterator[Part]:
     ]
     rows: list[list[Any]] = []
     for each in listed:
-        used = each.get("utilisation")
-        told = DASH if used is None else utilisation(used)
         rows.append(
             [
                 f"{each['piece']}, at {quantity(each['at'], 'mm', display)}",
@@ -200,7 +195,7 @@ def movement(result: Result, display: str) -> Iterator[Part]:
                 of.number(each["end_peel"], 3),
                 size.number(each["end_slip"], 3),
                 size.number(each["transfer_length"], 3),
-                {"strong": told} if used is not None and exceeds(float(used)) else told,
+                used(each.get("utilisation")),
             ]
         )
     yield table(columns, rows)

@@ -6,9 +6,8 @@ from collections.abc import Iterator, Mapping, Sequence
 from typing import Any
 
 from server.sheets.one_page import Part
-from server.sheets.tables import column, table
-from server.sheets.values import quantity, utilisation
-from server.working import exceeds
+from server.sheets.tables import column, table, used
+from server.sheets.values import quantity
 
 
 def limits_table(limits: Sequence[Mapping[str, Any]], display: str) -> Iterator[Part]:
@@ -24,9 +23,8 @@ def limits_table(limits: Sequence[Mapping[str, Any]], display: str) -> Iterator[
     rows: list[list[Any]] = []
     for each in sorted(limits, key=lambda limit: -float(limit["utilisation"])):
         stored = str(each.get("demand_unit") or "")
-        used = utilisation(each["utilisation"])
         told = [quantity(each.get(key), stored, display) if each.get(key) is not None else "" for key in _KEYS]
-        rows.append([str(each["what"]), *told, {"strong": used} if exceeds(float(each["utilisation"])) else used])
+        rows.append([str(each["what"]), *told, used(each["utilisation"])])
     yield table(columns, rows)
 
 
