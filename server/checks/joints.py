@@ -31,14 +31,15 @@ BOND = ("tau", "tau_r")  # what is set against the bonded width: the joint in th
 class JointCheck:
     """One joint on its way through the check: what is claimed of it, then what came out.
 
-    ``along`` what its flow was found with; ``fastening`` its fasteners where they carry, with the glue ``gone`` for a
-    fall-back.
+    ``weighed`` its claims at the combination that governs each; ``along`` what its flow was found with; ``fastening``
+    its fasteners where they carry, with the glue ``gone`` for a fall-back.
     """
 
     site: Site
     result: dict[str, object]
     demand: Demand | None = None
     claims: list[Claim] = field(default_factory=list)
+    weighed: list[Weighed | None] = field(default_factory=list)
     incomplete: bool = False
     times: NDArray[np.float64] | None = None  # what a rib alone has over the whole section, by combination
     governing: Weighed | None = None

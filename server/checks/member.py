@@ -242,6 +242,7 @@ def _judge(
     claimed = [*(joint.claims for joint in joints), *(piece.claims for piece in (*pieces, *gone))]
     weighed = _in_groups(judge.weigh([claim for claims in claimed for claim in claims]), claimed)
     for joint, own in zip(joints, weighed, strict=False):
+        joint.weighed = own
         write_joint(joint, own, body, judge, statics)
     rest = weighed[len(joints) :]
     for piece, own in zip(pieces, rest, strict=False):

@@ -7,8 +7,7 @@ of its resistance it bears for so many cycles (``fatigue``), and for ever (``cre
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
-from typing import Literal
+from typing import Literal, NamedTuple
 
 import numpy as np
 from numpy.typing import NDArray
@@ -18,20 +17,20 @@ from server.checks import lasting
 from server.checks.actions import Actions, Curve
 from server.checks.joints import JointCheck
 from server.checks.member_ends import Governs, MemberEnds
-from server.checks.resistance import Claim, Findings, resistances
+from server.checks.resistance import Findings, Weighed
 from server.mechanics.piecewise import evaluate
 from server.working import Working
 
 SIDES: tuple[Literal["left", "right"], ...] = ("left", "right")
 
 
-@dataclass(frozen=True)
-class _Bond:
+class _Bond(NamedTuple):
     """A glued joint where one combination uses its adhesive most: what part of its resistance, and at what place.
 
     ``share`` is the shear that stays over the shear that governs there.
     """
 
+    combination: str
     joint: JointCheck
     name: str
     adhesive: documents.Adhesive
@@ -51,16 +50,9 @@ def check_lasting(
     """Every bond under every combination that says how its load repeats or stays; what governs goes to ``found``."""
     told: list[dict[str, object]] = []
     unjudged: list[_Bond] = []
-    claimed = [(joint, claim) for joint in joints if (claim := _own_claim(joint)) is not None]
-    if not claimed:
-        return []
-    used = np.array([claim.demand for _, claim in claimed]) / resistances([claim for _, claim in claimed])
-    for name, combination in document.combinations.items():
-        if combination.for_ == "deflection" or not (combination.fatigue or any(combination.sustained.values())):
-            continue
-        for bond in _bonds(document, name, actions, claimed, used):
-            unjudged += [bond] if bond.share > 0 and bond.adhesive.creep_limit is None else []
-            told += _judge(combination, bond, f"joint {bond.joint.site.id}, combination {name}", book, findings, found)
+    for bond in _bonds(document, actions, joints):
+        unjudged += [bond] if bond.share > 0 and bond.adhesive.creep_limit is None else []
+        told += _judge(document.combinations[bond.combination], bond, book, findings, found)
     _caution_creep(unjudged, findings)
     return told
 
@@ -79,48 +71,50 @@ def _caution_creep(bonds: Sequence[_Bond], findings: Findings) -> None:
         )
 
 
-def _bonds(
-    document: documents.MemberDocument,
-    name: str,
-    actions: Actions,
-    claimed: Sequence[tuple[JointCheck, Claim]],
-    use: NDArray[np.float64],
-) -> list[_Bond]:
-    """The bonds that a combination uses; one with moving axles has several rows, of which the hardest counts.
+def _bonds(document: documents.MemberDocument, actions: Actions, joints: Sequence[JointCheck]) -> list[_Bond]:
+    """Every bond under every combination that says how its load repeats or stays; all places are worked out at once.
 
-    ``use``: what part of its resistance each claim uses in every row.
+    A combination with moving axles has several rows, of which the hardest counts.
     """
-    rows = [i for i, k in enumerate(actions.strength) if actions.names[k] == name]
-    if not rows or actions.shear is None or actions.staying_shear is None:
+    if actions.shear is None or actions.staying_shear is None:
         return []
-    claims = [claim for _, claim in claimed]
-    used = use[:, rows]
-    known = ~np.isnan(used).all(axis=1)
-    hardest = np.where(np.isnan(used), -1.0, used).argmax(axis=1)
-    row = np.array(rows)[hardest]
-    joint = np.arange(len(claims))
-    at = np.array([claim.at for claim in claims])[joint, row]
-    whole = _shear(actions.shear, at)[row, joint]
-    stays = _shear(actions.staying_shear, at)[rows].max(axis=0)
-    share = np.divide(stays, whole, out=np.zeros_like(stays), where=whole > 0)
+    claimed = [(joint, own) for joint in joints if (own := _own_limit(joint)) is not None]
+    rows_of: dict[str, list[int]] = {}
+    for row, name in enumerate(actions.strength_names):
+        combination = document.combinations[name]
+        if combination.fatigue or any(combination.sustained.values()):
+            rows_of.setdefault(name, []).append(row)
+    hardest = []
+    for name, rows in rows_of.items():
+        for joint, own in claimed:
+            row = max(rows, key=own.used.__getitem__)
+            if own.used[row] >= 0:
+                hardest.append((name, rows, row, joint, own))
+    at = np.array([own.claim.at[row] for _, _, row, _, own in hardest])
+    whole, stays = _shear(actions.shear, at), _shear(actions.staying_shear, at)
     found = []
-    for i in np.flatnonzero(known).tolist():
-        owner = claims[i].strength.owner
+    for i, (name, rows, row, joint, own) in enumerate(hardest):
+        owner = own.claim.strength.owner
         adhesive = document.adhesives[owner]
         assert isinstance(adhesive, documents.Adhesive)
-        most = float(used[i, hardest[i]])
-        found.append(_Bond(claimed[i][0], owner, adhesive, most, float(at[i]), float(share[i])))
+        share = max(stays[i][each] for each in rows) / whole[i][row] if whole[i][row] > 0 else 0.0
+        found.append(_Bond(name, joint, owner, adhesive, own.used[row], float(at[i]), share))
     return found
 
 
-def _own_claim(joint: JointCheck) -> Claim | None:
-    """What is asked of a joint's adhesive, not of the surfaces beside it."""
+def _own_limit(joint: JointCheck) -> Weighed | None:
+    """What is asked of a joint's adhesive, not of the surfaces beside it; None where it could not be weighed."""
     bond = joint.site.spec.adhesive
-    return next((c for c in joint.claims if bond is not None and c.strength.owner == bond and c.symbol == "tau"), None)
+    own = (
+        weighed
+        for claim, weighed in zip(joint.claims, joint.weighed, strict=True)
+        if bond is not None and claim.strength.owner == bond and claim.symbol == "tau"
+    )
+    return next(own, None)
 
 
 def _judge(
-    combination: documents.Combination, bond: _Bond, where: str, book: Working, findings: Findings, found: MemberEnds
+    combination: documents.Combination, bond: _Bond, book: Working, findings: Findings, found: MemberEnds
 ) -> list[dict[str, object]]:
     """Load that repeats, and load that stays where the adhesive's creep limit is known."""
 
@@ -128,6 +122,7 @@ def _judge(
         return part * bond.used
 
     adhesive, name, share = bond.adhesive, bond.name, bond.share
+    where = f"joint {bond.joint.site.id}, combination {bond.combination}"
     each = [lasting.repeated(combination.fatigue, adhesive, name, use, book, findings, where)]
     if share > 0 and adhesive.creep_limit is not None:
         each.append(lasting.sustained(share, adhesive, name, use, book, findings, where))
@@ -136,8 +131,8 @@ def _judge(
     return [one.result for one in kept]
 
 
-def _shear(curve: Curve, at: NDArray[np.float64]) -> NDArray[np.float64]:
-    """The larger shear on both sides of some places, a row a combination [N]."""
-    places = np.clip(at, curve.breaks[0], curve.breaks[-1])
-    sides = [np.abs(evaluate(curve.breaks, curve.coefficients, places, side)) for side in SIDES]
-    return np.maximum(*sides)
+def _shear(curve: Curve, at: NDArray[np.float64]) -> list[list[float]]:
+    """The larger shear on both sides of every place, one value a combination [N]."""
+    left, right = (evaluate(curve.breaks, curve.coefficients, at, side) for side in SIDES)
+    found: list[list[float]] = np.maximum(np.abs(left), np.abs(right)).T.tolist()
+    return found

@@ -9,9 +9,9 @@ governing cell of each row is then written out step by step.
 from __future__ import annotations
 
 from collections.abc import Iterable, Sequence
-from dataclasses import dataclass, field, replace
-from functools import cached_property, lru_cache
-from typing import Literal, Protocol
+from dataclasses import dataclass, field
+from functools import lru_cache
+from typing import Literal, NamedTuple, Protocol
 
 import numpy as np
 from numpy.typing import NDArray
@@ -53,8 +53,7 @@ class Findings:
             self.cautions.append(entry)
 
 
-@dataclass(frozen=True, eq=False)
-class Strength:
+class Strength(NamedTuple):
     """One characteristic strength with everything that multiplies and divides it.
 
     ``owner`` is the value's name in the document; ``duration`` one factor a strength combination,
@@ -73,7 +72,7 @@ class Strength:
     reductions: tuple[Reduction, ...] = ()
     before: tuple[Printed, ...] = ()
 
-    @cached_property
+    @property
     def multipliers(self) -> tuple[tuple[str, float], ...]:
         """Every named factor on the strength: the value's own, then what rules take off."""
         if not self.reductions:
@@ -82,7 +81,7 @@ class Strength:
 
     def reduced(self, reductions: tuple[Reduction, ...]) -> Strength:
         """The same strength with what rules take off."""
-        return replace(self, reductions=reductions) if reductions else self
+        return self._replace(reductions=reductions) if reductions else self
 
     def arguments(self, row: int) -> dict[str, tuple[float, str]]:
         """What multiplies and divides the strength in one combination, with units, for a printed step."""
@@ -93,8 +92,7 @@ class Strength:
         }
 
 
-@dataclass(frozen=True, eq=False)
-class Claim:
+class Claim(NamedTuple):
     """A demand set against a strength, one entry a strength combination, with the place and stretch of each.
 
     ``symbol`` is the demand's in the printed working; ``origin`` how it came about, where no other step says so.
@@ -108,14 +106,17 @@ class Claim:
     origin: Origin | None = None
 
 
-@dataclass(frozen=True, eq=False)
-class Weighed:
-    """A claim at its governing combination ``row``; ``utilisation`` and ``resistance`` there."""
+class Weighed(NamedTuple):
+    """A claim at its governing combination ``row``; ``utilisation`` and ``resistance`` there.
+
+    ``used`` what part of its resistance every combination uses, below 0 where the resistance is not known.
+    """
 
     claim: Claim
     row: int
     resistance: float
     utilisation: float
+    used: list[float]
 
     @property
     def stretch(self) -> int:
@@ -124,6 +125,18 @@ class Weighed:
     @property
     def at(self) -> float:
         return float(self.claim.at[self.row])
+
+
+class _Terms(NamedTuple):
+    """What all strengths of one holder have in common: what multiplies and divides them, and where they come from.
+
+    ``divisor`` is None where the basis has no factor for them.
+    """
+
+    duration: tuple[float, ...]
+    factors: tuple[tuple[str, float], ...]
+    divisor: float | None
+    source: str
 
 
 class Combinations(Protocol):
@@ -154,7 +167,7 @@ class Weigher:
 
     def __init__(self, document: Judged, actions: Combinations, working: Working, findings: Findings) -> None:
         self.basis, self.combinations, self.working, self.findings = document.basis, actions, working, findings
-        self._durations: dict[tuple[str, str], tuple[float, ...]] = {}
+        self._terms: dict[tuple[Kind, str], _Terms] = {}
         self._common: float | None = None
 
     def place(self, at: float) -> str:
@@ -175,28 +188,25 @@ class Weigher:
         """One strength, or None where it was not given; ``divisor`` stands in for the basis's own factor."""
         if value is None:
             return None
-        return Strength(
-            what=what,
-            value=value,
-            unit=unit,
-            owner=owner,
-            duration=self.duration(kind, owner, holder),
-            factors=tuple(holder.factors.items()),
-            divisor=divisor or self._common or self._divisor(kind, owner),
-            source=describe(holder),
-        )
-
-    def _divisor(self, kind: Kind, owner: str) -> float:
-        found = self.basis.factor(kind, owner)
-        assert found is not None  # documents refuses a basis without a factor that the check uses
-        return found
+        terms = self._terms_of(kind, owner, holder)
+        divided = divisor or self._common or terms.divisor
+        assert divided is not None  # documents refuses a basis without a factor that the check uses
+        return Strength(what, value, unit, owner, terms.duration, terms.factors, divided, terms.source)
 
     def duration(self, kind: Kind, owner: str, holder: Holder) -> tuple[float, ...]:
         """Duration factors over the strength combinations; doubts about the value are named the first time."""
-        key = (kind, owner)
-        if key in self._durations:
-            return self._durations[key]
-        label = f"{kind} {owner!r}"
+        return self._terms_of(kind, owner, holder).duration
+
+    def _terms_of(self, kind: Kind, owner: str, holder: Holder) -> _Terms:
+        found = self._terms.get((kind, owner))
+        if found is None:
+            duration = self._duration(f"{kind} {owner!r}", holder)
+            divisor = self.basis.factor(kind, owner)
+            found = _Terms(duration, tuple(holder.factors.items()), divisor, describe(holder))
+            self._terms[kind, owner] = found
+        return found
+
+    def _duration(self, label: str, holder: Holder) -> tuple[float, ...]:
         table = holder.duration_factors
         found = []
         for k in self.combinations.strength:
@@ -217,8 +227,7 @@ class Weigher:
                 f"{label[:1].upper() + label[1:]} has no duration factors: 1.0 was used for every combination.",
             )
         self.judge_status(label, holder)
-        self._durations[key] = tuple(found)
-        return self._durations[key]
+        return tuple(found)
 
     def judge_status(self, label: str, holder: Holder) -> None:
         """A doubtful value never lets a check pass; a provisional or superseded one is named."""
@@ -248,9 +257,10 @@ class Weigher:
         top = usage.max(axis=1, keepdims=True)
         near = np.where(usage >= top - TIE * np.maximum(top, 1e-300), places, np.inf)
         rows = near.argmin(axis=1).tolist()
+        each = zip(claims, rows, resists.tolist(), usage.tolist(), strict=True)
         return [
-            None if usage[i, row] < 0 else Weighed(claim, row, float(resists[i, row]), float(usage[i, row]))
-            for i, (claim, row) in enumerate(zip(claims, rows, strict=True))
+            None if used[row] < 0 else Weighed(claim, row, resistance[row], used[row], used)
+            for claim, row, resistance, used in each
         ]
 
     def write(self, weighed: Weighed, group: str) -> dict[str, object]:

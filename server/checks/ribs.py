@@ -188,8 +188,8 @@ def _scaled(claim: Claim, times: Mapping[int, float], before: Mapping[int, tuple
         SOURCE,
         before,
     )
-    strength = replace(claim.strength, what=claim.strength.what + WORDS)
-    return replace(claim, strength=strength, symbol=f"{claim.symbol}_r", demand=origin.demand(), origin=origin)
+    strength = claim.strength._replace(what=claim.strength.what + WORDS)
+    return claim._replace(strength=strength, symbol=f"{claim.symbol}_r", demand=origin.demand(), origin=origin)
 
 
 def _own_steps(rib: Rib) -> tuple[Printed, ...]:

@@ -11,7 +11,7 @@ does not depend on the face's thickness. Dimpling over the cells of a honeycomb 
 from __future__ import annotations
 
 from collections.abc import Iterator, Sequence
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
@@ -128,7 +128,7 @@ def _wrinkling(each: Face, piece: PieceCheck, judge: Judge) -> Iterator[Claim]:
         holder=face.material,
     )
     assert strength is not None
-    strength = replace(strength, before=(step,))
+    strength = strength._replace(before=(step,))
     yield Claim(strength, "sigma_c", np.maximum(demand, 0.0), bent.at[entry, columns], bent.stretch[entry])
 
 

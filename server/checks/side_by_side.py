@@ -10,7 +10,7 @@ body bore alone is told beside that question.
 from __future__ import annotations
 
 from collections.abc import Iterator, Sequence
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
@@ -213,7 +213,7 @@ def _judged(
         values = {"F_v": (upright, "N"), "F_q": (_along(held), "N")}
         words = f"{SOURCE}; supports and loads bear on {on}. F_v: upright, F_q: from the flow along the joint"
         origin = Origin("Force on the fastener that hands over most", FORCE, values, {}, words)
-        strength = replace(held.strength, what=held.strength.what + WORDS)
+        strength = held.strength._replace(what=held.strength.what + WORDS)
         stretch = np.zeros(len(at), dtype=np.intp)
         held.check.claims.append(Claim(strength, "F_h", origin.demand(), at, stretch, origin))
         most = int(upright.argmax())

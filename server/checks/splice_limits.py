@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 
 import numpy as np
 
@@ -165,4 +165,4 @@ def _surface_peel(model: Model, side: int, judge: Weigher) -> Strength | None:
 
 def _wall(strength: Strength | None) -> Strength | None:
     """The shear strength of a tube's wall is that of its surface."""
-    return None if strength is None else replace(strength, what=strength.what.replace("in the surface", "in the wall"))
+    return None if strength is None else strength._replace(what=strength.what.replace("in the surface", "in the wall"))

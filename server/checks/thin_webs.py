@@ -8,7 +8,7 @@ thickness.
 from __future__ import annotations
 
 from collections.abc import Iterator, Sequence
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 
 import numpy as np
 
@@ -145,7 +145,7 @@ def _strength(web: Web, section: CrossSection, judge: Judge) -> Strength | None:
         holder=part.material,
     )
     assert strength is not None
-    return replace(strength, before=(step,))
+    return strength._replace(before=(step,))
 
 
 def _share(web: Web, section: CrossSection) -> Printed:
