@@ -2,71 +2,27 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Iterable, Iterator, Sequence
 from dataclasses import dataclass, field
+from typing import NamedTuple, TypeVar
 
 import numpy as np
 from numpy.typing import NDArray
 
-from server.checks.actions import Actions
 from server.checks.crosssection import Body, Part, Stretch
 from server.checks.joints import FIRST_MOMENT
-from server.checks.pieces_both_ways import (
-    HIGHEST,
-    LOWEST,
-    CornerStress,
-    CutShear,
-    corner_stress,
-    cut_shear,
-    write_corner,
-    write_cut_shear,
-)
+from server.checks.piece_stresses import BENDING, SHEAR, Bent, Sheared, bend, heights, shear
+from server.checks.pieces_both_ways import HIGHEST, LOWEST, write_corner, write_cut_shear
 from server.checks.resistance import Claim, Judge, Strength, Weighed, worst
 from server.checks.scan import Scan
 from server.checks.slide import Slide
-from server.checks.slip_pieces import CUT, SlidingShear, fibres, sliding_shear, write_stress
+from server.checks.slip_pieces import CUT, write_stress
 from server.checks.slip_pieces import MECHANICS as SLIDING
-from server.checks.twist import Twist, twisted_shear
-from server.working import formula
+from server.checks.twist import Twist
 
-BENDING = "-E*M*(u - u_0)/EI"
-SHEAR = "V*S/(EI*b)"
 TWISTED_SHEAR = "V*S/(EI*b) + T*t_T"
 MECHANICS = "plane sections, E-weighted (any mechanics of materials text)"
 FIBRES = ("top", "bottom", "mean")
-
-
-@dataclass(frozen=True, eq=False)
-class Bent:
-    """Normal stresses of one piece: fibres x entries x combinations, an entry for each stretch x moment extreme.
-
-    Where the member bends both ways: an entry for each place that a corner's stress is greatest at; ``range`` the
-    highest and the lowest corner there (2, entries, combinations), ``corners`` where each entry comes from.
-    """
-
-    stress: NDArray[np.float64]
-    moment: NDArray[np.float64]
-    at: NDArray[np.float64]
-    stretch: NDArray[np.intp]
-    range: NDArray[np.float64] | None = None
-    corners: tuple[tuple[CornerStress, int], ...] = ()
-
-
-@dataclass(frozen=True, eq=False)
-class Sheared:
-    """Largest shear stress on horizontal cuts through one piece: stretches x combinations.
-
-    ``cuts`` stretch by stretch where the joints slide, with the piece's place among those of the stretch; ``torque``
-    likewise to ``shear`` where loads are eccentric.
-    """
-
-    stress: NDArray[np.float64]
-    shear: NDArray[np.float64]
-    at: NDArray[np.float64]
-    stretch: tuple[int, ...]
-    cuts: tuple[tuple[SlidingShear, int], ...] = ()
-    torque: NDArray[np.float64] | None = None
-    both_ways: CutShear | None = None
 
 
 @dataclass
@@ -81,6 +37,19 @@ class PieceCheck:
     governing: Weighed | None = None
     slide: Slide | None = None
     demands: list[tuple[str, NDArray[np.float64]]] = field(default_factory=list)
+
+
+class Asked(NamedTuple):
+    """What one strength of a piece is set against, one entry a strength combination, with the place and stretch."""
+
+    word: str
+    demand: NDArray[np.float64]
+    at: NDArray[np.float64]
+    stretch: NDArray[np.intp]
+
+
+Stress = TypeVar("Stress", Bent, Sheared)
+EXTREME, PULLED, PRESSED, MEAN_PULLED, MEAN_PRESSED = range(5)  # the rows of ``_sizes``
 
 
 def claim_pieces(
@@ -99,25 +68,24 @@ def claim_pieces(
     and no limit is judged on them. ``slide``: the stresses are those of the member whose joints slide; ``fall_back``:
     judged with the factor for what stands with the glue gone; ``twist``: torsion adds to their shear.
     """
-    if slide is None and judge.actions.across is not None:
-        bent, sheared = _bend_both_ways(body, judge.actions), _shear_both_ways(body, judge.actions, twist)
-    elif slide is None:
-        bent = _bend(body, scan)
-        sheared = _shear(body, scan) if twist is None else _shear_twisted(body, twist)
-    else:
-        bent, sheared = _bend_sliding(body, slide), _shear_sliding(body, slide)
+    bent = bend(body, scan, judge.actions, slide)
+    sheared = shear(body, scan, judge.actions, slide, twist)
     judge = judge.with_divisor(judge.document.basis.fall_back()) if fall_back else judge
-    found = []
-    for part in body.parts:
-        check = PieceCheck(part, _blank(part), bent.get(part.index), sheared.get(part.index), slide=slide)
-        found.append(check)
+    found = [
+        PieceCheck(part, _blank(part), bent.get(part.index), sheared.get(part.index), slide=slide)
+        for part in body.parts
+    ]
+    judged = [] if upper_stiffness else [check for check in found if check.part.material.strengths.any()]
+    bending, shearing = _bending(judged), _shearing(judged)
+    for check in found:
+        part = check.part
         judge.judge_status(f"material {part.spec.material!r}", part.material)  # its E carries, judged itself or not
-        if check.bent is None or check.sheared is None:
-            continue
-        if not upper_stiffness and part.material.strengths.any():
+        if part.index in bending and part.index in shearing:
             judge.duration("material", part.spec.material, part.material)
-            check.demands = fibre_demands(part, check.bent)
-            check.claims = [*_bending_claims(check, check.bent, judge), *_shear_claim(part, check.sheared, judge)]
+            check.claims = [
+                *_bending_claims(part, bending[part.index], judge),
+                *_shear_claim(part, shearing[part.index], judge),
+            ]
     return found
 
 
@@ -147,142 +115,94 @@ def _blank(part: Part) -> dict[str, object]:
     }
 
 
-def _bend(body: Body, scan: Scan) -> dict[int, Bent]:
-    """Normal stresses of every piece: one evaluation a stretch, for all pieces, fibres, extremes and combinations."""
-    found: dict[int, Bent] = {}
-    for t, (stretch, extremes) in enumerate(zip(body.stretches, scan.moment, strict=False)):
-        parts, whole = stretch.section.parts, stretch.section.properties
-        moment, at = np.array([extremes.max, extremes.min]), np.array([extremes.at_max, extremes.at_min])
-        stress = formula(BENDING).array(
-            {
-                "E": np.array([p.material.E for p in parts])[:, None, None, None],
-                "M": moment,
-                "u": np.array([_heights(p, stretch) for p in parts])[:, :, None, None],
-                "u_0": whole.neutral_axis[1],
-                "EI": whole.EI,
-            }
-        )
-        where = np.full(2, t, dtype=np.intp)
-        for part, own in zip(parts, stress, strict=True):
-            here = Bent(own, moment, at, where)
-            found[part.index] = _longer(found[part.index], here) if part.index in found else here
+def _bending(checks: Sequence[PieceCheck]) -> dict[int, list[Asked]]:
+    """What the strengths of all pieces against normal stress are set against, by the piece's index."""
+    found: dict[int, list[Asked]] = {}
+    for alike in _alike([(check, check.bent) for check in checks if check.bent is not None]):
+        bents = [bent for _, bent in alike]
+        stress = np.array([bent.stress for bent in bents]).swapaxes(0, 1)
+        ranges = [bent.range for bent in bents if bent.range is not None]
+        sizes = _sizes(stress, np.array(ranges).swapaxes(0, 1) if ranges else None)
+        demand, at, stretch = _hardest(sizes, np.array([b.at for b in bents]), np.array([b.stretch for b in bents]))
+        most, demand = demand.max(axis=-1).tolist(), np.maximum(demand, 0.0)
+        for i, (check, _) in enumerate(alike):
+            looked_at = _looked_at(check.part)
+            check.demands = [(word, sizes[k, i]) for word, k in looked_at]
+            found[check.part.index] = [
+                Asked(word, demand[k, i], at[k, i], stretch[k, i])
+                for word, k in looked_at
+                if most[k][i] > 0  # else never in tension, or never in compression: nothing to judge
+            ]
     return found
 
 
-def _longer(left: Bent, right: Bent) -> Bent:
-    return Bent(
-        np.concatenate([left.stress, right.stress], axis=1),
-        np.concatenate([left.moment, right.moment]),
-        np.concatenate([left.at, right.at]),
-        np.concatenate([left.stretch, right.stretch]),
-    )
-
-
-def _heights(part: Part, stretch: Stretch) -> tuple[float, float, float]:
-    """Heights of the fibres: top, bottom, centroid."""
-    return part.top, part.bottom, stretch.section.centroids[part.index]
-
-
-def _shear(body: Body, scan: Scan) -> dict[int, Sheared]:
-    """Largest shear stress on a horizontal cut through every piece: one evaluation a stretch for all pieces."""
-    rows: dict[int, list[tuple[NDArray[np.float64], NDArray[np.float64], NDArray[np.float64], int]]] = {}
-    for t, (stretch, (shear, at)) in enumerate(zip(body.stretches, scan.shear, strict=False)):
-        cuts = list(stretch.section.cuts.items())
-        stress = formula(SHEAR).array(
-            {
-                "V": shear,
-                "S": np.array([[abs(cut.first_moment)] for _, cut in cuts]),
-                "b": np.array([[cut.width] for _, cut in cuts]),
-                "EI": stretch.section.properties.EI,
-            }
-        )
-        for (index, _), own in zip(cuts, stress, strict=True):
-            rows.setdefault(index, []).append((own, shear, at, t))
-    found = {}
-    for index, each in rows.items():
-        stresses, shears, places, stretches = zip(*each, strict=True)
-        found[index] = Sheared(np.array(stresses), np.array(shears), np.array(places), stretches)
+def _shearing(checks: Sequence[PieceCheck]) -> dict[int, Asked]:
+    """What the shear strengths of all pieces are set against, by the piece's index."""
+    found: dict[int, Asked] = {}
+    for alike in _alike([(check, check.sheared) for check in checks if check.sheared is not None]):
+        each = [sheared for _, sheared in alike]
+        stretches = np.array([sheared.stretch for sheared in each], dtype=np.intp)
+        stress = np.array([[sheared.stress for sheared in each]])
+        demand, at, stretch = _hardest(stress, np.array([sheared.at for sheared in each]), stretches)
+        for i, (check, _) in enumerate(alike):
+            word = "rolling_shear" if check.part.body_rolls else "shear"
+            found[check.part.index] = Asked(word, demand[0, i], at[0, i], stretch[0, i])
     return found
 
 
-def _shear_twisted(body: Body, twist: Twist) -> dict[int, Sheared]:
-    """Shear on horizontal cuts and by torsion together, piece by piece."""
-    found = {}
-    for part in body.parts:
-        stretches = body.stretches_of(part)
-        if stretches:
-            each = twisted_shear(twist, part.index, stretches)
-            found[part.index] = Sheared(each.stress, each.shear, each.at, each.stretch, torque=each.torque)
+def _alike(stressed: Sequence[tuple[PieceCheck, Stress]]) -> Iterable[list[tuple[PieceCheck, Stress]]]:
+    """The pieces in groups that have as many entries each, so that arrays hold them all."""
+    groups: dict[int, list[tuple[PieceCheck, Stress]]] = {}
+    for check, stress in stressed:
+        groups.setdefault(len(stress.at), []).append((check, stress))
+    return groups.values()
+
+
+def _hardest(
+    sizes: NDArray[np.float64], places: NDArray[np.float64], stretches: NDArray[np.intp]
+) -> tuple[NDArray[np.float64], NDArray[np.float64], NDArray[np.intp]]:
+    """The largest of several entries, with its place and stretch: (ways, pieces, combinations) each.
+
+    ``sizes`` (ways, pieces, entries, combinations), ``places`` without the ways, ``stretches`` (pieces, entries).
+    """
+    entry = sizes.argmax(axis=2)
+    piece = np.arange(entry.shape[1])[:, None]
+    return sizes.max(axis=2), places[piece, entry, np.arange(entry.shape[2])], stretches[piece, entry]
+
+
+def _sizes(stress: NDArray[np.float64], highest: NDArray[np.float64] | None) -> NDArray[np.float64]:
+    """Normal stress in every way that a strength may look at it, a row each, from that at top, bottom and centroid.
+
+    ``highest``: the highest and the lowest stress, where more than top and bottom count.
+    """
+    top, bottom, mean = stress
+    high, low = (np.maximum(top, bottom), np.minimum(top, bottom)) if highest is None else highest
+    return np.array([np.maximum(np.abs(high), np.abs(low)), high, -low, mean, -mean])
+
+
+def _looked_at(part: Part) -> list[tuple[str, int]]:
+    """The strengths that a piece has against normal stress, each with its row of ``_sizes``.
+
+    The extreme fibre is set against bending, the mean against tension and compression; where bending is not given, the
+    extreme fibre is judged by tension and compression.
+    """
+    given = part.material.strengths
+    if given.bending is None:
+        return [("tension", PULLED), ("compression", PRESSED)]
+    found = [("bending", EXTREME)]
+    found += [("tension", MEAN_PULLED)] if given.tension is not None else []
+    found += [("compression", MEAN_PRESSED)] if given.compression is not None else []
     return found
 
 
-def _bend_both_ways(body: Body, actions: Actions) -> dict[int, Bent]:
-    """Normal stresses at the corners of every piece where any of them is greatest."""
-    found: dict[int, Bent] = {}
-    for part in body.parts:
-        rows = [(t, corner_stress(actions, part, stretch)) for t, stretch in body.stretches_of(part)]
-        if not rows:
-            continue
-        each = [one for _, one in rows]
-        found[part.index] = Bent(
-            np.concatenate([one.fibres() for one in each], axis=1),
-            np.concatenate([one.moments[0] for one in each]),
-            np.concatenate([one.at for one in each]),
-            np.repeat(np.array([t for t, _ in rows], dtype=np.intp), [len(one.at) for one in each]),
-            np.concatenate([one.range() for one in each], axis=1),
-            tuple((one, entry) for one in each for entry in range(len(one.at))),
-        )
-    return found
+def fibre_demands(part: Part, bent: Bent) -> list[tuple[str, NDArray[np.float64]]]:
+    """What each strength of one piece against normal stress is set against, (entries, combinations) each."""
+    sizes = _sizes(bent.stress, bent.range)
+    return [(word, sizes[k]) for word, k in _looked_at(part)]
 
 
-def _shear_both_ways(body: Body, actions: Actions, twist: Twist | None) -> dict[int, Sheared]:
-    """Shear on level and upright cuts of every piece, with that of torsion."""
-    found = {}
-    for part in body.parts:
-        each = cut_shear(actions, twist, body, part)
-        if each is not None:
-            found[part.index] = Sheared(each.stress, each.causes[..., 0], each.at, each.stretch, both_ways=each)
-    return found
-
-
-def _bend_sliding(body: Body, slide: Slide) -> dict[int, Bent]:
-    """Normal stresses where any fibre of a piece is greatest or least, from its own force and bending."""
-    found: dict[int, Bent] = {}
-    for t, stretch in enumerate(body.stretches):
-        for part in stretch.section.parts:
-            stress, at = fibres(slide, part, stretch).extremes(stretch.start, stretch.end)
-            here = Bent(stress, np.zeros_like(at), at, np.full(len(at), t, dtype=np.intp))
-            found[part.index] = _longer(found[part.index], here) if part.index in found else here
-    return found
-
-
-def _shear_sliding(body: Body, slide: Slide) -> dict[int, Sheared]:
-    """Largest shear stress on a horizontal cut through every piece, by what the forces above it change by."""
-    rows: dict[int, list[tuple[SlidingShear, int, int]]] = {}
-    for t, stretch in enumerate(body.stretches):
-        found = sliding_shear(slide, stretch)
-        for position, part in enumerate(stretch.section.parts):
-            rows.setdefault(part.index, []).append((found, position, t))
-    return {
-        index: Sheared(
-            np.array([cut.stress[i] for cut, i, _ in each]),
-            np.zeros((len(each), each[0][0].stress.shape[1])),
-            np.array([cut.at[i] for cut, i, _ in each]),
-            tuple(t for _, _, t in each),
-            tuple((cut, i) for cut, i, _ in each),
-        )
-        for index, each in rows.items()
-    }
-
-
-def _bending_claims(check: PieceCheck, bent: Bent, judge: Judge) -> Iterator[Claim]:
-    part = check.part
-    for word, demand in check.demands:
-        entry = demand.argmax(axis=0)
-        columns = np.arange(demand.shape[1])
-        worst_of = demand[entry, columns]
-        if worst_of.max() <= 0:  # never in tension, or never in compression: nothing to judge
-            continue
+def _bending_claims(part: Part, asked: Sequence[Asked], judge: Judge) -> Iterator[Claim]:
+    for word, demand, at, stretch in asked:
         strength = piece_strength(part, word, f"{word} in {part.name}", judge)
         if strength is None:
             judge.findings.miss(
@@ -290,39 +210,19 @@ def _bending_claims(check: PieceCheck, bent: Bent, judge: Judge) -> Iterator[Cla
                 "material's record, from its grade or from tests."
             )
             continue
-        yield Claim(strength, "sigma", np.maximum(worst_of, 0.0), bent.at[entry, columns], bent.stretch[entry])
+        yield Claim(strength, "sigma", demand, at, stretch)
 
 
-def fibre_demands(part: Part, bent: Bent) -> list[tuple[str, NDArray[np.float64]]]:
-    """What each strength is set against: the extreme fibre by bending, the mean by tension or compression.
-
-    Where bending is not given, the extreme fibre is judged by tension and compression.
-    """
-    top, bottom, mean = bent.stress
-    high, low = (np.maximum(top, bottom), np.minimum(top, bottom)) if bent.range is None else bent.range
-    given = part.material.strengths
-    if given.bending is None:
-        return [("tension", high), ("compression", -low)]
-    demands = [("bending", np.maximum(np.abs(high), np.abs(low)))]
-    demands += [("tension", mean)] if given.tension is not None else []
-    demands += [("compression", -mean)] if given.compression is not None else []
-    return demands
-
-
-def _shear_claim(part: Part, sheared: Sheared, judge: Judge) -> Iterator[Claim]:
-    word = "rolling_shear" if part.body_rolls else "shear"
-    spoken = word.replace("_", " ")
-    strength = piece_strength(part, word, f"{spoken} in {part.name}", judge)
+def _shear_claim(part: Part, asked: Asked, judge: Judge) -> Iterator[Claim]:
+    spoken = asked.word.replace("_", " ")
+    strength = piece_strength(part, asked.word, f"{spoken} in {part.name}", judge)
     if strength is None:
         judge.findings.miss(
             f"{spoken} strength of {part.spec.material!r} (piece {part.name}): the material's record, from its grade "
             "or from tests."
         )
         return
-    entry = sheared.stress.argmax(axis=0)
-    columns = np.arange(sheared.stress.shape[1])
-    stretches = np.array(sheared.stretch, dtype=np.intp)[entry]
-    yield Claim(strength, "tau", sheared.stress[entry, columns], sheared.at[entry, columns], stretches)
+    yield Claim(strength, "tau", asked.demand, asked.at, asked.stretch)
 
 
 def piece_strength(part: Part, word: str, what: str, judge: Judge) -> Strength | None:
@@ -396,7 +296,7 @@ def _write_stress(
         {
             "E": (part.material.E, "MPa"),
             "M": (float(bent.moment[entry, row]), "N*mm"),
-            "u": (_heights(part, stretch)[FIBRES.index(fibre)], "mm"),
+            "u": (heights(part, stretch)[FIBRES.index(fibre)], "mm"),
             "u_0": (float(whole.neutral_axis[1]), "mm"),
             "EI": (whole.EI, "N*mm2"),
         },

@@ -16,7 +16,8 @@ import numpy as np
 
 from server.checks.crosssection import Body, CrossSection, Part, Site, lines_of
 from server.checks.joints import JointCheck
-from server.checks.pieces import Bent, PieceCheck, fibre_demands, piece_strength
+from server.checks.piece_stresses import Bent
+from server.checks.pieces import PieceCheck, fibre_demands, piece_strength
 from server.checks.resistance import Claim, Judge
 from server.checks.rules import Origin, Printed
 from server.checks.wide_bonds import extent

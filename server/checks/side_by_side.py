@@ -19,7 +19,8 @@ from server import documents
 from server.checks.crosssection import Body, Part, Stretch
 from server.checks.fastened import fastener_of, resistances
 from server.checks.joints import JointCheck
-from server.checks.pieces import Bent, PieceCheck, fibre_demands, piece_strength
+from server.checks.piece_stresses import Bent
+from server.checks.pieces import PieceCheck, fibre_demands, piece_strength
 from server.checks.resistance import Claim, Judge, Strength
 from server.checks.rules import ULTIMATE_SLIP, Origin, chosen
 from server.checks.schedule import set_out
