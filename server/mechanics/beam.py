@@ -15,7 +15,7 @@ import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
 from server.errors import InputError
-from server.mechanics.beam_loads import Grid, lay_out, restiffened
+from server.mechanics.beam_loads import Grid, lay_out
 from server.mechanics.beam_model import Beam, Couple, LineLoad, Load, PointLoad, Stretch, Support, span_ends
 from server.mechanics.beam_stability import require_stable
 from server.mechanics.beam_system import FIXED, Sweep, assemble, solve_system, sweep
@@ -164,12 +164,11 @@ def solve(beam: Beam, cases: Sequence[Sequence[Load]]) -> Response:
     >>> round(float(found.max[0])), round(float(found.at_max[0]))
     (10000000, 2000)
     """
-    require_stable(beam)
-    return _solved(lay_out(beam, cases))
+    return solve_alike([beam], cases)[0]
 
 
 def solve_alike(beams: Sequence[Beam], cases: Sequence[Sequence[Load]]) -> list[Response]:
-    """Solve members that differ in the stiffness of their stretches only; they are cut and loaded once.
+    """Solve members that differ in the stiffness of their stretches only, all at once.
 
     Parameters
     ----------
@@ -193,39 +192,37 @@ def solve_alike(beams: Sequence[Beam], cases: Sequence[Sequence[Load]]) -> list[
     .. [1] S. P. Timoshenko, "Strength of Materials", part I, 3rd ed. (1955), chapters 5 to 8.
     """
     require_stable(beams[0])
-    grid = lay_out(beams[0], cases)
-    return [_solved(grid), *(_solved(restiffened(grid, beam) or lay_out(beam, cases)) for beam in beams[1:])]
-
-
-def _solved(grid: Grid) -> Response:
+    grid = lay_out(beams, cases)
     swept = sweep(grid)
     A, rhs, scale = assemble(grid, swept)
-    states = solve_system(A, rhs).reshape(len(grid.key), 4, grid.load.shape[1]) * scale[:, None]
+    states = solve_system(A, rhs).reshape(len(beams), len(grid.key), 4, len(cases)) * scale[:, None, :, None]
     return _curves(grid, swept, states)
 
 
-def _curves(grid: Grid, swept: Sweep, states: Array) -> Response:
-    """Return the polynomials and reactions from the states just right of the key places, (K, 4, c): y, psi, M, V."""
-    _, cases, m = grid.load.shape
-    start, end = swept.start, swept.end
-    own = np.repeat(np.arange(len(grid.first)), np.subtract(grid.stop, grid.first))
-    y, psi, M, V = states[own].transpose(1, 2, 0)  # each (c, m): just right of the key place before the interval
-    unit_M, unit_V = start[:, cases], start[:, cases + 1]
+def _curves(grid: Grid, swept: Sweep, states: Array) -> list[Response]:
+    """Return polynomials and reactions from the states just right of the key places, (k, K, 4, c): y, psi, M, V."""
+    cases = grid.load.shape[1]
+    start, end = swept.start[:, :, :cases], swept.end[:, :, :cases]
+    unit_M, unit_V = swept.start[:, :, cases, None], swept.start[:, :, cases + 1, None]  # (4, k, 1, m)
     along = unit_V[1]  # distance from the key place
-    V0, M0, psi0, y0 = start[:, :cases] + V * unit_V[:, None] + M * unit_M[:, None]
+    own = np.repeat(np.arange(len(grid.first)), np.subtract(grid.stop, grid.first))
+    y, psi, M, V = states[:, own].transpose(2, 0, 3, 1)  # each (k, c, m): just right of the key place before
+    V0, M0, psi0, y0 = start + V * unit_V + M * unit_M
     psi0 += psi
     y0 += y + psi * along
     a, b = grid.load
-    shear, moment, deflection = np.empty((cases, m, 3)), np.empty((cases, m, 4)), np.empty((cases, m, 6))
+    shape = V0.shape
+    shear, moment, deflection = np.empty((*shape, 3)), np.empty((*shape, 4)), np.empty((*shape, 6))
     shear[..., 0], shear[..., 1], shear[..., 2] = V0, -a, b / -2
     moment[..., 0] = M0
     np.divide(shear, _1_2_3, out=moment[..., 1:])
     deflection[..., 0], deflection[..., 1] = y0, psi0
-    np.multiply(moment, grid.bending[:, None] / _TWICE, out=deflection[..., 2:])
-    deflection[..., 1:4] += moment[..., 1:] * grid.shear[:, None]
-    y, psi, M, V = states.transpose(1, 2, 0)  # each (c, K)
+    np.multiply(moment, grid.bending[:, None, :, None] / _TWICE, out=deflection[..., 2:])
+    deflection[..., 1:4] += moment[..., 1:] * grid.shear[:, None, :, None]
+    _, _, M, V = states.transpose(2, 0, 3, 1)  # each (k, c, K)
     jump_V, jump_M = grid.force[:, grid.key] + V, -grid.couple[:, grid.key] - M
-    jump_V[:, 1:] -= V[:, :-1] + end[0, :cases]
-    jump_M[:, 1:] += M[:, :-1] + V[:, :-1] * end[1, cases + 1] + end[1, :cases]
+    jump_V[..., 1:] -= V[..., :-1] + end[0]
+    jump_M[..., 1:] += M[..., :-1] + V[..., :-1] * swept.end[1, :, cases + 1, None] + end[1]
     at = grid.support
-    return Response(grid.breaks, shear, moment, deflection, jump_V[:, at], jump_M[:, at] * (grid.kind[at] == FIXED))
+    forces, couples = jump_V[..., at], jump_M[..., at] * (grid.kind[at] == FIXED)
+    return [Response(grid.breaks, *each) for each in zip(shear, moment, deflection, forces, couples, strict=True)]

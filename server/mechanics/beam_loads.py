@@ -7,7 +7,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Sequence
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 from itertools import pairwise
 
 import numpy as np
@@ -32,7 +32,7 @@ class Grid:
     breaks, width : numpy.ndarray
         Places (m + 1,) and lengths (m,) of the intervals [mm].
     bending, shear : numpy.ndarray
-        1/EI [1/(N*mm2)] and 1/GA [1/N] of each interval.
+        1/EI [1/(N*mm2)] and 1/GA [1/N] of each interval, one row for each of k sets of stiffnesses, shape (k, m).
     load : numpy.ndarray
         Line load at each interval's start [N/mm] and its slope [N/mm2], shape (2, c, m).
     force, couple : numpy.ndarray
@@ -45,8 +45,6 @@ class Grid:
         Number of the key place of each support, in the member's order [-].
     first, stop : list of int
         Intervals from one key place to the next [-].
-    bounds : list of int
-        Breaks where the member's stretches start, and the last break [-].
     """
 
     breaks: Array
@@ -62,7 +60,6 @@ class Grid:
     support: Indices
     first: list[int]
     stop: list[int]
-    bounds: list[int]
 
 
 @dataclass(frozen=True)
@@ -123,13 +120,13 @@ def _check_loads(beam: Beam, cases: Sequence[Sequence[Load]]) -> None:
             _check_load(beam, f"cases[{number}][{position}]", load)
 
 
-def lay_out(beam: Beam, cases: Sequence[Sequence[Load]]) -> Grid:
+def lay_out(beams: Sequence[Beam], cases: Sequence[Sequence[Load]]) -> Grid:
     """Cut the member at supports, hinges, stretch ends and loads, and lay the loads on the intervals.
 
     Parameters
     ----------
-    beam : Beam
-        The member [mm, N].
+    beams : sequence of Beam
+        The same member with each of the k sets of stiffnesses of its stretches [mm, N].
     cases : sequence of sequence of Load
         Loads of each case [N, N/mm, N*mm, mm].
 
@@ -148,6 +145,7 @@ def lay_out(beam: Beam, cases: Sequence[Sequence[Load]]) -> Grid:
     ----------
     .. [1] None needed: bookkeeping.
     """
+    beam = beams[0]
     loads = _gather(cases)
     if not loads.usable():
         _check_loads(beam, cases)
@@ -166,13 +164,13 @@ def lay_out(beam: Beam, cases: Sequence[Sequence[Load]]) -> Grid:
         _check_loads(beam, cases)
     m = len(breaks) - 1
     bounds = [*(number[stretch.start] for stretch in beam.stretches), m]
-    flexibility = _flexibility(beam, bounds)
+    flexibility = _flexibility(beams, bounds)
     force, couple = np.zeros((2, len(cases), m + 1))
     for target, rows in ((force, loads.points), (couple, loads.couples)):
         for case, at, value in rows:
             target[case, number[at]] += value
     supports = [number[support.at] for support in beam.supports]
-    key = sorted({0, m, *supports, *hinges, *_steep_changes(beam, bounds)})
+    key = sorted({0, m, *supports, *hinges, *_steep_changes(beams, bounds)})
     position = {place: order for order, place in enumerate(key)}
     kind, springs = _what_holds(beam, [position[at] for at in supports], [position[at] for at in hinges], len(key))
     return Grid(
@@ -189,42 +187,15 @@ def lay_out(beam: Beam, cases: Sequence[Sequence[Load]]) -> Grid:
         support=np.array([position[at] for at in supports]),
         first=key[:-1],
         stop=key[1:],
-        bounds=bounds,
     )
 
 
-def restiffened(grid: Grid, beam: Beam) -> Grid | None:
-    """The grid of a member that differs from the one laid out in the stiffness of its stretches only.
-
-    Parameters
-    ----------
-    grid : Grid
-        The member laid out, with its loads.
-    beam : Beam
-        The same member with other stiffnesses [N*mm2, N].
-
-    Returns
-    -------
-    Grid or None
-        The same cuts and loads with the other flexibilities; None where the stiffness jumps so much that the state
-        there needs an unknown of its own, and the member must be laid out anew.
-
-    References
-    ----------
-    .. [1] None needed: bookkeeping.
-    """
-    if not set(_steep_changes(beam, grid.bounds)) <= set(grid.key.tolist()):
-        return None
-    bending, shear = _flexibility(beam, grid.bounds)
-    return replace(grid, bending=bending, shear=shear)
-
-
-def _flexibility(beam: Beam, bounds: list[int]) -> Array:
-    """Return 1/EI and 1/GA of every interval, (2, m)."""
+def _flexibility(beams: Sequence[Beam], bounds: list[int]) -> Array:
+    """Return 1/EI and 1/GA of every interval for each set of stiffnesses, (2, k, m)."""
     return np.repeat(
-        np.array([[1 / s.EI for s in beam.stretches], [1 / s.GA for s in beam.stretches]]),
+        np.array([[[1 / s.EI for s in b.stretches] for b in beams], [[1 / s.GA for s in b.stretches] for b in beams]]),
         [right - left for left, right in pairwise(bounds)],
-        axis=1,
+        axis=2,
     )
 
 
@@ -259,13 +230,14 @@ def _spread(
     return np.array([np.bincount(place, part, cases * m) for part in (values, row[3])]).reshape(2, cases, m)
 
 
-def _steep_changes(beam: Beam, bounds: list[int]) -> list[int]:
-    """Return the breaks where the stiffness changes so much that the state there is an unknown of its own.
+def _steep_changes(beams: Sequence[Beam], bounds: list[int]) -> list[int]:
+    """Return the breaks where a stiffness changes so much that the state there is an unknown of its own.
 
     A very soft stretch acts nearly as a hinge; its small moment would drown in the rounding of the large ones.
     """
     return [
         place
+        for beam in beams
         for place, (left, right) in zip(bounds[1:], pairwise(beam.stretches), strict=False)
         if not 1 / STEEP < left.EI / right.EI < STEEP
     ]

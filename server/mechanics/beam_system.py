@@ -20,6 +20,7 @@ from server.mechanics.beam_loads import Grid
 Array = NDArray[np.float64]
 BANDED_FROM = 48  # unknowns from which a banded solution pays for its import
 BAND = 5
+_FACTORIALS = np.arange(1.0, 6.0)[:, None]
 
 # What holds at a key place: factors on the state just left of it and just right of it, rows y, psi, M, V.
 _FREE, _PIN, FIXED, _SPRING, HINGE, _HINGED_PIN, _HINGED_SPRING = range(7)
@@ -44,10 +45,10 @@ class Sweep:
     Parameters
     ----------
     start : numpy.ndarray
-        V, M, psi, y just right of each break, counted from the key place before it, shape (4, c + 2, m)
-        [N, N*mm, -, mm]; row c belongs to M = 1 at the key place, row c + 1 to V = 1.
+        V, M, psi, y just right of each break, counted from the key place before it, for each of k sets of stiffnesses,
+        shape (4, k, c + 2, m) [N, N*mm, -, mm]; row c belongs to M = 1 at the key place, row c + 1 to V = 1.
     end : numpy.ndarray
-        The same just left of the next key place, shape (4, c + 2, parts).
+        The same just left of the next key place, shape (4, k, c + 2, parts).
     """
 
     start: Array
@@ -60,7 +61,7 @@ def sweep(grid: Grid) -> Sweep:
     Parameters
     ----------
     grid : Grid
-        Breaks, stiffness and loads [N, mm].
+        Breaks, stiffnesses and loads [N, mm].
 
     Returns
     -------
@@ -75,103 +76,101 @@ def sweep(grid: Grid) -> Sweep:
     ----------
     .. [1] S. P. Timoshenko, "Strength of Materials", part I, 3rd ed. (1955), articles 32 and 39.
     """
-    d, f, g = grid.width, grid.bending, grid.shear
+    f, g = grid.bending[:, None], grid.shear[:, None]  # (k, 1, m)
     _, cases, m = grid.load.shape
-    d2 = d * d / 2
-    d3 = d2 * d / 3
-    d4 = d3 * d / 4
-    d5 = d4 * d / 5
-    start, change = np.zeros((4, cases + 2, m)), np.zeros((4, cases + 2, m))
-    V, M, psi, _ = start
+    start, change = np.zeros((2, 4, len(f), cases + 2, m))
+    V, M, psi, y = start
     dV, dM, dpsi, dy = change
-    ends = list(zip(grid.first, grid.stop, strict=True))
+    parts = [(low, high) for low, high in zip(grid.first, grid.stop, strict=True) if high - low > 1]
 
     def add_up(level: Array, steps: Array) -> None:
-        for low, high in ends:
-            if high - low > 1:
-                steps[:, low : high - 1].cumsum(1, out=level[:, low + 1 : high])
+        for low, high in parts:
+            steps[..., low : high - 1].cumsum(-1, out=level[..., low + 1 : high])
 
-    # Integrals of the line load alone over each interval, one for each of V, M, psi, y.
-    spread = (grid.load[0] * np.array([d, d2, d3, d4])[:, None]) + (grid.load[1] * np.array([d2, d3, d4, d5])[:, None])
-    dV[:cases] = -spread[0]
+    powers = np.multiply.accumulate(grid.width / _FACTORIALS)  # d, d^2/2, d^3/6, ...
+    d, d2, d3 = powers[:3]
+    # Integrals of the line load alone over each interval, one for each of V, M, psi, y: (4, c, m).
+    spread = grid.load[0] * powers[:4, None] + grid.load[1] * powers[1:, None]
+    dV[:, :cases] = -spread[0]
     steps = dV.copy()
-    steps[:cases, :-1] -= grid.force[:, 1:-1]
+    steps[:, :cases, :-1] -= grid.force[:, 1:-1]
     add_up(V, steps)
-    V[-1] += 1
+    V[:, -1] += 1
     np.multiply(V, d, out=dM)
-    dM[:cases] -= spread[1]
+    dM[:, :cases] -= spread[1]
     steps = dM.copy()
-    steps[:cases, :-1] -= grid.couple[:, 1:-1]
+    steps[:, :cases, :-1] -= grid.couple[:, 1:-1]
     add_up(M, steps)
-    M[-2] += 1
+    M[:, -2] += 1
     np.multiply(M, -d, out=dpsi)
     dpsi -= V * d2
-    dpsi[:cases] += spread[2]
+    dpsi[:, :cases] += spread[2]
     dpsi *= f
     add_up(psi, dpsi)
     np.multiply(M, -d2, out=dy)
     dy -= V * d3
-    dy[:cases] += spread[3]
+    dy[:, :cases] += spread[3]
     dy *= f
     dy += psi * d
     dy += dM * g
-    add_up(start[3], dy)
-    last = np.subtract(grid.stop, 1)
-    return Sweep(start, start[:, :, last] + change[:, :, last])
+    add_up(y, dy)
+    return Sweep(start, (start + change)[..., np.subtract(grid.stop, 1)])
 
 
 def assemble(grid: Grid, swept: Sweep) -> tuple[Array, Array, Array]:
-    """Return the matrix, the right-hand sides and the scale of the unknowns.
+    """Return the matrices, the right-hand sides and the scales of the unknowns, for each of k sets of stiffnesses.
 
     Parameters
     ----------
     grid : Grid
-        Breaks, stiffness, supports and loads [N, mm].
+        Breaks, stiffnesses, supports and loads [N, mm].
     swept : Sweep
         Running integrals of the loads.
 
     Returns
     -------
     tuple of numpy.ndarray
-        Matrix (4 K, 4 K), right-hand sides (4 K, c), and the units of y, psi, M, V per newton.
+        Matrices (k, 4 K, 4 K), right-hand sides (k, 4 K, c), and the units of y, psi, M, V per newton, (k, 4).
 
     References
     ----------
     .. [1] S. P. Timoshenko, "Strength of Materials", part II, 3rd ed. (1956), chapter 1 (initial parameters).
     """
-    K, cases = len(grid.key), grid.load.shape[1]
+    K, cases, sets = len(grid.key), grid.load.shape[1], len(grid.bending)
     length = float(grid.breaks[-1])
     reach = length / (K - 1)
-    softness = float(grid.bending @ grid.width) / length
-    scale = np.array([reach**3 * softness, reach**2 * softness, reach, 1.0])
-    end = swept.end[::-1].transpose(2, 0, 1) / scale[:, None]  # (parts, y psi M V, rows)
-    T = np.zeros((K - 1, 4, 4))
-    T[:, :, 2:] = end[:, :, cases:] * scale[2:]
-    T[:, 0, 0] = T[:, 1, 1] = 1
-    T[:, 0, 1] = T[:, 2, 3]  # the length of the part
-    right, left = AFTER[grid.kind], BEFORE[grid.kind]
-    loads = np.zeros((K, 4, cases))
-    loads[:, 2] = grid.couple[:, grid.key].T / -scale[2]
-    loads[:, 3] = -grid.force[:, grid.key].T
+    scale = np.empty((sets, 4))
+    scale[:, :2] = (grid.bending @ grid.width / length)[:, None] * (reach**3, reach**2)
+    scale[:, 2:] = reach, 1.0
+    end = swept.end[::-1].transpose(1, 3, 0, 2) / scale[:, None, :, None]  # (k, parts, y psi M V, rows)
+    T = np.zeros((sets, K - 1, 4, 4))
+    T[..., 2:] = end[..., cases:] * (reach, 1.0)
+    T[..., 0, 0] = T[..., 1, 1] = 1
+    T[..., 0, 1] = T[..., 2, 3]  # the length of the part
+    left, right = BEFORE[grid.kind[1:]], np.empty((sets, K, 4, 4))
+    right[:] = AFTER[grid.kind]
+    loads = np.zeros((sets, K, 4, cases))
+    loads[:, :, 2] = grid.couple[:, grid.key].T / -reach
+    loads[:, :, 3] = -grid.force[:, grid.key].T
     loads *= LOADED[grid.kind]
-    carried = left[1:] @ T
-    loads[1:] -= left[1:] @ end[:, :, :cases]
+    carried = left @ T
+    loads[:, 1:] -= left @ end[..., :cases]
     for place, stiffness in grid.springs:  # V jumps by k y; divided so that neither a soft nor a stiff spring swamps
-        k = stiffness * scale[0]
-        right[place, 3, 0] = -k
-        right[place, 3] /= 1 + k
-        loads[place, 3] /= 1 + k
+        k = stiffness * scale[:, :1]
+        right[:, place, 3, :1] = -k
+        right[:, place, 3] /= 1 + k
+        loads[:, place, 3] /= 1 + k
         if place:
-            carried[place - 1, 3] /= 1 + k
-    A = np.zeros((4 * K, 4 * K))
-    A[:2, :4] = right[0, 2:]
+            carried[:, place - 1, 3] /= 1 + k
+    A = np.zeros((sets, 4 * K, 4 * K))
+    A[:, :2, :4] = right[:, 0, 2:]
     for n in range(1, K):
-        A[4 * n - 2 : 4 * n + 2, 4 * n - 4 : 4 * n] = carried[n - 1]
-        A[4 * n - 2 : 4 * n + 2, 4 * n : 4 * n + 4] = right[n]
-    A[-2, -2] = A[-1, -1] = 1  # no moment and no shear beyond the right end
-    rhs = np.zeros((4 * K, cases))
-    rhs[:-2] = loads.reshape(4 * K, cases)[2:]
-    rows = np.abs(A).max(1)[:, None]
+        A[:, 4 * n - 2 : 4 * n + 2, 4 * n - 4 : 4 * n] = carried[:, n - 1]
+        A[:, 4 * n - 2 : 4 * n + 2, 4 * n : 4 * n + 4] = right[:, n]
+    A[:, -2, -2] = A[:, -1, -1] = 1  # no moment and no shear beyond the right end
+    rhs = np.zeros((sets, 4 * K, cases))
+    rhs[:, :-2] = loads.reshape(sets, 4 * K, cases)[:, 2:]
+    rows = np.abs(A).max(-1)[..., None]
     A /= rows
     rhs /= rows
     return A, rhs, scale
@@ -183,16 +182,16 @@ def solve_system(A: Array, rhs: Array, *, banded: bool = True) -> Array:
     Parameters
     ----------
     A : numpy.ndarray
-        Matrix, entries only within 5 places of the diagonal where it is ``banded`` [-].
+        Matrices, shape (..., n, n), entries only within 5 places of the diagonal where they are ``banded`` [-].
     rhs : numpy.ndarray
-        Right-hand sides, one a column [N].
+        Right-hand sides, one a column, shape (..., n, c) [N].
     banded : bool
         Whether a large system may be solved by its band [-].
 
     Returns
     -------
     numpy.ndarray
-        Solution, one column a right-hand side [N].
+        Solution, one column a right-hand side, shape (..., n, c) [N].
 
     Raises
     ------
@@ -210,11 +209,11 @@ def solve_system(A: Array, rhs: Array, *, banded: bool = True) -> Array:
        Math. Comp. 35 (1980), 817-832.
     """
     try:
-        if not banded or len(A) < BANDED_FROM:
+        if not banded or A.shape[-1] < BANDED_FROM:
             x = np.linalg.solve(A, rhs)
             x += np.linalg.solve(A, rhs - A @ x)
         else:
-            x = _solve_banded(A, rhs)
+            x = np.stack([_solve_banded(*each) for each in zip(A, rhs, strict=True)])
     except np.linalg.LinAlgError:
         x = np.full_like(rhs, np.nan)
     if not np.isfinite(x).all():

@@ -81,11 +81,14 @@ def shear_flexibility(bending: Array, energy: Array) -> Array:
 
 @dataclass(frozen=True, eq=False)
 class _System:
-    """What has been laid out: ``swept[i][j]`` what plane i does under loads, moment and shear of plane j."""
+    """What has been laid out: set ``i + j`` of ``swept`` is what plane i does under loads, moment and shear of plane j.
+
+    The couplings of the two planes are alike, so three sets do: down by down, one by the other, right by right.
+    """
 
     grid: Grid
     cases: int
-    swept: tuple[tuple[Sweep, Sweep], tuple[Sweep, Sweep]]
+    swept: Sweep
     kinds: tuple[Indices, Indices]
     bending: Array
     shear: Array
@@ -130,14 +133,15 @@ def solve_two_planes(
        a plane of symmetry; from memory.
     """
     require_stable(beam)
-    grid = lay_out(beam, [*down, *right])
+    grid = lay_out([beam], [*down, *right])
     middles = (grid.breaks[1:] + grid.breaks[:-1]) / 2
     ends = np.array([stretch.end for stretch in beam.stretches])
     own = np.minimum(np.searchsorted(ends, middles), len(ends) - 1)
     f, g = bending[own], shear[own]
-    vv, vl, ll = (sweep(replace(grid, bending=f[:, i, j], shear=g[:, i, j])) for i, j in ((0, 0), (0, 1), (1, 1)))
+    coupled = ((0, 0, 1), (0, 1, 1))
+    swept = sweep(replace(grid, bending=f[:, *coupled].T, shear=g[:, *coupled].T))
     sideways = np.array([_RIGID.get(int(kind), int(kind)) for kind in grid.kind], dtype=np.intp)
-    system = _System(grid, len(down), ((vv, vl), (vl, ll)), (grid.kind, sideways), f, g)
+    system = _System(grid, len(down), swept, (grid.kind, sideways), f, g)
     states = _states(system)
     return _curves(system, states, 0), _curves(system, states, 1)
 
@@ -153,7 +157,7 @@ def _states(system: _System) -> Array:
     for i in (0, 1):
         T[:, i, 0, i, 0] = T[:, i, 1, i, 1] = 1
         for j in (0, 1):
-            end = system.swept[i][j].end[::-1].transpose(2, 0, 1) / scale[:, None]
+            end = system.swept.end[::-1, i + j].transpose(2, 0, 1) / scale[:, None]
             rows = slice(0, 4) if i == j else slice(0, 2)
             T[:, i, rows, j, 2:] = end[:, rows, 2 * c :] * scale[2:]
             carried[:, i, rows] += end[:, rows, j * c : (j + 1) * c]
@@ -201,17 +205,17 @@ def _curves(system: _System, states: Array, i: int) -> Response:
     here = states[own].transpose(1, 2, 3, 0)  # plane, y psi M V, case, interval
     moments, shears = [], []
     for j in (0, 1):
-        start, mine = system.swept[j][j].start, slice(j * c, (j + 1) * c)
+        start, mine = system.swept.start[:, 2 * j], slice(j * c, (j + 1) * c)
         V = start[0, mine] + here[j, 3] * start[0, -1]
         moments.append(start[1, mine] + here[j, 3] * start[1, -1] + here[j, 2] * start[1, -2])
         shears.append(np.stack((V, -grid.load[0, mine], grid.load[1, mine] / -2), axis=-1))
     moments = [np.concatenate((M[..., None], V / _DIVISOR), axis=-1) for M, V in zip(moments, shears, strict=True)]
-    along = system.swept[i][i].start[1, -1]  # distance from the key place
+    along = system.swept.start[1, 0, -1]  # distance from the key place
     deflection = np.zeros((*moments[i].shape[:2], 6))
     deflection[..., 0] = here[i, 0] + here[i, 1] * along
     deflection[..., 1] = here[i, 1]
     for j in (0, 1):
-        start, mine = system.swept[i][j].start, slice(j * c, (j + 1) * c)
+        start, mine = system.swept.start[:, i + j], slice(j * c, (j + 1) * c)
         turned = start[2:, mine] + here[j, 3] * start[2:, None, -1] + here[j, 2] * start[2:, None, -2]
         deflection[..., 0] += turned[1]
         deflection[..., 1] += turned[0]
@@ -223,7 +227,7 @@ def _curves(system: _System, states: Array, i: int) -> Response:
 def _reactions(system: _System, states: Array, i: int) -> tuple[Array, Array]:
     """Forces and couples at the supports: what the moments and shears jump by, less the loads there."""
     grid, c = system.grid, system.cases
-    end, mine = system.swept[i][i].end, slice(i * c, (i + 1) * c)
+    end, mine = system.swept.end[:, 2 * i], slice(i * c, (i + 1) * c)
     _, _, M, V = states.transpose(1, 2, 0)  # each (c, K)
     force, couple = grid.force[mine][:, grid.key] + V, -grid.couple[mine][:, grid.key] - M
     force[:, 1:] -= V[:, :-1] + end[0, mine]

@@ -192,7 +192,7 @@ def solve_slip(member: LayeredMember, cases: Sequence[Sequence[Load]]) -> SlipRe
     """
     outline = member.outline()
     require_stable(outline)
-    grid = lay_out(outline, cases)
+    grid = lay_out([outline], cases)
     tree = plant(member)
     stacks = stack(member, tree, grid.breaks)
     chain = link(grid, stacks)

@@ -109,7 +109,7 @@ def link(grid: Grid, stacks: Stacks) -> Chain:
         force=wide[0],
         couple=wide[1],
         spring=springs,
-        softness=grid.shear,
+        softness=grid.shear[0],
         support=moved[grid.key[grid.support]],
         waves=waves,
         ends=waves.ends(),

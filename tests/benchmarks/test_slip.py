@@ -40,7 +40,7 @@ def wide_member(zones: int) -> tuple[LayeredMember, list[list[Load]]]:
 
 
 def equations(member: LayeredMember, cases: list[list[Load]]) -> System:
-    grid = lay_out(member.outline(), cases)
+    grid = lay_out([member.outline()], cases)
     tree = plant(member)
     stacks = stack(member, tree, grid.breaks)
     return assemble(member, tree, stacks, link(grid, stacks))
