@@ -5,6 +5,7 @@ from __future__ import annotations
 import argparse
 import io
 import json
+import os
 import socket
 import sys
 from collections.abc import Mapping, Sequence
@@ -44,6 +45,9 @@ def main(arguments: Sequence[str] | None = None) -> int:
         print(f"bondwright: {error}", file=sys.stderr)
         return WRONG
     except KeyboardInterrupt:
+        return NOT_PASSED
+    except BrokenPipeError:  # whoever reads the answer has seen enough
+        os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
         return NOT_PASSED
 
 
@@ -304,7 +308,7 @@ def _check(options: argparse.Namespace) -> int:
     if options.pdf is not None:
         _write_pdf(options.pdf, document, result)
     if options.json:
-        print(json.dumps(result, ensure_ascii=False, allow_nan=False))
+        print(json.dumps(result, ensure_ascii=False, allow_nan=False), flush=True)
     else:
         from server import sheets
 

@@ -58,6 +58,16 @@ def demo() -> dict[str, Any]:
     return found
 
 
+def test_a_reader_that_has_seen_enough_gets_no_traceback() -> None:
+    command = [sys.executable, "-m", "server", "check", str(DEMOS / "pass.json"), "--json"]
+    with subprocess.Popen(command, stdout=subprocess.PIPE, stderr=subprocess.PIPE, cwd=ROOT) as run:
+        assert run.stdout is not None
+        assert run.stderr is not None
+        run.stdout.read(10)
+        run.stdout.close()
+        assert run.stderr.read() == b""
+
+
 class TestDemoDocuments:
     @pytest.mark.parametrize("name", STATUS)
     def test_they_end_with_0_1_1_2(self, tmp_path: Path, name: str) -> None:

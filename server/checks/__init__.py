@@ -29,6 +29,20 @@ def run(document: documents.Document, *, working: bool = True, look: Look | None
                 for path in unresolved
             ]
         )
+    try:
+        return _run(document, working, look)
+    except ArithmeticError as error:  # sizes, moduli or loads so far apart that no number holds what comes of them
+        raise DocumentError(
+            [
+                Fault(
+                    "",
+                    "the numbers lie too far apart to be reckoned with; check them and their units.",
+                )
+            ]
+        ) from error
+
+
+def _run(document: documents.Document, working: bool, look: Look | None) -> dict[str, object]:
     if isinstance(document, documents.MemberDocument):
         return member.run(document, working=working, look=look)
     if isinstance(document, documents.CouponsDocument):

@@ -101,6 +101,8 @@ def _round(
     if sliding is not None:
         annex_b = write_annex_b(document, sliding, actions, book, "EN 1995-1-1 Annex B, for comparison")
     upper = sliding is None and _upper_stiffness(document, body, findings)
+    if rigid.shear is None and (body.sites or any(part.material.strengths.any() for part in body.parts)):
+        findings.miss("strength: no combination is for strength, so no joint or piece is judged; add one.")
     _name_what_is_to_come(document, findings)
     sideways.name_what_is_left_out(document, body, findings)
     for section in body.sections:

@@ -247,7 +247,7 @@ def _of_reactions(question: Question, k: int) -> Iterator[Row]:
                 yield Row(
                     k,
                     tuple(
-                        placing(mover.train, run[sense], support, influence)
+                        placing(mover.train, run[sense], support, influence, exact=True)
                         for mover, run in zip(movers, runs, strict=True)
                     ),
                 )

@@ -68,8 +68,9 @@ def claim_pieces(
     and no limit is judged on them. ``slide``: the stresses are those of the member whose joints slide; ``fall_back``:
     judged with the factor for what stands with the glue gone; ``twist``: torsion adds to their shear.
     """
-    bent = bend(body, scan, judge.actions, slide)
-    sheared = shear(body, scan, judge.actions, slide, twist)
+    for_strength = judge.actions.moment is not None
+    bent = bend(body, scan, judge.actions, slide) if for_strength else {}
+    sheared = shear(body, scan, judge.actions, slide, twist) if for_strength else {}
     judge = judge.with_divisor(judge.document.basis.fall_back()) if fall_back else judge
     found = [
         PieceCheck(part, _blank(part), bent.get(part.index), sheared.get(part.index), slide=slide)

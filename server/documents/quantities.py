@@ -13,6 +13,9 @@ from pydantic_core import CoreSchema, core_schema
 from server import units
 from server.errors import InputError
 
+NEXT_TO_NOTHING = 1e-9
+"""What must be above 0 is at least this, in N, mm, MPa: less is a slip of the pen, and divides beyond all numbers."""
+
 
 @dataclass(frozen=True)
 class Quantity:
@@ -38,6 +41,8 @@ class Quantity:
             raise
         if self.above is not None and not number > self.above:
             raise InputError("", f"{units.given(value)} is not accepted; enter {self.wanted()}.")
+        if self.above == 0 and number < NEXT_TO_NOTHING:
+            raise InputError("", f"{units.given(value)} is next to nothing; enter {self.wanted()}.")
         if (self.least is not None and number < self.least) or (self.most is not None and number > self.most):
             raise InputError("", f"{units.given(value)} is not accepted; enter {self.wanted()}.")
         return number
@@ -78,6 +83,7 @@ def _is(value: object, kind: str) -> bool:
 def _reader(quantity: Quantity) -> Callable[[object], float]:
     """The validator of one quantity: the common case, a plain float inside its bounds, takes one comparison."""
     low = quantity.above if quantity.above is not None else -math.inf
+    low = low if quantity.above != 0 else NEXT_TO_NOTHING
     if quantity.least is not None:
         low = math.nextafter(quantity.least, -math.inf)
     high = math.nextafter(quantity.most, math.inf) if quantity.most is not None else math.inf

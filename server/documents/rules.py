@@ -24,6 +24,7 @@ from server.documents.member import (
 )
 from server.documents.parts import Parts
 from server.errors import Fault
+from server.mechanics.beam_model import SAME_PLACE, SOFTEST, STIFFEST
 
 LOADS_AT_MOST = 1000
 MOVING_AT_MOST = 10
@@ -54,7 +55,7 @@ def _mm(parts: Parts, value: float) -> str:
 
 def _outside(parts: Parts, path: str, place: float | None) -> Iterator[Fault]:
     """A place beyond the right end; places left of 0 were refused when they were read."""
-    if parts.length is not None and place is not None and place > parts.length:
+    if parts.length is not None and place is not None and place > parts.length * (1 + SAME_PLACE):
         shown, length = _mm(parts, place), _mm(parts, parts.length)
         if shown == length:
             shown, length = f"{place!r} mm", f"{parts.length!r} mm"
@@ -197,17 +198,23 @@ def _repeated_joints(parts: Parts) -> Iterator[Fault]:
 
 
 def _supports(parts: Parts) -> Iterator[Fault]:
-    seen: dict[float, int] = {}
+    seen: list[tuple[int, float]] = []
     for index, support in enumerate(parts.supports):
         if support is None:
             continue
         path = f"member.supports[{index}]"
         yield from _outside(parts, f"{path}.at", support.at)
-        before = seen.setdefault(support.at, index)
-        if before != index:
-            yield Fault(f"{path}.at", f"support {before} already stands at {_mm(parts, support.at)}; keep one of them.")
+        for before, at in [pair for pair in seen if _same_place(parts, pair[1], support.at)][:1]:
+            yield Fault(f"{path}.at", f"support {before} already stands at {_mm(parts, at)}; keep one of them.")
+        seen.append((index, support.at))
         if support.kind == "spring" and support.stiffness is None:
             yield Fault(f"{path}.stiffness", "missing; a spring needs its stiffness, such as 900 N/mm or 5.1 kip/in.")
+        if support.kind == "spring" and support.stiffness is not None and not SOFTEST <= support.stiffness <= STIFFEST:
+            yield Fault(
+                f"{path}.stiffness",
+                f"{support.stiffness:g} N/mm is not accepted; enter {SOFTEST:g} to {STIFFEST:g} N/mm, or a pin where "
+                "nothing gives.",
+            )
         if support.kind != "spring" and support.stiffness is not None:
             yield Fault(
                 f"{path}.stiffness",
@@ -215,21 +222,29 @@ def _supports(parts: Parts) -> Iterator[Fault]:
             )
 
 
+def _same_place(parts: Parts, one: float, other: float) -> bool:
+    return abs(one - other) <= SAME_PLACE * (parts.length or 0.0)
+
+
 def _hinges(parts: Parts) -> Iterator[Fault]:
-    supports = {support.at for support in parts.supports if support is not None}
-    seen: set[float] = set()
+    fixed = [support.at for support in parts.supports if support is not None and support.kind == "fixed"]
+    seen: list[float] = []
     for index, hinge in enumerate(parts.hinges):
         if hinge is None:
             continue
         path = f"member.hinges[{index}]"
         yield from _outside(parts, path, hinge)
-        if hinge in (0.0, parts.length):
+        if parts.length is not None and any(_same_place(parts, hinge, end) for end in (0.0, parts.length)):
             yield Fault(path, "the hinge is at an end of the member; an end is free already, so leave it out.")
-        elif hinge in supports:
-            yield Fault(path, f"the hinge is at the support at {_mm(parts, hinge)}; put it beside the support.")
-        if hinge in seen:
+        elif any(_same_place(parts, hinge, at) for at in fixed):
+            yield Fault(
+                path,
+                f"the hinge is at the fixed support at {_mm(parts, hinge)}; make the support a pin, or put the hinge "
+                "beside it.",
+            )
+        if any(_same_place(parts, hinge, at) for at in seen):
             yield Fault(path, f"a hinge already stands at {_mm(parts, hinge)}; keep one of them.")
-        seen.add(hinge)
+        seen.append(hinge)
 
 
 def _loads(parts: Parts) -> Iterator[Fault]:

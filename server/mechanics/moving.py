@@ -17,7 +17,7 @@ from server.mechanics.beam import PointLoad
 from server.mechanics.influence import Influence, Lines, shifted
 
 Array = NDArray[np.float64]
-NUDGE = 1e-6  # share of the length by which a train is moved off a support that would swallow an axle
+NUDGE = 1e-8  # share of the length by which a train is moved off a support that would swallow an axle
 SAME = 1e-9  # share of the length within which two positions are one
 AT_ONCE = 400_000  # numbers in one batch of the search
 
@@ -211,7 +211,15 @@ def _exactly(lines: Lines, knots: Array, train: Train, u: Array) -> tuple[Array,
     return np.concatenate(sides, axis=1), inside
 
 
-def placing(train: Train, found: Travel, index: int, influence: Influence, ends: Sequence[float] = ()) -> Placing:
+def placing(
+    train: Train,
+    found: Travel,
+    index: int,
+    influence: Influence,
+    ends: Sequence[float] = (),
+    *,
+    exact: bool = False,
+) -> Placing:
     """The axles as they stand where one action is extreme.
 
     Parameters
@@ -223,10 +231,12 @@ def placing(train: Train, found: Travel, index: int, influence: Influence, ends:
     index : int
         Which action [-].
     influence : Influence
-        The member; an axle exactly over a support is moved off it by a millionth of the length, to the side on which
-        the extreme lies.
+        The member; an axle exactly over a support is moved off it by a hundred-millionth of the length, to the side
+        on which the extreme lies.
     ends : sequence of float
         Other places that an axle is moved off likewise: the ends of the parts looked at [mm].
+    exact : bool
+        Whether the axles stay where they are: a reaction is greatest with one exactly over its support [-].
 
     Returns
     -------
@@ -242,7 +252,7 @@ def placing(train: Train, found: Travel, index: int, influence: Influence, ends:
     datum, length = float(found.datum[index]), influence.beam.length
     edges = np.append(influence.supports, ends)
     over = np.abs((datum + np.array(offsets))[:, None] - edges) <= 2 * influence.beam.same_place
-    if found.way[index] and over.any():
+    if found.way[index] and over.any() and not exact:
         datum += float(found.way[index]) * NUDGE * length
     carries = found.inside[index]
     places = tuple(float(p) for p in np.clip((datum + np.array(offsets))[carries], 0.0, length))

@@ -152,6 +152,19 @@ def test_every_extreme_is_that_of_the_worst_of_many_positions(spans):
     assert set(reactions["bare"][0]) == {"at", "force", "couple"}
 
 
+def test_an_axle_over_a_support_is_carried_by_it_whole():
+    # by statics: both axles of 10 and 5 kN, 1 m apart, the heavy one over the support of a 3 m span
+    supports = [{"at": 0, "kind": "pin"}, {"at": 3000, "kind": "pin"}]
+    train = [{"kind": "moving", "axles": [[0, 10000], [1000, 5000]]}]
+    document = changed(member={"length": 3000, "supports": supports, "hinges": []}, loads={"cart": train})
+    del document["combinations"]
+    member = run(document)["member"]
+    for support in member["reactions"]["all"]:
+        assert support["max"] == pytest.approx(10000 + 5000 * 2 / 3, rel=1e-9)
+        assert support["min"] == pytest.approx(0, abs=1e-6)
+    assert member["shear"]["max"] == pytest.approx(10000 + 5000 * 2 / 3, rel=1e-7)
+
+
 def test_axles_off_their_stretch_carry_nothing():
     part = CART | {"from": 1500, "to": 3000, "axles": [[0, 3000], [4000, 5000]]}
     document = changed(loads=RAIL["loads"] | {"cart": [part]})

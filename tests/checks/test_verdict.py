@@ -153,6 +153,31 @@ def test_no_combination_for_strength_is_not_proven():
     assert result["member"]["shear"] is None
 
 
+@pytest.mark.parametrize(
+    "changes",
+    [
+        {},
+        {"analysis": {"slip": True}, "adhesives__glue__shear_modulus": 1.0, "adhesives__glue__thickness": 1.0},
+        {"member__held_sideways": False, "loads__live__0__lateral": 0.1},
+    ],
+)
+def test_a_deflection_within_its_limit_does_not_pass_joints_that_nothing_judged(changes):
+    only = {"SLS": {"factors": {"live": 1.0}, "for": "deflection"}}
+    result = run(STACK, combinations=only, member__deflection_limit=20, **changes)
+    assert result["utilisation"] < 1
+    assert result["verdict"] == "not proven"
+    assert any(line.startswith("strength: no combination") for line in result["missing"])
+
+
+def test_a_hinge_over_a_support_parts_two_simple_spans():
+    length = STACK["member"]["length"]
+    supports = [{"at": at, "kind": "pin"} for at in (0, length / 2, length)]
+    result = run(STACK, member__supports=supports, member__hinges=[length / 2])
+    weight = STACK["loads"]["live"][0]["value"]
+    assert result["member"]["moment"]["max"] == pytest.approx(weight * (length / 2) ** 2 / 8)
+    assert result["member"]["moment"]["min"] == pytest.approx(0, abs=1e-3)
+
+
 def test_deflection_over_its_limit_fails_and_governs():
     result = run(STACK, member__deflection_limit=1000)
     (limit,) = result["deflection_limits"]

@@ -67,6 +67,13 @@ JOINT = {"between": ["web L", "bottom"]}
         ),
         (put("member/supports/1/at", "5 m"), "member.supports[1].at", "5.000 mm is beyond the end of the member"),
         (put("member/supports/1/at", 0), "member.supports[1].at", "Support 0 already stands at 0 mm"),
+        (put("member/supports/1/at", 1e-12), "member.supports[1].at", "Support 0 already stands at 0 mm"),
+        (put("materials/deal/E", 1e-200), "materials.deal.E", "1e-200 is next to nothing"),
+        (
+            put("member/supports/1", {"at": 4200, "kind": "spring", "stiffness": 1e-8}),
+            "member.supports[1].stiffness",
+            "1e-08 N/mm is not accepted",
+        ),
         (
             put("member/supports/1", {"at": 4200, "kind": "spring"}),
             "member.supports[1].stiffness",
@@ -82,9 +89,12 @@ JOINT = {"between": ["web L", "bottom"]}
         (put("member/hinges", [5000]), "member.hinges[0]", "beyond the end"),
         (put("member/hinges", [1000, 1000]), "member.hinges[1]", "already stands at 1.000 mm"),
         (
-            lambda d: (d["member"]["supports"].append({"at": 2000, "kind": "pin"}), d["member"].update(hinges=[2000])),
+            lambda d: (
+                d["member"]["supports"].append({"at": 2000, "kind": "fixed"}),
+                d["member"].update(hinges=[2000]),
+            ),
             "member.hinges[0]",
-            "at the support at 2.000 mm",
+            "at the fixed support at 2.000 mm",
         ),
         (put("loads/snow/1/at", "5 m"), "loads.snow[1].at", "beyond the end of the member"),
         (put("loads/snow/3/at", 4201), "loads.snow[3].at", "beyond the end of the member"),
