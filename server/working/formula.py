@@ -30,6 +30,9 @@ MOST_TERMS = 12
 """A longer sum is printed as its first two terms and its last."""
 
 Value = float | Sequence[float] | NDArray[np.float64]
+Reader = Callable[..., tuple[float, str]]
+_NO_LISTS: frozenset[str] = frozenset()
+_SEEN = "__"  # before a quantity's name: its text
 
 
 @lru_cache(maxsize=4096)
@@ -39,15 +42,14 @@ def formula(text: str) -> Formula:
 
 
 class Formula:
-    """One formula: its tree, its compiled forms and its line with places for numbers."""
+    """One formula: its tree, and its compiled forms, one for each order in which its quantities are handed over."""
 
     def __init__(self, text: str) -> None:
         self.text = text.strip()
         self.tree = parse(text)
         self.names = names(self.tree)
         self.trivial = isinstance(self.tree, Name)
-        self._compiled: dict[frozenset[str], Callable[..., float]] = {}
-        self._lines: dict[tuple[frozenset[str], int], Callable[..., str]] = {}
+        self._array: Callable[..., Any] | None = None
 
     def value(self, values: Mapping[str, float | list[float]], lists: frozenset[str]) -> float:
         """The formula's value; ``lists`` names the quantities that are lists (they may stand under ``sum`` only).
@@ -57,38 +59,58 @@ class Formula:
         ArithmeticError, ValueError
             Where the numbers have no answer: division by zero, root of a negative number, overflow.
         """
-        compiled = self._compiled.get(lists)
-        if compiled is None:
-            compiled = self._compiled[lists] = _compile(self, lists, "math")
-        return compiled(**values)
+        return ordered(self.text, tuple(values), lists).value(*values.values())
 
     def array(self, values: Mapping[str, Value]) -> NDArray[np.float64]:
         """The formula for arrays, element by element (no ``sum``): a curve drawn from the text that is printed."""
-        key = frozenset({"\0arrays"})
-        compiled = self._compiled.get(key)
-        if compiled is None:
-            compiled = self._compiled[key] = _compile(self, frozenset(), "numpy")
-        return np.asarray(compiled(**{name: np.asarray(each, dtype=float) for name, each in values.items()}))
+        if self._array is None:
+            self._array = _compile(self, sorted(self.names), _NO_LISTS, "numpy")
+        return np.asarray(self._array(**{name: np.asarray(each, dtype=float) for name, each in values.items()}))
 
-    def substituted(self, texts: Mapping[str, str | list[str]], lists: frozenset[str], count: int) -> str:
-        """The formula with the given texts of numbers in it, in characters that can be read back and evaluated.
 
-        A negative number's text must bring its own brackets.
+@lru_cache(maxsize=8192)
+def ordered(text: str, order: tuple[str, ...], lists: frozenset[str] = _NO_LISTS) -> Ordered:
+    """The formula written as ``text`` for quantities handed over in this ``order``, ``lists`` naming those with terms.
+
+    Raises
+    ------
+    FormulaError
+        If they are not the formula's quantities.
+    """
+    return Ordered(formula(text), order, lists)
+
+
+class Ordered:
+    """A formula whose quantities come in a known order, so that numbers go in without their names."""
+
+    def __init__(self, owner: Formula, order: tuple[str, ...], lists: frozenset[str]) -> None:
+        if owner.names != set(order):
+            missing, extra = sorted(owner.names - set(order)), sorted(set(order) - owner.names)
+            raise FormulaError(f"The formula {owner.text!r} lacks values for {missing} and has no use for {extra}.")
+        self.formula, self.order, self.lists = owner, order, lists
+        self.value: Callable[..., float] = _compile(owner, order, lists, "math")
+        self._readers: dict[int, Reader] = {}
+
+    def count(self, values: Sequence[float | list[float]]) -> int:
+        """How many terms the lists among the values have; 0 where there is none."""
+        if not self.lists:
+            return 0
+        lengths = {len(each) for each in values if isinstance(each, list)}
+        if len(lengths) > 1:
+            raise FormulaError(f"The lists {sorted(self.lists)} have different lengths: {sorted(lengths)}.")
+        return lengths.pop()
+
+    def reader(self, count: int) -> Reader:
+        """What a reader of the line sees and gets, sums having so many terms.
+
+        Called with the numbers' written forms (a text and the number it says, by the number; a negative number's text
+        brings its own brackets) and the numbers, it returns the value of the line as written and the line, in
+        characters that can be read back and evaluated.
         """
-        line = self._lines.get((lists, count))
-        if line is None:
-            line = self._lines[lists, count] = _line_maker(self, lists, count)
-        return line(**texts)
-
-
-def len_of(values: Mapping[str, float | list[float]], lists: frozenset[str]) -> int:
-    """How many terms the lists have; 0 where there is none."""
-    if not lists:
-        return 0
-    lengths = {len(values[name]) for name in lists}  # type: ignore[arg-type]
-    if len(lengths) > 1:
-        raise FormulaError(f"The lists {sorted(lists)} have different lengths: {sorted(lengths)}.")
-    return lengths.pop()
+        found = self._readers.get(count)
+        if found is None:
+            found = self._readers[count] = _reader(self, count)
+        return found
 
 
 # --- evaluation -------------------------------------------------------------------------------------------------------
@@ -123,12 +145,12 @@ _NUMPY: dict[str, Any] = {
 }
 
 
-def _compile(owner: Formula, lists: frozenset[str], kind: str) -> Callable[..., Any]:
-    """Compile the tree, which the grammar has already let in, to a function of its quantities."""
+def _compile(owner: Formula, order: Sequence[str], lists: frozenset[str], kind: str) -> Callable[..., Any]:
+    """Compile the tree, which the grammar has already let in, to a function of its quantities in their order."""
     if kind == "numpy" and any(isinstance(each, Call) and each.function == "sum" for each in walk(owner.tree)):
         raise FormulaError(f"The formula {owner.text!r} sums, so it cannot run over arrays.")
     _lists_only_under_sum(owner, lists)
-    code = f"lambda {', '.join(sorted(owner.names))}: {_source(owner.tree, lists)}"
+    code = f"lambda {', '.join(order)}: {_source(owner.tree, lists)}"
     # The text comes from our own modules and has passed the whitelist of the grammar; no built-ins are in reach.
     return eval(code, _MATH if kind == "math" else _NUMPY)  # type: ignore[no-any-return]  # noqa: S307
 
@@ -171,16 +193,28 @@ def _lists_only_under_sum(owner: Formula, lists: frozenset[str]) -> None:
     check(owner.tree)
 
 
-# --- the line with places for numbers ---------------------------------------------------------------------------------
+# --- the line with its numbers ----------------------------------------------------------------------------------------
 
 
-def _line_maker(owner: Formula, lists: frozenset[str], count: int) -> Callable[..., str]:
-    """A function of the numbers' texts that writes the line: ``{V} * {S}``, ``{A[0]} * {u[0]} + {A[1]} * {u[1]}``."""
-    tree = owner.tree
+def _reader(owner: Ordered, count: int) -> Reader:
+    """A function that writes ``{V} * {S}``, ``{A[0]} * {u[0]} + {A[1]} * {u[1]}`` and works out what it says."""
+    tree, lists = owner.formula.tree, owner.lists
     whole = _terms(tree.arguments[0], lists, count) if isinstance(tree, Call) and tree.function == "sum" else None
     line = "".join(whole or _line(tree, lists, count, None))
+    taken = [
+        f"{name} = [written[each] for each in {name}]; {_SEEN}{name} = [each[0] for each in {name}]; "
+        f"{name} = [each[1] for each in {name}]"
+        if name in lists
+        else f"{_SEEN}{name}, {name} = written[{name}]"
+        for name in owner.order
+    ]
+    code = "\n ".join(
+        [f"def read({', '.join(['written', *owner.order])}):", *taken, f"return {_source(tree, lists)}, f{line!r}"]
+    )
+    made: dict[str, Any] = {}
     # As above: only names, numbers and signs that the grammar let in.
-    return eval(f"lambda {', '.join(sorted(owner.names))}: f{line!r}", _MATH)  # type: ignore[no-any-return]  # noqa: S307
+    exec(code, _MATH, made)  # noqa: S102
+    return made["read"]  # type: ignore[no-any-return]
 
 
 def _line(node: Node, lists: frozenset[str], count: int, index: int | None) -> list[str]:
@@ -194,7 +228,7 @@ def _line(node: Node, lists: frozenset[str], count: int, index: int | None) -> l
         case Name(name):
             if name in CONSTANTS:
                 return [name]
-            return [f"{{{name}[{index}]}}" if index is not None and name in lists else f"{{{name}}}"]
+            return [f"{{{_SEEN}{name}[{index}]}}" if index is not None and name in lists else f"{{{_SEEN}{name}}}"]
         case Negative(of):
             return ["-", *line(of, precedence(of) < 4)]
         case Binary(operator, left, right):

@@ -6,12 +6,11 @@ what people see: digits in groups of three, and a power of ten.
 
 from __future__ import annotations
 
-from functools import lru_cache
-
 DIGITS = 5
 LADDER = (5, 6, 8, 11, 17)
 """How many digits the numbers of one line may have: the first rung that brings a reader to the printed value."""
 _LEAST, _MOST = 1e-3, 1e6
+MOST_KEPT = 65536
 ROUNDING = 1e-10
 """Of 1: the last bits of a division, far below what any strength is known to."""
 _FORMATS = {digits: f"%.{digits}g" for digits in range(1, 18)}
@@ -22,11 +21,22 @@ def exceeds(utilisation: float) -> bool:
     return utilisation > 1 + ROUNDING
 
 
-@lru_cache(maxsize=65536)  # the same sizes, moduli and loads stand in line after line
-def in_line(value: float, digits: int = DIGITS) -> tuple[str, float]:
-    """A number as it stands among others, a negative one in brackets, and the number that a reader takes from it."""
-    text = canonical(value, digits)
-    return f"({text})" if text[0] == "-" else text, float(text)
+class _InLine(dict[float, tuple[str, float]]):
+    """Numbers as they stand in a line, by value: the same sizes, moduli and loads stand in line after line."""
+
+    def __init__(self, digits: int) -> None:
+        self.digits = digits
+
+    def __missing__(self, value: float) -> tuple[str, float]:
+        if len(self) >= MOST_KEPT:
+            self.clear()
+        text = canonical(value, self.digits)
+        self[value] = found = (f"({text})" if text[0] == "-" else text, float(text))
+        return found
+
+
+IN_LINE = {digits: _InLine(digits) for digits in LADDER}
+"""By digits: a number's text among others, a negative one in brackets, and the number that a reader takes from it."""
 
 
 def canonical(value: float, digits: int = DIGITS) -> str:

@@ -24,8 +24,7 @@ from server.errors import InputError
 from server.working import mathml as _mathml
 from server.working import names, numbers
 from server.working import plain as _plain
-from server.working.formula import Formula, formula, len_of
-from server.working.grammar import FormulaError
+from server.working.formula import Ordered, ordered
 from server.working.layout import Layout, breakable, number, spread, symbol, symbolic, with_numbers
 
 Step = dict[str, Any]
@@ -78,41 +77,36 @@ class Working:
         InputError
             If a value is not a finite number, or the numbers have no answer; it carries the symbol.
         """
-        known = formula(text)
-        if values.keys() != known.names:
-            _mismatch(known, values)
-        plain_values: dict[str, float | list[float]] = {}
+        given: list[float | list[float]] = []
         kept: dict[str, dict[str, Any]] = {}
         lists = _NO_LISTS
-        for name, (given, its_unit) in values.items():
-            if type(given) is float or isinstance(given, (float, int)):
-                taken: float | list[float] = float(given)
-                if not isfinite(given):
-                    raise InputError(name, _not_finite(name, given, title))
+        for name, (each, its_unit) in values.items():
+            if type(each) is float and isfinite(each):
+                taken: float | list[float] = each
             else:
-                taken = _listed(name, given, title)
+                taken = _plain_numbers(name, each, title)
                 if isinstance(taken, list):
                     lists = lists | {name}
-            plain_values[name] = taken
+            given.append(taken)
             kept[name] = {"value": taken, "unit": its_unit}
-        value = _evaluate(known, plain_values, lists, symbol, title)
-        if not self.record:
-            return value
-        texts = _texts(known, plain_values, lists, value)[1]
-        self.steps.append(
-            {
-                "title": title,
-                "symbol": symbol,
-                "formula": known.text,
-                "substituted": known.substituted(texts, lists, len_of(plain_values, lists)),
-                "value": value,
-                "unit": unit,
-                "source": source,
-                "group": self.group if group is None else group,
-                "values": kept,
-                "note": note,
-            }
-        )
+        known = ordered(text, tuple(values), lists)
+        count = known.count(given) if lists else 0
+        value = _evaluate(known, given, symbol, title)
+        if self.record:
+            self.steps.append(
+                {
+                    "title": title,
+                    "symbol": symbol,
+                    "formula": known.formula.text,
+                    "substituted": _line(known, given, count, value)[1],
+                    "value": value,
+                    "unit": unit,
+                    "source": source,
+                    "group": self.group if group is None else group,
+                    "values": kept,
+                    "note": note,
+                }
+            )
         return value
 
     def note(
@@ -146,21 +140,16 @@ class Working:
         )
 
 
-def _mismatch(known: Formula, values: Mapping[str, Given]) -> None:
-    missing, extra = sorted(known.names - values.keys()), sorted(values.keys() - known.names)
-    raise FormulaError(f"The formula {known.text!r} lacks values for {missing} and has no use for {extra}.")
-
-
 def _not_finite(name: str, value: object, title: str) -> str:
     return f"{names.plain(name)} is {value} in “{title}”; a finite number is needed. Check the values it is made from."
 
 
-def _listed(name: str, given: Any, title: str) -> float | list[float]:
-    """A numpy scalar, a sequence or an array as plain numbers, all finite."""
+def _plain_numbers(name: str, given: Any, title: str) -> float | list[float]:
+    """A number of any kind, a sequence or an array as plain numbers, all finite."""
     if not isinstance(given, (list, tuple)) and np.ndim(given) == 0:
         scalar = float(given)
         if not isfinite(scalar):
-            raise InputError(name, _not_finite(name, scalar, title))
+            raise InputError(name, _not_finite(name, given, title))
         return scalar
     taken = [float(each) for each in given]
     if not all(map(isfinite, taken)):
@@ -169,13 +158,9 @@ def _listed(name: str, given: Any, title: str) -> float | list[float]:
     return taken
 
 
-def _evaluate(
-    known: Formula, values: Mapping[str, float | list[float]], lists: frozenset[str], symbol: str, title: str
-) -> float:
-    if lists:
-        len_of(values, lists)
+def _evaluate(known: Ordered, given: Sequence[float | list[float]], symbol: str, title: str) -> float:
     try:
-        value = known.value(values, lists)
+        value = known.value(*given)
     except ZeroDivisionError:
         raise InputError(symbol, _no_answer(known, symbol, title, "divides by zero")) from None
     except (ValueError, OverflowError):
@@ -185,39 +170,27 @@ def _evaluate(
     return float(value)
 
 
-def _no_answer(known: Formula, symbol: str, title: str, why: str) -> str:
+def _no_answer(known: Ordered, symbol: str, title: str, why: str) -> str:
     return (
-        f"{names.plain(symbol)} in “{title}” {why}: {_plain.line(symbolic(known.tree, _NO_LISTS))}. "
+        f"{names.plain(symbol)} in “{title}” {why}: {_plain.line(symbolic(known.formula.tree, _NO_LISTS))}. "
         "Every quantity must keep it finite; check the values it is made from."
     )
 
 
-Texts = dict[str, str | list[str]]
-
-
-def _texts(
-    known: Formula, values: Mapping[str, float | list[float]], lists: frozenset[str], value: float
-) -> tuple[int, Texts]:
-    """How many digits the numbers must show so that the printed line gives the printed value, and the numbers so."""
-    written = numbers.in_line
-    target = written(value)[0]
-    texts: Texts = {}
-    rounded: dict[str, float | list[float]] = {}
-    for digits in numbers.LADDER:
-        for name, each in values.items():
-            if isinstance(each, list):
-                pairs = [written(item, digits) for item in each]
-                texts[name], rounded[name] = [text for text, _ in pairs], [back for _, back in pairs]
-            else:
-                texts[name], rounded[name] = written(each, digits)
-        if rounded == values:
-            return digits, texts
+def _line(known: Ordered, given: Sequence[float | list[float]], count: int, value: float) -> tuple[int, str]:
+    """How many digits the numbers must show so that the printed line gives the printed value, and that line."""
+    read = known.reader(count)
+    printed = numbers.IN_LINE[numbers.DIGITS]
+    target = printed[value][0]
+    line = ""
+    for digits, written in numbers.IN_LINE.items():
         try:
-            if written(known.value(rounded, lists))[0] == target:
-                return digits, texts
+            reached, line = read(written, *given)
+            if printed[reached][0] == target:
+                return digits, line
         except (ArithmeticError, ValueError, TypeError):
             continue
-    return numbers.LADDER[-1], texts
+    return numbers.LADDER[-1], line
 
 
 # --- a stored step, shown ---------------------------------------------------------------------------------------------
@@ -244,16 +217,19 @@ def shown(step: Mapping[str, Any], display: str = "SI") -> Shown:
         unit, factor = _display_unit(step["unit"], display)
         found = None if step["value"] is None else number(step["value"] * factor)
         return Shown(head, None, None, found, numbers.readable_unit(unit))
-    known = formula(step["formula"])
-    lists = frozenset(name for name, each in step["values"].items() if isinstance(each["value"], list))
-    values, value, unit = _in_units(step, known, lists, display)
-    digits = _texts(known, values, lists, value)[0]
-    count = len_of(values, lists)
-    with_values = with_numbers(known.tree, values, lists, count, digits)
+    values: dict[str, float | list[float]] = {name: each["value"] for name, each in step["values"].items()}
+    lists = frozenset(name for name, each in values.items() if isinstance(each, list))
+    known = ordered(step["formula"], tuple(values), lists)
+    given, value, unit = _in_units(step, known, display)
+    count = known.count(given)
+    digits = _line(known, given, count, value)[0]
+    named = dict(zip(values, given, strict=True))
+    with_values = with_numbers(known.formula.tree, named, lists, count, digits)
     repeats = spread(with_values) == [number(value)]
+    says_itself = known.formula.trivial and known.formula.names <= {step["symbol"]}
     return Shown(
         head,
-        None if known.names <= {step["symbol"]} and known.trivial else symbolic(known.tree, lists),
+        None if says_itself else symbolic(known.formula.tree, lists),
         None if repeats else with_values,
         number(value),
         numbers.readable_unit(unit),
@@ -267,21 +243,19 @@ def _display_unit(unit: str, display: str) -> tuple[str, float]:
     return shown_unit, factor
 
 
-def _in_units(
-    step: Mapping[str, Any], known: Formula, lists: frozenset[str], display: str
-) -> tuple[dict[str, float | list[float]], float, str]:
-    stored: dict[str, float | list[float]] = {name: each["value"] for name, each in step["values"].items()}
+def _in_units(step: Mapping[str, Any], known: Ordered, display: str) -> tuple[list[float | list[float]], float, str]:
+    """The step's numbers in the order of its quantities, its value and its unit."""
+    stored: list[float | list[float]] = [each["value"] for each in step["values"].values()]
     value: float = step["value"]
     if display == "SI":
         return stored, value, step["unit"]
     unit, factor = _display_unit(step["unit"], display)
-    converted: dict[str, float | list[float]] = {}
-    for name, each in step["values"].items():
-        own = _display_unit(each["unit"], display)[1]
-        given = each["value"]
-        converted[name] = [item * own for item in given] if isinstance(given, list) else given * own
+    converted: list[float | list[float]] = []
+    for each in step["values"].values():
+        own, given = _display_unit(each["unit"], display)[1], each["value"]
+        converted.append([item * own for item in given] if isinstance(given, list) else given * own)
     try:
-        balances = math.isclose(known.value(converted, lists), value * factor, rel_tol=1e-6, abs_tol=1e-300)
+        balances = math.isclose(known.value(*converted), value * factor, rel_tol=1e-6, abs_tol=1e-300)
     except (ArithmeticError, ValueError, TypeError):
         balances = False
     return (converted, value * factor, unit) if balances else (stored, value, step["unit"])

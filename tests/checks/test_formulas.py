@@ -28,9 +28,14 @@ def broken(text: str, instead: str) -> Iterator[None]:
     """Read ``instead`` wherever the program asks for the formula ``text``."""
     with pytest.MonkeyPatch.context() as patch:
         patch.setattr(reading, "parse", lambda asked: parse(instead if asked.strip() == text else asked))
-        reading.formula.cache_clear()
+        _forget()
         yield
+    _forget()
+
+
+def _forget() -> None:
     reading.formula.cache_clear()
+    reading.ordered.cache_clear()
 
 
 @cache
