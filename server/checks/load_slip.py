@@ -19,6 +19,7 @@ from server.working import Working
 CODE = "EN 26891:1991"
 NEAR = 0.2  # of the estimate, by which the mean may differ before each test's own greatest load is taken
 WRITTEN_OUT = 30
+DRAWN = 400  # readings of a specimen kept for its drawing
 READABLE = 1e-6  # mm, a slip that no gauge tells from nothing; a modulus over less would be noise
 NOT_CHECKED = (
     "whether the specimens stand for the joint: wood, moisture, spacing, edge distances, workmanship",
@@ -33,6 +34,7 @@ class Tested:
 
     index: int
     maximum: float
+    reference: float
     v01: float
     v04: float
 
@@ -110,7 +112,8 @@ def _tests(document: LoadSlipDocument, kept: Sequence[tuple[int, Specimen]], fin
         )
         estimate = None
     return [
-        Tested(index, most, *_slips(each, estimate or most)) for (index, each), most in zip(kept, greatest, strict=True)
+        Tested(index, most, estimate or most, *_slips(each, estimate or most))
+        for (index, each), most in zip(kept, greatest, strict=True)
     ]
 
 
@@ -212,12 +215,27 @@ def _listed(
                 "name": each.name,
                 "excluded": each.excluded,
                 "load": None if test is None else test.maximum / share,
+                "reference": None if test is None else test.reference / share,
                 "v01": None if test is None or np.isnan(test.v01) else test.v01,
                 "v04": None if test is None or np.isnan(test.v04) else test.v04,
                 "slip_modulus": modulus,
+                "curve": _curve(each, share),
             }
         )
     return listed
+
+
+def _curve(each: Specimen, share: int) -> dict[str, list[float]] | None:
+    """The readings for the drawing, load of one fastener and plane; of very many the ends of every short stretch."""
+    if each.readings is None:
+        return None
+    load, slip = np.asarray(each.readings, dtype=float).T
+    if load.size > DRAWN:
+        parts = np.array_split(np.arange(load.size), DRAWN // 2)
+        ends = [part[pick(load[part])] for part in parts for pick in (np.argmin, np.argmax)]
+        chosen = np.unique([0, *ends, load.size - 1])
+        load, slip = load[chosen], slip[chosen]
+    return {"slip": slip.tolist(), "load": (load / share).tolist()}
 
 
 def _governing(strength: float | None, modulus: float | None, count: int) -> str:

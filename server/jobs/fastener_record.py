@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
+from decimal import ROUND_DOWN, Decimal
 from typing import Any
 
 from server import library
@@ -83,8 +84,18 @@ def _members(document: Mapping[str, Any]) -> dict[str, str]:
 
 def _values(document: Mapping[str, Any], result: Mapping[str, Any]) -> dict[str, str]:
     """The values as texts with units; what the check did not find is left out."""
-    values = {name: f"{result[name]:.12g} {unit}" for name, unit in _VALUES.items() if result.get(name)}
+    values = {name: f"{_five_digits(result[name])} {unit}" for name, unit in _VALUES.items() if result.get(name)}
     diameter = (document.get("fastener") or {}).get("diameter")
     if diameter is not None:
         values["diameter"] = diameter if isinstance(diameter, str) else f"{diameter:.12g} mm"
     return values
+
+
+def _five_digits(value: float) -> str:
+    """A found value as a record says it: five digits, never more than was found.
+
+    >>> _five_digits(351.27986), _five_digits(963.0), _five_digits(123456.7)
+    ('351.27', '963', '123450')
+    """
+    found = Decimal(repr(float(value)))
+    return f"{found.quantize(Decimal(1).scaleb(found.adjusted() - 4), ROUND_DOWN).normalize():f}"

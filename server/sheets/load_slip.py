@@ -6,7 +6,8 @@ from collections.abc import Iterable, Iterator, Mapping
 from typing import Any
 
 from server.sheets.asked import Ask, AskGroup, Column
-from server.sheets.one_page import Blocks, OnePage, Part, Result, pairs
+from server.sheets.load_slip_plot import has_curves, load_slip_svg
+from server.sheets.one_page import Blocks, OnePage, Part, Result, figure, pairs
 from server.sheets.tables import column, table
 from server.sheets.values import DASH, quantity, unit
 from server.working import readable
@@ -25,7 +26,7 @@ GROUPS = (
                     Column("v01", "slip at a tenth", "size"),
                     Column("v04", "slip at four tenths", "size"),
                     Column("name", "name"),
-                    Column("excluded", "left out because"),
+                    Column("excluded", "excluded because"),
                 ),
                 hint="one line each: greatest load, slip at a tenth of it, slip at four tenths, name",
             ),
@@ -65,6 +66,9 @@ GROUPS = (
 )
 
 
+_CAPTION = "Load over slip of every specimen with its number, one fastener and shear plane."
+
+
 def headline(result: Result, display: str) -> str:
     """The line under the verdict."""
     n = result.get("n")
@@ -75,8 +79,10 @@ def headline(result: Result, display: str) -> str:
 
 
 def blocks(result: Result, display: str) -> Blocks:
-    """Strength and slip, then every specimen."""
+    """Strength and slip, load over slip, then every specimen."""
     yield "Strength and slip", _found(result, display)
+    if has_curves(result):
+        yield "Load over slip", [figure(load_slip_svg(result, display=display), _CAPTION)]
     yield "Specimens", _specimens(result, display)
 
 
