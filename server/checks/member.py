@@ -12,6 +12,7 @@ from server.checks import effective_width, moving, moving_rounds, moving_twist, 
 from server.checks import statics as hand
 from server.checks.actions import Actions, act, added_after, envelope
 from server.checks.along import RigidAlong, SlidingAlong
+from server.checks.bent_axis import bent_axis
 from server.checks.cautions import NOT_CHECKED, add_cautions
 from server.checks.combined_flow import CombinedAlong
 from server.checks.contours import Look, contours
@@ -124,6 +125,7 @@ def _round(
     moving_rounds.caution(actions, findings)
     slides = [each for each in (sliding, None if flows.gone is None else flows.gone.slide) if each is not None]
     governing = _governing(body, judge, joints, pieces, sags, fall_back, ends)
+    drawn = governing.section if governing else body.stretches[0].section
     result = {
         "format": document.format,
         "kind": document.kind,
@@ -132,7 +134,7 @@ def _round(
         "display": document.display,
         **_verdict(governing, findings),
         "basis": document.basis.model_dump(exclude_none=True),
-        "section": _section(governing.section if governing else body.stretches[0].section, sliding),
+        "section": {**_section(drawn, sliding), "bent_axis": bent_axis(actions, drawn)},
         "sections": [{"from": s.start, "to": s.end, **_section(s.section, sliding)} for s in body.stretches],
         "member": _member(document, actions),
         "joints": [c.result for c in joints],

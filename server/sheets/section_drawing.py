@@ -143,10 +143,27 @@ def _number_joints(view: View, marks: Sequence[Mark], rails: dict[str, list[Labe
 
 
 def _neutral_axis(drawing: Drawing, view: View, rails: dict[str, list[Label]]) -> None:
-    """The neutral axis as a chain line across the section, lettered at the right."""
-    y = view.at(view.result["section"]["neutral_axis"])[1]
-    drawing.line("chain", view.left - 10, y, view.right + 14, y)
-    rails["right"].append(Label("N.A.", None, y, weight=1000))
+    """The neutral axis as a chain line across the section, lettered where it leaves; sloping where it bends both ways.
+
+    Results saved before the slope was kept have the level line.
+    """
+    x, y = view.at(view.result["section"]["neutral_axis"])
+    across, up = bent["direction"] if (bent := view.result["section"].get("bent_axis")) else (1.0, 0.0)
+    frame = ((view.left - 10, view.right + 14), (view.top - 10, view.bottom + 10))
+    reach = [
+        min(
+            ((high if step > 0 else low) - at) / step
+            for at, step, (low, high) in zip((x, y), way, frame, strict=True)
+            if step
+        )
+        for way in ((-across, up), (across, -up))
+    ]
+    start, end = (x - across * reach[0], y + up * reach[0]), (x + across * reach[1], y - up * reach[1])
+    drawing.line("chain", *start, *end)
+    if end[0] >= view.right:
+        rails["right"].append(Label("N.A.", None, end[1], weight=1000))
+    else:
+        rails["top" if up > 0 else "bottom"].append(Label("N.A.", None, end[0], weight=1000))
 
 
 def _dimensions(drawing: Drawing, view: View, rails: dict[str, list[Label]]) -> None:
@@ -220,6 +237,9 @@ def _key(
         rows.append(("touching", "touching, not joined"))
     if shaded:
         rows.append(("shaded", shaded))
+    if bent := view.result["section"].get("bent_axis"):
+        place = drafting.place_text(bent["at"], view.display)
+        rows.append(("chain", f"N.A. at {place}, {bent['combination']}"))
     if view.crowded:
         rows.append(("", "not every joint is numbered, for want of room"))
     materials: dict[str, tuple[str | None, int]] = {}

@@ -250,3 +250,24 @@ def test_an_eccentric_load_adds_its_torque_with_sign():
         flows.append([joint["shear_flow"] for joint in run(member(LOPSIDED, RING, loads, moduli=MODULI))["joints"]])
     np.testing.assert_allclose(np.mean(flows[:2], axis=0), flows[2], rtol=1e-6)
     assert abs(flows[0][0] / flows[1][0] - 1) > 0.01
+
+
+def test_the_neutral_axis_lies_where_no_stress_is():
+    """By the formula of the Z above; and by principal axes: tan beta = I_max/I_min tan theta (Gere and Timoshenko,
+    Mechanics of Materials, 4th ed., 6.5, from memory), for a plate turned by 20 degrees."""
+    _, lateral, product, _ = second_moments(Z)
+    load = [{"kind": "line", "from": 0, "to": 4000, "value": 0.8}]
+    drawn = run(member(Z, [("low", "web"), ("web", "high")], load))["section"]["bent_axis"]
+    across, up = drawn["direction"]
+    assert up / across == pytest.approx(product / lateral, rel=1e-9)
+    assert (drawn["at"], np.hypot(across, up)) == (pytest.approx(2000), pytest.approx(1))
+    turn, two = np.radians(20), {"low": (40, 60, (0, 0)), "high": (40, 60, (0, 60))}
+    across, up = run(member(two, [("low", "high")], load, turn=turn))["section"]["bent_axis"]["direction"]
+    from_own = np.arctan((120**3 * 40) / (40**3 * 120) * np.tan(turn))  # from the plate's own level axis, load turned
+    assert abs(np.degrees(np.arctan2(up, across))) == pytest.approx(np.degrees(from_own - turn), rel=1e-9)
+    assert (
+        run(member(two, [("low", "high")], load, member={"length": 4000, "supports": PINS, "deflection_limit": 50}))[
+            "section"
+        ]["bent_axis"]
+        is None
+    )

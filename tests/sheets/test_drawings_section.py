@@ -176,6 +176,25 @@ def test_the_neutral_axis_is_drawn_where_the_result_says() -> None:
     assert "N.A." in texts(svg)
 
 
+@pytest.mark.parametrize("way", [(0.6, 0.8), (0.8, -0.6), (0.0, 1.0), (1.0, 0.0)])
+def test_a_neutral_axis_that_slopes_runs_through_the_centre_of_stiffness_from_edge_to_edge(
+    way: tuple[float, float],
+) -> None:
+    result = fixtures.box_beam()
+    result["section"] = {**result["section"], "bent_axis": {"direction": way, "at": 2000.0, "combination": "all"}}
+    drawing = root(svg := section_svg(result))
+    chain = next(p for p in drawing.iter() if p.get("stroke-dasharray") == "14 3 2 3")
+    x1, y1, x2, y2 = (float(number) for number in re.findall(r"-?[\d.]+", str(chain.get("d")).split("M")[1]))
+    scale, left, bottom = (float(str(drawing.get(f"data-{name}"))) for name in ("scale", "left", "bottom"))
+    across, up = result["section"]["neutral_axis"]
+    x, y = left + across * scale, bottom - up * scale
+    assert abs((x2 - x1) * (y - y1) - (y2 - y1) * (x - x1)) < 0.2 * max(abs(x2 - x1), abs(y2 - y1))
+    assert abs((x2 - x1) * way[1] + (y2 - y1) * way[0]) < 0.2
+    assert min(x1, x2) - 0.1 <= x <= max(x1, x2) + 0.1
+    assert "N.A. at 2 m, all" in texts(svg)
+    assert not collisions(letters(svg))
+
+
 def test_thin_layers_stay_visible() -> None:
     svg = section_svg(fixtures.sandwich())
     scale = float(str(root(svg).get("data-scale")))
