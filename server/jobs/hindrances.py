@@ -170,7 +170,12 @@ def _of_the_person(saved: SavedRevision, by: Person) -> Iterator[Hindrance]:
     elif not prepared:
         yield _fixed("person", "person", "Nobody's name stands on this revision as its preparer; save it again.")
     elif not by.named:
-        yield _fixed("person", "person", "Nobody is signed in here, so nobody can be told from who prepared it.")
+        yield _fixed(
+            "person",
+            "person",
+            "Nobody is signed in here, so nobody can be told from who prepared it. Start the program with --sign-in; "
+            "then another person than who prepared it issues it.",
+        )
 
 
 def _fixed(kind: str, about: str, text: str) -> Hindrance:

@@ -6,7 +6,7 @@ from collections.abc import Mapping
 from dataclasses import dataclass
 from typing import Any, Literal
 
-from server import documents, units
+from server import documents, sheets, units
 from server.jobs.content import leaves
 from server.jobs.revisions import SavedRevision
 
@@ -68,7 +68,7 @@ def _result(saved: SavedRevision, display: str) -> dict[str, str]:
     found = {
         "verdict": str(result["verdict"]),
         "utilisation": _share(result.get("utilisation")),
-        "governing": _governing(result.get("governing")),
+        "governing": _governing(result, display),
     }
     for part, one in (("joints", "joint"), ("pieces", "piece")):
         for entry in result.get(part, ()):
@@ -77,7 +77,7 @@ def _result(saved: SavedRevision, display: str) -> dict[str, str]:
         what = "long-term deflection" if entry.get("long_term") else "deflection"
         start, end = (units.show(entry[end], "length", display) for end in ("from", "to"))
         found[f"{what} from {start} to {end}: utilisation"] = _share(entry.get("utilisation"))
-    found["missing"] = "; ".join(map(str, result.get("missing", ()))) or _NOTHING
+    found["missing"] = "; ".join(sheets.missing(result, display)) or _NOTHING
     found["program"] = saved.engine
     return found
 
@@ -97,7 +97,8 @@ def _share(value: Any) -> str:
     return _NOTHING if value is None else f"{value:.3f}"
 
 
-def _governing(value: Any) -> str:
+def _governing(result: Mapping[str, Any], display: str) -> str:
+    value = result.get("governing")
     if isinstance(value, Mapping):
         return ", ".join(str(part) for part in value.values() if isinstance(part, str) and part) or _NOTHING
-    return str(value) if value else _NOTHING
+    return sheets.headline(result, display) or _NOTHING

@@ -21,7 +21,7 @@ from server.sheets.slip_parts import blocks as slip_blocks
 from server.sheets.stress_drawing import TITLES as STRESSES
 from server.sheets.stress_drawing import stress_svg
 from server.sheets.terminal import terminal
-from server.sheets.values import governing, in_units, quantity, utilisation, verdict
+from server.sheets.values import governing, in_units, missing, quantity, spoken, utilisation, verdict
 
 __all__ = [
     "LASTING",
@@ -56,6 +56,7 @@ __all__ = [
     "laid_out",
     "load_as_typed",
     "loads_svg",
+    "missing",
     "pdf",
     "probability_plot_svg",
     "quantity",
@@ -64,6 +65,7 @@ __all__ = [
     "setting_out_svg",
     "slip_blocks",
     "slip_svg",
+    "spoken",
     "stress_svg",
     "terminal",
     "texts_of",

@@ -42,7 +42,7 @@ def ends(result: Result, display: str) -> Iterator[Part]:
         column("End", share=1),
         column(f"End shear, {of.text}", side="right"),
         column(f"End peel, {of.text}", side="right"),
-        column("Mean shear", side="right"),
+        column(f"Mean shear, {of.text}", side="right"),
         column("Utilisation", side="right"),
     ]
     rows: list[list[Any]] = []

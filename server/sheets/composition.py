@@ -14,7 +14,7 @@ from server.sheets.bond_ends import blocks as end_blocks
 from server.sheets.given import Group, given
 from server.sheets.one_pages import ONE_PAGES
 from server.sheets.steps import working_groups
-from server.sheets.values import governing, in_units, missing, utilisation, verdict
+from server.sheets.values import governing, in_units, missing, spoken, utilisation, verdict
 from server.working import typst_math
 
 Part = dict[str, Any]
@@ -260,7 +260,7 @@ def _cautions(result: Mapping[str, Any], replies: Mapping[str, str], display: st
             "kind": "caution",
             "number": f"{number}",
             "about": about[:1].upper() + about[1:],
-            "text": in_units(text, display),
+            "text": spoken(in_units(text, display)),
             "answer": bool(caution.get("answer")),
             "reply": str(replies.get(text, "")),
         }

@@ -19,6 +19,7 @@ from server.errors import InputError
 from server.sheets import drafting
 from server.sheets.drafting import Scale
 from server.sheets.section_view import joint_numbers
+from server.sheets.smooth import rounded
 from server.sheets.svg import CAP, FONT_SIZE, Drawing, shorten, text_width
 
 LEFT, RIGHT, HEAD, FOOT = 58.0, 22.0, 22.0, 32.0
@@ -353,7 +354,7 @@ class _Plot:
 
     def _path(self, xs: NDArray[np.float64], values: NDArray[np.float64]) -> str:
         """From the zero line along the curve and back to it, in tenths of a pixel."""
-        x, y = thinned(xs, self.zero + values * self.per_value)
+        x, y = thinned(*rounded(xs, self.zero + values * self.per_value))
         pairs = np.empty(2 * len(x))
         pairs[0::2], pairs[1::2] = x, y
         line = ("%.1f %.1f " * len(x)) % tuple(pairs.tolist())

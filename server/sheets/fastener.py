@@ -44,7 +44,7 @@ def _part(name: str, title: str, about: str, thickness: tuple[str, str]) -> AskG
         title,
         (
             Ask(f"{name}.thickness", "Thickness", "size", start=thickness),
-            Ask(f"{name}.kind", "Of", choices=kinds),
+            Ask(f"{name}.kind", "Material", choices=kinds, wide=True),
             Ask(
                 f"{name}.density",
                 "Characteristic density",

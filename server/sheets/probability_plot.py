@@ -102,7 +102,9 @@ def _points(
         x, y = axis(point["stress"] * of.factor), up(point["place"])
         coupon_mark(drawing, kind, x, y, DOT * 0.9)
         if kind == "outlier":
-            drawing.text(x + 9, y + CAP * FONT_SIZE, f"no. {point['index'] + 1} apart")
+            text = f"no. {point['index'] + 1} apart"
+            drawing.backing(x + 8, y - 6, text_width(text) + 2, 12)
+            drawing.text(x + 9, y + CAP * FONT_SIZE, text)
     return kinds
 
 

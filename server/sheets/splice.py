@@ -45,7 +45,7 @@ def value_asks(name: str, *, start: Mapping[str, tuple[str, str]], tube: bool = 
 
     wooden = ((f"{place}.kind", WOODEN),)
     return (
-        Ask(place, "From the library", record=True),
+        Ask(place, "From the library", record=True, wide=True),
         Ask(f"{place}.kind", "Sort", choices=KINDS, start=at("kind")),
         Ask(f"{place}.E", "Modulus E", "stress", start=at("E")),
         Ask(f"{place}.nu", "Poisson's ratio", hint="blank: 0", start=at("nu")),
@@ -70,7 +70,7 @@ def adhesive_asks(start: Mapping[str, tuple[str, str]], *, plastic: bool = True)
 
     yielding = (("response", ("elastic-plastic",)),)
     return (
-        Ask(place, "From the library", record=True),
+        Ask(place, "From the library", record=True, wide=True),
         Ask(f"{place}.thickness", "Bond line", "size", start=at("thickness")),
         Ask(f"{place}.shear_modulus", "Shear modulus", "stress", start=at("shear_modulus")),
         Ask(

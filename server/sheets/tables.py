@@ -3,12 +3,14 @@
 from __future__ import annotations
 
 from collections.abc import Iterator, Mapping, Sequence
-from math import floor, log10
+from math import floor, log10, sqrt
 from typing import Any
 
 from server.sheets.values import DASH, Unit, quantity, said, unit, utilisation
 from server.working import exceeds, readable
 
+ROUNDING = 1e-9
+"""A product of inertia below this share of the others is what rounding left of 0."""
 Part = dict[str, Any]
 Result = Mapping[str, Any]
 
@@ -55,6 +57,9 @@ def section(result: Result, display: str) -> Iterator[Part]:
 
 def _properties(values: Result, display: str) -> list[list[str]]:
     axis = values.get("neutral_axis") or (None, None)
+    product, whole = values.get("EI_product"), sqrt((values.get("EI") or 0) * (values.get("EI_lateral") or 0))
+    if product is not None and abs(product) < ROUNDING * whole:
+        product = 0.0
     rows = [
         ("Area", values.get("area"), "mm2"),
         ("Mass per length", values.get("mass_per_length"), "kg/m"),
@@ -63,7 +68,7 @@ def _properties(values: Result, display: str) -> list[list[str]]:
         ("EA", values.get("EA"), "N"),
         ("EI, bending up and down", values.get("EI"), "N*mm2"),
         ("EI, bending sideways", values.get("EI_lateral"), "N*mm2"),
-        ("EI product", values.get("EI_product"), "N*mm2"),
+        ("EI product", product, "N*mm2"),
         ("GA, shear", values.get("GA"), "N"),
         ("GJ, torsion", values.get("GJ"), "N*mm2"),
         ("Effective EI, with slip", values.get("effective_EI"), "N*mm2"),

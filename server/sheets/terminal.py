@@ -33,7 +33,7 @@ def _lines(result: Mapping[str, Any], display: str) -> Iterator[str]:
     yield from _head(result, display)
     for title, parts in _blocks(result, display):
         yield from _block(title, parts)
-    yield from _listed("What is missing", missing(result, display))
+    yield from _listed("What is missing", missing(result, display, names=True))
     yield from _listed("Cautions", (in_units(_caution(each), display) for each in result.get("cautions", ())))
     yield from _working(result, display)
     yield from _listed("Not checked", (str(line) for line in result.get("not_checked", ())))

@@ -10,6 +10,7 @@ import math
 import re
 from collections.abc import Mapping
 from dataclasses import dataclass
+from decimal import Decimal
 from typing import Any
 
 from server import units
@@ -19,6 +20,7 @@ DIGITS = 4
 DASH = "–"
 _SI_FOR_PEOPLE = {"N": ("kN", 1e-3), "N*mm": ("kN·m", 1e-6)}
 _COUNT = r"\d{1,3}(?:,\d{3})+(?:\.\d+)?|\d+(?:\.\d+)?(?:e[+-]?\d+)?"
+_NAME = re.compile(r"(?<![\w.'\"/])[a-z]{3,}(?:_[a-z]+)+(?![\w.'\"/])")
 _IN_WORDS = re.compile(rf"(?<![\w.,])({_COUNT}) (N/mm|MPa|mm2|mm|N)(?![\w/*·²]|\d)")
 
 
@@ -62,16 +64,35 @@ def in_units(text: str, display: str) -> str:
 
     >>> in_units("the plate stops 250 mm from the left end", "US")
     'the plate stops 9.843 in from the left end'
-    >>> in_units("it hands 2,560 N over", "US")
-    'it hands 575.5 lbf over'
+    >>> in_units("it hands 2,560 N over, 38.1 mm of its 1219 mm", "US")
+    'it hands 575.5 lbf over, 1.5 in of its 48 in'
     """
     if display != "US":
         return text
-    return _IN_WORDS.sub(lambda found: quantity(_number(found[1]), found[2], display).replace("\u00a0", " "), text)
+    return _IN_WORDS.sub(lambda found: _as_exact(found[1].replace(",", ""), unit(found[2], display)), text)
 
 
-def _number(text: str) -> float:
-    return float(text.replace(",", ""))
+def _as_exact(text: str, of: Unit) -> str:
+    """A written number in another unit, to four digits.
+
+    One that was rounded for its sentence, to four digits or more, takes the fewest that its last digit allows: 1219 mm
+    are 48 in, not 47.99 in.
+    """
+    written, value = Decimal(text), float(text) * of.factor
+    half = float(Decimal(5).scaleb(int(written.as_tuple().exponent) - 1)) * of.factor
+    for digits in range(1, DIGITS) if len(written.as_tuple().digits) >= DIGITS else ():
+        if abs(float(f"{value:.{digits}g}") - value) <= half:
+            return f"{readable(value, digits)} {of.text}"
+    return of.full(float(text)).replace("\u00a0", " ")
+
+
+def spoken(text: str) -> str:
+    """A stored sentence for people: names of the check document in it as words.
+
+    >>> spoken("adhesive 'E7' has no creep_limit, and h_f is 70 mm")
+    "adhesive 'E7' has no creep limit, and h_f is 70 mm"
+    """
+    return _NAME.sub(lambda found: found[0].replace("_", " "), text)
 
 
 def utilisation(value: object) -> str:
@@ -92,11 +113,9 @@ def verdict(result: Mapping[str, Any]) -> str:
 
 
 def governing(result: Mapping[str, Any], display: str) -> str:
-    """The readable line that names what governs; in inch-pound units written anew from the limit it stands on."""
+    """The readable line that names what governs, in the units of ``display``."""
     line = str(result.get("governing", ""))
-    if display != "US":
-        return line[:1].upper() + line[1:]
-    found = _governing_limit(result)
+    found = _governing_limit(result, display)
     if found is None:  # what else may govern, such as the end of a bond, says itself in words
         return in_units(line[:1].upper() + line[1:], display)
     what, limit = found
@@ -107,17 +126,19 @@ def governing(result: Mapping[str, Any], display: str) -> str:
     )
 
 
-def _governing_limit(result: Mapping[str, Any]) -> tuple[str, Mapping[str, Any]] | None:
+def _of_the_span(each: Mapping[str, Any], of: Unit) -> str:
+    word = "Long-term deflection" if each.get("long_term") else "Deflection"
+    return f"{word} of the {each.get('kind', 'span')} {of.number(each.get('from'))} to {of.full(each.get('to'))}"
+
+
+def _governing_limit(result: Mapping[str, Any], display: str) -> tuple[str, Mapping[str, Any]] | None:
     limits = [
         (f"{word} {part['id']}, {said(limit)}", limit)
         for word, group in (("Joint", "joints"), ("Piece", "pieces"))
         for part in result.get(group, ())
         for limit in part.get("limits", ())
     ]
-    limits += [
-        ("Long-term deflection" if each.get("long_term") else "Deflection", each)
-        for each in result.get("deflection_limits", ())
-    ]
+    limits += [(_of_the_span(each, unit("mm", display)), each) for each in result.get("deflection_limits", ())]
     known = [(what, limit) for what, limit in limits if isinstance(limit.get("utilisation"), int | float)]
     worst = max(
         known, key=lambda each: float(f"{float(each[1]['utilisation']):.9g}"), default=None
@@ -128,11 +149,15 @@ def _governing_limit(result: Mapping[str, Any]) -> tuple[str, Mapping[str, Any]]
     return worst if math.isclose(float(worst[1]["utilisation"]), used, rel_tol=1e-9) else None
 
 
-def missing(result: Mapping[str, Any], display: str) -> tuple[str, ...]:
-    """What is missing, with lines that miss the same at several places on one: 'shear of X (here; there): test it'."""
+def missing(result: Mapping[str, Any], display: str, *, names: bool = False) -> tuple[str, ...]:
+    """What is missing, with lines that miss the same at several places on one: 'shear of X (here; there): test it'.
+
+    With ``names`` the names of the check document stay as they are written there.
+    """
     places: dict[tuple[str, str], list[str]] = {}
     for line in result.get("missing", ()):
         text = in_units(str(line), display)
+        text = text if names else spoken(text)
         match = re.fullmatch(r"([^()]+) \(([^()]+)\): (.+)", text)
         key, place = ((match[1], match[3]), match[2]) if match else ((text, ""), "")
         places.setdefault(key, []).append(place)

@@ -3,9 +3,10 @@
 from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
+from dataclasses import replace
 from typing import Any
 
-from server import jobs
+from server import jobs, sheets
 from server.jobs import SavedRevision
 from server.library.obstacles import others_who_may
 from server.people import CHECKS, Person
@@ -23,6 +24,8 @@ def context(
     """Return the names that templates/check/_issue.html shows; what keeps this person is told to who may issue."""
     issue = jobs.issue_of(session, saved.id)
     found = [] if issue else jobs.hindrances(session, saved.id, person if person.may(CHECKS) else None)
+    display = str(saved.heading["display"])
+    found = [replace(each, text=sheets.spoken(sheets.in_units(each.text, display))) for each in found]
     return {
         "hindrances": [each for each in found if each.kind != "difference"],
         "differing": [each for each in found if each.kind == "difference"] if issue is None else _answered(issue),

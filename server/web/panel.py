@@ -320,7 +320,7 @@ def _cautions(result: Result, display: str) -> Iterable[Caution]:
     subjects: dict[tuple[str, bool], dict[str, list[str]]] = {}
     for each in result["cautions"]:
         sentences = subjects.setdefault((str(each["about"]), bool(each.get("answer"))), {})
-        whole = written.in_units(str(each["text"]), display)
+        whole = written.spoken(written.in_units(str(each["text"]), display))
         place, colon, rest = whole.partition(": ")
         if colon and place in ids:
             sentences.setdefault(rest, []).append(place)

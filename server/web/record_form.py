@@ -10,10 +10,10 @@ from typing import Any, TypedDict
 from server import units
 from server.errors import Fault
 from server.library import ALL, PROPERTIES, Group, Link, Record, value_text
-from server.web import forms
+from server.web import form_fill, forms
 from server.web.evidence_fields import BOXES, LINKS, VALUE_UNITS
 from server.web.form_fields import GROUPS as ROWS
-from server.web.form_fields import PLAIN_UNITS, Box
+from server.web.form_fields import PLAIN_UNITS, UNITS, Box
 from server.web.form_text import with_unit
 
 _ELSEWHERE = ("name", "record", "revision", "status", "source", "note")
@@ -243,8 +243,7 @@ def content(
         }
     else:
         for box in _all(group):
-            text = _plain(at(values, box.place))
-            filled[box.name] = text + (_unit_after(at(values, box.place), box) if text else "")
+            filled[box.name] = form_fill.show(at(values, box.place), box.unit if box.unit in UNITS else "", system)
     filled |= {f"details.{name}": text for name, text in details.items()}
     return filled | {f"links.{role}": _link_text(target) for role, target in linked.items()}
 

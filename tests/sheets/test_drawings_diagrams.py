@@ -12,6 +12,7 @@ import pytest
 from server.errors import InputError
 from server.sheets import diagram_svg, flow_svg, joint_svg
 from server.sheets.diagrams import QUANTITIES, thinned, ticks
+from server.sheets.smooth import rounded
 from tests.sheets import drawing_fixtures as fixtures
 from tests.sheets.drawing_reading import collisions, letters, outside, polyline, root, texts
 
@@ -199,3 +200,16 @@ def test_combination_names_are_text_and_never_markup() -> None:
     result: dict[str, Any] = fixtures.strip()
     result["member"]["shear"]["combination_max"] = '<b onload="x">'
     assert any('<b onload="x">' in text for text in texts(diagram_svg(result, "shear")))
+
+
+def test_a_curve_is_drawn_round_between_its_samples_and_sharp_at_kinks_and_jumps() -> None:
+    x = np.array([0.0, 1, 2, 3, 3, 4, 5, 6])
+    y = np.array([0.0, 5, 8, 9, -1, 0, -1, -4])  # two parabolas with a jump between them
+    xs, ys = rounded(x, y)
+    first = xs < 3
+    assert ys[first] == pytest.approx(6 * xs[first] - xs[first] ** 2)
+    second = xs > 3
+    assert ys[second] == pytest.approx(-((xs[second] - 4) ** 2))
+    tent = np.array([0.0, 1, 2, 3, 2, 1, 0])
+    xs, ys = rounded(np.arange(7.0), tent)
+    assert ys == pytest.approx(np.interp(xs, np.arange(7.0), tent))

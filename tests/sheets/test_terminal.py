@@ -15,7 +15,7 @@ def test_the_verdict_comes_first_and_every_line_fits():
     text = terminal(fixture.result())
     lines = text.splitlines()
     assert lines[0] == "FAIL   utilisation 1.09"
-    assert lines[1].startswith("Deflection of the span 0 to 6000 mm, 1.09 of its limit")
+    assert lines[1].startswith("Deflection of the span 0 to 6000\u00a0mm: 1.09 of what is allowed")
     assert max(len(line) for line in lines) <= 80
     assert all(line == line.rstrip() for line in lines)
 
@@ -40,7 +40,10 @@ def test_numbers_of_the_result_are_in_it():
 def test_inch_pound_display_has_no_metric_result():
     text = flat(terminal(fixture.result(), "US"))
     assert "101.5" in text, "17.77 N/mm is 101.5 lbf/in"
-    assert "Deflection: 1.09 of what is allowed, 114.1 in from the left end, combination all" in text
+    assert (
+        "Deflection of the span 0 to 236.2 in: 1.09 of what is allowed, 114.1 in from the left end, combination all"
+        in text
+    )
     table = text[text.index("JOINTS") : text.index("CAUTIONS")]
     assert "N/mm" not in table
     assert "MPa" not in table

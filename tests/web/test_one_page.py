@@ -123,7 +123,9 @@ def test_a_fastener_goes_into_the_library_as_a_draft_that_names_its_sheet(client
     assert record["status"] == "draft"
     found = client.post("/api/checks/run", json=client.get("/checks/1/revisions/1/document.json").json()).json()
     assert "job J-7, N1 revision 1" in record["entry"]["source"]
-    assert float(str(record["entry"]["shear_resistance"]).split()[0]) == pytest.approx(found["shear_resistance"])
+    kept = str(record["entry"]["shear_resistance"]).split()[0]
+    assert len(kept.replace(".", "")) <= 5  # five digits, never more than was found
+    assert 0 <= found["shear_resistance"] - float(kept) <= 1e-4 * found["shear_resistance"]
 
 
 def test_what_is_not_proven_or_no_fastener_stays_out_of_the_library(client, job):

@@ -139,6 +139,6 @@ def test_what_is_missing_at_both_ends_is_said_once():
     from tests.checks.strips import changed
 
     result = checks.run(documents.read(changed(PLATE, materials__beam__strengths={"shear": 6})), working=False)
-    (line,) = [each for each in missing(result, "SI") if "ension_across" in each]
+    (line,) = [each for each in missing(result, "SI") if "ension across" in each]
     assert "surface of beam at the start of strip" in line
     assert "surface of beam at the end of strip" in line
