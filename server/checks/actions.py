@@ -2,9 +2,10 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterable, Sequence
+from collections.abc import Iterable, Sequence
 from dataclasses import dataclass, replace
 from functools import cached_property
+from itertools import pairwise
 
 import numpy as np
 from numpy.typing import NDArray
@@ -30,12 +31,12 @@ class Curve:
     names: tuple[str, ...]
     asked: list[tuple[float, float]] | None = None
     """Where axles move: collects the parts of the member that were asked for and not foreseen."""
-    known: Callable[[], Candidates] | None = None
-    """Gives the turning points where they are found together with those of other curves."""
+    among: Among | None = None
+    """Where it is one of several curves whose turning points and extremes are found together."""
 
     @cached_property
     def _candidates(self) -> Candidates:
-        return candidates(self.breaks, self.coefficients) if self.known is None else self.known()
+        return candidates(self.breaks, self.coefficients) if self.among is None else self.among.candidates()
 
     @cached_property
     def _found(self) -> dict[tuple[float, float], Extremes]:
@@ -55,6 +56,8 @@ class Curve:
         return found
 
     def _over(self, start: float, end: float) -> Extremes:
+        if self.among is not None and (start, end) in self.among.all.number:
+            return self.among.over(start, end)
         first, last = self._index.get(start), self._index.get(end)
         if first is None or last is None:
             return extremes(self.breaks, self.coefficients, start, end)
@@ -73,22 +76,55 @@ class Curve:
 
     @cached_property
     def whole(self) -> Extremes:
-        return self._found.setdefault((float(self.breaks[0]), float(self.breaks[-1])), self._candidates.over())
+        start, end = float(self.breaks[0]), float(self.breaks[-1])
+        return self._found.get((start, end)) or self._found.setdefault((start, end), self._over(start, end))
 
 
-class _Together:
-    """Curves whose turning points are found at once, when those of the first are asked for."""
+class Together:
+    """Curves whose turning points are found at once, and so are their extremes over foreseen parts of the member.
 
-    def __init__(self, breaks: NDArray[np.float64], curves: Sequence[NDArray[np.float64]]) -> None:
+    ``curves`` (rows, m, d) each, with its own d; ``parts`` from where to where, always with the whole member.
+    """
+
+    def __init__(
+        self,
+        breaks: NDArray[np.float64],
+        curves: Sequence[NDArray[np.float64]],
+        parts: Iterable[tuple[float, float]],
+    ) -> None:
         self.breaks, self.curves = breaks, curves
+        places = breaks.tolist()
+        index = {place: i for i, place in enumerate(places)}
+        known = dict.fromkeys([(places[0], places[-1]), *parts])
+        self.parts = {part: (index[part[0]], index[part[1]]) for part in known if {*part} <= index.keys()}
+        self.number = {part: number for number, part in enumerate(self.parts)}
 
     @cached_property
-    def _candidates(self) -> Candidates:
+    def candidates(self) -> Candidates:
+        """Of every curve, shape (curves, rows, m, q)."""
         return candidates_together(self.breaks, self.curves)
 
-    def of(self, place: int, rows: list[int]) -> Candidates:
-        found = self._candidates
-        return Candidates(found.values[place][rows], found.at[place][rows])
+    @cached_property
+    def extremes(self) -> Extremes:
+        """Of every curve over every part, shape (curves, rows, parts)."""
+        return self.candidates.over_each(list(self.parts.values()))
+
+
+@dataclass(frozen=True, eq=False)
+class Among:
+    """One of several curves: its place among ``all``, and which of their rows are its own."""
+
+    all: Together
+    place: int
+    rows: slice | list[int]
+
+    def candidates(self) -> Candidates:
+        found = self.all.candidates
+        return Candidates(found.values[self.place, self.rows], found.at[self.place, self.rows])
+
+    def over(self, start: float, end: float) -> Extremes:
+        """The extremes over a foreseen part."""
+        return self.all.extremes.of(self.place, self.rows, self.all.number[start, end])
 
 
 @dataclass(frozen=True, eq=False)
@@ -187,8 +223,7 @@ def act(document: documents.MemberDocument, body: Body, wants: moving.Wants | No
     creeps = any(part.material.creep is not None for part in body.parts)
     beams = [_beam(document, body, deform), *([_beam(document, body, deform, creep=True)] if creeps else [])]
     solved, *softened = _solve(beams, rows.loads)
-    long_term = _long_term(solved, softened[0], rows.factors, rows.shares) if softened else None
-    return _actions(document, rows, solved, long_term, deform)
+    return _actions(document, rows, solved, softened[0] if softened else None, deform, _parts(document, body))
 
 
 def added_after(document: documents.MemberDocument, actions: Actions, before: Sequence[str]) -> Actions:
@@ -207,7 +242,7 @@ def added_after(document: documents.MemberDocument, actions: Actions, before: Se
     factors, shares = actions.factors.copy(), actions.sustained.copy()
     factors[:, dropped] = shares[:, dropped] = 0.0
     rows = _Rows(written.combination, factors, shares, actions.case_loads, actions.moving)
-    return _actions(document, rows, actions.each_case, None, actions.shear_deformation)
+    return _actions(document, rows, actions.each_case, None, actions.shear_deformation, ())
 
 
 def _act_both_ways(document: documents.MemberDocument, body: Body) -> Actions:
@@ -223,19 +258,27 @@ def _act_both_ways(document: documents.MemberDocument, body: Body) -> Actions:
     soft: tuple[Response | None, Response | None] = (None, None)
     if any(part.material.creep is not None for part in body.parts):
         soft = sideways.solve_both(beam, body, rows.loads, across.loads, deform=deform, creep=True)
+    parts = _parts(document, body)
     down, right = (
-        _actions(document, of, hard, None if late is None else _long_term(hard, late, of.factors, of.shares), deform)
+        _actions(document, of, hard, late, deform, parts)
         for of, hard, late in zip((rows, across), solved, soft, strict=True)
     )
     return replace(down, across=right)
+
+
+def _parts(document: documents.MemberDocument, body: Body) -> list[tuple[float, float]]:
+    """The parts of the member that are asked about: its stretches, and what lies between supports and beyond them."""
+    marks = sorted({0.0, body.length, *(support.at for support in document.member.supports)})
+    return [*((stretch.start, stretch.end) for stretch in body.stretches), *pairwise(marks)]
 
 
 def _actions(
     document: documents.MemberDocument,
     rows: _Rows,
     solved: Response,
-    long_term: NDArray[np.float64] | None,
+    softened: Response | None,
     deform: bool,
+    parts: Sequence[tuple[float, float]],
 ) -> Actions:
     combinations = list(document.combinations.values())
     combined = solved.combine(rows.factors)
@@ -244,15 +287,17 @@ def _actions(
     strength = tuple(k for k, kind in enumerate(kinds) if kind in ("both", "strength"))
     deflection = tuple(k for k, kind in enumerate(kinds) if kind in ("both", "deflection"))
 
-    curves = [combined.shear, combined.moment, combined.deflection, *([] if long_term is None else [long_term])]
-    together = _Together(combined.breaks, curves)
+    curves = [combined.shear, combined.moment, combined.deflection]
+    if softened is not None:
+        curves.append(_long_term(combined, solved, softened, rows.shares))
+    together = Together(combined.breaks, curves, parts)
 
     def curve(place: int, chosen: tuple[int, ...], asked: list[tuple[float, float]] | None = None) -> Curve | None:
         if place >= len(curves) or not chosen:
             return None
-        rows = list(chosen)
+        own = slice(None) if len(chosen) == len(names) else list(chosen)
         picked = tuple(names[k] for k in chosen)
-        return Curve(combined.breaks, curves[place][rows], picked, asked, lambda: together.of(place, rows))
+        return Curve(combined.breaks, curves[place][own], picked, asked, Among(together, place, own))
 
     return Actions(
         names=names,
@@ -355,15 +400,16 @@ def _self_weight(body: Body) -> Iterable[LineLoad]:
 
 
 def _long_term(
-    solved: Response, soft: Response, factors: NDArray[np.float64], shares: NDArray[np.float64]
+    combined: Response, solved: Response, softened: Response, shares: NDArray[np.float64]
 ) -> NDArray[np.float64]:
-    """Deflection with the sustained part on the softened member (EN 1995-1-1:2004 2.2.3).
+    """Deflection with the sustained part on the softened member (EN 1995-1-1:2004 2.2.3), (rows, m, 6).
 
-    The sustained share is taken of the case itself, before the combination's factor, so the rest is
-    factor minus share.
+    The sustained share is taken of the case itself, before the combination's factor. What stays sags by that much more
+    than it does at once.
     """
-    short_part = np.tensordot(factors - shares, solved.deflection, 1)
-    return np.asarray(short_part + np.tensordot(shares, soft.deflection, 1))
+    creep = softened.deflection - solved.deflection
+    more = shares @ creep.reshape(len(creep), -1)
+    return combined.deflection + more.reshape(combined.deflection.shape)
 
 
 @dataclass(frozen=True)

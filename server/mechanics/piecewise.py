@@ -9,7 +9,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass
-from functools import cached_property, lru_cache
+from functools import lru_cache
 from math import comb
 from typing import Literal
 
@@ -28,31 +28,49 @@ EDGE = 1e-9  # a turning point this near an interval's end (share of the interva
 
 @dataclass(frozen=True)
 class Extremes:
-    """Greatest and least values and their places.
+    """Greatest, least and greatest absolute value of each curve, and their places.
 
     Parameters
     ----------
-    max, min : numpy.ndarray
-        Greatest and least value, one a curve [unit of the curve].
-    at_max, at_min : numpy.ndarray
-        Where [mm]; the leftmost place where several tie.
+    value, at : numpy.ndarray
+        The three values [unit of the curve] and where they are [mm], shape (3, ...); the leftmost place where several
+        tie.
     """
 
-    max: Array
-    at_max: Array
-    min: Array
-    at_min: Array
+    value: Array
+    at: Array
+
+    @property
+    def max(self) -> Array:
+        """Greatest value of each curve."""
+        found: Array = self.value[0]
+        return found
+
+    @property
+    def at_max(self) -> Array:
+        """Where each curve is greatest."""
+        found: Array = self.at[0]
+        return found
+
+    @property
+    def min(self) -> Array:
+        """Least value of each curve."""
+        found: Array = self.value[1]
+        return found
+
+    @property
+    def at_min(self) -> Array:
+        """Where each curve is least."""
+        found: Array = self.at[1]
+        return found
 
     def absolute(self) -> tuple[Array, Array]:
         """Return the greatest absolute value and its place; the leftmost place wins a tie."""
-        return self._absolute
+        return self.value[2], self.at[2]
 
-    @cached_property
-    def _absolute(self) -> tuple[Array, Array]:
-        high, low = np.abs(self.max), np.abs(self.min)
-        slack = TIE * np.maximum(high, low)
-        low_wins = (low > high + slack) | ((low >= high - slack) & (self.at_min < self.at_max))
-        return np.maximum(high, low), np.where(low_wins, self.at_min, self.at_max)
+    def of(self, *index: int | slice | list[int]) -> Extremes:
+        """Return the extremes of some of the curves: ``index`` as into an array of all of them."""
+        return Extremes(self.value[:, *index], self.at[:, *index])
 
 
 @dataclass(frozen=True)
@@ -79,18 +97,29 @@ class Candidates:
         flat = (*values.shape[:-2], values.shape[-2] * values.shape[-1])
         return _pick(values.reshape(flat), at.reshape(flat))
 
+    def over_each(self, parts: Sequence[tuple[int, int]]) -> Extremes:
+        """Return the extremes over the intervals first, ..., stop - 1 of each of n parts at once, shape (..., n)."""
+        *lead, m, q = self.values.shape
+        first, stop = np.array(parts).T[..., None] * q
+        slots = np.minimum(first + np.arange((stop - first).max()), stop - 1)  # a short part repeats its last place
+        flat = (*lead, m * q)
+        return _pick(self.values.reshape(flat)[..., slots], self.at.reshape(flat)[..., slots])
+
 
 def _pick(values: Array, at: Array) -> Extremes:
     """Return the extremes along the last axis, where ``at`` ascends."""
-    lead, n = values.shape[:-1], values.shape[-1]
-    values, at = values.reshape(-1, n), at.reshape(-1, n)
-    high, low = values.max(1), values.min(1)
-    slack = TIE * np.maximum(np.abs(high), np.abs(low))
-    row = np.arange(len(values))
-    top = (values >= (high - slack)[:, None]).argmax(1)
-    bottom = (values <= (low + slack)[:, None]).argmax(1)
-    found = (values[row, top], at[row, top], values[row, bottom], at[row, bottom])
-    return Extremes(*(part.reshape(lead) for part in found))
+    *lead, n = values.shape
+    signed = np.empty((3, *values.shape))
+    signed[0] = values
+    np.negative(values, out=signed[1])
+    np.abs(values, out=signed[2])
+    greatest = signed.max(-1)
+    least = greatest - TIE * greatest[2]
+    first = (signed >= least[..., None]).argmax(-1)
+    slot = first + np.arange(0, values.size, n).reshape(lead)
+    value = values.take(slot)
+    np.abs(value[2], out=value[2])
+    return Extremes(value, at.take(slot))
 
 
 def candidates(breaks: ArrayLike, coefficients: ArrayLike) -> Candidates:
