@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping, Sequence
+from collections.abc import Iterable, Mapping, Sequence
 from typing import Any
 
 import numpy as np
@@ -22,6 +22,7 @@ MOST_POINTS = 120
 LEAST_STEPS, MOST_STEPS = 4, 16
 ENVELOPE_STEPS = 8
 WIDEST_SEEN = 2000  # parts of the member's length: what is narrower than one is not seen
+Shown = slice | NDArray[np.intp]
 
 
 def drawing(document: documents.MemberDocument, body: Body, actions: Actions) -> dict[str, object]:
@@ -118,13 +119,12 @@ def diagrams(
 ) -> dict[str, object]:
     """Envelopes over the combinations as polylines; every interval keeps both its ends, so jumps stay upright."""
     breaks = actions.breaks
-    shown = _shown(breaks, body.length) if sliding is not None else np.arange(len(breaks) - 1)
-    widths = np.diff(breaks)[shown]
+    shown: Shown = slice(None) if sliding is None else _shown(breaks, body.length)
+    widths = (breaks[1:] - breaks[:-1])[shown]
     least = 2 if sliding is not None else LEAST_STEPS if actions.moving is None else ENVELOPE_STEPS
-    steps = int(np.clip(MOST_POINTS // len(widths), least, MOST_STEPS))
-    local = widths[:, None] * np.linspace(0.0, 1.0, steps)
+    steps = min(max(MOST_POINTS // len(widths), least), MOST_STEPS)
+    local = widths[:, None] * (np.arange(steps) / (steps - 1))
     at = breaks[:-1][shown, None] + local
-    found: dict[str, Any] = {"at": at.ravel().tolist()}
     curves = {
         "shear": actions.shear,
         "moment": actions.moment,
@@ -139,7 +139,11 @@ def diagrams(
             "deflection_lateral": across.sag,
             "deflection_lateral_long_term": across.long_term,
         }
-    found.update({name: _band(_sample(c.coefficients[:, shown], local)) for name, c in curves.items() if c is not None})
+    if twisted is not None and sliding is None:
+        curves["torque"] = twisted.torque
+    drawn = {name: curve.coefficients[:, shown] for name, curve in curves.items() if curve is not None}
+    high, low = _bands(list(drawn.values()), local)
+    found: dict[str, Any] = {"at": at.ravel().tolist(), **_named(drawn, high, low)}
     if actions.moving is not None and sliding is None:
         _widen(found, actions.moving.written.envelopes, at)
     if sliding is not None:
@@ -152,15 +156,13 @@ def diagrams(
             flows[site.id], slips[site.id] = _band(sign * q), _band(sign * slip)
         found["joints"], found["slips"] = flows, slips
     elif actions.shear is not None:
-        shear = np.stack([np.reshape(found["shear"][end], at.shape) for end in ("max", "min")])
-        if twisted is not None:
-            found["torque"] = _band(_sample(twisted.torque.coefficients, local))
         if twisted is not None or actions.across is not None:
             along = CombinedAlong(body, Scan(actions.shear, (), ()), actions.across, twisted)
             causes = [_sample(cause.coefficients, local) for cause in along.causes()]
             found["joints"] = {s.id: _combined(s, along, breaks, causes) for s in body.sites}
         else:
-            found["joints"] = {s.id: _flow(s, body, breaks, shear) for s in body.sites}
+            shear = np.reshape([found["shear"]["max"], found["shear"]["min"]], (2, 1, *at.shape))
+            found["joints"] = _named((site.id for site in body.sites), *(shear * _rates(body, breaks)[..., None]))
     return found
 
 
@@ -176,7 +178,7 @@ def _widen(found: dict[str, Any], envelopes: Mapping[str, Sequence[Envelope]], a
             band["min"] = np.minimum(band["min"], low).tolist()
 
 
-def _sense(actions: Actions, slip: NDArray[np.float64], shown: NDArray[np.intp], local: NDArray[np.float64]) -> float:
+def _sense(actions: Actions, slip: NDArray[np.float64], shown: Shown, local: NDArray[np.float64]) -> float:
     """The sign that draws a slip the way of the shear force, whichever piece a joint names first."""
     if actions.shear is None:
         return 1.0
@@ -191,36 +193,59 @@ def _shown(breaks: NDArray[np.float64], length: float) -> NDArray[np.intp]:
 
 def _sample(coefficients: NDArray[np.float64], local: NDArray[np.float64]) -> NDArray[np.float64]:
     """Values (combinations, intervals, steps) of piecewise polynomials at local coordinates (Horner)."""
-    value = np.zeros((coefficients.shape[0], *local.shape))
+    value = np.zeros((len(coefficients), *local.shape))
     for power in range(coefficients.shape[2] - 1, -1, -1):
-        value = value * local + coefficients[:, :, power, None]
+        value *= local
+        value += coefficients[:, :, power, None]
     return value
+
+
+def _bands(
+    curves: Sequence[NDArray[np.float64]], local: NDArray[np.float64]
+) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
+    """Greatest and least values over the combinations of n curves, all sampled at once: (n, intervals, steps) each."""
+    first = np.cumsum([0, *(len(curve) for curve in curves)])
+    padded = np.zeros((first[-1], len(local), max((curve.shape[-1] for curve in curves), default=1)))
+    for low, high, curve in zip(first, first[1:], curves, strict=False):
+        padded[low:high, :, : curve.shape[-1]] = curve
+    values = _sample(padded, local)
+    return np.maximum.reduceat(values, first[:-1]), np.minimum.reduceat(values, first[:-1])
 
 
 def _band(values: NDArray[np.float64]) -> dict[str, list[float]]:
     return {"max": values.max(axis=0).ravel().tolist(), "min": values.min(axis=0).ravel().tolist()}
 
 
-def _flow(site: Site, body: Body, breaks: NDArray[np.float64], shear: NDArray[np.float64]) -> dict[str, list[float]]:
-    """Flow per interval: shear x the joint's share there; none where the joint is not."""
-    middles = 0.5 * (breaks[:-1] + breaks[1:])
-    rate = np.zeros(len(middles))
-    for stretch in body.stretches:
-        flow = stretch.section.flows.get(site.index)
-        if flow is not None and flow.share is not None:
-            inside = (middles > stretch.start) & (middles < stretch.end)
-            rate[inside] = abs(flow.share) / stretch.section.properties.EI
-    return _band(shear * rate[:, None])
+def _named(
+    names: Iterable[str], high: NDArray[np.float64], low: NDArray[np.float64]
+) -> dict[str, dict[str, list[float]]]:
+    """The bands (n, intervals, steps) as plain numbers by name."""
+    both = (band.reshape(len(band), band.shape[1] * band.shape[2]).tolist() for band in (high, low))
+    return {name: {"max": most, "min": least} for name, most, least in zip(names, *both, strict=True)}
+
+
+def _own(body: Body, breaks: NDArray[np.float64]) -> NDArray[np.intp]:
+    """The number of the stretch that each interval lies on."""
+    ends = [stretch.end for stretch in body.stretches[:-1]]
+    return np.searchsorted(ends, 0.5 * (breaks[:-1] + breaks[1:]))
+
+
+def _rates(body: Body, breaks: NDArray[np.float64]) -> NDArray[np.float64]:
+    """Flow per shear of every joint on every interval, (joints, intervals); none where the joint is not."""
+    rates = np.zeros((len(body.stretches), len(body.sites)))
+    for each, stretch in zip(rates, body.stretches, strict=True):
+        for place, site in enumerate(body.sites):
+            flow = stretch.section.flows.get(site.index)
+            if flow is not None and flow.share is not None:
+                each[place] = abs(flow.share) / stretch.section.properties.EI
+    return rates[_own(body, breaks)].T
 
 
 def _combined(
     site: Site, along: CombinedAlong, breaks: NDArray[np.float64], causes: Sequence[NDArray[np.float64]]
 ) -> dict[str, list[float]]:
     """Flow per interval from all causes, with signs."""
-    middles = 0.5 * (breaks[:-1] + breaks[1:])
-    rate = np.zeros((len(causes), len(middles)))
-    for stretch in along.body.stretches:
-        inside = (middles > stretch.start) & (middles < stretch.end)
-        rate[:, inside] = np.reshape(along.rates(site, stretch) or (0.0,) * len(causes), (-1, 1))
-    flow = np.asarray(sum(cause * own[:, None] for cause, own in zip(causes, rate, strict=True)))
+    rates = np.array([along.rates(site, stretch) or (0.0,) * len(causes) for stretch in along.body.stretches])
+    own = rates[_own(along.body, breaks)].T
+    flow = np.asarray(sum(cause * rate[:, None] for cause, rate in zip(causes, own, strict=True)))
     return _band(-flow if float((flow * causes[0]).sum()) < 0 else flow)  # drawn the way of the shear force
