@@ -16,7 +16,7 @@ from collections.abc import Callable, Mapping
 from typing import Any
 
 from server.working import names, numbers
-from server.working.formula import shown_terms
+from server.working.compiled import shown_terms
 from server.working.grammar import PRECEDENCE, Binary, Call, Name, Negative, Node, Number
 
 Layout = list[Any]

@@ -24,7 +24,7 @@ from server.errors import InputError
 from server.working import mathml as _mathml
 from server.working import names, numbers
 from server.working import plain as _plain
-from server.working.formula import Ordered, ordered
+from server.working.formula import Lists, Ordered, lists_among, ordered
 from server.working.layout import Layout, breakable, number, spread, symbol, symbolic, with_numbers
 
 Step = dict[str, Any]
@@ -79,18 +79,17 @@ class Working:
         """
         given: list[float | list[float]] = []
         kept: dict[str, dict[str, Any]] = {}
-        lists = _NO_LISTS
+        lists: Lists = ()
         for name, (each, its_unit) in values.items():
             if type(each) is float and isfinite(each):
                 taken: float | list[float] = each
             else:
                 taken = _plain_numbers(name, each, title)
                 if isinstance(taken, list):
-                    lists = lists | {name}
+                    lists += ((name, len(taken)),)
             given.append(taken)
             kept[name] = {"value": taken, "unit": its_unit}
         known = ordered(text, tuple(values), lists)
-        count = known.count(given) if lists else 0
         value = _evaluate(known, given, symbol, title)
         if self.record:
             self.steps.append(
@@ -98,7 +97,7 @@ class Working:
                     "title": title,
                     "symbol": symbol,
                     "formula": known.formula.text,
-                    "substituted": _line(known, given, count, value)[1],
+                    "substituted": _line(known, given, value)[1],
                     "value": value,
                     "unit": unit,
                     "source": source,
@@ -151,7 +150,7 @@ def _plain_numbers(name: str, given: Any, title: str) -> float | list[float]:
         if not isfinite(scalar):
             raise InputError(name, _not_finite(name, given, title))
         return scalar
-    taken = [float(each) for each in given]
+    taken = list(map(float, given))
     if not all(map(isfinite, taken)):
         position = next(i for i, each in enumerate(taken) if not isfinite(each))
         raise InputError(name, _not_finite(f"{name}_{position + 1}", taken[position], title))
@@ -177,15 +176,14 @@ def _no_answer(known: Ordered, symbol: str, title: str, why: str) -> str:
     )
 
 
-def _line(known: Ordered, given: Sequence[float | list[float]], count: int, value: float) -> tuple[int, str]:
+def _line(known: Ordered, given: Sequence[float | list[float]], value: float) -> tuple[int, str]:
     """How many digits the numbers must show so that the printed line gives the printed value, and that line."""
-    read = known.reader(count)
     printed = numbers.IN_LINE[numbers.DIGITS]
     target = printed[value][0]
     line = ""
     for digits, written in numbers.IN_LINE.items():
         try:
-            reached, line = read(written, *given)
+            reached, line = known.read(written, *given)
             if printed[reached][0] == target:
                 return digits, line
         except (ArithmeticError, ValueError, TypeError):
@@ -218,18 +216,16 @@ def shown(step: Mapping[str, Any], display: str = "SI") -> Shown:
         found = None if step["value"] is None else number(step["value"] * factor)
         return Shown(head, None, None, found, numbers.readable_unit(unit))
     values: dict[str, float | list[float]] = {name: each["value"] for name, each in step["values"].items()}
-    lists = frozenset(name for name, each in values.items() if isinstance(each, list))
-    known = ordered(step["formula"], tuple(values), lists)
+    known = ordered(step["formula"], tuple(values), lists_among(values))
     given, value, unit = _in_units(step, known, display)
-    count = known.count(given)
-    digits = _line(known, given, count, value)[0]
+    digits = _line(known, given, value)[0]
     named = dict(zip(values, given, strict=True))
-    with_values = with_numbers(known.formula.tree, named, lists, count, digits)
+    with_values = with_numbers(known.formula.tree, named, known.lists, known.count, digits)
     repeats = spread(with_values) == [number(value)]
     says_itself = known.formula.trivial and known.formula.names <= {step["symbol"]}
     return Shown(
         head,
-        None if says_itself else symbolic(known.formula.tree, lists),
+        None if says_itself else symbolic(known.formula.tree, known.lists),
         None if repeats else with_values,
         number(value),
         numbers.readable_unit(unit),

@@ -40,7 +40,7 @@ def expected(case, name):
 
 
 def evaluate(text, **values):
-    return formula(text).value(values, frozenset())
+    return formula(text).value(values)
 
 
 def value(case, name):
