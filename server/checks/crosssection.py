@@ -295,6 +295,38 @@ class Stretch:
     section: CrossSection
 
 
+@dataclass(frozen=True, eq=False)
+class Run:
+    """Parts that run along the same stretches, with what the formulas of their stresses ask of the sections."""
+
+    parts: Sequence[Part]
+    along: tuple[int, ...]
+    stretches: Sequence[Stretch]
+
+    @cached_property
+    def bending(self) -> dict[str, NDArray[np.float64]]:
+        """E, u, u_0 and EI, (parts, fibres, stretches, extremes, combinations); fibres: top, bottom, centroid."""
+        sections = [stretch.section for stretch in self.stretches]
+        heights = [[(p.top, p.bottom, section.centroids[p.index]) for section in sections] for p in self.parts]
+        return {
+            "E": np.array([part.material.E for part in self.parts])[:, None, None, None, None],
+            "u": np.array(heights).swapaxes(1, 2)[..., None, None],
+            "u_0": np.array([section.properties.neutral_axis[1] for section in sections])[:, None, None],
+            "EI": np.array([section.properties.EI for section in sections])[:, None, None],
+        }
+
+    @cached_property
+    def shearing(self) -> dict[str, NDArray[np.float64]]:
+        """S, b and EI of the cut through each part where its shear is largest, (parts, stretches, combinations)."""
+        sections = [stretch.section for stretch in self.stretches]
+        cuts = [[section.cuts[part.index] for section in sections] for part in self.parts]
+        return {
+            "S": np.array([[[abs(cut.first_moment)] for cut in own] for own in cuts]),
+            "b": np.array([[[cut.width] for cut in own] for own in cuts]),
+            "EI": np.array([[section.properties.EI] for section in sections]),
+        }
+
+
 @dataclass(frozen=True)
 class Body:
     """The whole member: its parts, joints, contacts, and stretches from left to right."""
@@ -309,6 +341,14 @@ class Body:
     def sections(self) -> list[CrossSection]:
         """Every section once, from left to right."""
         return list({id(stretch.section): stretch.section for stretch in self.stretches}.values())
+
+    @cached_property
+    def runs(self) -> list[Run]:
+        """The parts in groups that run along the same stretches."""
+        found: dict[tuple[int, ...], list[Part]] = {}
+        for part in self.parts:
+            found.setdefault(tuple(t for t, _ in self.stretches_of(part)), []).append(part)
+        return [Run(parts, along, [self.stretches[t] for t in along]) for along, parts in found.items() if along]
 
     def stretches_of(self, part: Part) -> list[tuple[int, Stretch]]:
         return [(i, s) for i, s in enumerate(self.stretches) if part.start <= s.start and part.end >= s.end]

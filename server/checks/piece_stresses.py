@@ -68,34 +68,18 @@ def shear(body: Body, scan: Scan, actions: Actions, slide: Slide | None, twist: 
 
 
 def _bend(body: Body, scan: Scan) -> dict[int, Bent]:
-    """Normal stresses of every piece: one evaluation a stretch, for all pieces, fibres, extremes and combinations."""
+    """One evaluation for all pieces along the same stretches: fibres, stretches, extremes and combinations."""
     found: dict[int, Bent] = {}
-    for t, (stretch, extremes) in enumerate(zip(body.stretches, scan.moment, strict=False)):
-        parts, whole = stretch.section.parts, stretch.section.properties
-        moment, at = np.array([extremes.max, extremes.min]), np.array([extremes.at_max, extremes.at_min])
-        stress = formula(BENDING).array(
-            {
-                "E": np.array([p.material.E for p in parts])[:, None, None, None],
-                "M": moment,
-                "u": np.array([heights(p, stretch) for p in parts])[:, :, None, None],
-                "u_0": whole.neutral_axis[1],
-                "EI": whole.EI,
-            }
-        )
-        where = np.full(2, t, dtype=np.intp)
-        for part, own in zip(parts, stress, strict=True):
-            here = Bent(own, moment, at, where)
-            found[part.index] = _longer(found[part.index], here) if part.index in found else here
+    for run in body.runs if scan.moment else ():
+        extremes = [scan.moment[t] for t in run.along]
+        moment = np.array([[each.max, each.min] for each in extremes])
+        at = np.array([[each.at_max, each.at_min] for each in extremes])
+        stress = formula(BENDING).array({"M": moment, **run.bending})
+        entries = (2 * len(run.along), moment.shape[2])
+        stress, moment, at = stress.reshape(-1, 3, *entries), moment.reshape(entries), at.reshape(entries)
+        where = np.array(run.along, dtype=np.intp).repeat(2)
+        found |= {part.index: Bent(own, moment, at, where) for part, own in zip(run.parts, stress, strict=True)}
     return found
-
-
-def _longer(left: Bent, right: Bent) -> Bent:
-    return Bent(
-        np.concatenate([left.stress, right.stress], axis=1),
-        np.concatenate([left.moment, right.moment]),
-        np.concatenate([left.at, right.at]),
-        np.concatenate([left.stretch, right.stretch]),
-    )
 
 
 def heights(part: Part, stretch: Stretch) -> tuple[float, float, float]:
@@ -104,24 +88,12 @@ def heights(part: Part, stretch: Stretch) -> tuple[float, float, float]:
 
 
 def _shear(body: Body, scan: Scan) -> dict[int, Sheared]:
-    """Largest shear stress on a horizontal cut through every piece: one evaluation a stretch for all pieces."""
-    rows: dict[int, list[tuple[NDArray[np.float64], NDArray[np.float64], NDArray[np.float64], int]]] = {}
-    for t, (stretch, (shear, at)) in enumerate(zip(body.stretches, scan.shear, strict=False)):
-        cuts = list(stretch.section.cuts.items())
-        stress = formula(SHEAR).array(
-            {
-                "V": shear,
-                "S": np.array([[abs(cut.first_moment)] for _, cut in cuts]),
-                "b": np.array([[cut.width] for _, cut in cuts]),
-                "EI": stretch.section.properties.EI,
-            }
-        )
-        for (index, _), own in zip(cuts, stress, strict=True):
-            rows.setdefault(index, []).append((own, shear, at, t))
-    found = {}
-    for index, each in rows.items():
-        stresses, shears, places, stretches = zip(*each, strict=True)
-        found[index] = Sheared(np.array(stresses), np.array(shears), np.array(places), stretches)
+    """Largest shear stress on a horizontal cut through every piece, for all pieces along the same stretches at once."""
+    found: dict[int, Sheared] = {}
+    for run in body.runs if scan.shear else ():
+        shear, at = (np.array(each) for each in zip(*(scan.shear[t] for t in run.along), strict=True))
+        stress = formula(SHEAR).array({"V": shear, **run.shearing})
+        found |= {part.index: Sheared(own, shear, at, run.along) for part, own in zip(run.parts, stress, strict=True)}
     return found
 
 
@@ -174,6 +146,15 @@ def _bend_sliding(body: Body, slide: Slide) -> dict[int, Bent]:
             here = Bent(stress, np.zeros_like(at), at, np.full(len(at), t, dtype=np.intp))
             found[part.index] = _longer(found[part.index], here) if part.index in found else here
     return found
+
+
+def _longer(left: Bent, right: Bent) -> Bent:
+    return Bent(
+        np.concatenate([left.stress, right.stress], axis=1),
+        np.concatenate([left.moment, right.moment]),
+        np.concatenate([left.at, right.at]),
+        np.concatenate([left.stretch, right.stretch]),
+    )
 
 
 def _shear_sliding(body: Body, slide: Slide) -> dict[int, Sheared]:

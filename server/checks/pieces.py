@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Iterable, Iterator, Sequence
 from dataclasses import dataclass, field
-from typing import NamedTuple, TypeVar
+from typing import TypeVar
 
 import numpy as np
 from numpy.typing import NDArray
@@ -39,15 +39,8 @@ class PieceCheck:
     demands: list[tuple[str, NDArray[np.float64]]] = field(default_factory=list)
 
 
-class Asked(NamedTuple):
-    """What one strength of a piece is set against, one entry a strength combination, with the place and stretch."""
-
-    word: str
-    demand: NDArray[np.float64]
-    at: NDArray[np.float64]
-    stretch: NDArray[np.intp]
-
-
+Asked = tuple[str, NDArray[np.float64], NDArray[np.float64], NDArray[np.intp]]
+"""A strength of a piece and what it is set against, an entry a strength combination, with place and stretch of each."""
 Stress = TypeVar("Stress", Bent, Sheared)
 EXTREME, PULLED, PRESSED, MEAN_PULLED, MEAN_PRESSED = range(5)  # the rows of ``_sizes``
 
@@ -120,17 +113,16 @@ def _bending(checks: Sequence[PieceCheck]) -> dict[int, list[Asked]]:
     """What the strengths of all pieces against normal stress are set against, by the piece's index."""
     found: dict[int, list[Asked]] = {}
     for alike in _alike([(check, check.bent) for check in checks if check.bent is not None]):
-        bents = [bent for _, bent in alike]
-        stress = np.array([bent.stress for bent in bents]).swapaxes(0, 1)
-        ranges = [bent.range for bent in bents if bent.range is not None]
+        (_, first), ranges = alike[0], [bent.range for _, bent in alike if bent.range is not None]
+        stress = np.array([bent.stress for _, bent in alike]).swapaxes(0, 1)
         sizes = _sizes(stress, np.array(ranges).swapaxes(0, 1) if ranges else None)
-        demand, at, stretch = _hardest(sizes, np.array([b.at for b in bents]), np.array([b.stretch for b in bents]))
+        demand, at, stretch = _hardest(sizes, first.at, first.stretch)
         most, demand = demand.max(axis=-1).tolist(), np.maximum(demand, 0.0)
         for i, (check, _) in enumerate(alike):
             looked_at = _looked_at(check.part)
             check.demands = [(word, sizes[k, i]) for word, k in looked_at]
             found[check.part.index] = [
-                Asked(word, demand[k, i], at[k, i], stretch[k, i])
+                (word, demand[k, i], at[k, i], stretch[k, i])
                 for word, k in looked_at
                 if most[k][i] > 0  # else never in tension, or never in compression: nothing to judge
             ]
@@ -141,34 +133,29 @@ def _shearing(checks: Sequence[PieceCheck]) -> dict[int, Asked]:
     """What the shear strengths of all pieces are set against, by the piece's index."""
     found: dict[int, Asked] = {}
     for alike in _alike([(check, check.sheared) for check in checks if check.sheared is not None]):
-        each = [sheared for _, sheared in alike]
-        stretches = np.array([sheared.stretch for sheared in each], dtype=np.intp)
-        stress = np.array([[sheared.stress for sheared in each]])
-        demand, at, stretch = _hardest(stress, np.array([sheared.at for sheared in each]), stretches)
+        first = alike[0][1]
+        stress = np.array([sheared.stress for _, sheared in alike])
+        demand, at, stretch = _hardest(stress, first.at, np.array(first.stretch, dtype=np.intp))
         for i, (check, _) in enumerate(alike):
             word = "rolling_shear" if check.part.body_rolls else "shear"
-            found[check.part.index] = Asked(word, demand[0, i], at[0, i], stretch[0, i])
+            found[check.part.index] = (word, demand[i], at[i], stretch[i])
     return found
 
 
 def _alike(stressed: Sequence[tuple[PieceCheck, Stress]]) -> Iterable[list[tuple[PieceCheck, Stress]]]:
-    """The pieces in groups that have as many entries each, so that arrays hold them all."""
+    """The pieces in groups whose entries stand at the same places."""
     groups: dict[int, list[tuple[PieceCheck, Stress]]] = {}
     for check, stress in stressed:
-        groups.setdefault(len(stress.at), []).append((check, stress))
+        groups.setdefault(id(stress.at), []).append((check, stress))
     return groups.values()
 
 
 def _hardest(
-    sizes: NDArray[np.float64], places: NDArray[np.float64], stretches: NDArray[np.intp]
+    sizes: NDArray[np.float64], at: NDArray[np.float64], stretch: NDArray[np.intp]
 ) -> tuple[NDArray[np.float64], NDArray[np.float64], NDArray[np.intp]]:
-    """The largest of several entries, with its place and stretch: (ways, pieces, combinations) each.
-
-    ``sizes`` (ways, pieces, entries, combinations), ``places`` without the ways, ``stretches`` (pieces, entries).
-    """
-    entry = sizes.argmax(axis=2)
-    piece = np.arange(entry.shape[1])[:, None]
-    return sizes.max(axis=2), places[piece, entry, np.arange(entry.shape[2])], stretches[piece, entry]
+    """The largest of several entries (..., entries, combinations), with its place and stretch."""
+    entry = sizes.argmax(axis=-2)
+    return sizes.max(axis=-2), at[entry, np.arange(entry.shape[-1])], stretch[entry]
 
 
 def _sizes(stress: NDArray[np.float64], highest: NDArray[np.float64] | None) -> NDArray[np.float64]:
@@ -215,15 +202,16 @@ def _bending_claims(part: Part, asked: Sequence[Asked], judge: Judge) -> Iterato
 
 
 def _shear_claim(part: Part, asked: Asked, judge: Judge) -> Iterator[Claim]:
-    spoken = asked.word.replace("_", " ")
-    strength = piece_strength(part, asked.word, f"{spoken} in {part.name}", judge)
+    word, demand, at, stretch = asked
+    spoken = word.replace("_", " ")
+    strength = piece_strength(part, word, f"{spoken} in {part.name}", judge)
     if strength is None:
         judge.findings.miss(
             f"{spoken} strength of {part.spec.material!r} (piece {part.name}): the material's record, from its grade "
             "or from tests."
         )
         return
-    yield Claim(strength, "tau", asked.demand, asked.at, asked.stretch)
+    yield Claim(strength, "tau", demand, at, stretch)
 
 
 def piece_strength(part: Part, word: str, what: str, judge: Judge) -> Strength | None:
