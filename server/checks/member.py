@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
 
 from pydantic import BaseModel
 
@@ -17,15 +16,16 @@ from server.checks.cautions import NOT_CHECKED, add_cautions
 from server.checks.combined_flow import CombinedAlong
 from server.checks.contours import Look, contours
 from server.checks.crosssection import Body, CrossSection, build
-from server.checks.deflection import Sag, check_deflection, more_deflection
+from server.checks.deflection import check_deflection, more_deflection
 from server.checks.drawing import diagrams, drawing
 from server.checks.fall_back import FallBack, glue_gone, judge_fall_back
 from server.checks.field_steps import write_fields
 from server.checks.fits import refuse_misfits
 from server.checks.gamma import write_annex_b
+from server.checks.governing import Governing, governing_limit
 from server.checks.holds import holds
 from server.checks.joints import Flows, JointCheck, claim_joints, write_joint
-from server.checks.member_ends import MemberEnds, after_bonding, check_ends
+from server.checks.member_ends import after_bonding, check_ends
 from server.checks.member_lasting import check_lasting
 from server.checks.pieces import PieceCheck, claim_pieces, write_piece
 from server.checks.places import Places
@@ -45,15 +45,6 @@ from server.checks.twist import Twist, twist
 from server.working import Working, exceeds
 
 PSI = 4.4482216152605 / 25.4**2  # MPa: pound-force and inch are defined (NIST SP 811)
-
-
-@dataclass(frozen=True)
-class Candidate:
-    """One limit that could govern."""
-
-    utilisation: float
-    line: str
-    section: CrossSection
 
 
 def run(document: documents.MemberDocument, *, working: bool = True, look: Look | None = None) -> dict[str, object]:
@@ -124,7 +115,7 @@ def _round(
     add_cautions(document, body, actions, joints, findings)
     moving_rounds.caution(actions, findings)
     slides = [each for each in (sliding, None if flows.gone is None else flows.gone.slide) if each is not None]
-    governing = _governing(body, judge, joints, pieces, sags, fall_back, ends)
+    governing = governing_limit(body, judge, joints, pieces, sags, fall_back, ends)
     drawn = governing.section if governing else body.stretches[0].section
     result = {
         "format": document.format,
@@ -262,55 +253,7 @@ def _in_groups(weighed: Sequence[Weighed | None], claimed: Sequence[Sequence[Cla
     return [[next(found) for _ in claims] for claims in claimed]
 
 
-def _governing(
-    body: Body,
-    judge: Judge,
-    joints: Sequence[JointCheck],
-    pieces: Sequence[PieceCheck],
-    sags: Sequence[Sag],
-    fall_back: FallBack | None,
-    ends: MemberEnds,
-) -> Candidate | None:
-    candidates = [
-        Candidate(
-            c.governing.utilisation,
-            f"{word} {c.result['id']}: {c.governing.claim.strength.what}{_state(c)}, {c.governing.utilisation:.3g} of "
-            f"its resistance used {judge.places.words(c.governing.at)}, combination "
-            f"{judge.actions.strength_names[c.governing.row]}",
-            body.stretches[c.governing.stretch].section,
-        )
-        for word, group in (("joint", joints), ("piece", pieces))
-        for c in group
-        if c.governing is not None
-    ]
-    if fall_back is not None and fall_back.utilisation is not None:
-        candidates.append(Candidate(fall_back.utilisation, fall_back.line, body.stretches[0].section))
-    for each in ends.governs:
-        section = next(s.section for s in body.stretches if each.at <= s.end)
-        candidates.append(Candidate(each.utilisation, each.line, section))
-    for sag in sags:
-        result = sag.result
-        at = float(str(result["at"]))
-        section = next(s.section for s in body.stretches if at <= s.end)
-        term = "long-term deflection" if result["long_term"] else "deflection"
-        candidates.append(
-            Candidate(
-                sag.utilisation,
-                f"{term} of the {result['kind']} {result['from']:g} to {result['to']:g} mm, {sag.utilisation:.3g} of "
-                f"its limit used {judge.places.words(at)}, combination {result['combination']}",
-                section,
-            )
-        )
-    return max(candidates, key=lambda c: float(f"{c.utilisation:.12g}"), default=None)  # of equals the first
-
-
-def _state(check: JointCheck | PieceCheck) -> str:
-    """With the glue gone, where that is what governs a joint."""
-    gone = isinstance(check, JointCheck) and check.gone is not None
-    return " with the glue gone" if gone and check.governing and check.governing.claim.symbol in ("F", "F_r") else ""
-
-
-def _verdict(governing: Candidate | None, findings: Findings) -> dict[str, object]:
+def _verdict(governing: Governing | None, findings: Findings) -> dict[str, object]:
     """Fail where a utilisation exceeds 1; else not proven where anything is missing; else pass."""
     if governing is not None and exceeds(governing.utilisation):
         verdict = "fail"

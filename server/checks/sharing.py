@@ -29,18 +29,17 @@ WORDS = {
 
 def sharing(site: Site, stretch: Stretch) -> Sharing:
     """How the joint's two sides share over one stretch."""
-    across, up = np.abs(np.asarray(site.contact.end, dtype=float) - np.asarray(site.contact.start, dtype=float))
-    if across >= up:
+    (left, low), (right, high) = site.contact.start.tolist(), site.contact.end.tolist()
+    if abs(right - left) >= abs(high - low):
         return "stacked"
     flow = stretch.section.flows.get(site.index)
     if flow is None or flow.split is None or not flow.cut_off:
         return "upright"
     section = stretch.section.properties
-    pieces = section.pieces
-    E = np.array([piece.E for piece in stretch.section.pieces])
-    inside = list(flow.cut_off)
-    weight = E[inside] * pieces.area[inside]
-    arm = abs(float(weight @ (pieces.centroid[inside, 1] - section.neutral_axis[1]) / weight.sum()))
+    areas, heights = section.pieces.area.tolist(), section.pieces.centroid[:, 1].tolist()
+    weights = [(stretch.section.pieces[i].E * areas[i], heights[i]) for i in flow.cut_off]
+    centre = sum(weight * height for weight, height in weights) / sum(weight for weight, _ in weights)
+    arm = abs(centre - float(section.neutral_axis[1]))
     depth = max(part.top for part in stretch.section.parts) - min(part.bottom for part in stretch.section.parts)
     return "side by side" if arm <= CENTRED * depth else "upright"
 

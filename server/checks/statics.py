@@ -6,12 +6,14 @@ that a reader can follow them with a pocket calculator.
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass
+from typing import NamedTuple
 
 from server import documents
 from server.checks.actions import GRAVITY, Actions, Peak, largest
 from server.checks.crosssection import Body, CrossSection
-from server.mechanics.beam import Couple, LineLoad, PointLoad
+from server.mechanics.beam import Couple, LineLoad
 from server.working import Working
 from server.working.record import Given
 
@@ -21,8 +23,11 @@ SHEAR = "sum(F)"
 MOMENT = "sum(F*(x - a)) - C"
 
 
-@dataclass(frozen=True)
-class Resultants:
+Placed = tuple[float, float]
+"""A place along the member, and the force or couple there."""
+
+
+class Resultants(NamedTuple):
     """Forces of one combination at their places, and the sum of its couples, up to a place along the member."""
 
     force: list[float]
@@ -183,7 +188,7 @@ class Statics:
         actions, supports = self.actions, sorted(self.document.member.supports, key=lambda s: s.at)
         name, group = actions.labels[k], self.words.group
         word, (R, _, _) = self.words.reaction, self.words.symbols
-        whole = self._resultants(k, self.body.length, inclusive=True)
+        whole = _resultants(*self._up_to(k, self.body.length))
         if len(supports) == 2 and not self.document.member.hinges and all(s.kind != "fixed" for s in supports):
             first, second = supports
             first_of, second_of = (f"{R}{n}" if "_" in R else f"{R}_{n}" for n in (1, 2))
@@ -235,20 +240,15 @@ class Statics:
         )  # fmt: skip
 
     def _both_sides(self, k: int, at: float) -> list[Resultants]:
-        return [self._left(k, at, inclusive) for inclusive in (False, True)]
-
-    def _left(self, k: int, at: float, inclusive: bool) -> Resultants:
-        """Upward forces left of a place; at the left end what stands there always counts."""
-        inclusive = inclusive or at <= 0
-        loads = self._resultants(k, at, inclusive)
-        force, places, couple = [], [], loads.couple
-        for place, held, turned in self._reactions_of(k):
-            if place < at or (inclusive and place == at):
-                force.append(held)
-                places.append(place)
-                couple += turned
-        force += [-each for each in loads.force]
-        return Resultants(force or [0.0], places + loads.at or [0.0], couple)
+        """Upward forces left of a place, without and with what stands there; at the left end that always counts."""
+        forces, couples = self._up_to(k, at)
+        held = [each for each in self._reactions_of(k) if each[0] <= at]
+        upward = [(place, force) for place, force, _ in held] + [(place, -force) for place, force in forces]
+        couples += [(place, turned) for place, _, turned in held]
+        both = [(upward, couples)]
+        if at > 0:
+            both.insert(0, ([each for each in upward if each[0] < at], [each for each in couples if each[0] < at]))
+        return [_resultants(forces or [(0.0, 0.0)], couples) for forces, couples in both]
 
     def _reactions_of(self, k: int) -> list[tuple[float, float, float]]:
         """Place, force and couple of every support in one combination."""
@@ -259,31 +259,29 @@ class Statics:
             self._held[k] = list(zip(places, forces, couples, strict=True))
         return self._held[k]
 
-    def _resultants(self, k: int, at: float, inclusive: bool) -> Resultants:
-        forces: list[float] = []
-        places: list[float] = []
-        couple = 0.0
+    def _up_to(self, k: int, at: float) -> tuple[list[Placed], list[Placed]]:
+        """Downward forces and couples of one combination, left of a place and at it."""
+        forces: list[Placed] = []
+        couples: list[Placed] = []
         for factor, loads in zip(self.actions.factors[k].tolist(), self.actions.case_loads, strict=True):
             if factor == 0:
                 continue
             for load in loads:
-                if isinstance(load, PointLoad | Couple):
-                    if not (load.at < at or (inclusive and load.at == at)):
-                        continue
-                    if isinstance(load, Couple):
-                        couple += factor * load.value
-                    else:
-                        forces.append(factor * load.value)
-                        places.append(load.at)
-                elif load.start < at:
-                    for force, place in _line_resultants(load, at):
-                        forces.append(factor * force)
-                        places.append(place)
-        return Resultants(forces, places, couple)
+                if isinstance(load, LineLoad):
+                    if load.start < at:
+                        forces += [(place, factor * force) for place, force in _line_resultants(load, at)]
+                elif load.at <= at:
+                    (couples if isinstance(load, Couple) else forces).append((load.at, factor * load.value))
+        return forces, couples
 
 
-def _line_resultants(load: LineLoad, at: float) -> list[tuple[float, float]]:
-    """Forces and centroids of the part of a line load left of a place.
+def _resultants(forces: Sequence[Placed], couples: Sequence[Placed]) -> Resultants:
+    turned = sum((couple for _, couple in couples), 0.0)
+    return Resultants([force for _, force in forces], [place for place, _ in forces], turned)
+
+
+def _line_resultants(load: LineLoad, at: float) -> list[Placed]:
+    """Centroids and forces of the part of a line load left of a place.
 
     One force; two triangles where the load changes sign, as its single resultant would lie outside it, or be nil beside
     a couple.
@@ -292,10 +290,10 @@ def _line_resultants(load: LineLoad, at: float) -> list[tuple[float, float]]:
     first, length = load.value_start, stop - load.start
     last = first + (load.value_end - first) * length / (load.end - load.start)
     if first * last < 0:
-        return [(first * length / 2, load.start + length / 3), (last * length / 2, load.start + 2 * length / 3)]
+        return [(load.start + length / 3, first * length / 2), (load.start + 2 * length / 3, last * length / 2)]
     if first + last == 0:
-        return [(0.0, load.start + length / 2)]
-    return [((first + last) / 2 * length, load.start + length * (first + 2 * last) / (3 * (first + last)))]
+        return [(load.start + length / 2, 0.0)]
+    return [(load.start + length * (first + 2 * last) / (3 * (first + last)), (first + last) / 2 * length)]
 
 
 def _moment_of(left: Resultants, at: float) -> float:
