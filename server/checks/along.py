@@ -13,7 +13,7 @@ from server.checks.crosssection import Body, Site, Stretch
 from server.checks.scan import Scan
 from server.checks.slide import Slide
 from server.checks.slip_shares import Shares, field_shares
-from server.mechanics.piecewise import evaluate
+from server.mechanics.piecewise import both_sides
 from server.working import formula
 
 FLOW = {"cut": "V*S/EI", "symmetry": "c_s*V*S/EI", "field": "V*S_j/EI"}
@@ -181,9 +181,8 @@ class SlidingAlong:
         curve = self.slide.actions.shear
         if curve is None:
             return np.zeros(len(at))
-        left = np.diagonal(evaluate(curve.breaks, curve.coefficients, at, "left"))
-        right = np.diagonal(evaluate(curve.breaks, curve.coefficients, at, "right"))
-        return np.asarray(np.maximum(np.abs(left), np.abs(right)))
+        sides = np.diagonal(both_sides(curve.breaks, curve.coefficients, at), axis1=0, axis2=2)
+        return np.asarray(np.abs(sides).max(axis=0))
 
     def unsettled(self, site: Site) -> str:
         """Why the layers alone do not settle the joint: a ring that the field does not open, unlike partners."""

@@ -7,7 +7,7 @@ of its resistance it bears for so many cycles (``fatigue``), and for ever (``cre
 from __future__ import annotations
 
 from collections.abc import Sequence
-from typing import Literal, NamedTuple
+from typing import NamedTuple
 
 import numpy as np
 from numpy.typing import NDArray
@@ -18,10 +18,8 @@ from server.checks.actions import Actions, Curve
 from server.checks.joints import JointCheck
 from server.checks.member_ends import Governs, MemberEnds
 from server.checks.resistance import Findings, Weighed
-from server.mechanics.piecewise import evaluate
+from server.mechanics.piecewise import both_sides
 from server.working import Working
-
-SIDES: tuple[Literal["left", "right"], ...] = ("left", "right")
 
 
 class _Bond(NamedTuple):
@@ -133,6 +131,5 @@ def _judge(
 
 def _shear(curve: Curve, at: NDArray[np.float64]) -> list[list[float]]:
     """The larger shear on both sides of every place, one value a combination [N]."""
-    left, right = (evaluate(curve.breaks, curve.coefficients, at, side) for side in SIDES)
-    found: list[list[float]] = np.maximum(np.abs(left), np.abs(right)).T.tolist()
+    found: list[list[float]] = np.abs(both_sides(curve.breaks, curve.coefficients, at)).max(axis=1).T.tolist()
     return found

@@ -331,10 +331,45 @@ def evaluate(
     >>> evaluate([0.0, 1.0, 2.0], step, 1.0), evaluate([0.0, 1.0, 2.0], step, 1.0, "left")
     (array([3.]), array([1.]))
     """
-    places, c, at = np.asarray(breaks, dtype=float), np.asarray(coefficients, dtype=float), np.asarray(x, dtype=float)
-    piece = np.searchsorted(places, at, side) - 1
-    piece = np.minimum(np.maximum(piece, 0), len(places) - 2)
-    s = at - places[piece]
+    places, at = np.asarray(breaks, dtype=float), np.asarray(x, dtype=float)
+    return _values(places, np.asarray(coefficients, dtype=float), at, np.searchsorted(places, at, side) - 1)
+
+
+def both_sides(breaks: ArrayLike, coefficients: ArrayLike, x: ArrayLike) -> Array:
+    """Return the values of piecewise polynomials just left and just right of given places.
+
+    Parameters
+    ----------
+    breaks : array_like
+        Ends of the intervals, ascending, shape (m + 1,) [mm].
+    coefficients : array_like
+        Ascending coefficients in x - breaks[i], shape (..., m, d) [unit/mm^k].
+    x : array_like
+        Places, shape (n,) or a number [mm]; at the member's ends the value inside it is meant on both sides.
+
+    Returns
+    -------
+    numpy.ndarray
+        Values, shape (..., 2, n), or (..., 2) for a single place: left, then right.
+
+    References
+    ----------
+    .. [1] As `evaluate`.
+
+    Examples
+    --------
+    >>> both_sides([0.0, 1.0, 2.0], [[[1.0], [3.0]]], 1.0)
+    array([[1., 3.]])
+    """
+    places, at = np.asarray(breaks, dtype=float), np.asarray(x, dtype=float)
+    piece = np.array([places.searchsorted(at, "left"), places.searchsorted(at, "right")]) - 1
+    return _values(places, np.asarray(coefficients, dtype=float), at, piece)
+
+
+def _values(breaks: Array, c: Array, at: Array, piece: Indices) -> Array:
+    """Return the polynomials of the given intervals at some places; beyond the member, those of its ends."""
+    piece = np.minimum(np.maximum(piece, 0), len(breaks) - 2)
+    s = at - breaks[piece]
     chosen = c[..., piece, :]
     value = chosen[..., -1].copy()
     for power in range(c.shape[-1] - 2, -1, -1):

@@ -9,7 +9,7 @@ from hypothesis import strategies as st
 from numpy.polynomial import polynomial
 
 from server.errors import InputError
-from server.mechanics.piecewise import candidates, evaluate, extremes, restrict
+from server.mechanics.piecewise import both_sides, candidates, evaluate, extremes, restrict
 
 
 def from_slope_roots(roots, width=10.0):
@@ -115,6 +115,18 @@ def test_both_sides_of_a_jump_count():
     assert (found.max[0], found.at_max[0], found.min[0], found.at_min[0]) == (1.0, 0.0, -5.0, 3.0)
     assert evaluate(breaks, step, [0.0, 3.0, 6.0], "left")[0].tolist() == [1.0, 1.0, -5.0]
     assert evaluate(breaks, step, [0.0, 3.0, 6.0], "right")[0].tolist() == [1.0, -5.0, -5.0]
+    assert both_sides(breaks, step, [0.0, 3.0, 6.0])[0].tolist() == [[1.0, 1.0, -5.0], [1.0, -5.0, -5.0]]
+
+
+def test_both_sides_are_those_of_numpys_polynomials():
+    rng = np.random.default_rng(4)
+    breaks, c = np.array([0.0, 1.0, 2.5, 4.0]), rng.normal(size=(2, 3, 4))
+    places = np.array([0.0, 0.3, 1.0, 2.2, 2.5, 4.0])
+    found = both_sides(breaks, c, places)
+    for side, pieces in enumerate([(0, 0, 0, 1, 1, 2), (0, 0, 1, 1, 2, 2)]):
+        for n, (place, piece) in enumerate(zip(places, pieces, strict=True)):
+            assert found[:, side, n] == pytest.approx(polynomial.polyval(place - breaks[piece], c[:, piece].T))
+    assert both_sides(breaks, c, 1.0).shape == (2, 2)
 
 
 def test_a_range_takes_the_values_inside_it_at_its_ends():
