@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass, field
-from typing import Protocol
+from typing import NamedTuple, Protocol
 
 import numpy as np
 from numpy.typing import NDArray
@@ -21,8 +21,7 @@ SLIDING_FLOW = "k*s"
 SHARED_FLOW = "c_f*q_L"
 
 
-@dataclass(frozen=True, eq=False)
-class Demand:
+class Demand(NamedTuple):
     """Shear and flow of one joint, one entry a strength combination, with the place and stretch of each."""
 
     shear: NDArray[np.float64]
@@ -33,8 +32,9 @@ class Demand:
     @property
     def peak(self) -> int:
         """The combination of the largest flow; the leftmost place wins a tie, then the first combination."""
-        near = self.flow >= self.flow.max() * (1 - TIE)
-        return int(np.where(near, self.at, np.inf).argmin())
+        flow, at = self.flow.tolist(), self.at.tolist()  # a handful: numpy would take longer to start than to run
+        least = max(flow) * (1 - TIE)
+        return min((row for row, each in enumerate(flow) if each >= least), key=at.__getitem__)
 
 
 def leftmost(left: Demand, right: Demand) -> Demand:

@@ -133,8 +133,8 @@ def _thin_webs(document: documents.MemberDocument, body: Body, findings: Finding
     if WEBS in chosen(document):
         return
     slender: dict[str, thin_webs.Web] = {}
-    for stretch in body.stretches:
-        for web in thin_webs.webs(stretch.section):
+    for section in body.sections:
+        for web in thin_webs.webs(section):
             if web.slenderness > thin_webs.BUCKLES and web.part.name not in slender:
                 slender[web.part.name] = web
     for name, web in slender.items():
@@ -251,13 +251,12 @@ def _member(document: documents.MemberDocument, body: Body, actions: Actions, fi
 def _uplift(document: documents.MemberDocument, actions: Actions, findings: Findings) -> None:
     forces = actions.response.reaction_force
     scale = max(float(np.abs(forces).max(initial=0.0)), 1e-300)
-    for i, support in enumerate(document.member.supports):
-        lifting = np.flatnonzero(forces[:, i] < -1e-9 * scale)
-        if len(lifting):
-            k = int(forces[:, i].argmin())
+    rows, least = forces.argmin(axis=0).tolist(), forces.min(axis=0).tolist()
+    for support, row, force in zip(document.member.supports, rows, least, strict=True):
+        if force < -1e-9 * scale:
             findings.caution(
                 "uplift",
-                f"The support at {support.at:g} mm pulls the member down with {-forces[k, i]:,.4g} N in combination "
-                f"{actions.names[k]!r}: hold it down there, or the member lifts.",
+                f"The support at {support.at:g} mm pulls the member down with {-force:,.4g} N in combination "
+                f"{actions.names[row]!r}: hold it down there, or the member lifts.",
                 answer=True,
             )

@@ -107,7 +107,7 @@ class Claim(NamedTuple):
 
 
 class Weighed(NamedTuple):
-    """A claim at its governing combination ``row``; ``utilisation`` and ``resistance`` there.
+    """A claim at its governing combination ``row``; ``resistance``, ``utilisation`` and place there.
 
     ``used`` what part of its resistance every combination uses, below 0 where the resistance is not known.
     """
@@ -116,15 +116,12 @@ class Weighed(NamedTuple):
     row: int
     resistance: float
     utilisation: float
+    at: float
     used: list[float]
 
     @property
     def stretch(self) -> int:
         return int(self.claim.stretch[self.row])
-
-    @property
-    def at(self) -> float:
-        return float(self.claim.at[self.row])
 
 
 class _Terms(NamedTuple):
@@ -257,10 +254,10 @@ class Weigher:
         top = usage.max(axis=1, keepdims=True)
         near = np.where(usage >= top - TIE * np.maximum(top, 1e-300), places, np.inf)
         rows = near.argmin(axis=1).tolist()
-        each = zip(claims, rows, resists.tolist(), usage.tolist(), strict=True)
+        each = zip(claims, rows, resists.tolist(), usage.tolist(), places.tolist(), strict=True)
         return [
-            None if used[row] < 0 else Weighed(claim, row, resistance[row], used[row], used)
-            for claim, row, resistance, used in each
+            None if used[row] < 0 else Weighed(claim, row, resistance[row], used[row], at[row], used)
+            for claim, row, resistance, used, at in each
         ]
 
     def write(self, weighed: Weighed, group: str) -> dict[str, object]:
@@ -342,19 +339,20 @@ def resistances(claims: Sequence[Claim]) -> NDArray[np.float64]:
 
     One evaluation of the printed formula serves all claims with as many factors.
     """
+    strengths = [claim.strength for claim in claims]
     alike: dict[int, list[int]] = {}
-    for i, claim in enumerate(claims):
-        alike.setdefault(len(claim.strength.multipliers), []).append(i)
-    found = np.empty((len(claims), len(claims[0].strength.duration)))
+    for i, strength in enumerate(strengths):
+        alike.setdefault(len(strength.multipliers), []).append(i)
+    found = np.empty((len(claims), len(strengths[0].duration)))
     for factors, places in alike.items():
-        strengths = [claims[i].strength for i in places]
+        own = [strengths[i] for i in places]
         values = {
-            "f_k": np.array([[s.value] for s in strengths]),
-            "k_dur": np.array([s.duration for s in strengths]),
-            "gamma": np.array([[s.divisor] for s in strengths]),
+            "f_k": np.array([s.value for s in own])[:, None],
+            "k_dur": np.array([s.duration for s in own]),
+            "gamma": np.array([s.divisor for s in own])[:, None],
         }
         for n in range(factors):
-            values[f"k_{n + 1}"] = np.array([[s.multipliers[n][1]] for s in strengths])
+            values[f"k_{n + 1}"] = np.array([s.multipliers[n][1] for s in own])[:, None]
         found[places] = formula(resistance_formula("f_k", factors)).array(values)
     return found
 
@@ -368,4 +366,8 @@ def describe(holder: Holder) -> str:
 
 def worst(weighed: Iterable[Weighed | None]) -> Weighed | None:
     """The one with the greatest utilisation; the first wins a tie."""
-    return max((w for w in weighed if w is not None), key=lambda w: w.utilisation, default=None)
+    most: Weighed | None = None
+    for each in weighed:
+        if each is not None and (most is None or each.utilisation > most.utilisation):
+            most = each
+    return most

@@ -94,12 +94,12 @@ def add_rib_claims(
 
 def _bonds(part: Part, sites: Sequence[Site]) -> list[Site]:
     """The level joints of a piece."""
-    found = []
-    for site in sites:
-        run, rise = np.abs(site.contact.end - site.contact.start).tolist()
-        if part in (site.first, site.second) and rise <= _LEVEL * run:
-            found.append(site)
-    return found
+    return [site for site in sites if part in (site.first, site.second) and _level(site)]
+
+
+def _level(site: Site) -> bool:
+    (left, low), (right, high) = site.contact.start.tolist(), site.contact.end.tolist()
+    return abs(high - low) <= _LEVEL * abs(right - left)
 
 
 def _ribs(section: CrossSection, skins: Sequence[Part]) -> list[tuple[tuple[float, float], tuple[Part, ...]]]:

@@ -62,7 +62,7 @@ def _web(part: Part, section: CrossSection) -> Web | None:
     below: list[tuple[float, float]] = []
     for site in section.sites:
         if site.bonded and part in (site.first, site.second):
-            low, high = sorted((float(site.contact.start[1]), float(site.contact.end[1])))
+            low, high = sorted((site.contact.start.item(1), site.contact.end.item(1)))
             (above if low + high > 2 * middle else below).append((low, high))
     if not (above and below):
         return None
