@@ -7,7 +7,7 @@ section between the ends of its pieces. What the geometry forbids is refused her
 from __future__ import annotations
 
 import math
-from collections.abc import Mapping, Sequence
+from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import dataclass, replace
 from functools import cached_property
 from itertools import pairwise
@@ -386,14 +386,22 @@ def _wanted(document: documents.MemberDocument) -> Wanted:
 
 def eccentric(document: documents.MemberDocument) -> bool:
     """Whether any load acts beside the shear centre."""
-    return any(getattr(load, "offset", 0.0) for loads in document.loads.values() for load in loads)
+    return any(load.offset for load in _placed(document))
 
 
 def pushed_sideways(document: documents.MemberDocument) -> bool:
     """Whether the member is free to bend sideways and a load pushes it that way."""
     if document.member.held_sideways:
         return False
-    return any(getattr(load, "lateral", 0.0) for loads in document.loads.values() for load in loads)
+    return any(load.lateral for load in _placed(document))
+
+
+def _placed(document: documents.MemberDocument) -> Iterator[documents.PointLoad | documents.LineLoad]:
+    """The loads that may stand beside the member's axis or push it sideways."""
+    for loads in document.loads.values():
+        for load in loads:
+            if isinstance(load, (documents.PointLoad, documents.LineLoad)):
+                yield load
 
 
 def both_ways(document: documents.MemberDocument, body: Body) -> bool:

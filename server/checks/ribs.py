@@ -99,7 +99,7 @@ def _bonds(part: Part, sites: Sequence[Site]) -> list[Site]:
 
 def _level(site: Site) -> bool:
     (left, low), (right, high) = site.contact.start.tolist(), site.contact.end.tolist()
-    return abs(high - low) <= _LEVEL * abs(right - left)
+    return bool(abs(high - low) <= _LEVEL * abs(right - left))
 
 
 def _ribs(section: CrossSection, skins: Sequence[Part]) -> list[tuple[tuple[float, float], tuple[Part, ...]]]:
