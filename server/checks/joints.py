@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass, field
+from math import isnan
 
 import numpy as np
 from numpy.typing import NDArray
@@ -236,12 +237,13 @@ def _surface_strength(part: Part, site: Site, body: Body, judge: Judge) -> Stren
 def _write_flow(check: JointCheck, demand: Demand, body: Body, judge: Judge, statics: Statics) -> None:
     site, working = check.site, judge.working
     group, row = f"Joint {site.id}", demand.peak
+    at, force = float(demand.at[row]), float(demand.shear[row])
     stretch = body.stretches[int(demand.stretch[row])]
     shared = stretch.section.flows[site.index]
     assert shared.split is not None
     combination = judge.actions.strength_names[row]
     if not isinstance(check.along, SlidingAlong | CombinedAlong):
-        statics.shear(float(demand.at[row]), judge.actions.strength[row], float(demand.shear[row]), group)
+        statics.shear(at, judge.actions.strength[row], force, group)
     first = _write_first_moment(site, stretch, judge, group)
     if isinstance(check.along, SlidingAlong):
         flow, check.result["slip"] = write_sliding_flow(site, check.along, demand, judge, group)
@@ -250,8 +252,8 @@ def _write_flow(check: JointCheck, demand: Demand, body: Body, judge: Judge, sta
         check.result.update(run)
     else:
         own = write_share(site, stretch, first, judge, group) if shared.split == "field" else first
-        flow = _rigid_flow(demand, stretch, shared, own, combination, judge, group)
-        check.result.update(beside_hand(site, stretch, float(demand.shear[row]), judge, group))
+        flow = _rigid_flow(force, stretch, shared, own, combination, judge, group)
+        check.result.update(beside_hand(site, stretch, force, judge, group))
     check.result["first_moment"] = working.step(
         "First moment on the reference modulus",
         "Q",
@@ -263,8 +265,8 @@ def _write_flow(check: JointCheck, demand: Demand, body: Body, judge: Judge, sta
     )
     check.result.update(
         shear_flow=flow,
-        at=float(demand.at[row]),
-        place=judge.places.at(float(demand.at[row])),
+        at=at,
+        place=judge.places.at(at),
         combination=combination,
         split=shared.split,
         cut_off=[stretch.section.parts[i].name for i in shared.cut_off],
@@ -283,11 +285,11 @@ def _write_flow(check: JointCheck, demand: Demand, body: Body, judge: Judge, sta
 
 
 def _rigid_flow(
-    demand: Demand, stretch: Stretch, shared: JointFlow, first: float, combination: str, judge: Judge, group: str
+    force: float, stretch: Stretch, shared: JointFlow, first: float, combination: str, judge: Judge, group: str
 ) -> float:
     assert shared.split is not None
     values: dict[str, tuple[float, str]] = {
-        "V": (float(demand.shear[demand.peak]), "N"),
+        "V": (force, "N"),
         "S": (first, "N*mm"),
         "EI": (stretch.section.properties.EI, "N*mm2"),
     }
@@ -344,20 +346,19 @@ def _strength_needed(check: JointCheck, demand: Demand, body: Body, judge: Judge
     asked_of = judge.strength(1.0, what="", unit="MPa", kind="adhesive", owner=name, holder=adhesive)
     assert asked_of is not None
     asked_of = asked_of.reduced(bond_reductions(site, body, judge.rules))
-    factors = np.array(asked_of.duration)
-    unknown = np.isnan(factors)
-    if unknown.all():
-        return None
     flow = demand.flow if check.times is None else demand.flow * check.times
-    stress = formula(STRESS).array({"q": flow, "b": site.width, "c": site.spec.coverage})
-    row = int(np.where(unknown, -1.0, stress / factors).argmax())
+    stress = formula(STRESS).array({"q": flow, "b": site.width, "c": site.spec.coverage}).tolist()
+    asked = [-1.0 if isnan(k_dur) else tau / k_dur for tau, k_dur in zip(stress, asked_of.duration, strict=True)]
+    row = max(range(len(asked)), key=asked.__getitem__)
+    if isnan(asked_of.duration[row]):
+        return None
     method = "safety factor" if judge.document.basis.method == "allowable" else "partial factor"
     resists = resistance_formula("1", len(asked_of.multipliers)).removeprefix("1*")
     return judge.working.step(
         "Characteristic adhesive shear strength to ask for",
         "f_req",
         f"tau/({resists})",
-        {"tau": (float(stress[row]), "MPa"), **asked_of.arguments(row)},
+        {"tau": (stress[row], "MPa"), **asked_of.arguments(row)},
         unit="MPa",
         source=f"{method} {asked_of.divisor:g}, combination {judge.actions.strength_names[row]}",
         group=group,

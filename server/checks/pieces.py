@@ -290,7 +290,7 @@ def _write_stress(
             "EI": (whole.EI, "N*mm2"),
         },
         unit="MPa",
-        source=f"{MECHANICS}; at {bent.at[entry, row]:.6g} mm, combination {judge.actions.strength_names[row]}",
+        source=f"{MECHANICS}; at {float(bent.at[entry, row]):.6g} mm, combination {judge.actions.strength_names[row]}",
         group=group,
     )
 

@@ -85,11 +85,10 @@ class Strength(NamedTuple):
 
     def arguments(self, row: int) -> dict[str, tuple[float, str]]:
         """What multiplies and divides the strength in one combination, with units, for a printed step."""
-        return {
-            "k_dur": (self.duration[row], ""),
-            "gamma": (self.divisor, ""),
-            **{f"k_{i}": (value, "") for i, (_, value) in enumerate(self.multipliers, 1)},
-        }
+        found = {"k_dur": (self.duration[row], ""), "gamma": (self.divisor, "")}
+        for i, (_, value) in enumerate(self.multipliers, 1):
+            found[f"k_{i}"] = (value, "")
+        return found
 
 
 class Claim(NamedTuple):
@@ -268,11 +267,13 @@ class Weigher:
         combination = self.combinations.strength_names[row]
         duration = self.combinations.durations[self.combinations.strength[row]]
         named = "".join(f"; k_{i} = {name}" for i, (name, _) in enumerate(found.multipliers, 1))
-        demand = float(claim.demand[row])
+        demand, at = float(claim.demand[row]), weighed.at
         if claim.origin is not None:
             claim.origin.write(self.working, group, claim.symbol, unit, row, weighed.stretch)
-        for printed in (*found.before, *(reduction.step for reduction in found.reductions)):
+        for printed in found.before:
             printed.write(self.working, group)
+        for reduction in found.reductions:
+            reduction.step.write(self.working, group)
         resistance = self.working.step(
             f"Resistance: {found.what}",
             resists,
@@ -299,8 +300,8 @@ class Weigher:
             "utilisation": utilisation,
             "reductions": [{"rule": each.rule, "value": each.value} for each in found.reductions],
             "combination": combination,
-            "at": weighed.at,
-            "place": self.place(weighed.at),
+            "at": at,
+            "place": self.place(at),
             "strength": found.value,
             "duration_factor": found.duration[row],
             "factors": dict(found.factors),

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Mapping, Sequence
-from functools import cached_property, lru_cache
+from functools import lru_cache
 from typing import Any
 
 import numpy as np
@@ -68,7 +68,12 @@ def ordered(text: str, order: tuple[str, ...], lists: Lists = ()) -> Ordered:
 
 
 class Ordered:
-    """A formula whose quantities come in a known order, so that numbers go in without their names."""
+    """A formula whose quantities come in a known order, so that numbers go in without their names.
+
+    ``value`` takes the numbers. ``read`` takes the written forms of numbers (a text and the number it says, by the
+    number; a negative number's text brings its own brackets) and the numbers; it returns what the line as written
+    gives, and the line, in characters that can be read back and evaluated.
+    """
 
     def __init__(self, owner: Formula, order: tuple[str, ...], lists: Lists) -> None:
         if owner.names != set(order):
@@ -81,21 +86,8 @@ class Ordered:
         self.lists = frozenset(name for name, _ in lists)
         self.count = max(counts, default=0)
         _require_lists_under_sums(owner.text, owner.tree, self.lists)
-        self._code = compiled.Code(owner.tree, order, self.lists, self.count)
-
-    @cached_property
-    def value(self) -> Callable[..., float]:
-        """The formula as a function of the numbers."""
-        return self._code.value()
-
-    @cached_property
-    def read(self) -> Callable[..., tuple[float, str]]:
-        """What a line gives and the line, as a function of the written forms of numbers and of the numbers.
-
-        The written forms: a text and the number it says, by the number; a negative number's text brings its own
-        brackets. The line is in characters that can be read back and evaluated.
-        """
-        return self._code.reader()
+        code = compiled.Code(owner.tree, order, self.lists, self.count)
+        self.value, self.read = code.value(), code.reader()
 
 
 def _require_lists_under_sums(text: str, node: Node, lists: frozenset[str]) -> None:

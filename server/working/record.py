@@ -30,6 +30,8 @@ from server.working.layout import Layout, breakable, number, spread, symbol, sym
 Step = dict[str, Any]
 Given = tuple[float | Sequence[float] | NDArray[np.float64], str]
 _NO_LISTS: frozenset[str] = frozenset()
+_PRINTED = numbers.IN_LINE[numbers.DIGITS]
+_RUNGS = tuple(numbers.IN_LINE.items())
 
 
 class Working:
@@ -164,6 +166,8 @@ def _evaluate(known: Ordered, given: Sequence[float | list[float]], symbol: str,
         raise InputError(symbol, _no_answer(known, symbol, title, "divides by zero")) from None
     except (ValueError, OverflowError):
         raise InputError(symbol, _no_answer(known, symbol, title, "has no real answer")) from None
+    if type(value) is float and isfinite(value):
+        return value
     if isinstance(value, complex) or not isfinite(value):
         raise InputError(symbol, _no_answer(known, symbol, title, "has no finite real answer"))
     return float(value)
@@ -178,13 +182,12 @@ def _no_answer(known: Ordered, symbol: str, title: str, why: str) -> str:
 
 def _line(known: Ordered, given: Sequence[float | list[float]], value: float) -> tuple[int, str]:
     """How many digits the numbers must show so that the printed line gives the printed value, and that line."""
-    printed = numbers.IN_LINE[numbers.DIGITS]
-    target = printed[value][0]
+    target = _PRINTED[value][0]
     line = ""
-    for digits, written in numbers.IN_LINE.items():
+    for digits, written in _RUNGS:
         try:
             reached, line = known.read(written, *given)
-            if printed[reached][0] == target:
+            if _PRINTED[reached][0] == target:
                 return digits, line
         except (ArithmeticError, ValueError, TypeError):
             continue
