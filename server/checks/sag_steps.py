@@ -16,6 +16,7 @@ from server import documents
 from server.checks.actions import Actions, Curve, largest
 from server.checks.crosssection import Body, CrossSection
 from server.mechanics.beam import LineLoad, Load, PointLoad
+from server.mechanics.beam_model import SAME_PLACE
 from server.working import Working
 from server.working.record import Given
 
@@ -36,11 +37,11 @@ Loaded = Sequence[tuple[float, Load]]
 
 def spans(member: documents.Member) -> list[tuple[float, float, str]]:
     """The lengths between supports ("span") and beyond the outer ones ("overhang"), left to right."""
-    places = sorted(s.at for s in member.supports)
+    places, least = sorted(s.at for s in member.supports), SAME_PLACE * member.length
     found = [(a, b, "span") for a, b in pairwise(places)]
-    if places[0] > 0:
+    if places[0] > least:
         found.insert(0, (0.0, places[0], "overhang"))
-    if places[-1] < member.length:
+    if places[-1] < member.length - least:
         found.append((places[-1], member.length, "overhang"))
     return found
 

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import math
+
 import pytest
 
 from server.errors import DocumentError
@@ -197,6 +199,13 @@ def test_an_overhang_is_judged_on_twice_its_length():
         ("span", pytest.approx(2000 / 300)),
         ("overhang", pytest.approx(2 * 1000 / 300)),
     ]
+
+
+def test_a_support_one_rounding_short_of_the_end_leaves_no_overhang():
+    at = math.nextafter(STACK["member"]["length"], 0)
+    supports = [{"at": 1e-13, "kind": "pin"}, {"at": at, "kind": "spring", "stiffness": 500}]
+    result = run(STACK, member__supports=supports, member__deflection_limit=100)
+    assert [each["kind"] for each in result["deflection_limits"]] == ["span"]
 
 
 def test_a_cantilever_is_judged_on_twice_its_length():
