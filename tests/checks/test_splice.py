@@ -342,3 +342,10 @@ def test_swapping_the_plates_mirrors_the_joint():
     assert one["peak_shear"] == pytest.approx(other["peak_shear"], rel=1e-6)
     assert one["peak_peel"] == pytest.approx(other["peak_peel"], rel=1e-6)
     assert one["joint_strength"] == pytest.approx(other["joint_strength"], rel=1e-6)
+
+
+def test_a_balanced_scarf_that_only_its_bond_limits_has_no_useful_length():
+    # by statics: the shear is even along it, so the strength grows with its length for ever
+    result = run(**SHAPES["scarf"], adherends=sides("steel", "steel", 2, 2), response="elastic-plastic")
+    assert result["joint_strength"] > 0
+    assert result["overlap_useful"] is None
