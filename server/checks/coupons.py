@@ -56,11 +56,7 @@ def run(document: CouponsDocument, *, working: bool = True) -> dict[str, object]
         findings.miss("characteristic value above 0: the scatter is too great for the distribution chosen.")
     add_cautions(document, kept, x, limit, found, findings)
     return {
-        "format": document.format,
-        "kind": document.kind,
-        "title": document.title,
-        "note": document.note,
-        "display": document.display,
+        **document.head,
         "verdict": "not proven" if findings.missing else "pass",
         "utilisation": None,
         "governing": _governing(document, limit, findings),

@@ -52,11 +52,7 @@ def run(document: FastenerDocument, *, working: bool = True) -> dict[str, object
         )
     missing = case.findings.missing
     return {
-        "format": document.format,
-        "kind": document.kind,
-        "title": document.title,
-        "note": document.note,
-        "display": document.display,
+        **document.head,
         "verdict": "not proven" if missing else "pass",
         "utilisation": None,
         "governing": _governing(document, found),

@@ -66,11 +66,7 @@ def run(document: LoadSlipDocument, *, working: bool = True) -> dict[str, object
         book.begin("Slip modulus")
         book.step("Mean slip modulus", "k_s", "sum(k)/n", {"k": (slips, "N/mm"), "n": (slips.size, "")}, "N/mm", CODE)
     return {
-        "format": document.format,
-        "kind": document.kind,
-        "title": document.title,
-        "note": document.note,
-        "display": document.display,
+        **document.head,
         "verdict": "not proven" if findings.missing else "pass",
         "utilisation": None,
         "governing": _governing(strength.characteristic, modulus, len(tests)),

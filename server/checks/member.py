@@ -118,11 +118,7 @@ def _round(
     governing = governing_limit(body, judge, joints, pieces, sags, fall_back, ends)
     drawn = governing.section if governing else body.stretches[0].section
     result = {
-        "format": document.format,
-        "kind": document.kind,
-        "title": document.title,
-        "note": document.note,
-        "display": document.display,
+        **document.head,
         **_verdict(governing, findings),
         "basis": document.basis.model_dump(exclude_none=True),
         "section": {**_section(drawn, sliding), "bent_axis": bent_axis(actions, drawn)},

@@ -75,11 +75,7 @@ def _run(document: documents.SpliceDocument, book: Working, findings: Findings) 
     add_cautions(model, found.stresses, result, tried, findings)
     limits = [*(j.result for j in found.judged), *(each.result for each in extra)]
     return {
-        "format": document.format,
-        "kind": document.kind,
-        "title": document.title,
-        "note": document.note,
-        "display": document.display,
+        **document.head,
         **_verdict(found, extra, findings),
         "basis": document.basis.model_dump(exclude_none=True),
         "layout": document.layout,

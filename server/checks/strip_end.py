@@ -64,11 +64,7 @@ def run(document: documents.StripEndDocument, *, working: bool = True) -> dict[s
     ends = check_ends(member, body, actions, judge, book, findings, only=document.strip_name, after=after)
     _cautions(document, findings)
     return {
-        "format": document.format,
-        "kind": document.kind,
-        "title": document.title,
-        "note": document.note,
-        "display": document.display,
+        **document.head,
         **_verdict(ends, findings),
         "basis": document.basis.model_dump(exclude_none=True),
         "ends": [_end(each, findings, book) for each in ends.ends],

@@ -316,6 +316,11 @@ class Document(Model):
         """The document exactly as typed."""
         return self._raw
 
+    @property
+    def head(self) -> dict[str, Any]:
+        """What every result repeats of its document before its verdict."""
+        return {each: getattr(self, each) for each in ("format", "kind", "title", "note", "display")}
+
     def unresolved(self) -> list[str]:
         """Paths of the entries whose values still stand in the library."""
         return [
