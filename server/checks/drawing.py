@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Mapping, Sequence
+from collections.abc import Mapping, Sequence
 from typing import Any
 
 import numpy as np
@@ -21,6 +21,7 @@ from server.mechanics.moving_envelope import Envelope
 MOST_POINTS = 120
 LEAST_STEPS, MOST_STEPS = 4, 16
 ENVELOPE_STEPS = 8
+TERMS = 6  # of the longest polynomials, those of deflection
 WIDEST_SEEN = 2000  # parts of the member's length: what is narrower than one is not seen
 Shown = slice | NDArray[np.intp]
 
@@ -125,6 +126,7 @@ def diagrams(
     steps = min(max(MOST_POINTS // len(widths), least), MOST_STEPS)
     local = widths[:, None] * (np.arange(steps) / (steps - 1))
     at = breaks[:-1][shown, None] + local
+    powers = _powers(local)
     curves = {
         "shear": actions.shear,
         "moment": actions.moment,
@@ -141,28 +143,29 @@ def diagrams(
         }
     if twisted is not None and sliding is None:
         curves["torque"] = twisted.torque
-    drawn = {name: curve.coefficients[:, shown] for name, curve in curves.items() if curve is not None}
-    high, low = _bands(list(drawn.values()), local)
-    found: dict[str, Any] = {"at": at.ravel().tolist(), **_named(drawn, high, low)}
+    found: dict[str, Any] = {"at": at.ravel().tolist()}
+    for name, curve in curves.items():
+        if curve is not None:
+            found[name] = _band(_sample(curve.coefficients[:, shown], powers))
     if actions.moving is not None and sliding is None:
         _widen(found, actions.moving.written.envelopes, at)
     if sliding is not None:
         flows, slips = {}, {}
         for site in body.sites:
             q, slip = (
-                _sample(each[site.index].coefficients[:, shown], local) for each in (sliding.flows, sliding.slips)
+                _sample(each[site.index].coefficients[:, shown], powers) for each in (sliding.flows, sliding.slips)
             )
-            sign = _sense(actions, slip, shown, local)
+            sign = _sense(actions, slip, shown, powers)
             flows[site.id], slips[site.id] = _band(sign * q), _band(sign * slip)
         found["joints"], found["slips"] = flows, slips
     elif actions.shear is not None:
         if twisted is not None or actions.across is not None:
             along = CombinedAlong(body, Scan(actions.shear, (), ()), actions.across, twisted)
-            causes = [_sample(cause.coefficients, local) for cause in along.causes()]
+            causes = [_sample(cause.coefficients, powers) for cause in along.causes()]
             found["joints"] = {s.id: _combined(s, along, breaks, causes) for s in body.sites}
         else:
-            shear = np.reshape([found["shear"]["max"], found["shear"]["min"]], (2, 1, *at.shape))
-            found["joints"] = _named((site.id for site in body.sites), *(shear * _rates(body, breaks)[..., None]))
+            shear = np.reshape([found["shear"]["max"], found["shear"]["min"]], (2, *at.shape))
+            found["joints"] = _flows(body, breaks, shear)
     return found
 
 
@@ -178,11 +181,11 @@ def _widen(found: dict[str, Any], envelopes: Mapping[str, Sequence[Envelope]], a
             band["min"] = np.minimum(band["min"], low).tolist()
 
 
-def _sense(actions: Actions, slip: NDArray[np.float64], shown: Shown, local: NDArray[np.float64]) -> float:
+def _sense(actions: Actions, slip: NDArray[np.float64], shown: Shown, powers: NDArray[np.float64]) -> float:
     """The sign that draws a slip the way of the shear force, whichever piece a joint names first."""
     if actions.shear is None:
         return 1.0
-    V = _sample(actions.shear.coefficients[:, shown], local)
+    V = _sample(actions.shear.coefficients[:, shown], powers)
     return -1.0 if V.shape == slip.shape and float((V * slip).sum()) < 0 else 1.0
 
 
@@ -191,37 +194,29 @@ def _shown(breaks: NDArray[np.float64], length: float) -> NDArray[np.intp]:
     return np.flatnonzero(np.diff(breaks) > length / WIDEST_SEEN)
 
 
-def _sample(coefficients: NDArray[np.float64], local: NDArray[np.float64]) -> NDArray[np.float64]:
-    """Values (combinations, intervals, steps) of piecewise polynomials at local coordinates (Horner)."""
-    value = np.zeros((len(coefficients), *local.shape))
-    for power in range(coefficients.shape[2] - 1, -1, -1):
-        value *= local
-        value += coefficients[:, :, power, None]
-    return value
+def _powers(local: NDArray[np.float64]) -> NDArray[np.float64]:
+    """The powers of local coordinates (intervals, steps) that polynomials are made of, (intervals, terms, steps)."""
+    powers = np.empty((len(local), TERMS, local.shape[1]))
+    powers[:, 0], powers[:, 1:] = 1.0, local[:, None]
+    return np.multiply.accumulate(powers, axis=1, out=powers)
 
 
-def _bands(
-    curves: Sequence[NDArray[np.float64]], local: NDArray[np.float64]
-) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
-    """Greatest and least values over the combinations of n curves, all sampled at once: (n, intervals, steps) each."""
-    first = np.cumsum([0, *(len(curve) for curve in curves)])
-    padded = np.zeros((first[-1], len(local), max((curve.shape[-1] for curve in curves), default=1)))
-    for low, high, curve in zip(first, first[1:], curves, strict=False):
-        padded[low:high, :, : curve.shape[-1]] = curve
-    values = _sample(padded, local)
-    return np.maximum.reduceat(values, first[:-1]), np.minimum.reduceat(values, first[:-1])
+def _sample(coefficients: NDArray[np.float64], powers: NDArray[np.float64]) -> NDArray[np.float64]:
+    """Values (intervals, combinations, steps) of piecewise polynomials at local coordinates."""
+    values: NDArray[np.float64] = coefficients.transpose(1, 0, 2) @ powers[:, : coefficients.shape[2]]
+    return values
 
 
 def _band(values: NDArray[np.float64]) -> dict[str, list[float]]:
-    return {"max": values.max(axis=0).ravel().tolist(), "min": values.min(axis=0).ravel().tolist()}
+    """The greatest and the least of all combinations, interval by interval."""
+    return {"max": values.max(axis=1).ravel().tolist(), "min": values.min(axis=1).ravel().tolist()}
 
 
-def _named(
-    names: Iterable[str], high: NDArray[np.float64], low: NDArray[np.float64]
-) -> dict[str, dict[str, list[float]]]:
-    """The bands (n, intervals, steps) as plain numbers by name."""
-    both = (band.reshape(len(band), band.shape[1] * band.shape[2]).tolist() for band in (high, low))
-    return {name: {"max": most, "min": least} for name, most, least in zip(names, *both, strict=True)}
+def _flows(body: Body, breaks: NDArray[np.float64], shear: NDArray[np.float64]) -> dict[str, dict[str, list[float]]]:
+    """Flow of every joint: the greatest and the least shear (2, intervals, steps) times the joint's share there."""
+    sites, count = body.sites, shear[0].size
+    flows = (shear[:, None] * _rates(body, breaks)[..., None]).reshape(2, len(sites), count).tolist()
+    return {site.id: {"max": high, "min": low} for site, high, low in zip(sites, *flows, strict=True)}
 
 
 def _own(body: Body, breaks: NDArray[np.float64]) -> NDArray[np.intp]:
@@ -247,5 +242,5 @@ def _combined(
     """Flow per interval from all causes, with signs."""
     rates = np.array([along.rates(site, stretch) or (0.0,) * len(causes) for stretch in along.body.stretches])
     own = rates[_own(along.body, breaks)].T
-    flow = np.asarray(sum(cause * rate[:, None] for cause, rate in zip(causes, own, strict=True)))
+    flow = np.asarray(sum(cause * rate[:, None, None] for cause, rate in zip(causes, own, strict=True)))
     return _band(-flow if float((flow * causes[0]).sum()) < 0 else flow)  # drawn the way of the shear force
