@@ -378,16 +378,16 @@ def _beam(document: documents.MemberDocument, body: Body, deform: bool, creep: b
 
 def _loads(document: documents.MemberDocument, body: Body, case: str) -> Iterable[mechanics.Load]:
     for load in document.loads[case]:
-        if isinstance(load, documents.PointLoad):
+        if load.kind == "point":
             yield PointLoad(load.at, load.value)
-        elif isinstance(load, documents.CoupleLoad):
+        elif load.kind == "couple":
             yield Couple(load.at, load.value)
-        elif isinstance(load, documents.LineLoad):
+        elif load.kind == "line":
             yield LineLoad(load.from_, load.to, *load.ends)
-        elif isinstance(load, documents.AreaLoad):
+        elif load.kind == "area":
             per_length = load.value * load.width
             yield LineLoad(load.from_, load.to, per_length, per_length)
-        elif isinstance(load, documents.SelfWeight):
+        elif load.kind == "self-weight":
             yield from _self_weight(body)
 
 
@@ -426,7 +426,7 @@ def largest(values: NDArray[np.float64], places: NDArray[np.float64]) -> Peak:
     each, at = values.tolist(), places.tolist()  # a handful: numpy would take longer to start than to run
     top = max(each)
     least = top - TIE * max(abs(top), 1e-300)
-    row = min((i for i, value in enumerate(each) if value >= least), key=at.__getitem__)
+    row = min([i for i, value in enumerate(each) if value >= least], key=at.__getitem__)
     return Peak(each[row], at[row], row)
 
 

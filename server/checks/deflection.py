@@ -5,10 +5,10 @@ from __future__ import annotations
 from dataclasses import dataclass, replace
 
 from server import documents
-from server.checks.actions import Actions, Curve, Peak, largest
+from server.checks.actions import Actions
 from server.checks.crosssection import Body
 from server.checks.resistance import Findings
-from server.checks.sag_steps import AT_ONCE, LASTING, SIDEWAYS, spans, write_sag
+from server.checks.sag_steps import AT_ONCE, LASTING, SIDEWAYS, Length, lengths, write_sag
 from server.working import Working
 
 LIMIT = {"span": "L/n", "overhang": "2*L/n"}
@@ -38,16 +38,17 @@ def check_deflection(
     for curve, long_term in ((actions.sag, False), (actions.long_term, True)):
         if curve is None:
             continue
+        sagging = lengths(document.member, curve)
         if working.record:
-            write_sag(document, body, actions, curve, LASTING if long_term else AT_ONCE, working)
+            write_sag(document, body, actions, sagging, LASTING if long_term else AT_ONCE, working)
             aside = None
             if actions.across is not None:
                 aside = actions.across.long_term if long_term else actions.across.sag
             if aside is not None:
                 group = (LASTING if long_term else AT_ONCE) + SIDEWAYS
-                write_sag(document, body, actions, aside, group, working)
+                write_sag(document, body, actions, lengths(document.member, aside), group, working)
         if limit is not None:
-            found += _sags(document, curve, limit, working, long_term=long_term)
+            found += [_sag(each, limit, working, long_term=long_term) for each in sagging]
     return found
 
 
@@ -60,16 +61,15 @@ def more_deflection(document: documents.MemberDocument, actions: Actions, ratio:
     for curve, long_term in ((actions.sag, False), (actions.long_term, True)):
         if curve is None:
             continue
-        for start, end, kind in spans(document.member):
-            peak = largest(*curve.over(start, end).absolute())
+        for each in lengths(document.member, curve):
             more = working.step(
                 "Deflection of what bears, side by side", "u", "k_h*u_w",
-                {"k_h": (ratio, ""), "u_w": (peak.value, "mm")},
+                {"k_h": (ratio, ""), "u_w": (each.peak.value, "mm")},
                 unit="mm", source="k_h: with the fasteners' give over all pieces as one; u_w: as one",
                 group=LASTING if long_term else AT_ONCE,
             )  # fmt: skip
-            own = replace(peak, value=more)
-            found.append(_sag(start, end, kind, own, limit, curve.names, working, long_term))
+            own = replace(each, peak=replace(each.peak, value=more))
+            found.append(_sag(own, limit, working, long_term=long_term))
     return found
 
 
@@ -94,45 +94,26 @@ def _limit(
     return None
 
 
-def _sags(
-    document: documents.MemberDocument, curve: Curve, limit: float, working: Working, *, long_term: bool
-) -> list[Sag]:
-    return [
-        _sag(start, end, kind, largest(*curve.over(start, end).absolute()), limit, curve.names, working, long_term)
-        for start, end, kind in spans(document.member)
-    ]
-
-
-def _sag(
-    start: float,
-    end: float,
-    kind: str,
-    peak: Peak,
-    limit: float,
-    names: tuple[str, ...],
-    working: Working,
-    long_term: bool,
-) -> Sag:
-    combination = names[peak.row]
+def _sag(length: Length, limit: float, working: Working, *, long_term: bool) -> Sag:
+    peak, where = length.peak, length.words
     group = LASTING if long_term else AT_ONCE
-    where = f"{kind} {start:g} to {end:g} mm"
     allowed = working.step(
-        f"Deflection limit, {where}", "u_lim", LIMIT[kind], {"L": (end - start, "mm"), "n": (limit, "")},
-        unit="mm", source=SOURCE, group=group,
+        f"Deflection limit, {where}", "u_lim", LIMIT[length.kind],
+        {"L": (length.end - length.start, "mm"), "n": (limit, "")}, unit="mm", source=SOURCE, group=group,
     )  # fmt: skip
     utilisation = working.step(
         f"Utilisation of the limit, {where}", "eta", "u/u_lim", {"u": (peak.value, "mm"), "u_lim": (allowed, "mm")},
-        unit="", source=f"at {peak.at:.6g} mm, combination {combination}", group=group,
+        unit="", source=f"at {peak.at:.6g} mm, combination {length.combination}", group=group,
     )  # fmt: skip
     result: dict[str, object] = {
-        "from": start,
-        "to": end,
-        "kind": kind,
+        "from": length.start,
+        "to": length.end,
+        "kind": length.kind,
         "limit": allowed,
         "deflection": peak.value,
         "utilisation": utilisation,
         "long_term": long_term,
-        "combination": combination,
+        "combination": length.combination,
         "at": peak.at,
     }
     return Sag(result, utilisation)

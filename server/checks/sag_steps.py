@@ -13,7 +13,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from server import documents
-from server.checks.actions import Actions, Curve, largest
+from server.checks.actions import Actions, Curve, Peak, largest
 from server.checks.crosssection import Body, CrossSection
 from server.mechanics.beam import LineLoad, Load, PointLoad
 from server.mechanics.beam_model import SAME_PLACE
@@ -46,14 +46,50 @@ def spans(member: documents.Member) -> list[tuple[float, float, str]]:
     return found
 
 
+@dataclass(frozen=True)
+class Length:
+    """A length between supports ("span") or beyond them ("overhang"), and where it bends away most.
+
+    ``peak`` counts the size alone; ``upward`` whether it is against the sign of the curve.
+    """
+
+    start: float
+    end: float
+    kind: str
+    peak: Peak
+    combination: str
+    upward: bool
+
+    @property
+    def words(self) -> str:
+        """Which length it is."""
+        return f"{self.kind} {self.start:g} to {self.end:g} mm"
+
+
+def lengths(member: documents.Member, curve: Curve) -> list[Length]:
+    """The greatest deflection of every span and overhang, left to right."""
+    found = []
+    for start, end, kind in spans(member):
+        extremes = curve.over(start, end)
+        peak = largest(*extremes.absolute())
+        upward = max(extremes.max.tolist()) < peak.value
+        found.append(Length(start, end, kind, peak, curve.names[peak.row], upward))
+    return found
+
+
 def write_sag(
-    document: documents.MemberDocument, body: Body, actions: Actions, curve: Curve, group: str, book: Working
+    document: documents.MemberDocument,
+    body: Body,
+    actions: Actions,
+    sagging: Sequence[Length],
+    group: str,
+    book: Working,
 ) -> None:
     """The greatest deflection of one curve: by tables for a simple span, else of every span and overhang."""
-    peak = largest(*curve.whole.absolute())
+    peak = sagging[0].peak
     k = actions.deflection[peak.row]
     if SIDEWAYS in group or not _tabulated(document, body, actions, k):
-        _name_method(document, actions, curve, book, group)
+        _name_method(actions, sagging, book, group)
     elif group == AT_ONCE:
         _short_term(body, actions, peak.at, k, book)
     else:
@@ -89,7 +125,7 @@ def _loaded(actions: Actions, factors: NDArray[np.float64]) -> Loaded:
     ]
 
 
-def _name_method(document: documents.MemberDocument, actions: Actions, curve: Curve, book: Working, group: str) -> None:
+def _name_method(actions: Actions, sagging: Sequence[Length], book: Working, group: str) -> None:
     """The method, with the greatest deflection it gives for each length between supports."""
     lasting = LASTING in group
     how, source = (
@@ -111,14 +147,12 @@ def _name_method(document: documents.MemberDocument, actions: Actions, curve: Cu
         how += "; the load that stays on stiffnesses over 1 + creep, the rest on the full ones"
         source += f"; {CREEP}"
     way = ", to the right positive" if SIDEWAYS in group else ""
-    for start, end, kind in spans(document.member):
-        found = curve.over(start, end)
-        peak = largest(*found.absolute())
-        upward = largest(found.max, found.at_max).value < peak.value
+    for each in sagging:
+        size = each.peak.value
         book.note(
-            f"Greatest {'long-term ' if lasting else ''}deflection{way}, {kind} {start:g} to {end:g} mm",
-            f"{how}; at {peak.at:.6g} mm, combination {curve.names[peak.row]}.",
-            value=-peak.value if upward else peak.value, unit="mm", source=source, group=group,
+            f"Greatest {'long-term ' if lasting else ''}deflection{way}, {each.words}",
+            f"{how}; at {each.peak.at:.6g} mm, combination {each.combination}.",
+            value=-size if each.upward else size, unit="mm", source=source, group=group,
         )  # fmt: skip
 
 
