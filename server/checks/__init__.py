@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from server import documents
-from server.checks import coupons, fastener, load_slip, member, splice, strip_end
+from server.checks import coupons, fastener, glue_up, load_slip, member, splice, strip_end
 from server.checks.contours import Look
 from server.errors import DocumentError, Fault
 
@@ -49,6 +49,8 @@ def _run(document: documents.Document, working: bool, look: Look | None) -> dict
         return coupons.run(document, working=working)
     if isinstance(document, documents.FastenerDocument):
         return fastener.run(document, working=working)
+    if isinstance(document, documents.GlueUpDocument):
+        return glue_up.run(document, working=working)
     if isinstance(document, documents.LoadSlipDocument):
         return load_slip.run(document, working=working)
     if isinstance(document, documents.SpliceDocument):

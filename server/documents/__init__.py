@@ -16,6 +16,7 @@ from server.documents.common import (
 )
 from server.documents.coupons import Coupon, CouponsDocument, Failure, Statistic
 from server.documents.fastener import FastenerDocument
+from server.documents.glue_up import Area, GlueUpDocument
 from server.documents.lasting import Block, Fatigue, FatigueStrength
 from server.documents.load_slip import LoadSlipDocument
 from server.documents.member import (
@@ -46,18 +47,18 @@ from server.documents.member import (
     Tee,
     Tube,
 )
-from server.documents.reading import GROUPS, KINDS, KINDS_TO_COME, fill, kind_of, read, schema
+from server.documents.reading import GROUPS, KINDS, fill, kind_of, read, schema
 from server.documents.splice import SpliceDocument, SpliceLoad
 from server.documents.strip_end import BondedStrip, StripEndDocument
 
 __all__ = [
     "GROUPS",
     "KINDS",
-    "KINDS_TO_COME",
     "Adhesive",
     "Allowable",
     "Analysis",
     "AngleProfile",
+    "Area",
     "AreaLoad",
     "Basis",
     "Block",
@@ -74,6 +75,7 @@ __all__ = [
     "FastenerDocument",
     "Fatigue",
     "FatigueStrength",
+    "GlueUpDocument",
     "IProfile",
     "Joint",
     "LimitState",

@@ -323,12 +323,18 @@ class Document(Model):
 
     def unresolved(self) -> list[str]:
         """Paths of the entries whose values still stand in the library."""
-        return [
+        found = [
             f"{group}.{name}"
             for group in self.groups
             for name, entry in getattr(self, group).items()
             if isinstance(entry, Reference)
         ]
+        return [*found, *(f"{at}.{path}" for at, inner in self.held.items() for path in inner.unresolved())]
+
+    @property
+    def held(self) -> Mapping[str, Document]:
+        """Documents that this one holds, by the field they stand in: their references are filled like its own."""
+        return {}
 
     def material(self, name: str) -> Material:
         """The material's values; JointError while they are still a reference."""

@@ -9,7 +9,7 @@ from typing import Any, TypeVar
 from pydantic import BaseModel, ValidationError
 
 from server import units
-from server.documents import coupons, fastener, fields, load_slip, rules, splice, strip_end
+from server.documents import coupons, fastener, fields, glue_up, load_slip, rules, splice, strip_end
 from server.documents.common import Adhesive, Document, Fastener, Material, Reference
 from server.documents.faults import MOST, faults_of, nearest, sorted_once
 from server.documents.member import MemberDocument
@@ -45,8 +45,8 @@ KINDS: dict[str, Kind] = {
     "load-slip": Kind(load_slip.LoadSlipDocument, load_slip.rules, load_slip.rules_of_raw),
     "splice": Kind(splice.SpliceDocument, splice.rules, splice.rules_of_raw),
     "strip-end": Kind(strip_end.StripEndDocument, strip_end.rules, strip_end.rules_of_raw),
+    "glue-up": Kind(glue_up.GlueUpDocument, glue_up.rules, glue_up.rules_of_raw),
 }
-KINDS_TO_COME = frozenset(("glue-up",))
 
 GROUPS: Mapping[str, type[Material] | type[Adhesive] | type[Fastener]] = {
     "materials": Material,
@@ -78,11 +78,8 @@ def _kind(raw: Mapping[str, Any]) -> str:
     kind = raw["kind"]
     if isinstance(kind, str) and kind in KINDS:
         return kind
-    if isinstance(kind, str) and kind in KINDS_TO_COME:
-        message = f"Checks of kind '{kind}' are not available yet in this version; available: {listed}."
-    else:
-        message = f"{units.given(kind)} is no kind of check; {nearest(kind, KINDS)}"
-        message = message[0].upper() + message[1:]
+    message = f"{units.given(kind)} is no kind of check; {nearest(kind, KINDS)}"
+    message = message[0].upper() + message[1:]
     raise DocumentError([Fault("kind", message)])
 
 

@@ -131,6 +131,8 @@ def _with_todays_revisions(session: Session, document: Mapping[str, Any]) -> dic
         entries = today.get(section)
         if isinstance(entries, Mapping):
             today[section] = {name: _todays(session, value) for name, value in entries.items()}
+    if isinstance(today.get("check"), Mapping):  # a glue-up may hold the member check it is for
+        today["check"] = _with_todays_revisions(session, today["check"])
     return today
 
 

@@ -36,9 +36,16 @@ def resolve(session: Session, document: Document) -> Document:
         record = _find(session, path, BY_SECTION[section], reference, faults)
         if record is not None:
             filled.setdefault(section, {})[name] = assembled(session, record)
+    held: dict[str, Document] = {}
+    for at, inner in document.held.items():
+        try:
+            held[at] = resolve(session, inner)
+        except DocumentError as error:
+            faults += [Fault(f"{at}.{fault.path}", fault.message) for fault in error.faults]
     if faults:
         raise DocumentError(faults)
-    return documents.fill(document, filled) if filled else document
+    whole = documents.fill(document, filled) if filled else document
+    return whole.model_copy(update=held) if held else whole
 
 
 def references(document: Document) -> Iterator[tuple[str, str, Reference]]:

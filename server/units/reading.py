@@ -22,11 +22,15 @@ _SPELLINGS = {
     "lbsf": "lbf", "kips": "kip", "kilogram": "kg", "tonne": "t", "tonnes": "t", "newton": "N", "'": "ft", '"': "in",
     "''": "in", "C": "degC", "F": "degF", "celsius": "degC", "fahrenheit": "degF", "kelvin": "K", "degree": "deg",
     "degrees": "deg", "sqft": "ft2", "sqin": "in2", "sqm": "m2", "sqmm": "mm2",
+    "second": "s", "seconds": "s", "sec": "s", "minute": "min", "minutes": "min", "mins": "min", "hour": "h",
+    "hours": "h", "hr": "h", "hrs": "h", "day": "d", "days": "d",
 }  # fmt: skip
 _WHOLE_SPELLINGS = {
     "kNm": "kN*m", "Nm": "N*m", "Nmm": "N*mm", "kNmm": "kN*mm", "MNm": "MN*m", "sq*ft": "ft2", "sq*in": "in2",
     "sq*m": "m2", "sq*mm": "mm2", "lb/sq*ft": "lb/ft2", "lbf/sq*ft": "lbf/ft2", "lb/1000*sq*ft": "lb/MSGL",
-    "lb/1000sqft": "lb/MSGL", "g/sq*m": "g/m2", "pli": "lbf/in", "um/m*K": "um/m/K",
+    "lb/1000sqft": "lb/MSGL", "g/sq*m": "g/m2",
+    "sq*ft/min": "ft2/min", "sq*ft/h": "ft2/h", "sq*m/min": "m2/min", "sq*m/h": "m2/h",
+    "pli": "lbf/in", "um/m*K": "um/m/K",
 }  # fmt: skip
 
 

@@ -28,6 +28,8 @@ _PEOPLE: Mapping[str, Mapping[str, tuple[str, str]]] = MappingProxyType(
         "stiffness": {"SI": ("N/mm", "N/mm"), "US": ("lbf/in", "lbf/in")},
         "angle": {"SI": ("°", "deg"), "US": ("°", "deg")},
         "area": {"SI": ("mm²", "mm2"), "US": ("in²", "in2")},
+        "time": {"SI": ("min", "min"), "US": ("min", "min")},
+        "assembly_rate": {"SI": ("m²/min", "m2/min"), "US": ("ft²/min", "ft2/min")},
         "mass": {"SI": ("kg", "kg"), "US": ("lb", "lb")},
         "factor": {"SI": ("", ""), "US": ("", "")},
         "moisture": {"SI": ("%", "%"), "US": ("%", "%")},

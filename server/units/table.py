@@ -37,6 +37,7 @@ FORCES = {
 }
 WEIGHT_OF = {"kg": "kgf", "g": "gf", "t": "tf", "lb": "lbf"}
 _AREAS = {f"{name}2": size**2 for name, size in LENGTHS.items() if name not in ("mil", "um", "km")}
+_TIMES = {"s": Fraction(1, 60), "min": Fraction(1), "h": Fraction(60), "d": Fraction(1440)}
 US_PARTS = frozenset(("in", "ft", "yd", "mil", "lb", "oz", "lbf", "kip", "in2", "ft2", "yd2", "in3", "ft3", "degF"))
 US_NAMES = frozenset(("psi", "ksi", "psf", "ksf", "plf", "klf", "pcf", "lb/MSGL", "lb/1000ft2", "lb/1000*ft2"))
 
@@ -148,6 +149,15 @@ _KINDS = (
     Kind("stiffness", "a stiffness (force per length)", "N/mm", "900 N/mm or 5.1 kip/in", 1e12, _over(FORCES, _SPANS)),
     Kind("angle", "an angle", "deg", "30 deg", 3600.0, {"deg": Fraction(1)}),
     Kind("area", "an area", "mm2", "1200 mm2 or 1.86 in2", 1e12, _AREAS),
+    Kind("time", "a time", "min", "25 min or 2 h", 1e7, _TIMES),
+    Kind(
+        "assembly_rate",
+        "a rate of assembly (area per time)",
+        "mm2/min",
+        "0.1 m2/min, 6 m2/h or 1 ft2/min",
+        1e12,
+        _over(_AREAS, _TIMES),
+    ),
     Kind("mass", "a mass", "kg", "12 kg or 26 lb", 1e9, _MASSES),
     Kind("factor", "a plain number", "", "1.35 or 80 %", 1e9, _PERCENT),
     Kind(

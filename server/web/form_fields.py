@@ -27,6 +27,10 @@ UNITS: dict[str, tuple[str, str]] = {
     "temperature": ("degC", "degF"),
     "expansion": ("1/K", "1/K"),
     "angle": ("deg", "deg"),
+    "bond_area": ("m2", "ft2"),
+    "spread": ("g/m2", "lb/MSGL"),
+    "time": ("min", "min"),
+    "assembly_rate": ("m2/min", "ft2/min"),
 }
 # What a plain number means in a document (contract.md), for documents written by hand or by a program.
 PLAIN_UNITS: dict[str, str] = {
@@ -44,6 +48,10 @@ PLAIN_UNITS: dict[str, str] = {
     "temperature": "degC",
     "expansion": "1/K",
     "angle": "deg",
+    "bond_area": "mm2",
+    "spread": "g/m2",
+    "time": "min",
+    "assembly_rate": "mm2/min",
 }
 _SHOWN = str.maketrans({"*": "·", "2": "²", "3": "³"})
 

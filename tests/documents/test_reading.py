@@ -168,7 +168,6 @@ def test_all_faults_are_said_at_once() -> None:
         (drop("format"), "format", "Missing; enter 'bondwright/1'"),
         (put("format", "bondwright/2"), "format", "'bondwright/2' is not accepted; enter 'bondwright/1'"),
         (drop("kind"), "kind", "Missing; enter one of 'member'"),
-        (put("kind", "glue-up"), "kind", "not available yet in this version; available: 'member'"),
         (put("kind", "membr"), "kind", "did you mean 'member'?"),
         (put("kind", 3), "kind", "3 is no kind of check; known: 'coupons', "),
         (put("extra", 1), "extra", "'extra' is not a name of the contract here"),

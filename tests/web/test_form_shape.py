@@ -138,6 +138,10 @@ KIND_OF = {
     "temperature": "temperature",
     "expansion": "expansion",
     "angle": "angle",
+    "bond_area": "area",
+    "spread": "spread",
+    "time": "time",
+    "assembly_rate": "assembly_rate",
 }
 
 
