@@ -34,7 +34,9 @@ class Bond:
         """Its entry in the result."""
         length = None if self.start is None or self.end is None else self.end - self.start
         found: dict[str, object] = {"id": self.name, "width": self.width, "length": length, "area": self.area}
-        return found if self.coverage is None else {**found, "from": self.start, "coverage": self.coverage}
+        if self.coverage is not None:
+            found |= {"adhesive": self.adhesive, "from": self.start, "coverage": self.coverage}
+        return found
 
 
 def bonds_of(document: GlueUpDocument, book: Working, findings: Findings) -> list[Bond]:

@@ -2,6 +2,7 @@
 
 from server.jobs.export import RecordError, altered, export_revision, print_record
 from server.jobs.fastener_record import keep_fastener, may_be_kept
+from server.jobs.glue_up import glue_up_of, may_be_glued
 from server.jobs.headings import FoundJobs, Job, JobLine, create, edit, get, search
 from server.jobs.hindrances import Hindrance, answer, hindrances
 from server.jobs.issuing import Issue, issue, issue_of, issued_pdf, issues
@@ -30,12 +31,14 @@ __all__ = [
     "edit",
     "export_revision",
     "get",
+    "glue_up_of",
     "hindrances",
     "issue",
     "issue_of",
     "issued_pdf",
     "issues",
     "keep_fastener",
+    "may_be_glued",
     "may_be_kept",
     "moved",
     "pdf_bytes",

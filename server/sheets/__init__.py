@@ -12,7 +12,15 @@ from server.sheets.lasting import TITLE as LASTING
 from server.sheets.loads_drawing import loads_svg
 from server.sheets.one_page import OnePage
 from server.sheets.one_pages import ONE_PAGES
-from server.sheets.pdf import UnprintableError, evidence_pdf, pdf, setting_out_pdf, unprintable, unprintable_boxes
+from server.sheets.pdf import (
+    UnprintableError,
+    evidence_pdf,
+    pdf,
+    setting_out_pdf,
+    traveller_pdf,
+    unprintable,
+    unprintable_boxes,
+)
 from server.sheets.plotting import texts_of
 from server.sheets.probability_plot import probability_plot_svg
 from server.sheets.section_drawing import section_svg
@@ -69,6 +77,7 @@ __all__ = [
     "stress_svg",
     "terminal",
     "texts_of",
+    "traveller_pdf",
     "unprintable",
     "unprintable_boxes",
     "utilisation",

@@ -24,6 +24,7 @@ from server.sheets.loads_drawing import loads_svg
 from server.sheets.section_drawing import section_svg
 from server.sheets.setting_out_page import compose_setting_out
 from server.sheets.stress_drawing import stress_svg
+from server.sheets.traveller import compose_traveller
 
 DRAWINGS = Drawings(section_svg, loads_svg, diagram_svg, flow_svg, slip_svg, stress_svg)
 STANDARD: Final = "a-2b"
@@ -112,6 +113,11 @@ def pdf(sheet: SheetData) -> bytes:
 def setting_out_pdf(sheet: SheetData) -> bytes:
     """The setting-out page of a check as a PDF file; raises as ``pdf`` does, and where nothing is set out."""
     return _set("setting_out.typ", compose_setting_out(sheet), sheet.saved_at)
+
+
+def traveller_pdf(sheet: SheetData) -> bytes:
+    """The traveller of a glue-up as a PDF file; raises as ``pdf`` does, and where the check is no glue-up."""
+    return _set("traveller.typ", compose_traveller(sheet), sheet.saved_at)
 
 
 def evidence_pdf(page: EvidenceData) -> bytes:

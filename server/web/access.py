@@ -52,6 +52,7 @@ RULES: dict[str, str] = {
     "check_pdf": READS,
     "check_document": READS,
     "setting_out_pdf": READS,
+    "traveller_pdf": READS,
     "compare_revisions": READS,
     "new_check": PREPARES,
     "preview_check": PREPARES,

@@ -67,10 +67,15 @@ def _unprintable(asked: OnePage, values: Mapping[str, str]) -> dict[str, str]:
 
 
 @router.get("/jobs/{job_id}/checks/{kind}/new", name="new_kind_check")
-def new_check(request: Request, session: DbSession, job_id: Id, kind: str) -> Response:
-    """Show the form of a new check of a kind."""
+def new_check(
+    request: Request, session: DbSession, job_id: Id, kind: str, check: str = "", revision: str = ""
+) -> Response:
+    """Show the form of a new check of a kind; that of a glue-up begins with the areas of a saved ``check``."""
     job, asked = jobs.get(session, job_id), kind_of(kind)
     values = forms.start(asked, job.display)
+    if check and kind == "glue-up":
+        saved = jobs.revision_of(session, whole(check) or 0, whole(revision))
+        values |= {name: text for name, text in forms.write(asked, jobs.glue_up_of(session, saved)).items() if text}
     return _page(request, session, job, asked, values, judge(session, asked, values))
 
 

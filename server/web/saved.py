@@ -71,6 +71,14 @@ def setting_out_pdf(session: DbSession, check_id: Id, revision: Id) -> Response:
     return Response(page_of, media_type="application/pdf", headers=headers)
 
 
+@router.get("/{check_id}/revisions/{revision}/traveller.pdf", name="traveller_pdf")
+def traveller_pdf(session: DbSession, check_id: Id, revision: Id) -> Response:
+    """Hand out the traveller of a glue-up: the saved plan, with blanks to write on."""
+    saved = jobs.revision_of(session, check_id, revision)
+    headers = {"Content-Disposition": f'inline; filename="{file_name(saved)}-traveller.pdf"'}
+    return Response(sheets.traveller_pdf(jobs.sheet_of(saved)), media_type="application/pdf", headers=headers)
+
+
 @router.get("/{check_id}/revisions/{revision}/document.json", name="check_document")
 def check_document(session: DbSession, check_id: Id, revision: Id) -> Response:
     """Hand out the check document as typed, for the command line or another program."""
@@ -145,6 +153,7 @@ def show(
         used=used,
         notices=[value for value in used if value.today],
         may_be_kept=jobs.may_be_kept(saved),
+        may_be_glued=jobs.may_be_glued(saved),
         sets_out=bool(sheets.laid_out(saved.result)),
         panel=any_panel(saved.result, display, asked_of(request.query_params)),
         waiting=(),
