@@ -15,7 +15,7 @@ from server.sheets.glue_up import area_unit, mass_unit, time
 from server.sheets.values import DASH, Unit, quantity, unit, utilisation, verdict
 
 KIND = "glue-up"
-MOST_BONDS, MOST_MIXES = 4, 6
+MOST_BONDS, MOST_MIXES = 4, 5
 FOOT = "Plan of a glue-up; the sheet of the check says what it stands on. The adhesive's data sheets take precedence."
 SAFETY = (
     "Read the adhesive's safety data sheet first: gloves, eye protection, ventilation. Do not start where a measured "
