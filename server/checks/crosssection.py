@@ -77,29 +77,29 @@ class Part:
     def top(self) -> float:
         return float(self.box[1][1])
 
-    @property
+    @cached_property
     def lies_flat(self) -> bool:
         """Whether the piece is wider than deep, so that horizontal cuts pass through its thickness."""
         return float(self.box[1][0] - self.box[0][0]) > self.top - self.bottom
 
-    @property
+    @cached_property
     def rolls(self) -> bool:
         """Whether shear at its face rolls the fibres: layered material, or grain across the member."""
         return self.spec.grain == "across" or self.material.layered
 
-    @property
+    @cached_property
     def body_rolls(self) -> bool:
         """Whether shear on horizontal cuts through its body rolls the fibres (a panel on edge shears in its plane)."""
         return self.spec.grain == "across" or (self.material.layered and self.lies_flat)
 
-    @property
+    @cached_property
     def shear_modulus(self) -> float | None:
         """The modulus that horizontal cuts see."""
         if self.body_rolls and self.material.G_rolling is not None:
             return self.material.G_rolling
         return self.material.G
 
-    @property
+    @cached_property
     def field_modulus(self) -> float | None:
         """The modulus of the section's field: the rolling one for a layered piece or one with its grain across."""
         if self.rolls and self.material.G_rolling is not None:
@@ -122,12 +122,14 @@ class Site:
     contact: Contact
     width: float
 
-    @property
+    @cached_property
     def bonded(self) -> bool:
         return self.spec.adhesive is not None
 
     def present(self, start: float, end: float) -> bool:
-        return all(part.start <= start and part.end >= end for part in (self.first, self.second))
+        """Whether both of its pieces run all along from one place to the other."""
+        one, other = self.first, self.second
+        return one.start <= start and other.start <= start and one.end >= end and other.end >= end
 
 
 @dataclass(frozen=True)

@@ -93,9 +93,9 @@ def skins(document: documents.MemberDocument, actions: Actions, stretch: Stretch
     """The wood-based skins of a stretch that reach beyond their ribs."""
     found = []
     for part in stretch.section.parts:
-        row = _row(part)
-        ribs = _ribs(part, stretch.section.sites) if row and part.lies_flat else ()
-        if row and ribs and sum(end - start for start, end in ribs) < extent(part, 0) * (1 - _NOTHING):
+        row = _row(part) if part.lies_flat else ""
+        ribs = _ribs(part, stretch.section.sites) if row else ()
+        if ribs and sum(end - start for start, end in ribs) < extent(part, 0) * (1 - _NOTHING):
             found.append(Skin(part, row, ribs, _span(document), _compressed(part, actions, stretch)))
     return found
 
