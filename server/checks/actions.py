@@ -176,14 +176,6 @@ class Actions:
         return tuple(self.names[k] for k in self.strength)
 
     @cached_property
-    def staying_shear(self) -> Curve | None:
-        """The shear of what stays under every combination for strength, before the combination's own factors."""
-        if self.shear is None:
-            return None
-        shares, shear = self.sustained[list(self.strength)], self.each_case.shear
-        return Curve(self.each_case.breaks, np.tensordot(shares, shear, 1), self.strength_names)
-
-    @cached_property
     def labels(self) -> tuple[str, ...]:
         """The combination of every row, with the place of its axles where they move."""
         if self.moving is None:

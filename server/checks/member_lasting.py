@@ -74,7 +74,7 @@ def _bonds(document: documents.MemberDocument, actions: Actions, joints: Sequenc
 
     A combination with moving axles has several rows, of which the hardest counts.
     """
-    if actions.shear is None or actions.staying_shear is None:
+    if actions.shear is None:
         return []
     claimed = [(joint, own) for joint in joints if (own := _own_limit(joint)) is not None]
     rows_of: dict[str, list[int]] = {}
@@ -88,15 +88,15 @@ def _bonds(document: documents.MemberDocument, actions: Actions, joints: Sequenc
             row = max(rows, key=own.used.__getitem__)
             if own.used[row] >= 0:
                 hardest.append((name, rows, row, joint, own))
-    at = np.array([own.claim.at[row] for _, _, row, _, own in hardest])
-    whole, stays = _shear(actions.shear, at), _shear(actions.staying_shear, at)
+    places = [own.claim.at.item(row) for _, _, row, _, own in hardest]
+    whole, stays = _shear(actions, actions.shear, np.array(places))
     found = []
     for i, (name, rows, row, joint, own) in enumerate(hardest):
         owner = own.claim.strength.owner
         adhesive = document.adhesives[owner]
         assert isinstance(adhesive, documents.Adhesive)
         share = max(stays[i][each] for each in rows) / whole[i][row] if whole[i][row] > 0 else 0.0
-        found.append(_Bond(name, joint, owner, adhesive, own.used[row], float(at[i]), share))
+        found.append(_Bond(name, joint, owner, adhesive, own.used[row], places[i], share))
     return found
 
 
@@ -115,11 +115,11 @@ def _judge(
     combination: documents.Combination, bond: _Bond, book: Working, findings: Findings, found: MemberEnds
 ) -> list[dict[str, object]]:
     """Load that repeats, and load that stays where the adhesive's creep limit is known."""
+    adhesive, name, share = bond.adhesive, bond.name, bond.share
 
     def use(part: float) -> float:
         return part * bond.used
 
-    adhesive, name, share = bond.adhesive, bond.name, bond.share
     where = f"joint {bond.joint.site.id}, combination {bond.combination}"
     each = [lasting.repeated(combination.fatigue, adhesive, name, use, book, findings, where)]
     if share > 0 and adhesive.creep_limit is not None:
@@ -129,7 +129,13 @@ def _judge(
     return [one.result for one in kept]
 
 
-def _shear(curve: Curve, at: NDArray[np.float64]) -> list[list[float]]:
-    """The larger shear on both sides of every place, one value a combination [N]."""
-    found: list[list[float]] = np.abs(both_sides(curve.breaks, curve.coefficients, at)).max(axis=1).T.tolist()
-    return found
+def _shear(actions: Actions, curve: Curve, at: NDArray[np.float64]) -> tuple[list[list[float]], list[list[float]]]:
+    """The larger shear on both sides of every place, whole and what stays of it, one value a combination [N].
+
+    What stays is a share of each case, before the combination's own factors.
+    """
+    whole = both_sides(curve.breaks, curve.coefficients, at).swapaxes(0, 1)
+    cases = both_sides(actions.each_case.breaks, actions.each_case.shear, at).swapaxes(0, 1)
+    stays = actions.sustained[list(actions.strength)] @ cases  # (sides, combinations, places)
+    larger = (np.abs(each).max(axis=0).T.tolist() for each in (whole, stays))
+    return next(larger), next(larger)

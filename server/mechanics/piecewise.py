@@ -370,10 +370,11 @@ def _values(breaks: Array, c: Array, at: Array, piece: Indices) -> Array:
     """Return the polynomials of the given intervals at some places; beyond the member, those of its ends."""
     piece = np.minimum(np.maximum(piece, 0), len(breaks) - 2)
     s = at - breaks[piece]
-    chosen = c[..., piece, :]
+    chosen = c.take(piece, axis=-2)
     value = chosen[..., -1].copy()
     for power in range(c.shape[-1] - 2, -1, -1):
-        value = value * s + chosen[..., power]
+        value *= s
+        value += chosen[..., power]
     return value
 
 
