@@ -72,8 +72,8 @@ def _bend(body: Body, scan: Scan) -> dict[int, Bent]:
     found: dict[int, Bent] = {}
     for run in body.runs if scan.moment else ():
         extremes = [scan.moment[t] for t in run.along]
-        moment = np.array([[each.max, each.min] for each in extremes])
-        at = np.array([[each.at_max, each.at_min] for each in extremes])
+        moment = np.array([each.value[:2] for each in extremes])  # greatest and least
+        at = np.array([each.at[:2] for each in extremes])
         stress = formula(BENDING).array({"M": moment, **run.bending})
         entries = (2 * len(run.along), moment.shape[2])
         stress, moment, at = stress.reshape(-1, 3, *entries), moment.reshape(entries), at.reshape(entries)

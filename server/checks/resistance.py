@@ -184,7 +184,7 @@ class Weigher:
         """One strength, or None where it was not given; ``divisor`` stands in for the basis's own factor."""
         if value is None:
             return None
-        terms = self._terms_of(kind, owner, holder)
+        terms = self._terms.get((kind, owner)) or self._terms_of(kind, owner, holder)
         divided = divisor or self._common or terms.divisor
         assert divided is not None  # documents refuses a basis without a factor that the check uses
         return Strength(what, value, unit, owner, terms.duration, terms.factors, divided, terms.source)
@@ -343,7 +343,7 @@ def resistances(claims: Sequence[Claim]) -> NDArray[np.float64]:
     strengths = [claim.strength for claim in claims]
     alike: dict[int, list[int]] = {}
     for i, strength in enumerate(strengths):
-        alike.setdefault(len(strength.multipliers), []).append(i)
+        alike.setdefault(len(strength.factors) + len(strength.reductions), []).append(i)
     found = np.empty((len(claims), len(strengths[0].duration)))
     for factors, places in alike.items():
         own = [strengths[i] for i in places]
