@@ -6,6 +6,7 @@ from collections.abc import Iterable, Sequence
 from dataclasses import dataclass, replace
 from functools import cached_property
 from itertools import pairwise
+from typing import NamedTuple
 
 import numpy as np
 from numpy.typing import NDArray
@@ -404,8 +405,7 @@ def _long_term(
     return combined.deflection + more.reshape(combined.deflection.shape)
 
 
-@dataclass(frozen=True)
-class Peak:
+class Peak(NamedTuple):
     """The value of largest size with its place and the row of its combination."""
 
     value: float

@@ -34,7 +34,7 @@ class Demand(NamedTuple):
         """The combination of the largest flow; the leftmost place wins a tie, then the first combination."""
         flow, at = self.flow.tolist(), self.at.tolist()  # a handful: numpy would take longer to start than to run
         least = max(flow) * (1 - TIE)
-        return min((row for row, each in enumerate(flow) if each >= least), key=at.__getitem__)
+        return min([row for row, each in enumerate(flow) if each >= least], key=at.__getitem__)
 
 
 def leftmost(left: Demand, right: Demand) -> Demand:

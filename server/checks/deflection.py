@@ -68,7 +68,7 @@ def more_deflection(document: documents.MemberDocument, actions: Actions, ratio:
                 unit="mm", source="k_h: with the fasteners' give over all pieces as one; u_w: as one",
                 group=LASTING if long_term else AT_ONCE,
             )  # fmt: skip
-            own = replace(each, peak=replace(each.peak, value=more))
+            own = replace(each, peak=each.peak._replace(value=more))
             found.append(_sag(own, limit, working, long_term=long_term))
     return found
 
