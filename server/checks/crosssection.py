@@ -364,7 +364,7 @@ def build(document: documents.MemberDocument) -> Body:
 
     A body whose pieces, joints and values are those of one asked for before is that one.
     """
-    content = document.model_dump_json(include={"section", "materials", "adhesives", "analysis"})
+    content = document.model_dump_json(include={"section", "materials", "adhesives", "analysis"}, exclude_none=True)
     wanted, free = _wanted(document), not document.member.held_sideways
     return _bodies.of((document.member.length, wanted, free, content), lambda: _build(document, wanted, free))
 

@@ -23,12 +23,8 @@ class Governing(NamedTuple):
     section: CrossSection
 
 
-class _Candidate(NamedTuple):
-    """One limit that could govern; its line is put into words only where it does."""
-
-    utilisation: float
-    line: Callable[[], str]
-    section: Callable[[], CrossSection]
+Told = tuple[str, CrossSection]
+"""A limit in words, and the section where it is."""
 
 
 def governing_limit(
@@ -41,46 +37,43 @@ def governing_limit(
     ends: MemberEnds,
 ) -> Governing | None:
     """The limit used most, of equals the first; None where nothing could be judged."""
-    candidates = [
-        _Candidate(weighed.utilisation, partial(_limit, word, c, weighed, judge), partial(_in_stretch, body, weighed))
+    candidates: list[tuple[float, Callable[[], Told]]] = [
+        (weighed.utilisation, partial(_limit, word, c, weighed, body, judge))
         for word, group in (("joint", joints), ("piece", pieces))
         for c in group
         if (weighed := c.governing) is not None
     ]
     if fall_back is not None and fall_back.utilisation is not None:
-        line = fall_back.line
-        candidates.append(_Candidate(fall_back.utilisation, lambda: line, lambda: body.stretches[0].section))
-    for each in ends.governs:
-        candidates.append(_Candidate(each.utilisation, partial(str, each.line), partial(_section_at, body, each.at)))
-    for sag in sags:
-        at = float(str(sag.result["at"]))
-        candidates.append(_Candidate(sag.utilisation, partial(_sag, sag, at, judge), partial(_section_at, body, at)))
-    most = max(candidates, key=lambda c: float(f"{c.utilisation:.12g}"), default=None)
-    return None if most is None else Governing(most.utilisation, most.line(), most.section())
+        candidates.append((fall_back.utilisation, partial(_told, fall_back.line, body, 0.0)))
+    candidates += [(each.utilisation, partial(_told, each.line, body, each.at)) for each in ends.governs]
+    candidates += [(sag.utilisation, partial(_sag, sag, body, judge)) for sag in sags]
+    if not candidates:
+        return None
+    utilisation, told = max(candidates, key=lambda each: float(f"{each[0]:.12g}"))
+    return Governing(utilisation, *told())
 
 
-def _limit(word: str, check: JointCheck | PieceCheck, weighed: Weighed, judge: Judge) -> str:
-    """The line of a joint's or a piece's limit; with the glue gone, where that is what governs a joint."""
+def _limit(word: str, check: JointCheck | PieceCheck, weighed: Weighed, body: Body, judge: Judge) -> Told:
+    """A joint's or a piece's limit; with the glue gone, where that is what governs a joint."""
     gone = isinstance(check, JointCheck) and check.gone is not None and weighed.claim.symbol in ("F", "F_r")
-    return (
+    line = (
         f"{word} {check.result['id']}: {weighed.claim.strength.what}{' with the glue gone' if gone else ''}, "
         f"{weighed.utilisation:.3g} of its resistance used {judge.places.words(weighed.at)}, combination "
         f"{judge.actions.strength_names[weighed.row]}"
     )
+    return line, body.stretches[weighed.stretch].section
 
 
-def _sag(sag: Sag, at: float, judge: Judge) -> str:
+def _sag(sag: Sag, body: Body, judge: Judge) -> Told:
     result = sag.result
+    at = float(str(result["at"]))
     term = "long-term deflection" if result["long_term"] else "deflection"
-    return (
+    line = (
         f"{term} of the {result['kind']} {result['from']:g} to {result['to']:g} mm, {sag.utilisation:.3g} of "
         f"its limit used {judge.places.words(at)}, combination {result['combination']}"
     )
+    return _told(line, body, at)
 
 
-def _in_stretch(body: Body, weighed: Weighed) -> CrossSection:
-    return body.stretches[weighed.stretch].section
-
-
-def _section_at(body: Body, at: float) -> CrossSection:
-    return next(s.section for s in body.stretches if at <= s.end)
+def _told(line: str, body: Body, at: float) -> Told:
+    return line, next(stretch.section for stretch in body.stretches if at <= stretch.end)

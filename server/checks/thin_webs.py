@@ -48,22 +48,21 @@ class Web:
 
 def webs(section: CrossSection) -> list[Web]:
     """Every thin web of a section."""
-    found = []
-    for part in section.parts:
-        web = None if part.lies_flat else _web(part, section)
-        if web is not None and web.slenderness >= LEAST:
-            found.append(web)
-    return found
-
-
-def _web(part: Part, section: CrossSection) -> Web | None:
-    middle = section.centroids[part.index]
-    above: list[tuple[float, float]] = []
-    below: list[tuple[float, float]] = []
+    bonds: dict[int, list[tuple[float, float]]] = {}
     for site in section.sites:
-        if site.bonded and part in (site.first, site.second):
+        if site.bonded:
             low, high = sorted((site.contact.start.item(1), site.contact.end.item(1)))
-            (above if low + high > 2 * middle else below).append((low, high))
+            for part in (site.first, site.second):
+                bonds.setdefault(part.index, []).append((low, high))
+    upright = [part for part in section.parts if part.index in bonds and not part.lies_flat]
+    found = [_web(part, section.centroids[part.index], bonds[part.index]) for part in upright]
+    return [web for web in found if web is not None and web.slenderness >= LEAST]
+
+
+def _web(part: Part, middle: float, bonds: Sequence[tuple[float, float]]) -> Web | None:
+    """The web that an upright piece is, with bonds above and below its middle; None where it has not both."""
+    above = [(low, high) for low, high in bonds if low + high > 2 * middle]
+    below = [(low, high) for low, high in bonds if low + high <= 2 * middle]
     if not (above and below):
         return None
     bottom, top = max(high for _, high in below), min(low for low, _ in above)
