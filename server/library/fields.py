@@ -14,7 +14,7 @@ def line(faults: list[Fault], path: str, value: str, *, needed: str = "", most: 
     """Return one trimmed line; a fault where it is too long, broken or, with ``needed`` (what to enter), empty."""
     text = _clean(faults, path, value, most, "")
     if needed and not text:
-        faults.append(Fault(path, f"{path} is empty; enter {needed}."))
+        faults.append(Fault(path, f"The {path.replace('_', ' ')} is empty; enter {needed}."))
     return text
 
 

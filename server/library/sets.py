@@ -50,7 +50,7 @@ def exclude(
     written = fields.prose(faults, "cause", cause)
     stops = fields.prose(faults, "prevented_by", prevented_by)
     if not written:
-        faults.append(Fault("cause", "The cause is empty; a coupon is left out only for a cause that can be named."))
+        faults.append(Fault("cause", "The cause is empty; a coupon is excluded only for a cause that can be named."))
     record, coupons = _coupons(session, key, index, faults)
     if coupons[index].get("excluded") is not None:
         raise DocumentError([Fault("index", f"Coupon {index + 1} is excluded already.")])

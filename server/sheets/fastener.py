@@ -150,7 +150,7 @@ GROUPS = (
             ),
             Ask("fastener.ultimate", "Tensile strength of its steel", "stress", start=("600", ""), only=_WOODEN),
             Ask("fastener.bending_yield", "Bending yield strength", "stress", start=("", "90000"), only=_WOODEN),
-            Ask("fastener.yield_moment", "Declared yield moment", "couple", only=_WOODEN),
+            Ask("fastener.yield_moment", "Declared yield moment", "fastener_couple", only=_WOODEN),
             Ask(
                 "fastener.withdrawal",
                 "Withdrawal resistance",

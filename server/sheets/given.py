@@ -15,6 +15,7 @@ from server.errors import InputError
 from server.sheets.values import unit
 
 Typed = Mapping[str, Any]
+METHODS = {"allowable": "allowable stress", "limit-state": "limit-state design"}
 
 
 @dataclass(frozen=True)
@@ -145,7 +146,7 @@ class _Writer:
 
     def basis(self, basis: Typed) -> Iterable[Row]:
         if "method" in basis:
-            yield Row("Method", typed_text(basis["method"]), "")
+            yield Row("Method", METHODS.get(str(basis["method"]), typed_text(basis["method"])), "")
         names = {"safety_factor": "Safety factor", "partial_factor": "Partial factor"}
         for field, name in names.items():
             if field in basis:

@@ -52,7 +52,7 @@ def _slip(result: Result, display: str) -> Iterator[Part]:
     if rows:
         columns = [
             column("No."), column("Joint", share=1), column(f"Slip, {length.text}", side="right"),
-            column(f"Flow, {flow.text}", side="right"), column(f"At, {length.text}", side="right"),
+            column(f"Shear flow, {flow.text}", side="right"), column(f"At, {length.text}", side="right"),
             column("Place", share=0.8),
         ]  # fmt: skip
         yield table(columns, rows)
@@ -85,7 +85,7 @@ def _fall_back(result: Result, display: str) -> Iterator[Part]:
     ]  # fmt: skip
     if rows:
         columns = [
-            column("No."), column("Joint", share=1), column(f"Flow, {flow.text}", side="right"),
+            column("No."), column("Joint", share=1), column(f"Shear flow, {flow.text}", side="right"),
             column(f"Slip, {length.text}", side="right"), column("Force each", side="right"),
             column("Resistance", side="right"), column("Utilisation", side="right"),
         ]  # fmt: skip

@@ -20,6 +20,9 @@ DIGITS = 4
 DASH = "–"
 _SI_FOR_PEOPLE = {"N": ("kN", 1e-3), "N*mm": ("kN·m", 1e-6)}
 _COUNT = r"\d{1,3}(?:,\d{3})+(?:\.\d+)?|\d+(?:\.\d+)?(?:e[+-]?\d+)?"
+_THOUSANDS = re.compile(r"(?<=\d),(?=\d{3}(?!\d))")
+_POWER = re.compile(r"(?<=mm)[234](?!\w)")
+_RAISED = str.maketrans("234", "²³⁴")
 _NAME = re.compile(r"(?<![\w.'\"/])[a-z]{3,}(?:_[a-z]+)+(?![\w.'\"/])")
 _IN_WORDS = re.compile(rf"(?<![\w.,])({_COUNT}) (N/mm|MPa|mm2|mm|N)(?![\w/*·²]|\d)")
 
@@ -87,12 +90,16 @@ def _as_exact(text: str, of: Unit) -> str:
 
 
 def spoken(text: str) -> str:
-    """A stored sentence for people: names of the check document in it as words.
+    """A stored sentence for people: names of the check file as words, thousands and powers as in the tables.
 
     >>> spoken("adhesive 'E7' has no creep_limit, and h_f is 70 mm")
     "adhesive 'E7' has no creep limit, and h_f is 70 mm"
+    >>> spoken("taken as stiff, 10,000 N/mm3") == "taken as stiff, 10\u2009000 N/mm³"
+    True
     """
-    return _NAME.sub(lambda found: found[0].replace("_", " "), text)
+    text = _NAME.sub(lambda found: found[0].replace("_", " "), text)
+    text = _THOUSANDS.sub(units.THIN, text)
+    return _POWER.sub(lambda found: found[0].translate(_RAISED), text)
 
 
 def utilisation(value: object) -> str:

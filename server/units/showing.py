@@ -19,7 +19,7 @@ _PEOPLE: Mapping[str, Mapping[str, tuple[str, str]]] = MappingProxyType(
         "force": {"SI": ("kN", "kN"), "US": ("lbf", "lbf")},
         "line_load": {"SI": ("kN/m", "kN/m"), "US": ("lbf/ft", "lbf/ft")},
         "area_load": {"SI": ("kN/m²", "kN/m2"), "US": ("psf", "psf")},
-        "couple": {"SI": ("kNm", "kN*m"), "US": ("lbf-ft", "lbf*ft")},
+        "couple": {"SI": ("kN·m", "kN*m"), "US": ("lbf·ft", "lbf*ft")},
         "stress": {"SI": ("MPa", "MPa"), "US": ("psi", "psi")},
         "temperature": {"SI": ("°C", "degC"), "US": ("°F", "degF")},
         "temperature_change": {"SI": ("K", "K"), "US": ("°F", "degF")},
@@ -36,7 +36,7 @@ _PEOPLE: Mapping[str, Mapping[str, tuple[str, str]]] = MappingProxyType(
         "expansion": {"SI": ("1/K", "1/K"), "US": ("1/°F", "1/degF")},
     }
 )
-_SMALLER = {"force": ("N", "N"), "couple": ("Nm", "N*m")}  # SI, below 1 kN and 1 kNm
+_SMALLER = {"force": ("N", "N"), "couple": ("N·m", "N*m")}  # SI, below 1 kN and 1 kN·m
 
 
 def unit_of(kind: str, display: str = "SI") -> str:
@@ -55,7 +55,7 @@ def scale_of(kind: str, display: str = "SI") -> float:
 def show(value: float, kind: str, display: str = "SI") -> str:
     """``value`` (N, mm, MPa) for people: '4 200 mm', '2.5 kN', '13 ft 9.5 in', '1,200 psi'.
 
-    SI lengths are in mm as on workshop drawings; forces and couples under 1 kN and 1 kNm in N and Nm; US lengths of
+    SI lengths are in mm as on workshop drawings; forces and couples under 1 kN and 1 kN·m in N and N·m; US lengths of
     10 ft and more in feet and decimal inches. Four significant digits; whole digits are kept up to a million.
     """
     separator = THIN if display == "SI" else ","

@@ -61,6 +61,8 @@ def show(request: Request, session: Session, record: Record, *, errors: Mapping[
     person = signed(request)
     obstacles = library.obstacles(session, record, person) if _may_be_approved(record) else []
     lot = library.lot_uses(session, str(record.values["number"])) if record.group == "lots" else None
+    links = _standings(record, targets, pinned=False)
+    linked = {each.label for each in links}
     return page(
         request,
         "library/show.html",
@@ -71,8 +73,12 @@ def show(request: Request, session: Session, record: Record, *, errors: Mapping[
         standing=library.standing(record),
         values_shown=record_form.shown(record),
         value_text=library.value_text(record, _display(coupon_set)) if record.group == "values" else "",
-        details=[(label, record.details[name]) for name, label in group.details.items() if record.details.get(name)],
-        links=_standings(record, targets, pinned=False),
+        details=[
+            (f"{label}, in words" if label in linked else label, record.details[name])
+            for name, label in group.details.items()
+            if record.details.get(name)
+        ],
+        links=links,
         pins=_standings(record, targets, pinned=True),
         chain=record.chain,
         multiplication=_multiplication(record, targets),
