@@ -239,6 +239,8 @@ def issue_it(bo: Seat) -> None:
     page.click("summary:has-text('Issue revision 1')")
     page.click("button:has-text('Issue B1')")
     page.wait_for_selector("text=issued by Bo Builder")
+    assert "Print the issued sheet" in page.inner_text(".page-head")
+    assert "issued" in page.inner_text(".titleblock")
     bo.look("issued")
     bo.clean()
 
