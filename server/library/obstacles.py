@@ -158,7 +158,11 @@ def _of_the_person(session: Session, record: Record, by: Person) -> Iterator[Obs
             "person", "It was entered without a name; save it once more under the name of who stands for it."
         )
     elif not by.named:
-        yield Obstacle("person", "Nobody is signed in here, so nobody can be told from who entered it.")
+        yield Obstacle(
+            "person",
+            "Nobody is signed in here, so nobody can be told from who entered it. Start the program with --sign-in; "
+            "then another person approves it.",
+        )
 
 
 def others_who_may(session: Session, by: Person, role: str) -> list[str]:

@@ -29,7 +29,7 @@ from server.sheets.slip_parts import blocks as slip_blocks
 from server.sheets.stress_drawing import TITLES as STRESSES
 from server.sheets.stress_drawing import stress_svg
 from server.sheets.terminal import terminal
-from server.sheets.values import governing, in_units, missing, quantity, spoken, utilisation, verdict
+from server.sheets.values import governing, in_units, missing, quantity, raised, spoken, utilisation, verdict
 
 __all__ = [
     "LASTING",
@@ -68,6 +68,7 @@ __all__ = [
     "pdf",
     "probability_plot_svg",
     "quantity",
+    "raised",
     "section_svg",
     "setting_out_pdf",
     "setting_out_svg",

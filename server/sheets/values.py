@@ -21,7 +21,7 @@ DASH = "–"
 _SI_FOR_PEOPLE = {"N": ("kN", 1e-3), "N*mm": ("kN·m", 1e-6)}
 _COUNT = r"\d{1,3}(?:,\d{3})+(?:\.\d+)?|\d+(?:\.\d+)?(?:e[+-]?\d+)?"
 _THOUSANDS = re.compile(r"(?<=\d),(?=\d{3}(?!\d))")
-_POWER = re.compile(r"(?<=mm)[234](?!\w)")
+_POWER = re.compile(r"(?:(?<=/)|(?<=\d[ \u00a0]))(?:mm|cm|m|in|ft)[234](?!\w)")
 _RAISED = str.maketrans("234", "²³⁴")
 _NAME = re.compile(r"(?<![\w.'\"/])[a-z]{3,}(?:_[a-z]+)+(?![\w.'\"/])")
 _IN_WORDS = re.compile(rf"(?<![\w.,])({_COUNT}) (N/mm|MPa|mm2|mm|N)(?![\w/*·²]|\d)")
@@ -99,6 +99,15 @@ def spoken(text: str) -> str:
     """
     text = _NAME.sub(lambda found: found[0].replace("_", " "), text)
     text = _THOUSANDS.sub(units.THIN, text)
+    return raised(text)
+
+
+def raised(text: str) -> str:
+    """A typed quantity with the powers of its unit raised.
+
+    >>> raised("420 kg/m3"), raised("piece m2 of 12 mm2")
+    ('420 kg/m³', 'piece m2 of 12 mm²')
+    """
     return _POWER.sub(lambda found: found[0].translate(_RAISED), text)
 
 

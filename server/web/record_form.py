@@ -10,6 +10,7 @@ from typing import Any, TypedDict
 from server import units
 from server.errors import Fault
 from server.library import ALL, PROPERTIES, Group, Link, Record, value_text
+from server.sheets import raised
 from server.web import form_fill, forms
 from server.web.evidence_fields import BOXES, LINKS, VALUE_UNITS
 from server.web.form_fields import GROUPS as ROWS
@@ -328,7 +329,7 @@ def shown(record: Record) -> list[tuple[str, str]]:
             text = ", ".join(f"{name} {_plain(factor)}" for name, factor in value.items())
         else:
             text = _plain(value) + _unit_after(value, box)
-        found.append((box.label, units.degrees(text)))
+        found.append((box.label, raised(units.degrees(text))))
     return found
 
 

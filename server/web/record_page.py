@@ -152,7 +152,12 @@ def _role_words(role: str) -> str:
     head, _, tail = role.partition(":")
     if head == "value":
         return f"as its {tail.replace('strengths.', '').replace('_', ' ')}"
-    return f"in its factor {tail}" if head == "factor" else f"as its {LINKS.get(role, role).lower()}"
+    return f"in its factor {tail}" if head == "factor" else f"as its {_inside(LINKS.get(role, role))}"
+
+
+def _inside(label: str) -> str:
+    """A label within a sentence: 'surface A: material'."""
+    return label[:1].lower() + label[1:]
 
 
 def _multiplication(record: Record, targets: Mapping[Link, Record]) -> str:
