@@ -133,6 +133,7 @@ KIND_OF = {
     "area_load": "area_load",
     "stress": "stress",
     "fastener_force": "force",
+    "fastener_couple": "couple",
     "slip": "stiffness",
     "density": "density",
     "temperature": "temperature",
