@@ -183,6 +183,6 @@ def test_words_follow_what_is_typed():
 
 def test_a_box_is_called_by_its_row_and_label():
     assert form_words.label_of("pieces[2].width", BOX) == "Piece web L: width"
-    assert form_words.label_of("materials[0].E", BOX) == "Material timber: E"
+    assert form_words.label_of("materials[0].E", BOX) == "Material timber: modulus E"
     assert form_words.label_of("loads[3].at", BOX) == "Load 4: at"
     assert form_words.label_of("span", BOX) == "Span"
