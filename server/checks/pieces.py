@@ -42,6 +42,7 @@ class PieceCheck:
 Asked = tuple[str, NDArray[np.float64], NDArray[np.float64], NDArray[np.intp]]
 """A strength of a piece and what it is set against, an entry a strength combination, with place and stretch of each."""
 Stress = TypeVar("Stress", Bent, Sheared)
+NOISE = 1e-9  # of a piece's largest stress: what is below it comes of rounding, as at a free end
 EXTREME, PULLED, PRESSED, MEAN_PULLED, MEAN_PRESSED = range(5)  # the rows of ``_sizes``
 
 
@@ -124,7 +125,7 @@ def _bending(checks: Sequence[PieceCheck]) -> dict[int, list[Asked]]:
             found[check.part.index] = [
                 (word, demand[k, i], at[k, i], stretch[k, i])
                 for word, k in looked_at
-                if most[k][i] > 0  # else never in tension, or never in compression: nothing to judge
+                if most[k][i] > NOISE * most[EXTREME][i]  # else never in tension, or never in compression
             ]
     return found
 

@@ -260,6 +260,21 @@ def test_extreme_fibre_is_judged_by_tension_and_compression_where_bending_is_not
     assert upper["compression in upper"] == pytest.approx(M / Z / 9)
 
 
+def test_rounding_at_a_free_end_asks_for_no_strength():
+    # by statics: a cantilever's top is never pressed and its bottom never pulled
+    result = run(
+        STACK,
+        materials={
+            "pine": {"E": 11000, "strengths": {"compression": 90, "shear": 9}},
+            "strap": {"E": 11000, "strengths": {"tension": 90, "shear": 9}},
+        },
+        section__pieces__upper__material="strap",
+        member={"length": 100, "supports": [{"at": 0, "kind": "fixed"}]},
+        loads__live=[{"kind": "line", "from": 0, "to": 100, "value": 2.2417}],
+    )
+    assert result["verdict"] == "pass", result["missing"]
+
+
 def test_a_bond_whose_piece_stops_short_is_judged_along_it_and_not_proven_at_its_end():
     strip = {"shape": "rectangle", "width": 80, "depth": 8, "at": [10, -8], "material": "pine", "from": 250, "to": 2750}
     joints = [*STACK["section"]["joints"], {"between": ["strip", "lower"], "adhesive": "glue"}]
