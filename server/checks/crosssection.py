@@ -212,11 +212,12 @@ class CrossSection:
     @cached_property
     def beyond(self) -> dict[int, Beyond]:
         """What lies above the cut through each part where its shear is largest, by the part's index."""
+        areas, heights = above(self.properties.bands, [cut.up for cut in self.cuts.values()])
         found = {}
-        for index, cut in self.cuts.items():
-            area, height = above(self.properties.bands, cut.up)
-            over = np.flatnonzero(area > 1e-12 * area.sum())
-            found[index] = Beyond(tuple(over.tolist()), area[over].tolist(), height[over].tolist())
+        for index, area, height in zip(self.cuts, areas.tolist(), heights.tolist(), strict=True):
+            least = 1e-12 * sum(area)
+            over = tuple(place for place, size in enumerate(area) if size > least)
+            found[index] = Beyond(over, [area[place] for place in over], [height[place] for place in over])
         return found
 
     @cached_property

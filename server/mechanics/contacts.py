@@ -142,14 +142,14 @@ def overlap(outlines: Sequence[Outline] | Edges) -> list[tuple[int, int, float]]
     edges = edges_of(outlines)
     low, high = edges.boxes()
     common = np.minimum(high[:, None], high) - np.maximum(low[:, None], low)
-    near = np.triu((common > TOUCH).all(axis=2), 1)
-    if not near.any():
+    near = _pairs(common > TOUCH)
+    if not near[0].size:
         return []
     area = moments(edges)[0]
     box = (high - low).prod(axis=1)
     fills = box - area <= 1e-9 * box  # a rectangle that stands square
     found = []
-    for i, j in np.argwhere(near).tolist():
+    for i, j in zip(*(each.tolist() for each in near), strict=True):
         if fills[i] and fills[j]:
             shared = float(common[i, j].prod())
         else:
@@ -162,11 +162,18 @@ def overlap(outlines: Sequence[Outline] | Edges) -> list[tuple[int, int, float]]
     return found
 
 
+def _pairs(table: NDArray[np.bool_]) -> tuple[Indices, Indices]:
+    """Where a symmetric table (n, n, 2) holds across and up, every pair once: the lower place and the higher one."""
+    i, j = np.nonzero(table.all(axis=2))
+    once = i < j
+    return i[once], j[once]
+
+
 def _near_edges(edges: Edges, reach: Array) -> tuple[Indices, Indices]:
     """Pairs of flat edges, the first of the lower piece, whose pieces' boxes come within reach."""
     low, high = edges.boxes()
-    near = (low[:, None] - high[None] <= np.maximum(reach, TOUCH)[:, :, None] + DUST).all(axis=2)
-    i, j = np.nonzero(np.triu(near & near.T, 1))
+    near = low[:, None] - high[None] <= np.maximum(reach, TOUCH)[:, :, None] + DUST
+    i, j = _pairs(near & near.swapaxes(0, 1))
     count = edges.count
     if int((count[i] * count[j]).sum()) > _MANY:
         return _one_by_one(edges, i, j, reach)

@@ -11,7 +11,7 @@ from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
 import numpy as np
-from numpy.typing import NDArray
+from numpy.typing import ArrayLike, NDArray
 
 from server.errors import positive
 from server.mechanics.polygon import Array, Edges
@@ -101,8 +101,8 @@ def bands(edges: Edges) -> Bands:
     return Bands(levels[:-1], levels[1:], low, high)
 
 
-def above(cut: Bands, up: float) -> tuple[Array, Array]:
-    r"""Area above a horizontal cut and the height of its centroid, of every piece.
+def above(cut: Bands, up: ArrayLike) -> tuple[Array, Array]:
+    r"""Area above horizontal cuts and the height of its centroid, of every piece.
 
     .. math:: A_i = \int_{up}^{top} b_i\,du, \qquad u_i = \frac{1}{A_i} \int_{up}^{top} b_i u\,du
 
@@ -110,13 +110,13 @@ def above(cut: Bands, up: float) -> tuple[Array, Array]:
     ----------
     cut : Bands
         Bands of the n pieces [mm].
-    up : float
-        Height of the cut [mm].
+    up : array_like
+        Heights of the cuts, shape (...) [mm].
 
     Returns
     -------
     tuple of numpy.ndarray
-        (n,) areas [mm2] and (n,) heights [mm]; height 0 where nothing of a piece lies above.
+        Areas [mm2] and heights [mm], shape (..., n); height 0 where nothing of a piece lies above.
 
     References
     ----------
@@ -129,14 +129,14 @@ def above(cut: Bands, up: float) -> tuple[Array, Array]:
     >>> [float(each[0]) for each in above(properties(plank).bands, 150.0)]
     [5000.0, 175.0]
     """
-    low = np.clip(up, cut.low, cut.high)
+    low = np.minimum(np.maximum(np.asarray(up)[..., None, None], cut.low), cut.high)  # (..., 1, k)
     height = cut.high - low
     slope = (cut.width_high - cut.width_low) / (cut.high - cut.low)
     bottom = cut.width_low + slope * (low - cut.low)
     area = height * (bottom + cut.width_high) / 2
     moment = area * low + height**2 * (bottom + 2 * cut.width_high) / 6
-    total = area.sum(axis=1)
-    return total, moment.sum(axis=1) / np.where(total > 0, total, np.inf)
+    total = area.sum(axis=-1)
+    return total, moment.sum(axis=-1) / np.where(total > 0, total, np.inf)
 
 
 @dataclass(frozen=True, eq=False)
@@ -159,7 +159,7 @@ def _inward(cut: Bands, pieces: Sequence[Piece], neutral_axis: float) -> _Inward
     H = cut.high - cut.low
     above = cut.low + cut.high > 2 * neutral_axis
     G = np.array([np.inf if piece.G is None else piece.G for piece in pieces], dtype=float)
-    weights = np.stack((np.array([piece.E for piece in pieces], dtype=float), np.ones(len(G)), 1 / G))
+    weights = np.array(([piece.E for piece in pieces], np.ones(len(G)), 1 / G))
     low, high = weights @ cut.width_low, weights @ cut.width_high
     outer, inner = np.where(above, high, low), np.where(above, low, high)
     e0, e1 = outer[0], inner[0] - outer[0]
@@ -171,8 +171,9 @@ def _inward(cut: Bands, pieces: Sequence[Piece], neutral_axis: float) -> _Inward
     beyond = np.zeros(len(H))
     beyond[1:split] = own[:split][:-1].cumsum()
     beyond[split:-1] = own[split + 1 :][::-1].cumsum()[::-1]
-    ES = np.stack((beyond, c1, c2, c3))
-    return _Inward(place, np.where(above, -H, H), ES, np.stack((outer[1], inner[1])), np.stack((outer[2], inner[2])))
+    ES = np.array((beyond, c1, c2, c3))
+    width, softness = np.array((outer[1:], inner[1:])).transpose(1, 0, 2)
+    return _Inward(place, np.where(above, -H, H), ES, width, softness)
 
 
 def _value(c: Array, s: Array) -> Array:
@@ -247,15 +248,15 @@ def largest_cuts(pieces: Sequence[Piece], properties: SectionProperties) -> list
     ES, (b0, b_in) = section.ES, section.width
     b1 = b_in - b0
     k = len(b0)
-    middle = np.clip((neutral_axis - section.outer) / section.step, 0.0, 1.0)
+    middle = np.minimum(np.maximum((neutral_axis - section.outer) / section.step, 0.0), 1.0)
     stations = [np.zeros(k), middle, np.ones(k)]
     tapered = np.abs(b1) > 1e-12 * (b0 + b_in)
     if tapered.any():
-        g = np.stack((ES[1] * b0 - ES[0] * b1, 2 * ES[2] * b0, 3 * ES[3] * b0 + ES[2] * b1, 2 * ES[3] * b1))
+        g = np.array((ES[1] * b0 - ES[0] * b1, 2 * ES[2] * b0, 3 * ES[3] * b0 + ES[2] * b1, 2 * ES[3] * b1))
         roots = np.zeros((3, k))
         roots[:, tapered] = _unit_roots(g[:, tapered])
         stations.extend(roots)
-    s = np.stack(stations)
+    s = np.array(stations)
     moment = _value(ES, s)
     width = b0 * (1 - s) + b_in * s
     thin = width <= 1e-9 * max(float(b0.max()), float(b_in.max()))  # a tip: the stress there tends to nothing

@@ -184,7 +184,7 @@ def moments(edges: Edges) -> tuple[Array, Array, Array]:
     x0, y0, x1, y1 = a[:, 0], a[:, 1], b[:, 0], b[:, 1]
     c = x0 * y1 - x1 * y0
     xs, ys = x0 + x1, y0 + y1
-    terms = np.stack(
+    terms = np.array(
         (
             c / 2,
             c * xs / 6,
@@ -202,8 +202,8 @@ def moments(edges: Edges) -> tuple[Array, Array, Array]:
         bad = int(np.flatnonzero(empty)[0])
         raise InputError("pieces", f"Piece {bad + 1} has no area; give it a width and a depth greater than 0 mm.")
     cx, cy = sx / area, sy / area
-    inertia = np.stack((iyy - cy * sy, ixx - cx * sx, ixy - cx * sy), axis=1)
-    return area, origin + np.stack((cx, cy), axis=1), inertia
+    inertia = np.array((iyy - cy * sy, ixx - cx * sx, ixy - cx * sy)).T
+    return area, origin + np.array((cx, cy)).T, inertia
 
 
 def straightened(edges: Edges) -> Edges:

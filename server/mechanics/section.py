@@ -73,7 +73,7 @@ class SectionProperties:
     ``area`` plain [mm2]; ``mass_per_length`` [kg/m], None where a density is missing; ``EA`` [N]; ``EI`` for bending up
     and down, ``EI_lateral``, ``EI_product`` [N mm2], about the neutral axis; ``neutral_axis`` (2,) across and up [mm];
     ``pieces`` the properties of each piece; ``first_moments`` (n,) E x area x height above the neutral axis [N mm];
-    ``edges`` the outlines as arrays.
+    ``edges`` the outlines as arrays; ``like`` properties of the same outlines with other moduli, where there are any.
     """
 
     area: float
@@ -86,11 +86,12 @@ class SectionProperties:
     pieces: PieceProperties
     first_moments: NDArray[np.float64]
     edges: Edges = field(repr=False)
+    like: SectionProperties | None = field(default=None, repr=False)
 
     @cached_property
     def bands(self) -> Bands:
         """The section between corner heights, cut once for all that needs it."""
-        return bands(self.edges)
+        return bands(self.edges) if self.like is None else self.like.bands
 
 
 _QUARTER_TURNS = {0: (1.0, 0.0), 1: (0.0, 1.0), 2: (-1.0, 0.0), 3: (0.0, -1.0)}
@@ -246,10 +247,12 @@ def reweighted(pieces: Sequence[Piece], like: SectionProperties) -> SectionPrope
     ----------
     .. [1] As ``properties``.
     """
-    return _weighted(pieces, like.pieces, like.edges)
+    return _weighted(pieces, like.pieces, like.edges, like)
 
 
-def _weighted(pieces: Sequence[Piece], parts: PieceProperties, edges: Edges) -> SectionProperties:
+def _weighted(
+    pieces: Sequence[Piece], parts: PieceProperties, edges: Edges, like: SectionProperties | None = None
+) -> SectionProperties:
     E = np.array([piece.E for piece in pieces], dtype=float)
     bad = ~(np.isfinite(E) & (E > 0))
     if bad.any():
@@ -278,4 +281,5 @@ def _weighted(pieces: Sequence[Piece], parts: PieceProperties, edges: Edges) -> 
         pieces=parts,
         first_moments=first_moments,
         edges=edges,
+        like=like,
     )
