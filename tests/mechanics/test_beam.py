@@ -23,6 +23,7 @@ from server.mechanics.beam import (
     evaluate,
     extremes,
     solve,
+    solve_alike,
     span_ends,
 )
 from tests.mechanics.test_beam_exact import loads_on, members, weight
@@ -379,6 +380,28 @@ def mirrored(member: Beam, loads: list[Load]) -> tuple[Beam, list[Load]]:
         ),
         other,
     )
+
+
+@settings(max_examples=40, deadline=None)
+@given(st.data())
+def test_stiffnesses_solved_together_do_as_each_alone(data):
+    """Also where the stiffness jumps steeply in one of them only."""
+    member = data.draw(members())
+    loads = data.draw(loads_on(member))
+    shares = st.sampled_from([1.0, 0.6, 1e-3, 1e-6])
+    soft = Beam(
+        member.length,
+        member.supports,
+        member.hinges,
+        [replace(s, EI=s.EI * (share := data.draw(shares)), GA=s.GA * share) for s in member.stretches],
+    )
+    for together, beam in zip(solve_alike([member, soft], [loads]), (member, soft), strict=True):
+        alone = solve(beam, [loads])
+        np.testing.assert_array_equal(together.breaks, alone.breaks)
+        for name in ("shear", "moment", "deflection"):
+            a, b = (evaluate(each.breaks, getattr(each, name), alone.breaks) for each in (together, alone))
+            scale = size(member, loads) * {"shear": 1e-3, "moment": 1e-3 * member.length}.get(name, 0)
+            np.testing.assert_allclose(a, b, rtol=0, atol=1e-8 * max(np.abs(b).max(), scale) + 1e-12)
 
 
 @settings(max_examples=60, deadline=None)

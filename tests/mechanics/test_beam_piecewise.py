@@ -168,6 +168,22 @@ def test_extremes_of_each_interval_and_of_the_absolute_value():
     assert candidates(breaks, c).over(1, 2).max.tolist() == [0.0, 2.0]
 
 
+@settings(max_examples=40, deadline=None)
+@given(
+    st.lists(st.integers(-9, 9), min_size=32, max_size=32),
+    st.lists(st.tuples(st.integers(0, 3), st.integers(1, 4)).filter(lambda part: part[0] < part[1]), min_size=1),
+)
+def test_extremes_over_several_parts_at_once_are_those_of_each(numbers, parts):
+    breaks, c = np.array([0.0, 4.0, 7.0, 8.0, 11.0]), np.array(numbers, dtype=float).reshape(2, 4, 4)
+    found = candidates(breaks, c)
+    together = found.over_each(parts)
+    for number, part in enumerate(parts):
+        own, alone = together.of(slice(None), number), found.over(*part)
+        assert (own.value == alone.value).all()
+        assert (own.at == alone.at).all()
+        assert own.absolute()[0].tolist() == pytest.approx(np.maximum(alone.max, -alone.min))
+
+
 def test_curves_of_any_leading_shape():
     breaks = np.array([0.0, 1.0])
     c = np.arange(24.0).reshape(2, 3, 1, 4)
