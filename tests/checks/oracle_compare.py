@@ -104,9 +104,9 @@ def _member(result: Result, oracle: Verdict) -> Iterator[str]:
 def _there(
     what: str, oracle: Verdict, quantity: str, combination: str, at: float, value: float, size: float
 ) -> Iterator[str]:
-    """The oracle's curve has this value at this place, on one side of it at least."""
+    """The oracle's curve, straight between its samples, has this value at this place, on one side of it at least."""
     sides = values_at(oracle, quantity, combination, at)
-    if not any(abs(side - value) <= 1e-5 * size + NOTHING for side in sides):
+    if not any(abs(side - value) <= 5e-5 * size + NOTHING for side in sides):
         yield f"{what}: {value:g} is said to stand at {at:g} in {combination}, where the oracle has {sides}"
 
 
