@@ -291,7 +291,7 @@ def restrict(
     last = min(max(int(np.searchsorted(x, high - slack, "left")), first + 1), len(x) - 1)
     part, pieces = x[first : last + 1].copy(), c[..., first:last, :]
     shift = low - part[0]
-    if shift > slack:
+    if shift > 0:
         pieces = pieces.copy()
         d = pieces.shape[-1]
         move = np.array([[comb(k, j) * shift ** (k - j) if j <= k else 0.0 for j in range(d)] for k in range(d)])
