@@ -8,8 +8,8 @@ from typing import NamedTuple, Protocol
 import numpy as np
 from numpy.typing import NDArray
 
-from server.checks.actions import TIE, Curve
 from server.checks.crosssection import Body, Site, Stretch
+from server.checks.curves import TIE, Curve
 from server.checks.scan import Scan
 from server.checks.slide import Slide
 from server.checks.slip_shares import Shares, field_shares

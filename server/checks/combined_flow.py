@@ -9,9 +9,10 @@ import numpy as np
 from numpy.typing import NDArray
 
 from server.checks import sideways
-from server.checks.actions import Actions, Curve
+from server.checks.actions import Actions
 from server.checks.along import Demand, Profile, RigidAlong, leftmost, side_by_side
 from server.checks.crosssection import CrossSection, Site, Stretch
+from server.checks.curves import Curve
 from server.checks.resistance import Judge
 from server.checks.statics import Statics
 from server.checks.twist import Twist, field_of

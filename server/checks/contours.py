@@ -12,8 +12,9 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
-from server.checks.actions import Actions, largest
+from server.checks.actions import Actions
 from server.checks.crosssection import Body, Stretch
+from server.checks.curves import largest
 from server.checks.twist import Twist
 from server.mechanics.field_contours import above, stress_grid
 from server.mechanics.piecewise import evaluate

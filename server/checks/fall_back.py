@@ -6,9 +6,9 @@ from collections.abc import Sequence
 from dataclasses import dataclass
 
 from server import documents
-from server.checks.actions import largest
 from server.checks.along import SlidingAlong
 from server.checks.crosssection import Body
+from server.checks.curves import largest
 from server.checks.gamma import write_annex_b
 from server.checks.holds import Holds, holds
 from server.checks.joints import JointCheck

@@ -13,8 +13,9 @@ from itertools import pairwise
 import numpy as np
 
 from server import documents
-from server.checks.actions import Actions, largest
+from server.checks.actions import Actions
 from server.checks.crosssection import Body
+from server.checks.curves import largest
 from server.checks.holds import Hold
 from server.checks.sag_steps import spans
 from server.checks.slide import ULTIMATE, Slide, layers

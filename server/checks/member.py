@@ -9,13 +9,14 @@ from pydantic import BaseModel
 from server import ENGINE, documents
 from server.checks import effective_width, moving, moving_rounds, moving_twist, sideways
 from server.checks import statics as hand
-from server.checks.actions import Actions, act, added_after, envelope
+from server.checks.actions import Actions, act, added_after
 from server.checks.along import RigidAlong, SlidingAlong
 from server.checks.bent_axis import bent_axis
 from server.checks.cautions import NOT_CHECKED, add_cautions
 from server.checks.combined_flow import CombinedAlong
 from server.checks.contours import Look, contours
 from server.checks.crosssection import Body, CrossSection, build
+from server.checks.curves import envelope
 from server.checks.deflection import check_deflection, more_deflection
 from server.checks.drawing import diagrams, drawing
 from server.checks.fall_back import FallBack, glue_gone, judge_fall_back

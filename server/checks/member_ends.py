@@ -9,9 +9,10 @@ import numpy as np
 
 from server import documents
 from server.checks import movement, strip_changes, surfaces
-from server.checks.actions import Actions, Curve
+from server.checks.actions import Actions
 from server.checks.bond_ends import End, ends_of
 from server.checks.crosssection import Body, Part, Site
+from server.checks.curves import Curve
 from server.checks.resistance import Claim, Findings, Strength, Weighed, Weigher
 from server.checks.strip_ends import EndCheck, Strain, bond_line, claim_end, stresses_at, write_end
 from server.errors import InputError

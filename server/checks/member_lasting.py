@@ -14,7 +14,8 @@ from numpy.typing import NDArray
 
 from server import documents
 from server.checks import lasting
-from server.checks.actions import Actions, Curve
+from server.checks.actions import Actions
+from server.checks.curves import Curve
 from server.checks.joints import JointCheck
 from server.checks.member_ends import Governs, MemberEnds
 from server.checks.resistance import Findings, Weighed

@@ -14,9 +14,9 @@ from itertools import product
 import numpy as np
 
 from server import documents
-from server.checks.actions import Curve
 from server.checks.bond_ends import Bonded, End
 from server.checks.crosssection import Body, Part, Site
+from server.checks.curves import Curve
 from server.checks.resistance import Findings
 from server.checks.strip_ends import EndCheck, Strain, near, stresses_at, use_of
 from server.mechanics.overlap_laps import BondLine

@@ -13,7 +13,8 @@ import numpy as np
 from numpy.typing import NDArray
 
 from server.checks import moving
-from server.checks.actions import Actions, Curve
+from server.checks.actions import Actions
+from server.checks.curves import Curve
 from server.checks.resistance import Findings
 from server.checks.slide import Slide
 from server.mechanics.piecewise import Extremes

@@ -7,9 +7,10 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from server.checks.actions import Actions, Curve
+from server.checks.actions import Actions
 from server.checks.combined_flow import UNSYMMETRICAL, write_rates
 from server.checks.crosssection import Body, Part, Stretch
+from server.checks.curves import Curve
 from server.checks.resistance import Judge
 from server.checks.twist import Twist
 from server.mechanics.piecewise import evaluate

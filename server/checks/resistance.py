@@ -17,7 +17,8 @@ import numpy as np
 from numpy.typing import NDArray
 
 from server import documents
-from server.checks.actions import TIE, Actions
+from server.checks.actions import Actions
+from server.checks.curves import TIE
 from server.checks.places import Places
 from server.checks.rules import Origin, Printed, Reduction, chosen
 from server.working import Working, formula

@@ -13,8 +13,9 @@ import numpy as np
 from numpy.typing import NDArray
 
 from server import documents
-from server.checks.actions import Actions, Curve, Peak, largest
+from server.checks.actions import Actions
 from server.checks.crosssection import Body, CrossSection
+from server.checks.curves import Curve, Peak, largest
 from server.mechanics.beam import LineLoad, Load, PointLoad
 from server.mechanics.beam_model import SAME_PLACE
 from server.working import Working

@@ -7,8 +7,9 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from server.checks.actions import Actions, Curve
+from server.checks.actions import Actions
 from server.checks.crosssection import Body
+from server.checks.curves import Curve
 from server.mechanics.piecewise import Extremes
 
 Sized = tuple[NDArray[np.float64], NDArray[np.float64]]

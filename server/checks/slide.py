@@ -10,8 +10,9 @@ import numpy as np
 from numpy.typing import NDArray
 
 from server import documents
-from server.checks.actions import Actions, Curve, largest
+from server.checks.actions import Actions
 from server.checks.crosssection import Body
+from server.checks.curves import Curve, largest
 from server.checks.holds import Hold, Holds
 from server.checks.rules import ULTIMATE_SLIP, chosen
 from server.errors import DocumentError, Fault, InputError

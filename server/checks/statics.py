@@ -11,8 +11,9 @@ from dataclasses import dataclass
 from typing import NamedTuple
 
 from server import documents
-from server.checks.actions import GRAVITY, Actions, Peak, largest
+from server.checks.actions import GRAVITY, Actions
 from server.checks.crosssection import Body, CrossSection
+from server.checks.curves import Peak, largest
 from server.mechanics.beam import Couple, LineLoad
 from server.working import Working
 from server.working.record import Given

@@ -7,7 +7,7 @@ from dataclasses import replace
 
 import numpy as np
 
-from server.checks.actions import Curve
+from server.checks.curves import Curve
 from server.checks.resistance import Findings
 from server.checks.strip_ends import EndCheck, Strain, Stresses, stresses_at, use_of
 from server.errors import InputError

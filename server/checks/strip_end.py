@@ -8,8 +8,9 @@ import numpy as np
 
 from server import ENGINE, documents
 from server.checks import statics as hand
-from server.checks.actions import Actions, act, envelope
+from server.checks.actions import Actions, act
 from server.checks.crosssection import GAP, Body, build
+from server.checks.curves import envelope
 from server.checks.member_ends import MemberEnds, after_bonding, check_ends
 from server.checks.outlines import outlines
 from server.checks.resistance import Findings, Judge

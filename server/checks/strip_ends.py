@@ -15,8 +15,8 @@ from numpy.typing import NDArray
 
 from server import documents
 from server.checks import strip_steps, surfaces
-from server.checks.actions import Curve
 from server.checks.bond_ends import Bonded, End
+from server.checks.curves import Curve
 from server.checks.resistance import Claim, Strength, Weighed, Weigher, resistances
 from server.mechanics.overlap_laps import BondLine
 from server.mechanics.overlap_strip import Host, StripCourse, strip_course

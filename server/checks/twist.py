@@ -9,8 +9,9 @@ import numpy as np
 from numpy.typing import NDArray
 
 from server import documents
-from server.checks.actions import Actions, Curve
+from server.checks.actions import Actions
 from server.checks.crosssection import Body, CrossSection, Stretch, eccentric
+from server.checks.curves import Curve
 from server.checks.resistance import Findings
 from server.mechanics.field import Field
 from server.mechanics.piecewise import evaluate
