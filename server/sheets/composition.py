@@ -12,6 +12,7 @@ from typing import Any, Literal
 from server.sheets import slip_parts, tables
 from server.sheets.bond_ends import blocks as end_blocks
 from server.sheets.given import Group, given
+from server.sheets.one_page import filled
 from server.sheets.one_pages import ONE_PAGES
 from server.sheets.steps import working_groups
 from server.sheets.values import governing, in_units, missing, spoken, utilisation, verdict
@@ -154,7 +155,7 @@ def _one_page(sheet: SheetData) -> Iterator[tuple[str, Iterable[Part]]]:
     page = ONE_PAGES[str(sheet.result["kind"])]
     groups = page.given(sheet.document, sheet.result.get("values_used") or {}, sheet.display)
     yield "Given values", _given_parts(groups, sheet)
-    for title, parts in page.blocks(sheet.result, sheet.display):
+    for title, parts in filled(page.blocks(sheet.result, sheet.display)):
         yield title, [dict(part) for part in parts]
 
 

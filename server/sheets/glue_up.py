@@ -47,7 +47,7 @@ GROUPS = (
         "adhesive",
         "Adhesive",
         (
-            Ask(BOND, "Bond in the library", record=True),
+            Ask(BOND, "Bond in the library", record=True, wide=True),
             Ask("adhesive.product", "Product", wide=True),
             Ask("adhesive.spread", "Spread on each face", "spread"),
             Ask("adhesive.sides", "Spread on", choices=(("1", "one face"), ("2", "both faces"))),
@@ -231,5 +231,5 @@ def normal(raw: Mapping[str, Any]) -> Mapping[str, Any]:
 
 PAGE = OnePage(
     "glue-up", "Glue-up of a bonded member", "glue-up", GROUPS, headline, blocks, _waits_for,
-    finish=finish, normal=normal,
+    finish=finish, normal=normal, act="Plan",
 )  # fmt: skip

@@ -43,6 +43,9 @@ class OnePage:
     normal: Callable[[Mapping[str, Any]], Mapping[str, Any]] = lambda raw: raw
     """The same document with its names as the form has them, for one that was written elsewhere."""
 
+    act: str = "Check"
+    """What one does with it, on the button of the job's page: "Plan a glue-up"."""
+
     def given(self, raw: Mapping[str, Any], values_used: Mapping[str, Any], display: str) -> tuple[Group, ...]:
         """The given values, as typed and as used."""
         return given(self.groups, self.normal(raw), self.normal({**raw, **values_used}), display, self.kind)
@@ -56,6 +59,14 @@ def figure(svg: str, caption: str, share: float = 0.86, alt: str = "") -> dict[s
 def pairs(rows: Iterable[tuple[str, str]]) -> dict[str, Any]:
     """Names and values as a part; a name without a value is left out."""
     return {"kind": "pairs", "pairs": [[name, value] for name, value in rows if value]}
+
+
+def filled(blocks: Iterable[tuple[str, Iterable[Part]]]) -> Blocks:
+    """Blocks with something in them: a list of pairs without a pair, and a title over nothing, are left out."""
+    for title, parts in blocks:
+        kept = [part for part in parts if part.get("kind") != "pairs" or part["pairs"]]
+        if kept:
+            yield title, kept
 
 
 def sub(title: str, about: str = "") -> dict[str, Any]:

@@ -9,6 +9,7 @@ from typing import Any
 from server.sheets import coupon_tables, slip_parts, tables
 from server.sheets.bond_ends import blocks as end_blocks
 from server.sheets.composition import PRECEDENCE, STANDING_CAUTION, headline
+from server.sheets.one_page import filled
 from server.sheets.one_pages import ONE_PAGES
 from server.sheets.steps import working_groups
 from server.sheets.values import in_units, missing, utilisation, verdict
@@ -44,7 +45,7 @@ def _lines(result: Mapping[str, Any], display: str) -> Iterator[str]:
 def _blocks(result: Mapping[str, Any], display: str) -> Iterable[tuple[str, Iterable[Part]]]:
     page = ONE_PAGES.get(str(result.get("kind")))
     if page is not None:
-        return page.blocks(result, display)
+        return filled(page.blocks(result, display))
     return coupon_tables.blocks(result, display) if _coupons(result) else _member(result, display)
 
 

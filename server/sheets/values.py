@@ -23,6 +23,7 @@ _COUNT = r"\d{1,3}(?:,\d{3})+(?:\.\d+)?|\d+(?:\.\d+)?(?:e[+-]?\d+)?"
 _THOUSANDS = re.compile(r"(?<=\d),(?=\d{3}(?!\d))")
 _POWER = re.compile(r"(?:(?<=/)|(?<=\d[ \u00a0]))(?:mm|cm|m|in|ft)[234](?!\w)")
 _RAISED = str.maketrans("234", "²³⁴")
+_PLACE = re.compile(r"(?<![\w.'\"/])(adhesive|fastener|member|analysis|basis|service)\.([a-z_]{3,})(?![\w.'\"/(\[])")
 _NAME = re.compile(r"(?<![\w.'\"/])[a-z]{3,}(?:_[a-z]+)+(?![\w.'\"/])")
 _IN_WORDS = re.compile(rf"(?<![\w.,])({_COUNT}) (N/mm|MPa|mm2|mm|N)(?![\w/*·²]|\d)")
 
@@ -94,10 +95,12 @@ def spoken(text: str) -> str:
 
     >>> spoken("adhesive 'E7' has no creep_limit, and h_f is 70 mm")
     "adhesive 'E7' has no creep limit, and h_f is 70 mm"
+    >>> spoken("Mixes: adhesive.pot_life, from its data sheet.")
+    'Mixes: adhesive pot life, from its data sheet.'
     >>> spoken("taken as stiff, 10,000 N/mm3") == "taken as stiff, 10\u2009000 N/mm³"
     True
     """
-    text = _NAME.sub(lambda found: found[0].replace("_", " "), text)
+    text = _NAME.sub(lambda found: found[0].replace("_", " "), _PLACE.sub(r"\1 \2", text))
     text = _THOUSANDS.sub(units.THIN, text)
     return raised(text)
 

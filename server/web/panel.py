@@ -15,6 +15,7 @@ from server import library, sheets
 from server.sheets import diagrams
 from server.sheets import values as written
 from server.sheets.asked import RECORDS
+from server.sheets.one_page import filled
 from server.sheets.section_view import joint_numbers
 from server.storage import Session
 from server.working import exceeds
@@ -157,7 +158,7 @@ def any_panel(result: Result, display: str, asked: Asked = _NOTHING) -> Found:
 
 def one_page_panel(result: Result, display: str) -> OnePagePanel:
     """Return the panel of a check that fits on one page."""
-    found = sheets.ONE_PAGES[str(result["kind"])].blocks(result, display)
+    found = filled(sheets.ONE_PAGES[str(result["kind"])].blocks(result, display))
     return OnePagePanel(
         **_of_every_kind(result, display, "check/_found_parts.html"),
         blocks=_blocks(found),

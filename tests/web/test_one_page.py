@@ -178,3 +178,10 @@ def test_marking_the_boxes_anew_changes_no_document(answers, display):
     values = {"units": "SI", "display": display, **answers}
     marked = forms.in_units(PAGE, values, display)
     assert forms.read(PAGE, marked).raw == forms.read(PAGE, values).raw
+
+
+def test_a_title_over_nothing_is_left_out():
+    from server.sheets.one_page import filled, pairs
+
+    blocks = [("Bonds", [pairs([("Area", "1 m²")])]), ("Clamps", [pairs([("Count", "")])]), ("Note", [pairs([])])]
+    assert [title for title, _ in filled(iter(blocks))] == ["Bonds"]
