@@ -138,5 +138,9 @@ def _shear(actions: Actions, curve: Curve, at: NDArray[np.float64]) -> tuple[lis
     whole = both_sides(curve.breaks, curve.coefficients, at).swapaxes(0, 1)
     cases = both_sides(actions.each_case.breaks, actions.each_case.shear, at).swapaxes(0, 1)
     stays = actions.sustained[list(actions.strength)] @ cases  # (sides, combinations, places)
-    larger = (np.abs(each).max(axis=0).T.tolist() for each in (whole, stays))
-    return next(larger), next(larger)
+    return _larger(whole), _larger(stays)
+
+
+def _larger(sides: NDArray[np.float64]) -> list[list[float]]:
+    found: list[list[float]] = np.abs(sides).max(axis=0).T.tolist()
+    return found
