@@ -60,7 +60,9 @@ def run(document: GlueUpDocument, *, working: bool = True) -> dict[str, object]:
     book, findings = Working(record=working), Findings()
     bonds = bonds_of(document, book, findings)
     book.begin("Area")
-    area = book.step("Area to be bonded", "A", "sum(A_i)", {"A_i": ([each.area for each in bonds], "mm2")}, "mm2")
+    area = book.step(
+        "Area to be bonded", "A", "sum(A_i)", {"A_i": ([each.area for each in bonds], "mm2")}, "mm2", "sum of all bonds"
+    )
     mass, volume = _mass(document, area, book, findings)
     times = _times(document, area, book, findings)
     pressing = _pressing(document, area, bonds, book, findings)
@@ -198,7 +200,7 @@ def _pressing(document: GlueUpDocument, area: float, bonds: list[Bond], book: Wo
     if clamps.available is None:
         return Pressing(force, count, spacing, per_length)
     given = {"n_c": (float(count), ""), "n_a": (float(clamps.available), "")}
-    used = book.step("Share of the clamps there are", "eta_c", "n_c/n_a", given)
+    used = book.step("Share of the clamps there are", "eta_c", "n_c/n_a", given, source="needed / available")
     return Pressing(force, count, spacing, per_length, used)
 
 

@@ -116,7 +116,7 @@ def _of_pressing(
         findings.caution(
             "clamps",
             "Force is counted for every bond by itself. Bonds that lie over one another are pressed by the same "
-            "clamps: then enter the area of one layer under clamps.area.",
+            "clamps: then enter the area of one layer as the area that is pressed at once.",
         )
     if fasteners_press:
         findings.caution(

@@ -10,7 +10,7 @@ from server.errors import DocumentError, Fault
 from server.jobs.revisions import SavedRevision
 from server.storage import Session
 
-ADHESIVE = "adhesive"
+ADHESIVE = "glue"
 
 
 def may_be_glued(saved: SavedRevision) -> bool:

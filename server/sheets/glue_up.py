@@ -12,7 +12,7 @@ from server.sheets.tables import column, table
 from server.sheets.values import DASH, Unit, quantity, unit
 
 ALONE = "areas_alone"
-BOND = "adhesives.adhesive"
+BOND = "adhesives.glue"
 SHOWN = 12  # mixes printed one by one
 
 GROUPS = (
@@ -225,7 +225,7 @@ def normal(raw: Mapping[str, Any]) -> Mapping[str, Any]:
         found |= {"areas": sized} | ({ALONE: alone} if alone else {})
     adhesives = raw.get("adhesives")
     if isinstance(adhesives, Mapping) and adhesives:
-        found["adhesives"] = {"adhesive": next(iter(adhesives.values()))}
+        found["adhesives"] = {"glue": next(iter(adhesives.values()))}
     return found
 
 

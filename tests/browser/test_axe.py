@@ -13,7 +13,7 @@ SCREENS = (
     "/jobs", "/jobs?q=nothing+at+all", "/jobs/new", "/jobs/1", "/jobs/1/heading",
     "/jobs/1/checks/new?layout=box", "/jobs/1/checks/new?layout=stack", "/jobs/1/checks/new?layout=tee",
     "/jobs/1/checks/new?layout=i", "/jobs/1/checks/new?layout=empty", "/checks/1/edit", "/checks/2/edit",
-    "/checks/4/edit",
+    "/checks/4/edit", "/jobs/1/checks/glue-up/new?check=1", "/checks/8",
     "/checks/1", "/checks/2/revisions/1", "/checks/4", "/checks/2/compare/1/2",
     "/library", "/library?group=bonds", "/library?group=fasteners", "/library?group=materials&q=ply",
     "/library/new/bonds", "/library/new/fasteners", "/library/new/materials",

@@ -274,3 +274,15 @@ def test_units_change_nothing(width: float, length: float):
 def test_nonsense_is_refused_by_its_field(changes: dict[str, Any], path: str, says: str):
     found = faults(**changes)
     assert says in found[path]
+
+
+def test_records_inside_the_check_are_still_to_be_filled():
+    referring = {**MEMBER, "adhesives": {"R": {"record": "B-1"}, "S": {}}}
+    document = {"format": "bondwright/1", "kind": "glue-up", "check": referring, "adhesive": {}}
+    assert documents.read(document).unresolved() == ["check.adhesives.R"]
+    assert "check.adhesives.R" in faults(areas=None, check=referring)
+
+
+def test_every_step_says_where_its_formula_is_from():
+    found = run(areas=None, check=MEMBER, clamps={**CLAMPS, "available": 99})
+    assert [step["title"] for step in found["steps"] if step["formula"] and not step["source"]] == []

@@ -103,3 +103,14 @@ def test_the_terminal_says_what_the_page_says():
     for words in ("48 clamps", "176", "Fits the open time", "A = "):
         assert words in shown
     assert "lb" in sheets.terminal(run(), "US")
+
+
+def test_the_api_fills_the_records_of_the_check_inside(shop: TestClient):
+    document = {"format": "bondwright/1", "kind": "glue-up", "check": STACK, "adhesive": {}}
+    assert shop.post("/api/checks/run", json=document).json()["area"] == pytest.approx(100 * 3000)
+    unknown = {**document, "check": {**STACK, "adhesives": {"glue": {"record": "B-999"}}}}
+    answer = shop.post("/api/checks/run", json=unknown)
+    assert answer.status_code == 422
+    assert [fault["path"] for fault in answer.json()["faults"]] == ["check.adhesives.glue.record"]
+    named = shop.get("/openapi.json").json()["components"]["schemas"]["Document"]["discriminator"]["mapping"]
+    assert named["glue-up"] == "#/components/schemas/GlueUpDocument"
