@@ -206,7 +206,7 @@ def _curves(grid: Grid, swept: Sweep, states: Array) -> list[Response]:
     unit_M, unit_V = swept.start[:, :, cases, None], swept.start[:, :, cases + 1, None]  # (4, k, 1, m)
     along = unit_V[1]  # distance from the key place
     own = np.repeat(np.arange(len(grid.first)), np.subtract(grid.stop, grid.first))
-    y, psi, M, V = states[:, own].transpose(2, 0, 3, 1)  # each (k, c, m): just right of the key place before
+    y, psi, M, V = states.take(own, 1).transpose(2, 0, 3, 1)  # each (k, c, m): just right of the key place before
     V0, M0, psi0, y0 = start + V * unit_V + M * unit_M
     psi0 += psi
     y0 += y + psi * along
@@ -221,8 +221,8 @@ def _curves(grid: Grid, swept: Sweep, states: Array) -> list[Response]:
     deflection[..., 1:4] += moment[..., 1:] * grid.shear[:, None, :, None]
     _, _, M, V = states.transpose(2, 0, 3, 1)  # each (k, c, K)
     jump_V, jump_M = grid.force[:, grid.key] + V, -grid.couple[:, grid.key] - M
-    jump_V[..., 1:] -= V[..., :-1] + end[0]
-    jump_M[..., 1:] += M[..., :-1] + V[..., :-1] * swept.end[1, :, cases + 1, None] + end[1]
+    jump_V[:, :, 1:] -= V[:, :, :-1] + end[0]
+    jump_M[:, :, 1:] += M[:, :, :-1] + V[:, :, :-1] * swept.end[1, :, cases + 1, None] + end[1]
     at = grid.support
-    forces, couples = jump_V[..., at], jump_M[..., at] * (grid.kind[at] == FIXED)
+    forces, couples = jump_V.take(at, 2), jump_M.take(at, 2) * (grid.kind[at] == FIXED)
     return [Response(grid.breaks, *each) for each in zip(shear, moment, deflection, forces, couples, strict=True)]

@@ -151,14 +151,15 @@ def lay_out(beams: Sequence[Beam], cases: Sequence[Sequence[Load]]) -> Grid:
         _check_loads(beam, cases)
     places = {0.0, beam.length, *(s.at for s in beam.supports), *beam.hinges, *(s.start for s in beam.stretches)}
     for rows in (loads.points, loads.couples, loads.lines):
-        places.update(row[1] for row in rows)
-    places.update(row[2] for row in loads.lines)
+        places.update([row[1] for row in rows])
+    places.update([row[2] for row in loads.lines])
     breaks, number = _cut(beam, places)
     hinges = {number[at] for at in beam.hinges}
+    covered = [(number[row[1]], number[row[2]]) for row in loads.lines]
     if (
         min(places) < -beam.same_place
         or max(places) > beam.length + beam.same_place
-        or not all(number[row[1]] < number[row[2]] for row in loads.lines)
+        or not all(first < stop for first, stop in covered)
         or not hinges.isdisjoint([number[row[1]] for row in loads.couples])
     ):
         _check_loads(beam, cases)
@@ -178,7 +179,7 @@ def lay_out(beams: Sequence[Beam], cases: Sequence[Sequence[Load]]) -> Grid:
         width=breaks[1:] - breaks[:-1],
         bending=flexibility[0],
         shear=flexibility[1],
-        load=_spread(loads.lines, number, breaks, len(cases)),
+        load=_spread(loads.lines, covered, breaks, len(cases)),
         force=force,
         couple=couple,
         key=np.array(key),
@@ -204,8 +205,9 @@ def _cut(beam: Beam, places: set[float]) -> tuple[Array, dict[float, int]]:
     breaks: list[float] = []
     number: dict[float, int] = {}
     last = -np.inf
+    same = beam.same_place
     for place in sorted(places):
-        if place - last > beam.same_place:
+        if place - last > same:
             breaks.append(place)
         last = place
         number[place] = len(breaks) - 1
@@ -214,15 +216,15 @@ def _cut(beam: Beam, places: set[float]) -> tuple[Array, dict[float, int]]:
 
 
 def _spread(
-    lines: list[tuple[int, float, float, float, float]], number: dict[float, int], breaks: Array, cases: int
+    lines: list[tuple[int, float, float, float, float]], covered: list[tuple[int, int]], breaks: Array, cases: int
 ) -> Array:
-    """Return the line load at each interval's start and its slope, (2, cases, m)."""
+    """Return the line load at each interval's start and its slope, (2, cases, m); ``covered`` by each: from, up to."""
     m = len(breaks) - 1
     if not lines:
         return np.zeros((2, cases, m))
     case, start, end, first, last = np.array(lines, dtype=float).T
-    from_break = np.array([number[row[1]] for row in lines])
-    covers = np.array([number[row[2]] for row in lines]) - from_break  # intervals under each load
+    from_break, to_break = np.array(covered).T
+    covers = to_break - from_break  # intervals under each load
     row = np.repeat(np.array([case, start, first, (last - first) / (end - start)]), covers, axis=1)
     interval = np.arange(row.shape[1]) + np.repeat(from_break - covers.cumsum() + covers, covers)
     values = row[2] + row[3] * (breaks[interval] - row[1])

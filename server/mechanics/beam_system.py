@@ -84,8 +84,9 @@ def sweep(grid: Grid) -> Sweep:
     parts = [(low, high) for low, high in zip(grid.first, grid.stop, strict=True) if high - low > 1]
 
     def add_up(level: Array, steps: Array) -> None:
+        rows, sums = steps.reshape(-1, m), level.reshape(-1, m)  # views: both lie in one piece
         for low, high in parts:
-            steps[..., low : high - 1].cumsum(-1, out=level[..., low + 1 : high])
+            rows[:, low : high - 1].cumsum(1, out=sums[:, low + 1 : high])
 
     powers = np.multiply.accumulate(grid.width / _FACTORIALS)  # d, d^2/2, d^3/6, ...
     d, d2, d3 = powers[:3]
@@ -114,7 +115,8 @@ def sweep(grid: Grid) -> Sweep:
     dy += psi * d
     dy += dM * g
     add_up(y, dy)
-    return Sweep(start, (start + change)[..., np.subtract(grid.stop, 1)])
+    last = np.subtract(grid.stop, 1)
+    return Sweep(start, start.take(last, 3) + change.take(last, 3))
 
 
 def assemble(grid: Grid, swept: Sweep) -> tuple[Array, Array, Array]:
@@ -139,14 +141,13 @@ def assemble(grid: Grid, swept: Sweep) -> tuple[Array, Array, Array]:
     K, cases, sets = len(grid.key), grid.load.shape[1], len(grid.bending)
     length = float(grid.breaks[-1])
     reach = length / (K - 1)
-    scale = np.empty((sets, 4))
-    scale[:, :2] = (grid.bending @ grid.width / length)[:, None] * (reach**3, reach**2)
-    scale[:, 2:] = reach, 1.0
+    softness = (grid.bending @ grid.width / length).tolist()
+    scale = np.array([(reach**3 * soft, reach**2 * soft, reach, 1.0) for soft in softness])
     end = swept.end[::-1].transpose(1, 3, 0, 2) / scale[:, None, :, None]  # (k, parts, y psi M V, rows)
     T = np.zeros((sets, K - 1, 4, 4))
-    T[..., 2:] = end[..., cases:] * (reach, 1.0)
-    T[..., 0, 0] = T[..., 1, 1] = 1
-    T[..., 0, 1] = T[..., 2, 3]  # the length of the part
+    np.multiply(end[:, :, :, cases:], scale[0, 2:], out=T[:, :, :, 2:])
+    T[:, :, 0, 0] = T[:, :, 1, 1] = 1
+    T[:, :, 0, 1] = T[:, :, 2, 3]  # the length of the part
     left, right = BEFORE[grid.kind[1:]], np.empty((sets, K, 4, 4))
     right[:] = AFTER[grid.kind]
     loads = np.zeros((sets, K, 4, cases))
@@ -154,7 +155,7 @@ def assemble(grid: Grid, swept: Sweep) -> tuple[Array, Array, Array]:
     loads[:, :, 3] = -grid.force[:, grid.key].T
     loads *= LOADED[grid.kind]
     carried = left @ T
-    loads[:, 1:] -= left @ end[..., :cases]
+    loads[:, 1:] -= left @ end[:, :, :, :cases]
     for place, stiffness in grid.springs:  # V jumps by k y; divided so that neither a soft nor a stiff spring swamps
         k = stiffness * scale[:, :1]
         right[:, place, 3, :1] = -k
@@ -164,9 +165,10 @@ def assemble(grid: Grid, swept: Sweep) -> tuple[Array, Array, Array]:
             carried[:, place - 1, 3] /= 1 + k
     A = np.zeros((sets, 4 * K, 4 * K))
     A[:, :2, :4] = right[:, 0, 2:]
-    for n in range(1, K):
-        A[:, 4 * n - 2 : 4 * n + 2, 4 * n - 4 : 4 * n] = carried[:, n - 1]
-        A[:, 4 * n - 2 : 4 * n + 2, 4 * n : 4 * n + 4] = right[:, n]
+    # Every further key place has 4 rows, from 2 above its own unknowns on, over the unknowns before it and its own.
+    whole, row, column = A.strides
+    blocks = np.ndarray((sets, K - 1, 4, 8), A.dtype, A, 2 * row, (whole, 4 * (row + column), row, column))
+    blocks[..., :4], blocks[..., 4:] = carried, right[:, 1:]
     A[:, -2, -2] = A[:, -1, -1] = 1  # no moment and no shear beyond the right end
     rhs = np.zeros((sets, 4 * K, cases))
     rhs[:, :-2] = loads.reshape(sets, 4 * K, cases)[:, 2:]
@@ -213,7 +215,7 @@ def solve_system(A: Array, rhs: Array, *, banded: bool = True) -> Array:
             x = np.linalg.solve(A, rhs)
             x += np.linalg.solve(A, rhs - A @ x)
         else:
-            x = np.stack([_solve_banded(*each) for each in zip(A, rhs, strict=True)])
+            x = np.array([_solve_banded(*each) for each in zip(A, rhs, strict=True)])
     except np.linalg.LinAlgError:
         x = np.full_like(rhs, np.nan)
     if not np.isfinite(x).all():
