@@ -23,7 +23,9 @@ _COUNT = r"\d{1,3}(?:,\d{3})+(?:\.\d+)?|\d+(?:\.\d+)?(?:e[+-]?\d+)?"
 _THOUSANDS = re.compile(r"(?<=\d),(?=\d{3}(?!\d))")
 _POWER = re.compile(r"(?:(?<=/)|(?<=\d[ \u00a0]))(?:mm|cm|m|in|ft)[234](?!\w)")
 _RAISED = str.maketrans("234", "²³⁴")
-_PLACE = re.compile(r"(?<![\w.'\"/])(adhesive|fastener|member|analysis|basis|service)\.([a-z_]{3,})(?![\w.'\"/(\[])")
+_PLACE = re.compile(
+    r"(?<![\w.'\"/])(adhesive|fastener|clamps|member|analysis|basis|service)\.([a-z_]{3,})(?![\w.'\"/(\[])"
+)
 _NAME = re.compile(r"(?<![\w.'\"/])[a-z]{3,}(?:_[a-z]+)+(?![\w.'\"/])")
 _IN_WORDS = re.compile(rf"(?<![\w.,])({_COUNT}) (N/mm|MPa|mm2|mm|N)(?![\w/*·²]|\d)")
 
