@@ -99,9 +99,9 @@ def _sites(check: documents.MemberDocument) -> list[crosssection.Site]:
 
 
 def pressed_by_fasteners(document: GlueUpDocument) -> bool:
-    """Whether a bonded joint of the check has fasteners whose part is to press."""
-    if document.check is None:
-        return False
+    """Whether fasteners press the bonds: as said, or as a joint of the check has it."""
+    if document.check is None or document.pressed_by == "fasteners":
+        return document.pressed_by == "fasteners"
     return any(j.adhesive is not None and j.effective_role == "press" for j in document.check.section.joints)
 
 

@@ -121,7 +121,7 @@ def _of_pressing(
     if fasteners_press:
         findings.caution(
             "nail pressing",
-            "Fasteners press this bond in the check: nails, screws and staples press low and unevenly, and do not give "
+            "Fasteners are to press this bond: nails, screws and staples press low and unevenly, and do not give "
             "the pressure reckoned here. Use clamps until it has set, or an adhesive that fills gaps and was tested as "
             "pressed so.",
             answer=True,

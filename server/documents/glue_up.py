@@ -74,8 +74,9 @@ class GlueUpDocument(Document):
     """The glue-up of one bonded member. A basis is accepted and not used.
 
     Beyond the contract: ``bond`` (of a check with several adhesives, the one that is spread), ``areas_from`` (where the
-    areas come from, in words), ``shop_temperature``, the names and sizes of an area, ``product``, ``rated_at``, the
-    clamps' ``area`` and ``available``. ``adhesives`` may name the library's record of the bond.
+    areas come from, in words), ``shop_temperature``, ``pressed_by``, the names and sizes of an area,
+    ``product``, ``rated_at``, the clamps' ``area`` and ``available``. ``adhesives`` may name the library's
+    record of the bond.
     """
 
     kind: Literal["glue-up"]
@@ -88,6 +89,7 @@ class GlueUpDocument(Document):
     clamps: Clamps = Field(default_factory=Clamps)
     assembly_rate: Annotated[float, Quantity("assembly_rate", above=0.0)] | None = None
     shop_temperature: Temperature | None = None
+    pressed_by: Literal["clamps", "fasteners"] = "clamps"
 
     @property
     def held(self) -> Mapping[str, Document]:

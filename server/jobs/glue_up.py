@@ -21,6 +21,12 @@ def may_be_glued(saved: SavedRevision) -> bool:
     return any(isinstance(joint, Mapping) and joint.get("adhesive") for joint in listed)
 
 
+def pressed_by_fasteners(saved: SavedRevision) -> bool:
+    """Whether a bonded joint of the check has fasteners that are there to press."""
+    joints = saved.document["section"]["joints"]
+    return any(j.get("adhesive") and j.get("fastener") and j.get("role", "press") == "press" for j in joints)
+
+
 def glue_up_of(session: Session, saved: SavedRevision) -> dict[str, Any]:
     """Return the document of a glue-up with the areas of a saved check, the rest of it to be filled in.
 
@@ -45,6 +51,7 @@ def glue_up_of(session: Session, saved: SavedRevision) -> dict[str, Any]:
             for each in found["bonds"]
         ],
         "areas_from": f"{saved.mark} revision {saved.revision}",
+        "pressed_by": "fasteners" if pressed_by_fasteners(saved) else "clamps",
         **_record([used[name] for name in glued if name in used]),
     }
 

@@ -66,6 +66,7 @@ GROUPS = (
         (
             Ask("assembly_rate", "Spread and closed", "assembly_rate", hint="by all hands at work"),
             Ask("shop_temperature", "Shop on the day", "temperature"),
+            Ask("pressed_by", "Pressed by", choices=(("clamps", "clamps"), ("fasteners", "nails, screws, staples"))),
             Ask("clamps.force", "Force of one clamp", "force"),
             Ask("clamps.reach", "Length that one presses", "size", hint="caul and pieces spread it"),
             Ask("clamps.available", "Clamps there are", whole=True, hint="blank: not counted"),

@@ -93,6 +93,16 @@ def test_the_traveller_is_one_page_however_many_bonds_and_mixes(paper, display):
         assert len(re.findall(rb"/Type\s*/Page\b", one)) == 1
 
 
+def test_nails_that_press_come_over_and_want_an_answer(shop: TestClient):
+    nailed = {**STACK, "fasteners": {"nail": {"diameter": 3}}}
+    joint = {**STACK["section"]["joints"][0], "fastener": "nail", "spacing": 75}
+    nailed["section"] = {**STACK["section"], "joints": [joint]}
+    assert shop.post(SAVE, data={**member_forms.write(nailed), "mark": "P4"}).status_code == 303
+    html = shop.get("/jobs/1/checks/glue-up/new?check=1").text
+    assert re.search(r'<option value="fasteners"\s+selected', html)
+    assert "press low and unevenly" in text(html)
+
+
 def test_only_a_glue_up_has_a_traveller():
     with pytest.raises(JointError, match="Only a glue-up"):
         sheets.traveller_pdf(sheets.SheetData({}, {"kind": "member"}))
