@@ -17,7 +17,7 @@ from server.checks.holds import Hold, Holds
 from server.checks.rules import ULTIMATE_SLIP, chosen
 from server.errors import DocumentError, Fault, InputError
 from server.mechanics import beam as mechanics
-from server.mechanics.beam import Beam, Response, solve
+from server.mechanics.beam import Beam, solve
 from server.mechanics.slip import Curves, FlexibleJoint, Layer, LayeredMember, Share, SlipResponse, solve_slip
 
 Array = NDArray[np.float64]
@@ -183,8 +183,8 @@ def _long_term(
     shares = actions.sustained
     soft = _solve(layered(document, body, held.each, deform=actions.shear_deformation, creep=True), actions.case_loads)
     places = whole.combine(actions.factors).stations
-    rest = whole.combine(actions.factors - shares).curves_at(places).deflection
-    return np.asarray(rest + soft.combine(shares).curves_at(places).deflection)
+    rest = whole.combine(actions.factors - shares).deflection_at(places)
+    return np.asarray(rest + soft.combine(shares).deflection_at(places))
 
 
 def _sags(
@@ -199,9 +199,9 @@ def _sags(
     stretches = [mechanics.Stretch(s.start, s.end, s.section.properties.EI) for s in body.stretches]
     supports = [mechanics.Support(s.at, s.kind, s.stiffness or 0.0) for s in document.member.supports]
     rigid = solve(Beam(body.length, supports, document.member.hinges, stretches), actions.case_loads)
-    return _greatest(rigid.combine(actions.factors), rows), _greatest(bare.response, rows)
+    stiff, places = rigid.combine(actions.factors), bare.stations
+    return _greatest(stiff.breaks, stiff.deflection[rows]), _greatest(places.places, bare.deflection_at(places)[rows])
 
 
-def _greatest(response: Response, rows: list[int]) -> float:
-    curve = Curve(response.breaks, response.deflection[rows], ())
-    return largest(*curve.whole.absolute()).value
+def _greatest(breaks: Array, deflection: Array) -> float:
+    return largest(*Curve(breaks, deflection, ()).whole.absolute()).value

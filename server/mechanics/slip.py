@@ -21,7 +21,7 @@ from server.mechanics.beam_loads import lay_out
 from server.mechanics.beam_model import Load
 from server.mechanics.beam_stability import require_stable
 from server.mechanics.beam_system import FIXED
-from server.mechanics.slip_curves import Curves, Stations, stations, trace
+from server.mechanics.slip_curves import Curves, Stations, stations, trace, trace_deflection
 from server.mechanics.slip_model import FlexibleJoint, Layer, LayeredMember, Share, Zone
 from server.mechanics.slip_stacks import Stacks, Tree, plant, stack
 from server.mechanics.slip_system import Chain, assemble, link, solve_system, spread_loads
@@ -89,6 +89,18 @@ class SlipResponse:
         if places is self.stations:
             return self.curves
         return trace(self.member, self.tree, self.stacks, self.chain, places, self.states)
+
+    def deflection_at(self, places: Stations) -> Array:
+        """Return the deflection of `curves_at`, without finding the rest.
+
+        Parameters
+        ----------
+        places : Stations
+            For instance those of the same member with stiffer joints.
+        """
+        if places is self.stations and "curves" in self.__dict__:
+            return self.curves.deflection
+        return trace_deflection(self.member, self.tree, self.stacks, self.chain, places, self.states)
 
     @cached_property
     def response(self) -> Response:

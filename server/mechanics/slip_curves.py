@@ -164,6 +164,15 @@ def trace(member: LayeredMember, tree: Tree, stacks: Stacks, chain: Chain, cells
     return Curves(cells.places, shear, moment, *found)
 
 
+def trace_deflection(
+    member: LayeredMember, tree: Tree, stacks: Stacks, chain: Chain, cells: Stations, states: Array
+) -> Array:
+    """Deflection between the stations as `trace` gives it, and nothing else: (c, q, 6)."""
+    line = _Line(member, tree, stacks, chain, states)
+    (knots,) = line.at(cells.interval, cells.share, only_deflection=True)
+    return _quintic(knots, cells, np.diff(cells.places))
+
+
 class _Line:
     """The exact solution of every interval, ready to be evaluated."""
 
@@ -216,7 +225,7 @@ class _Line:
             slope,
         )
 
-    def at(self, of: Indices, t: Array) -> list[Knots]:
+    def at(self, of: Indices, t: Array, *, only_deflection: bool = False) -> list[Knots]:
         """Value, slope and curvature of deflection, curvature, axial forces, slips and flows at t of intervals."""
         chain, stacks = self.chain, self.stacks
         kind, d = stacks.of[of], chain.width[of]
@@ -225,7 +234,6 @@ class _Line:
         g = own.at(t[:, None])
         dg = own.slope(t[:, None]) / d[:, None]
         rate, p = stacks.rate[kind], stacks.drive[kind]
-        held, dheld = rate**2 * g, rate**2 * dg  # lambda^2 g and its slope
         f, D = 1 / stacks.tied[kind], stacks.loose[kind]
         softness = chain.softness[of]
         slid = (p * g).sum(2)
@@ -241,8 +249,11 @@ class _Line:
             - d * (p * own.area(t[:, None])).sum(2)
         )
         curvature = -f * M - (p * dg).sum(2)
+        deflection = (y, turned - slid + softness * V, curvature - softness * w)
+        if only_deflection:
+            return [deflection]
+        held, dheld = rate**2 * g, rate**2 * dg  # lambda^2 g and its slope
         bend = -V / D - (p * held).sum(2)
-        deflection = (y, turned - slid + softness * V, -f * M - (p * dg).sum(2) - softness * w)
         curved = (curvature, bend, w / D - (p * dheld).sum(2))
         axial = self._axial(kind, dg, held, dheld, V, M, w)
         return [deflection, curved, axial, *self._slides(of, t, kind, g, dg, held, V, p)]
