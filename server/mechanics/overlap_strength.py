@@ -34,7 +34,7 @@ GROWTH = 0.01  # growth of strength ...
 LONGER = 1.1  # ... for an overlap this much longer, below which length is no use
 FINE = 1.12  # growth of the mesh where the yielded length must be found ...
 SHORTEST = 1e-4  # of the overlap to begin with; where even that does not grow, none does
-REACH = 1e3  # times the longest overlap that is looked at first: beyond it there is no useful length
+REACH = 1e5  # times the longest overlap that is looked at first: beyond it there is no useful length
 CLOSER = 6  # overlaps tried in each narrowing
 FAIR = 1.2  # ... and where only its strength among many is wanted
 
