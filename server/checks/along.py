@@ -9,7 +9,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from server.checks.crosssection import Body, Site, Stretch
-from server.checks.curves import TIE, Curve
+from server.checks.curves import TIE, Curve, largest
 from server.checks.scan import Scan
 from server.checks.slide import Slide
 from server.checks.slip_shares import Shares, field_shares
@@ -32,9 +32,7 @@ class Demand(NamedTuple):
     @property
     def peak(self) -> int:
         """The combination of the largest flow; the leftmost place wins a tie, then the first combination."""
-        flow, at = self.flow.tolist(), self.at.tolist()  # a handful: numpy would take longer to start than to run
-        least = max(flow) * (1 - TIE)
-        return min([row for row, each in enumerate(flow) if each >= least], key=at.__getitem__)
+        return largest(self.flow, self.at).row
 
 
 def leftmost(left: Demand, right: Demand) -> Demand:

@@ -47,35 +47,30 @@ def cautions(
 
 def _of_temperature(document: GlueUpDocument, findings: Findings) -> None:
     shop, rated = document.shop_temperature, document.glue.rated_at
-    if shop is not None and rated is not None and shop > rated:
-        findings.caution(
-            "temperature",
-            f"The shop has {units.show(shop, 'temperature', document.display)}, and the times hold for "
-            f"{units.show(rated, 'temperature', document.display)}: pot life and open time are shorter. Enter the data "
-            "sheet's times for the warmer shop.",
-            answer=True,
-        )
-    elif shop is not None and rated is not None and shop < rated:
-        findings.caution(
-            "temperature",
-            f"The shop has {units.show(shop, 'temperature', document.display)}, and the times hold for "
-            f"{units.show(rated, 'temperature', document.display)}: the time in the press is longer, and below the "
-            "data sheet's least temperature the adhesive does not cure at all.",
-            answer=True,
-        )
-    else:
+    if shop is None or rated is None or shop == rated:
         findings.caution(
             "temperature",
             "Warmth shortens pot life and open time, roughly to a half for 10 K; cold lengthens the time in the press. "
             "The times must be those of the shop's temperature on the day.",
         )
-    if shop is not None and rated is None and not COLD_SHOP <= shop <= WARM_SHOP:
-        findings.caution(
-            "temperature",
-            f"The shop has {units.show(shop, 'temperature', document.display)}, and the data sheet's temperature is "
-            "not given: times copied from 20 °C do not hold.",
-            answer=True,
+    if shop is None:
+        return
+    here = f"The shop has {units.show(shop, 'temperature', document.display)}, and"
+    if rated is None:
+        if not COLD_SHOP <= shop <= WARM_SHOP:
+            text = f"{here} the data sheet's temperature is not given: times copied from 20 °C do not hold."
+            findings.caution("temperature", text, answer=True)
+        return
+    held = f"{here} the times hold for {units.show(rated, 'temperature', document.display)}:"
+    if shop > rated:
+        text = f"{held} pot life and open time are shorter. Enter the data sheet's times for the warmer shop."
+        findings.caution("temperature", text, answer=True)
+    elif shop < rated:
+        text = (
+            f"{held} the time in the press is longer, and below the data sheet's least temperature the adhesive does "
+            "not cure at all."
         )
+        findings.caution("temperature", text, answer=True)
 
 
 def _of_pressing(

@@ -185,7 +185,7 @@ class Weigher:
         """One strength, or None where it was not given; ``divisor`` stands in for the basis's own factor."""
         if value is None:
             return None
-        terms = self._terms.get((kind, owner)) or self._terms_of(kind, owner, holder)
+        terms = self._terms_of(kind, owner, holder)
         divided = divisor or self._common or terms.divisor
         assert divided is not None  # documents refuses a basis without a factor that the check uses
         return Strength(what, value, unit, owner, terms.duration, terms.factors, divided, terms.source)

@@ -6,6 +6,7 @@ from collections.abc import Mapping
 from typing import Any
 
 from server import checks, documents, library
+from server.checks.glue_up_areas import pressed_by_fasteners
 from server.errors import DocumentError, Fault
 from server.jobs.revisions import SavedRevision
 from server.storage import Session
@@ -21,12 +22,6 @@ def may_be_glued(saved: SavedRevision) -> bool:
     return any(isinstance(joint, Mapping) and joint.get("adhesive") for joint in listed)
 
 
-def pressed_by_fasteners(saved: SavedRevision) -> bool:
-    """Whether a bonded joint of the check has fasteners that are there to press."""
-    joints = saved.document["section"]["joints"]
-    return any(j.get("adhesive") and j.get("fastener") and j.get("role", "press") == "press" for j in joints)
-
-
 def glue_up_of(session: Session, saved: SavedRevision) -> dict[str, Any]:
     """Return the document of a glue-up with the areas of a saved check, the rest of it to be filled in.
 
@@ -39,6 +34,7 @@ def glue_up_of(session: Session, saved: SavedRevision) -> dict[str, Any]:
         raise DocumentError([Fault("", "Only a member with a bonded joint is glued up; this check has none.")])
     start = {"format": "bondwright/1", "kind": "glue-up", "adhesive": {}}
     document = documents.read({**start, "check": saved.document})
+    assert isinstance(document, documents.GlueUpDocument)
     found: Mapping[str, Any] = checks.run(library.resolve(session, document), working=False)
     used = (saved.result.get("values_used") or {}).get("adhesives") or {}
     glued = {str(joint.get("adhesive")) for joint in saved.document["section"]["joints"] if joint.get("adhesive")}
@@ -51,7 +47,7 @@ def glue_up_of(session: Session, saved: SavedRevision) -> dict[str, Any]:
             for each in found["bonds"]
         ],
         "areas_from": f"{saved.mark} revision {saved.revision}",
-        "pressed_by": "fasteners" if pressed_by_fasteners(saved) else "clamps",
+        "pressed_by": "fasteners" if pressed_by_fasteners(document) else "clamps",
         **_record([used[name] for name in glued if name in used]),
     }
 

@@ -64,8 +64,8 @@ _NUMPY: dict[str, Any] = {
 }
 
 
-def over_arrays(tree: Node) -> Callable[..., Any]:
-    """A function of arrays, by the names of the quantities.
+def over_arrays(text: str, tree: Node) -> Callable[..., Any]:
+    """A function of arrays, by the names of the quantities of the formula written as ``text``.
 
     Raises
     ------
@@ -73,7 +73,7 @@ def over_arrays(tree: Node) -> Callable[..., Any]:
         If the formula sums.
     """
     if any(isinstance(each, Call) and each.function == "sum" for each in walk(tree)):
-        raise FormulaError("A formula that sums cannot run over arrays.")
+        raise FormulaError(f"The formula {text!r} sums, so it cannot run over arrays.")
     code = Code(tree, tuple(sorted(names(tree))), frozenset(), 0)
     return _function(code.order, [], code.source(tree), _NUMPY)
 

@@ -46,7 +46,7 @@ class Formula:
     def array(self, values: Mapping[str, Value]) -> NDArray[np.float64]:
         """The formula for arrays, element by element (no ``sum``): a curve drawn from the text that is printed."""
         if self._array is None:
-            self._array = compiled.over_arrays(self.tree)
+            self._array = compiled.over_arrays(self.text, self.tree)
         return np.asarray(self._array(**{name: np.asarray(each, dtype=float) for name, each in values.items()}))
 
 
